@@ -42,3 +42,7 @@ export function rowBlock(capacity: number, width: number): RowBlock {
     codes: new Uint8Array(capacity * width),
   }
 }
+
+/** Phases a `phaseColumn` may name. They open every run's word list, so that word index 0 to 4 is a phase. */
+export const phases = ['startup', 'production', 'flush', 'hold', 'shutdown'] as const
+export type Phase = (typeof phases)[number]

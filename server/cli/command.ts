@@ -1,0 +1,22 @@
+/** What a command may touch of the process; tests hand in their own. */
+export interface Io {
+  /** Writes to stdout and resolves once it may be followed by more (back-pressure). */
+  out(text: string): Promise<void>
+  err(text: string): void
+  readonly errIsTerminal: boolean
+  /** True when stdout is a terminal. */
+  readonly outIsTerminal: boolean
+  /** Milliseconds of a steady clock, for progress only. */
+  nowMs(): number
+  /** Aborted on SIGINT or SIGTERM. */
+  readonly signal: AbortSignal
+}
+
+/** One command of the command line. `run` resolves to the exit code; a MonitorError it throws is printed as one line by the caller. */
+export interface Command {
+  readonly name: string
+  readonly summary: string
+  /** The whole of `--help`. */
+  readonly help: string
+  run(args: readonly string[], io: Io): Promise<number>
+}

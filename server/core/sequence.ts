@@ -1,0 +1,27 @@
+import type { RowBlock } from './reading.ts'
+
+/** What a person does; every act names who and when, and is part of the recorded sequence. */
+export type Act = { readonly tMs: number; readonly person: string } & (
+  | { readonly kind: 'acknowledge'; readonly alarm: number }
+  | { readonly kind: 'reset'; readonly alarm: number }
+  | { readonly kind: 'shelve'; readonly alarm: number; readonly minutes: number; readonly reason: string }
+  | { readonly kind: 'unshelve'; readonly alarm: number; readonly reason: string }
+  | { readonly kind: 'comment'; readonly alarm: number | null; readonly text: string }
+  | { readonly kind: 'limit'; readonly segment: string; readonly limit: LimitName; readonly value: number | null; readonly reason: string }
+  | { readonly kind: 'flush-step'; readonly segment: string; readonly step: string; readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended'; readonly reason: string }
+  /** A row of the events file: Karl Fischer result, drum change, filter change ... */
+  | { readonly kind: 'event'; readonly event: string; readonly value: number | null; readonly unit: string | null; readonly note: string }
+)
+
+/** Limits that a person may change during a run; values in the unit the name ends with (flowLow: the flow tag's own unit). */
+export const limitNames = ['dpHighBar', 'dpHighHighBar', 'pressureHighBar', 'temperatureHighC', 'temperatureHighHighC', 'temperatureLowC', 'flowLow'] as const
+export type LimitName = (typeof limitNames)[number]
+
+/**
+ * One step of the recorded sequence. Live, imported, simulated and replayed runs are all this: rows in arrival order, ticks of the
+ * monitor's clock, acts. Where rows are split into blocks makes no difference; their order does.
+ */
+export type Entry =
+  | { readonly kind: 'rows'; readonly block: RowBlock }
+  | { readonly kind: 'tick'; readonly tMs: number }
+  | { readonly kind: 'act'; readonly act: Act }
