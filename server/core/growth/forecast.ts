@@ -1,0 +1,253 @@
+import { normalCdf } from '../stats/normal.ts'
+import { filmOfRatio } from './law.ts'
+import { type Bin, binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
+import { type GrowthSettings, growthDefaults } from './settings.ts'
+import { type WanderStep, wanderSteps } from './wander.ts'
+
+export interface LimitForecast extends Interval {
+  /** growth of the ratio, now [1/h] */
+  readonly growthPerHour: number
+}
+
+/** State of the filter: wander z, growth clock ahead of time W [life times], clean level c, with covariance. */
+interface Belief {
+  z: number
+  w: number
+  c: number
+  zz: number
+  zw: number
+  zc: number
+  ww: number
+  wc: number
+  cc: number
+}
+
+interface Node {
+  readonly weight: number
+  /** time from now to the limit and its sd [ms] */
+  readonly leftMs: number
+  readonly sdMs: number
+  readonly growthPerMs: number
+}
+
+/**
+ * When will the ratio reach the limit: a mixture over the time from onset to limit, growth law, constricted length and onset, each
+ * weighed by how well it tells the growth so far.
+ *
+ *   ln r = c + m(u),  m from the film δ = δ_limit (e^(Ku) − 1)/(e^K − 1) on the length fraction f,  u = (t − onset + W)/T
+ *
+ * W is the raggedness of growth: a clock that wanders with variance cv²·T per time, followed by a Kalman filter together with the
+ * clean level c and the wander of the measurement. The interval holds the doubt about all of them and the ragged growth still to
+ * come. A slough-off sets the clock back by an unknown amount, so growth goes on from there by the same law.
+ * limitRatio  the ratio over clean at which the limit is met, at the flow and temperature of now.
+ * Null when the limit ratio is not above 1 and not met, when there are fewer than 4 points since the onset, when the growth does not
+ * stand out of its noise by 2 sd, or when the median lies further ahead than `farthest` times the time grown so far (20).
+ * At or over the limit already (mean of the last points): now, with an interval of no length.
+ */
+export function forecastLimit(
+  points: readonly GrowthPoint[],
+  noise: Noise,
+  onset: Interval,
+  limitRatio: number,
+  nowMs: number,
+  settings: GrowthSettings = growthDefaults,
+): LimitForecast | null {
+  const seen = finitePoints(points).filter((p) => p.tMs <= nowMs)
+  const stepMs = noise.stepS * 1000
+  const grownFrom = Math.min(onset.atMs, nowMs)
+  const grown = seen.filter((p) => p.tMs >= grownFrom)
+  if (grown.length < 4 || !(limitRatio > 0) || !Number.isFinite(limitRatio)) return null
+  const lnLimit = Math.log(limitRatio)
+  const sloughs = findSloughs(grown, noise, settings.sloughSigmas, settings.sloughLeast)
+  const clean = binPoints(seen, evenEdges(seen[0]!.tMs, Math.max(seen[0]!.tMs, onset.lowMs), 4), stepMs)
+  const bins = binPoints(grown, growthEdges(grownFrom, grown[grown.length - 1]!.tMs, sloughs, settings.forecastMeans), stepMs)
+  const steps = wanderSteps([...clean, ...bins], noise)
+  const base = cleanBelief(clean, steps)
+  const last = bins[bins.length - 1]!
+  const recent = grown.slice(-Math.min(4, grown.length))
+  const nowLn = recent.reduce((sum, p) => sum + p.lnRatio, 0) / recent.length
+  const lastSd = Math.hypot(steps[steps.length - 1]!.size, Math.sqrt(steps[steps.length - 1]!.white), Math.sqrt(base.cc))
+  if (nowLn >= lnLimit) {
+    return { atMs: nowMs, lowMs: nowMs, highMs: nowMs, level: settings.forecastLevel, growthPerHour: localGrowth(bins, nowLn) }
+  }
+  const rise = last.lnRatio - base.c
+  if (!(lnLimit - base.c > 0.01) || rise < 2 * lastSd) return null
+
+  const falls = bins.map((bin, i) =>
+    sloughs.reduce((sum, f) => (f.tMs <= bin.tMs && (i === 0 || f.tMs > bins[i - 1]!.tMs) ? sum + f.fall : sum), 0),
+  )
+  const nodes = mixture({ bins, steps: steps.slice(clean.length), falls, base, lnLimit, onset, nowMs, settings })
+  if (nodes.length === 0) return null
+  const at = quantile(nodes, 0.5)
+  const tail = (1 - settings.forecastLevel) / 2
+  if (at > settings.farthest * (nowMs - onset.atMs)) return null
+  let growth = 0
+  for (const node of nodes) growth += node.weight * node.growthPerMs
+  return {
+    atMs: Math.round(nowMs + at),
+    lowMs: Math.floor(nowMs + quantile(nodes, tail)),
+    highMs: Math.ceil(nowMs + quantile(nodes, 1 - tail)),
+    level: settings.forecastLevel,
+    growthPerHour: growth * 3_600_000,
+  }
+}
+
+/** Even stretches of the growth, cut at each slough-off. */
+function growthEdges(fromMs: number, toMs: number, sloughs: readonly { tMs: number }[], n: number): number[] {
+  const edges = evenEdges(fromMs, toMs, n)
+  for (const { tMs } of sloughs) if (!edges.includes(tMs)) edges.push(tMs)
+  return edges.sort((a, b) => a - b)
+}
+
+/** Slope of the ratio over the last quarter of the growth [1/h], never below 0. */
+function localGrowth(bins: readonly Bin[], nowLn: number): number {
+  const from = bins[Math.max(0, bins.length - 1 - Math.ceil(bins.length / 4))]!
+  const to = bins[bins.length - 1]!
+  if (to.tMs <= from.tMs) return 0
+  return Math.max(0, ((to.lnRatio - from.lnRatio) / (to.tMs - from.tMs)) * Math.exp(nowLn) * 3_600_000)
+}
+
+/** What the clean means teach of level and wander; the level starts at 0 ± 0.05, as the ratio is over clean. */
+function cleanBelief(clean: readonly Bin[], steps: readonly WanderStep[]): Belief {
+  const b: Belief = { z: 0, w: 0, c: 0, zz: 1, zw: 0, zc: 0, ww: 0, wc: 0, cc: 0.0025 }
+  for (let i = 0; i < clean.length; i++) observe(b, steps[i]!, 0, 0, clean[i]!.lnRatio)
+  return b
+}
+
+/** One filter step: y = size·z + m + slope·(w − its mean) + c + white. Returns the log likelihood; a far innovation is widened. */
+function observe(b: Belief, step: WanderStep, m: number, slope: number, y: number): number {
+  const rho = step.rho
+  b.z *= rho
+  b.zz = rho * rho * b.zz + 1 - rho * rho
+  b.zw *= rho
+  b.zc *= rho
+  const h = step.size
+  const hz = h * b.zz + slope * b.zw + b.zc
+  const hw = h * b.zw + slope * b.ww + b.wc
+  const hc = h * b.zc + slope * b.wc + b.cc
+  let s = h * hz + slope * hw + hc + step.white
+  const e = y - h * b.z - m - b.c
+  if (e * e > 12 * s) s = (e * e) / 12
+  const kz = hz / s
+  const kw = hw / s
+  const kc = hc / s
+  b.z += kz * e
+  b.w += kw * e
+  b.c += kc * e
+  b.zz -= kz * hz
+  b.zw -= kz * hw
+  b.zc -= kz * hc
+  b.ww -= kw * hw
+  b.wc -= kw * hc
+  b.cc -= kc * hc
+  return -0.5 * (Math.log(s) + (e * e) / s)
+}
+
+interface Task {
+  readonly bins: readonly Bin[]
+  readonly steps: readonly WanderStep[]
+  readonly falls: readonly number[]
+  readonly base: Belief
+  readonly lnLimit: number
+  readonly onset: Interval
+  readonly nowMs: number
+  readonly settings: GrowthSettings
+}
+
+function mixture(task: Task): Node[] {
+  const { onset, nowMs, settings, base, lnLimit } = task
+  // Nodes at the median and the 5 % and 95 % ends; 0.185 gives the variance of a normal distribution.
+  const onsets = [
+    { ms: onset.lowMs, weight: 0.185 },
+    { ms: onset.atMs, weight: 0.63 },
+    { ms: onset.highMs, weight: 0.185 },
+  ]
+  const raw: { log: number; left: number; sd: number; growth: number }[] = []
+  let top = -Infinity
+  for (const { ms, weight: wOnset } of onsets) {
+    const grownMs = nowMs - ms
+    if (!(grownMs > 0)) continue
+    for (const { fraction, weight: wFraction } of settings.fractions) {
+      const filmLimit = filmOfRatio(Math.exp(lnLimit - base.c), fraction)
+      for (const { k, weight: wLaw } of settings.laws) {
+        const prior = Math.log(wOnset * wFraction * wLaw)
+        for (let i = 0; i < settings.gridNodes; i++) {
+          const left = grownMs * settings.gridFrom * (settings.gridTo / settings.gridFrom) ** (i / (settings.gridNodes - 1))
+          const lifeMs = grownMs + left
+          // even weight on ln of the life time: d ln T = left/T d ln left
+          const node = follow(task, ms, lifeMs, k, fraction, filmLimit)
+          const log = prior + Math.log(left / lifeMs) + node.log
+          if (log < top - 30) continue
+          top = Math.max(top, log)
+          raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
+        }
+      }
+    }
+  }
+  let total = 0
+  for (const r of raw) total += Math.exp(r.log - top)
+  return raw
+    .map((r) => ({ weight: Math.exp(r.log - top) / total, leftMs: r.left, sdMs: r.sd, growthPerMs: r.growth }))
+    .filter((node) => node.weight > 1e-7)
+}
+
+/** One hypothesis followed through the data; times in lives T. */
+function follow(task: Task, onsetMs: number, lifeMs: number, k: number, fraction: number, filmLimit: number) {
+  const { bins, steps, falls, nowMs, settings } = task
+  const b: Belief = { ...task.base }
+  const cv2 = settings.clockCv * settings.clockCv
+  const linear = Math.abs(k) < 1e-6
+  const unit = linear ? 1 : 1 / Math.expm1(k)
+  let log = 0
+  let before = 0
+  let slopeNow = 0
+  let ratioNow = 1
+  for (let i = 0; i < bins.length; i++) {
+    const t = (bins[i]!.tMs - onsetMs) / lifeMs
+    if (t > before) {
+      b.ww += cv2 * (t - before)
+      before = t
+    }
+    const u = Math.max(0, t + b.w)
+    const grow = linear ? 0 : Math.exp(k * u)
+    const film = Math.min(0.97, filmLimit * (linear ? u : (grow - 1) * unit))
+    const gap = 1 - film
+    const power = fraction / (gap * gap * gap * gap)
+    const ratio = 1 - fraction + power
+    const slope = t <= 0 ? 0 : (4 * power * filmLimit * (linear ? 1 : k * grow * unit)) / (gap * ratio)
+    const fall = falls[i]!
+    if (fall > 0) b.ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
+    log += observe(b, steps[i]!, Math.log(ratio), slope, bins[i]!.lnRatio)
+    slopeNow = slope
+    ratioNow = ratio
+  }
+  const now = (nowMs - onsetMs) / lifeMs
+  const left = Math.max(0, 1 - now - b.w)
+  const sd = Math.sqrt(Math.max(0, b.ww) + cv2 * (left + Math.max(0, now - before)))
+  return { log, left: left * lifeMs, sd: sd * lifeMs, growth: (slopeNow * ratioNow) / lifeMs }
+}
+
+/** Quantile of the time left: each node lognormal about its own time, so that no part lies before now; by bisection. */
+function quantile(nodes: readonly Node[], probability: number): number {
+  let high = 0
+  for (const node of nodes) high = Math.max(high, (node.leftMs + 1) * (1 + 6 * relative(node)))
+  let low = 0
+  for (let i = 0; i < 60; i++) {
+    const mid = (low + high) / 2
+    if (below(nodes, mid) < probability) low = mid
+    else high = mid
+  }
+  return (low + high) / 2
+}
+
+const relative = (node: Node): number => Math.min(1.5, node.sdMs / Math.max(node.leftMs, 0.3 * node.sdMs, 1))
+
+function below(nodes: readonly Node[], leftMs: number): number {
+  let sum = 0
+  for (const node of nodes) {
+    const centre = Math.max(node.leftMs, 0.3 * node.sdMs, 1)
+    const shape = Math.sqrt(Math.log1p(relative(node) ** 2))
+    sum += node.weight * normalCdf((Math.log(leftMs / centre) + (shape * shape) / 2) / Math.max(shape, 1e-6))
+  }
+  return sum
+}

@@ -1,0 +1,98 @@
+/** One detector step of a segment (typically a 30-s mean), stamped at its middle: lnRatio = ln of resistance over clean [-]. */
+export interface GrowthPoint {
+  readonly tMs: number
+  readonly lnRatio: number
+}
+
+/** Noise of lnRatio: a mean-reverting wander (sd, correlation time) plus white noise of one step. */
+export interface Noise {
+  readonly wanderSd: number
+  readonly wanderTauS: number
+  readonly whiteSd: number
+  readonly stepS: number
+}
+
+/** A date with its interval; `level` is the probability that the truth lies inside. */
+export interface Interval {
+  readonly atMs: number
+  readonly lowMs: number
+  readonly highMs: number
+  readonly level: number
+}
+
+/** Mean of the points of one stretch of time. */
+export interface Bin {
+  readonly tMs: number
+  readonly lnRatio: number
+  readonly count: number
+  readonly widthMs: number
+}
+
+/** The finite points, in the order given. */
+export const finitePoints = (points: readonly GrowthPoint[]): GrowthPoint[] =>
+  points.filter((p) => Number.isFinite(p.tMs) && Number.isFinite(p.lnRatio))
+
+/**
+ * Means of the points between neighbouring edges [ms, rising]; a stretch without a point gives no bin, so a gap stays a gap.
+ * Points before the first or from the last edge on are left out. The bin is as wide as its points span, one step at least.
+ */
+export function binPoints(points: readonly GrowthPoint[], edges: readonly number[], stepMs: number): Bin[] {
+  const bins: Bin[] = []
+  let i = 0
+  while (i < points.length && points[i]!.tMs < edges[0]!) i++
+  for (let k = 1; k < edges.length; k++) {
+    const first = i
+    let sumT = 0
+    let sum = 0
+    for (; i < points.length && points[i]!.tMs < edges[k]!; i++) {
+      sumT += points[i]!.tMs - points[first]!.tMs
+      sum += points[i]!.lnRatio
+    }
+    const count = i - first
+    if (count === 0) continue
+    const tMs = points[first]!.tMs + sumT / count
+    bins.push({ tMs, lnRatio: sum / count, count, widthMs: points[i - 1]!.tMs - points[first]!.tMs + stepMs })
+  }
+  return bins
+}
+
+/** Edges of n equal stretches from a to b, b included by a hair. */
+export function evenEdges(aMs: number, bMs: number, n: number): number[] {
+  const edges: number[] = []
+  for (let k = 0; k < n; k++) edges.push(aMs + ((bMs - aMs) * k) / n)
+  edges.push(bMs + 1)
+  return edges
+}
+
+const median5 = (v: readonly number[]): number => [...v].sort((a, b) => a - b)[v.length >> 1]!
+
+/**
+ * Times at which a deposit sloughed off: a lasting sudden fall of lnRatio, the medians of the few points before and after it
+ * apart by more than `sigmas` times their noise. Returns the first point after each fall with the size of the fall.
+ */
+export function findSloughs(
+  points: readonly GrowthPoint[],
+  noise: Noise,
+  sigmas: number,
+  leastFall: number,
+): { tMs: number; fall: number }[] {
+  const half = 3
+  const found: { tMs: number; fall: number }[] = []
+  const gapS = (half + 1) * noise.stepS
+  const wander = noise.wanderSd * Math.sqrt(2 * (1 - Math.exp(-gapS / Math.max(noise.wanderTauS, 1e-9))))
+  const limit = Math.max(leastFall, sigmas * Math.hypot(wander, noise.whiteSd * 1.2))
+  let best: { tMs: number; fall: number } | null = null
+  for (let i = half; i + half <= points.length; i++) {
+    const before = median5(points.slice(i - half, i).map((p) => p.lnRatio))
+    const after = median5(points.slice(i, i + half).map((p) => p.lnRatio))
+    const fall = before - after
+    if (fall > limit) {
+      if (best === null || fall > best.fall) best = { tMs: points[i]!.tMs, fall }
+    } else if (best !== null) {
+      found.push(best)
+      best = null
+    }
+  }
+  if (best !== null) found.push(best)
+  return found
+}

@@ -1,0 +1,58 @@
+/**
+ * Defaults of onset and forecast. Starting values under change control, not constants of nature: the doubt about the growth law and
+ * the raggedness of growth were set on simulated deposits; a site may replace them by what its own deposits show.
+ */
+export interface GrowthSettings {
+  /** probability that the onset interval holds the onset */
+  readonly onsetLevel: number
+  /** the onset likelihood is raised to this power: real growth is more ragged than any model, and the interval must still hold */
+  readonly onsetPower: number
+  /** ln ratio at which a typical limit lies; scales raggedness and curvature while the limit is not told [-] */
+  readonly typicalLnLimit: number
+  /** points the onset fit works on at most */
+  readonly onsetPoints: number
+  /** probability that the forecast interval holds the time of the limit */
+  readonly forecastLevel: number
+  /** means over the growth the forecast works on */
+  readonly forecastMeans: number
+  /** growth shape (e^(Ks) − 1)/(e^K − 1) of the thickness: K below 0 slows, above 0 speeds up; weights sum to 1 */
+  readonly laws: readonly { readonly k: number; readonly weight: number }[]
+  /** length fraction the deposit sits on: 1 is all along; weights sum to 1 */
+  readonly fractions: readonly { readonly fraction: number; readonly weight: number }[]
+  /** raggedness of growth: coefficient of variation of the growth clock when it reaches the limit [-] */
+  readonly clockCv: number
+  /** nodes of the log grid over the time from now to the limit, and its ends as multiples of the time grown so far */
+  readonly gridNodes: number
+  readonly gridFrom: number
+  readonly gridTo: number
+  /** no forecast when the median lies further ahead than so many times the growth seen */
+  readonly farthest: number
+  /** a fall counts as slough-off beyond so many sd, and never below this ln ratio */
+  readonly sloughSigmas: number
+  readonly sloughLeast: number
+}
+
+const law = (k: number) => ({ k, weight: 0.5 / 7 })
+
+export const growthDefaults: GrowthSettings = {
+  onsetLevel: 0.9,
+  onsetPower: 1 / 2.4,
+  typicalLnLimit: 0.8,
+  onsetPoints: 200,
+  forecastLevel: 0.8,
+  forecastMeans: 16,
+  laws: [law(-2.4), law(-1.6), law(-0.8), { k: 0, weight: 0.5 }, law(0.8), law(1.6), law(2.4), law(3.2)],
+  fractions: [
+    { fraction: 1, weight: 0.64 },
+    { fraction: 0.3, weight: 0.12 },
+    { fraction: 0.2, weight: 0.12 },
+    { fraction: 0.12, weight: 0.12 },
+  ],
+  clockCv: 0.06,
+  gridNodes: 56,
+  gridFrom: 0.01,
+  gridTo: 30,
+  farthest: 20,
+  sloughSigmas: 5,
+  sloughLeast: 0.02,
+}
