@@ -1,0 +1,73 @@
+import { once } from 'node:events'
+import { createWriteStream } from 'node:fs'
+import { rename, rm } from 'node:fs/promises'
+import { MonitorError } from '../core/errors.ts'
+
+export interface AtomicFile {
+  /** Resolves once more may follow. */
+  write(text: string): Promise<void>
+  /** Puts the file in place; what stood there before is replaced in one step. */
+  commit(): Promise<void>
+  /** Leaves nothing behind. */
+  discard(): Promise<void>
+}
+
+/**
+ * Opens a file that appears whole or not at all: written beside its place under another name, then renamed.
+ * Errors: FILE_WRITE, or DISK_FULL, naming the file.
+ */
+export async function openAtomic(path: string): Promise<AtomicFile> {
+  const temporary = `${path}.${process.pid}.part`
+  const stream = createWriteStream(temporary, { encoding: 'utf8', highWaterMark: 1 << 18, flush: true })
+  let failure: NodeJS.ErrnoException | null = null
+  stream.on('error', (error) => {
+    failure ??= error
+  })
+  const check = () => {
+    if (failure === null) return
+    const code = failure.code === 'ENOSPC' ? 'DISK_FULL' : 'FILE_WRITE'
+    throw new MonitorError(code, `cannot write: ${failure.message}`, { place: { file: path }, cause: failure })
+  }
+  const discard = async () => {
+    stream.destroy()
+    if (!stream.closed) await once(stream, 'close').catch(() => undefined)
+    await rm(temporary, { force: true })
+  }
+  await once(stream, 'open').catch(check)
+  return {
+    async write(text) {
+      check()
+      if (!stream.write(text)) await Promise.race([once(stream, 'drain'), once(stream, 'close')]).catch(() => undefined)
+      check()
+    },
+    async commit() {
+      stream.end()
+      if (!stream.closed) await once(stream, 'close').catch(() => undefined)
+      if (failure !== null) await discard()
+      check()
+      try {
+        await rename(temporary, path)
+      } catch (cause) {
+        await rm(temporary, { force: true })
+        throw new MonitorError(
+          'FILE_WRITE',
+          `cannot put the file in place: ${cause instanceof Error ? cause.message : String(cause)}`,
+          { place: { file: path }, cause },
+        )
+      }
+    },
+    discard,
+  }
+}
+
+/** Writes a whole text so that the file appears whole or not at all. */
+export async function writeAtomic(path: string, text: string): Promise<void> {
+  const file = await openAtomic(path)
+  try {
+    await file.write(text)
+  } catch (error) {
+    await file.discard()
+    throw error
+  }
+  await file.commit()
+}
