@@ -1,5 +1,5 @@
-import { normalCdf } from '../stats/normal.ts'
-import { filmOfRatio } from './law.ts'
+import { normalQuantile } from '../stats/normal.ts'
+import { filmOfRatio, growthShape, ratioOfFilm } from './law.ts'
 import { type Bin, binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
 import { type GrowthSettings, growthDefaults } from './settings.ts'
 import { type WanderStep, wanderSteps } from './wander.ts'
@@ -76,17 +76,30 @@ export function forecastLimit(
   const falls = bins.map((bin, i) =>
     sloughs.reduce((sum, f) => (f.tMs <= bin.tMs && (i === 0 || f.tMs > bins[i - 1]!.tMs) ? sum + f.fall : sum), 0),
   )
-  const nodes = mixture({ bins, steps: steps.slice(clean.length), falls, base, lnLimit, onset, nowMs, settings })
+  const firstFall = falls.findIndex((fall) => fall > 0)
+  const anchor = firstFall > 0 ? firstFall - 1 : bins.length - 1
+  const nodes = mixture({
+    bins,
+    steps: steps.slice(clean.length),
+    falls,
+    base,
+    lnLimit,
+    onset,
+    nowMs,
+    anchor,
+    lastSd,
+    settings,
+  })
   if (nodes.length === 0) return null
-  const at = quantile(nodes, 0.5)
   const tail = (1 - settings.forecastLevel) / 2
+  const [low, at, high] = quantiles(nodes, [tail, 0.5, 1 - tail]) as [number, number, number]
   if (at > settings.farthest * (nowMs - onset.atMs)) return null
   let growth = 0
   for (const node of nodes) growth += node.weight * node.growthPerMs
   return {
     atMs: Math.round(nowMs + at),
-    lowMs: Math.floor(nowMs + quantile(nodes, tail)),
-    highMs: Math.ceil(nowMs + quantile(nodes, 1 - tail)),
+    lowMs: Math.floor(nowMs + low),
+    highMs: Math.ceil(nowMs + high),
     level: settings.forecastLevel,
     growthPerHour: growth * 3_600_000,
   }
@@ -151,6 +164,8 @@ interface Task {
   readonly lnLimit: number
   readonly onset: Interval
   readonly nowMs: number
+  readonly anchor: number
+  readonly lastSd: number
   readonly settings: GrowthSettings
 }
 
@@ -171,13 +186,13 @@ function mixture(task: Task): Node[] {
       const filmLimit = filmOfRatio(Math.exp(lnLimit - base.c), fraction)
       for (const { k, weight: wLaw } of settings.laws) {
         const prior = Math.log(wOnset * wFraction * wLaw)
+        const { lnLifeMs, sd } = lifeNear(task, ms, k, fraction, filmLimit)
+        const spacing = (2 * settings.gridReach * sd) / (settings.gridNodes - 1)
         for (let i = 0; i < settings.gridNodes; i++) {
-          const left = grownMs * settings.gridFrom * (settings.gridTo / settings.gridFrom) ** (i / (settings.gridNodes - 1))
-          const lifeMs = grownMs + left
-          // even weight on ln of the life time: d ln T = left/T d ln left
+          const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
           const node = follow(task, ms, lifeMs, k, fraction, filmLimit)
-          const log = prior + Math.log(left / lifeMs) + node.log
-          if (log < top - 30) continue
+          const log = prior + Math.log(spacing) + node.log
+          if (!(log > top - 30)) continue
           top = Math.max(top, log)
           raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
         }
@@ -188,7 +203,25 @@ function mixture(task: Task): Node[] {
   for (const r of raw) total += Math.exp(r.log - top)
   return raw
     .map((r) => ({ weight: Math.exp(r.log - top) / total, leftMs: r.left, sdMs: r.sd, growthPerMs: r.growth }))
-    .filter((node) => node.weight > 1e-7)
+    .filter((node) => node.weight > 1e-6)
+}
+
+/**
+ * Where the life T of a hypothesis must lie to explain the rise at the anchor (the last mean, or the last before a slough-off), and
+ * how loosely: sd of ln T from raggedness and noise. The grid over T lies around it, evenly in ln T.
+ */
+function lifeNear(task: Task, onsetMs: number, k: number, fraction: number, filmLimit: number): { lnLifeMs: number; sd: number } {
+  const anchor = task.bins[task.anchor]!
+  const rise = Math.max(0.002, anchor.lnRatio - task.base.c)
+  const part = filmOfRatio(Math.exp(rise), fraction) / filmLimit
+  const linear = Math.abs(k) < 1e-6
+  const u = Math.max(0.01, Math.min(1.5, linear ? part : Math.log1p(Math.max(-0.99, part * Math.expm1(k))) / k))
+  const film = Math.min(0.97, filmLimit * growthShape(k, u))
+  const slope =
+    (4 * fraction * (1 - film) ** -5 * filmLimit * (linear ? 1 : (k * Math.exp(k * u)) / Math.expm1(k))) /
+    ratioOfFilm(film, fraction)
+  const sd = Math.min(1.2, Math.hypot(task.settings.clockCv / Math.sqrt(u), task.lastSd / Math.max(slope * u, 1e-6)))
+  return { lnLifeMs: Math.log(Math.max(anchor.tMs - onsetMs, 1000) / u), sd }
 }
 
 /** One hypothesis followed through the data; times in lives T. */
@@ -227,27 +260,34 @@ function follow(task: Task, onsetMs: number, lifeMs: number, k: number, fraction
   return { log, left: left * lifeMs, sd: sd * lifeMs, growth: (slopeNow * ratioNow) / lifeMs }
 }
 
-/** Quantile of the time left: each node lognormal about its own time, so that no part lies before now; by bisection. */
-function quantile(nodes: readonly Node[], probability: number): number {
-  let high = 0
-  for (const node of nodes) high = Math.max(high, (node.leftMs + 1) * (1 + 6 * relative(node)))
-  let low = 0
-  for (let i = 0; i < 60; i++) {
-    const mid = (low + high) / 2
-    if (below(nodes, mid) < probability) low = mid
-    else high = mid
-  }
-  return (low + high) / 2
-}
+/** Equal shares of a standard normal distribution: the middles of eleven. */
+const shares = Array.from({ length: 11 }, (_, i) => normalQuantile((i + 0.5) / 11))
 
-const relative = (node: Node): number => Math.min(1.5, node.sdMs / Math.max(node.leftMs, 0.3 * node.sdMs, 1))
-
-function below(nodes: readonly Node[], leftMs: number): number {
-  let sum = 0
-  for (const node of nodes) {
-    const centre = Math.max(node.leftMs, 0.3 * node.sdMs, 1)
-    const shape = Math.sqrt(Math.log1p(relative(node) ** 2))
-    sum += node.weight * normalCdf((Math.log(leftMs / centre) + (shape * shape) / 2) / Math.max(shape, 1e-6))
+/** Quantiles of the time left: each node lognormal about its own time, so that no part lies before now; summed on a log grid. */
+function quantiles(nodes: readonly Node[], probabilities: readonly number[]): number[] {
+  const centre = (node: Node) => Math.max(node.leftMs, 0.3 * node.sdMs, 1)
+  const spread = nodes.map((node) => Math.sqrt(Math.log1p(Math.min(1.5, node.sdMs / centre(node)) ** 2)))
+  const middle = nodes.map((node, i) => Math.log(centre(node)) - spread[i]! ** 2 / 2)
+  let low = Infinity
+  let high = -Infinity
+  for (let i = 0; i < nodes.length; i++) {
+    low = Math.min(low, middle[i]! + spread[i]! * shares[0]!)
+    high = Math.max(high, middle[i]! + spread[i]! * shares[shares.length - 1]!)
   }
-  return sum
+  const cells = new Float64Array(512)
+  const width = Math.max((high - low) / (cells.length - 1), 1e-9)
+  for (let i = 0; i < nodes.length; i++) {
+    for (const share of shares)
+      cells[Math.floor((middle[i]! + spread[i]! * share - low) / width + 1e-9)]! += nodes[i]!.weight / shares.length
+  }
+  let total = 0
+  for (const cell of cells) total += cell
+  return probabilities.map((probability) => {
+    let left = probability * total
+    for (let i = 0; i < cells.length; i++) {
+      if (left <= cells[i]! && cells[i]! > 0) return Math.exp(low + width * (i + left / cells[i]!))
+      left -= cells[i]!
+    }
+    return Math.exp(high)
+  })
 }

@@ -1,7 +1,7 @@
 import { normalCdf } from '../stats/normal.ts'
-import { binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
+import { type Bin, binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
 import { type GrowthSettings, growthDefaults } from './settings.ts'
-import { wanderSteps, whiten, whitener } from './wander.ts'
+import { type WanderStep, wanderSteps, whiten, whitener } from './wander.ts'
 
 export interface Onset extends Interval {
   /** ln ratio before the onset, as fitted [-] */
@@ -97,53 +97,38 @@ function pass(
 ): Pass | null {
   const bins = binPoints(points, edges, noise.stepS * 1000)
   const n = bins.length
-  const filter = whitener(wanderSteps(bins, noise))
-  const y = new Float64Array(n)
-  const one = new Float64Array(n)
-  const g = new Float64Array(n)
-  const column = new Float64Array(n)
-  for (let i = 0; i < n; i++) column[i] = bins[i]!.lnRatio
-  whiten(filter, column, y)
-  whiten(filter, new Float64Array(n).fill(1), one)
-  let one2 = 0
-  let oneY = 0
-  for (let i = 0; i < n; i++) {
-    one2 += one[i]! * one[i]!
-    oneY += one[i]! * y[i]!
+  const steps = wanderSteps(bins, noise)
+  const filter = whitener(steps)
+  const work = {
+    bins,
+    steps,
+    y: new Float64Array(n),
+    one: new Float64Array(n).fill(1),
+    g: new Float64Array(n),
+    slope: new Float64Array(n),
   }
+  for (let i = 0; i < n; i++) work.y[i] = bins[i]!.lnRatio
+  const whiteY = whiten(filter, work.y)
+  const whiteOne = whiten(filter, work.one)
   const lastMs = bins[n - 1]!.tMs
   const p = settings.onsetPower
-  const film = filmSpan(bins.map((b) => b.lnRatio))
+  const film = filmSpan(work.y)
   const logs: number[] = []
   let best = { log: -Infinity, clean: 0, rise: 0, evidence: 0 }
   for (const tau of tausMs) {
-    const span = Math.max(lastMs - tau, 1)
-    const top = -4 * Math.log1p(-film / 4)
-    for (let i = 0; i < n; i++) {
-      const s = (bins[i]!.tMs - tau) / span
-      column[i] = s <= 0 ? 0 : film > 1e-3 ? (-4 * Math.log1p((-film * s) / 4)) / top : s
-    }
-    whiten(filter, column, g)
-    let gg = 0
-    let gOne = 0
-    let gY = 0
-    for (let i = 0; i < n; i++) {
-      gg += g[i]! * g[i]!
-      gOne += g[i]! * one[i]!
-      gY += g[i]! * y[i]!
-    }
-    const j = gg - (gOne * gOne) / one2
-    const d = gY - (gOne * oneY) / one2
-    if (!(j > 1e-9 * gg) || j <= 0) {
+    shape(work, tau, Math.max(lastMs - tau, 1), film)
+    const plain = leastSquares(whiteOne, whiten(filter, work.g), whiteY)
+    if (plain === null) {
       logs.push(-Infinity)
       continue
     }
-    const log = (p * d * d) / (2 * j) - 0.5 * Math.log(j) + Math.log(Math.max(normalCdf(d * Math.sqrt(p / j)), 1e-300))
+    const ragged = raggedFit(work, tau, plain.rise, lastMs, settings) ?? plain
+    const { d, j } = ragged
+    const log =
+      p * ((d * d) / (2 * j) + ragged.level) - 0.5 * Math.log(j) + Math.log(Math.max(normalCdf(d * Math.sqrt(p / j)), 1e-300))
     logs.push(log)
-    if (log > best.log && d > 0) {
-      const rise = d / j
-      best = { log, rise, clean: (oneY - rise * gOne) / one2, evidence: (d * d) / (2 * j) }
-    }
+    if (log > best.log && d > 0)
+      best = { log, rise: ragged.rise, clean: ragged.clean, evidence: (plain.d * plain.d) / (2 * plain.j) }
   }
   if (best.log === -Infinity) return null
   let top = -Infinity
@@ -151,10 +136,116 @@ function pass(
   return { tausMs, weights: logs.map((log) => Math.exp(log - top)), clean: best.clean, rise: best.rise, evidence: best.evidence }
 }
 
+interface Work {
+  readonly bins: readonly Bin[]
+  readonly steps: readonly WanderStep[]
+  readonly y: Float64Array
+  readonly one: Float64Array
+  readonly g: Float64Array
+  readonly slope: Float64Array
+}
+
+/** Fills g (rise of unit height at the end) and its slope per span for an onset at tau. */
+function shape(work: Work, tau: number, span: number, film: number): void {
+  const top = film > 1e-3 ? -4 * Math.log1p(-film / 4) : 1
+  for (let i = 0; i < work.bins.length; i++) {
+    const s = (work.bins[i]!.tMs - tau) / span
+    work.g[i] = s <= 0 ? 0 : film > 1e-3 ? (-4 * Math.log1p((-film * s) / 4)) / top : s
+    work.slope[i] = s <= 0 ? 0 : film > 1e-3 ? film / (1 - (film * s) / 4) / top : 1
+  }
+}
+
+interface Fit {
+  readonly d: number
+  readonly j: number
+  readonly rise: number
+  readonly clean: number
+  /** ln likelihood left when c and A are fitted, the rise term d²/2j aside */
+  readonly level: number
+}
+
+/** Least squares of whitened y on one and g: rise = d/j. */
+function leastSquares(one: Float64Array, g: Float64Array, y: Float64Array, logDet = 0): Fit | null {
+  let oneOne = 0
+  let oneY = 0
+  let gg = 0
+  let gOne = 0
+  let gY = 0
+  let yy = 0
+  for (let i = 0; i < y.length; i++) {
+    oneOne += one[i]! * one[i]!
+    oneY += one[i]! * y[i]!
+    gg += g[i]! * g[i]!
+    gOne += g[i]! * one[i]!
+    gY += g[i]! * y[i]!
+    yy += y[i]! * y[i]!
+  }
+  const j = gg - (gOne * gOne) / oneOne
+  const d = gY - (gOne * oneY) / oneOne
+  if (!(j > 1e-9 * gg)) return null
+  const rise = d / j
+  const level = -0.5 * (yy - (oneY * oneY) / oneOne + logDet + Math.log(oneOne))
+  return { d, j, rise, clean: (oneY - rise * gOne) / oneOne, level }
+}
+
+/**
+ * The same fit with ragged growth in the covariance: the growth clock wanders with variance cv²·T per time since the onset, T the
+ * time to a typical limit at the plain rate, seen through the slope of the rise. Whitened by a two-state filter.
+ */
+function raggedFit(work: Work, tau: number, rise: number, lastMs: number, settings: GrowthSettings): Fit | null {
+  const { bins, steps } = work
+  const n = bins.length
+  const span = Math.max(lastMs - tau, 1)
+  const height = Math.max(rise, 1e-4)
+  const life = Math.max(1, settings.typicalLnLimit / height)
+  const q = settings.clockCv * settings.clockCv * life
+  const y = new Float64Array(n)
+  const one = new Float64Array(n)
+  const g = new Float64Array(n)
+  const columns = [work.y, work.one, work.g]
+  const outs = [y, one, g]
+  const z = [0, 0, 0]
+  const w = [0, 0, 0]
+  let zz = 1
+  let zw = 0
+  let ww = 0
+  let before = 0
+  let logDet = 0
+  for (let i = 0; i < n; i++) {
+    const { rho, size, white } = steps[i]!
+    const t = (bins[i]!.tMs - tau) / span
+    zz = rho * rho * zz + 1 - rho * rho
+    zw *= rho
+    if (t > before) {
+      ww += q * (t - before)
+      before = t
+    }
+    const h = height * work.slope[i]!
+    const hz = size * zz + h * zw
+    const hw = size * zw + h * ww
+    const s = size * hz + h * hw + white
+    const kz = hz / s
+    const kw = hw / s
+    zz -= kz * hz
+    zw -= kz * hw
+    ww -= kw * hw
+    logDet += Math.log(s)
+    const scale = 1 / Math.sqrt(s)
+    for (let c = 0; c < 3; c++) {
+      z[c]! *= rho
+      const e = columns[c]![i]! - size * z[c]! - h * w[c]!
+      z[c]! += kz * e
+      w[c]! += kw * e
+      outs[c]![i] = e * scale
+    }
+  }
+  return leastSquares(one, g, y, logDet)
+}
+
 /** x at the end of the window from the rise of ln ratio so far: 4(1 − e^(−rise/4)), ends taken as means of a tenth. */
-function filmSpan(values: readonly number[]): number {
+function filmSpan(values: Float64Array): number {
   const tenth = Math.max(1, Math.round(values.length / 10))
-  const mean = (v: readonly number[]) => v.reduce((sum, x) => sum + x, 0) / v.length
+  const mean = (v: Float64Array) => v.reduce((sum, x) => sum + x, 0) / v.length
   const low = Math.min(mean(values.slice(0, tenth)), mean(values.slice(0, Math.max(1, values.length >> 1))))
   const rise = mean(values.slice(-Math.min(tenth, 3))) - low
   return 4 * -Math.expm1(-Math.max(0, rise) / 4)

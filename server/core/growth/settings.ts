@@ -21,10 +21,9 @@ export interface GrowthSettings {
   readonly fractions: readonly { readonly fraction: number; readonly weight: number }[]
   /** raggedness of growth: coefficient of variation of the growth clock when it reaches the limit [-] */
   readonly clockCv: number
-  /** nodes of the log grid over the time from now to the limit, and its ends as multiples of the time grown so far */
+  /** nodes of the grid over the time from onset to limit, and how many sd of its logarithm it reaches either way */
   readonly gridNodes: number
-  readonly gridFrom: number
-  readonly gridTo: number
+  readonly gridReach: number
   /** no forecast when the median lies further ahead than so many times the growth seen */
   readonly farthest: number
   /** a fall counts as slough-off beyond so many sd, and never below this ln ratio */
@@ -36,7 +35,7 @@ const law = (k: number) => ({ k, weight: 0.5 / 7 })
 
 export const growthDefaults: GrowthSettings = {
   onsetLevel: 0.9,
-  onsetPower: 1 / 2.4,
+  onsetPower: 0.7,
   typicalLnLimit: 0.8,
   onsetPoints: 200,
   forecastLevel: 0.8,
@@ -49,9 +48,8 @@ export const growthDefaults: GrowthSettings = {
     { fraction: 0.12, weight: 0.12 },
   ],
   clockCv: 0.06,
-  gridNodes: 56,
-  gridFrom: 0.01,
-  gridTo: 30,
+  gridNodes: 13,
+  gridReach: 3.5,
   farthest: 20,
   sloughSigmas: 5,
   sloughLeast: 0.02,

@@ -29,7 +29,7 @@ export function wanderSteps(bins: readonly Bin[], noise: Noise): WanderStep[] {
       const y = before.widthMs / tauMs
       const vy = y < 1e-3 ? 1 - y / 3 : (2 * (y - 1 + Math.exp(-y))) / (y * y)
       const d = Math.max((bin.tMs - before.tMs) / tauMs, (x + y) / 2)
-      rho = Math.min(0.999999, (expSinhc(d, x, y) / Math.sqrt(v * vy)) as number)
+      rho = Math.min(0.999999, expSinhc(d, x, y) / Math.sqrt(v * vy))
     }
     steps.push({ rho, size: noise.wanderSd * Math.sqrt(v), white: (noise.whiteSd * noise.whiteSd) / bin.count + floor })
   }
@@ -73,12 +73,14 @@ export function whitener(steps: readonly WanderStep[]): Whitener {
 }
 
 /** Innovations over their sd of a column seen through the filter: independent, unit variance if the column is such noise. */
-export function whiten(w: Whitener, column: ArrayLike<number>, out: Float64Array): void {
+export function whiten(w: Whitener, column: ArrayLike<number>): Float64Array {
+  const out = new Float64Array(column.length)
   let z = 0
-  for (let i = 0; i < w.rho.length; i++) {
+  for (let i = 0; i < out.length; i++) {
     z *= w.rho[i]!
     const e = column[i]! - w.size[i]! * z
     z += w.gain[i]! * e
     out[i] = e * w.scale[i]!
   }
+  return out
 }

@@ -25,7 +25,7 @@ function gamma(u: () => number, shape: number): number {
   }
 }
 
-export type Law = 'linear' | 'saturating' | 'accelerating'
+export type Law = 'linear' | 'saturating' | 'accelerating' | 'sigmoid'
 
 export interface Growth {
   readonly law: Law
@@ -54,7 +54,8 @@ export interface GrowthOptions {
 
 /**
  * A deposit on a round bore, simulated independently of the code under test: film δ over a gamma clock (mean = time), laws
- * linear s, saturating (1 − e^(−1.5 s))/(1 − e^−1.5) and logistic-like accelerating growth; r = 1 − f + f(1 − δ)^−4; measured with
+ * linear s, saturating (1 − e^(−as))/(1 − e^−a) with a of 0.8 to 2.2, accelerating (e^(bs) − 1)/(e^b − 1) with b of 1.5 to 3, and a
+ * sigmoid (logistic) that no law of the forecast matches; r = 1 − f + f(1 − δ)^−4; measured with
  * Ornstein–Uhlenbeck wander and white noise in ln r.
  */
 export function simulateGrowth(seed: number, o: GrowthOptions): Growth {
@@ -62,10 +63,13 @@ export function simulateGrowth(seed: number, o: GrowthOptions): Growth {
   const stepS = o.stepS ?? 30
   const noise: Noise = { wanderSd: o.wanderSd ?? 0.0022, wanderTauS: 2400, whiteSd: o.whiteSd ?? 0.002, stepS }
   const cv = o.clockCv ?? 0.06
+  const fade = 0.8 + 1.4 * u()
+  const push = 1.5 + 1.5 * u()
   const shape: Record<Law, (s: number) => number> = {
     linear: (s) => s,
-    saturating: (s) => -Math.expm1(-1.5 * s) / -Math.expm1(-1.5),
-    accelerating: (s) => (1 / (1 + 9 * Math.exp(-3.2 * s)) - 0.1) / (1 / (1 + 9 * Math.exp(-3.2)) - 0.1),
+    saturating: (s) => Math.expm1(-fade * s) / Math.expm1(-fade),
+    accelerating: (s) => Math.expm1(push * s) / Math.expm1(push),
+    sigmoid: (s) => (1 / (1 + 9 * Math.exp(-3.2 * s)) - 0.1) / (1 / (1 + 9 * Math.exp(-3.2)) - 0.1),
   }
   const filmLimit = 1 - ((o.limitRatio - 1 + o.fraction) / o.fraction) ** -0.25
   const cleanS = (o.cleanHours ?? 1.5) * 3600 * (0.7 + 0.6 * u())
@@ -131,9 +135,9 @@ export function randomGrowth(seed: number, more: Partial<GrowthOptions> = {}): G
   })
 }
 
-/** When a plain ramp detector speaks: mean of four steps above 3.5 sd of the noise and above 1.5 %. */
+/** When a plain ramp detector speaks: mean of four steps above 6 sd of the noise and above 2 %. */
 export function alarmIndex(g: Growth): number {
-  const limit = Math.max(0.015, 3.5 * Math.hypot(g.noise.wanderSd, g.noise.whiteSd / 2))
+  const limit = Math.max(0.02, 6 * Math.hypot(g.noise.wanderSd, g.noise.whiteSd / 2))
   for (let i = 3; i < g.points.length; i++) {
     const mean = (g.points[i]!.lnRatio + g.points[i - 1]!.lnRatio + g.points[i - 2]!.lnRatio + g.points[i - 3]!.lnRatio) / 4
     if (mean > limit && g.points[i]!.tMs > g.onsetMs) return i
