@@ -47,7 +47,11 @@ export interface TagSpec {
 export type FluidSpec =
   | { readonly kind: 'solvent'; readonly solvent: string }
   | { readonly kind: 'mixture'; readonly parts: readonly { readonly solvent: string; readonly massFraction: number }[] }
-  | { readonly kind: 'table'; readonly densityKgM3: number; readonly viscosityMPaS: readonly (readonly [tempC: number, mPaS: number])[] }
+  | {
+      readonly kind: 'table'
+      readonly densityKgM3: number
+      readonly viscosityMPaS: readonly (readonly [tempC: number, mPaS: number])[]
+    }
 
 export interface StreamSpec {
   readonly id: string
@@ -77,6 +81,13 @@ export interface ChannelSpec {
   readonly heightM: number
   readonly wallConductivityWMK: number | null
   readonly outerFilmWM2K: number | null
+  /** A rectangular channel: both sides, instead of `diameterMm`. */
+  readonly widthMm?: number | null
+  readonly depthMm?: number | null
+  /** A ring: the core inside `diameterMm`. */
+  readonly coreMm?: number | null
+  /** 90-degree bends along one bore, as in a zigzag plate. */
+  readonly bends?: number
 }
 
 export interface LimitsSpec {

@@ -18,7 +18,10 @@ export function perryViscosity(
   return { lowK, highK, at: (t) => Math.exp(c1 + c2 / t + c3 * Math.log(t) + (c4 === 0 ? 0 : c4 * t ** c5)) }
 }
 
-/** Saturated-liquid density, molar density [kmol/m3] = (C1/1000)/C2^(1+(1-T/C3)^C4), here with C1 [mol/m3] and M [kg/mol]: ρ [kg/m3]. Perry, 8th ed., table 2-32. */
+/**
+ * Saturated-liquid density, ρ = M C1/C2^(1+(1-T/C3)^C4) [kg/m3] with M [kg/mol], C1 [mol/m3], C3 the critical temperature [K]. The last 20 K below it
+ * are left out of the range: the curve is vertical there. Perry, 8th ed., table 2-32.
+ */
 export function perryDensity(
   molarKgMol: number,
   c1: number,
@@ -28,7 +31,7 @@ export function perryDensity(
   lowK: number,
   highK: number,
 ): Correlation {
-  return { lowK, highK, at: (t) => (molarKgMol * c1) / c2 ** (1 + (1 - t / c3) ** c4) }
+  return { lowK, highK: Math.min(highK, c3 - 20), at: (t) => (molarKgMol * c1) / c2 ** (1 + (1 - t / c3) ** c4) }
 }
 
 /** Liquid heat capacity, A + BT + CT² + DT³ + ET⁴ [J/(kmol K)] over M: cp [J/(kg K)]. Perry, 8th ed., table 2-153, form 1. */
@@ -92,7 +95,7 @@ export function extended(c: Correlation, tempK: number, how: 'arrhenius' | 'line
   const edgeK = tempK < c.lowK ? c.lowK : c.highK
   const y = c.at(edgeK)
   if (how === 'hold') return y
-  const stepK = tempK < c.lowK ? Math.min(1, c.highK - c.lowK) : -Math.min(1, c.highK - c.lowK)
+  const stepK = tempK < c.lowK ? Math.min(0.01, c.highK - c.lowK) : -Math.min(0.01, c.highK - c.lowK)
   if (stepK === 0) return y
   const inner = c.at(edgeK + stepK)
   if (how === 'linear') return y + ((inner - y) / stepK) * (tempK - edgeK)

@@ -16,7 +16,7 @@ export function pureFluid(s: SolventEntry): Fluid {
   const lowK = Math.max(s.viscosity.lowK, s.density.lowK)
   const highK = Math.min(s.viscosity.highK, s.density.highK)
   const freezingK = kFromC(s.freezingC)
-  const limitK = [lowK - FAR_K, Math.min(highK + FAR_K, s.density.highK - 1)] as const
+  const limitK = [lowK - FAR_K, Math.min(highK + FAR_K, Math.max(highK, s.density.highK))] as const
   return {
     name: s.name,
     rangeK: [Math.max(lowK, freezingK), highK],

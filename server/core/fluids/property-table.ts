@@ -17,7 +17,7 @@ const STEP_K = 1
  */
 export function propertyTable(fluid: Fluid): PropertyTable {
   const [lowK, highK] = fluid.limitK
-  const n = Math.max(2, Math.ceil((highK - lowK) / STEP_K) + 1)
+  const n = Math.max(3, Math.ceil((highK - lowK) / STEP_K) + 1)
   const h = (highK - lowK) / (n - 1)
   const ln = new Float64Array(n)
   const rho = new Float64Array(n)
@@ -41,9 +41,13 @@ export function propertyTable(fluid: Fluid): PropertyTable {
   }
 }
 
+/** Central differences, second order at the ends too. */
 function slopes(y: Float64Array, h: number): Float64Array {
   const n = y.length
-  return y.map(
-    (_, i) => (y[Math.min(n - 1, i + 1)]! - y[Math.max(0, i - 1)]!) / ((Math.min(n - 1, i + 1) - Math.max(0, i - 1)) * h),
-  )
+  const d = new Float64Array(n)
+  for (let i = 1; i < n - 1; i++) d[i] = (y[i + 1]! - y[i - 1]!) / (2 * h)
+  const end = (a: number, b: number, c: number): number => (-1.5 * a + 2 * b - 0.5 * c) / h
+  d[0] = end(y[0]!, y[1]!, y[2]!)
+  d[n - 1] = -end(y[n - 1]!, y[n - 2]!, y[n - 3]!)
+  return d
 }

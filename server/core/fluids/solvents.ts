@@ -41,7 +41,7 @@ const perry = "Perry's Chemical Engineers' Handbook, 8th ed., tables 2-313, 2-32
 export const solvents: readonly SolventEntry[] = [
   {
     name: 'water',
-    aliases: [],
+    aliases: ['H2O'],
     molarMassKgMol: 0.01801528,
     freezingC: 0,
     boilingC: 99.974,
@@ -69,7 +69,7 @@ export const solvents: readonly SolventEntry[] = [
   },
   {
     name: 'toluene',
-    aliases: [],
+    aliases: ['PhMe'],
     molarMassKgMol: 0.09213842,
     freezingC: -94.95,
     boilingC: 110.63,
@@ -111,7 +111,7 @@ export const solvents: readonly SolventEntry[] = [
   },
   {
     name: 'cyclohexane',
-    aliases: [],
+    aliases: ['CyH'],
     molarMassKgMol: 0.08415948,
     freezingC: 6.7,
     boilingC: 80.7,
@@ -167,7 +167,7 @@ export const solvents: readonly SolventEntry[] = [
   },
   {
     name: 'methyl-tert-butyl-ether',
-    aliases: ['MTBE'],
+    aliases: ['MTBE', 'TBME'],
     molarMassKgMol: 0.08814818,
     freezingC: -108.6,
     boilingC: 55.1,
@@ -181,7 +181,7 @@ export const solvents: readonly SolventEntry[] = [
   },
   {
     name: 'diethyl-ether',
-    aliases: ['ether'],
+    aliases: ['Et2O', 'ether'],
     molarMassKgMol: 0.0741216,
     freezingC: -116.22,
     boilingC: 34.43,
@@ -271,7 +271,7 @@ export const solvents: readonly SolventEntry[] = [
     boilingC: 80,
     waterMiscible: 'partial',
     viscosity: andrade(0.46e-3, 298.15, 888, 203.15, 333.15),
-    density: line(854, 293.15, -1, 203.15, 343.15),
+    density: line(854, 293.15, -1, 143.15, 393.15),
     heatCapacity: line(1820, 298.15, 3, 203.15, 343.15),
     conductivity: line(0.12, 298.15, -0.00025, 203.15, 343.15),
     viscosityErrorPct: 25,
@@ -285,7 +285,7 @@ export const solvents: readonly SolventEntry[] = [
     boilingC: 84.5,
     waterMiscible: 'full',
     viscosity: andrade(0.455e-3, 298.15, 900, 233.15, 343.15),
-    density: line(868, 293.15, -1.05, 233.15, 343.15),
+    density: line(868, 293.15, -1.05, 173.15, 393.15),
     heatCapacity: line(2120, 298.15, 3, 233.15, 343.15),
     conductivity: line(0.14, 298.15, -0.0002, 233.15, 343.15),
     viscosityErrorPct: 25,

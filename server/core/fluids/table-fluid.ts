@@ -17,8 +17,8 @@ const ASSUMED_COND = 0.13
  */
 export function tableFluid(densityKgM3: number, viscosityMPaS: readonly (readonly [tempC: number, mPaS: number])[]): Fluid {
   const points = [...viscosityMPaS].sort((a, b) => a[0] - b[0])
-  if (!(densityKgM3 > 0 && densityKgM3 < 5000))
-    throw new MonitorError('FLUID_RANGE', `density must be above 0 and below 5000 kg/m3, got ${densityKgM3}`)
+  if (!(densityKgM3 > 0 && Number.isFinite(densityKgM3)))
+    throw new MonitorError('FLUID_RANGE', `density must be above 0 kg/m3, got ${densityKgM3}`)
   if (points.length === 0)
     throw new MonitorError('FLUID_RANGE', 'the viscosity table is empty', { hint: 'give at least one [tempC, mPa s]' })
   for (const [i, [tempC, v]] of points.entries()) {

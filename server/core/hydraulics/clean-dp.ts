@@ -1,10 +1,11 @@
 import type { PropertyTable } from '../fluids/property-table.ts'
+import { bendLoss } from './bends.ts'
 import type { ChannelGeometry } from './channel.ts'
 import { COIL_TRANSITION, coilCriticalReynolds, coilFrictionFactor, deanNumber, whiteCoilRatio } from './curvature.ts'
 import { darcyFriction } from './friction.ts'
 
 export interface DpOptions {
-  /** Loss coefficients in all bores' own velocity head, K [-] (ΔP = K ρ v²/2): bends, entrance, exit, fittings. Default 0. */
+  /** Loss coefficients besides the channel's bends, K [-] (ΔP = K ρ v²/2): entrance, exit, fittings, a valve. Default 0. */
   readonly lossK?: number
 }
 
@@ -28,7 +29,8 @@ const STRAIGHT_TRANSITION = [2000, 4000] as const
 /**
  * What a clean channel of uniform properties would show.
  *   ΔP = (f L/d + K) ρ v²/2 + ρ g h,  v = ṁ/(n ρ A),  Re = ρ v d/μ
- * massFlowKgS over all n = `parallel` bores; f: Churchill straight, White and Schmidt coiled. g = 9.80665 m/s2.
+ * massFlowKgS over all n = `parallel` bores; f: Churchill straight, White and Schmidt coiled; K: Hooper's
+ * 90-degree bends and `lossK`. g = 9.80665 m/s2.
  * A non-round bore counts with Re·64/(f Re)lam in f (O. C. Jones, J. Fluids Eng. 98 (1976) 173), which is exact when laminar and
  * within 5 % turbulent. Developing flow at the inlet is not counted: it adds about 1.2 ρ v²/2 (K = 1.2, laminar).
  * Errors: none; a flow of 0 gives the head alone. The caller hands in checked, positive rho, mu and geometry.
@@ -48,7 +50,8 @@ export function cleanDp(
   const coil = channel.coilDiameterM
   const de = coil === null ? null : deanNumber(re, d, coil)
   const frictionPa = v === 0 ? 0 : frictionGradient(channel, v, rhoKgM3, viscPaS, re) * channel.lengthM
-  const bendPa = ((options?.lossK ?? 0) * rhoKgM3 * v * speed) / 2
+  const k = (options?.lossK ?? 0) + (channel.bends > 0 && re > 0 ? channel.bends * bendLoss(re, d) : 0)
+  const bendPa = (k * rhoKgM3 * v * speed) / 2
   return { dpPa: frictionPa + bendPa + staticPa, frictionPa, bendPa, staticPa, re, de, uncertain: isUncertain(channel, re) }
 }
 

@@ -1,0 +1,60 @@
+import { expect, it } from 'vitest'
+import { fluidOf, mixByMass } from '../../../server/core/fluids/fluid.ts'
+import { viscosityFactor } from '../../../server/core/fluids/learned-factor.ts'
+import { propertyTable } from '../../../server/core/fluids/property-table.ts'
+import { solvents } from '../../../server/core/fluids/solvents.ts'
+
+it('the table errs by less than 1e-4 in viscosity and density from limit to limit, every solvent, every 0.13 K', () => {
+  let worst = 0
+  for (const s of solvents) {
+    const f = fluidOf({ kind: 'solvent', solvent: s.name })
+    const t = propertyTable(f)
+    for (let k = f.limitK[0]; k <= f.limitK[1]; k += 0.13) {
+      const exact = f.at(k)
+      worst = Math.max(worst, Math.abs(t.viscPaS(k) / exact.viscPaS - 1), Math.abs(t.rhoKgM3(k) / exact.rhoKgM3 - 1))
+    }
+  }
+  expect(worst).toBeLessThan(1e-4)
+})
+
+it('a mixture and a user table keep the same bound', () => {
+  const mixed = mixByMass([
+    { fluid: fluidOf({ kind: 'solvent', solvent: 'THF' }), massFraction: 0.6 },
+    { fluid: fluidOf({ kind: 'solvent', solvent: 'hexane' }), massFraction: 0.4 },
+  ])
+  const own = fluidOf({
+    kind: 'table',
+    densityKgM3: 900,
+    viscosityMPaS: [
+      [-40, 2],
+      [-10, 1.1],
+      [25, 0.6],
+    ],
+  })
+  for (const f of [mixed, own]) {
+    const t = propertyTable(f)
+    for (let k = f.rangeK[0]; k <= Math.min(f.rangeK[1], 330); k += 0.17)
+      expect(Math.abs(t.viscPaS(k) / f.at(k).viscPaS - 1)).toBeLessThan(1e-4)
+  }
+})
+
+it('beyond the limits it clamps and says uncertain instead of throwing; so it does for what is no number', () => {
+  const f = fluidOf({ kind: 'solvent', solvent: 'THF' })
+  const t = propertyTable(f)
+  expect(t.viscPaS(1)).toBeCloseTo(f.at(f.limitK[0]).viscPaS, 12)
+  expect(t.rhoKgM3(9999)).toBeCloseTo(f.at(f.limitK[1]).rhoKgM3, 6)
+  for (const k of [1, 9999, Number.NaN]) expect(t.uncertain(k)).toBe(true)
+  expect(Number.isFinite(t.viscPaS(Number.NaN))).toBe(true)
+  expect(t.uncertain(253.15)).toBe(false)
+})
+
+it('a stream 20 % thicker than its solvent is found on three segments as 1.17 with an interval that holds 1.2, and one segment leaves a wide one', () => {
+  const level = (k: number) => ({ lnLevel: k * Math.log(1.2), sd: 0.01, viscExponent: k })
+  const three = viscosityFactor([level(1), level(0.75), level(0.9)])
+  expect(three.factor).toBeGreaterThan(1.15)
+  expect(three.low).toBeLessThan(1.2)
+  expect(three.high).toBeGreaterThan(1.2)
+  const one = viscosityFactor([level(1)])
+  expect(one.high / one.low).toBeGreaterThan(three.high / three.low)
+  expect(viscosityFactor([])).toMatchObject({ factor: 1, segments: 0 })
+})
