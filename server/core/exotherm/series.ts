@@ -1,0 +1,88 @@
+import { ago, forget, push, type Ring, ring } from './ring.ts'
+
+/**
+ * One series of excess (a thermocouple, a reactor's mean, the mean of all): its 4-s means of the last 25 s, and every 10 s one of them for
+ * the last 32 min, of which all but the last two minutes give the robust spread.
+ */
+export interface Series {
+  readonly recent: Ring
+  readonly slow: Ring
+  /** Robust sd of the 4-s mean, K, as last computed; 0 until there is enough. */
+  sdK: number
+  /** Scans in a row beyond the threshold upwards and downwards. */
+  high: number
+  low: number
+  /** Scans since the last hole. */
+  whole: number
+}
+
+export interface Pace {
+  /** Scans in 4 s, 12 s, 25 s, at least 1. */
+  readonly smooth: number
+  readonly rise: readonly [number, number]
+  /** Scans between slow samples, and slow samples in two minutes. */
+  readonly slowEvery: number
+  readonly slowDelay: number
+  readonly slowKeep: number
+}
+
+/** Seconds into scans: at 1 s as written, at 0.1 s ten times as many, at 5 s and 60 s no fewer than one. */
+export function pace(scanS: number): Pace {
+  const scans = (s: number) => Math.max(1, Math.round(s / scanS))
+  const slowEvery = scans(10)
+  const slowS = slowEvery * scanS
+  const slowDelay = Math.max(1, Math.round(120 / slowS))
+  return { smooth: scans(4), rise: [scans(12), scans(25)], slowEvery, slowDelay, slowKeep: Math.max(30, Math.round(1800 / slowS)) }
+}
+
+export const freshSeries = (p: Pace): Series => ({
+  recent: ring(p.rise[1] + 1),
+  slow: ring(p.slowKeep + p.slowDelay),
+  sdK: 0,
+  high: 0,
+  low: 0,
+  whole: 0,
+})
+
+/** Robust sd: 1.4826 times the median distance from the median of the slow samples older than two minutes; needs 30. */
+export function spread(s: Series, p: Pace): void {
+  const xs: number[] = []
+  for (let n = p.slowDelay; n < s.slow.v.length; n++) {
+    const x = ago(s.slow, n)
+    if (x !== null) xs.push(x)
+  }
+  if (xs.length < 30) return
+  const middle = median(xs)
+  for (let i = 0; i < xs.length; i++) xs[i] = Math.abs((xs[i] as number) - middle)
+  s.sdK = 1.4826 * median(xs)
+}
+
+function median(xs: number[]): number {
+  xs.sort((a, b) => a - b)
+  const half = xs.length >> 1
+  return xs.length % 2 === 1 ? (xs[half] as number) : ((xs[half - 1] as number) + (xs[half] as number)) / 2
+}
+
+/** After a gap, or with another lag: differences across it mean nothing. */
+export const restart = (s: Series): void => {
+  forget(s.recent)
+  s.high = 0
+  s.low = 0
+  s.whole = 0
+}
+
+/** Greatest rise over 12 or 25 s to `nowK`, not yet remembered; null where the window has a hole. */
+export function riseK(s: Series, p: Pace, nowK: number): number | null {
+  let most: number | null = null
+  for (const n of p.rise) {
+    const then = s.whole < n ? null : ago(s.recent, n - 1)
+    if (then !== null && (most === null || nowK - then > most)) most = nowK - then
+  }
+  return most
+}
+
+export function remember(s: Series, xK: number | null, slow: boolean): void {
+  push(s.recent, xK)
+  s.whole = xK === null ? 0 : s.whole + 1
+  if (slow) push(s.slow, xK)
+}
