@@ -1,0 +1,36 @@
+import type Database from 'better-sqlite3'
+import type { Json } from './keys.ts'
+
+export interface SettingsVersion {
+  readonly version: number
+  /** What they are the settings of: a skid's id, 'site' ... */
+  readonly scope: string
+  readonly tMs: number
+  readonly person: string
+  readonly reason: string
+  readonly settings: Json
+}
+
+type Row = Omit<SettingsVersion, 'settings'> & { readonly json: string }
+const open = ({ json, ...row }: Row): SettingsVersion => ({ ...row, settings: JSON.parse(json) as Json })
+
+/** Settings as whole versions, append-only; the database itself refuses to change or drop one. */
+export function settingsStore(db: Database.Database) {
+  const columns = 'id AS version, scope, t_ms AS tMs, person, reason, json'
+  const insert = db.prepare('INSERT INTO settings (scope, t_ms, person, reason, json) VALUES (?, ?, ?, ?, ?)')
+  const list = db.prepare<[string], Row>(`SELECT ${columns} FROM settings WHERE scope = ? ORDER BY id`)
+  const at = db.prepare<[string, number], Row>(
+    `SELECT ${columns} FROM settings WHERE scope = ? AND t_ms <= ? ORDER BY t_ms DESC, id DESC LIMIT 1`,
+  )
+  return {
+    /** Gives the new version's number. */
+    put: ({ scope, tMs, person, reason, settings }: Omit<SettingsVersion, 'version'>): number =>
+      Number(insert.run(scope, tMs, person, reason, JSON.stringify(settings)).lastInsertRowid),
+    list: (scope: string): SettingsVersion[] => list.all(scope).map(open),
+    /** The version in force at a time; null before the first. */
+    at(scope: string, tMs: number): SettingsVersion | null {
+      const row = at.get(scope, tMs)
+      return row === undefined ? null : open(row)
+    },
+  }
+}
