@@ -54,9 +54,8 @@ export function coolantScan(s: Coolant, tMs: number, readingC: number | null, ga
     const gap = dtS > gapS
     // Over a gap the mean of its two ends stands for what was not seen; the move itself stays in doubt until forgotten.
     const driveC = gap ? (readingC + s.lastC) / 2 : readingC
-    for (let k = 0; k < lagsS.length; k++) {
-      s.f[k] = (s.f[k] as number) + (driveC - (s.f[k] as number)) * (1 - Math.exp(-dtS / (lagsS[k] as number)))
-    }
+    const share = shares(dtS)
+    for (let k = 0; k < lagsS.length; k++) s.f[k] = (s.f[k] as number) + (driveC - (s.f[k] as number)) * (share[k] as number)
     if (s.unseenK > 0) s.unseenK *= Math.exp(-dtS / (lagsS[s.best] as number))
     if (s.unseenK < 1e-6) s.unseenK = 0
     if (gap) s.unseenK += Math.abs(readingC - s.lastC)
@@ -65,6 +64,17 @@ export function coolantScan(s: Coolant, tMs: number, readingC: number | null, ga
   s.lastMs = tMs
   for (let k = 0; k < lagsS.length; k++) s.sum[k] = (s.sum[k] as number) + (s.f[k] as number)
   s.n++
+}
+
+// The same step nearly every time: five exponentials saved a scan. A cache of a pure function, not state.
+let lastS = -1
+let last: readonly number[] = []
+function shares(dtS: number): readonly number[] {
+  if (dtS !== lastS) {
+    last = lagsS.map((s) => 1 - Math.exp(-dtS / s))
+    lastS = dtS
+  }
+  return last
 }
 
 /** How far the lag in use and its neighbours differ now, K: half of it is what the model may err by. */

@@ -17,6 +17,7 @@ export interface Series {
 }
 
 export interface Pace {
+  readonly scanS: number
   /** Scans in 4 s, 12 s, 25 s, at least 1. */
   readonly smooth: number
   readonly rise: readonly [number, number]
@@ -32,7 +33,14 @@ export function pace(scanS: number): Pace {
   const slowEvery = scans(10)
   const slowS = slowEvery * scanS
   const slowDelay = Math.max(1, Math.round(120 / slowS))
-  return { smooth: scans(4), rise: [scans(12), scans(25)], slowEvery, slowDelay, slowKeep: Math.max(30, Math.round(1800 / slowS)) }
+  return {
+    scanS,
+    smooth: scans(4),
+    rise: [scans(12), scans(25)],
+    slowEvery,
+    slowDelay,
+    slowKeep: Math.max(30, Math.round(1800 / slowS)),
+  }
 }
 
 export const freshSeries = (p: Pace): Series => ({
@@ -46,19 +54,21 @@ export const freshSeries = (p: Pace): Series => ({
 
 /** Robust sd: 1.4826 times the median distance from the median of the slow samples older than two minutes; needs 30. */
 export function spread(s: Series, p: Pace): void {
-  const xs: number[] = []
+  const xs = new Float64Array(p.slowKeep)
+  let m = 0
   for (let n = p.slowDelay; n < s.slow.v.length; n++) {
     const x = ago(s.slow, n)
-    if (x !== null) xs.push(x)
+    if (x !== null) xs[m++] = x
   }
-  if (xs.length < 30) return
-  const middle = median(xs)
-  for (let i = 0; i < xs.length; i++) xs[i] = Math.abs((xs[i] as number) - middle)
-  s.sdK = 1.4826 * median(xs)
+  if (m < 30) return
+  const used = xs.subarray(0, m)
+  const middle = median(used)
+  for (let i = 0; i < m; i++) used[i] = Math.abs((used[i] as number) - middle)
+  s.sdK = 1.4826 * median(used)
 }
 
-function median(xs: number[]): number {
-  xs.sort((a, b) => a - b)
+function median(xs: Float64Array): number {
+  xs.sort()
   const half = xs.length >> 1
   return xs.length % 2 === 1 ? (xs[half] as number) : ((xs[half - 1] as number) + (xs[half] as number)) / 2
 }
