@@ -108,11 +108,52 @@ export interface FlushStep {
   readonly title: string
   readonly liquid: string | null
   readonly basis: readonly string[]
+  /** Every one accepted before the next step is shown as advised. */
+  readonly criteria: readonly FlushCriterion[]
+}
+
+/** One thing to be true before a step counts as done; `id` is what an acceptance names. */
+export interface FlushCriterion {
+  readonly id: string
+  readonly text: string
+}
+
+/** What a segment holds before the flush, counted as if nothing had reacted (worst case). */
+export interface FlushInventory {
+  readonly segment: string
+  readonly volumeMl: number | null
+  readonly reagents: readonly { readonly stream: string; readonly name: string; readonly mol: number | null }[]
+  /** Heat if all organolithium met water, and if the reaction of the segment ran to its end; kJ. */
+  readonly hydrolysisKJ: number | null
+  readonly reactionKJ: number | null
+}
+
+/** What water is predicted to show in F3: the reference that the ratio is judged against there. */
+export interface WaterReference {
+  readonly segment: string
+  readonly ratio: number
+  readonly flowMlMin: number
+  readonly tempC: number
+  readonly cleanDpBar: number
+  readonly predictedDpBar: number
+  readonly dpHighBar: number | null
 }
 
 export interface FlushPlan {
   readonly steps: readonly FlushStep[]
-  readonly [addition: string]: unknown
+  /** Segments the flush is for, and all the flush liquid passes, in flow order. */
+  readonly segments: readonly string[]
+  readonly path: readonly string[]
+  /** Null where a step's time is not computed. */
+  readonly totalMinutes: number | null
+  readonly inventory: readonly FlushInventory[]
+  readonly waterReference: readonly WaterReference[]
+  /** Steps that are not advised at all as things stand, and why. */
+  readonly refused: readonly { readonly step: string; readonly reason: string }[]
+  readonly cautions: readonly string[]
+  readonly assumptions: readonly string[]
+  /** What could not be computed, and what is needed for it. */
+  readonly missing: readonly string[]
 }
 
 export interface AdviceReport {

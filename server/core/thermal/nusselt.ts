@@ -1,4 +1,5 @@
 import { MonitorError } from '../errors.ts'
+import { coilCriticalReynolds } from '../hydraulics/curvature.ts'
 
 /** Largest Reynolds number of laminar flow in a straight tube, and the least of fully turbulent flow (Gnielinski 2013). */
 export const reLaminar = 2300
@@ -40,9 +41,6 @@ export function gnielinskiTurbulent(re: number, pr: number, f: number = filonenk
  * Validity: Re > 1e4, 0.6 < Pr < 160, L/D > 10. Source: Dittus & Boelter (1930) in McAdams' form. About 25 %.
  */
 export const dittusBoelter = (re: number, pr: number, heated: boolean): number => 0.023 * re ** 0.8 * pr ** (heated ? 0.4 : 0.3)
-
-/** Critical Reynolds number of a coil, 2300 (1 + 8.6 (d/D)^0.45) [-]. Source: E. F. Schmidt, Chem.-Ing.-Tech. 39 (1967) 781. */
-export const reCriticalCoil = (curvature: number): number => reLaminar * (1 + 8.6 * curvature ** 0.45)
 
 /**
  * Nusselt number of laminar flow in a coil, constant wall temperature, c = d/D of the coil:
@@ -102,7 +100,7 @@ function straight(re: number, pr: number, lengthOverDiameter: number): number {
 }
 
 function coil(re: number, pr: number, curvature: number): number {
-  const critical = Math.min(reCriticalCoil(curvature), reTurbulentCoil * 0.95)
+  const critical = Math.min(coilCriticalReynolds(curvature, 1), reTurbulentCoil * 0.95)
   if (re <= critical) return schmidtCoil(re, pr, curvature)
   if (re >= reTurbulentCoil) return turbulentCoil(re, pr, curvature)
   return blend(re, critical, reTurbulentCoil, schmidtCoil(critical, pr, curvature), turbulentCoil(reTurbulentCoil, pr, curvature))
@@ -125,7 +123,7 @@ export function nusselt(flow: TubeFlow): Nusselt {
   }
   const notes: string[] = []
   const gz = (re * pr) / lengthOverDiameter
-  const critical = curvature === null ? reLaminar : reCriticalCoil(curvature)
+  const critical = curvature === null ? reLaminar : coilCriticalReynolds(curvature, 1)
   const full = curvature === null ? reTurbulent : reTurbulentCoil
   const regime = re <= critical ? 'laminar' : re >= full ? 'turbulent' : 'transitional'
   const asStraight = straight(re, pr, lengthOverDiameter)

@@ -1,6 +1,7 @@
 import fc from 'fast-check'
 import { expect, it } from 'vitest'
 import { MonitorError } from '../../../server/core/errors.ts'
+import { coilCriticalReynolds } from '../../../server/core/hydraulics/curvature.ts'
 import { effectiveness, exchanger, lmtd, uFromReadings } from '../../../server/core/thermal/exchanger.ts'
 import {
   filonenko,
@@ -8,7 +9,6 @@ import {
   hausen,
   manlapazChurchill,
   nusselt,
-  reCriticalCoil,
   schmidtCoil,
 } from '../../../server/core/thermal/nusselt.ts'
 import { hotSpot, plugFlowProfile, type TubeHeat } from '../../../server/core/thermal/profile.ts'
@@ -68,7 +68,7 @@ it('has no jump over Re in straight tube or coil: 0.5 % in Re moves Nu by under 
 it('never lets a coil fall below the straight laminar tube, and Schmidt and Manlapaz-Churchill agree within 36 % for Re 200 to 2000, Pr 2 to 7', () => {
   fc.assert(
     fc.property(num(200, 2000), num(2, 7), num(0.015, 0.1), (re, pr, curvature) => {
-      fc.pre(re < reCriticalCoil(curvature))
+      fc.pre(re < coilCriticalReynolds(curvature, 1))
       expect(nusselt({ re, pr, lengthOverDiameter: 5000, curvature, heated: false }).nu).toBeGreaterThanOrEqual(
         gnielinskiLaminar((re * pr) / 5000),
       )
