@@ -56,7 +56,8 @@ export class MonitorError extends Error {
   /** One line: place, what was found and expected, the mend. */
   line(): string {
     const p = this.place
-    const where = p === null ? '' : `${p.file}${p.line === undefined ? '' : `:${p.line}${p.column === undefined ? '' : `:${p.column}`}`}: `
+    const where =
+      p === null ? '' : `${p.file}${p.line === undefined ? '' : `:${p.line}${p.column === undefined ? '' : `:${p.column}`}`}: `
     return `${where}${this.message}${this.hint === null ? '' : `; ${this.hint}`}`
   }
 }

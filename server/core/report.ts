@@ -17,7 +17,13 @@ export interface RunReport {
   readonly scans: number
   readonly tags: readonly TagReport[]
   /** Additions: how many rows came, and how many were not used and why. */
-  readonly rows: { readonly total: number; readonly late: number; readonly repeated: number; readonly outOfOrder: number; readonly badTime: number }
+  readonly rows: {
+    readonly total: number
+    readonly late: number
+    readonly repeated: number
+    readonly outOfOrder: number
+    readonly badTime: number
+  }
   /** Addition: true where the log names no phases and production was inferred. */
   readonly phaseInferred: boolean
 }
@@ -68,10 +74,32 @@ export interface SegmentReport {
   readonly forecast: ForecastReport | null
 }
 
-export const alarmKinds = ['fouling', 'dp-limit', 'pressure-limit', 'exotherm', 'temperature-limit', 'feed-ratio', 'flow', 'sensor', 'no-data', 'monitor'] as const
+export const alarmKinds = [
+  'fouling',
+  'dp-limit',
+  'pressure-limit',
+  'exotherm',
+  'temperature-limit',
+  'feed-ratio',
+  'flow',
+  'sensor',
+  'no-data',
+  'monitor',
+] as const
 export type AlarmKind = (typeof alarmKinds)[number]
 export type Priority = 'low' | 'medium' | 'high'
-export const causes = ['fouling', 'blockage', 'filter', 'back-pressure', 'composition', 'pump', 'ice', 'sensor', 'gas', 'unknown'] as const
+export const causes = [
+  'fouling',
+  'blockage',
+  'filter',
+  'back-pressure',
+  'composition',
+  'pump',
+  'ice',
+  'sensor',
+  'gas',
+  'unknown',
+] as const
 export type Cause = (typeof causes)[number]
 
 export interface AlarmReport {
@@ -90,10 +118,25 @@ export interface AlarmReport {
   readonly onset: OnsetReport | null
   /** Additions: which detector spoke, and whether the others agree. */
   readonly detector: string
-  readonly evidence: { readonly for: readonly string[]; readonly against: readonly string[]; readonly notExcluded: readonly string[] }
+  readonly evidence: {
+    readonly for: readonly string[]
+    readonly against: readonly string[]
+    readonly notExcluded: readonly string[]
+  }
 }
 
-export const actions = ['flush', 'watch', 'stop-feed', 'escalate', 'change-filter', 'check-sensor', 'check-flow', 'check-outlet', 'check-cooling', 'stop-cooling'] as const
+export const actions = [
+  'flush',
+  'watch',
+  'stop-feed',
+  'escalate',
+  'change-filter',
+  'check-sensor',
+  'check-flow',
+  'check-outlet',
+  'check-cooling',
+  'stop-cooling',
+] as const
 export type Action = (typeof actions)[number]
 
 export interface FlushStep {

@@ -7,14 +7,40 @@ export type Act = { readonly tMs: number; readonly person: string } & (
   | { readonly kind: 'shelve'; readonly alarm: number; readonly minutes: number; readonly reason: string }
   | { readonly kind: 'unshelve'; readonly alarm: number; readonly reason: string }
   | { readonly kind: 'comment'; readonly alarm: number | null; readonly text: string }
-  | { readonly kind: 'limit'; readonly segment: string; readonly limit: LimitName; readonly value: number | null; readonly reason: string }
-  | { readonly kind: 'flush-step'; readonly segment: string; readonly step: string; readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended'; readonly reason: string }
+  | {
+      readonly kind: 'limit'
+      readonly segment: string
+      readonly limit: LimitName
+      readonly value: number | null
+      readonly reason: string
+    }
+  | {
+      readonly kind: 'flush-step'
+      readonly segment: string
+      readonly step: string
+      readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended'
+      readonly reason: string
+    }
   /** A row of the events file: Karl Fischer result, drum change, filter change ... */
-  | { readonly kind: 'event'; readonly event: string; readonly value: number | null; readonly unit: string | null; readonly note: string }
+  | {
+      readonly kind: 'event'
+      readonly event: string
+      readonly value: number | null
+      readonly unit: string | null
+      readonly note: string
+    }
 )
 
 /** Limits that a person may change during a run; values in the unit the name ends with (flowLow: the flow tag's own unit). */
-export const limitNames = ['dpHighBar', 'dpHighHighBar', 'pressureHighBar', 'temperatureHighC', 'temperatureHighHighC', 'temperatureLowC', 'flowLow'] as const
+export const limitNames = [
+  'dpHighBar',
+  'dpHighHighBar',
+  'pressureHighBar',
+  'temperatureHighC',
+  'temperatureHighHighC',
+  'temperatureLowC',
+  'flowLow',
+] as const
 export type LimitName = (typeof limitNames)[number]
 
 /**

@@ -2,8 +2,23 @@ import { MonitorError } from './errors.ts'
 
 /** What a tag measures. */
 export const quantities = [
-  'pressure', 'differentialPressure', 'temperature', 'massFlow', 'volumeFlow', 'mass', 'level', 'speed', 'density',
-  'conductivity', 'ph', 'oxygen', 'dewPoint', 'output', 'setpoint', 'state', 'text',
+  'pressure',
+  'differentialPressure',
+  'temperature',
+  'massFlow',
+  'volumeFlow',
+  'mass',
+  'level',
+  'speed',
+  'density',
+  'conductivity',
+  'ph',
+  'oxygen',
+  'dewPoint',
+  'output',
+  'setpoint',
+  'state',
+  'text',
 ] as const
 export type Quantity = (typeof quantities)[number]
 
@@ -57,14 +72,41 @@ export const unitsOf: Record<Quantity, readonly Unit[]> = {
   text: [],
 }
 
+/** The plant unit a quantity is shown in; also the unit of the range of a tag that is logged as raw loop current. */
+export const plantUnit: Record<Quantity, Unit | null> = {
+  pressure: 'bar',
+  differentialPressure: 'bar',
+  temperature: 'degC',
+  massFlow: 'kg/h',
+  volumeFlow: 'mL/min',
+  mass: 'kg',
+  level: '%',
+  speed: 'rpm',
+  density: 'kg/m3',
+  conductivity: 'mS/cm',
+  ph: null,
+  oxygen: '%',
+  dewPoint: 'degC',
+  output: '%',
+  setpoint: null,
+  state: null,
+  text: null,
+}
+/** The unit of a tag's value once a raw loop current has been turned into one. */
+export const valueUnit = (tag: { readonly quantity: Quantity; readonly unit: Unit | null }): Unit | null =>
+  tag.unit === 'mA' ? plantUnit[tag.quantity] : tag.unit
+
 /** A value in its plant unit as SI (K, Pa, kg/s, m3/s ...). Unit null: the number as it is. */
-export const toSi = (value: number, unit: Unit | null): number => (unit === null ? value : units[unit].factor * value + units[unit].offset)
+export const toSi = (value: number, unit: Unit | null): number =>
+  unit === null ? value : units[unit].factor * value + units[unit].offset
 /** An SI value in a plant unit. */
-export const fromSi = (si: number, unit: Unit | null): number => (unit === null ? si : (si - units[unit].offset) / units[unit].factor)
+export const fromSi = (si: number, unit: Unit | null): number =>
+  unit === null ? si : (si - units[unit].offset) / units[unit].factor
 
 /** `toSi` of a unit given by name. Errors: CONFIG_RANGE for a unit the table does not hold. */
 export function unitNamed(name: string): Unit {
-  if (!Object.hasOwn(units, name)) throw new MonitorError('CONFIG_RANGE', `unknown unit '${name}'`, { hint: `one of ${Object.keys(units).join(', ')}` })
+  if (!Object.hasOwn(units, name))
+    throw new MonitorError('CONFIG_RANGE', `unknown unit '${name}'`, { hint: `one of ${Object.keys(units).join(', ')}` })
   return name as Unit
 }
 

@@ -1,0 +1,155 @@
+import type { AlarmChange, Occurrence } from '../alarms/occurrence.ts'
+import type { ForecastRecord } from '../fouling/watch.ts'
+import type { Interval } from '../growth/points.ts'
+import type { Action, AdviceReport, FlushPlan } from '../report.ts'
+import type { SegmentKind } from '../skid.ts'
+
+export interface AdviserState {
+  /** What stands advised for a segment with a deposit; '' for none. */
+  advised: Record<string, '' | 'watch' | 'flush' | 'change-filter' | 'stop-feed'>
+}
+
+export interface SegmentForAdvice {
+  readonly id: string
+  readonly kind: SegmentKind
+  readonly ratio: number | null
+  readonly growth: { readonly onset: Interval | null; readonly forecast: ForecastRecord | null; readonly raisedMs: number } | null
+}
+
+/** Computes the flush plan of the segments that need one; ratios of all. */
+export type Planner = (segments: readonly string[], ratios: Readonly<Record<string, number | null>>) => FlushPlan
+
+/**
+ * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare, at least, and a share of
+ * the time left, as a forecast far off is a wide one. Site choice under change control; common practice.
+ */
+export const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25 } as const
+
+/**
+ * When a flush should begin and what else is worth doing, as recommendations under the site's own procedure. A flush is advised before
+ * forecast.low − plan time − margin; until that is near the advice is to watch. Causes that no flush cures get their own check.
+ */
+export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
+  const s: AdviserState = saved ?? { advised: {} }
+
+  return {
+    state: s,
+    step(nowMs: number, segments: readonly SegmentForAdvice[]): AdviceReport[] {
+      const out: AdviceReport[] = []
+      for (const g of segments) {
+        const stands = s.advised[g.id] ?? ''
+        if (g.growth === null) {
+          if (stands !== '') s.advised[g.id] = ''
+          continue
+        }
+        if (g.kind === 'filter') {
+          if (stands === '')
+            out.push(say(nowMs, 'change-filter', [g.id], `${g.id}: filter is loading${until(g.growth.forecast)}`, null))
+          s.advised[g.id] = 'change-filter'
+          continue
+        }
+        if (stands === 'flush' || stands === 'stop-feed') continue
+        const f = g.growth.forecast
+        if (f !== null) {
+          const p = plan([g.id], Object.fromEntries(segments.map((x) => [x.id, x.ratio])))
+          const lastMs = f.lowMs - (minutesOf(p) + adviceSettings.marginMinutes) * 60_000
+          const lead = Math.max(adviceSettings.leadMinutes * 60_000, adviceSettings.leadShare * (lastMs - nowMs))
+          if (nowMs >= lastMs - lead) {
+            const when =
+              lastMs > nowMs
+                ? `best begun before ${iso(lastMs)}`
+                : `the time a flush takes is more than what is surely left before the limit; the limit may come first`
+            out.push(say(nowMs, 'flush', [g.id], `${g.id}: deposit grows${until(f)}; ${when}`, p))
+            s.advised[g.id] = 'flush'
+            continue
+          }
+        }
+        if (stands === '') {
+          out.push(
+            say(
+              nowMs,
+              'watch',
+              [g.id],
+              `${g.id}: a deposit has begun to grow${f === null ? '; too early to say how long is left' : until(f)}`,
+              null,
+            ),
+          )
+          s.advised[g.id] = 'watch'
+        }
+      }
+      return out
+    },
+
+    /** What an alarm that has just been raised calls for, beyond a flush. */
+    raised(change: AlarmChange, segments: readonly SegmentForAdvice[]): AdviceReport[] {
+      if (change.kind !== 'raised') return []
+      const o = change.occurrence
+      const action = actionFor(o)
+      if (action === null) return []
+      const segment = o.segment === null ? [] : [o.segment]
+      if (action === 'flush') {
+        const g = segments.find((x) => x.id === o.segment)
+        if (g === undefined || g.kind === 'filter' || g.growth === null || s.advised[g.id] === 'flush') return []
+        s.advised[g.id] = 'flush'
+        return [
+          say(
+            o.raisedMs,
+            'flush',
+            segment,
+            `${o.message}: the limit is reached`,
+            plan(segment, Object.fromEntries(segments.map((x) => [x.id, x.ratio]))),
+          ),
+        ]
+      }
+      return [say(o.raisedMs, action, segment, o.message, null)]
+    },
+  }
+}
+export type Adviser = ReturnType<typeof createAdviser>
+
+/** The check that a cause asks for (practice sections 1.4, 6, 7). Null: the deposit's own advice covers it. */
+function actionFor(o: Occurrence): Action | null {
+  switch (o.kind) {
+    case 'fouling':
+      return o.cause === 'composition'
+        ? 'check-flow'
+        : o.cause === 'blockage'
+          ? 'stop-feed'
+          : o.cause === 'back-pressure'
+            ? 'check-outlet'
+            : o.cause === 'ice'
+              ? 'stop-cooling'
+              : null
+    case 'dp-limit':
+      return o.priority === 'high' ? 'stop-feed' : 'flush'
+    case 'pressure-limit':
+      return 'check-outlet'
+    case 'exotherm':
+      return 'stop-feed'
+    case 'temperature-limit':
+      return o.priority === 'high' ? 'stop-feed' : 'check-cooling'
+    case 'feed-ratio':
+    case 'flow':
+      return 'check-flow'
+    case 'sensor':
+    case 'no-data':
+      return 'check-sensor'
+    case 'monitor':
+      return 'escalate'
+  }
+}
+
+const say = (nowMs: number, action: Action, segments: readonly string[], reason: string, plan: FlushPlan | null): AdviceReport => ({
+  at: iso(nowMs),
+  action,
+  segments,
+  reason,
+  plan,
+})
+const iso = (ms: number): string => new Date(ms).toISOString()
+const until = (f: ForecastRecord | null): string =>
+  f === null ? '' : `; ${f.limit} is met between ${iso(f.lowMs)} and ${iso(f.highMs)} (${Math.round(100 * f.level)} %)`
+/** Minutes from F0 to the end of F1 at least: with those the reagent is out and the deposit has stopped growing. */
+function minutesOf(plan: FlushPlan): number {
+  return plan.steps.filter((x) => x.id === 'F0' || x.id === 'F1').reduce((a, x) => a + (x.minutes ?? 10), 0)
+}

@@ -1,0 +1,320 @@
+import { type Bank, type BankEvent, type BankState, createBank } from '../bank/bank.ts'
+import { disturbances, type SegmentObservation } from '../bank/model.ts'
+import type { Layout } from '../derive/layout.ts'
+import { createObserver, type ObserveState, type SegmentStep } from '../derive/observe.ts'
+import type { Step } from '../derive/step.ts'
+import { forecastLimit } from '../growth/forecast.ts'
+import { fitOnset } from '../growth/onset.ts'
+import type { GrowthPoint, Interval, Noise } from '../growth/points.ts'
+import type { LimitName } from '../sequence.ts'
+import { createMode, type Mode, type ModeState } from './mode.ts'
+
+export interface BaselineRecord {
+  fromMs: number
+  toMs: number
+  dpPa: number
+  sigma: number
+  provisional: boolean
+  flowM3S: number | null
+  tempK: number | null
+}
+
+export interface ForecastRecord extends Interval {
+  readonly limit: LimitName
+}
+
+/** A deposit (or blockage) that stands in a segment. */
+interface Growth {
+  raisedMs: number
+  onset: Interval | null
+  /** Rise of ln ratio at the last fit of the onset; fitted once more at twice that, then left. */
+  riseAtFit: number
+  fits: number
+  points: GrowthPoint[]
+  peakLn: number
+  forecast: ForecastRecord | null
+  growthPerHour: number | null
+  lastForecastMs: number
+}
+
+interface SegmentWatch {
+  recent: number[]
+  last: number | null
+  max: number | null
+  growth: Growth | null
+  hindsight: Interval | null
+  window: { dpPa: number[]; flow: number[]; tempK: number[]; fromMs: number }
+  baselined: boolean
+  /** ln of the clean ΔP over the last ten minutes, newest last. */
+  cleanLn: number[]
+}
+
+export interface WatchState {
+  mode: ModeState
+  observer: ObserveState
+  bank: BankState | null
+  segments: SegmentWatch[]
+  history: { tMs: number; o: (SegmentObservation | null)[] }[]
+}
+
+export type WatchEvent =
+  | { readonly kind: 'bank'; readonly event: BankEvent; readonly onset: Interval | null; readonly ratio: number | null }
+  | { readonly kind: 'onset'; readonly segment: number; readonly onset: Interval }
+  | { readonly kind: 'forecast'; readonly segment: number; readonly forecast: ForecastRecord | null }
+  | { readonly kind: 'cleared'; readonly segment: number; readonly why: 'stopped' | 'fell back' }
+  | { readonly kind: 'baseline'; readonly segment: number; readonly baseline: BaselineRecord }
+
+export interface SegmentNow {
+  readonly ratio: number | null
+  readonly step: SegmentStep
+  readonly lnRatio: number | null
+  readonly whiteSd: number
+  readonly wanderSd: number
+}
+
+export interface WatchStep {
+  readonly mode: Mode
+  readonly now: SegmentNow[]
+  readonly events: WatchEvent[]
+}
+
+/** Steps: of history kept for an onset; in a baseline before it is final; averaged for the ratio shown; between forecasts. */
+const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 10, clean: 20, pointsKept: 480 }
+
+/**
+ * Fouling of every segment: production or not, resistance over clean, deposits with their onset and forecast, baselines. One call a
+ * detector step. `limits` says how high ΔP may go now, Pa; null where no limit is set.
+ */
+export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) {
+  const mode = createMode(layout, saved?.mode)
+  const observer = createObserver(layout, saved?.observer)
+  const bank: Bank = createBank(layout, stepMs, saved?.bank ?? undefined)
+  const seg = (): SegmentWatch => ({
+    recent: [],
+    last: null,
+    max: null,
+    growth: null,
+    hindsight: null,
+    window: { dpPa: [], flow: [], tempK: [], fromMs: 0 },
+    baselined: false,
+    cleanLn: [],
+  })
+  const watch: SegmentWatch[] = saved?.segments ?? layout.segments.map(seg)
+  let history = saved?.history ?? []
+
+  const noiseOf = (i: number): Noise => {
+    const n = bank.noise(i)
+    return {
+      wanderSd: n.wanderSd,
+      wanderTauS: disturbances.wanderTauH * 3600 * Math.min(1, stepMs / 30_000),
+      whiteSd: n.whiteSd,
+      stepS: stepMs / 1000,
+    }
+  }
+
+  function cleanPoints(i: number): GrowthPoint[] {
+    const out: GrowthPoint[] = []
+    for (const h of history) {
+      const o = h.o[i]
+      if (o != null) out.push({ tMs: h.tMs, lnRatio: bank.reread(i, o) })
+    }
+    return out
+  }
+
+  function begin(i: number, tMs: number): Growth {
+    const points = cleanPoints(i)
+    const onset = points.length === 0 ? null : fitOnset(points, noiseOf(i), points[0]!.tMs)
+    const rise = points.slice(-3).reduce((a, p) => a + p.lnRatio / 3, 0)
+    return {
+      raisedMs: tMs,
+      onset,
+      riseAtFit: Math.max(rise, 0.01),
+      fits: 1,
+      points,
+      peakLn: rise,
+      forecast: null,
+      growthPerHour: null,
+      lastForecastMs: 0,
+    }
+  }
+
+  /** Keeps the points of a long growth bounded: beyond the limit every other one of the older half goes. */
+  function thin(points: GrowthPoint[]): GrowthPoint[] {
+    if (points.length <= steps.pointsKept) return points
+    const half = points.length >> 1
+    return points.filter((_, j) => j >= half || j % 2 === 0)
+  }
+
+  function grow(
+    i: number,
+    g: Growth,
+    tMs: number,
+    ln: number,
+    limitPa: { name: LimitName; pa: number } | null,
+    events: WatchEvent[],
+  ): void {
+    g.points.push({ tMs, lnRatio: ln })
+    g.points = thin(g.points)
+    g.peakLn = Math.max(g.peakLn, ln)
+    const recent = g.points.slice(-3).reduce((a, p) => a + p.lnRatio, 0) / Math.min(3, g.points.length)
+    if (g.fits === 1 && recent > 2 * g.riseAtFit && g.onset !== null) {
+      const again = fitOnset(g.points, noiseOf(i), g.points[0]!.tMs)
+      g.fits = 2
+      if (again !== null) {
+        g.onset = again
+        events.push({ kind: 'onset', segment: i, onset: again })
+      }
+    }
+    if (tMs - g.lastForecastMs < steps.forecast * stepMs) return
+    g.lastForecastMs = tMs
+    const clean = watch[i]!.cleanLn
+    if (limitPa === null || g.onset === null || clean.length === 0) {
+      g.forecast = null
+      return
+    }
+    const cleanPa = Math.exp(clean.reduce((a, b) => a + b, 0) / clean.length)
+    const made = forecastLimit(g.points, noiseOf(i), g.onset, limitPa.pa / cleanPa, tMs)
+    g.growthPerHour = made === null ? null : made.growthPerHour
+    g.forecast =
+      made === null ? null : { limit: limitPa.name, atMs: made.atMs, lowMs: made.lowMs, highMs: made.highMs, level: made.level }
+    events.push({ kind: 'forecast', segment: i, forecast: g.forecast })
+  }
+
+  function clear(i: number, why: 'stopped' | 'fell back', events: WatchEvent[]): void {
+    const w = watch[i]!
+    if (w.growth === null) return
+    if (w.growth.onset !== null) w.hindsight = w.growth.onset
+    w.growth = null
+    events.push({ kind: 'cleared', segment: i, why })
+  }
+
+  function baseline(i: number, tMs: number, provisional: boolean, events: WatchEvent[]): void {
+    const w = watch[i]!
+    if (w.baselined || w.window.dpPa.length === 0) return
+    if (!provisional) w.baselined = true
+    bank.setBaseline(i)
+    const n = bank.noise(i)
+    events.push({
+      kind: 'baseline',
+      segment: i,
+      baseline: {
+        fromMs: w.window.fromMs,
+        toMs: tMs,
+        dpPa: median(w.window.dpPa),
+        sigma: Math.hypot(n.whiteSd, n.wanderSd),
+        provisional,
+        flowM3S: w.window.flow.length === 0 ? null : median(w.window.flow),
+        tempK: w.window.tempK.length === 0 ? null : median(w.window.tempK),
+      },
+    })
+  }
+
+  return {
+    /** Live view of what stands in a segment; read only. */
+    segment: (i: number): Readonly<SegmentWatch> => watch[i]!,
+    suspicion: bank.suspicion,
+    noise: bank.noise,
+
+    step(step: Step, limits: readonly ({ name: LimitName; pa: number } | null)[]): WatchStep {
+      const m = mode.step(step)
+      const events: WatchEvent[] = []
+      if (m.rests) observer.rest(step)
+      if (m.stops) {
+        layout.segments.forEach((_, i) => {
+          clear(i, 'stopped', events)
+          watch[i]!.baselined = false
+          watch[i]!.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
+          watch[i]!.recent = []
+        })
+        bank.restart()
+        history = []
+      }
+      const segs = observer.step(step, m.production)
+      const observations = segs.map((x) => (m.production && step.seen > 0 ? x.observation : null))
+      if (!m.production || step.seen === 0)
+        return { mode: m, now: segs.map((x, i) => ({ ratio: null, step: x, lnRatio: null, ...bank.noise(i) })), events }
+      const endMs = step.tMs + stepMs / 2
+      history.push({ tMs: step.tMs, o: observations })
+      if (history.length > steps.history) history.shift()
+      const out = bank.step(observations, m.armed, step.gapSteps)
+
+      for (const e of out.events) {
+        if (e.kind === 'deposit' || e.kind === 'blockage') {
+          baseline(e.segment, endMs, true, events)
+          watch[e.segment]!.growth = begin(e.segment, endMs)
+          const g = watch[e.segment]!.growth!
+          watch[e.segment]!.hindsight = g.onset
+          events.push({ kind: 'bank', event: e, onset: g.onset, ratio: Math.exp(g.peakLn) })
+        } else events.push({ kind: 'bank', event: e, onset: null, ratio: null })
+      }
+
+      const now = out.segments.map((b, i): SegmentNow => {
+        const w = watch[i]!
+        const o = observations[i] ?? null
+        if (o === null || b.lnRatio === null) return { ratio: null, step: segs[i]!, ...b }
+        const started = out.events.some((e) => (e.kind === 'deposit' || e.kind === 'blockage') && e.segment === i)
+        const ln = started ? bank.reread(i, o) : b.lnRatio
+        w.recent = started ? [ln] : [...w.recent, ln].slice(-steps.shown)
+        const ratio = Math.exp(w.recent.reduce((a, x) => a + x, 0) / w.recent.length)
+        w.last = ratio
+        if (m.armed) w.max = Math.max(w.max ?? 0, ratio)
+        w.cleanLn = [...w.cleanLn, Math.log(o.dpPa) - ln].slice(-steps.clean)
+        if (w.growth !== null) {
+          if (!started) grow(i, w.growth, step.tMs, ln, limits[i] ?? null, events)
+          if (hasFallenBack(i, w)) {
+            const fresh = layout.segments[i]!.spec.kind === 'filter'
+            clear(i, 'fell back', events)
+            bank.readmit(i, fresh)
+            w.recent = []
+            if (fresh) {
+              w.baselined = false
+              w.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
+            }
+          }
+        } else learnBaseline(i, w, segs[i]!, step, m, endMs, events)
+        return { ratio, step: segs[i]!, lnRatio: ln, whiteSd: b.whiteSd, wanderSd: b.wanderSd }
+      })
+      return { mode: m, now, events }
+    },
+
+    save: (): WatchState =>
+      structuredClone({ mode: mode.state, observer: observer.state, bank: bank.save(), segments: watch, history }),
+  }
+
+  function learnBaseline(
+    i: number,
+    w: SegmentWatch,
+    x: SegmentStep,
+    step: Step,
+    m: Mode,
+    endMs: number,
+    events: WatchEvent[],
+  ): void {
+    if (w.baselined) return
+    if (w.window.dpPa.length === 0) w.window.fromMs = step.tMs - stepMs / 2
+    if (x.dpPa !== null) w.window.dpPa.push(x.dpPa)
+    if (x.volFlowM3S !== null) w.window.flow.push(x.volFlowM3S)
+    if (x.tempK !== null) w.window.tempK.push(x.tempK)
+    if (!m.armed) return
+    if (w.window.dpPa.length === steps.provisional) baseline(i, endMs, true, events)
+    if (w.window.dpPa.length >= steps.baseline) baseline(i, endMs, false, events)
+  }
+
+  /** The resistance came down: a filter that was changed, a deposit that let go. Six steps must agree. */
+  function hasFallenBack(i: number, w: SegmentWatch): boolean {
+    const g = w.growth!
+    if (g.points.length < 6) return false
+    const level = median(g.points.slice(-6).map((p) => p.lnRatio))
+    const n = bank.noise(i)
+    const sigma = Math.hypot(n.whiteSd, n.wanderSd)
+    const floor = layout.segments[i]!.spec.kind === 'filter' ? Math.max(0.35 * g.peakLn, 3 * sigma) : Math.max(0.012, 3 * sigma)
+    return g.peakLn > 2 * floor && level < floor
+  }
+}
+export type Watch = ReturnType<typeof createWatch>
+
+function median(values: readonly number[]): number {
+  const v = [...values].sort((a, b) => a - b)
+  const h = v.length >> 1
+  return v.length % 2 === 1 ? v[h]! : (v[h - 1]! + v[h]!) / 2
+}

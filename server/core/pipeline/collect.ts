@@ -1,0 +1,110 @@
+import { alarmReport, type Occurrence } from '../alarms/occurrence.ts'
+import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
+import { gradeOf, reasons } from '../quality/tag-rules.ts'
+import type { AdviceReport, BaselineReport, ForecastReport, Report, SegmentReport, TagReport, TimelinePoint } from '../report.ts'
+import type { Skid } from '../skid.ts'
+import { barFromPa, cFromK, mlMinFromM3s } from '../units.ts'
+import type { PipelineEvent } from './events.ts'
+import { onsetReport, type Pipeline } from './pipeline.ts'
+
+const iso = (ms: number): string => new Date(ms).toISOString()
+
+export const forecastReport = (f: ForecastRecord | null): ForecastReport | null =>
+  f === null ? null : { limit: f.limit, at: iso(f.atMs), low: iso(f.lowMs), high: iso(f.highMs), level: f.level }
+
+export const baselineReport = (b: BaselineRecord): BaselineReport => ({
+  from: iso(b.fromMs),
+  to: iso(b.toMs),
+  dpBar: barFromPa(b.dpPa),
+  sigma: b.sigma,
+  provisional: b.provisional,
+  flowMlMin: b.flowM3S === null ? null : mlMinFromM3s(b.flowM3S),
+  tempC: b.tempK === null ? null : cFromK(b.tempK),
+})
+
+/** Folds the pipeline's events into the report. Holds what the report holds: alarms, advice, baselines and a point each 600 s. */
+export function createCollector(skid: Skid) {
+  const alarms = new Map<number, Occurrence>()
+  const baselines = new Map<string, BaselineRecord[]>()
+  const advice: AdviceReport[] = []
+  const timeline: TimelinePoint[] = []
+  const notes: string[] = []
+  return {
+    take(events: readonly PipelineEvent[]): void {
+      for (const e of events) {
+        if (e.kind === 'alarm') alarms.set(e.change.occurrence.id, e.change.occurrence)
+        else if (e.kind === 'advice') advice.push(e.advice)
+        else if (e.kind === 'note') notes.push(`${iso(e.tMs)} ${e.text}`)
+        else if (e.kind === 'timeline')
+          for (const p of e.points)
+            timeline.push({ at: iso(e.tMs), segment: p.segment, ratio: p.ratio, forecast: forecastReport(p.forecast) })
+        else if (e.kind === 'baseline') {
+          const list = baselines.get(e.segment) ?? []
+          // A provisional baseline is replaced by the one that follows it from the same start.
+          if (list.at(-1)?.provisional && list.at(-1)!.fromMs === e.baseline.fromMs) list.pop()
+          list.push(e.baseline)
+          baselines.set(e.segment, list)
+        }
+      }
+    },
+
+    report(pipeline: Pipeline, extraNotes: readonly string[] = []): Report {
+      const view = pipeline.view()
+      const g = view.grid
+      const tags = skid.tags.map((t, i): TagReport => {
+        const count = { good: 0, uncertain: 0, bad: 0 }
+        const why: Record<string, number> = {}
+        reasons.forEach((r, j) => {
+          const n = g.judge.counts[i * reasons.length + j]!
+          count[gradeOf[r]] += n
+          if (n > 0 && r !== 'good') why[r] = n
+        })
+        return { tag: t.tag, samples: count.good + count.uncertain + count.bad, ...count, reasons: why }
+      })
+      const segments = skid.segments.map((spec, i): SegmentReport => {
+        const w = view.segment(i)
+        const all = (baselines.get(spec.id) ?? []).map(baselineReport)
+        const onset = w.growth?.onset ?? w.hindsight
+        return {
+          segment: spec.id,
+          baseline: all.at(-1) ?? null,
+          baselines: all,
+          ratio: { last: w.last, max: w.max },
+          onset: onset === null ? null : onsetReport(onset),
+          growthPerHour: w.growth?.growthPerHour ?? null,
+          forecast: forecastReport(w.growth?.forecast ?? null),
+        }
+      })
+      return {
+        report: 1,
+        run: {
+          skid: skid.skid,
+          from: g.firstMs < 0 ? null : iso(g.firstMs),
+          to: g.lastRowMs < 0 ? null : iso(g.lastRowMs),
+          scans: g.scans,
+          tags,
+          rows: { total: g.rows, late: g.lateRows, repeated: g.repeated, outOfOrder: g.outOfOrder, badTime: g.badTime },
+          phaseInferred: view.inferred,
+        },
+        segments,
+        alarms: [...alarms.values()].sort((a, b) => a.id - b.id).map(alarmReport),
+        advice,
+        timeline,
+        notes: [...extraNotes, ...notes],
+      }
+    },
+  }
+}
+export type Collector = ReturnType<typeof createCollector>
+
+/** The report as JSON text: numbers to 9 significant digits, the same text for the same report. */
+export function reportText(report: Report, indent = 1): string {
+  return `${JSON.stringify(report, (_key, value: unknown) => (typeof value === 'number' ? round9(value) : value), indent)}\n`
+}
+
+/** A number to 9 significant digits; −0 becomes 0. */
+export function round9(value: number): number | null {
+  if (!Number.isFinite(value)) return null
+  const r = Number(value.toPrecision(9))
+  return r === 0 ? 0 : r
+}

@@ -1,0 +1,38 @@
+import type { AlarmRecord } from '../alarms/alarm-state.ts'
+import type { AlarmChange } from '../alarms/occurrence.ts'
+import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
+import type { Interval } from '../growth/points.ts'
+import type { AdviceReport } from '../report.ts'
+import type { Act } from '../sequence.ts'
+
+/** What the pipeline says while the sequence goes through it, in order. Shells store, publish and fold these; they add nothing. */
+export type PipelineEvent =
+  | { readonly kind: 'alarm'; readonly change: AlarmChange }
+  | { readonly kind: 'transition'; readonly record: AlarmRecord }
+  | { readonly kind: 'baseline'; readonly segment: string; readonly baseline: BaselineRecord }
+  | { readonly kind: 'onset'; readonly segment: string; readonly onset: Interval }
+  | { readonly kind: 'advice'; readonly tMs: number; readonly advice: AdviceReport }
+  | { readonly kind: 'timeline'; readonly tMs: number; readonly points: readonly TimelineEntry[] }
+  | { readonly kind: 'note'; readonly tMs: number; readonly text: string }
+  | { readonly kind: 'act'; readonly act: Act }
+  | {
+      readonly kind: 'step'
+      readonly tMs: number
+      readonly production: boolean
+      readonly inferred: boolean
+      readonly segments: readonly StepEntry[]
+    }
+
+export interface TimelineEntry {
+  readonly segment: string
+  readonly ratio: number | null
+  readonly forecast: ForecastRecord | null
+}
+
+/** A segment in one detector step, for trends. */
+export interface StepEntry {
+  readonly ratio: number | null
+  readonly dpBar: number | null
+  readonly flowMlMin: number | null
+  readonly tempC: number | null
+}

@@ -1,0 +1,191 @@
+import type { Signal } from '../alarms/occurrence.ts'
+import type { Layout } from '../derive/layout.ts'
+import { why } from '../quality/judge.ts'
+import { reasons } from '../quality/tag-rules.ts'
+import type { Scan } from '../scan/grid.ts'
+
+export interface InstrumentState {
+  /** By tag: since when its readings fail, are missing, stand still, ms; −1 while not. */
+  failingMs: number[]
+  missingMs: number[]
+  frozenMs: number[]
+  lastReason: number[]
+  lastRowMs: number
+  /** Smoothed time between scans with rows, ms. */
+  rowGapMs: number
+  badTime: number
+  lateRows: number
+  lateSinceMs: number
+}
+
+/** How long before a diagnostic alarm, s: failing or missing; standing still, by whether it is a flow. Default values, common practice. */
+const after = { failing: 30, missing: 60, frozen: 420, frozenFlow: 90, noData: 10, lateRows: 20 }
+
+const none = { for: [], against: [], notExcluded: [] }
+
+/**
+ * Health of instruments and data: a tag that fails, is missing or stands still; a log that stopped; a clock that jumped. Only tags that
+ * something is computed from can alarm. A tag that recovers clears after 30 s.
+ */
+export function createInstruments(layout: Layout, saved?: InstrumentState) {
+  const { skid } = layout
+  const n = skid.tags.length
+  const scanMs = skid.scanSeconds * 1000
+  const fill = () => new Array<number>(n).fill(-1)
+  const s: InstrumentState = saved ?? {
+    failingMs: fill(),
+    missingMs: fill(),
+    frozenMs: fill(),
+    lastReason: fill(),
+    lastRowMs: -1,
+    rowGapMs: 0,
+    badTime: 0,
+    lateRows: 0,
+    lateSinceMs: -1,
+  }
+  const used = usedTags(layout)
+  const failing = new Set([why['out-of-range'], why['loop-failure'], why['open-circuit'], why['source-bad'], why.unreadable])
+
+  return {
+    state: s,
+    scan(scan: Scan, tMs: number, counts: { badTime: number; lateRows: number }, emit: (s: Signal) => void): void {
+      if (scan.rows > 0) {
+        if (s.lastRowMs >= 0) {
+          const gap = Math.min(tMs - s.lastRowMs, 60_000)
+          s.rowGapMs = s.rowGapMs === 0 ? gap : s.rowGapMs + (gap - s.rowGapMs) / 16
+        }
+        s.lastRowMs = tMs
+      }
+      const limitMs = Math.max(after.noData * 1000, 5 * s.rowGapMs, 10 * scanMs)
+      const silent = s.lastRowMs >= 0 && tMs - s.lastRowMs > limitMs
+      emit({
+        key: 'no-data',
+        tMs,
+        over: silent,
+        kind: 'no-data',
+        segment: null,
+        tag: null,
+        priority: 'medium',
+        value: s.lastRowMs < 0 ? null : (tMs - s.lastRowMs) / 1000,
+        limit: limitMs / 1000,
+        unit: 's',
+        message: 'No readings from the logger: the monitor is blind, use the local panel',
+        cause: null,
+        onset: null,
+        detector: 'age of data',
+        evidence: none,
+        onDelayS: 0,
+        offDelayS: 0,
+      })
+      for (let t = 0; t < n; t++) if (used[t]!) tag(t, scan, tMs, silent, emit)
+      monitorClock(tMs, counts, emit)
+    },
+  }
+
+  function tag(t: number, scan: Scan, tMs: number, silent: boolean, emit: (s: Signal) => void): void {
+    const spec = skid.tags[t]!
+    const flaw = scan.flaw[t]!
+    const fresh = scan.used[t]! > 0 && scan.held[t] === 0
+    const mark = (list: number[], on: boolean, off: boolean) => {
+      if (on && list[t]! < 0) list[t] = tMs
+      else if (off) list[t] = -1
+    }
+    const isFailing = failing.has(flaw)
+    if (isFailing || flaw === why.frozen) s.lastReason[t] = flaw
+    mark(s.failingMs, isFailing && !fresh, fresh && !isFailing)
+    mark(s.frozenMs, flaw === why.frozen, fresh && flaw !== why.frozen)
+    mark(s.missingMs, !silent && scan.rows > 0 && flaw === why.missing && !fresh, fresh)
+    const flow = spec.quantity === 'massFlow' || spec.quantity === 'volumeFlow'
+    // Readings must stand still for the quality stage's own time before they are called frozen; that time has passed already.
+    const frozenS = flow ? after.frozenFlow : after.frozen
+    const grid = skid.scanSeconds
+    const over = (since: number, seconds: number) =>
+      since >= 0 && tMs - since >= Math.min(seconds, 60 * grid * (seconds > 60 ? 7 : 1)) * 1000
+    const fails = over(s.failingMs[t]!, after.failing)
+    const frozen = over(s.frozenMs[t]!, frozenS)
+    const seg = layout.segments.find((g) => touchesTag(layout, g, t))?.spec.id ?? null
+    const base = {
+      tMs,
+      segment: seg,
+      tag: spec.tag,
+      value: null,
+      limit: null,
+      unit: null,
+      cause: 'sensor' as const,
+      onset: null,
+      evidence: none,
+      onDelayS: 0,
+      offDelayS: Math.min(30, 30 * grid),
+    }
+    emit({
+      ...base,
+      key: `sensor:${spec.tag}:reading`,
+      over: fails || frozen,
+      under: !fails && !frozen && fresh,
+      kind: 'sensor',
+      priority: 'medium',
+      detector: frozen && !fails ? 'frozen' : 'quality',
+      message: () =>
+        `${spec.tag}: ${frozen && !fails ? 'reading stands still while liquid flows' : (reasons[s.lastReason[t]!] ?? 'reading fails').replaceAll('-', ' ')}; nothing is computed from it`,
+    })
+    const gone = over(s.missingMs[t]!, after.missing)
+    emit({
+      ...base,
+      key: `no-data:${spec.tag}`,
+      over: gone,
+      under: !gone && fresh,
+      kind: 'no-data',
+      priority: 'low',
+      detector: 'age of data',
+      message: () => `${spec.tag}: no readings while the rest of the log goes on`,
+    })
+  }
+
+  function monitorClock(tMs: number, counts: { badTime: number; lateRows: number }, emit: (s: Signal) => void): void {
+    const jumped = counts.badTime > s.badTime
+    const late = counts.lateRows - s.lateRows
+    s.badTime = counts.badTime
+    s.lateRows = counts.lateRows
+    if (late > 0 && s.lateSinceMs < 0) s.lateSinceMs = tMs
+    if (late === 0) s.lateSinceMs = -1
+    const lagging = s.lateSinceMs >= 0 && (tMs - s.lateSinceMs) / scanMs >= after.lateRows
+    if (!jumped && !lagging && counts.badTime === 0 && counts.lateRows === 0) return
+    emit({
+      key: 'monitor:clock',
+      tMs,
+      over: jumped || lagging,
+      kind: 'monitor',
+      segment: null,
+      tag: null,
+      priority: 'medium',
+      value: null,
+      limit: null,
+      unit: null,
+      message: jumped
+        ? 'A row carried a time far from its neighbours: check the logger’s clock'
+        : 'Rows keep arriving after their scan has closed: check clocks and link',
+      cause: null,
+      onset: null,
+      detector: 'clock',
+      evidence: none,
+      onDelayS: 0,
+      offDelayS: 30,
+    })
+  }
+}
+export type Instruments = ReturnType<typeof createInstruments>
+
+function touchesTag(layout: Layout, g: Layout['segments'][number], t: number): boolean {
+  return (
+    g.dpTag === t ||
+    g.inTag === t ||
+    (g.tapOut !== null && layout.taps[g.tapOut]!.tag === t) ||
+    g.temperatures.includes(t) ||
+    g.streams.some((i) => layout.streams[i]!.tag === t) ||
+    g.coolant === t
+  )
+}
+
+/** Tags that something is computed from. */
+export const usedTags = (layout: Layout): boolean[] =>
+  layout.skid.tags.map((_, t) => layout.segments.some((g) => touchesTag(layout, g, t)))
