@@ -1,6 +1,5 @@
-import { unitsOf } from '../core/units.ts'
+import { plantUnit, unitsOf } from '../core/units.ts'
 import { meant } from './nearest.ts'
-import { mAUnit } from './plant-unit.ts'
 import { keyText, type Path, quote } from './problem.ts'
 import type { SegmentFile, SkidFile, StreamFile, TagFile } from './skid-shape.ts'
 import type { Walk } from './walk.ts'
@@ -47,7 +46,7 @@ function checkTag(tag: TagFile, at: Path, walk: Walk): void {
       walk.say(
         [...at, 'unit'],
         `unit mA without a range`,
-        `range: the ${mAUnit[quantity] ?? 'values'} at 4 and 20 mA`,
+        `range: the ${plantUnit[quantity] ?? 'values'} at 4 and 20 mA`,
         'add range: [low, high]',
       )
     if (quantity === 'text' && walk.has([...at, 'range']))
@@ -58,21 +57,33 @@ function checkTag(tag: TagFile, at: Path, walk: Walk): void {
     walk.say([...at, 'range'], `range runs from ${low} to ${high}`, 'low below high', low > high ? `[${high}, ${low}]` : null)
 }
 
+/** The cross-section is round (diameterMm), a ring (with coreMm) or rectangular (widthMm and depthMm). */
 function checkChannel(segment: SegmentFile, at: Path, walk: Walk): void {
-  const { diameterMm, coilDiameterMm, roughnessUm } = segment.channel ?? {}
-  if (diameterMm === undefined) return
-  if (coilDiameterMm !== undefined && coilDiameterMm <= diameterMm)
+  const { diameterMm, widthMm, depthMm, coreMm, coilDiameterMm, roughnessUm } = segment.channel ?? {}
+  const gives = (key: string) => walk.has([...at, key])
+  for (const [side, other] of [
+    ['widthMm', 'depthMm'],
+    ['depthMm', 'widthMm'],
+  ] as const) {
+    if (gives(side) && !gives(other))
+      walk.say([...at, side], `${side} without ${other}`, 'both sides of a rectangular channel', `add ${other}`)
+    if (gives(side) && gives('diameterMm'))
+      walk.say([...at, side], `${side} beside diameterMm`, 'diameterMm, or widthMm with depthMm', 'remove one of them')
+  }
+  if (gives('coreMm') && !gives('diameterMm'))
+    walk.say([...at, 'coreMm'], 'coreMm without diameterMm', 'the bore around the core', 'add diameterMm')
+  const bore = diameterMm ?? (widthMm !== undefined && depthMm !== undefined ? Math.min(widthMm, depthMm) : undefined)
+  if (bore === undefined) return
+  if (coreMm !== undefined && coreMm >= bore)
+    walk.say([...at, 'coreMm'], `a core of ${coreMm} mm in a bore of ${bore} mm`, 'a core thinner than its bore (mm)')
+  if (coilDiameterMm !== undefined && coilDiameterMm <= bore)
     walk.say(
       [...at, 'coilDiameterMm'],
-      `a coil of ${coilDiameterMm} mm for a bore of ${diameterMm} mm`,
+      `a coil of ${coilDiameterMm} mm for a bore of ${bore} mm`,
       'a coil wider than its bore (mm)',
     )
-  if (roughnessUm !== undefined && roughnessUm >= diameterMm * 500)
-    walk.say(
-      [...at, 'roughnessUm'],
-      `a roughness of ${roughnessUm} µm in a bore of ${diameterMm} mm`,
-      'less than half the bore (µm)',
-    )
+  if (roughnessUm !== undefined && roughnessUm >= bore * 500)
+    walk.say([...at, 'roughnessUm'], `a roughness of ${roughnessUm} µm in a bore of ${bore} mm`, 'less than half the bore (µm)')
 }
 
 function checkLimits(segment: SegmentFile, at: Path, streams: ReadonlyMap<string, StreamFile>, walk: Walk): void {
@@ -97,7 +108,7 @@ function checkLimits(segment: SegmentFile, at: Path, streams: ReadonlyMap<string
     walk.say([...here, 'of'], `feedRatio of ${quote(ratio.of[0])} over itself`, 'two streams')
   ratio.of?.forEach((name, i) => {
     const stream = name === undefined ? undefined : streams.get(name)
-    if (name === undefined || stream === undefined) return
+    if (name === undefined || stream === undefined || !segment.streams?.includes(name)) return
     const index = [...streams.keys()].indexOf(name)
     if (stream.reagent === undefined && !walk.has(['streams', index, 'reagent'])) {
       const path = [...here, 'of', i]

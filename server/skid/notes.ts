@@ -1,5 +1,5 @@
-import type { SegmentSpec, Skid, StreamSpec } from '../core/skid.ts'
-import { mAUnit } from './plant-unit.ts'
+import type { ChannelSpec, SegmentSpec, Skid, StreamSpec } from '../core/skid.ts'
+import { valueUnit } from '../core/units.ts'
 
 /** What the tool leaves out or assumes with this file, in plain words, in file order. None of it is a mistake. */
 export function notesOn(skid: Skid): string[] {
@@ -14,9 +14,7 @@ export function notesOn(skid: Skid): string[] {
     notes.push(`no range on ${open.map((tag) => tag.tag).join(', ')}: readings are not checked against the instrument's range`)
   for (const tag of skid.tags) {
     if (tag.unit === 'mA' && tag.range !== null)
-      notes.push(
-        `tag ${tag.tag}: its range ${tag.range.join(' to ')} is taken in ${mAUnit[tag.quantity] ?? 'its unit'}, at 4 and 20 mA`,
-      )
+      notes.push(`tag ${tag.tag}: its range ${tag.range.join(' to ')} is taken in ${valueUnit(tag) ?? 'its unit'}, at 4 and 20 mA`)
   }
   for (const stream of skid.streams) for (const note of streamNotes(stream, skid)) notes.push(`stream ${stream.id}: ${note}`)
   for (const segment of skid.segments) for (const note of segmentNotes(segment, skid)) notes.push(`segment ${segment.id}: ${note}`)
@@ -47,12 +45,11 @@ function segmentNotes(segment: SegmentSpec, skid: Skid): string[] {
   }
   if (segment.coolantTemperature === null && segment.kind === 'reactor')
     notes.push('no coolantTemperature: a temperature excursion cannot be told from a warmer coolant')
-  const sized = channel !== null && channel.diameterMm !== null && channel.lengthM !== null
-  if (!sized)
+  const mlFromChannel = channel === null ? null : channelMl(channel)
+  if (mlFromChannel === null)
     notes.push(
-      'no diameterMm and lengthM of the channel: no clean pressure drop from geometry (it is fitted on the baseline) and no deposit thickness',
+      'no bore and length of the channel: no clean pressure drop from geometry (it is fitted on the baseline) and no deposit thickness',
     )
-  const mlFromChannel = sized ? channelMl(channel.diameterMm!, channel.lengthM!, channel.parallel) : null
   if (segment.volumeMl === null)
     notes.push(
       mlFromChannel === null
@@ -83,6 +80,12 @@ function segmentNotes(segment: SegmentSpec, skid: Skid): string[] {
   return notes
 }
 
-/** Volume of `parallel` round bores, mL: π/4 · d² · L · n, d in mm and L in m (mm² · m = mL). */
-const channelMl = (diameterMm: number, lengthM: number, parallel: number): number =>
-  (Math.PI / 4) * diameterMm ** 2 * lengthM * parallel
+/**
+ * Volume of `parallel` bores, mL, or null without bore or length: cross-section [mm²] · length [m] · n (mm² · m = mL), the cross-section
+ * π/4 · (d² − core²) or width · depth.
+ */
+function channelMl({ diameterMm, widthMm = null, depthMm = null, coreMm, lengthM, parallel }: ChannelSpec): number | null {
+  const rectangle = widthMm !== null && depthMm !== null ? widthMm * depthMm : null
+  const section = diameterMm !== null ? (Math.PI / 4) * (diameterMm ** 2 - (coreMm ?? 0) ** 2) : rectangle
+  return section === null || lengthM === null ? null : section * lengthM * parallel
+}

@@ -67,7 +67,7 @@ function numberHint(value: string, plain: boolean): string | null {
   if (decimal.test(value)) return plain ? null : `without quotes: ${value}`
   if (/^[+-]?\d+,\d+$/.test(value)) return `with a decimal point: ${value.replace(',', '.')}`
   if (/^[+-]?0\d+(\.\d*)?$/.test(value)) return `without leading zeros (some readers take ${value} as octal)`
-  const first = /^([+-]?\d+(?:\.\d+)?)\s*[^\d\s.,:-]/.exec(value)
+  const first = /^([+-]?\d+(?:\.\d+)?)\s*(?!x)[\p{L}°%µ]/u.exec(value)
   return first === null ? null : `the number alone (${first[1]}); the key carries the unit`
 }
 
@@ -151,13 +151,7 @@ export function group<F extends Record<string, Reader<unknown>>>(
         const hint =
           home !== undefined ? `'${name}' belongs under '${home}'` : near !== null ? `did you mean '${near}'?` : meant(name, keys)
         const where = path.length === 0 ? '' : ` in ${keyText(path)}`
-        walk.say(
-          [...path, name],
-          `unknown key ${quote(name)}${where}`,
-          `one of ${keys.join(', ')}`,
-          hint,
-          pair.key,
-        )
+        walk.say([...path, name], `unknown key ${quote(name)}${where}`, `one of ${keys.join(', ')}`, hint, pair.key)
         if (home === undefined && near !== null) pairs.set(near, pair)
       }
       const values: Record<string, unknown> = {}

@@ -107,6 +107,10 @@ function dpSource({ dpTag, pressureIn, pressureOut }: SegmentFile): DpSource {
 
 const channelSpec = (channel: NonNullable<SegmentFile['channel']>): ChannelSpec => ({
   diameterMm: channel.diameterMm ?? null,
+  widthMm: channel.widthMm ?? null,
+  depthMm: channel.depthMm ?? null,
+  coreMm: channel.coreMm ?? null,
+  bends: channel.bends ?? 0,
   lengthM: channel.lengthM ?? null,
   parallel: channel.parallel ?? 1,
   roughnessUm: channel.roughnessUm ?? 0,

@@ -80,8 +80,13 @@ const stream = group(
   { required: ['id', 'flowTag'] },
 )
 
+/** Keys beyond the contract's: `widthMm` with `depthMm` for a rectangular channel, `coreMm` for a ring, `bends`. */
 const channel = group({
   diameterMm: mm(),
+  widthMm: mm(),
+  depthMm: mm(),
+  coreMm: mm(),
+  bends: number({ min: 0, max: 100_000, whole: true }),
   lengthM: number({ above: 0, max: 10_000, unit: 'metres' }),
   parallel: number({ min: 1, max: 10_000, whole: true }),
   roughnessUm: number({ min: 0, max: 10_000, unit: 'micrometres' }),
