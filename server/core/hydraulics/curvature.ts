@@ -9,12 +9,13 @@ export const coilCriticalReynolds = (diameterM: number, coilDiameterM: number): 
   2300 * (1 + 8.6 * (diameterM / coilDiameterM) ** 0.45)
 
 /**
- * Laminar friction in a coil over that in a straight tube [-]: 1/(1 - [1 - (11.6/De)^0.45]^2.2), 1 below De 11.6.
+ * Laminar friction in a coil over that in a straight tube [-]: 1/(1 - [1 - (11.6/De)^0.45]^(1/0.45)), 1 below De 11.6 (the last
+ * exponent is often printed 2.2, up to 0.9 % higher).
  * De up to 2000; other published curves lie up to 48 % above it near the critical Re.
  * Source: C. M. White, Proc. R. Soc. Lond. A 123 (1929) 645.
  */
 export function whiteCoilRatio(de: number): number {
-  return de <= 11.6 ? 1 : 1 / (1 - (1 - (11.6 / de) ** 0.45) ** 2.2)
+  return de <= 11.6 ? 1 : 1 / (1 - (1 - (11.6 / de) ** 0.45) ** (1 / 0.45))
 }
 
 /**
