@@ -38,10 +38,10 @@ interface Node {
  *
  * W is the raggedness of growth: a clock that wanders with variance cv²·T per time, followed by a Kalman filter together with the
  * clean level c and the wander of the measurement. The interval holds the doubt about all of them and the ragged growth still to
- * come. A slough-off sets the clock back by an unknown amount, so growth goes on from there by the same law.
+ * come. After a slough-off growth goes on either at the pace of the film that is left or at the pace it had; both are weighed.
  * limitRatio  the ratio over clean at which the limit is met, at the flow and temperature of now.
  * Null when the limit ratio is not above 1 and not met, when there are fewer than 4 points since the onset, when the growth does not
- * stand out of its noise by 2 sd, or when the median lies further ahead than `farthest` times the time grown so far (20).
+ * stand out of its noise by 2 sd or is below `leastPart` of the way in ln ratio (2 %), or when the median lies further ahead than `farthest` times the time grown so far (20).
  * At or over the limit already (mean of the last points): now, with an interval of no length.
  */
 export function forecastLimit(
@@ -60,18 +60,21 @@ export function forecastLimit(
   const lnLimit = Math.log(limitRatio)
   const sloughs = findSloughs(grown, noise, settings.sloughSigmas, settings.sloughLeast)
   const clean = binPoints(seen, evenEdges(seen[0]!.tMs, Math.max(seen[0]!.tMs, onset.lowMs), 4), stepMs)
-  const bins = binPoints(grown, growthEdges(grownFrom, grown[grown.length - 1]!.tMs, sloughs, settings.forecastMeans), stepMs)
+  // a step that straddles a slough-off belongs to neither side; its mean would look like ragged growth
+  const whole = grown.filter((p) => sloughs.every((f) => p.tMs < f.tMs - 2.5 * stepMs || p.tMs > f.tMs + 1.5 * stepMs))
+  if (whole.length < 4) return null
+  const bins = binPoints(whole, growthEdges(grownFrom, whole[whole.length - 1]!.tMs, sloughs, settings.forecastMeans), stepMs)
   const steps = wanderSteps([...clean, ...bins], noise)
   const base = cleanBelief(clean, steps)
   const last = bins[bins.length - 1]!
-  const recent = grown.slice(-Math.min(4, grown.length))
+  const recent = whole.slice(-4)
   const nowLn = recent.reduce((sum, p) => sum + p.lnRatio, 0) / recent.length
   const lastSd = Math.hypot(steps[steps.length - 1]!.size, Math.sqrt(steps[steps.length - 1]!.white), Math.sqrt(base.cc))
   if (nowLn >= lnLimit) {
     return { atMs: nowMs, lowMs: nowMs, highMs: nowMs, level: settings.forecastLevel, growthPerHour: localGrowth(bins, nowLn) }
   }
   const rise = last.lnRatio - base.c
-  if (!(lnLimit - base.c > 0.01) || rise < 2 * lastSd) return null
+  if (!(lnLimit - base.c > 0.01) || rise < 2 * lastSd || rise < settings.leastPart * (lnLimit - base.c)) return null
 
   const falls = bins.map((bin, i) =>
     sloughs.reduce((sum, f) => (f.tMs <= bin.tMs && (i === 0 || f.tMs > bins[i - 1]!.tMs) ? sum + f.fall : sum), 0),
@@ -169,6 +172,17 @@ interface Task {
   readonly settings: GrowthSettings
 }
 
+/** One explanation of the growth, its life aside. */
+interface Hypothesis {
+  readonly onsetMs: number
+  readonly k: number
+  readonly fraction: number
+  readonly filmLimit: number
+  readonly cv: number
+  /** after a slough-off growth goes on at the pace it had (true) or at the pace of the thinner film (false) */
+  readonly keepsPace: boolean
+}
+
 function mixture(task: Task): Node[] {
   const { onset, nowMs, settings, base, lnLimit } = task
   // Nodes at the median and the 5 % and 95 % ends; 0.185 gives the variance of a normal distribution.
@@ -179,22 +193,27 @@ function mixture(task: Task): Node[] {
   ]
   const raw: { log: number; left: number; sd: number; growth: number }[] = []
   let top = -Infinity
+  const sloughed = task.falls.some((fall) => fall > 0)
   for (const { ms, weight: wOnset } of onsets) {
     const grownMs = nowMs - ms
     if (!(grownMs > 0)) continue
     for (const { fraction, weight: wFraction } of settings.fractions) {
       const filmLimit = filmOfRatio(Math.exp(lnLimit - base.c), fraction)
       for (const { k, weight: wLaw } of settings.laws) {
-        const prior = Math.log(wOnset * wFraction * wLaw)
-        const { lnLifeMs, sd } = lifeNear(task, ms, k, fraction, filmLimit)
-        const spacing = (2 * settings.gridReach * sd) / (settings.gridNodes - 1)
-        for (let i = 0; i < settings.gridNodes; i++) {
-          const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
-          const node = follow(task, ms, lifeMs, k, fraction, filmLimit)
-          const log = prior + Math.log(spacing) + node.log
-          if (!(log > top - 30)) continue
-          top = Math.max(top, log)
-          raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
+        for (const { cv, weight: wClock } of settings.clocks) {
+          const prior = Math.log(wOnset * wFraction * wLaw * wClock)
+          const { lnLifeMs, sd } = lifeNear(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace: false })
+          const spacing = (2 * settings.gridReach * sd) / (settings.gridNodes - 1)
+          for (const keepsPace of sloughed ? [false, true] : [false]) {
+            for (let i = 0; i < settings.gridNodes; i++) {
+              const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
+              const node = follow(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace }, lifeMs)
+              const log = prior + Math.log(spacing) + node.log
+              if (!(log > top - 30)) continue
+              top = Math.max(top, log)
+              raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
+            }
+          }
         }
       }
     }
@@ -210,7 +229,7 @@ function mixture(task: Task): Node[] {
  * Where the life T of a hypothesis must lie to explain the rise at the anchor (the last mean, or the last before a slough-off), and
  * how loosely: sd of ln T from raggedness and noise. The grid over T lies around it, evenly in ln T.
  */
-function lifeNear(task: Task, onsetMs: number, k: number, fraction: number, filmLimit: number): { lnLifeMs: number; sd: number } {
+function lifeNear(task: Task, { onsetMs, k, fraction, filmLimit, cv }: Hypothesis): { lnLifeMs: number; sd: number } {
   const anchor = task.bins[task.anchor]!
   const rise = Math.max(0.002, anchor.lnRatio - task.base.c)
   const part = filmOfRatio(Math.exp(rise), fraction) / filmLimit
@@ -220,15 +239,16 @@ function lifeNear(task: Task, onsetMs: number, k: number, fraction: number, film
   const slope =
     (4 * fraction * (1 - film) ** -5 * filmLimit * (linear ? 1 : (k * Math.exp(k * u)) / Math.expm1(k))) /
     ratioOfFilm(film, fraction)
-  const sd = Math.min(1.2, Math.hypot(task.settings.clockCv / Math.sqrt(u), task.lastSd / Math.max(slope * u, 1e-6)))
+  const sd = Math.min(1.2, Math.hypot(cv / Math.sqrt(u), task.lastSd / Math.max(slope * u, 1e-6)))
   return { lnLifeMs: Math.log(Math.max(anchor.tMs - onsetMs, 1000) / u), sd }
 }
 
 /** One hypothesis followed through the data; times in lives T. */
-function follow(task: Task, onsetMs: number, lifeMs: number, k: number, fraction: number, filmLimit: number) {
-  const { bins, steps, falls, nowMs, settings } = task
+function follow(task: Task, { onsetMs, k, fraction, filmLimit, cv, keepsPace }: Hypothesis, lifeMs: number) {
+  const { bins, steps, falls, nowMs } = task
+  let lost = 0
   const b: Belief = { ...task.base }
-  const cv2 = settings.clockCv * settings.clockCv
+  const cv2 = cv * cv
   const linear = Math.abs(k) < 1e-6
   const unit = linear ? 1 : 1 / Math.expm1(k)
   let log = 0
@@ -243,19 +263,28 @@ function follow(task: Task, onsetMs: number, lifeMs: number, k: number, fraction
     }
     const u = Math.max(0, t + b.w)
     const grow = linear ? 0 : Math.exp(k * u)
-    const film = Math.min(0.97, filmLimit * (linear ? u : (grow - 1) * unit))
+    const film = Math.max(0, Math.min(0.97, filmLimit * (linear ? u : (grow - 1) * unit) - lost))
     const gap = 1 - film
     const power = fraction / (gap * gap * gap * gap)
     const ratio = 1 - fraction + power
     const slope = t <= 0 ? 0 : (4 * power * filmLimit * (linear ? 1 : k * grow * unit)) / (gap * ratio)
     const fall = falls[i]!
+    if (fall > 0 && keepsPace) {
+      const rest = filmOfRatio(Math.max(1, Math.exp(bins[i]!.lnRatio - b.c)), fraction)
+      lost += Math.max(0, film - rest)
+      b.ww += task.lastSd ** 2 / Math.max(slope * slope, 1e-6)
+      log -= Math.log(2 * fall)
+      continue
+    }
     if (fall > 0) b.ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
     log += observe(b, steps[i]!, Math.log(ratio), slope, bins[i]!.lnRatio)
     slopeNow = slope
     ratioNow = ratio
   }
   const now = (nowMs - onsetMs) / lifeMs
-  const left = Math.max(0, 1 - now - b.w)
+  const end = 1 + lost / filmLimit
+  const uEnd = linear ? end : Math.min(4, Math.log1p(Math.max(-0.99, end * Math.expm1(k))) / k)
+  const left = Math.max(0, uEnd - now - b.w)
   const sd = Math.sqrt(Math.max(0, b.ww) + cv2 * (left + Math.max(0, now - before)))
   return { log, left: left * lifeMs, sd: sd * lifeMs, growth: (slopeNow * ratioNow) / lifeMs }
 }

@@ -19,11 +19,15 @@ export interface GrowthSettings {
   readonly laws: readonly { readonly k: number; readonly weight: number }[]
   /** length fraction the deposit sits on: 1 is all along; weights sum to 1 */
   readonly fractions: readonly { readonly fraction: number; readonly weight: number }[]
-  /** raggedness of growth: coefficient of variation of the growth clock when it reaches the limit [-] */
+  /** raggedness of growth in the onset fit: coefficient of variation of the growth clock when it reaches the limit [-] */
   readonly clockCv: number
+  /** the same in the forecast, where the data may tell steady growth from ragged; weights sum to 1 */
+  readonly clocks: readonly { readonly cv: number; readonly weight: number }[]
   /** nodes of the grid over the time from onset to limit, and how many sd of its logarithm it reaches either way */
   readonly gridNodes: number
   readonly gridReach: number
+  /** no forecast before the rise of ln ratio is so large a part of the way to the limit */
+  readonly leastPart: number
   /** no forecast when the median lies further ahead than so many times the growth seen */
   readonly farthest: number
   /** a fall counts as slough-off beyond so many sd, and never below this ln ratio */
@@ -48,8 +52,13 @@ export const growthDefaults: GrowthSettings = {
     { fraction: 0.12, weight: 0.12 },
   ],
   clockCv: 0.06,
+  clocks: [
+    { cv: 0.06, weight: 0.75 },
+    { cv: 0.14, weight: 0.25 },
+  ],
   gridNodes: 13,
   gridReach: 3.5,
+  leastPart: 0.02,
   farthest: 20,
   sloughSigmas: 5,
   sloughLeast: 0.02,
