@@ -23,9 +23,10 @@ export function detectEncoding(name: string, head: Uint8Array): { encoding: Enco
   for (let i = 0; i < head.length; i++) if (head[i] === 0) nuls[i & 1]!++
   const pairs = head.length >> 1
   if (nuls[0] === 0 && nuls[1] === 0) return { encoding: isUtf8(head) ? 'utf-8' : 'windows-1252', skip: 0 }
-  // Latin text in UTF-16 has a NUL in nearly every pair, always on the same side.
-  if (nuls[0] === 0 && nuls[1]! > 0.7 * pairs) return { encoding: 'utf-16le', skip: 0 }
-  if (nuls[1] === 0 && nuls[0]! > 0.7 * pairs) return { encoding: 'utf-16be', skip: 0 }
+  // Latin text in UTF-16 has a NUL in nearly every pair, on the same side but for a rare character such as U+0100.
+  const [even, odd] = [nuls[0]! / pairs, nuls[1]! / pairs]
+  if (even < 0.1 && odd > 0.7) return { encoding: 'utf-16le', skip: 0 }
+  if (odd < 0.1 && even > 0.7) return { encoding: 'utf-16be', skip: 0 }
   const at = head.indexOf(0)
   let line = 1
   for (let i = 0; i < at; i++) if (head[i] === 10) line++

@@ -6,6 +6,9 @@ import { type LogOptions, PushReader } from './reader.ts'
 import { freshTally, type LogTally } from './tally.ts'
 import { timeParser } from './time-parse.ts'
 
+export type { LogOptions } from './reader.ts'
+export type { LogTally } from './tally.ts'
+
 export interface LogSource {
   readonly name: string
   readonly chunks: AsyncIterable<Uint8Array>

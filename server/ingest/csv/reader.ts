@@ -55,8 +55,10 @@ export class PushReader {
   private cells: CellWriter | null = null
   private clock: FileClock | null = null
   private code: ReturnType<typeof transcoder> | null = null
-  /** Bytes of the file taken in, text waiting for its line to end, and (UTF-16) bytes of the file that the text stands for. */
+  /** Bytes of the file taken in, and those up to the end of the last whole line read. */
   private taken = 0
+  private offset = 0
+  /** Text, its first `waiting` bytes in use: a line that has not ended yet. */
   private work = new Uint8Array(2 * piece)
   private waiting = 0
 
@@ -70,6 +72,7 @@ export class PushReader {
     this.blocks = new Blocks(this.wanted.length)
     if (point === null) return
     this.taken = point.offset
+    this.offset = point.offset
     this.start({ ...point.dialect, decimal: point.decimal }, structuredClone(point.clock), point.line)
   }
 
@@ -109,10 +112,8 @@ export class PushReader {
   /** Null until the dialect is settled. */
   point(): ReaderPoint | null {
     if (this.dialect === null || this.rows === null) return null
-    const waiting = this.work.subarray(0, this.waiting)
-    const offset = this.taken - (this.code === null ? this.waiting : utf16Length(waiting) + (this.taken % 2))
     const { dialect, rows, cells, clock } = this
-    return { offset, line: rows.line, dialect, decimal: cells!.decimal, clock: structuredClone(clock!.state) }
+    return { offset: this.offset, line: rows.line, dialect, decimal: cells!.decimal, clock: structuredClone(clock!.state) }
   }
 
   private take(bytes: Uint8Array): void {
@@ -130,6 +131,7 @@ export class PushReader {
 
   /** Settles the dialect if the head is long enough, or `now`; then reads what the head holds. */
   private decide(isEnd: boolean, now: boolean): void {
+    if (now && !isEnd && !this.head.includes(10)) return
     for (let size = window; size <= this.head.length || now; size *= 2) {
       const isWhole = isEnd && size >= this.head.length
       const raw = this.head.subarray(0, size)
@@ -164,6 +166,7 @@ export class PushReader {
       this.taken = head.length
       let rest: Uint8Array = head.subarray(skip)
       if (this.code !== null) rest = this.code.feed(rest)
+      this.offset = skip + this.sourceBytes(rest.subarray(0, dialect.bodyFrom))
       this.append(rest.subarray(dialect.bodyFrom))
       return
     }
@@ -219,10 +222,16 @@ export class PushReader {
   private consume(isLast: boolean): void {
     const whole = this.work.subarray(0, this.waiting).lastIndexOf(10) + 1
     const done = this.rows!.read(this.work, 0, whole, isLast)
+    this.offset += this.sourceBytes(this.work.subarray(0, done))
     this.work.copyWithin(0, done, this.waiting)
     this.waiting -= done
     if (this.waiting > longestLine && this.work.subarray(0, this.waiting).indexOf(10) < 0) throw tooLong(this.name, this.rows!.line)
     this.note()
+  }
+
+  /** Bytes of the file that this text was written in. */
+  private sourceBytes(text: Uint8Array): number {
+    return this.code === null ? text.length : utf16Length(text)
   }
 
   private note(): void {
