@@ -82,7 +82,10 @@ export function nextStep(plan: FlushPlan, accepted: readonly Acceptance[]): Next
   const hasBoth = ['F1', 'F2'].every((id) => plan.steps.some((s) => s.id === id))
   if (!hasBoth) refused.push({ step: 'F3', reason: 'the plan has no displacement or no warm-up: no water' })
   else if (before.length > 0) {
-    refused.push({ step: 'F3', reason: `water waits for ${before.map((o) => `${o.step.id} (${o.points.map((p) => `${p.criterion}: ${p.why}`).join('; ')})`).join(' and ')}` })
+    refused.push({
+      step: 'F3',
+      reason: `water waits for ${before.map((o) => `${o.step.id} (${o.points.map((p) => `${p.criterion}: ${p.why}`).join('; ')})`).join(' and ')}`,
+    })
   }
   const own = at === null ? null : (plan.refused.find((r) => r.step === at.step.id) ?? null)
   if (own !== null) refused.push(own)

@@ -44,7 +44,7 @@ export function prepare(stage: Stage): Built {
         'Do not raise pressure to clear a blockage: no flow at the pressure limit means stop feeds, make safe, isolate, escalate.',
         'Oxygen-deficient space around the purged box: site entry procedure.',
       ],
-      basis: [`${settings.confirmMinutes} min allowed to check and confirm (assumed)`],
+      basis: [`${settings.confirmMinutes} min counted for checking and confirming (assumed)`],
     }),
   }
 }
@@ -86,9 +86,11 @@ export function displace(stage: Stage): Built & { readonly flowM3S: number | nul
       hazards: [
         ...parallelHazard(path),
         ...(path.hasQuench
-          ? ['Back-flow: water reaches the reagent if the outlet pressure falls below the quench pressure; hold if it does.']
+          ? [
+              'Back-flow: water reaches the reagent if the outlet pressure falls below the quench pressure; hold advised if it does.',
+            ]
           : []),
-        'Hold on any exotherm or a rising pressure drop.',
+        'Any exotherm or a rising pressure drop: hold advised.',
         'Waste vessel: compatible, vented, not aqueous while F1 effluent is active.',
         'No verdict on the ratio while two liquids share a segment.',
       ],

@@ -34,7 +34,7 @@ export function recool(stage: Stage): Built {
         criterion('no-ice', 'no rise of the pressure drop while crossing 0 °C'),
       ],
       hazards: [
-        'Any rise of the pressure drop near or below 0 °C means ice: stop cooling, warm.',
+        'Any rise of the pressure drop near or below 0 °C means ice: advised is to stop cooling and to warm.',
         'A ratio that stays above clean is "not fully restored": recorded, not adopted as the new baseline.',
       ],
       basis: [

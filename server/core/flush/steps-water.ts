@@ -8,7 +8,7 @@ import { addMinutes, type Built, criterion, finish, parallelHazard, pumpMinutes,
 import { washout } from './washout.ts'
 
 /**
- * F3: water dissolves LiOH and lithium halides. Viscosity of water at the coldest permitted place, volume the larger of what the solubility
+ * F3: water dissolves LiOH and lithium halides. Viscosity of water at the coldest place that F2 accepts, volume the larger of what the solubility
  * asks (with margin) and the washout, the first volume of the way at the starting share of the flow.
  */
 export function water(stage: Stage): Built & { readonly reference: readonly WaterReference[]; readonly flowM3S: number | null } {
@@ -65,7 +65,7 @@ export function water(stage: Stage): Built & { readonly reference: readonly Wate
       minutes,
       holdPoints: [
         'Before this step: F1 and F2 accepted, both. Do not admit water before displacement and warm-up are both confirmed.',
-        `Start at ${shown(cap.flowM3S === null ? null : mlMinFromM3s(cap.flowM3S * settings.waterStartShare), 'mL/min')} (${(100 * settings.waterStartShare).toFixed(0)} % of the flow) for the first volume of the way, watching temperature and off-gas; then up to the flow above.`,
+        `Advised start: ${shown(cap.flowM3S === null ? null : mlMinFromM3s(cap.flowM3S * settings.waterStartShare), 'mL/min')} (${(100 * settings.waterStartShare).toFixed(0)} % of the flow) for the first volume of the way, watching temperature and off-gas; then up to the flow above.`,
         ...(settings.soakMinutes > 0
           ? [`Soak of ${settings.soakMinutes} min, outlet open.`]
           : ['A soak is optional; none is counted.']),
@@ -93,12 +93,12 @@ export function water(stage: Stage): Built & { readonly reference: readonly Wate
       ],
       hazards: [
         ...parallelHazard(path),
-        'Hold on a temperature rise or gas slugs: water has met residual organolithium.',
-        'If the ratio does not fall: deposit not water-soluble (fluoride, carbonate, polymer); escalate, do not repeat.',
+        'Temperature rise or gas slugs: water has met residual organolithium; hold advised.',
+        'If the ratio does not fall: deposit not water-soluble (fluoride, carbonate, polymer); escalation advised, not a repeat.',
         "No verdict on the ratio while two liquids share a segment; afterwards against the water reference, not the solvent's.",
       ],
       basis: [
-        `flow limited by: ${cap.limitedBy}; water at ${settings.warmC} °C, the coldest permitted place`,
+        `flow limited by: ${cap.limitedBy}; water at ${settings.warmC} °C, the coldest place that is accepted`,
         ...reference.map(
           (r) =>
             `${r.segment}: ${r.predictedDpBar.toFixed(2)} bar predicted at ratio ${r.ratio.toFixed(2)}, clean ${r.cleanDpBar.toFixed(2)} bar, high limit ${r.dpHighBar ?? 'none'} bar`,
