@@ -32,11 +32,15 @@ export interface AqueousState {
 }
 
 /**
- * Density and viscosity of LiOH or LiCl in water: what a flush carries away is thicker than water (LiOH 2 %: +22 % at 25 °C), so ΔP reads high while it dissolves.
+ * Density and viscosity of LiOH or LiCl in water: what a flush carries away is thicker than water (LiOH 2 %: +22 % at 25 °C), so
+ * ΔP reads high while it dissolves.
  *   1/ρ = w_w/ρ_w + w/ρ_app,  ρ_app = (c0 w + c1) exp[1e-6 (t + c4)²]/(w + c2 + c3 t)
- *   ln μ = w_w ln μ_w + w ln μ_s,  μ_s = exp[(v1 w^v2 + v3)/(v4 t + 1)]/(v5 w^v6 + 1)  [mPa s],  μ_w = (t + 246)/((0.05594 t + 5.2842) t + 137.37)
- * w mass fraction of salt, t in °C. LiOH 20 to 40 °C and up to 11.3 %, LiCl -5 to 100 °C and up to 45 %; outside: uncertain. Density 0.5 %, viscosity 5 %.
- * Source: M. Laliberté, J. Chem. Eng. Data 52 (2007) 321 and 1507, 54 (2009) 1725; water's density as in fluids/water.ts. Pure water by μ_w is within 1 % of IAPWS.
+ *   ln μ = w_w ln μ_w + w ln μ_s,  μ_s = exp[(v1 w^v2 + v3)/(v4 t + 1)]/(v5 w^v6 + 1)  [mPa s],  μ_w = (t + 246)/((0.05594 t +
+ *   5.2842) t + 137.37)
+ * w mass fraction of salt, t in °C. LiOH 20 to 40 °C and up to 11.3 %, LiCl -5 to 100 °C and up to 45 %; outside: uncertain.
+ * Density 0.5 %, viscosity 5 %.
+ * Source: M. Laliberté, J. Chem. Eng. Data 52 (2007) 321 and 1507, 54 (2009) 1725; water's density as in fluids/water.ts. Pure
+ * water by μ_w is within 1 % of IAPWS.
  * Errors: FLUID_RANGE for a fraction below 0 or above 0.5, or outside 0 to 100 °C.
  */
 export function aqueousSalt(salt: 'LiOH' | 'LiCl', massFraction: number, tempC: number): AqueousState {

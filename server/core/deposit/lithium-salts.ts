@@ -17,8 +17,10 @@ export interface LithiumSalt {
 }
 
 /**
- * Solubilities: LiOH, Lange's Handbook of Chemistry (from memory; the Merck Index is within 1 % at 0 and 20 °C, 10 % lower at 100 °C); LiCl, LiBr, LiF, Li2CO3
- * from memory after handbook tables, 5 % (10 % for LiBr). Crystal densities: CRC Handbook; LiOH 1460, others 1 %. Heats of dissolution at 25 °C: CRC Handbook,
+ * Solubilities: LiOH, Lange's Handbook of Chemistry (from memory; the Merck Index is within 1 % at 0 and 20 °C, 10 % lower at 100
+ * °C); LiCl, LiBr, LiF, Li2CO3
+ * from memory after handbook tables, 5 % (10 % for LiBr). Crystal densities: CRC Handbook; LiOH 1460, others 1 %. Heats of
+ * dissolution at 25 °C: CRC Handbook,
  * enthalpy of solution of electrolytes (from memory), 3 %.
  */
 export const lithiumSalts: readonly LithiumSalt[] = [
@@ -125,11 +127,15 @@ export interface LeastWater {
   readonly washesOut: boolean
 }
 
-/** Heat capacity of a saturated lithium salt solution is below water's; water's 4180 J/(kg K) over the water alone keeps the rise within 15 %. */
+/**
+ * Heat capacity of a saturated lithium salt solution is below water's; water's 4180 J/(kg K) over the water alone keeps the rise
+ * within 15 %.
+ */
 const WATER_CP = 4180
 
 /**
- * Least water that can dissolve a deposit: m_water = m_salt/s(T). At equilibrium, evenly wetted; a plan takes several times it (the caller's margin).
+ * Least water that can dissolve a deposit: m_water = m_salt/s(T). At equilibrium, evenly wetted; a plan takes several times it
+ * (the caller's margin).
  *   heat = -ΔH_sol m/M,  rise = heat/(m_water cp)
  * tempC: the coldest the water may be. Errors: FLUID_RANGE outside 0 to 100 °C or for a negative mass.
  */

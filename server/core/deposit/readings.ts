@@ -24,7 +24,10 @@ export interface DepositReadings {
   readonly couldTell: readonly string[]
 }
 
-/** Resistance over clean when `plugged` of n equal branches carry nothing and the flow is the same: ΔP(n - plugged)/ΔP(n) [-]; 2 for one of two, laminar. Errors: HYDRAULICS_RANGE unless 0 ≤ plugged < n. */
+/**
+ * Resistance over clean when `plugged` of n equal branches carry nothing and the flow is the same: ΔP(n - plugged)/ΔP(n) [-]; 2
+ * for one of two, laminar. Errors: HYDRAULICS_RANGE unless 0 ≤ plugged < n.
+ */
 export function pluggedRatio(channel: ChannelGeometry, at: WorkingPoint, plugged: number): number {
   if (!(Number.isInteger(plugged) && plugged >= 0 && plugged < channel.parallel))
     throw new MonitorError('HYDRAULICS_RANGE', `${plugged} of ${channel.parallel} branches cannot be plugged and carry a flow`)
@@ -38,8 +41,10 @@ export function pluggedRatio(channel: ChannelGeometry, at: WorkingPoint, plugged
 const LOCAL_SHARES = [0.1, 0.01] as const
 
 /**
- * The deposits that explain one ratio: a uniform film, constrictions over 10 % and 1 % of the length, and, where branches lie in parallel and the
- * ratio's interval [low, high] holds the value, plugged branches. One ΔP at one flow cannot choose among them; the sentences say what could.
+ * The deposits that explain one ratio: a uniform film, constrictions over 10 % and 1 % of the length, and, where branches lie in
+ * parallel and the
+ * ratio's interval [low, high] holds the value, plugged branches. One ΔP at one flow cannot choose among them; the sentences say
+ * what could.
  * Errors: as `thicknessOfRatio` and `pluggedRatio`.
  */
 export function depositReadings(

@@ -14,7 +14,10 @@ export interface WorkingPoint {
 /** Nothing is said of a bore narrowed below this share of the clean one: the channel counts as plugged. */
 const LEAST_BORE = 0.02
 
-/** The channel with every wall covered by the same thickness. Exact for a round bore; a non-round one shrinks in proportion. Roughness stays. */
+/**
+ * The channel with every wall covered by the same thickness. Exact for a round bore; a non-round one shrinks in proportion.
+ * Roughness stays.
+ */
 export function narrowed(channel: ChannelGeometry, thicknessM: number): ChannelGeometry {
   const diameterM = channel.diameterM - 2 * thicknessM
   return { ...channel, diameterM, areaM2: channel.areaM2 * (diameterM / channel.diameterM) ** 2 }
@@ -37,8 +40,10 @@ export function ratioOfThickness(channel: ChannelGeometry, at: WorkingPoint, thi
 }
 
 /**
- * Thickness of the uniform deposit that explains a ratio at constant flow, any regime [m]; 0 at a ratio of 1 or below (nothing is there to be seen).
- * The largest answer leaves 2 % of the bore. The inverse of `ratioOfThickness` to 1e-12. Errors: HYDRAULICS_RANGE when nothing flows.
+ * Thickness of the uniform deposit that explains a ratio at constant flow, any regime [m]; 0 at a ratio of 1 or below (nothing is
+ * there to be seen).
+ * The largest answer leaves 2 % of the bore. The inverse of `ratioOfThickness` to 1e-12. Errors: HYDRAULICS_RANGE when nothing
+ * flows.
  */
 export function thicknessOfRatio(channel: ChannelGeometry, at: WorkingPoint, ratio: number, options?: DpOptions): number {
   refuseStill(at)
@@ -53,7 +58,8 @@ function refuseStill(at: WorkingPoint): void {
 }
 
 /**
- * Bore exponent e = -∂ln ΔP/∂ln d at constant flow: 4 laminar, 4.75 smooth turbulent, 5 rough, about 4.2 in a laminar coil. Central difference of 1e-4.
+ * Bore exponent e = -∂ln ΔP/∂ln d at constant flow: 4 laminar, 4.75 smooth turbulent, 5 rough, about 4.2 in a laminar coil.
+ * Central difference of 1e-4.
  * With it the closed forms below stand in for the full solution in the scan loop: within 1 % of ln ratio while the regime stays.
  */
 export function boreExponent(channel: ChannelGeometry, at: WorkingPoint, options?: DpOptions): number {
@@ -73,7 +79,8 @@ export const constrictionRatio = (lengthShare: number, boreRatio: number, expone
   1 - lengthShare + lengthShare * boreRatio ** -exponent
 
 /**
- * The same in full at a working point, any regime, with what the throat's ends cost: 0.5 (1 - b²) going in, Borda and Carnot's (1 - b²)² coming out,
+ * The same in full at a working point, any regime, with what the throat's ends cost: 0.5 (1 - b²) going in, Borda and Carnot's (1
+ * - b²)² coming out,
  * both in the throat's velocity head (turbulent figures; laminar ends cost more). Errors: HYDRAULICS_RANGE when nothing flows.
  */
 export function ratioOfConstriction(channel: ChannelGeometry, at: WorkingPoint, lengthShare: number, boreRatio: number): number {
@@ -85,7 +92,10 @@ export function ratioOfConstriction(channel: ChannelGeometry, at: WorkingPoint, 
   return 1 - lengthShare + resistance(part, at, { lossK: ends }) / clean
 }
 
-/** Bore ratio b of a constriction over a share f of the length that explains a ratio, in full; 1 at r ≤ 1, at least 0.02. Errors: HYDRAULICS_RANGE when nothing flows. */
+/**
+ * Bore ratio b of a constriction over a share f of the length that explains a ratio, in full; 1 at r ≤ 1, at least 0.02. Errors:
+ * HYDRAULICS_RANGE when nothing flows.
+ */
 export function constrictionOfRatio(channel: ChannelGeometry, at: WorkingPoint, lengthShare: number, ratio: number): number {
   if (!(ratio > 1)) return 1
   return 1 - risingRoot((gone) => Math.log(ratioOfConstriction(channel, at, lengthShare, 1 - gone) / ratio), 0, 1 - LEAST_BORE)

@@ -5,7 +5,10 @@ import { lithiumSalt } from './lithium-salts.ts'
 const WATER_KG_MOL = 0.018015
 const GAS_M3_MOL = (8.314462618 * 298.15) / 101325
 
-/** What the water in a feed turns into, per m3 of that feed (mmol/L, g/L and mL/L are the same numbers in mol/m3, kg/m3, 1e-3 m3/m3). */
+/**
+ * What the water in a feed turns into, per m3 of that feed (mmol/L, g/L and mL/L are the same numbers in mol/m3, kg/m3, 1e-3
+ * m3/m3).
+ */
 export interface WaterProducts {
   readonly waterMolM3: number
   readonly liohKgM3: number
@@ -20,7 +23,8 @@ export interface WaterProducts {
 /**
  * H2O + RLi → RH + LiOH, all water reacting:
  *   n = x ρ/M(H2O)    m(LiOH) = n M(LiOH)    V = m/ρ(LiOH)
- * waterPpm x: mass of water per mass of feed, 1e-6. rhoKgM3 ρ: the feed. M(H2O) 18.015, M(LiOH) 23.948 g/mol, ρ(LiOH) 1460 kg/m3 (crystal; a loose
+ * waterPpm x: mass of water per mass of feed, 1e-6. rhoKgM3 ρ: the feed. M(H2O) 18.015, M(LiOH) 23.948 g/mol, ρ(LiOH) 1460 kg/m3
+ * (crystal; a loose
  * deposit fills two to three times as much). Errors: FLUID_RANGE for a negative or non-finite content or density.
  */
 export function waterProducts(waterPpm: number, rhoKgM3: number): WaterProducts {
@@ -42,7 +46,10 @@ export function waterProducts(waterPpm: number, rhoKgM3: number): WaterProducts 
   }
 }
 
-/** Share of a reagent stream's moles that the water takes: n_water Q_feed/(c Q_reagent) [-]; at the same flow, n/c. Errors: FLUID_RANGE unless concentration and reagent flow are above 0. */
+/**
+ * Share of a reagent stream's moles that the water takes: n_water Q_feed/(c Q_reagent) [-]; at the same flow, n/c. Errors:
+ * FLUID_RANGE unless concentration and reagent flow are above 0.
+ */
 export function reagentShareLost(waterMolM3: number, feedM3S: number, reagentMolM3: number, reagentM3S: number): number {
   if (!(reagentMolM3 > 0 && reagentM3S > 0))
     throw new MonitorError(
@@ -52,7 +59,10 @@ export function reagentShareLost(waterMolM3: number, feedM3S: number, reagentMol
   return (waterMolM3 * feedM3S) / (reagentMolM3 * reagentM3S)
 }
 
-/** Solid LiOH made per second by the wet streams that meet, m3/s: Σ V_i Q_i. Streams without a water figure do not count; null when none has one. */
+/**
+ * Solid LiOH made per second by the wet streams that meet, m3/s: Σ V_i Q_i. Streams without a water figure do not count; null
+ * when none has one.
+ */
 export function liohRateM3S(
   streams: readonly { readonly waterPpm: number | null; readonly rhoKgM3: number; readonly flowM3S: number }[],
 ): number | null {

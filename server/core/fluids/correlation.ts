@@ -5,7 +5,10 @@ export interface Correlation {
   readonly at: (tempK: number) => number
 }
 
-/** Perry's viscosity, μ = exp(C1 + C2/T + C3 ln T + C4 T^C5) [Pa s], T [K]. Perry's Chemical Engineers' Handbook, 8th ed., table 2-313. */
+/**
+ * Perry's viscosity, μ = exp(C1 + C2/T + C3 ln T + C4 T^C5) [Pa s], T [K]. Perry's Chemical Engineers' Handbook, 8th ed., table
+ * 2-313.
+ */
 export function perryViscosity(
   c1: number,
   c2: number,
@@ -19,7 +22,8 @@ export function perryViscosity(
 }
 
 /**
- * Saturated-liquid density, ρ = M C1/C2^(1+(1-T/C3)^C4) [kg/m3] with M [kg/mol], C1 [mol/m3], C3 the critical temperature [K]. The last 20 K below it
+ * Saturated-liquid density, ρ = M C1/C2^(1+(1-T/C3)^C4) [kg/m3] with M [kg/mol], C1 [mol/m3], C3 the critical temperature [K]. The
+ * last 20 K below it
  * are left out of the range: the curve is vertical there. Perry, 8th ed., table 2-32.
  */
 export function perryDensity(
@@ -48,7 +52,10 @@ export function perryHeatCapacity(
   return { lowK, highK, at: (t) => (a + t * (b + t * (c + t * (d + t * e)))) / (molarKgMol * 1000) }
 }
 
-/** Liquid heat capacity, A²/t + B - 2ACt - ADt² - C²t³/3 - CDt⁴/2 - D²t⁵/5 [J/(kmol K)], t = 1 - T/Tc, over M: cp [J/(kg K)]. Perry, 8th ed., table 2-153, form 2. */
+/**
+ * Liquid heat capacity, A²/t + B - 2ACt - ADt² - C²t³/3 - CDt⁴/2 - D²t⁵/5 [J/(kmol K)], t = 1 - T/Tc, over M: cp [J/(kg K)].
+ * Perry, 8th ed., table 2-153, form 2.
+ */
 export function perryHeatCapacityReduced(
   molarKgMol: number,
   criticalK: number,
@@ -73,7 +80,10 @@ export function perryConductivity(c1: number, c2: number, c3: number, c4: number
   return { lowK, highK, at: (t) => c1 + t * (c2 + t * (c3 + t * c4)) }
 }
 
-/** Andrade through one point: μ = μ0 exp(B (1/T - 1/T0)) [Pa s]. For liquids without an open correlation; B of light organic liquids is 700 to 1000 K. */
+/**
+ * Andrade through one point: μ = μ0 exp(B (1/T - 1/T0)) [Pa s]. For liquids without an open correlation; B of light organic
+ * liquids is 700 to 1000 K.
+ */
 export function andrade(visc0PaS: number, temp0K: number, bK: number, lowK: number, highK: number): Correlation {
   return { lowK, highK, at: (t) => visc0PaS * Math.exp(bK * (1 / t - 1 / temp0K)) }
 }
@@ -87,7 +97,8 @@ export const isInside = (c: Correlation, tempK: number): boolean => tempK >= c.l
 
 /**
  * The correlation, and beyond its range the value that goes on from the edge: `arrhenius` keeps the edge's slope of ln y over 1/T
- * (viscosity), `linear` the edge's slope (density), `hold` the edge's value (heat capacity, conductivity). Polynomials and powers of
+ * (viscosity), `linear` the edge's slope (density), `hold` the edge's value (heat capacity, conductivity). Polynomials and powers
+ * of
  * T run wild outside their range; these do not.
  */
 export function extended(c: Correlation, tempK: number, how: 'arrhenius' | 'linear' | 'hold'): number {

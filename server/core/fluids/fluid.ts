@@ -25,6 +25,8 @@ export function pureFluid(s: SolventEntry): Fluid {
     boilingK: kFromC(s.boilingC),
     waterMiscible: s.waterMiscible,
     molarMassKgMol: s.molarMassKgMol,
+    waterFraction: s.name === 'water' ? 1 : 0,
+    mixesBadly: false,
     viscosityErrorPct: s.viscosityErrorPct,
     source: s.source,
     assumed: [],
@@ -48,7 +50,10 @@ export function pureFluid(s: SolventEntry): Fluid {
   }
 }
 
-/** The liquid a skid file describes. Errors: FLUID_UNKNOWN for a name that is no solvent, FLUID_RANGE for a table or a mixture that makes no sense. */
+/**
+ * The liquid a skid file describes. Errors: FLUID_UNKNOWN for a name that is no solvent, FLUID_RANGE for a table or a mixture
+ * that makes no sense.
+ */
 export function fluidOf(spec: FluidSpec): Fluid {
   if (spec.kind === 'table') return tableFluid(spec.densityKgM3, spec.viscosityMPaS)
   if (spec.kind === 'mixture')

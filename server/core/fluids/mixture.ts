@@ -1,13 +1,16 @@
 import { MonitorError } from '../errors.ts'
 import type { WaterMiscibility } from './solvents.ts'
-import type { Fluid, FluidState } from './state.ts'
+import { type Fluid, type FluidState, mixesBadly } from './state.ts'
 
 /**
  * Properties of liquids that meet, mass fractions w_i (need not add up to 1, they are normalised):
  *   ln μ = Σ w_i ln μ_i     1/ρ = Σ w_i/ρ_i     cp = Σ w_i cp_i     λ = (Σ w_i λ_i^-2)^-1/2
- * Errors of the rules: viscosity 5 to 10 % for mixtures of ethers, hydrocarbons, esters and halocarbons (logarithmic rule on mass, after Arrhenius), a
- * factor up to 3 where water meets alcohol, ether or amide, so such a mixture is marked uncertain by mixByMass; density (ideal volumes) under 1 %,
- * 4 % with water; heat capacity 5 %; conductivity (Vredeveld's power -2; Poling, Prausnitz and O'Connell, The Properties of Gases and
+ * Errors of the rules: viscosity 5 to 10 % for mixtures of ethers, hydrocarbons, esters and halocarbons (logarithmic rule on mass,
+ * after Arrhenius), a
+ * factor up to 3 where water meets alcohol, ether or amide, so such a mixture is marked uncertain by mixByMass; density (ideal
+ * volumes) under 1 %,
+ * 4 % with water; heat capacity 5 %; conductivity (Vredeveld's power -2; Poling, Prausnitz and O'Connell, The Properties of Gases
+ * and
  * Liquids, 5th ed., chapter 10) 5 %. Figures of error from memory.
  * Errors: FLUID_RANGE without a positive fraction.
  */
@@ -34,13 +37,14 @@ export function mixState(states: readonly FluidState[], massFractions: readonly 
 }
 
 const order: readonly WaterMiscibility[] = ['full', 'partial', 'none']
-/** Above this mass fraction of the lesser side, water with an organic liquid is marked uncertain (mixing rule, phase split). */
-const AQUEOUS_FROM = 0.02
 
 /**
- * A mixture as a Fluid, by `mixState`. Range: where every part is inside its own; a part below its freezing point counts as dissolved, so
- * only the extrapolation of its viscosity marks the state. Freezing: the highest of the parts, an upper bound for a simple eutectic; boiling: the
- * lowest; miscibility with water: the worst of the parts above 5 %. Errors: FLUID_RANGE for no parts, a negative fraction or a sum that is
+ * A mixture as a Fluid, by `mixState`. Range: where every part is inside its own; a part below its freezing point counts as
+ * dissolved, so
+ * only the extrapolation of its viscosity marks the state. Freezing: the highest of the parts, an upper bound for a simple
+ * eutectic; boiling: the
+ * lowest; miscibility with water: the worst of the parts above 5 %. Errors: FLUID_RANGE for no parts, a negative fraction or a sum
+ * that is
  * not 1 within 0.02.
  */
 export function mixByMass(parts: readonly { readonly fluid: Fluid; readonly massFraction: number }[]): Fluid {
@@ -58,8 +62,8 @@ export function mixByMass(parts: readonly { readonly fluid: Fluid; readonly mass
   const known = (values: readonly (number | null)[], pick: (...v: number[]) => number): number | null =>
     values.every((v) => v !== null) ? pick(...(values as readonly number[])) : null
   const main = used.filter((u) => u.w > 0.05).map((u) => order.indexOf(u.fluid.waterMiscible))
-  const water = used.filter((u) => u.fluid.name === 'water').reduce((a, u) => a + u.w, 0)
-  const aqueous = water >= AQUEOUS_FROM && water <= 1 - AQUEOUS_FROM
+  const waterFraction = used.reduce((a, u) => a + u.w * u.fluid.waterFraction, 0)
+  const aqueous = mixesBadly(waterFraction)
   const molarInverse = used.map((u) => (u.fluid.molarMassKgMol === null ? null : u.w / u.fluid.molarMassKgMol))
   const molar = known(molarInverse, (...v) => v.reduce((a, b) => a + b, 0))
   return {
@@ -76,6 +80,8 @@ export function mixByMass(parts: readonly { readonly fluid: Fluid; readonly mass
     ),
     waterMiscible: order[Math.max(0, ...main)]!,
     molarMassKgMol: molar === null ? null : 1 / molar,
+    waterFraction,
+    mixesBadly: aqueous,
     viscosityErrorPct: aqueous ? 200 : Math.max(10, ...fluids.map((f) => f.viscosityErrorPct)),
     source: [...new Set(fluids.map((f) => f.source))].join('; '),
     assumed: [...new Set(fluids.flatMap((f) => f.assumed))],

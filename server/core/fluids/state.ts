@@ -1,7 +1,10 @@
 import { MonitorError } from '../errors.ts'
 import type { WaterMiscibility } from './solvents.ts'
 
-/** A liquid at one temperature. `uncertain`: some property is outside its published range, or the temperature below the freezing point. */
+/**
+ * A liquid at one temperature. `uncertain`: some property is outside its published range, or the temperature below the freezing
+ * point.
+ */
 export interface FluidState {
   readonly rhoKgM3: number
   readonly viscPaS: number
@@ -24,6 +27,10 @@ export interface Fluid {
   readonly boilingK: number | null
   readonly waterMiscible: WaterMiscibility
   readonly molarMassKgMol: number | null
+  /** Mass fraction of water, 0 to 1. */
+  readonly waterFraction: number
+  /** Water with an organic liquid: the mixing rule does not hold and two phases may form, so every state is uncertain. */
+  readonly mixesBadly: boolean
   /** Standing doubt about the viscosity, % (what published sources differ by, or the mixing rule). */
   readonly viscosityErrorPct: number
   readonly source: string
@@ -32,10 +39,16 @@ export interface Fluid {
 }
 
 /**
- * The rule for "far outside": more than this beyond the published range of viscosity or density, or within 20 K of the critical point, there is no answer. In between, viscosity
- * goes on with the edge's slope of ln μ over 1/T, density straight, heat capacity and conductivity at the edge's value. Project's choice.
+ * The rule for "far outside": more than this beyond the published range of viscosity or density, or within 20 K of the critical
+ * point, there is no answer. In between, viscosity
+ * goes on with the edge's slope of ln μ over 1/T, density straight, heat capacity and conductivity at the edge's value. Project's
+ * choice.
  */
 export const FAR_K = 60
+
+/** From this mass fraction of the lesser side, water with an organic liquid is marked uncertain (mixing rule, phase split). */
+const AQUEOUS_FROM = 0.02
+export const mixesBadly = (waterFraction: number): boolean => waterFraction >= AQUEOUS_FROM && waterFraction <= 1 - AQUEOUS_FROM
 
 /** Errors: FLUID_RANGE when the temperature is outside the limits or not a number. */
 export function refuseFar(name: string, tempK: number, limitK: readonly [number, number]): void {

@@ -9,7 +9,8 @@ const ASSUMED_CP = 1900
 const ASSUMED_COND = 0.13
 
 /**
- * A liquid by the user's own figures: one density [kg/m3], held over temperature (liquids lose about 0.1 % per kelvin), and viscosities
+ * A liquid by the user's own figures: one density [kg/m3], held over temperature (liquids lose about 0.1 % per kelvin), and
+ * viscosities
  * [(°C, mPa s), ...] interpolated monotonically in ln μ over temperature (Fritsch and Carlson 1980). Beyond the table: uncertain,
  * ln μ going on over 1/T with the end's slope; a single point is trusted for 5 K either side.
  * Heat capacity 1900 J/(kg K) and conductivity 0.13 W/(m K) are assumed (organic liquids, 20 %) and said so in `assumed`.
@@ -50,6 +51,8 @@ export function tableFluid(densityKgM3: number, viscosityMPaS: readonly (readonl
     boilingK: null,
     waterMiscible: 'none',
     molarMassKgMol: null,
+    waterFraction: 0,
+    mixesBadly: false,
     viscosityErrorPct: 5,
     source: 'the skid file',
     assumed: [

@@ -13,7 +13,10 @@ export const waterViscosity: Correlation = {
   },
 }
 
-/** Conductivity of liquid water at 0.1 MPa: λ = Σ c_i (T/300 K)^d_i [W/(m K)]. 273.15 to 383.15 K, 1.5 %. Source: IAPWS SR6-08(2011). */
+/**
+ * Conductivity of liquid water at 0.1 MPa: λ = Σ c_i (T/300 K)^d_i [W/(m K)]. 273.15 to 383.15 K, 1.5 %. Source: IAPWS
+ * SR6-08(2011).
+ */
 export const waterConductivity: Correlation = {
   lowK: 273.15,
   highK: 383.15,
@@ -23,7 +26,9 @@ export const waterConductivity: Correlation = {
   },
 }
 
-/** Density of liquid water at 0.1 MPa [kg/m3], t in °C; 0 to 150 °C, 0.01 %. Source: G. S. Kell, J. Chem. Eng. Data 20 (1975) 97. */
+/**
+ * Density of liquid water at 0.1 MPa [kg/m3], t in °C; 0 to 150 °C, 0.01 %. Source: G. S. Kell, J. Chem. Eng. Data 20 (1975) 97.
+ */
 export const waterDensity: Correlation = {
   lowK: 273.15,
   highK: 423.15,

@@ -34,7 +34,8 @@ export function risingRoot(f: (x: number) => number, low: number, high: number):
 }
 
 /**
- * Mass flow through a channel at a given pressure difference (static head included), kg/s; the inverse of cleanDp, to 1e-13. Backwards flow is negative.
+ * Mass flow through a channel at a given pressure difference (static head included), kg/s; the inverse of cleanDp, to 1e-13.
+ * Backwards flow is negative.
  * Errors: HYDRAULICS_RANGE when the pressure is not finite.
  */
 export function flowAtDp(channel: ChannelGeometry, dpPa: number, rhoKgM3: number, viscPaS: number): number {
@@ -60,7 +61,8 @@ export interface FlowSplit {
 }
 
 /**
- * How a flow shares itself among unlike branches between the same two ends: one ΔP for all, flows adding up, solved to 1e-12 of the whole flow.
+ * How a flow shares itself among unlike branches between the same two ends: one ΔP for all, flows adding up, solved to 1e-12 of
+ * the whole flow.
  * A branch may itself be several equal bores. One plugged of n: leave it out. massFlowKgS ≥ 0, one fluid at one temperature in all.
  * Errors: HYDRAULICS_RANGE without a branch, or for a flow that is negative or not finite.
  */

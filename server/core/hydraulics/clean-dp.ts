@@ -2,7 +2,7 @@ import type { PropertyTable } from '../fluids/property-table.ts'
 import { bendLoss } from './bends.ts'
 import type { ChannelGeometry } from './channel.ts'
 import { COIL_TRANSITION, coilCriticalReynolds, coilFrictionFactor, deanNumber, whiteCoilRatio } from './curvature.ts'
-import { darcyFriction } from './friction.ts'
+import { darcyFriction, LAMINAR_TO_ROUNDING } from './friction.ts'
 
 export interface DpOptions {
   /** Loss coefficients besides the channel's bends, K [-] (ΔP = K ρ v²/2): entrance, exit, fittings, a valve. Default 0. */
@@ -50,9 +50,14 @@ export function cleanDp(
   const coil = channel.coilDiameterM
   const de = coil === null ? null : deanNumber(re, d, coil)
   const frictionPa = v === 0 ? 0 : frictionGradient(channel, v, rhoKgM3, viscPaS, re) * channel.lengthM
-  const k = (options?.lossK ?? 0) + (channel.bends > 0 && re > 0 ? channel.bends * bendLoss(re, d) : 0)
-  const bendPa = (k * rhoKgM3 * v * speed) / 2
+  const bendPa = lossPa(channel, v, rhoKgM3, re, options?.lossK ?? 0)
   return { dpPa: frictionPa + bendPa + staticPa, frictionPa, bendPa, staticPa, re, de, uncertain: isUncertain(channel, re) }
+}
+
+/** Bends and single losses, Pa, with the sign of v. */
+function lossPa(channel: ChannelGeometry, v: number, rho: number, re: number, lossK: number): number {
+  const k = lossK + (channel.bends > 0 && re > 0 ? channel.bends * bendLoss(re, channel.diameterM) : 0)
+  return (k * rho * v * Math.abs(v)) / 2
 }
 
 /** dp/dx by friction, Pa/m, with the sign of v. Laminar: 32 μ v/d², times the shape and curvature factors. */
@@ -61,7 +66,7 @@ function frictionGradient(channel: ChannelGeometry, v: number, rho: number, visc
   const coil = channel.coilDiameterM
   const reRound = re / channel.laminarFactor
   if (coil === null) {
-    if (reRound < 300) return (32 * visc * v * channel.laminarFactor) / (d * d)
+    if (reRound < LAMINAR_TO_ROUNDING) return (32 * visc * v * channel.laminarFactor) / (d * d)
     return (darcyFriction(reRound, channel.roughnessM / d) * rho * v * Math.abs(v)) / (2 * d)
   }
   if (reRound < 2300) return ((32 * visc * v * channel.laminarFactor) / (d * d)) * whiteCoilRatio(deanNumber(reRound, d, coil))
@@ -80,9 +85,10 @@ function isUncertain(channel: ChannelGeometry, re: number): boolean {
 
 /**
  * The same along a temperature profile: temperatures evenly spaced along the flow, inlet first (one: uniform), friction and head
- * trapezoidal over the length, losses at the mean gradient of velocity head. Re and De are the lowest along the path, `uncertain` if any place is.
- * The trapezoid reads high by (ΔT)²/12 times the curvature of μ(T): 1.0 % between two readings 20 K apart in THF at -20 °C, 0.25 % with one in between. Never throws: temperatures
- * beyond the fluid's limits are clamped by the table and marked uncertain.
+ * trapezoidal over the length, losses likewise. Re and De are the lowest along the path, `uncertain` if any reading's place is.
+ * The trapezoid reads high by (ΔT)²/12 times the curvature of μ(T): 1.0 % between two readings 20 K apart in THF at -20 °C, 0.25 %
+ * with one in between. Never throws: temperatures
+ * beyond the fluid's limits are clamped by the table and marked uncertain. Null without a temperature.
  */
 export function cleanDpAlong(
   channel: ChannelGeometry,
@@ -90,36 +96,50 @@ export function cleanDpAlong(
   tempsK: readonly number[],
   fluid: PropertyTable,
   options?: DpOptions,
-): CleanDp {
+): CleanDp | null {
   const n = tempsK.length
-  if (n === 1) {
-    const only = cleanDp(channel, massFlowKgS, fluid.rhoKgM3(tempsK[0]!), fluid.viscPaS(tempsK[0]!), options)
-    return fluid.uncertain(tempsK[0]!) ? { ...only, uncertain: true } : only
-  }
-  let frictionPa = 0
+  if (n === 0) return null
+  const d = channel.diameterM
+  const flux = massFlowKgS / (channel.parallel * channel.areaM2)
+  const lossK = options?.lossK ?? 0
+  let gradient = 0
   let bendPa = 0
-  let staticPa = 0
-  let re = Number.POSITIVE_INFINITY
-  let de: number | null = null
-  let uncertain = n === 0
+  let rhoMean = 0
+  let reLow = Number.POSITIVE_INFINITY
+  let reHigh = 0
+  let uncertain = false
   for (let i = 0; i < n; i++) {
-    const w = i === 0 || i === n - 1 ? 0.5 / (n - 1) : 1 / (n - 1)
-    const at = cleanDp(channel, massFlowKgS, fluid.rhoKgM3(tempsK[i]!), fluid.viscPaS(tempsK[i]!), options)
-    frictionPa += w * at.frictionPa
-    bendPa += w * at.bendPa
-    staticPa += w * at.staticPa
-    if (at.re < re) {
-      re = at.re
-      de = at.de
-    }
-    uncertain ||= at.uncertain || fluid.uncertain(tempsK[i]!)
+    const tempK = tempsK[i]!
+    const w = n === 1 ? 1 : i === 0 || i === n - 1 ? 0.5 / (n - 1) : 1 / (n - 1)
+    const rho = fluid.rhoKgM3(tempK)
+    const visc = fluid.viscPaS(tempK)
+    const v = flux / rho
+    const re = (Math.abs(flux) * d) / visc
+    rhoMean += w * rho
+    if (v !== 0) gradient += w * frictionGradient(channel, v, rho, visc, re)
+    if (lossK !== 0 || channel.bends !== 0) bendPa += w * lossPa(channel, v, rho, re, lossK)
+    if (re < reLow) reLow = re
+    if (re > reHigh) reHigh = re
+    uncertain ||= fluid.uncertain(tempK)
   }
-  return { dpPa: frictionPa + bendPa + staticPa, frictionPa, bendPa, staticPa, re, de, uncertain }
+  const frictionPa = gradient * channel.lengthM
+  const staticPa = channel.heightM === 0 ? 0 : rhoMean * G * channel.heightM
+  return {
+    dpPa: frictionPa + bendPa + staticPa,
+    frictionPa,
+    bendPa,
+    staticPa,
+    re: reLow,
+    de: channel.coilDiameterM === null ? null : deanNumber(reLow, d, channel.coilDiameterM),
+    uncertain: uncertain || isUncertain(channel, reHigh) || isUncertain(channel, reLow),
+  }
 }
 
 /**
- * How the clean ΔP without its static head answers to mass flow and viscosity at a working point: n = ∂ln ΔP/∂ln ṁ, k = ∂ln ΔP/∂ln μ.
- * Central differences of 1e-4 in the logarithm (error below 1e-6). Laminar and straight: 1 and 1; k is close to 2 - n where ρ is constant.
+ * How the clean ΔP without its static head answers to mass flow and viscosity at a working point: n = ∂ln ΔP/∂ln ṁ, k = ∂ln ΔP/∂ln
+ * μ.
+ * Central differences of 1e-4 in the logarithm (error below 1e-6). Laminar and straight: 1 and 1; k is close to 2 - n where ρ is
+ * constant.
  */
 export function exponents(
   channel: ChannelGeometry,

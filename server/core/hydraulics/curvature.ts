@@ -4,7 +4,10 @@ import { darcyFriction } from './friction.ts'
 export const deanNumber = (re: number, diameterM: number, coilDiameterM: number): number =>
   re * Math.sqrt(diameterM / coilDiameterM)
 
-/** Re at which the flow in a coil turns turbulent, 2300 [1 + 8.6 (d/D)^0.45]; 2300 for a straight tube. E. F. Schmidt, Chem. Ing. Tech. 39 (1967) 781. */
+/**
+ * Re at which the flow in a coil turns turbulent, 2300 [1 + 8.6 (d/D)^0.45]; 2300 for a straight tube. E. F. Schmidt, Chem. Ing.
+ * Tech. 39 (1967) 781.
+ */
 export const coilCriticalReynolds = (diameterM: number, coilDiameterM: number): number =>
   2300 * (1 + 8.6 * (diameterM / coilDiameterM) ** 0.45)
 
@@ -19,8 +22,10 @@ export function whiteCoilRatio(de: number): number {
 }
 
 /**
- * Turbulent friction in a coil over that in a straight tube [-]: 1 + 28800 (d/D)^0.62/Re below Re 22000, 1 + 0.0823 (1 + d/D) (d/D)^0.53 Re^0.25
- * from there to 1.5e5 (the two meet within 10 %; a weight in ln Re over 20000 to 24200 joins them). Source: E. F. Schmidt 1967, as above.
+ * Turbulent friction in a coil over that in a straight tube [-]: 1 + 28800 (d/D)^0.62/Re below Re 22000, 1 + 0.0823 (1 + d/D)
+ * (d/D)^0.53 Re^0.25
+ * from there to 1.5e5 (the two meet within 10 %; a weight in ln Re over 20000 to 24200 joins them). Source: E. F. Schmidt 1967, as
+ * above.
  */
 export function schmidtCoilRatio(re: number, diameterM: number, coilDiameterM: number): number {
   const c = diameterM / coilDiameterM
@@ -29,11 +34,15 @@ export function schmidtCoilRatio(re: number, diameterM: number, coilDiameterM: n
   return low + (high - low) * blend(re, 20000, 24200)
 }
 
-/** The transition of a coil is spread over the critical Re to this many times it, so that ΔP stays continuous; there it is uncertain. */
+/**
+ * The transition of a coil is spread over the critical Re to this many times it, so that ΔP stays continuous; there it is
+ * uncertain.
+ */
 export const COIL_TRANSITION = 1.25
 
 /**
- * Darcy friction factor of a coil over all regimes: 64/Re times White's ratio up to the critical Re, Churchill's straight friction times
+ * Darcy friction factor of a coil over all regimes: 64/Re times White's ratio up to the critical Re, Churchill's straight friction
+ * times
  * Schmidt's ratio from 1.25 times that, weighted over ln Re in between. Published only for the two ends.
  * re > 0; relRoughness 0 to 0.05 (roughness acts in the turbulent part alone); d/D up to 0.2. Errors: none.
  */

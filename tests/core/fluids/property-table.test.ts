@@ -1,7 +1,7 @@
 import { expect, it } from 'vitest'
 import { fluidOf, mixByMass } from '../../../server/core/fluids/fluid.ts'
 import { viscosityFactor } from '../../../server/core/fluids/learned-factor.ts'
-import { propertyTable } from '../../../server/core/fluids/property-table.ts'
+import { mixedTable, propertyTable } from '../../../server/core/fluids/property-table.ts'
 import { solvents } from '../../../server/core/fluids/solvents.ts'
 
 it('the table errs by less than 1e-4 in viscosity and density from limit to limit, every solvent, every 0.13 K', () => {
@@ -46,6 +46,44 @@ it('beyond the limits it clamps and says uncertain instead of throwing; so it do
   for (const k of [1, 9999, Number.NaN]) expect(t.uncertain(k)).toBe(true)
   expect(Number.isFinite(t.viscPaS(Number.NaN))).toBe(true)
   expect(t.uncertain(253.15)).toBe(false)
+})
+
+it('streams that meet mix as the fluid of the same fractions does, to 1e-4, and the fractions may be written anew between calls', () => {
+  const pure = (solvent: string) => fluidOf({ kind: 'solvent', solvent })
+  const now = [0.7, 0.3]
+  const met = mixedTable([propertyTable(pure('THF')), propertyTable(pure('hexane'))], now)
+  for (const [a, b] of [
+    [0.7, 0.3],
+    [0.2, 0.8],
+    [1, 0],
+  ] as const) {
+    now[0] = 3 * a
+    now[1] = 3 * b
+    const exact = mixByMass([
+      { fluid: pure('THF'), massFraction: a },
+      { fluid: pure('hexane'), massFraction: b },
+    ]).at(250)
+    expect(Math.abs(met.viscPaS(250) / exact.viscPaS - 1)).toBeLessThan(1e-4)
+    expect(Math.abs(met.rhoKgM3(250) / exact.rhoKgM3 - 1)).toBeLessThan(1e-4)
+    expect(met.uncertain(250)).toBe(false)
+  }
+})
+
+it('an aqueous quench with an organic stream is uncertain, and so is a mixed stream with water in it; one stream alone is itself', () => {
+  const water = propertyTable(fluidOf({ kind: 'solvent', solvent: 'water' }))
+  const thf = propertyTable(fluidOf({ kind: 'solvent', solvent: 'THF' }))
+  expect(mixedTable([water, thf], [0.5, 0.5]).uncertain(290)).toBe(true)
+  expect(mixedTable([water, thf], [0.5, 0.5]).water).toBe(0.5)
+  expect(mixedTable([water, thf], [0.005, 0.995]).uncertain(290)).toBe(false)
+  expect(mixedTable([thf], [1])).toBe(thf)
+  const wet = fluidOf({
+    kind: 'mixture',
+    parts: [
+      { solvent: 'THF', massFraction: 0.8 },
+      { solvent: 'water', massFraction: 0.2 },
+    ],
+  })
+  expect(propertyTable(wet).uncertain(290)).toBe(true)
 })
 
 it('a stream 20 % thicker than its solvent is found on three segments as 1.17 with an interval that holds 1.2, and one segment leaves a wide one', () => {

@@ -161,8 +161,8 @@ describe('a temperature profile', () => {
   const thf = propertyTable(fluidOf({ kind: 'solvent', solvent: 'THF' }))
 
   it('that is flat gives the uniform answer, one temperature or five', () => {
-    const one = cleanDpAlong(tube(), 1e-3, [250], thf)
-    const five = cleanDpAlong(tube(), 1e-3, [250, 250, 250, 250, 250], thf)
+    const one = cleanDpAlong(tube(), 1e-3, [250], thf)!
+    const five = cleanDpAlong(tube(), 1e-3, [250, 250, 250, 250, 250], thf)!
     expect(Math.abs(five.dpPa / one.dpPa - 1)).toBeLessThan(1e-12)
     expect(one.dpPa).toBe(cleanDp(tube(), 1e-3, thf.rhoKgM3(250), thf.viscPaS(250)).dpPa)
   })
@@ -174,16 +174,16 @@ describe('a temperature profile', () => {
         1e-4,
         Array.from({ length: n }, (_, i) => kFromC(-30 + (20 * i) / (n - 1))),
         thf,
-      ).dpPa
+      )!.dpPa
     expect(Math.abs(along(2) / along(400) - 1)).toBeLessThan(0.01)
     expect(Math.abs(along(3) / along(400) - 1)).toBeLessThan(0.0025)
   })
 
-  it('beyond the fluid, or without any temperature, is uncertain and never throws', () => {
-    expect(cleanDpAlong(tube(), 1e-3, [50, 250], thf).uncertain).toBe(true)
-    expect(cleanDpAlong(tube(), 1e-3, [1000], thf).uncertain).toBe(true)
-    expect(cleanDpAlong(tube(), 1e-3, [250, 260], thf).uncertain).toBe(false)
-    expect(cleanDpAlong(tube(), 1e-3, [], thf).uncertain).toBe(true)
+  it('beyond the fluid is uncertain, without any temperature null, and it never throws', () => {
+    expect(cleanDpAlong(tube(), 1e-3, [50, 250], thf)!.uncertain).toBe(true)
+    expect(cleanDpAlong(tube(), 1e-3, [1000], thf)!.uncertain).toBe(true)
+    expect(cleanDpAlong(tube(), 1e-3, [250, 260], thf)!.uncertain).toBe(false)
+    expect(cleanDpAlong(tube(), 1e-3, [], thf)).toBeNull()
   })
 })
 

@@ -33,10 +33,10 @@ describe('Colebrook', () => {
 })
 
 describe('Churchill over all regimes', () => {
-  it('is 64/Re to 1e-12 below Re 600 for every roughness up to 0.05 (Re → 0 is Hagen and Poiseuille)', () => {
+  it('is 64/Re to 1e-13 below Re 900 for every roughness up to 0.05 (Re → 0 is Hagen and Poiseuille)', () => {
     fc.assert(
-      fc.property(lnRe(1e-6, 600), roughness, (re, e) => {
-        expect(Math.abs((darcyFriction(re, e) * re) / 64 - 1)).toBeLessThan(1e-12)
+      fc.property(lnRe(1e-6, 899.9), roughness, (re, e) => {
+        expect(Math.abs((darcyFriction(re, e) * re) / 64 - 1)).toBeLessThan(1e-13)
       }),
     )
   })
