@@ -1,11 +1,12 @@
 import { crc32 } from 'node:zlib'
 import { MonitorError } from '../core/errors.ts'
 
+const eight = new Uint8Array(8)
+const double = new Float64Array(eight.buffer)
+
 /** A growing byte buffer, little-endian. */
 export class ByteWriter {
   private buffer = new Uint8Array(1 << 16)
-  private readonly eight = new Uint8Array(8)
-  private readonly double = new Float64Array(this.eight.buffer)
   length = 0
 
   private need(count: number): void {
@@ -26,8 +27,8 @@ export class ByteWriter {
   }
 
   f64(value: number): void {
-    this.double[0] = value
-    this.bytes(this.eight)
+    double[0] = value
+    this.bytes(eight)
   }
 
   /** An integer from 0 to 2^53, seven bits a byte. */
@@ -75,8 +76,6 @@ export class ByteReader {
   readonly source: Uint8Array
   position: number
   readonly end: number
-  private readonly eight = new Uint8Array(8)
-  private readonly double = new Float64Array(this.eight.buffer)
 
   constructor(source: Uint8Array, position = 0, end = source.length) {
     this.source = source
@@ -99,8 +98,8 @@ export class ByteReader {
   }
 
   f64(): number {
-    this.eight.set(this.take(8))
-    return this.double[0]!
+    eight.set(this.take(8))
+    return double[0]!
   }
 
   varint(): number {

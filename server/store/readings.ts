@@ -7,7 +7,7 @@ import { noRun } from './runs.ts'
 import { openStrip, stripTags } from './segment.ts'
 import type { SegmentTable } from './segments.ts'
 import { decodeStage } from './staging.ts'
-import { cellWidthsMs, isDrawn } from './tiers.ts'
+import { addToCells, cells, cellWidthsMs } from './tiers.ts'
 
 export const mostBuckets = 2000
 
@@ -38,7 +38,7 @@ export interface SamplesOfTag {
 interface Chunk {
   readonly values: Float64Array
   readonly codes: Uint8Array
-  /** Every row has a plain value. */
+  /** Every code is `cell.value`. */
   readonly plain: boolean
 }
 /** Rows of a segment or of a staged record: their times and a way to one tag; what it gives is good until asked again. */
@@ -144,20 +144,22 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
       mean: new Float64Array(n),
       count: new Float64Array(n),
     }))
+    const slotOf = (t: number): number => (t >= low && t < high ? Math.floor(t / bucketMs) - first : -1)
     const addRows = ({ tMs, tag }: Rows): void => {
-      const slots = Int32Array.from(tMs, (t) => (t >= low && t < high ? Math.floor(t / bucketMs) - first : -1))
+      const slots = new Int32Array(tMs.length)
+      for (let i = 0; i < slots.length; i++) slots[i] = slotOf(tMs[i]!)
       for (const own of out) {
         const { values, codes, plain } = tag(own.tag)
-        addReadings(own, slots, values, codes, plain)
+        addToCells({ ...own, sum: own.mean, places: 0 }, slots, values, codes, plain)
       }
     }
+    let room = cells(512)
     const usePage = (id: number): void => {
       const page = segments.page(id)
-      const slots = Int32Array.from(page.at, (cellNumber) => {
-        const t = cellNumber * page.cellMs
-        return t >= low && t < high ? Math.floor(t / bucketMs) - first : -1
-      })
-      for (const own of out) addCells(own, slots, page.tag(own.tag))
+      const slots = new Int32Array(page.at.length)
+      for (let i = 0; i < slots.length; i++) slots[i] = slotOf(page.at[i]! * page.cellMs)
+      if (room.count.length < page.at.length) room = cells(page.at.length * 2)
+      for (const own of out) addCells(own, slots, page.tag(own.tag, room))
     }
     segments.visit(run, low, high, (node) => {
       if (bucketMs % node.cellMs === 0) {
@@ -175,42 +177,19 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
 
   const samples = (run: RunId, tags: readonly number[], fromMs: number, toMs: number): SamplesOfTag[] => {
     const { width } = check(run, tags)
-    const gathered = tags.map((tag) => ({
-      tag,
-      tMs: [] as Float64Array[],
-      values: [] as Float64Array[],
-      codes: [] as Uint8Array[],
-    }))
-    const addRows = ({ tMs, tag }: Rows): void => {
-      const { from, to, whole } = window(tMs, fromMs, toMs)
-      const times = whole ? tMs.subarray(from, to) : null
-      for (const own of gathered) {
-        const { values, codes, plain } = tag(own.tag)
-        if (
-          times !== null &&
-          (plain || codes.indexOf(cell.absent, from) === -1 || codes.subarray(from, to).indexOf(cell.absent) === -1)
-        ) {
-          own.tMs.push(times)
-          own.values.push(values.slice(from, to))
-          own.codes.push(codes.slice(from, to))
-          continue
-        }
-        const picked: number[] = []
-        for (let i = from; i < to; i++) if (codes[i] !== cell.absent && tMs[i]! >= fromMs && tMs[i]! < toMs) picked.push(i)
-        own.tMs.push(Float64Array.from(picked, (i) => tMs[i]!))
-        own.values.push(Float64Array.from(picked, (i) => values[i]!))
-        own.codes.push(Uint8Array.from(picked, (i) => codes[i]!))
-      }
-    }
+    const pieces: Piece[] = []
     segments.visit(run, fromMs, toMs, (node) => {
-      if (node.level === 0) addRows(segmentRows(run, node.seq, width ?? 0))
+      if (node.level === 0) pieces.push(windowed(segmentRows(run, node.seq, width ?? 0), fromMs, toMs))
       return false
     })
     const fresh = stagedRows(run, width ?? 0, fromMs, toMs)
-    if (fresh !== null) addRows(fresh)
-    return gathered.map((own) =>
-      sorted({ tag: own.tag, tMs: joined(own.tMs), values: joined(own.values), codes: joinedBytes(own.codes) }),
-    )
+    if (fresh !== null) pieces.push(windowed(fresh, fromMs, toMs))
+    const shared = sharedTimes(pieces)
+    const rising = isRising(shared)
+    return tags.map((tag) => {
+      const own = gather(tag, pieces, shared, fromMs, toMs)
+      return own.tMs === shared ? (rising ? own : inOrder(own)) : isRising(own.tMs) ? own : inOrder(own)
+    })
   }
 
   return {
@@ -236,28 +215,6 @@ interface Sums {
   readonly count: Float64Array
 }
 
-function addReadings(
-  { min, max, mean, count }: Sums,
-  slots: Int32Array,
-  values: Float64Array,
-  codes: Uint8Array,
-  plain: boolean,
-): void {
-  for (let i = 0; i < slots.length; i++) {
-    const s = slots[i]!
-    if (s < 0) continue
-    const v = values[i]!
-    if (plain ? !Number.isFinite(v) : !isDrawn(codes[i]!, v)) continue
-    if (count[s] === 0) {
-      min[s] = v
-      max[s] = v
-    } else if (v < min[s]!) min[s] = v
-    else if (v > max[s]!) max[s] = v
-    count[s] = count[s]! + 1
-    mean[s] = mean[s]! + v
-  }
-}
-
 function addCells(
   { min, max, mean, count }: Sums,
   slots: Int32Array,
@@ -274,7 +231,14 @@ function addCells(
 }
 
 /** The stretch of rows from the first to the last in [fromMs, toMs), and whether all between are. */
-function window(tMs: Float64Array, fromMs: number, toMs: number): { from: number; to: number; whole: boolean } {
+interface Piece extends Rows {
+  readonly from: number
+  readonly to: number
+  readonly whole: boolean
+}
+
+function windowed(rows: Rows, fromMs: number, toMs: number): Piece {
+  const { tMs, tag } = rows
   let from = tMs.length
   let to = 0
   let inside = 0
@@ -285,36 +249,58 @@ function window(tMs: Float64Array, fromMs: number, toMs: number): { from: number
     to = i + 1
     inside++
   }
-  return { from: Math.min(from, to), to, whole: inside > 0 && inside === to - from }
+  from = Math.min(from, to)
+  return { tMs, tag, from, to, whole: inside === to - from }
 }
 
-function joined(parts: readonly Float64Array[]): Float64Array {
-  if (parts.length === 1) return parts[0]!
-  const all = new Float64Array(parts.reduce((n, part) => n + part.length, 0))
+/** The times of all pieces, one after the other: those of every tag that has a sample in each row. */
+function sharedTimes(pieces: readonly Piece[]): Float64Array {
+  const all = new Float64Array(pieces.reduce((n, { from, to }) => n + to - from, 0))
   let at = 0
-  for (const part of parts) {
-    all.set(part, at)
-    at += part.length
+  for (const { tMs, from, to } of pieces) {
+    all.set(tMs.subarray(from, to), at)
+    at += to - from
   }
   return all
 }
 
-function joinedBytes(parts: readonly Uint8Array[]): Uint8Array {
-  const all = new Uint8Array(parts.reduce((n, part) => n + part.length, 0))
-  let at = 0
-  for (const part of parts) {
-    all.set(part, at)
-    at += part.length
+/** One tag's samples in order of arrival; `tMs` is `shared` itself where nothing was left out. */
+function gather(tag: number, pieces: readonly Piece[], shared: Float64Array, fromMs: number, toMs: number): SamplesOfTag {
+  const values = new Float64Array(shared.length)
+  const codes = new Uint8Array(shared.length)
+  let times: Float64Array | null = null
+  let n = 0
+  for (const { tMs, tag: read, from, to, whole } of pieces) {
+    const chunk = read(tag)
+    const gap = chunk.plain ? -1 : chunk.codes.indexOf(cell.absent, from)
+    if (whole && (gap < 0 || gap >= to)) {
+      values.set(chunk.values.subarray(from, to), n)
+      if (chunk.plain) codes.fill(cell.value, n, n + to - from)
+      else codes.set(chunk.codes.subarray(from, to), n)
+      times?.set(tMs.subarray(from, to), n)
+      n += to - from
+      continue
+    }
+    times ??= shared.slice()
+    for (let i = from; i < to; i++) {
+      if (chunk.codes[i] === cell.absent || tMs[i]! < fromMs || tMs[i]! >= toMs) continue
+      times[n] = tMs[i]!
+      values[n] = chunk.values[i]!
+      codes[n++] = chunk.codes[i]!
+    }
   }
-  return all
+  return times === null
+    ? { tag, tMs: shared, values, codes }
+    : { tag, tMs: times.slice(0, n), values: values.slice(0, n), codes: codes.slice(0, n) }
 }
 
-/** By time where it is not already; equal times stay in order of arrival. */
-function sorted(samples: SamplesOfTag): SamplesOfTag {
-  const { tag, tMs, values, codes } = samples
-  let i = 1
-  while (i < tMs.length && tMs[i]! >= tMs[i - 1]!) i++
-  if (i >= tMs.length) return samples
+function isRising(tMs: Float64Array): boolean {
+  for (let i = 1; i < tMs.length; i++) if (tMs[i]! < tMs[i - 1]!) return false
+  return true
+}
+
+/** By time; equal times stay in order of arrival. */
+function inOrder({ tag, tMs, values, codes }: SamplesOfTag): SamplesOfTag {
   const order = Array.from(tMs, (_, j) => j).sort((a, b) => tMs[a]! - tMs[b]! || a - b)
   return {
     tag,

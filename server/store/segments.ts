@@ -2,7 +2,7 @@ import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
 import { keyOf, type RunId } from './keys.ts'
 import { type Columns, decodeOrder, encodeOrder, encodeStrips, type Order } from './segment.ts'
-import { encodePage, fan, merge, openPage, type Page, summarise } from './tiers.ts'
+import { cells, encodePage, fan, merge, openPage, type Page, summarise } from './tiers.ts'
 
 export interface Node {
   readonly id: number
@@ -72,7 +72,11 @@ export function segmentTable(db: Database.Database) {
         if (roots.length < fan) break
         const pages = roots.map(({ id }): Page => {
           const open = page(id)
-          return { cellMs: open.cellMs, at: open.at, tags: Array.from({ length: open.width }, (_, c) => open.tag(c)) }
+          return {
+            cellMs: open.cellMs,
+            at: open.at,
+            tags: Array.from({ length: open.width }, (_, c) => open.tag(c, cells(open.at.length))),
+          }
         })
         const low = Math.min(...roots.map((n) => n.tMin))
         const high = Math.max(...roots.map((n) => n.tMax))

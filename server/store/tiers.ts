@@ -1,3 +1,4 @@
+import { MonitorError } from '../core/errors.ts'
 import { cell } from '../core/reading.ts'
 import { ByteReader, ByteWriter } from './bytes.ts'
 import { readNumbers, writeNumbers } from './numbers.ts'
@@ -22,6 +23,8 @@ export interface Cells {
   readonly min: Float64Array
   readonly max: Float64Array
   readonly sum: Float64Array
+  /** Decimal places that hold every reading, so that sums are exact; −1 when some reading lies off every grid. */
+  places: number
 }
 
 export interface Page {
@@ -31,11 +34,13 @@ export interface Page {
   readonly tags: readonly Cells[]
 }
 
-const cells = (n: number): Cells => ({
+/** Room for n cells. */
+export const cells = (n: number): Cells => ({
   count: new Float64Array(n),
   min: new Float64Array(n),
   max: new Float64Array(n),
   sum: new Float64Array(n),
+  places: 0,
 })
 
 /** Readings that a trend draws: plain and uncertain ones. */
@@ -58,40 +63,56 @@ function* cellNumbers(tMs: Float64Array, n: number, widthMs: number): Generator<
   for (let i = 0; i < n; i++) yield Math.floor(tMs[i]! / widthMs)
 }
 
-/** A sum of readings with so many decimals is put back on their grid: exact while it stays below 2^53 grid steps. */
-function snap(sum: number, places: number): number {
+/**
+ * A sum of numbers with so many decimals, put back on their grid: then it is the exact sum. `size` bounds every partial sum; rounding in
+ * `additions` additions stays under additions·2^-53·size, less than half a grid step as long as additions·size·10^places < 2^51; beyond
+ * that it is left as it is.
+ */
+function snap(sum: number, additions: number, size: number, places: number): number {
   if (places < 0) return sum
   const p = 10 ** places
-  const k = Math.round(sum * p)
-  return Math.abs(k) < 2 ** 51 ? k / p : sum
+  return additions * size * p < 2 ** 51 ? Math.round(sum * p) / p : sum
+}
+
+function isPlain(codes: Uint8Array, rows: number): boolean {
+  for (let i = 0; i < rows; i++) if (codes[i] !== cell.value) return false
+  return true
+}
+
+function countDrawn(codes: Uint8Array, values: Float64Array, rows: number): number {
+  let count = 0
+  for (let i = 0; i < rows; i++) if (isDrawn(codes[i]!, values[i]!)) count++
+  return count
+}
+
+/** Narrowest cells, at least `least` wide, of which at most `most` hold the times that `numbers` gives; the widest when none are so few. */
+function chooseCells(
+  numbers: (widthMs: number) => Iterable<number>,
+  most: number,
+  least: number,
+): { cellMs: number; at: Float64Array; slotOf: Map<number, number> } {
+  const widest = cellWidthsMs.at(-1)!
+  for (const cellMs of cellWidthsMs) {
+    if (cellMs < least) continue
+    const at = distinct(numbers(cellMs), cellMs === widest ? Infinity : Math.max(1, most))
+    if (at !== null) return { cellMs, at, slotOf: new Map(Array.from(at, (n, i) => [n, i] as const)) }
+  }
+  throw new MonitorError('STORE_CORRUPT', `summary cells of ${least} ms are wider than this build knows`)
 }
 
 /** The level-0 page of a segment. `places` as from `encodeStrips`. */
 export function summarise(columns: Columns, places: readonly number[]): Page {
-  const { rows, width } = columns
-  const readings: number[] = columns.codes.map((codes, c) => {
-    let count = 0
-    const values = columns.values[c]!
-    for (let i = 0; i < rows; i++) if (isDrawn(codes[i]!, values[i]!)) count++
-    return count
-  })
-  const used = readings.filter((n) => n > 0).length
-  const most = Math.max(1, readings.reduce((a, b) => a + b, 0) / (Math.max(1, used) * readingsPerCell))
-  let cellMs = cellWidthsMs.at(-1)!
-  let at: Float64Array | null = null
-  for (const widthMs of cellWidthsMs) {
-    at = distinct(cellNumbers(columns.tMs, rows, widthMs), most)
-    if (at === null) continue
-    cellMs = widthMs
-    break
-  }
-  at ??= distinct(cellNumbers(columns.tMs, rows, cellMs), Infinity)!
-  const slotOf = new Map(Array.from(at, (n, i) => [n, i] as const))
+  const { rows, width, tMs } = columns
+  const plain = columns.codes.map((codes) => isPlain(codes, rows))
+  const readings = columns.codes.map((codes, c) => (plain[c] ? rows : countDrawn(codes, columns.values[c]!, rows)))
+  const used = Math.max(1, readings.filter((n) => n > 0).length)
+  const most = readings.reduce((a, b) => a + b, 0) / (used * readingsPerCell)
+  const { cellMs, at, slotOf } = chooseCells((widthMs) => cellNumbers(tMs, rows, widthMs), most, 0)
   const slots = new Uint32Array(rows)
   let last = Number.NaN
   let slot = 0
   for (let i = 0; i < rows; i++) {
-    const n = Math.floor(columns.tMs[i]! / cellMs)
+    const n = Math.floor(tMs[i]! / cellMs)
     if (n !== last) {
       slot = slotOf.get(n)!
       last = n
@@ -101,27 +122,44 @@ export function summarise(columns: Columns, places: readonly number[]): Page {
   const tags: Cells[] = []
   for (let c = 0; c < width; c++) {
     const page = cells(at.length)
+    page.places = places[c]!
+    addToCells(page, slots, columns.values[c]!, columns.codes[c]!, plain[c]!)
     const { count, min, max, sum } = page
-    const values = columns.values[c]!
-    const codes = columns.codes[c]!
-    const p = 10 ** Math.max(0, places[c]!)
-    const whole = places[c]! >= 0
-    for (let i = 0; i < rows; i++) {
-      const v = values[i]!
-      if (!isDrawn(codes[i]!, v)) continue
-      const s = slots[i]!
-      if (count[s] === 0) {
-        min[s] = v
-        max[s] = v
-      } else if (v < min[s]!) min[s] = v
-      else if (v > max[s]!) max[s] = v
-      count[s] = count[s]! + 1
-      sum[s] = sum[s]! + (whole ? Math.round(v * p) : v)
-    }
-    if (whole) for (let s = 0; s < at.length; s++) sum[s] = sum[s]! / p
+    for (let s = 0; s < at.length; s++) sum[s] = snap(sum[s]!, count[s]!, count[s]! * Math.max(-min[s]!, max[s]!), places[c]!)
     tags.push(page)
   }
   return { cellMs, at, tags }
+}
+
+/** Adds the drawn readings to the cells their slots name; a negative slot is left out. `plain` when every code is `cell.value`. */
+export function addToCells(
+  { count, min, max, sum }: Cells,
+  slots: Int32Array | Uint32Array,
+  values: Float64Array,
+  codes: Uint8Array,
+  plain: boolean,
+): void {
+  const n = slots.length
+  for (let i = 0; i < n; ) {
+    const s = slots[i]!
+    let low = Infinity
+    let high = -Infinity
+    let total = 0
+    let taken = 0
+    for (; i < n && slots[i] === s; i++) {
+      const v = values[i]!
+      if (plain ? v - v !== 0 : !isDrawn(codes[i]!, v)) continue
+      if (v < low) low = v
+      if (v > high) high = v
+      total += v
+      taken++
+    }
+    if (s < 0 || taken === 0) continue
+    if (count[s] === 0 || low < min[s]!) min[s] = low
+    if (count[s] === 0 || high > max[s]!) max[s] = high
+    count[s] = count[s]! + taken
+    sum[s] = sum[s]! + total
+  }
 }
 
 /** One page from several of the level below; `level` is the new page's. */
@@ -135,31 +173,20 @@ export function merge(pages: readonly Page[], level: number): Page {
     readings += own
     if (own > 0) used++
   }
-  const most = Math.max(1, readings / (Math.max(1, used) * readingsPerCell * growth ** level))
+  const most = readings / (Math.max(1, used) * readingsPerCell * growth ** level)
   const least = Math.max(...pages.map((page) => page.cellMs))
   const numbersAt = function* (widthMs: number) {
     for (const page of pages) for (const n of page.at) yield Math.floor((n * page.cellMs) / widthMs)
   }
-  let cellMs = cellWidthsMs.at(-1)!
-  let at: Float64Array | null = null
-  for (const widthMs of cellWidthsMs) {
-    if (widthMs < least) continue
-    at = distinct(numbersAt(widthMs), most)
-    if (at === null) continue
-    cellMs = widthMs
-    break
-  }
-  at ??= distinct(numbersAt(cellMs), Infinity)!
-  const slotOf = new Map(Array.from(at, (n, i) => [n, i] as const))
+  const { cellMs, at, slotOf } = chooseCells(numbersAt, most, least)
   const tags: Cells[] = []
   for (let c = 0; c < width; c++) {
     const whole = cells(at.length)
-    let places = 0
+    const additions = new Float64Array(at.length)
     for (const page of pages) {
       const own = page.tags[c]
       if (own === undefined) continue
-      const p = placesOfAll(own.sum)
-      places = p < 0 || places < 0 ? -1 : Math.max(places, p)
+      whole.places = own.places < 0 || whole.places < 0 ? -1 : Math.max(whole.places, own.places)
       for (let i = 0; i < page.at.length; i++) {
         if (own.count[i] === 0) continue
         const s = slotOf.get(Math.floor((page.at[i]! * page.cellMs) / cellMs))!
@@ -167,54 +194,98 @@ export function merge(pages: readonly Page[], level: number): Page {
         if (whole.count[s] === 0 || own.max[i]! > whole.max[s]!) whole.max[s] = own.max[i]!
         whole.count[s] = whole.count[s]! + own.count[i]!
         whole.sum[s] = whole.sum[s]! + own.sum[i]!
+        additions[s] = additions[s]! + 1
       }
     }
-    for (let s = 0; s < at.length; s++) whole.sum[s] = snap(whole.sum[s]!, places)
+    for (let s = 0; s < at.length; s++)
+      whole.sum[s] = snap(whole.sum[s]!, additions[s]!, whole.count[s]! * Math.max(-whole.min[s]!, whole.max[s]!), whole.places)
     tags.push(whole)
   }
   return { cellMs, at, tags }
 }
 
-const scratch = new ByteWriter()
-const placesOfAll = (values: Float64Array): number => writeNumbers(scratch.clear(), values, values.length)
-
 const out = new ByteWriter()
 const part = new ByteWriter()
 
-/** Cells, then a list of lengths, then each tag's four columns. */
+const equal = (a: Float64Array, b: Float64Array): boolean => {
+  for (let i = 0; i < a.length; i++) if (a[i] !== b[i]) return false
+  return true
+}
+
+/**
+ * Cells; the different columns of counts, mostly one for all tags; a list of lengths; then each tag: which counts, decimal places, least,
+ * greatest, and sum − count·least, which stays small where the first and last cell are only partly filled.
+ */
 export function encodePage(page: Page): Uint8Array {
+  const n = page.at.length
   out.clear()
   part.clear()
   out.varint(page.cellMs)
-  out.varint(page.at.length)
-  writeNumbers(out, page.at, page.at.length)
+  out.varint(n)
+  writeNumbers(out, page.at, n)
+  const counts: Float64Array[] = []
+  const which = page.tags.map(({ count }) => {
+    const known = counts.findIndex((c) => equal(c, count))
+    return known >= 0 ? known : counts.push(count) - 1
+  })
+  out.varint(counts.length)
+  for (const count of counts) writeNumbers(out, count, n)
   out.varint(page.tags.length)
-  for (const tag of page.tags) {
+  page.tags.forEach((tag, c) => {
     const before = part.length
-    for (const column of [tag.count, tag.min, tag.max, tag.sum]) writeNumbers(part, column, column.length)
+    part.varint(which[c]!)
+    part.varint(tag.places + 1)
+    writeNumbers(part, tag.min, n)
+    writeNumbers(part, tag.max, n)
+    const excess = tag.sum.map((sum, i) => onGrid(sum - tag.count[i]! * tag.min[i]!, tag.places))
+    writeNumbers(part, excess, n)
     out.varint(part.length - before)
-  }
+  })
   out.bytes(part.view())
   return out.sealed()
 }
 
-/** Opens a page; each tag is decoded only when asked for. Errors: STORE_CORRUPT. */
-export function openPage(body: Uint8Array): { cellMs: number; at: Float64Array; width: number; tag: (index: number) => Cells } {
+const onGrid = (x: number, places: number): number => (places < 0 ? x : Math.round(x * 10 ** places) / 10 ** places)
+
+/** Opens a page; each tag is decoded only when asked for, into cells of the caller's that hold at least as many. Errors: STORE_CORRUPT. */
+export function openPage(body: Uint8Array): {
+  cellMs: number
+  at: Float64Array
+  width: number
+  tag: (index: number, into: Cells) => Cells
+} {
   const from = ByteReader.open(body)
   const cellMs = from.varint()
   const n = from.varint()
   const at = new Float64Array(n)
   readNumbers(from, at, n)
+  const counts = Array.from({ length: from.varint() }, () => {
+    const count = new Float64Array(n)
+    readNumbers(from, count, n)
+    return count
+  })
   const width = from.varint()
   const starts = [0]
   for (let c = 0; c < width; c++) starts.push(starts[c]! + from.varint())
   const base = from.position
-  const tag = (index: number): Cells => {
-    const own = cells(n)
-    if (index >= width) return own
+  const tag = (index: number, into: Cells): Cells => {
+    if (index >= width) {
+      into.count.fill(0, 0, n)
+      return into
+    }
     const reader = new ByteReader(from.source, base + starts[index]!, base + starts[index + 1]!)
-    for (const column of [own.count, own.min, own.max, own.sum]) readNumbers(reader, column, n)
-    return own
+    const { count, min, max, sum } = into
+    count.set(counts[reader.varint()]!)
+    into.places = reader.varint() - 1
+    readNumbers(reader, min, n)
+    readNumbers(reader, max, n)
+    readNumbers(reader, sum, n)
+    const p = into.places < 0 ? 0 : 10 ** into.places
+    for (let i = 0; i < n; i++) {
+      const x = sum[i]! + count[i]! * min[i]!
+      sum[i] = p === 0 ? x : Math.round(x * p) / p
+    }
+    return into
   }
   return { cellMs, at, width, tag }
 }
