@@ -17,11 +17,9 @@ export interface LithiumSalt {
 }
 
 /**
- * Solubilities: LiOH, Lange's Handbook of Chemistry (from memory; the Merck Index is within 1 % at 0 and 20 °C, 10 % lower at 100
- * °C); LiCl, LiBr, LiF, Li2CO3
- * from memory after handbook tables, 5 % (10 % for LiBr). Crystal densities: CRC Handbook; LiOH 1460, others 1 %. Heats of
- * dissolution at 25 °C: CRC Handbook,
- * enthalpy of solution of electrolytes (from memory), 3 %.
+ * Solubilities: LiOH, Lange's Handbook of Chemistry (from memory; the Merck Index is within 1 % at 0 and 20 °C, 10 % lower at
+ * 100 °C); LiCl, LiBr, LiF, Li2CO3 from memory after handbook tables, 5 % (10 % for LiBr). Crystal densities: CRC Handbook; LiOH
+ * 1460, others 1 %. Heats of dissolution at 25 °C: CRC Handbook, enthalpy of solution of electrolytes (from memory), 3 %.
  */
 export const lithiumSalts: readonly LithiumSalt[] = [
   {

@@ -42,9 +42,8 @@ const LOCAL_SHARES = [0.1, 0.01] as const
 
 /**
  * The deposits that explain one ratio: a uniform film, constrictions over 10 % and 1 % of the length, and, where branches lie in
- * parallel and the
- * ratio's interval [low, high] holds the value, plugged branches. One ΔP at one flow cannot choose among them; the sentences say
- * what could.
+ * parallel and the ratio's interval [low, high] holds the value, plugged branches. One ΔP at one flow cannot choose among them;
+ * the sentences say what could.
  * Errors: as `thicknessOfRatio` and `pluggedRatio`.
  */
 export function depositReadings(

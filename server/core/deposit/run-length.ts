@@ -12,12 +12,12 @@ export function filmVolumeM3(channel: ChannelGeometry, thicknessM: number): numb
 export const USUAL_CAPTURE = 0.1
 
 /**
- * Time from clean to a limit ratio, s, when the captured share of the solid lies evenly over the walls as dense crystal and flow,
- * temperature and water stay:
+ * Time from clean to a limit ratio, s, when the captured share of the solid lies evenly over the walls as dense crystal and
+ * flow, temperature and water stay:
  *   t = V_film(δ(r))/(c V̇)
  * A loose deposit, or one that lies in one place, gets there sooner: an upper bound for the geometry, an order of magnitude for
- * the chemistry.
- * Null when no solid is made or captured. Errors: HYDRAULICS_RANGE when the limit is not above 1 or nothing flows.
+ * the chemistry. Null when no solid is made or captured. Errors: HYDRAULICS_RANGE when the limit is not above 1 or nothing
+ * flows.
  */
 export function runLengthS(
   channel: ChannelGeometry,
@@ -34,9 +34,8 @@ export function runLengthS(
 
 /**
  * The captured share that an observed growth implies: film volume gained between two ratios over the solid made in that time.
- * Above 1 the water figure cannot
- * explain the growth: more water gets in, the deposit is loose, lies in one place, or is something else. Null when no solid was
- * made.
+ * Above 1 the water figure cannot explain the growth: more water gets in, the deposit is loose, lies in one place, or is
+ * something else. Null when no solid was made.
  * Errors: HYDRAULICS_RANGE unless the time is above 0.
  */
 export function impliedCapture(

@@ -40,10 +40,9 @@ export function ratioOfThickness(channel: ChannelGeometry, at: WorkingPoint, thi
 }
 
 /**
- * Thickness of the uniform deposit that explains a ratio at constant flow, any regime [m]; 0 at a ratio of 1 or below (nothing is
- * there to be seen).
- * The largest answer leaves 2 % of the bore. The inverse of `ratioOfThickness` to 1e-12. Errors: HYDRAULICS_RANGE when nothing
- * flows.
+ * Thickness of the uniform deposit that explains a ratio at constant flow, any regime [m]; 0 at a ratio of 1 or below (nothing
+ * is there to be seen). The largest answer leaves 2 % of the bore. The inverse of `ratioOfThickness` to 1e-12. Errors:
+ * HYDRAULICS_RANGE when nothing flows.
  */
 export function thicknessOfRatio(channel: ChannelGeometry, at: WorkingPoint, ratio: number, options?: DpOptions): number {
   refuseStill(at)
@@ -59,8 +58,8 @@ function refuseStill(at: WorkingPoint): void {
 
 /**
  * Bore exponent e = -∂ln ΔP/∂ln d at constant flow: 4 laminar, 4.75 smooth turbulent, 5 rough, about 4.2 in a laminar coil.
- * Central difference of 1e-4.
- * With it the closed forms below stand in for the full solution in the scan loop: within 1 % of ln ratio while the regime stays.
+ * Central difference of 1e-4. With it the closed forms below stand in for the full solution in the scan loop: within 1 % of ln
+ * ratio while the regime stays.
  */
 export function boreExponent(channel: ChannelGeometry, at: WorkingPoint, options?: DpOptions): number {
   refuseStill(at)
@@ -79,9 +78,9 @@ export const constrictionRatio = (lengthShare: number, boreRatio: number, expone
   1 - lengthShare + lengthShare * boreRatio ** -exponent
 
 /**
- * The same in full at a working point, any regime, with what the throat's ends cost: 0.5 (1 - b²) going in, Borda and Carnot's (1
- * - b²)² coming out,
- * both in the throat's velocity head (turbulent figures; laminar ends cost more). Errors: HYDRAULICS_RANGE when nothing flows.
+ * The same in full at a working point, any regime, with what the throat's ends cost: 0.5 (1 - b²) going in, Borda and Carnot's
+ * (1 - b²)² coming out, both in the throat's velocity head (turbulent figures; laminar ends cost more). Errors: HYDRAULICS_RANGE
+ * when nothing flows.
  */
 export function ratioOfConstriction(channel: ChannelGeometry, at: WorkingPoint, lengthShare: number, boreRatio: number): number {
   refuseStill(at)

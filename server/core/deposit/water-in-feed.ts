@@ -24,8 +24,8 @@ export interface WaterProducts {
  * H2O + RLi → RH + LiOH, all water reacting:
  *   n = x ρ/M(H2O)    m(LiOH) = n M(LiOH)    V = m/ρ(LiOH)
  * waterPpm x: mass of water per mass of feed, 1e-6. rhoKgM3 ρ: the feed. M(H2O) 18.015, M(LiOH) 23.948 g/mol, ρ(LiOH) 1460 kg/m3
- * (crystal; a loose
- * deposit fills two to three times as much). Errors: FLUID_RANGE for a negative or non-finite content or density.
+ * (crystal; a loose deposit fills two to three times as much). Errors: FLUID_RANGE for a negative or non-finite content or
+ * density.
  */
 export function waterProducts(waterPpm: number, rhoKgM3: number): WaterProducts {
   if (!(waterPpm >= 0 && waterPpm <= 1e6 && rhoKgM3 > 0))

@@ -22,9 +22,8 @@ export function perryViscosity(
 }
 
 /**
- * Saturated-liquid density, ρ = M C1/C2^(1+(1-T/C3)^C4) [kg/m3] with M [kg/mol], C1 [mol/m3], C3 the critical temperature [K]. The
- * last 20 K below it
- * are left out of the range: the curve is vertical there. Perry, 8th ed., table 2-32.
+ * Saturated-liquid density, ρ = M C1/C2^(1+(1-T/C3)^C4) [kg/m3] with M [kg/mol], C1 [mol/m3], C3 the critical temperature [K].
+ * The last 20 K below it are left out of the range: the curve is vertical there. Perry, 8th ed., table 2-32.
  */
 export function perryDensity(
   molarKgMol: number,
@@ -96,10 +95,9 @@ export function line(y0: number, temp0K: number, slopePerK: number, lowK: number
 export const isInside = (c: Correlation, tempK: number): boolean => tempK >= c.lowK && tempK <= c.highK
 
 /**
- * The correlation, and beyond its range the value that goes on from the edge: `arrhenius` keeps the edge's slope of ln y over 1/T
- * (viscosity), `linear` the edge's slope (density), `hold` the edge's value (heat capacity, conductivity). Polynomials and powers
- * of
- * T run wild outside their range; these do not.
+ * The correlation, and beyond its range the value that goes on from the edge: `arrhenius` keeps the edge's slope of ln y over
+ * 1/T (viscosity), `linear` the edge's slope (density), `hold` the edge's value (heat capacity, conductivity). Polynomials and
+ * powers of T run wild outside their range; these do not.
  */
 export function extended(c: Correlation, tempK: number, how: 'arrhenius' | 'linear' | 'hold'): number {
   if (isInside(c, tempK)) return c.at(tempK)

@@ -26,9 +26,9 @@ const Z90 = 1.6449
 /**
  * How much thicker a stream is than its solvent, from the clean levels of the segments it flows through. Each says
  *   lnLevel_i = k_i ln φ + (geometry of its own, sd 0.15) + (noise, sd_i),   ln φ ~ N(0, 0.3²)
- * and ln φ is their weighted mean (Gaussian posterior); low and high hold 90 %. With one segment bore and viscosity cannot be told
- * apart, and the interval
- * says so (about ± 25 %); with many it narrows. Without a segment it is 1 with the prior's interval. Errors: none.
+ * and ln φ is their weighted mean (Gaussian posterior); low and high hold 90 %. With one segment bore and viscosity cannot be
+ * told apart, and the interval says so (about ± 25 %); with many it narrows. Without a segment it is 1 with the prior's
+ * interval. Errors: none.
  */
 export function viscosityFactor(levels: readonly LearnedLevel[]): ViscosityFactor {
   let precision = 1 / PRIOR_SD ** 2

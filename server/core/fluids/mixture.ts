@@ -5,13 +5,10 @@ import { type Fluid, type FluidState, mixesBadly } from './state.ts'
 /**
  * Properties of liquids that meet, mass fractions w_i (need not add up to 1, they are normalised):
  *   ln μ = Σ w_i ln μ_i     1/ρ = Σ w_i/ρ_i     cp = Σ w_i cp_i     λ = (Σ w_i λ_i^-2)^-1/2
- * Errors of the rules: viscosity 5 to 10 % for mixtures of ethers, hydrocarbons, esters and halocarbons (logarithmic rule on mass,
- * after Arrhenius), a
- * factor up to 3 where water meets alcohol, ether or amide, so such a mixture is marked uncertain by mixByMass; density (ideal
- * volumes) under 1 %,
- * 4 % with water; heat capacity 5 %; conductivity (Vredeveld's power -2; Poling, Prausnitz and O'Connell, The Properties of Gases
- * and
- * Liquids, 5th ed., chapter 10) 5 %. Figures of error from memory.
+ * Errors of the rules: viscosity 5 to 10 % for mixtures of ethers, hydrocarbons, esters and halocarbons (logarithmic rule on
+ * mass, after Arrhenius), a factor up to 3 where water meets alcohol, ether or amide, so such a mixture is marked uncertain by
+ * mixByMass; density (ideal volumes) under 1 %, 4 % with water; heat capacity 5 %; conductivity (Vredeveld's power -2; Poling,
+ * Prausnitz and O'Connell, The Properties of Gases and Liquids, 5th ed., chapter 10) 5 %. Figures of error from memory.
  * Errors: FLUID_RANGE without a positive fraction.
  */
 export function mixState(states: readonly FluidState[], massFractions: readonly number[]): FluidState {
@@ -39,13 +36,10 @@ export function mixState(states: readonly FluidState[], massFractions: readonly 
 const order: readonly WaterMiscibility[] = ['full', 'partial', 'none']
 
 /**
- * A mixture as a Fluid, by `mixState`. Range: where every part is inside its own; a part below its freezing point counts as
- * dissolved, so
- * only the extrapolation of its viscosity marks the state. Freezing: the highest of the parts, an upper bound for a simple
- * eutectic; boiling: the
- * lowest; miscibility with water: the worst of the parts above 5 %. Errors: FLUID_RANGE for no parts, a negative fraction or a sum
- * that is
- * not 1 within 0.02.
+ * A mixture as a Fluid, by `mixState`. Range: where every part is inside its own (so a part below its freezing point makes it
+ * uncertain). Freezing: the highest of the parts, an upper bound for a simple eutectic; boiling: the lowest; miscibility with
+ * water: the worst of the parts above 5 %.
+ * Errors: FLUID_RANGE for no parts, a negative fraction or a sum that is not 1 within 0.02.
  */
 export function mixByMass(parts: readonly { readonly fluid: Fluid; readonly massFraction: number }[]): Fluid {
   const sum = parts.reduce((a, p) => a + p.massFraction, 0)

@@ -1,9 +1,9 @@
 /**
  * Monotone cubic interpolation through (x_i, y_i), x rising: between rising data it rises, and it makes no hump of its own.
- * Slopes: weighted harmonic mean of neighbouring secants (zero at a local extremum), three-point at the ends, limited.
- * Outside the data it goes on straight with the end slope.
- * Source: F. N. Fritsch and R. E. Carlson, SIAM J. Numer. Anal. 17 (1980) 238; slopes after Fritsch and Butland,
- * SIAM J. Sci. Stat. Comput. 5 (1984) 300. One point gives a constant. Errors: none; the caller sorts and checks.
+ * Slopes: weighted harmonic mean of neighbouring secants (zero at a local extremum), three-point at the ends, limited. Outside
+ * the data it goes on straight with the end slope.
+ * Source: F. N. Fritsch and R. E. Carlson, SIAM J. Numer. Anal. 17 (1980) 238; slopes after Fritsch and Butland, SIAM J. Sci.
+ * Stat. Comput. 5 (1984) 300. One point gives a constant. Errors: none; the caller sorts and checks.
  */
 export function monotoneCubic(x: readonly number[], y: readonly number[]): (at: number) => number {
   const n = x.length

@@ -17,8 +17,7 @@ const STEP_K = 1
 
 /**
  * Tabulates a fluid over its whole limits in steps of 1 K and interpolates ln μ and ρ by cubic Hermite with central-difference
- * slopes.
- * Interpolation error below 1e-4 relative inside the published range of every solvent here (tested; 2e-6 typical).
+ * slopes. Interpolation error below 1e-4 relative inside the published range of every solvent here (tested; 2e-6 typical).
  */
 export function propertyTable(fluid: Fluid): PropertyTable {
   const [lowK, highK] = fluid.limitK
@@ -49,10 +48,9 @@ export function propertyTable(fluid: Fluid): PropertyTable {
 }
 
 /**
- * Streams that meet, as a table: mixed by `mixState`'s rules with these mass fractions (normalised), at no more cost than reading
- * each part. The array
- * is read at every call, so a caller may keep one and write the fractions of the moment into it. Water with an organic liquid is
- * uncertain, as in `mixByMass`.
+ * Streams that meet, as a table: mixed by `mixState`'s rules with these mass fractions (normalised), at no more cost than
+ * reading each part. The array is read at every call, so a caller may keep one and write the fractions of the moment into it.
+ * Water with an organic liquid is uncertain, as in `mixByMass`.
  */
 export function mixedTable(parts: readonly PropertyTable[], massFractions: ArrayLike<number>): PropertyTable {
   const only = parts[0]

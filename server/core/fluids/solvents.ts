@@ -34,11 +34,9 @@ const perry = "Perry's Chemical Engineers' Handbook, 8th ed., tables 2-313, 2-32
 
 /**
  * The solvents. Correlation coefficients: Perry's Chemical Engineers' Handbook, 8th ed. (tables beside each form in
- * correlation.ts);
- * water: IAPWS and Kell (water.ts), its heat capacity Perry 2-153. Freezing and boiling points: CRC Handbook of Chemistry and
- * Physics,
- * physical constants of organic compounds. Miscibility: common practice.
- * 2-Methyltetrahydrofuran and dimethoxyethane have no open correlation: values from memory, low confidence, viscosity 25 %.
+ * correlation.ts); water: IAPWS and Kell (water.ts), its heat capacity Perry 2-153. Freezing and boiling points: CRC Handbook of
+ * Chemistry and Physics, physical constants of organic compounds. Miscibility: common practice. 2-Methyltetrahydrofuran and
+ * dimethoxyethane have no open correlation: values from memory, low confidence, viscosity 25 %.
  */
 export const solvents: readonly SolventEntry[] = [
   {

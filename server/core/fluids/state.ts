@@ -40,9 +40,8 @@ export interface Fluid {
 
 /**
  * The rule for "far outside": more than this beyond the published range of viscosity or density, or within 20 K of the critical
- * point, there is no answer. In between, viscosity
- * goes on with the edge's slope of ln μ over 1/T, density straight, heat capacity and conductivity at the edge's value. Project's
- * choice.
+ * point, there is no answer. In between, viscosity goes on with the edge's slope of ln μ over 1/T, density straight, heat
+ * capacity and conductivity at the edge's value. Project's choice.
  */
 export const FAR_K = 60
 

@@ -10,10 +10,9 @@ const ASSUMED_COND = 0.13
 
 /**
  * A liquid by the user's own figures: one density [kg/m3], held over temperature (liquids lose about 0.1 % per kelvin), and
- * viscosities
- * [(°C, mPa s), ...] interpolated monotonically in ln μ over temperature (Fritsch and Carlson 1980). Beyond the table: uncertain,
- * ln μ going on over 1/T with the end's slope; a single point is trusted for 5 K either side.
- * Heat capacity 1900 J/(kg K) and conductivity 0.13 W/(m K) are assumed (organic liquids, 20 %) and said so in `assumed`.
+ * viscosities [(°C, mPa s), ...] interpolated monotonically in ln μ over temperature (Fritsch and Carlson 1980). Beyond the
+ * table: uncertain, ln μ going on over 1/T with the end's slope; a single point is trusted for 5 K either side. Heat capacity
+ * 1900 J/(kg K) and conductivity 0.13 W/(m K) are assumed (organic liquids, 20 %) and said so in `assumed`.
  * Errors: FLUID_RANGE for no point, a repeated temperature, or a value that is not positive and finite.
  */
 export function tableFluid(densityKgM3: number, viscosityMPaS: readonly (readonly [tempC: number, mPaS: number])[]): Fluid {

@@ -1,7 +1,8 @@
 import type { Correlation } from './correlation.ts'
 
 /**
- * Viscosity of liquid water at 0.1 MPa: μ = 1e-6 Σ a_i (T/300 K)^b_i [Pa s]. 253.15 to 383.15 K (metastable below 273.15 K), 1 %.
+ * Viscosity of liquid water at 0.1 MPa: μ = 1e-6 Σ a_i (T/300 K)^b_i [Pa s]. 253.15 to 383.15 K (metastable below 273.15 K), 1
+ * %.
  * Source: IAPWS SR6-08(2011), the 0.1 MPa form of IAPWS 2008. Perry's and VDI's equations are 5 to 6 % low at 0 °C.
  */
 export const waterViscosity: Correlation = {

@@ -62,8 +62,8 @@ export interface FlowSplit {
 
 /**
  * How a flow shares itself among unlike branches between the same two ends: one ΔP for all, flows adding up, solved to 1e-12 of
- * the whole flow.
- * A branch may itself be several equal bores. One plugged of n: leave it out. massFlowKgS ≥ 0, one fluid at one temperature in all.
+ * the whole flow. A branch may itself be several equal bores. One plugged of n: leave it out. massFlowKgS ≥ 0, one fluid at one
+ * temperature in all.
  * Errors: HYDRAULICS_RANGE without a branch, or for a flow that is negative or not finite.
  */
 export function splitFlow(branches: readonly ChannelGeometry[], massFlowKgS: number, rhoKgM3: number, viscPaS: number): FlowSplit {

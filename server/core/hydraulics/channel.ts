@@ -23,8 +23,7 @@ export const roundArea = (diameterM: number): number => (Math.PI / 4) * diameter
 
 /**
  * The skid file's channel in SI; null when the length, or bore and cross-section both, are not given. `depthMm` beside `widthMm`
- * makes it
- * rectangular, `coreMm` beside `diameterMm` a ring around a core.
+ * makes it rectangular, `coreMm` beside `diameterMm` a ring around a core.
  */
 export function channelOf(spec: ChannelSpec): ChannelGeometry | null {
   const section = sectionOf(spec)
@@ -55,9 +54,9 @@ function sectionOf(spec: ChannelSpec): Section | null {
 }
 
 /**
- * A rectangular channel: f Re = 96 (1 - 1.3553 a + 1.9467 a² - 1.7012 a³ + 0.9564 a⁴ - 0.2537 a⁵), a the short side over the long
- * one, 0 to 1;
- * within 0.05 % of the series solution. Source: R. K. Shah and A. L. London, Laminar Flow Forced Convection in Ducts, 1978.
+ * A rectangular channel: f Re = 96 (1 - 1.3553 a + 1.9467 a² - 1.7012 a³ + 0.9564 a⁴ - 0.2537 a⁵), a the short side over the
+ * long one, 0 to 1; within 0.05 % of the series solution. Source: R. K. Shah and A. L. London, Laminar Flow Forced Convection in
+ * Ducts, 1978.
  * Errors: HYDRAULICS_RANGE unless both sides are above 0.
  */
 export function rectangularSection(widthM: number, depthM: number): Section {
@@ -70,9 +69,8 @@ export function rectangularSection(widthM: number, depthM: number): Section {
 
 /**
  * A ring between a tube and a core in its middle: f Re = 64 (1-k)²/(1 + k² + (1-k²)/ln k), k = core over bore, exact. Source: F.
- * M. White,
- * Viscous Fluid Flow, section 3-3 (Lamb). A core off the middle lowers it by up to 60 %. Errors: HYDRAULICS_RANGE unless 0 < core
- * < bore.
+ * M. White, Viscous Fluid Flow, section 3-3 (Lamb). A core off the middle lowers it by up to 60 %. Errors: HYDRAULICS_RANGE
+ * unless 0 < core < bore.
  */
 export function annularSection(diameterM: number, coreM: number): Section {
   const k = coreM / diameterM

@@ -29,10 +29,10 @@ const STRAIGHT_TRANSITION = [2000, 4000] as const
 /**
  * What a clean channel of uniform properties would show.
  *   ΔP = (f L/d + K) ρ v²/2 + ρ g h,  v = ṁ/(n ρ A),  Re = ρ v d/μ
- * massFlowKgS over all n = `parallel` bores; f: Churchill straight, White and Schmidt coiled; K: Hooper's
- * 90-degree bends and `lossK`. g = 9.80665 m/s2.
- * A non-round bore counts with Re·64/(f Re)lam in f (O. C. Jones, J. Fluids Eng. 98 (1976) 173), which is exact when laminar and
- * within 5 % turbulent. Developing flow at the inlet is not counted: it adds about 1.2 ρ v²/2 (K = 1.2, laminar).
+ * massFlowKgS over all n = `parallel` bores; f: Churchill straight, White and Schmidt coiled; K: Hooper's 90-degree bends and
+ * `lossK`. g = 9.80665 m/s2. A non-round bore counts with Re·64/(f Re)lam in f (O. C. Jones, J. Fluids Eng. 98 (1976) 173),
+ * which is exact when laminar and within 5 % turbulent. Developing flow at the inlet is not counted: it adds about 1.2 ρ v²/2 (K
+ * = 1.2, laminar).
  * Errors: none; a flow of 0 gives the head alone. The caller hands in checked, positive rho, mu and geometry.
  */
 export function cleanDp(
@@ -86,9 +86,9 @@ function isUncertain(channel: ChannelGeometry, re: number): boolean {
 /**
  * The same along a temperature profile: temperatures evenly spaced along the flow, inlet first (one: uniform), friction and head
  * trapezoidal over the length, losses likewise. Re and De are the lowest along the path, `uncertain` if any reading's place is.
- * The trapezoid reads high by (ΔT)²/12 times the curvature of μ(T): 1.0 % between two readings 20 K apart in THF at -20 °C, 0.25 %
- * with one in between. Never throws: temperatures
- * beyond the fluid's limits are clamped by the table and marked uncertain. Null without a temperature.
+ * The trapezoid reads high by (ΔT)²/12 times the curvature of μ(T): 1.0 % between two readings 20 K apart in THF at -20 °C, 0.25
+ * % with one in between. Never throws: temperatures beyond the fluid's limits are clamped by the table and marked uncertain.
+ * Null without a temperature.
  */
 export function cleanDpAlong(
   channel: ChannelGeometry,
@@ -136,10 +136,9 @@ export function cleanDpAlong(
 }
 
 /**
- * How the clean ΔP without its static head answers to mass flow and viscosity at a working point: n = ∂ln ΔP/∂ln ṁ, k = ∂ln ΔP/∂ln
- * μ.
- * Central differences of 1e-4 in the logarithm (error below 1e-6). Laminar and straight: 1 and 1; k is close to 2 - n where ρ is
- * constant.
+ * How the clean ΔP without its static head answers to mass flow and viscosity at a working point: n = ∂ln ΔP/∂ln ṁ, k = ∂ln
+ * ΔP/∂ln μ. Central differences of 1e-4 in the logarithm (error below 1e-6). Laminar and straight: 1 and 1; k is close to 2 - n
+ * where ρ is constant.
  */
 export function exponents(
   channel: ChannelGeometry,

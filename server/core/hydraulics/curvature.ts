@@ -13,8 +13,8 @@ export const coilCriticalReynolds = (diameterM: number, coilDiameterM: number): 
 
 /**
  * Laminar friction in a coil over that in a straight tube [-]: 1/(1 - [1 - (11.6/De)^0.45]^(1/0.45)), 1 below De 11.6 (the last
- * exponent is often printed 2.2, up to 0.9 % higher).
- * De up to 2000; other published curves lie up to 48 % above it near the critical Re.
+ * exponent is often printed 2.2, up to 0.9 % higher). De up to 2000; other published curves lie up to 48 % above it near the
+ * critical Re.
  * Source: C. M. White, Proc. R. Soc. Lond. A 123 (1929) 645.
  */
 export function whiteCoilRatio(de: number): number {
@@ -23,9 +23,8 @@ export function whiteCoilRatio(de: number): number {
 
 /**
  * Turbulent friction in a coil over that in a straight tube [-]: 1 + 28800 (d/D)^0.62/Re below Re 22000, 1 + 0.0823 (1 + d/D)
- * (d/D)^0.53 Re^0.25
- * from there to 1.5e5 (the two meet within 10 %; a weight in ln Re over 20000 to 24200 joins them). Source: E. F. Schmidt 1967, as
- * above.
+ * (d/D)^0.53 Re^0.25 from there to 1.5e5 (the two meet within 10 %; a weight in ln Re over 20000 to 24200 joins them). Source:
+ * E. F. Schmidt 1967, as above.
  */
 export function schmidtCoilRatio(re: number, diameterM: number, coilDiameterM: number): number {
   const c = diameterM / coilDiameterM
@@ -41,10 +40,9 @@ export function schmidtCoilRatio(re: number, diameterM: number, coilDiameterM: n
 export const COIL_TRANSITION = 1.25
 
 /**
- * Darcy friction factor of a coil over all regimes: 64/Re times White's ratio up to the critical Re, Churchill's straight friction
- * times
- * Schmidt's ratio from 1.25 times that, weighted over ln Re in between. Published only for the two ends.
- * re > 0; relRoughness 0 to 0.05 (roughness acts in the turbulent part alone); d/D up to 0.2. Errors: none.
+ * Darcy friction factor of a coil over all regimes: 64/Re times White's ratio up to the critical Re, Churchill's straight
+ * friction times Schmidt's ratio from 1.25 times that, weighted over ln Re in between. Published only for the two ends. re > 0;
+ * relRoughness 0 to 0.05 (roughness acts in the turbulent part alone); d/D up to 0.2. Errors: none.
  */
 export function coilFrictionFactor(re: number, relRoughness: number, diameterM: number, coilDiameterM: number): number {
   const critical = coilCriticalReynolds(diameterM, coilDiameterM)

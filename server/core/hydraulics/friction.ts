@@ -6,8 +6,8 @@ export const reynolds = (massFlowKgS: number, diameterM: number, viscPaS: number
  * Darcy friction factor (4 × Fanning) of a straight round tube over all regimes, smooth in Re:
  *   f = 8 [ (8/Re)^12 + (A+B)^-3/2 ]^(1/12),  A = [2.457 ln 1/((7/Re)^0.9 + 0.27 ε/D)]^16,  B = (37530/Re)^16
  * Re > 0 [-], relRoughness ε/D [-] from 0 to 0.05. Laminar it is 64/Re (to 1e-14 below Re 900), turbulent within 2.2 % of
- * Colebrook from Re 10000 and 3.1 % from 4000; between
- * Re 2100 and 4000 it is a smooth guess as any formula is. Source: S. W. Churchill, Chem. Eng. 84 (1977) no. 24, 91.
+ * Colebrook from Re 10000 and 3.1 % from 4000; between Re 2100 and 4000 it is a smooth guess as any formula is. Source: S. W.
+ * Churchill, Chem. Eng. 84 (1977) no. 24, 91.
  * Errors: none; Re = 0 gives Infinity (there is no friction factor at rest).
  */
 export function darcyFriction(re: number, relRoughness: number): number {
@@ -32,9 +32,8 @@ function sixteenth(x: number): number {
 }
 
 /**
- * Colebrook and White's friction factor (Darcy) solved to machine precision: 1/√f = -2 log10(ε/(3.7 D) + 2.51/(Re √f)), by Newton
- * on
- * x = 1/√f from Haaland's start (three or four steps). Re from 4000 (turbulent only), ε/D from 0 to 0.05.
+ * Colebrook and White's friction factor (Darcy) solved to machine precision: 1/√f = -2 log10(ε/(3.7 D) + 2.51/(Re √f)), by
+ * Newton on x = 1/√f from Haaland's start (three or four steps). Re from 4000 (turbulent only), ε/D from 0 to 0.05.
  * Source: C. F. Colebrook, J. Inst. Civ. Eng. 11 (1939) 133; start: S. E. Haaland, J. Fluids Eng. 105 (1983) 89. Errors: none.
  */
 export function colebrook(re: number, relRoughness: number): number {
