@@ -4,6 +4,9 @@ import type { Reactor } from './watch-state.ts'
 /** Lags of the feed, s: the one in use, a faster and a slower one for the doubt between, and a long one. */
 export const feedLagsS = [35, 20, 55, 600] as const
 
+/** A feed ten times its reference says no more than that. */
+const mostH = 10
+
 /**
  * The limiting feed of this scan through its lags, over the reference. Time without a reading passes at the mean of its two ends; if it was
  * longer than `gapS`, the move itself stays in doubt until the lag has forgotten it.
@@ -14,7 +17,7 @@ export function feedScan(r: Reactor, rc: ReactorConfig, s: ReactorScan, tMs: num
   r.flowSum += flow
   r.flowN++
   if (r.refKgS === 0) return
-  const now = flow / r.refKgS
+  const now = Math.min(mostH, flow / r.refKgS)
   const dtS = r.flowMs === 0 ? 0 : (tMs - r.flowMs) / 1000
   const gap = dtS > gapS
   r.flowMs = tMs
@@ -42,8 +45,11 @@ function shares(dtS: number): [number, number, number, number] {
   return last
 }
 
+/** Less than this is a standing pump, kg/s: 4 mg/h. */
+const leastKgS = 1e-9
+
 /** The feed of the block in which the reactor is first armed is the reference from then on. */
 export function setReference(r: Reactor): void {
   const mean = r.flowSum / r.flowN
-  if (mean > 0) r.refKgS = mean
+  if (mean > leastKgS) r.refKgS = mean
 }

@@ -20,7 +20,7 @@ export function endBlock(config: WatchConfig, state: WatchState, scans: readonly
     const r = state.reactors[i] as Reactor
     const s = scans[i] as ReactorScan
     const base = rc.coolant === null ? 0 : (means[rc.coolant] ?? null)
-    if (s.armed && r.refKgS === 0 && r.flowN > 0) setReference(r)
+    if (s.armed && s.production && r.refKgS === 0 && r.flowN > 0) setReference(r)
     // A stop of over 8 min changes what is normal: the level starts anew, offsets stay.
     if (!s.production) r.outS += blockS
     const anew = s.production && r.outS > 480

@@ -21,6 +21,8 @@ const d = exothermDefaults
 /** What one scan of one reactor showed. */
 export interface Finding {
   sum: number
+  /** Sum of the latest excesses, not averaged over 4 s. */
+  rawSum: number
   allow: number
   n: number
   meanK: number
@@ -44,6 +46,7 @@ export interface Finding {
 
 export const noFinding = (): Finding => ({
   sum: 0,
+  rawSum: 0,
   allow: 0,
   n: 0,
   meanK: 0,
@@ -70,11 +73,12 @@ export function speak(f: Finding, by: ExothermDetector): void {
   if (f.detector === null || rank[by] > rank[f.detector]) f.detector = by
 }
 
-/** One 4-s mean against the thresholds of its series; notes in the finding what follows. */
+/** One 4-s mean `x`, and the latest excess `raw`, against the thresholds of its series; notes in the finding what follows. */
 export function test(
   f: Finding,
   series: Series,
   x: number,
+  raw: number,
   leastK: number,
   allow: number,
   ratioHigh: boolean,
@@ -85,8 +89,9 @@ export function test(
   const level = share * Math.max(leastK, d.sds * series.sdK) + allow
   const rise = share * Math.max(d.riseK, d.sds * series.sdK) + allow
   const risen = riseK(series, p, x)
-  const high = x > level
-  const up = risen !== null && risen > rise
+  // The latest reading itself must be half way there: one wild reading lives on in the mean for 4 s and is no excursion.
+  const high = x > level && raw > 0.5 * level
+  const up = risen !== null && risen > rise && risen + raw - x > 0.5 * rise
   series.high = high || up ? series.high + 1 : 0
   if (series.high >= 2) {
     speak(f, high ? 'excess' : 'rise')

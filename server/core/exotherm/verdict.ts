@@ -68,6 +68,8 @@ function causeOf(config: WatchConfig, state: WatchState, found: readonly Finding
   if (name === null) return 'reaction'
   const coolant = state.coolants[name] as Coolant
   if (Math.abs(coolant.lastC - (coolant.f[coolant.best] as number)) > 0.5) return 'coolant'
-  const others = found.some((f, k) => k !== i && config.reactors[k]?.coolant === name && f.n > 0 && f.meanK > 0.14)
+  // Heat carried downstream warms the next reactor too, but less; coolant warms them alike.
+  const least = Math.max(0.14, 0.4 * (found[i] as Finding).meanK)
+  const others = found.some((f, k) => k !== i && config.reactors[k]?.coolant === name && f.n > 0 && f.meanK > least)
   return others ? 'coolant' : 'reaction'
 }

@@ -44,6 +44,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       coolantScan(state.coolants[name] as Coolant, tMs, reading, gapS)
     }
     let allSum = 0
+    let allRaw = 0
     let allAllow = 0
     let allN = 0
     let reactors = 0
@@ -56,6 +57,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       found.push(f)
       if (f.n > 0) {
         allSum += f.sum
+        allRaw += f.rawSum
         allAllow += f.allow
         allN += f.n
         reactors++
@@ -68,9 +70,19 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       let most = 0
       for (let i = 1; i < found.length; i++) if ((found[i] as Finding).meanK > (found[most] as Finding).meanK) most = i
       const f = found[most] as Finding
-      test(f, state.all, together, d.meanK, allAllow / allN, (scans[most] as ReactorScan).ratioHigh === true, p, 'all')
+      test(
+        f,
+        state.all,
+        together,
+        allRaw / allN,
+        d.meanK,
+        allAllow / allN,
+        (scans[most] as ReactorScan).ratioHigh === true,
+        p,
+        'all',
+      )
     }
-    remember(state.all, together, slow)
+    remember(state.all, together, slow && !state.reactors.some((r) => r.over))
     const verdicts = found.map((_, i) => conclude(config, state, p, found, i, scans[i] as ReactorScan, tMs))
     if (tMs - state.blockMs >= d.blockS * 1000 - 1) endBlock(config, state, scans, tMs)
     if (slow && state.scans % (12 * p.slowEvery) === 0) {
@@ -135,8 +147,10 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
         const gain = bare ? highest - coldest : Math.abs(th.c - th.o)
         const offset = bare ? 0 : d.offsetSds * Math.sqrt(th.level.poo) * Math.abs(r.h - 1)
         const allow = doubt + d.flowShare * gain * common + offset
-        test(f, th.series, x, d.oneK, allow, s.ratioHigh === true, p, 'thermocouple')
+        const raw = ago(th.excess, 0) ?? x
+        test(f, th.series, x, raw, d.oneK, allow, s.ratioHigh === true, p, 'thermocouple')
         f.sum += x
+        f.rawSum += raw
         f.allow += allow
         f.n++
         if (x > f.hottestK) {
@@ -155,7 +169,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     }
     if (gap) restart(r.mean)
     f.meanK = f.n > 0 ? f.sum / f.n : Number.NEGATIVE_INFINITY
-    if (f.n > 1) test(f, r.mean, f.meanK, d.meanK, f.allow / f.n, s.ratioHigh === true, p, 'reactor')
+    if (f.n > 1) test(f, r.mean, f.meanK, f.rawSum / f.n, d.meanK, f.allow / f.n, s.ratioHigh === true, p, 'reactor')
     remember(r.mean, f.n > 0 ? f.meanK : null, slow && s.armed && !r.over)
     if (gap) clearHubJones(r.runaway)
     const quietFlow = Math.abs(r.hFast - r.hSlow) < 0.015 && r.unseenH === 0
