@@ -7,6 +7,8 @@ import type { SegmentKind } from '../skid.ts'
 export interface AdviserState {
   /** What stands advised for a segment with a deposit; '' for none. */
   advised: Record<string, '' | 'watch' | 'flush' | 'change-filter' | 'stop-feed'>
+  /** Minutes that F0 and F1 of a segment's plan take, computed once a deposit stands. */
+  displaceMinutes: Record<string, number>
 }
 
 export interface SegmentForAdvice {
@@ -30,7 +32,10 @@ export const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0
  * forecast.low − plan time − margin; until that is near the advice is to watch. Causes that no flush cures get their own check.
  */
 export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
-  const s: AdviserState = saved ?? { advised: {} }
+  const s: AdviserState = saved ?? { advised: {}, displaceMinutes: {} }
+
+  const planNow = (segment: string, all: readonly SegmentForAdvice[]) =>
+    plan([segment], Object.fromEntries(all.map((x) => [x.id, x.ratio])))
 
   return {
     state: s,
@@ -40,6 +45,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         const stands = s.advised[g.id] ?? ''
         if (g.growth === null) {
           if (stands !== '') s.advised[g.id] = ''
+          delete s.displaceMinutes[g.id]
           continue
         }
         if (g.kind === 'filter') {
@@ -51,10 +57,11 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         if (stands === 'flush' || stands === 'stop-feed') continue
         const f = g.growth.forecast
         if (f !== null) {
-          const p = plan([g.id], Object.fromEntries(segments.map((x) => [x.id, x.ratio])))
-          const lastMs = f.lowMs - (minutesOf(p) + adviceSettings.marginMinutes) * 60_000
+          s.displaceMinutes[g.id] ??= minutesOf(planNow(g.id, segments))
+          const lastMs = f.lowMs - (s.displaceMinutes[g.id]! + adviceSettings.marginMinutes) * 60_000
           const lead = Math.max(adviceSettings.leadMinutes * 60_000, adviceSettings.leadShare * (lastMs - nowMs))
           if (nowMs >= lastMs - lead) {
+            const p = planNow(g.id, segments)
             const when =
               lastMs > nowMs
                 ? `best begun before ${iso(lastMs)}`
@@ -91,15 +98,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         const g = segments.find((x) => x.id === o.segment)
         if (g === undefined || g.kind === 'filter' || g.growth === null || s.advised[g.id] === 'flush') return []
         s.advised[g.id] = 'flush'
-        return [
-          say(
-            o.raisedMs,
-            'flush',
-            segment,
-            `${o.message}: the limit is reached`,
-            plan(segment, Object.fromEntries(segments.map((x) => [x.id, x.ratio]))),
-          ),
-        ]
+        return [say(o.raisedMs, 'flush', segment, `${o.message}: the limit is reached`, planNow(g.id, segments))]
       }
       return [say(o.raisedMs, action, segment, o.message, null)]
     },

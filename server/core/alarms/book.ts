@@ -205,6 +205,9 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
       return out
     },
 
+    /** Whether the book holds an entry for a key; until it does, a signal that is not over says nothing. */
+    knows: (key: string): boolean => entries.has(key),
+
     isActive: (key: string): boolean => entries.get(key)?.machine.active ?? false,
 
     /** Every alarm that is not plainly normal, in the order first seen. */

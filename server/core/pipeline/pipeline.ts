@@ -12,8 +12,9 @@ import type { Interval } from '../growth/points.ts'
 import type { OnsetReport } from '../report.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
 import type { Act, Entry, LimitName } from '../sequence.ts'
+import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
 import { createInstruments, type InstrumentState } from '../signals/instruments.ts'
-import { type LimitTable, limitSignals, limitsOf } from '../signals/limits.ts'
+import { createLimits, type LimitTable, limitsOf } from '../signals/limits.ts'
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, mlMinFromM3s, paFromBar } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
@@ -26,12 +27,14 @@ export interface PipelineState {
   watch: WatchState
   book: BookState
   instruments: InstrumentState
+  excursions: ExcursionState
   adviser: AdviserState
   limits: LimitTable
   /** Alarms that clear by themselves at a time. */
   timed: { key: string; untilMs: number }[]
   timelineN: number
   production: boolean
+  armed: boolean
   inferred: boolean
   /** By segment: ratio at the last step and when. */
   ratio: (number | null)[]
@@ -68,11 +71,15 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   const watch = createWatch(layout, stepMs, saved?.watch)
   const instruments = createInstruments(layout, saved?.instruments)
   const adviser = createAdviser(saved?.adviser, (segments, ratios) => planFlush({ skid, segments, ratios }))
+  const excursions = createExcursions(layout, book.knows, saved?.excursions)
   const limits: LimitTable = saved?.limits ?? limitsOf(layout)
+  const limitChecks = createLimits(layout, limits, book.knows)
+  const fouled = (i: number): boolean => watch.segment(i).growth !== null
   const s = {
     timed: saved?.timed ?? [],
     timelineN: saved?.timelineN ?? 0,
     production: saved?.production ?? false,
+    armed: saved?.armed ?? false,
     inferred: saved?.inferred ?? false,
     ratio: saved?.ratio ?? layout.segments.map((): number | null => null),
     ratioMs: saved?.ratioMs ?? -1,
@@ -102,8 +109,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function onScan(scan: Scan): void {
     const endMs = scan.tMs + scanMs
     stepper.scan(scan)
-    instruments.scan(scan, endMs, grid.state, signal)
-    limitSignals(layout, limits, scan, endMs, s.production, (i) => watch.segment(i).growth !== null, signal)
+    const silent = instruments.scan(scan, endMs, grid.state, signal)
+    limitChecks.scan(scan, endMs, { production: s.production, silent, fouled }, signal)
+    excursions.scan(scan, endMs, { production: s.production, armed: s.armed }, signal)
     for (const t of s.timed) if (endMs >= t.untilMs) end(t.key, endMs)
     if (s.timed.length > 0) s.timed = s.timed.filter((t) => endMs < t.untilMs)
     book.tick(endMs)
@@ -123,6 +131,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       grid.setFlowing(s.production)
     }
     s.inferred = out.mode.inferred
+    s.armed = out.mode.armed
     out.now.forEach((n, i) => {
       s.ratio[i] = n.ratio
     })
@@ -352,6 +361,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         watch: watch.save(),
         book: book.state(),
         instruments: instruments.state,
+        excursions: excursions.state(),
         adviser: adviser.state,
         limits,
         ...s,

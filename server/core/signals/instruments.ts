@@ -16,6 +16,9 @@ export interface InstrumentState {
   badTime: number
   lateRows: number
   lateSinceMs: number
+  /** 1 once a tag's alarm has been over: from then on every scan has its word. */
+  sensorOver: number[]
+  missingOver: number[]
 }
 
 /** How long before a diagnostic alarm, s: failing or missing; standing still, by whether it is a flow. Default values, common practice. */
@@ -42,14 +45,49 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     badTime: 0,
     lateRows: 0,
     lateSinceMs: -1,
+    sensorOver: new Array<number>(n).fill(0),
+    missingOver: new Array<number>(n).fill(0),
   }
   const used = usedTags(layout)
+  const segmentOf = skid.tags.map((_, t) => layout.segments.find((g) => touchesTag(layout, g, t))?.spec.id ?? null)
+  const flow = skid.tags.map((t) => t.quantity === 'massFlow' || t.quantity === 'volumeFlow')
+  const finer = Math.min(1, skid.scanSeconds)
+  const delay = {
+    failing: after.failing * finer,
+    missing: after.missing * finer,
+    frozen: after.frozen * finer,
+    frozenFlow: after.frozenFlow * finer,
+    off: 30 * finer,
+  }
   const failing = new Set([why['out-of-range'], why['loop-failure'], why['open-circuit'], why['source-bad'], why.unreadable])
+
+  const mark = (list: number[], t: number, on: boolean, off: boolean, tMs: number) => {
+    if (on && list[t]! < 0) list[t] = tMs
+    else if (off) list[t] = -1
+  }
+  const over = (since: number, seconds: number, tMs: number) => since >= 0 && tMs - since >= seconds * 1000
+
+  const base = (t: number, tMs: number) => ({
+    tMs,
+    segment: segmentOf[t]!,
+    tag: skid.tags[t]!.tag,
+    value: null,
+    limit: null,
+    unit: null,
+    cause: 'sensor' as const,
+    onset: null,
+    evidence: none,
+    onDelayS: 0,
+    offDelayS: delay.off,
+  })
 
   return {
     state: s,
-    scan(scan: Scan, tMs: number, counts: { badTime: number; lateRows: number }, emit: (s: Signal) => void): void {
-      if (scan.rows > 0) {
+    /** Judges one scan; true while the log is silent. */
+    scan(scan: Scan, tMs: number, counts: { badTime: number; lateRows: number }, emit: (s: Signal) => void): boolean {
+      let anything = false
+      for (let t = 0; t < n; t++) anything ||= scan.used[t]! > 0 && scan.held[t] === 0
+      if (anything) {
         if (s.lastRowMs >= 0) {
           const gap = Math.min(tMs - s.lastRowMs, 60_000)
           s.rowGapMs = s.rowGapMs === 0 ? gap : s.rowGapMs + (gap - s.rowGapMs) / 16
@@ -79,66 +117,51 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
       })
       for (let t = 0; t < n; t++) if (used[t]!) tag(t, scan, tMs, silent, emit)
       monitorClock(tMs, counts, emit)
+      return silent
     },
   }
 
   function tag(t: number, scan: Scan, tMs: number, silent: boolean, emit: (s: Signal) => void): void {
-    const spec = skid.tags[t]!
     const flaw = scan.flaw[t]!
     const fresh = scan.used[t]! > 0 && scan.held[t] === 0
-    const mark = (list: number[], on: boolean, off: boolean) => {
-      if (on && list[t]! < 0) list[t] = tMs
-      else if (off) list[t] = -1
-    }
     const isFailing = failing.has(flaw)
     if (isFailing || flaw === why.frozen) s.lastReason[t] = flaw
-    mark(s.failingMs, isFailing && !fresh, fresh && !isFailing)
-    mark(s.frozenMs, flaw === why.frozen, fresh && flaw !== why.frozen)
-    mark(s.missingMs, !silent && scan.rows > 0 && flaw === why.missing && !fresh, fresh)
-    const flow = spec.quantity === 'massFlow' || spec.quantity === 'volumeFlow'
-    // Readings must stand still for the quality stage's own time before they are called frozen; that time has passed already.
-    const frozenS = flow ? after.frozenFlow : after.frozen
-    const grid = skid.scanSeconds
-    const over = (since: number, seconds: number) =>
-      since >= 0 && tMs - since >= Math.min(seconds, 60 * grid * (seconds > 60 ? 7 : 1)) * 1000
-    const fails = over(s.failingMs[t]!, after.failing)
-    const frozen = over(s.frozenMs[t]!, frozenS)
-    const seg = layout.segments.find((g) => touchesTag(layout, g, t))?.spec.id ?? null
-    const base = {
-      tMs,
-      segment: seg,
-      tag: spec.tag,
-      value: null,
-      limit: null,
-      unit: null,
-      cause: 'sensor' as const,
-      onset: null,
-      evidence: none,
-      onDelayS: 0,
-      offDelayS: Math.min(30, 30 * grid),
+    mark(s.failingMs, t, isFailing && !fresh, fresh && !isFailing, tMs)
+    mark(s.frozenMs, t, flaw === why.frozen, fresh && flaw !== why.frozen, tMs)
+    mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
+    const fails = over(s.failingMs[t]!, delay.failing, tMs)
+    const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
+    const gone = over(s.missingMs[t]!, delay.missing, tMs)
+    const spec = skid.tags[t]!
+    // A healthy tag costs no signal: nothing is said of what was never over.
+    if (fails || frozen || s.sensorOver[t] === 1) {
+      const clear = s.failingMs[t]! < 0 && s.frozenMs[t]! < 0
+      emit({
+        ...base(t, tMs),
+        key: `sensor:${spec.tag}:reading`,
+        over: fails || frozen,
+        under: clear,
+        kind: 'sensor',
+        priority: 'medium',
+        detector: frozen && !fails ? 'frozen' : 'quality',
+        message: () =>
+          `${spec.tag}: ${frozen && !fails ? 'reading stands still while liquid flows' : (reasons[s.lastReason[t]!] ?? 'reading fails').replaceAll('-', ' ')}; nothing is computed from it`,
+      })
+      s.sensorOver[t] = 1
     }
-    emit({
-      ...base,
-      key: `sensor:${spec.tag}:reading`,
-      over: fails || frozen,
-      under: !fails && !frozen && fresh,
-      kind: 'sensor',
-      priority: 'medium',
-      detector: frozen && !fails ? 'frozen' : 'quality',
-      message: () =>
-        `${spec.tag}: ${frozen && !fails ? 'reading stands still while liquid flows' : (reasons[s.lastReason[t]!] ?? 'reading fails').replaceAll('-', ' ')}; nothing is computed from it`,
-    })
-    const gone = over(s.missingMs[t]!, after.missing)
-    emit({
-      ...base,
-      key: `no-data:${spec.tag}`,
-      over: gone,
-      under: !gone && fresh,
-      kind: 'no-data',
-      priority: 'low',
-      detector: 'age of data',
-      message: () => `${spec.tag}: no readings while the rest of the log goes on`,
-    })
+    if (gone || s.missingOver[t] === 1) {
+      emit({
+        ...base(t, tMs),
+        key: `no-data:${spec.tag}`,
+        over: gone,
+        under: s.missingMs[t]! < 0,
+        kind: 'no-data',
+        priority: 'low',
+        detector: 'age of data',
+        message: () => `${spec.tag}: no readings while the rest of the log goes on`,
+      })
+      s.missingOver[t] = 1
+    }
   }
 
   function monitorClock(tMs: number, counts: { badTime: number; lateRows: number }, emit: (s: Signal) => void): void {

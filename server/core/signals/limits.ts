@@ -5,7 +5,7 @@ import { segmentDp } from '../derive/step.ts'
 import type { Priority } from '../report.ts'
 import type { Scan } from '../scan/grid.ts'
 import { type LimitName, limitNames } from '../sequence.ts'
-import { barFromPa, cFromK, fromSi, valueUnit } from '../units.ts'
+import { barFromPa, fromSi, type Unit, valueUnit } from '../units.ts'
 
 /** Limits in force, by segment; people may change them during a run. */
 export type LimitTable = Record<LimitName, number | null>[]
@@ -18,7 +18,6 @@ interface LimitRule {
   readonly kind: 'dp-limit' | 'pressure-limit' | 'temperature-limit' | 'flow'
   readonly side: 'high' | 'low'
   readonly priority: Priority
-  readonly unit: string | null
   readonly word: string
   /** Deadband as a share of the instrument's range; delays in s, before they are cut to the grid. Starting values of EEMUA 191 (secondary). */
   readonly deadband: number
@@ -32,7 +31,6 @@ const rules: readonly LimitRule[] = [
     kind: 'dp-limit',
     side: 'high',
     priority: 'high',
-    unit: 'bar',
     word: 'ΔP above its high-high limit',
     deadband: 0.02,
     delayS: 15,
@@ -43,7 +41,6 @@ const rules: readonly LimitRule[] = [
     kind: 'dp-limit',
     side: 'high',
     priority: 'medium',
-    unit: 'bar',
     word: 'ΔP above its high limit',
     deadband: 0.02,
     delayS: 15,
@@ -54,7 +51,6 @@ const rules: readonly LimitRule[] = [
     kind: 'pressure-limit',
     side: 'high',
     priority: 'high',
-    unit: 'bar',
     word: 'inlet pressure above its limit',
     deadband: 0.02,
     delayS: 15,
@@ -65,7 +61,6 @@ const rules: readonly LimitRule[] = [
     kind: 'temperature-limit',
     side: 'high',
     priority: 'high',
-    unit: 'degC',
     word: 'temperature above its high-high limit',
     deadband: 0.01,
     delayS: 2,
@@ -76,7 +71,6 @@ const rules: readonly LimitRule[] = [
     kind: 'temperature-limit',
     side: 'high',
     priority: 'high',
-    unit: 'degC',
     word: 'temperature above its high limit',
     deadband: 0.01,
     delayS: 2,
@@ -87,7 +81,6 @@ const rules: readonly LimitRule[] = [
     kind: 'temperature-limit',
     side: 'low',
     priority: 'medium',
-    unit: 'degC',
     word: 'temperature below its low limit',
     deadband: 0.01,
     delayS: 60,
@@ -98,7 +91,6 @@ const rules: readonly LimitRule[] = [
     kind: 'flow',
     side: 'low',
     priority: 'medium',
-    unit: null,
     word: 'flow below its limit',
     deadband: 0.05,
     delayS: 15,
@@ -109,99 +101,117 @@ const rules: readonly LimitRule[] = [
 /** A delay never asks for more than fifteen scans: a grid finer than a second belongs to a run that lives for minutes. */
 export const delayOnGrid = (delayS: number, scanS: number): number => Math.min(delayS, 15 * scanS)
 
-interface Reading {
-  readonly value: number | null
-  readonly tag: string | null
+/** One limit of one segment, with what it reads. */
+interface Check {
+  readonly rule: LimitRule
+  readonly segment: number
+  readonly key: string
+  /** Tags behind the value; a flaw in any of them makes it unknown. */
+  readonly tags: readonly number[]
   readonly span: number
-  readonly unit: string | null
+  readonly unit: Unit | null
 }
 
-/** Plain limits of every segment at one scan. A bad input is null: it neither raises nor clears (ALM-06). */
-export function limitSignals(
-  layout: Layout,
-  limits: LimitTable,
-  scan: Scan,
-  tMs: number,
-  production: boolean,
-  fouled: (i: number) => boolean,
-  emit: (s: Signal) => void,
-): void {
+/**
+ * Plain limits of every segment, scan by scan. A bad input is null: it neither raises nor clears (ALM-06). A scan in which a tag simply did
+ * not report says nothing, unless the log has gone `silent`: loggers jitter, and an empty cell is not a bad reading.
+ * `knows` tells whether the book holds an alarm: what was never over costs no signal.
+ */
+export function createLimits(layout: Layout, limits: LimitTable, knows: (key: string) => boolean) {
   const scanS = layout.skid.scanSeconds
-  layout.segments.forEach((seg, i) => {
-    for (const rule of rules) {
-      const limit = limits[i]![rule.limit]
-      if (limit === null) continue
-      const r = readingFor(layout, i, rule, scan)
-      const value = rule.productionOnly && !production ? null : r.value
-      const now = level(value, limit, rule.deadband * r.span, rule.side)
-      const delayS = delayOnGrid(rule.delayS, scanS)
-      const idle = rule.productionOnly && !production
-      emit({
-        key: `${rule.kind}:${seg.spec.id}:${rule.limit}`,
-        tMs,
-        // Outside production a production limit has no condition at all; with a bad reading it has an unknown one.
-        over: idle ? false : now === 'bad' ? null : now === 'over',
-        under: idle || now === 'under',
-        kind: rule.kind,
-        segment: seg.spec.id,
-        tag: r.tag,
-        priority: rule.priority,
-        value: r.value,
-        limit,
-        unit: r.unit,
-        message: () => `${seg.spec.title}: ${rule.word} of ${limit} ${r.unit ?? ''}`.trim(),
-        cause: rule.kind === 'dp-limit' ? (fouled(i) ? (seg.spec.kind === 'filter' ? 'filter' : 'fouling') : 'unknown') : null,
-        onset: null,
-        detector: 'limit',
-        evidence: none,
-        onDelayS: delayS,
-        offDelayS: delayS,
-      })
-    }
-  })
+  const checks = layout.segments.flatMap((_, i) => rules.map((rule) => checkOf(layout, i, rule)).filter((c) => c.tags.length > 0))
+  return {
+    scan(
+      scan: Scan,
+      tMs: number,
+      on: { production: boolean; silent: boolean; fouled: (i: number) => boolean },
+      emit: (s: Signal) => void,
+    ): void {
+      for (const c of checks) {
+        const limit = limits[c.segment]![c.rule.limit]
+        const known = knows(c.key)
+        if (limit === null && !known) continue
+        const idle = limit === null || (c.rule.productionOnly && !on.production)
+        const at = worst(layout, c, scan)
+        if (at === null && !idle && !on.silent && !c.tags.some((t) => scan.flaw[t] !== 0)) continue
+        const value = at === null ? null : at.value
+        const now = idle ? 'under' : level(value, limit, c.rule.deadband * c.span, c.rule.side)
+        if (!known && now !== 'over') continue
+        const seg = layout.segments[c.segment]!.spec
+        const delay = delayOnGrid(c.rule.delayS, scanS)
+        emit({
+          key: c.key,
+          tMs,
+          over: now === 'bad' ? null : now === 'over',
+          under: now === 'under',
+          kind: c.rule.kind,
+          segment: seg.id,
+          tag: at === null || at.tag === null ? null : layout.skid.tags[at.tag]!.tag,
+          priority: c.rule.priority,
+          value,
+          limit,
+          unit: c.unit,
+          message: () => `${seg.title}: ${c.rule.word} of ${String(limit)} ${c.unit ?? ''}`.trim(),
+          cause:
+            c.rule.kind !== 'dp-limit' ? null : !on.fouled(c.segment) ? 'unknown' : seg.kind === 'filter' ? 'filter' : 'fouling',
+          onset: null,
+          detector: 'limit',
+          evidence: none,
+          onDelayS: delay,
+          offDelayS: delay,
+        })
+      }
+    },
+  }
 }
 const none = { for: [], against: [], notExcluded: [] }
 
-function readingFor(layout: Layout, i: number, rule: LimitRule, scan: Scan): Reading {
+function checkOf(layout: Layout, i: number, rule: LimitRule): Check {
   const seg = layout.segments[i]!
-  const tags = layout.skid.tags
+  const { tags } = layout.skid
   const spanOf = (t: number): number => {
     const range = tags[t]?.range
     return range == null ? 0 : range[1] - range[0]
   }
-  const usable = (t: number) => t >= 0 && scan.used[t]! > 0
+  const make = (list: readonly number[], span: number, unit: Unit | null): Check => ({
+    rule,
+    segment: i,
+    key: `${rule.kind}:${seg.spec.id}:${rule.limit}`,
+    tags: list,
+    span,
+    unit,
+  })
   switch (rule.kind) {
     case 'dp-limit': {
-      const dp = segmentDp(layout, i, scan)
-      const limit = seg.spec.limits.dpHighBar ?? seg.spec.limits.dpHighHighBar ?? 1
-      return {
-        value: dp === null ? null : barFromPa(dp),
-        tag: seg.dpTag === null ? null : tags[seg.dpTag]!.tag,
-        span: limit,
-        unit: 'bar',
-      }
+      const outTag = seg.tapOut === null ? [] : [layout.taps[seg.tapOut]!.tag]
+      return make(
+        seg.dpTag !== null ? [seg.dpTag] : [seg.inTag!, ...outTag],
+        seg.spec.limits.dpHighBar ?? seg.spec.limits.dpHighHighBar ?? 0,
+        'bar',
+      )
     }
-    case 'pressure-limit': {
-      const t = seg.inTag
-      return t === null
-        ? { value: null, tag: null, span: 0, unit: 'bar' }
-        : { value: usable(t) ? barFromPa(scan.si[t]!) : null, tag: tags[t]!.tag, span: spanOf(t), unit: 'bar' }
-    }
-    case 'temperature-limit': {
-      let worst = -1
-      for (const t of seg.temperatures)
-        if (usable(t) && (worst < 0 || (rule.side === 'high' ? scan.si[t]! > scan.si[worst]! : scan.si[t]! < scan.si[worst]!)))
-          worst = t
-      return worst < 0
-        ? { value: null, tag: null, span: 0, unit: 'degC' }
-        : { value: cFromK(scan.si[worst]!), tag: tags[worst]!.tag, span: spanOf(worst), unit: 'degC' }
-    }
+    case 'pressure-limit':
+      return make(seg.inTag === null ? [] : [seg.inTag], seg.inTag === null ? 0 : spanOf(seg.inTag), 'bar')
+    case 'temperature-limit':
+      return make(seg.temperatures, Math.max(0, ...seg.temperatures.map(spanOf)), 'degC')
     case 'flow': {
       const st = seg.streams[0]
       const t = st === undefined ? -1 : layout.streams[st]!.tag
-      if (t < 0) return { value: null, tag: null, span: 0, unit: null }
-      const unit = valueUnit(tags[t]!)
-      return { value: usable(t) ? fromSi(scan.si[t]!, unit) : null, tag: tags[t]!.tag, span: spanOf(t), unit }
+      return make(t < 0 ? [] : [t], spanOf(t), t < 0 ? null : valueUnit(tags[t]!))
     }
   }
+}
+
+/** The value a limit is held against in the unit of the limit, and the tag it is read from where that is one; null when unusable. */
+function worst(layout: Layout, c: Check, scan: Scan): { value: number; tag: number | null } | null {
+  if (c.rule.kind === 'dp-limit') {
+    const dp = segmentDp(layout, c.segment, scan)
+    return dp === null ? null : { value: barFromPa(dp), tag: c.tags.length === 1 ? c.tags[0]! : null }
+  }
+  let at = -1
+  for (const t of c.tags) {
+    if (scan.used[t] === 0) continue
+    if (at < 0 || (c.rule.side === 'high' ? scan.si[t]! > scan.si[at]! : scan.si[t]! < scan.si[at]!)) at = t
+  }
+  return at < 0 ? null : { value: fromSi(scan.si[at]!, c.unit), tag: at }
 }
