@@ -1,4 +1,4 @@
-import type { TimeParser } from './time-parse.ts'
+import type { TimeParser } from './time-digits.ts'
 import { timeParser } from './time-parse.ts'
 import { LocalClock } from './zone.ts'
 

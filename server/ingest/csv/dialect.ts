@@ -51,7 +51,16 @@ const others: readonly (readonly [code: number, name: string])[] = [
 export function detectDialect(q: DialectQuery): Dialect {
   const { name, text, encoding, skip, wanted, log } = q
   const decode = cellDecoder(encoding)
-  const rowsBy = (delimiter: number, most: number): SplitRow[] => splitRows(text, 0, text.length, delimiter, 1, decode, most)
+  if (!text.includes(10) && text.includes(13))
+    throw new MonitorError('CSV_LINE', 'found lines that end in CR alone, expected LF or CR LF', {
+      hint: 'convert the line ends',
+      place: { file: name, line: 1 },
+    })
+  const rowsBy = (delimiter: number, most: number): SplitRow[] => {
+    const rows = splitRows(text, 0, text.length, delimiter, 1, decode, most + 1)
+    // Spreadsheets may write their delimiter on a line of its own, `sep=;`, above the header.
+    return /^sep=.?$/i.test(rows[0]?.cells[0]?.trim() ?? '') ? rows.slice(1) : rows.slice(0, most)
+  }
   const { delimiter, matched } = chooseDelimiter(name, wanted, rowsBy)
   const rows = rowsBy(delimiter, 2000)
   const first = rows[0]

@@ -99,8 +99,11 @@ export function longColumns(header: readonly string[]): { tag: number; value: nu
 
 const wholeNames = ['timestamp', 'datetime', 'date time', 'date/time', 'date_time', 'date-time', 'time stamp', 'time_stamp']
 
+/** Names of a column that numbers the rows, which is no time. */
+const counters = ['', '#', 'no', 'no.', 'nr', 'nr.', 'n', 'index', 'idx', 'row', 'id', 'rec', 'record', 'sample', 'scan']
+
 /**
- * The columns that hold time: those the skid names; else date and time side by side, else one whose name says so, else the first column
+ * The columns that hold time: those the skid names; else date and time side by side, else one whose name says so, else the first column that does not number the rows
  * (date first where there are two). Errors: CSV_TIME where a named column is not in the file.
  */
 export function timeColumns(
@@ -134,7 +137,8 @@ export function timeColumns(
   if (date >= 0 && time >= 0) return [date, time]
   if (time >= 0) return [time]
   if (date >= 0) return [date]
-  if (!isTag(header[0]!)) return [0]
+  const first = names.findIndex((n) => !counters.includes(n))
+  if (first >= 0 && !isTag(header[first]!)) return [first]
   throw new MonitorError(
     'CSV_TIME',
     `found no column for time, expected one called time, timestamp or date and time; columns: ${listed(header)}`,

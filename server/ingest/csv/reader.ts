@@ -5,8 +5,9 @@ import { CellWriter } from './cells.ts'
 import { type ClockState, FileClock, freshClock } from './clock.ts'
 import { type Dialect, detectDialect } from './dialect.ts'
 import { cellDecoder, detectEncoding, transcoder, utf16Length } from './encoding.ts'
-import { longColumns, matchColumns, type Wanted, wantedColumns } from './header.ts'
+import { type Wanted, wantedColumns } from './header.ts'
 import { logFormatOf } from './log-format.ts'
+import { columnPlan } from './plan.ts'
 import { RowSink } from './row-sink.ts'
 import { longestLine, RowReader, tooLong, use } from './rows.ts'
 import { decimalName, describeDialect, freshTally, type LogTally } from './tally.ts'
@@ -73,7 +74,7 @@ export class PushReader {
     if (point === null) return
     this.taken = point.offset
     this.offset = point.offset
-    this.start({ ...point.dialect, decimal: point.decimal }, structuredClone(point.clock), point.line)
+    this.start({ ...point.dialect, decimal: point.decimal }, structuredClone(point.clock), point.line, true)
   }
 
   feed(bytes: Uint8Array): RowBlock[] {
@@ -172,19 +173,10 @@ export class PushReader {
     }
   }
 
-  private start(dialect: Dialect, state: ClockState, line: number): void {
+  private start(dialect: Dialect, state: ClockState, line: number, isResumed = false): void {
     const { name, options, wanted, tally, log } = this
     const decode = cellDecoder(dialect.encoding)
-    const { slots } = matchColumns(name, dialect.headerLine, dialect.header, wanted, dialect.time)
-    const uses = Int16Array.from(slots, (s) => (s < 0 ? use.skip : wanted[s]!.isText ? use.textFrom + s : s))
-    uses[dialect.time[0]!] = use.time
-    if (dialect.time[1] !== undefined) uses[dialect.time[1]] = use.time2
-    const long = dialect.layout === 'long' ? longColumns(dialect.header) : null
-    if (long !== null) {
-      uses[long.tag] = use.tag
-      uses[long.value] = use.value
-      if (long.quality !== null) uses[long.quality] = use.quality
-    }
+    const { uses, slots, isLong } = columnPlan(name, dialect, wanted)
     describeDialect(tally, dialect)
     const found = new Set(slots)
     tally.columnsUsed = wanted.filter((_, s) => found.has(s)).map((w) => w.name)
@@ -194,12 +186,12 @@ export class PushReader {
     this.clock = new FileClock(dialect.formats, options.skid.timeZone, options.startMs, log.clockOffsetSeconds, state)
     this.cells = new CellWriter(wanted, log.missing, dialect.decimal, options.words, decode)
     this.sink = new RowSink({
-      name, tally, clock: this.clock, cells: this.cells, wanted, formats: dialect.formats, isTwoColumns: dialect.time.length > 1,
+      name, tally, clock: this.clock, cells: this.cells, wanted, formats: dialect.formats, isTwoColumns: dialect.time.length > 1, isResumed,
       timeColumn: dialect.time[0]!, fromMs: options.fromMs ?? Number.NEGATIVE_INFINITY, toMs: options.toMs ?? Number.POSITIVE_INFINITY, decode,
     }) // biome-ignore format: a list
     this.rows = new RowReader({
       name, line, uses, delimiter: dialect.delimiter, cells: this.cells, blocks: this.blocks, sink: this.sink,
-      hasMissingCodes: log.missing.length > 0, isLong: long !== null,
+      hasMissingCodes: log.missing.length > 0, isLong,
     }) // biome-ignore format: a list
     if (dialect.encoding === 'utf-16le' || dialect.encoding === 'utf-16be') this.code = transcoder(dialect.encoding)
   }
@@ -220,12 +212,14 @@ export class PushReader {
   }
 
   private consume(isLast: boolean): void {
-    const whole = this.work.subarray(0, this.waiting).lastIndexOf(10) + 1
-    const done = this.rows!.read(this.work, 0, whole, isLast)
-    this.offset += this.sourceBytes(this.work.subarray(0, done))
-    this.work.copyWithin(0, done, this.waiting)
+    const { work, waiting } = this
+    const whole = work.subarray(0, waiting).lastIndexOf(10) + 1
+    const done = this.rows!.read(work, 0, whole, isLast)
+    if (waiting - whole > longestLine)
+      throw tooLong(this.name, this.rows!.line + work.subarray(done, whole).filter((b) => b === 10).length)
+    this.offset += this.sourceBytes(work.subarray(0, done))
+    work.copyWithin(0, done, waiting)
     this.waiting -= done
-    if (this.waiting > longestLine && this.work.subarray(0, this.waiting).indexOf(10) < 0) throw tooLong(this.name, this.rows!.line)
     this.note()
   }
 

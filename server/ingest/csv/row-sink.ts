@@ -21,6 +21,8 @@ export interface SinkOptions {
   readonly wanted: readonly Wanted[]
   readonly formats: readonly string[]
   readonly isTwoColumns: boolean
+  /** Going on in a file whose beginning was read before: the rules on first rows have been met. */
+  readonly isResumed: boolean
   readonly timeColumn: number
   readonly fromMs: number
   readonly toMs: number
@@ -32,7 +34,7 @@ export class RowSink {
   private readonly o: SinkOptions
   private firstBroken: { line: number; reason: string } | null = null
   private untimed: { line: number; text: string; count: number } | null = null
-  private timed = 0
+  private timed: number
   private backwards = 0
   private firstLine = 0
   private readonly bySpelling = new Map<string, number>()
@@ -41,6 +43,7 @@ export class RowSink {
 
   constructor(o: SinkOptions) {
     this.o = o
+    this.timed = o.isResumed ? 1 : 0
   }
 
   blank(): void {
@@ -91,7 +94,8 @@ export class RowSink {
 
   /** After the last row. Errors: no row at all, none that could be used, or time running backwards throughout. */
   end(headerLine: number): void {
-    const { tally, name } = this.o
+    const { tally, name, isResumed } = this.o
+    if (isResumed) return
     if (tally.rows === 0)
       throw new MonitorError('CSV_EMPTY', 'found a header and no rows, expected rows of readings below it', {
         hint: 'check that the export ran to its end',
@@ -111,7 +115,7 @@ export class RowSink {
   }
 
   private keep(block: RowBlock, line: number, tMs: number): void {
-    const { tally, fromMs, toMs } = this.o
+    const { tally, fromMs, toMs, isResumed } = this.o
     tally.rows++
     if (tMs < fromMs || tMs > toMs) {
       tally.outside++
@@ -123,7 +127,7 @@ export class RowSink {
       this.firstLine = line
     } else if (tally.used < firstRows && tMs < tally.lastMs!) {
       this.backwards++
-      if (this.backwards === firstRows - 1) throw this.runsBackwards()
+      if (this.backwards === firstRows - 1 && !isResumed) throw this.runsBackwards()
     }
     tally.used++
     tally.lastMs = tMs

@@ -163,7 +163,7 @@ export class RowReader {
       }
       p++
       this.line += 1 + this.breaks
-      if (p - rowFrom > longestLine && this.breaks === 0) throw tooLong(this.name, line)
+      if (p - rowFrom > longestLine * (1 + this.breaks)) throw tooLong(this.name, line)
       const count = column + 1
       if (count === columns || (count > columns && !isFilledBeyond)) {
         if (this.isLong) sink.long(block, line, spans)

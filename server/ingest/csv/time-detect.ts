@@ -10,7 +10,7 @@ export function reads(format: string, text: string): boolean {
   return !Number.isNaN(timeParser(format).parse(bytes, 0, bytes.length))
 }
 
-/** Formats that could have written this one text, likeliest first; two where day and month may be either way round. */
+/** Formats that could have written this one text, likeliest first; several where day, month and short year may stand in another order. */
 export function formatsOf(text: string): string[] {
   if (reads('iso', text)) return ['iso']
   if (/^(19|20)\d{12}$/.test(text)) return reads('yyyyMMddHHmmss', text) ? ['yyyyMMddHHmmss'] : []
@@ -30,10 +30,11 @@ export function formatsOf(text: string): string[] {
   const dayFirst = join(two('d', a), two('M', b), year)
   // Dates with dots are written day first wherever they are in use (DIN 1355-1 and its neighbours; common practice).
   const orders = mark === '.' ? [dayFirst] : [dayFirst, join(two('M', a), two('d', b), year)]
+  if (mark !== '.' && year === 'yy' && a.length === 2) orders.push(join('yy', two('M', b), two('d', c)))
   return orders.filter((f) => reads(f, text))
 }
 
-/** What the first rows' times say: one format, two that cannot be told apart, or none that reads the first of them. */
+/** What the first rows' times say: one format, several that cannot be told apart, or none that reads the first of them. */
 export function detectFormat(texts: readonly string[]): { formats: string[] } {
   const first = texts.find((t) => formatsOf(t).length > 0)
   if (first === undefined) return { formats: [] }

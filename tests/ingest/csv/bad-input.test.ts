@@ -20,6 +20,7 @@ describe('bad input is one line with file, line, what came, what was expected, t
     ['blanks', 'time PT-1 PT-2\n1 2 3\n', 'CSV_DELIMITER', 1, undefined, /separated by blanks/],
     ['no tag', 'time,A,B\n1,2,3\n', 'CSV_HEADER', 1, undefined, /no column of a tag of this skid: "time", "A", "B"; expected "PT-1", "PT-2"/],
     ['no header', '1900000000,1,2\n1900000001,1,2\n', 'CSV_HEADER', 1, undefined, /values in the first row .*expected a header/],
+    ['CR line ends', 'time,PT-1\r1900000000,1\r', 'CSV_LINE', 1, undefined, /CR alone/],
     ['a doubled column', `time,PT-1,PT-2,PT-1\n${good(1)}`, 'CSV_HEADER', 1, 4, /two columns for tag PT-1, columns 2 and 4/],
     ['columns doubled but for case', `time,pt-1,PT-2,Pt-1\n${good(1)}`, 'CSV_HEADER', 1, 4, /two columns for tag PT-1/],
     ['a units row that contradicts', `${head}s,bar,psi\n${good(1)}`, 'CSV_HEADER', 2, 3, /unit "psi" for tag PT-2, expected bar/],
@@ -48,6 +49,11 @@ describe('bad input is one line with file, line, what came, what was expected, t
     const file = bytesOf(`${head}${good(40_000)}1,${'1'.repeat(1_100_000)}\n`)
     for (const cuts of [[], [65_536], Array.from({ length: 40 }, (_, i) => (i + 1) * 40_000)])
       expect(mistake(() => read(file, skid, { cuts })).place?.line).toBe(40_002)
+  })
+  it('gives a long line behind a quote too, without holding on to all that follows', () => {
+    const file = bytesOf(`${head}${good(1)}1,"a\n${'1'.repeat(3_000_000)}`)
+    for (const cuts of [[], Array.from({ length: 60 }, (_, i) => (i + 1) * 40_000)])
+      expect(mistake(() => read(file, skid, { cuts })).place?.line).toBe(4)
   })
   it('20 first rows without a time in the format given are an error at the first', () => {
     const iso = skidOf(['PT-1', 'PT-2'], { log: [logFormat({ timeFormat: ['iso'] })] })

@@ -25,6 +25,7 @@ describe('one table in every dialect reads alike', () => {
     ['blanks after commas', body.replaceAll(',', ', '), 'comma', 'point'],
     ['blank lines before and between', `\n\r\n${body.replaceAll('\n', '\n\n')}`, 'comma', 'point'],
     ['a row of units', body.replace('\n', '\n,bar,[bar]\n'), 'comma', 'point'],
+    ['a line that names the delimiter', `sep=;\r\n${comma(body)}`, 'semicolon', 'comma'],
     ['a byte order mark', `\ufeff${body}`, 'comma', 'point'],
     ['UTF-16 LE with a mark', utf16(`\ufeff${body}`, false), 'comma', 'point'],
     ['UTF-16 BE with a mark', utf16(`\ufeff${body}`, true), 'comma', 'point'],

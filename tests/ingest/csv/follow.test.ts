@@ -57,6 +57,16 @@ describe('a file that grows', () => {
     reader.feed(bytesOf('2031-05-04T13:20:00Z,1,a\n'))
     expect(reader.settle().map((b) => b.rows)).toEqual([1])
   })
+  it('goes on over twenty broken rows in a row, or rows that run backwards, once its beginning was read', () => {
+    const first = new PushReader('live.csv', options([]))
+    first.feed(bytesOf('time,PT-1,XV\n1900000000,1,a\n'))
+    first.settle()
+    const next = new PushReader('live.csv', options([]), first.point())
+    const late = Array.from({ length: 60 }, (_, i) => `${1_900_000_099 - i},1,a\n`).join('')
+    expect(next.feed(bytesOf('later,1,a\n'.repeat(25) + late)).map((b) => b.rows)).toEqual([60])
+    expect(next.tally).toMatchObject({ broken: 25, used: 60 })
+    expect(next.tally.brokenLines[0]).toEqual({ line: 3, reason: 'no time in "later"' })
+  })
   it('says what is wrong as soon as the first row is there', () => {
     const reader = new PushReader('live.csv', options([]))
     reader.feed(bytesOf('time,PT-7\n1900000000,1\n'))

@@ -60,6 +60,14 @@ describe('time cells', () => {
         'expected a format that fits only one way; set log.timeFormat in the skid file to the right one',
     )
   })
+  it('does not take a short year for a day', () => {
+    expect(mistake(() => times(['25/05/04 00:00:00'])).message).toMatch(/may be dd\/MM\/yy HH:mm:ss or yy\/MM\/dd HH:mm:ss/)
+  })
+  it('does not take a row number for time', () => {
+    expect(mistake(() => read('no,elapsed_s,PT-1\n1,0.5,1\n', skidOf(['PT-1']))).line()).toMatch(
+      /:2:2: found elapsed seconds \("0.5"\)/,
+    )
+  })
   it('takes either of two formats that are given, row by row', () => {
     const both = { format: ['dd/MM/yyyy HH:mm:ss', 'iso'] }
     expect(times(['04/05/2031 00:00:00', '2031-05-04T00:00:01Z', '04/05/2031 00:00:02'], both).map((t) => t.slice(17, 19))).toEqual(
