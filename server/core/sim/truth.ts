@@ -74,6 +74,7 @@ export interface TrueExotherm {
   readonly start: string
   readonly peakAt: string
   readonly end: string
+  /** Excess of the fluid at the hottest thermocouple at the peak; the reading lags behind it. */
   readonly amplitudeC: number
   readonly riseS: number
   readonly hottest: string
