@@ -122,23 +122,20 @@ function checkLimits(segment: SegmentFile, at: Path, streams: ReadonlyMap<string
   })
 }
 
-/** The first log entry that fits a file is taken: one behind an entry for every file would never be. */
+/** The first log entry whose pattern fits is taken, else the one without a pattern: a second of those would never be. */
 function checkLogs(file: SkidFile, walk: Walk): void {
   const patterns = new Set<string>()
   let open = false
   file.log?.forEach((log, i) => {
     if (log === undefined) return
     const at: Path = walk.has(['log', i]) ? ['log', i] : ['log']
-    if (open)
-      walk.say(
-        at,
-        'a log entry after one that fits every file',
-        "'files' on every entry but the last",
-        'add files: "…" to the entry before',
-      )
-    if (log.files === undefined) open ||= !walk.has([...at, 'files'])
-    else if (patterns.has(log.files)) walk.say([...at, 'files'], `files ${quote(log.files)} stands twice`, 'each pattern once')
-    else patterns.add(log.files)
+    if (log.files === undefined && !walk.has([...at, 'files'])) {
+      if (open) walk.say(at, 'a second log entry for every file', "'files' on every entry but one", 'add files: "…"')
+      open = true
+    } else if (log.files !== undefined) {
+      if (patterns.has(log.files)) walk.say([...at, 'files'], `files ${quote(log.files)} stands twice`, 'each pattern once')
+      patterns.add(log.files)
+    }
     if (log.time?.length === 2 && log.time[0] !== undefined && log.time[0] === log.time[1])
       walk.say([...at, 'time'], 'both time columns are the same', 'a date column and a time column')
   })

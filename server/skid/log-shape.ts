@@ -17,6 +17,6 @@ const oneLog = group({
   clockOffsetSeconds: number({ min: -1e9, max: 1e9, unit: 'seconds, added to every time of these files' }),
 })
 
-/** `log`: one logger, or a list by file pattern of which the first that fits is taken. */
+/** `log`: one logger, or a list: the first entry whose pattern fits a file's name is taken, else the one without a pattern. */
 export const logShape = oneOrMore(oneLog)
 export type LogFile = Read<typeof oneLog>

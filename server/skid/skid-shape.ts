@@ -31,7 +31,6 @@ const otherUnits: Readonly<Record<string, Unit>> = {
   '1/min': 'rpm',
   'kg/m³': 'kg/m3',
   'kg/m^3': 'kg/m3',
-  mba: 'mbar',
 }
 const unitNames = Object.keys(units) as Unit[]
 const unit = text<Unit>(`one of ${unitNames.join(', ')}`, (value) => {

@@ -1,6 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { solventNamed as physicsOf } from '../../server/core/fluids/fluid.ts'
+import { timeParser } from '../../server/ingest/csv/time-parse.ts'
 import { editDistance, nearest } from '../../server/skid/nearest.ts'
 import { solventNamed, solventNames, solventWords } from '../../server/skid/solvents.ts'
 import { timeFormatMend } from '../../server/skid/time-format.ts'
@@ -57,32 +58,44 @@ describe('solvents', () => {
   })
 })
 
+// biome-ignore format: one list
+const good = [
+  'iso', 'epoch-s', 'epoch-ms', 'elapsed-s', 'time-of-day', 'yyyy-MM-dd HH:mm:ss', 'dd/MM/yyyy HH.mm.ss', "yyyy-MM-dd'T'HH:mm:ss.SSS", 'yyyy-MM-ddTHH:mm:ssZ',
+  'd.M.yy H:mm', 'MM/dd/yyyy hh:mm:ss a', 'yyyyMMddHHmmss', 'yyyy-MM-dd HH:mm:ss:SSS', 'HH:mm:ss', 'dd/MM/yyyy',
+]
 describe('time formats', () => {
-  it.each([
-    'iso',
-    'epoch-s',
-    'epoch-ms',
-    'elapsed-s',
-    'time-of-day',
-    'yyyy-MM-dd HH:mm:ss',
-    'dd/MM/yyyy HH.mm.ss',
-    "yyyy-MM-dd'T'HH:mm:ss.SSSXXX",
-    'd.M.yy H:mm',
-    'MM/dd/yyyy hh:mm:ss a',
-    'yyyyMMddHHmmss',
-    'yyyy-MM-dd HH:mm:ss:SSS',
-    'HH:mm:ss',
-    'dd MMM yyyy HH:mm',
-  ])('%j is taken', (format) => {
+  it.each(good)('%j is taken, by the check and by the reader of logs', (format) => {
     expect(timeFormatMend(format)).toBeNull()
+    expect(timeParser(format).name.length).toBeGreaterThan(0)
+  })
+  it('2000 random patterns: what the check takes, the reader of logs takes', () => {
+    const words = fc.shuffledSubarray(['yyyy', 'MM', 'dd', 'HH', 'mm', 'ss', 'SSS', 'hh', 'a', 'MMM', 'X'], {
+      minLength: 2,
+      maxLength: 7,
+    })
+    const joint = fc.constantFrom('', '-', ':', ' ', "'at'", 'T')
+    let taken = 0
+    fc.assert(
+      fc.property(words, joint, (pieces, between) => {
+        const format = pieces.join(between)
+        if (timeFormatMend(format) !== null) return
+        taken++
+        timeParser(format)
+      }),
+      { numRuns: 2000, seed: 1 },
+    )
+    expect(taken).toBeGreaterThan(20)
   })
   it.each([
     ['ISO', "'I' is no field"],
-    ['yyyy-MM-dd', 'hour and minute are needed'],
+    ['yyyy-MM-dd mm', 'hour and minute are needed'],
+    ['HH', 'hour and minute are needed'],
+    ['ss', 'hour and minute are needed'],
     ['dd/MM HH:mm', 'year, month and day, or none of them'],
     ['yyyy-MM-dd hh:mm', "needs 'a'"],
     ['yyyy-MM-dd HH:mm a', "'a' (am or pm) goes with 'hh'"],
     ['yyyy-mm-dd HH:mm', "'MM' is the month"],
+    ['dd MMM yyyy HH:mm', "'MMM' is no field"],
     ['YYYY-MM-DD HH:mm', "'yyyy' for 'YYYY'"],
     ['%d/%m/%Y', 'letters without %'],
     ["yyyy-MM-dd'T", 'close the apostrophe'],

@@ -55,7 +55,7 @@ const rules: readonly Rule[] = [
   ['time: [Date, Time]', 'time: §[Date, Date]', 'both time columns', 'a date column and a time column', null],
   ['missing: [-200]', 'missing: §-200', 'missing is -200', 'a list of numbers', 'in brackets'],
   ['missing: [-200]', 'missing: [§none]', "missing[0] is the text 'none'", 'a number', null],
-  ['log:\n  time: [Date, Time]\n  timeFormat: dd/MM/yyyy HH.mm.ss\n  missing: [-200]', 'log: [{ time: t }, §{ files: "*.csv" }]', 'a log entry after one that fits every file', "'files'", 'add files'],
+  ['log:\n  time: [Date, Time]\n  timeFormat: dd/MM/yyyy HH.mm.ss\n  missing: [-200]', 'log: [{ time: t }, { files: "*.csv" }, §{ time: u }]', 'a second log entry for every file', "'files' on every entry but one", 'add files'],
   ['log:\n  time: [Date, Time]\n  timeFormat: dd/MM/yyyy HH.mm.ss\n  missing: [-200]', 'log: [{ files: "*.csv" }, { files: §"*.csv" }]', "files '*.csv' stands twice", 'each pattern once', null],
   // tags
   ['tag: SP-9', 'tag: §PT-1', "tag 'PT-1' stands twice", 'each tag once', 'rename or remove one'],

@@ -110,7 +110,7 @@ describe('log: an object, or a list by file pattern', () => {
       { files: null, time: ['t'], timeFormat: ['iso', 'epoch-s'], missing: [], clockOffsetSeconds: 0 },
     ])
   })
-  it('a list names a pattern on each entry but the last, and a clock offset in seconds', () => {
+  it('a list names a pattern on each entry but one, and a clock offset in seconds', () => {
     expect(
       log('[{ files: "pump_*.csv", clockOffsetSeconds: -3600 }, { time: t }]').map((l) => [l.files, l.clockOffsetSeconds]),
     ).toEqual([
