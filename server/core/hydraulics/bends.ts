@@ -5,8 +5,9 @@ const INCH_M = 0.0254
 
 /**
  * Loss coefficient of one 90-degree bend, K [-] in ΔP = K ρ v²/2: K1/Re + K∞ (1 + 1/D), D in inches. Re > 0, laminar to
- * turbulent. Below 3 mm the last term is an extrapolation (made for pipes from half an inch): 2.8 at 1 mm where Rennels and
- * Hudson give 0.2 turbulent.
+ * turbulent. Below 3 mm the
+ * last term is an extrapolation (made for pipes from half an inch): at 1 mm and Re 200 it gives 10.6 where Rennels and Hudson's
+ * formula gives 2.8, so take it as an upper bound.
  * Source: W. B. Hooper, Chem. Eng. 88 (1981) no. 17, 96. Errors: none.
  */
 export const bendLoss = (re: number, diameterM: number): number => K1 / re + K_INFINITY * (1 + INCH_M / diameterM)
