@@ -98,6 +98,8 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
     push(state.ratio, flowing ? Math.log(a / b) : null)
     const now = flowing ? meanOf(state.ratio, smooth) : null
     if (now === null) {
+      // Being off starts anew after a gap; what was already said stands until the feeds are seen again.
+      state.side = 0
       if (!s.production) release()
       return {
         over: state.over ? null : s.production ? null : false,

@@ -2,7 +2,7 @@ import { ago, forget, push, type Ring, ring } from './ring.ts'
 
 export interface HubJonesConfig {
   readonly scanS: number
-  /** Window of the fits, s; at least 5 scans are used. */
+  /** Window of the fits, s; three scans at least, more where there is noise. */
   readonly windowS: number
   /** Both derivatives must have been positive so long without a break, s. */
   readonly holdS: number
@@ -25,7 +25,7 @@ export interface HubJones {
 }
 
 export const freshHubJones = (c: HubJonesConfig): HubJones => {
-  const n = Math.max(5, Math.round(c.windowS / c.scanS) + 1)
+  const n = Math.max(3, Math.round(c.windowS / c.scanS) + 1)
   return { t: ring(n), d: ring(n), whole: 0, sinceMs: 0, sinceC: 0, on: false, holdOffMs: 0 }
 }
 

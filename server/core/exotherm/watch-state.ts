@@ -60,7 +60,7 @@ export interface WatchState {
 
 export const hubJonesConfig = (scanS: number): HubJonesConfig => ({
   scanS,
-  windowS: 20,
+  windowS: Math.max(20, 4 * scanS),
   holdS: 8,
   leastRiseK: 0.5,
   leastRateKS: 0.02,
