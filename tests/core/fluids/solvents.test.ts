@@ -13,12 +13,15 @@ const worse = new Map<string, number>(
 )
 
 describe('viscosity agrees with the handbook within 5 % (10 % below -20 °C), where sources differ by more within that', () => {
-  it.each(fixture.viscosityMPaS.rows as [string, number, number][])('%s at %d °C: %d mPa s', (name, tempC, mPaS) => {
-    const tolerance = (worse.get(`${name} ${tempC}`) ?? (tempC < -20 ? 10 : 5)) / 100
-    const { viscPaS, uncertain } = pure(name).at(kFromC(tempC))
-    expect(Math.abs(viscPaS * 1000 - mPaS) / mPaS).toBeLessThan(tolerance)
-    expect(uncertain).toBe(false)
-  })
+  it.each([...fixture.viscosityMPaS.rows, ...fixture.viscosityEthers.rows] as [string, number, number][])(
+    '%s at %d °C: %d mPa s',
+    (name, tempC, mPaS) => {
+      const tolerance = (worse.get(`${name} ${tempC}`) ?? (tempC < -20 ? 10 : 5)) / 100
+      const { viscPaS, uncertain } = pure(name).at(kFromC(tempC))
+      expect(Math.abs(viscPaS * 1000 - mPaS) / mPaS).toBeLessThan(tolerance)
+      expect(uncertain).toBe(false)
+    },
+  )
 })
 
 it.each(fixture.densityKgM3.rows as [string, number, number][])(
