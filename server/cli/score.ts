@@ -1,7 +1,9 @@
 import { parseArgs } from 'node:util'
+import { analyseLog, fileSource } from '../analyse.ts'
 import { MonitorError } from '../core/errors.ts'
 import { type ScoreDeps, type ScoreRun, scoreFolder } from '../score/run.ts'
 import { scoreTable } from '../score/table.ts'
+import { loadSkid } from '../skid/check.ts'
 import { writeAtomic } from './atomic-file.ts'
 import type { Command } from './command.ts'
 import { progressLine } from './progress-line.ts'
@@ -88,5 +90,13 @@ export const scoreCommandWith = (deps: Pick<ScoreDeps, 'analyse' | 'loadSkid'>):
     }
     for (const f of run.failed) io.err(`${f.message}\n`)
     return run.failed.length > 0 || run.lookAhead.some((l) => !l.same) ? 1 : 0
+  },
+})
+
+export const scoreCommand: Command = scoreCommandWith({
+  loadSkid,
+  async analyse(files, skid, { cutMs }) {
+    const { report } = await analyseLog({ skid, sources: [fileSource(files.logFile)], toMs: cutMs })
+    return report
   },
 })
