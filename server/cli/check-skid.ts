@@ -1,4 +1,5 @@
 import { MonitorError } from '../core/errors.ts'
+import { derivedPage } from '../core/figures/figures-text.ts'
 import type { Skid } from '../core/skid.ts'
 import { checkSkid, problemLine } from '../skid/check.ts'
 import { readSkidText } from '../skid/skid-path.ts'
@@ -64,4 +65,4 @@ export const checkSkidWith = ({ derivedPage }: CheckSkidOptions = {}): Command =
   },
 })
 
-export const checkSkidCommand: Command = checkSkidWith()
+export const checkSkidCommand: Command = checkSkidWith({ derivedPage: (skid) => derivedPage(skid) })

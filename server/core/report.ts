@@ -168,6 +168,8 @@ export interface FlushInventory {
   readonly reagents: readonly { readonly stream: string; readonly name: string; readonly mol: number | null }[]
   /** Heat if all organolithium met water, and if the reaction of the segment ran to its end; kJ. */
   readonly hydrolysisKJ: number | null
+  /** Adiabatic rise of the segment's own liquid by that hydrolysis, K. */
+  readonly hydrolysisRiseK: number | null
   readonly reactionKJ: number | null
 }
 

@@ -55,7 +55,7 @@ describe('check-skid', () => {
   })
 
   it('prints notes for a good file on stdout and exits 0; then the page of derived figures where one is given', async () => {
-    const plain = await run([heron])
+    const plain = await run([heron], checkSkidWith())
     expect(plain).toEqual({
       code: 0,
       out: `${heron}: no mistakes\n  note: accuracyPct is not given on 12 of 23 tags: 0.25 % of span is assumed\n`,

@@ -1,6 +1,6 @@
 import type { FlushPlan, FlushStep } from '../report.ts'
 
-/** A stored check of one criterion (PRO-10). A later one for the same criterion replaces the earlier; all of them stay in the record. */
+/** A stored check of one criterion. A later one for the same criterion replaces the earlier; all of them stay in the record. */
 export interface Acceptance {
   readonly step: string
   /** Criterion id of the plan's step. */
@@ -38,7 +38,7 @@ export interface NextStep {
 
 /** Steps whose criteria cannot be skipped with a reason: water waits for F1 and F2, cold waits for F4. */
 const hard = new Set(['F1', 'F2', 'F4'])
-/** A reason of useful length (USR-05). */
+/** A reason of useful length. */
 const reasonLength = 10
 
 const usable = (a: Acceptance): boolean => a.person.trim() !== '' && a.source.trim() !== '' && Number.isFinite(a.tMs)

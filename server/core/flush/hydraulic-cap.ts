@@ -31,7 +31,7 @@ function legDp(leg: Leg, fluid: Fluid, tempK: number, totalM3S: number): LegDp |
 }
 
 /**
- * The flow of a flush liquid: the normal flow of the feeds (a flush never asks for more, PRO-08), less where the predicted ΔP of any segment on
+ * The flow of a flush liquid: the normal flow of the feeds (a flush never asks for more), less where the predicted ΔP of any segment on
  * its way, at the present ratio with this liquid at this temperature, would pass `dpShare` of its dpHigh. Solved to 1e-14 on the rising ΔP(Q).
  * Null where an asked segment lacks channel or limit, or the feeds' flow is unknown.
  */

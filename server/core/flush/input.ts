@@ -34,7 +34,7 @@ export interface FlushSettings {
   readonly rtd: Readonly<Record<string, Rtd>>
 }
 
-/** Defaults are common practice (practice 5.4), under change control; each is shown with the plan. */
+/** Defaults are common practice (common practice), under change control; each is shown with the plan. */
 export const flushDefaults: FlushSettings = {
   residualFraction: 1e-3,
   washFraction: 1e-3,

@@ -2,15 +2,13 @@ import { lithiumSalt } from '../deposit/lithium-salts.ts'
 import { filmVolumeM3 } from '../deposit/run-length.ts'
 import { thicknessOfRatio } from '../deposit/thickness.ts'
 import type { SegmentOperation } from '../figures/operation.ts'
+import { isOrganolithium } from '../figures/organolithium.ts'
 import type { FlushInventory } from '../report.ts'
+import { adiabaticRise } from '../thermal/reaction-heat.ts'
 import type { FlushPath, Leg } from './legs.ts'
 
-/** Heat of organolithium with water, upper end of −200 … −240 kJ/mol (practice 5.5, from memory). */
+/** Heat of organolithium with water, upper end of −200 … −240 kJ/mol (from memory). */
 const hydrolysisKJMol = 240
-
-/** True for a reagent named as an organolithium. */
-export const isOrganolithium = (name: string): boolean =>
-  /lithium\b|[a-z]li$/i.test(name.trim()) && !/lithium (hydroxide|chloride|bromide|fluoride|carbonate)/i.test(name)
 
 /** Streams whose reagent counts as active: those named as an organolithium; where none is, every reagent, to be on the safe side. */
 export function activeStreams(path: FlushPath): { readonly ids: readonly string[]; readonly assumption: string | null } {
@@ -21,8 +19,8 @@ export function activeStreams(path: FlushPath): { readonly ids: readonly string[
 }
 
 /**
- * Reagents in a segment before the flush: n = V c Q_i/ΣQ [mol], as if nothing had reacted (worst case, PRO-12); heat if all active reagent met
- * water, n · 240 kJ/mol, and if the segment's own reaction ran to its end, |ΔH| · n_limiting.
+ * Reagents in a segment before the flush: n = V c Q_i/ΣQ [mol], as if nothing had reacted (worst case); heat if all active reagent met
+ * water, n · 240 kJ/mol, with the adiabatic rise of the mixture, and if the segment's own reaction ran to its end, |ΔH| · n_limiting.
  */
 export function inventoryOf(op: SegmentOperation, active: readonly string[]): FlushInventory {
   const { volumeM3, volumeFlowM3S, spec } = op
@@ -39,12 +37,18 @@ export function inventoryOf(op: SegmentOperation, active: readonly string[]): Fl
   )
   const hot = reagents.filter((r) => active.includes(r.stream))
   const hydrolysisKJ = hot.reduce<number | null>((a, r) => (a === null || r.mol === null ? null : a + r.mol * hydrolysisKJMol), 0)
+  const mol = hot.reduce<number | null>((a, r) => (a === null || r.mol === null ? null : a + r.mol), 0)
+  const state = op.fluid === null ? null : op.fluid.at(op.tempK)
   const limiting = spec.reaction === null ? null : inside(spec.reaction.limitingStream, spec.reaction.concentrationMolL)
   return {
     segment: spec.id,
     volumeMl: volumeM3 === null ? null : volumeM3 * 1e6,
     reagents,
     hydrolysisKJ: op.streams.some((s) => s.spec.reagent !== null) ? hydrolysisKJ : null,
+    hydrolysisRiseK:
+      mol === null || volumeM3 === null || state === null
+        ? null
+        : adiabaticRise(-hydrolysisKJMol * 1e3, mol / volumeM3, state.rhoKgM3, state.cpJKgK),
     reactionKJ: spec.reaction === null || limiting === null ? null : Math.abs(spec.reaction.enthalpyKJMol) * limiting,
   }
 }

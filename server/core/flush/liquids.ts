@@ -4,9 +4,9 @@ import { cFromK } from '../units.ts'
 import type { FlushSettings } from './input.ts'
 import type { FlushPath } from './legs.ts'
 
-/** Dry solvents that mix fully with water and leave cold organolithium alone for the minutes of F1 (practice 5.4; acetonitrile, acetone, alcohols and amides react). */
+/** Dry solvents that mix fully with water and leave cold organolithium alone for the minutes of F1 (common practice; acetonitrile, acetone, alcohols and amides react). */
 const displacing = ['tetrahydrofuran', 'dimethoxyethane', '1,4-dioxane']
-/** After the water nothing active is left: any fully miscible dry solvent that does not spoil the restart (practice 5.4). */
+/** After the water nothing active is left: any fully miscible dry solvent that does not spoil the restart (common practice). */
 const drying = ['tetrahydrofuran', 'dimethoxyethane', 'acetonitrile', '1,4-dioxane']
 
 export interface FlushLiquids {

@@ -40,7 +40,7 @@ function checked(settings: FlushSettings): FlushSettings {
   return settings
 }
 
-/** Why the flush is not advised at all: hardly any flow left within the pressure share (PRO-08). */
+/** Why the flush is not advised at all: hardly any flow left within the pressure share. */
 function blocked(path: FlushPath, flowM3S: number | null): string | null {
   const normal = path.normalM3S
   if (flowM3S === null || normal === null) return null
@@ -62,7 +62,7 @@ function blocked(path: FlushPath, flowM3S: number | null): string | null {
 }
 
 /**
- * The flush plan F0 to F6 (practice 5.4) of one or more segments: flow, volume, time, hold points, end criteria and hazards of each step, computed
+ * The flush plan F0 to F6 (common practice) of one or more segments: flow, volume, time, hold points, end criteria and hazards of each step, computed
  * from the skid file, the present ratios, flows and temperatures. Recommendations under the site's own procedure. What the file does not
  * carry is null in the step and named under `missing`; what was assumed stands under `assumptions`. Pure and deterministic.
  * Errors: FLUSH_REFUSED for a segment the skid has not, a solvent that is not fit, settings out of range; FLUID_* from the liquids.
@@ -100,7 +100,10 @@ export function planFlush(input: FlushInput): FlushPlan {
     'Washout volumes hang on the residence-time model named in each step; a tracer test replaces it. Dead legs are not in them.',
     ...inventory
       .filter((i) => (i.hydrolysisKJ ?? 0) > 0)
-      .map((i) => `${i.segment} holds up to ${(i.hydrolysisKJ ?? 0).toFixed(1)} kJ if its organolithium met water.`),
+      .map(
+        (i) =>
+          `${i.segment} holds up to ${(i.hydrolysisKJ ?? 0).toFixed(1)} kJ if its organolithium met water${i.hydrolysisRiseK === null ? '' : `, ${i.hydrolysisRiseK.toFixed(0)} K adiabatic`}.`,
+      ),
   ]
   const assumptions = [
     ...path.operation.assumptions,

@@ -58,7 +58,7 @@ export const criterion = (id: string, text: string): FlushCriterion => ({ id, te
 export const shown = (value: number | null, unit: string, digits = 3): string =>
   value === null ? 'not computed' : `${Number(value.toPrecision(digits))} ${unit}`
 
-/** The hazard every step with branches in parallel carries (practice 5.4). */
+/** The hazard every step with branches in parallel carries (common practice). */
 export function parallelHazard(path: FlushPath): string[] {
   const many = path.legs.filter((l) => (l.op.channel?.parallel ?? 1) > 1).map((l) => `${l.id} (${l.op.channel?.parallel})`)
   return many.length === 0

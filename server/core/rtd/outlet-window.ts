@@ -24,7 +24,7 @@ export interface OutletWindow {
 }
 
 /**
- * When a disturbance that entered a path between two instants shows at its outlet, by volume and not by clock (REC-14):
+ * When a disturbance that entered a path between two instants shows at its outlet, by volume and not by clock:
  *   outlet volume from V(t_start) + V_first to V(t_end) + V_last,  F(V_first) = ε,  F(V_last) = 1 − ε,  V(t) = ∫ Q dt
  * `path` volumes in m³, from the place of entry to the outlet; `flow` piecewise constant, in time order, from t_start on. Unknown flow adds no volume.
  * Errors: RTD_RANGE for an empty path, ε outside 0 … 0.5, samples out of order or starting after the disturbance.

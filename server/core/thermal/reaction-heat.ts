@@ -3,7 +3,7 @@ import { MonitorError } from '../errors.ts'
 /**
  * Adiabatic temperature rise ΔT_ad = (−ΔH) c / (ρ cp) [K].
  * ΔH reaction enthalpy [J/mol], negative for heat given off; c limiting reactant after mixing [mol/m³]; ρ [kg/m³]; cp [J/(kg K)].
- * Source: energy balance (EXO-01). Errors: THERMAL_RANGE unless ρ, cp > 0 and c ≥ 0.
+ * Source: energy balance. Errors: THERMAL_RANGE unless ρ, cp > 0 and c ≥ 0.
  */
 export function adiabaticRise(enthalpyJMol: number, concMolM3: number, rhoKgM3: number, cpJKgK: number): number {
   if (!(rhoKgM3 > 0 && cpJKgK > 0 && concMolM3 >= 0))
@@ -39,7 +39,7 @@ export function adiabaticRiseOfFeeds(molS: number, enthalpyJMol: number, feeds: 
 /**
  * Maximum temperature of the synthesis reaction MTSR = T_p + X_acc ΔT_ad [K], X_acc the share not yet reacted (0 … 1).
  * A flowing tube accumulates little; with flow or cooling lost its inventory is a small batch and the inlet, where X_acc is near 1, decides.
- * Source: F. Stoessel, Thermal Safety of Chemical Processes (EXO-01). Errors: THERMAL_RANGE for an accumulation outside 0 … 1.
+ * Source: F. Stoessel, Thermal Safety of Chemical Processes. Errors: THERMAL_RANGE for an accumulation outside 0 … 1.
  */
 export function mtsr(processK: number, accumulation: number, adiabaticRiseK: number): number {
   if (!(accumulation >= 0 && accumulation <= 1))

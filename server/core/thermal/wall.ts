@@ -48,7 +48,7 @@ export function overallU(w: WallInput): Overall {
 
 /**
  * Fouling resistance R_f = 1/U − 1/U0 [m² K/W], U now, U0 clean, both [W/(m² K)] on the same area. A slightly negative value is noise
- * and is given as it is. Source: TEMA practice (FOU-01 analogue). Errors: THERMAL_RANGE unless both are > 0.
+ * and is given as it is. Source: TEMA practice. Errors: THERMAL_RANGE unless both are > 0.
  */
 export function foulingResistance(uWM2K: number, cleanWM2K: number): number {
   if (!(uWM2K > 0 && cleanWM2K > 0))

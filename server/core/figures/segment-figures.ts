@@ -1,0 +1,150 @@
+import { runLengthS, USUAL_CAPTURE } from '../deposit/run-length.ts'
+import { liohRateM3S } from '../deposit/water-in-feed.ts'
+import { MonitorError } from '../errors.ts'
+import { channelVolumeM3 } from '../hydraulics/channel.ts'
+import { type CleanDp, cleanDp } from '../hydraulics/clean-dp.ts'
+import type { Skid } from '../skid.ts'
+import { paFromBar } from '../units.ts'
+import { dpUncertainty } from './dp-uncertainty.ts'
+import { type HeatFigures, heatFigures } from './heat-figures.ts'
+import { type Given, type Operation, operationOf, type SegmentOperation } from './operation.ts'
+import { isOrganolithium } from './organolithium.ts'
+
+/** What the tool derives for one segment at its working point, SI; null where the file does not carry it. */
+export interface SegmentFigures {
+  readonly segment: string
+  readonly title: string
+  readonly volumeFlowM3S: number | null
+  readonly tempK: number
+  readonly volumeM3: number | null
+  readonly residenceS: number | null
+  readonly dp: CleanDp | null
+  readonly heat: HeatFigures | null
+  /** LiOH that forms here at the stated water contents, m³/s. */
+  readonly liohM3S: number | null
+  /** Time from clean to dpHigh when a tenth of it stays, s. */
+  readonly runLengthS: number | null
+  readonly dpUncertaintyPa: number | null
+  readonly warnings: readonly string[]
+  readonly missing: readonly string[]
+}
+
+export interface SkidFigures {
+  readonly segments: readonly SegmentFigures[]
+  readonly assumptions: readonly string[]
+}
+
+/**
+ * Wet feeds that meet the organolithium in this segment for the first time. Where no feed is named as an organolithium: every feed where feeds first
+ * meet. The organolithium's own water has reacted in its drum. None in a quench, where lithium hydroxide stays dissolved.
+ */
+function wettingStreams(op: SegmentOperation, all: Operation): SegmentOperation['streams'] {
+  const active = all.streams.filter((s) => isOrganolithium(s.spec.reagent?.name ?? '')).map((s) => s.id)
+  const meets = (ids: readonly string[]) => (active.length > 0 ? ids.some((id) => active.includes(id)) : ids.length > 1)
+  if (op.spec.kind === 'quench' || !meets(op.spec.streams)) return []
+  const earlier = all.segments.slice(0, all.segments.indexOf(op)).filter((s) => meets(s.spec.streams))
+  return op.streams.filter((s) => !active.includes(s.id) && !earlier.some((e) => e.spec.streams.includes(s.id)))
+}
+
+function figuresOf(skid: Skid, op: SegmentOperation, all: Operation): SegmentFigures {
+  const warnings: string[] = []
+  const missing: string[] = []
+  const { channel, fluid, massFlowKgS, volumeFlowM3S, volumeM3, spec } = op
+  const state = fluid === null ? null : fluid.at(op.tempK)
+  if (channel === null) missing.push('Re, De, pressure drop, heat: need channel with bore and length')
+  if (fluid === null) missing.push('Re, pressure drop, heat: need the liquid and flow (or flow range) of every stream')
+  if (state?.uncertain) warnings.push('liquid properties outside their published range')
+  const working =
+    channel === null || state === null || massFlowKgS === null || massFlowKgS <= 0
+      ? null
+      : { channel, state, at: { massFlowKgS, rhoKgM3: state.rhoKgM3, viscPaS: state.viscPaS } }
+  const dp = working === null ? null : cleanDp(working.channel, working.at.massFlowKgS, working.at.rhoKgM3, working.at.viscPaS)
+  if (dp?.uncertain) warnings.push(`Re ${dp.re.toFixed(0)} lies between laminar and turbulent: pressure drop uncertain by 20 %`)
+  const heat = working === null || dp === null ? null : heatFigures(op, working.state, dp.re)
+  missing.push(...(heat?.missing ?? []))
+  if (channel !== null && spec.volumeMl !== null && Math.abs(channelVolumeM3(channel) / (spec.volumeMl * 1e-6) - 1) > 0.1) {
+    warnings.push(
+      `volumeMl ${spec.volumeMl} and the channel's own ${(channelVolumeM3(channel) * 1e6).toPrecision(3)} mL differ by more than 10 %`,
+    )
+  }
+  const u = dpUncertainty(skid, spec)
+  missing.push(...u.missing)
+  warnings.push(...u.assumed)
+  if (u.uPa !== null && dp !== null && dp.dpPa < 3 * u.uPa) {
+    warnings.push(
+      dp.dpPa < u.uPa
+        ? `clean pressure drop is below its own uncertainty u (${u.tags.join(', ')}): no baseline`
+        : `clean pressure drop is below 3 u of its taps (${u.tags.join(', ')}): small rises cannot be told`,
+    )
+  }
+  const wet = wettingStreams(op, all)
+  const liohM3S =
+    wet.length === 0
+      ? 0
+      : liohRateM3S(
+          wet.flatMap((s) =>
+            s.volumeFlowM3S === null || s.fluid === null
+              ? []
+              : [{ waterPpm: s.spec.waterPpm, rhoKgM3: s.fluid.at(s.tempK).rhoKgM3, flowM3S: s.volumeFlowM3S }],
+          ),
+        )
+  if (liohM3S === null) missing.push(`deposit rate: needs waterPpm and flow of ${wet.map((s) => s.id).join(', ')}`)
+  const { dpHighBar } = spec.limits
+  const clean = dp === null ? 0 : dp.frictionPa + dp.bendPa
+  const limitRatio = dpHighBar === null || dp === null || clean <= 0 ? null : (paFromBar(dpHighBar) - dp.staticPa) / clean
+  if (limitRatio !== null && limitRatio <= 1) warnings.push('clean pressure drop at this flow is at or above dpHigh')
+  const run =
+    working === null || limitRatio === null || limitRatio <= 1 || liohM3S === null
+      ? null
+      : runLengthS(working.channel, working.at, limitRatio, liohM3S, USUAL_CAPTURE)
+  return {
+    segment: spec.id,
+    title: spec.title,
+    volumeFlowM3S,
+    tempK: op.tempK,
+    volumeM3,
+    residenceS: volumeM3 === null || volumeFlowM3S === null || volumeFlowM3S <= 0 ? null : volumeM3 / volumeFlowM3S,
+    dp,
+    heat,
+    liohM3S,
+    runLengthS: run,
+    dpUncertaintyPa: u.uPa,
+    warnings: [...warnings, ...(heat?.notes ?? [])],
+    missing,
+  }
+}
+
+/**
+ * Derived figures of every segment at the given flows and temperatures, or at the stated assumptions (`operationOf`). A liquid outside the range of
+ * its correlations leaves that segment's figures null and says so. Errors: FLUID_* from a stream's liquid itself.
+ */
+export function skidFigures(skid: Skid, given: Given = {}): SkidFigures {
+  const operation = operationOf(skid, given)
+  const segments = operation.segments.map((op): SegmentFigures => {
+    try {
+      return figuresOf(skid, op, operation)
+    } catch (cause) {
+      if (!(cause instanceof MonitorError)) throw cause
+      return {
+        segment: op.spec.id,
+        title: op.spec.title,
+        volumeFlowM3S: op.volumeFlowM3S,
+        tempK: op.tempK,
+        volumeM3: op.volumeM3,
+        residenceS: null,
+        dp: null,
+        heat: null,
+        liohM3S: null,
+        runLengthS: null,
+        dpUncertaintyPa: null,
+        warnings: [],
+        missing: [cause.message],
+      }
+    }
+  })
+  const named = skid.streams.some((s) => isOrganolithium(s.reagent?.name ?? ''))
+  const assumptions = named
+    ? operation.assumptions
+    : [...operation.assumptions, 'no feed is named as an organolithium: the water of every feed counted where feeds first meet']
+  return { segments, assumptions }
+}
