@@ -1,0 +1,138 @@
+import { MonitorError } from '../errors.ts'
+import type { Priority } from '../report.ts'
+import { type DefaultRationale, defaultRationales, type RationaleName } from './default-rationale.ts'
+import { type DelayBasis, delays } from './delays.ts'
+import { priorityFor, type Severity, severities } from './priority.ts'
+
+/** The rationalisation of one alarm (ALM-02). */
+export interface Rationale extends Omit<DefaultRationale, 'causes' | 'signalled'> {
+  readonly name: RationaleName
+  readonly segment: string | null
+  readonly causes: string
+  readonly priority: Priority
+  readonly priorityReason: string
+  readonly class: string
+  readonly onDelayS: number
+  readonly offDelayS: number
+  readonly deadbandPct: number
+  readonly suppression: string
+  readonly approvedBy: string
+  readonly approvedAt: string
+  readonly version: string
+  /** Whether a person of this site has looked at it. */
+  readonly review: string
+}
+
+export const notReviewed = 'default, not reviewed for this site'
+
+/** Fields that a skid file may give, and what each must be. */
+export const rationaleFields = {
+  title: 'string',
+  type: 'string',
+  basis: 'string',
+  causes: 'string',
+  consequence: 'string',
+  check: 'string',
+  action: 'string',
+  severity: 'string',
+  timeToRespondS: 'number',
+  priority: 'string',
+  priorityReason: 'string',
+  class: 'string',
+  onDelayS: 'number',
+  offDelayS: 'number',
+  deadbandPct: 'number',
+  latching: 'boolean',
+  suppression: 'string',
+  approvedBy: 'string',
+  approvedAt: 'string',
+  version: 'string',
+} as const
+const mayBe: Readonly<Record<string, readonly string[]>> = {
+  severity: severities,
+  priority: ['low', 'medium', 'high'],
+  type: ['absolute', 'deviation', 'rate', 'ratio', 'statistical', 'discrepancy', 'diagnostic'],
+}
+
+export type Overrides = Readonly<Record<string, Readonly<Record<string, string | number | boolean>>>>
+
+/**
+ * The default rationalisation of one alarm with what the skid file says over it: first under its kind, then its name (kind/variant), then
+ * either with `:segment`. Severity or time to respond changed there moves the priority with it, unless the priority is given too. It counts as reviewed when the file names who approved it.
+ * Errors: CONFIG_RANGE for an unknown field, one of the wrong type or out of range, and an empty action, consequence or time to respond (ALM-02).
+ */
+export function rationale(
+  name: RationaleName,
+  segment: string | null,
+  basis: Omit<DelayBasis, 'timeToRespondS'>,
+  overrides: Overrides = {},
+): Rationale {
+  const { signalled, causes, ...base }: DefaultRationale = defaultRationales[name]
+  const given: Record<string, string | number | boolean> = {}
+  const names = name === base.kind ? [base.kind] : [base.kind, name]
+  for (const key of segment === null ? names : [...names, ...names.map((n) => `${n}:${segment}`)]) {
+    const over = Object.hasOwn(overrides, key) ? overrides[key] : undefined
+    for (const [field, value] of Object.entries(over ?? {})) given[field] = checked(key, field, value)
+  }
+  const timeToRespondS = (given['timeToRespondS'] ?? base.timeToRespondS) as number
+  const severity = (given['severity'] ?? base.severity) as Severity
+  const ranked = priorityFor(severity, timeToRespondS)
+  return {
+    ...base,
+    causes: causes.join('; '),
+    name,
+    segment,
+    priority: ranked.priority,
+    priorityReason: given['priority'] === undefined ? ranked.reason : 'given in the skid file',
+    class: 'process',
+    ...delays(signalled, { ...basis, timeToRespondS }),
+    suppression: 'none',
+    approvedBy: '',
+    approvedAt: '',
+    version: 'default',
+    ...given,
+    review: given['approvedBy'] === undefined ? notReviewed : `approved by ${given['approvedBy']}`,
+  }
+}
+
+function checked(key: string, field: string, value: string | number | boolean): string | number | boolean {
+  const at = `alarms.${key}.${field}`
+  if (!Object.hasOwn(rationaleFields, field)) {
+    throw new MonitorError('CONFIG_RANGE', `${at} is not a field of an alarm`, {
+      hint: `one of ${Object.keys(rationaleFields).join(', ')}`,
+    })
+  }
+  const want = rationaleFields[field as keyof typeof rationaleFields]
+  const is = typeof value
+  if (is !== want) throw new MonitorError('CONFIG_RANGE', `${at} must be a ${want}, got ${is} ${value}`)
+  const words = Object.hasOwn(mayBe, field) ? mayBe[field] : undefined
+  if (words !== undefined && !words.includes(value as string)) {
+    throw new MonitorError('CONFIG_RANGE', `${at} is '${value}'`, { hint: `one of ${words.join(', ')}` })
+  }
+  if (typeof value === 'number' && !(Number.isFinite(value) && (field === 'timeToRespondS' ? value > 0 : value >= 0))) {
+    throw new MonitorError('CONFIG_RANGE', `${at} must be ${field === 'timeToRespondS' ? 'above' : 'at least'} 0, got ${value}`, {
+      hint: 'an alarm without a time to respond is an event, not an alarm',
+    })
+  }
+  if (typeof value === 'string' && value.trim() === '') {
+    const hint = 'an alarm without action and consequence is an event, not an alarm'
+    throw new MonitorError('CONFIG_RANGE', `${at} is empty`, field === 'action' || field === 'consequence' ? { hint } : {})
+  }
+  return value
+}
+
+/** Checks all overrides of a skid file at load: every key must name an alarm, every field be right. Errors: CONFIG_RANGE, as `rationale`. */
+export function checkOverrides(overrides: Overrides, segments: readonly string[]): void {
+  const names = Object.keys(defaultRationales)
+  const kinds = Object.values(defaultRationales).map((r) => r.kind as string)
+  for (const [key, fields] of Object.entries(overrides)) {
+    const [name = '', segment] = key.split(':')
+    if (!names.includes(name) && !kinds.includes(name)) {
+      throw new MonitorError('CONFIG_RANGE', `alarms.${key} names no alarm`, { hint: `one of ${names.join(', ')}` })
+    }
+    if (segment !== undefined && !segments.includes(segment)) {
+      throw new MonitorError('CONFIG_RANGE', `alarms.${key} names no segment`, { hint: `one of ${segments.join(', ')}` })
+    }
+    for (const [field, value] of Object.entries(fields)) checked(key, field, value)
+  }
+}
