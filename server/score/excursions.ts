@@ -4,7 +4,7 @@ import type { Skid } from '../core/skid.ts'
 import { ms, production, tagsOf, within } from './acting.ts'
 
 /** How long after its end a thing may still be found, or explain an alarm, seconds. The project's own choice, the same for all. */
-export const graceS = { exotherm: 60, feedError: 60, sensorFault: 600, coolDown: 600 } as const
+export const graceS = { exotherm: 60, feedError: 60, sensorFault: 600, coolDown: 600, oneFlow: 1800 } as const
 
 export interface ExothermScore {
   readonly segment: string
@@ -101,6 +101,13 @@ export function scoreExcursions(truth: Truth, report: Report, skid: Skid) {
         (c.tags === 'all' || (a.tag !== null && c.tags.includes(a.tag))) &&
         after(a, c.at, c.until ?? c.at, graceS.sensorFault),
     )
+  /** One pump moved alone, by hand or by slipping: the feed ratio truly changed, a feed-ratio alarm is neither asked for nor false. */
+  const oneFlowAt = (a: AlarmReport) =>
+    truth.confounders.some(
+      (c) =>
+        (c.kind === 'flowStepOne' || c.kind === 'pumpSlip') &&
+        after(a, c.at, new Date(ms(c.at) + 1000 * (c.overS ?? 0)).toISOString(), graceS.oneFlow),
+    )
   const strayExotherms = ofKind('exotherm').filter((a) => !truth.exotherms.some((e) => after(a, e.start, e.end, graceS.coolDown)))
   const straySensors = ofKind('sensor').filter((a) => !faultAt(a, (tag) => tag === a.tag) && !gapAt(a))
   const wrongTag = (a: AlarmReport) => faultAt(a, (tag) => a.tag === null || sharing(tag).includes(a.tag))
@@ -110,7 +117,9 @@ export function scoreExcursions(truth: Truth, report: Report, skid: Skid) {
     exotherm: times(strayExotherms.filter(producing)),
     exothermOutside: times(strayExotherms.filter((a) => !producing(a))),
     feedRatio: times(
-      ofKind('feed-ratio').filter((a) => producing(a) && !truth.feedErrors.some((f) => after(a, f.start, f.end, graceS.feedError))),
+      ofKind('feed-ratio').filter(
+        (a) => producing(a) && !oneFlowAt(a) && !truth.feedErrors.some((f) => after(a, f.start, f.end, graceS.feedError)),
+      ),
     ),
     sensor: times(straySensors.filter((a) => !wrongTag(a))),
     sensorWrongTag: times(straySensors.filter(wrongTag)),

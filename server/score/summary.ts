@@ -155,6 +155,13 @@ export function summarise(cases: readonly CaseScore[]): Summary {
     share('found.second', 'of these, second growths', seconds.filter((e) => e.raised !== null).length, seconds.length),
     share('rightSegment', 'right segment', pointed.filter((e) => e.firstSegment === e.segment).length, pointed.length, 0.99),
     ...ratioFigures(events),
+    quantileFigure(
+      'riseAtAlarm',
+      'the same over the ratio at onset, all growths, median',
+      'ratio',
+      given(events.map((e) => e.rise)),
+      0.5,
+    ),
     rate('falseFouling', 'false fouling alarms, in control', classes.false, hours.inControl, 1.5),
     rate('foulingLike', 'the same with those of another cause', classes.false + classes.other, hours.inControl),
     ...onsetFigures(

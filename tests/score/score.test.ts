@@ -37,6 +37,16 @@ describe('a case and the summary', () => {
     expect(score.falseAlarms.feedRatio).toEqual([at(100)])
   })
 
+  it('takes a feed-ratio alarm up to half an hour after one pump was moved for neither wanted nor false', () => {
+    const truth = truthWith({ confounders: [{ kind: 'flowStepOne', at: at(30), stream: 'B', factor: 1.06 }] })
+    const score = scoreCase(
+      truth,
+      reportWith([alarm('feed-ratio', 31), alarm('feed-ratio', 59), alarm('feed-ratio', 61), alarm('feed-ratio', 29)]),
+      skid,
+    )
+    expect(score.falseAlarms.feedRatio).toEqual([at(61), at(29)])
+  })
+
   it('flags a sensor fault only by its own tag; a neighbour and a sound tag are counted apart', () => {
     const sensor = (minutes: number, tag: string) => alarm('sensor', minutes, { segment: null, tag })
     const score = scoreCase(truthWith(rich), reportWith([sensor(70, 'PT-112'), sensor(31, 'TT-111'), sensor(150, 'PT-110')]), skid)
