@@ -157,7 +157,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function onWatch(e: WatchEvent, tMs: number): void {
     switch (e.kind) {
       case 'bank':
-        return onBank(e.event, e.onset, e.ratio, tMs)
+        onBank(e.event, e.onset, e.ratio, tMs)
+        return
       case 'baseline':
         events.push({ kind: 'baseline', segment: layout.segments[e.segment]!.spec.id, baseline: e.baseline })
         return
@@ -165,7 +166,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         events.push({ kind: 'onset', segment: layout.segments[e.segment]!.spec.id, onset: e.onset })
         return
       case 'cleared':
-        return end(`fouling:${layout.segments[e.segment]!.spec.id}`, tMs)
+        end(`fouling:${layout.segments[e.segment]!.spec.id}`, tMs)
+        return
       case 'forecast':
         return
     }

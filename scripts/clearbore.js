@@ -1,0 +1,7 @@
+#!/usr/bin/env node
+// `npx clearbore …` inside the checkout: installs and builds what is missing, then hands over to the command line.
+import { ensureBuilt, ensureInstalled } from './prepare.js'
+
+ensureInstalled()
+await ensureBuilt()
+await import('../dist/server/main.js')

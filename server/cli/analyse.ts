@@ -1,0 +1,107 @@
+import { readFile, stat } from 'node:fs/promises'
+import { basename } from 'node:path'
+import { parseArgs } from 'node:util'
+import { analyseLog, fileSource } from '../analyse.ts'
+import { MonitorError } from '../core/errors.ts'
+import { reportText } from '../core/pipeline/collect.ts'
+import { readEvents } from '../ingest/events-file.ts'
+import { instantOf } from '../ingest/instant.ts'
+import { loadSkidFile } from '../skid/skid-path.ts'
+import { writeAtomic } from './atomic-file.ts'
+import type { Command } from './command.ts'
+import { progressLine } from './progress-line.ts'
+import { withSettings } from './settings-file.ts'
+import { summaryText } from './summary-text.ts'
+
+const help = `Usage: clearbore analyse LOG.csv… --skid FILE [--json OUT|-] [--from T] [--to T] [--start T] [--settings FILE] [--events FILE]
+
+Takes one logged run, in one file or several, through the very pipeline that runs live, and prints what it found.
+
+  LOG.csv…         pieces of one logger in any order, or the logs of different loggers; '-' reads stdin
+  --skid FILE      the skid file (YAML or JSON); clearbore check-skid FILE tells whether it is good
+  --json OUT       the whole report as JSON into a file; '-' writes it to stdout instead of the summary
+  --from T --to T  only rows in this span (ISO 8601; without a zone in the skid's own)
+  --start T        when a log with elapsed seconds or bare times of day began
+  --settings FILE  other limits and another promise laid over the skid file:
+                     detection: { falseAlarmDays: 30, riseToFindPct: 5 }
+                     limits: { R1: { dpHighBar: 5.5 } }
+  --events FILE    CSV with time,kind,value,unit,person,note
+
+Exit code 0; 1 when an input is wrong (the place and the mend on stderr); 2 for a wrong command line; 3 when the machine fails.
+`
+
+function options(args: readonly string[]) {
+  try {
+    const text = { type: 'string' } as const
+    const { values, positionals } = parseArgs({
+      args: [...args],
+      allowPositionals: true,
+      options: { skid: text, json: text, from: text, to: text, start: text, settings: text, events: text },
+    })
+    return { ...values, logs: positionals }
+  } catch (cause) {
+    throw new MonitorError('USAGE', cause instanceof Error ? cause.message.split('\n')[0]! : String(cause), {
+      hint: 'clearbore analyse --help',
+    })
+  }
+}
+
+/** Reads a small text file. Errors: FILE_READ with its path. */
+async function readText(file: string): Promise<Buffer> {
+  try {
+    return await readFile(file)
+  } catch (cause) {
+    throw new MonitorError('FILE_READ', `cannot read: ${cause instanceof Error ? cause.message : String(cause)}`, {
+      place: { file },
+      cause,
+    })
+  }
+}
+
+export const analyseCommand: Command = {
+  name: 'analyse',
+  summary: 'one logged run to a report',
+  help,
+  async run(args, io) {
+    const o = options(args)
+    if (o.skid === undefined) throw new MonitorError('USAGE', 'analyse needs --skid FILE', { hint: 'clearbore analyse --help' })
+    if (o.logs.length === 0)
+      throw new MonitorError('USAGE', 'analyse needs at least one log', { hint: 'clearbore analyse LOG.csv --skid FILE' })
+    let skid = await loadSkidFile(o.skid)
+    if (o.settings !== undefined) skid = withSettings(skid, (await readText(o.settings)).toString('utf8'), o.settings)
+    const at = (text: string | undefined, option: string): number | null =>
+      text === undefined ? null : instantOf(text, skid.timeZone, option)
+    const span = { startMs: at(o.start, '--start'), fromMs: at(o.from, '--from'), toMs: at(o.to, '--to') }
+    const acts = o.events === undefined ? [] : readEvents(basename(o.events), await readText(o.events), skid.timeZone)
+    let total = 0
+    for (const log of o.logs)
+      if (log !== '-') {
+        try {
+          total += (await stat(log)).size
+        } catch (cause) {
+          throw new MonitorError('FILE_READ', 'no such log', { place: { file: log }, hint: 'check the path', cause })
+        }
+      }
+    const line = progressLine(io, 'analyse', total / 1e6, 'MB')
+    const { report, tallies } = await analyseLog({
+      skid,
+      ...span,
+      acts,
+      signal: io.signal,
+      sources: o.logs.map((log) => (log === '-' ? { name: 'stdin', chunks: stdin() } : fileSource(log))),
+      onProgress: (bytes) => {
+        line.update(Math.round(bytes / 1e5) / 10)
+      },
+    }).finally(() => line.end())
+    if (o.json === '-') await io.out(reportText(report))
+    else {
+      if (o.json !== undefined) await writeAtomic(o.json, reportText(report))
+      await io.out(summaryText(skid, report, tallies))
+    }
+    return 0
+  },
+}
+
+async function* stdin(): AsyncGenerator<Uint8Array> {
+  for await (const chunk of process.stdin) yield chunk as Uint8Array
+}

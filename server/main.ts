@@ -1,0 +1,19 @@
+import { runCli } from './cli/run.ts'
+
+const abort = new AbortController()
+for (const name of ['SIGINT', 'SIGTERM'] as const) process.once(name, () => abort.abort())
+// A reader that went away (`| head`) is no error of ours.
+process.stdout.on('error', (e: NodeJS.ErrnoException) => {
+  if (e.code === 'EPIPE') process.exit(0)
+})
+
+process.exitCode = await runCli(process.argv.slice(2), {
+  out: (text) => new Promise((done) => (process.stdout.write(text) ? done() : process.stdout.once('drain', done))),
+  err: (text) => {
+    process.stderr.write(text)
+  },
+  errIsTerminal: process.stderr.isTTY === true,
+  outIsTerminal: process.stdout.isTTY === true,
+  nowMs: () => performance.now(),
+  signal: abort.signal,
+})
