@@ -11,7 +11,7 @@ export function asStoreError(error: unknown, place: string): unknown {
       `no room left to write ${place}`,
       more('free some space; what was acknowledged is safe on disk'),
     )
-  if (code.startsWith('SQLITE_CORRUPT') || code === 'SQLITE_NOTADB')
+  if (code.startsWith('SQLITE_CORRUPT') || code === 'SQLITE_NOTADB' || error instanceof SyntaxError)
     return new MonitorError('STORE_CORRUPT', `${place} is damaged: ${error.message}`, more('restore the data folder from a backup'))
   if (code.startsWith('SQLITE_BUSY') || code === 'SQLITE_LOCKED')
     return new MonitorError(
@@ -48,4 +48,10 @@ export function guarded<A extends unknown[], R>(place: string, act: (...args: A)
       throw asStoreError(error, place)
     }
   }
+}
+
+/** The same functions, each guarded; their types and comments stay. */
+export function guardedAll<T extends { readonly [name: string]: unknown }>(place: string, functions: T): T {
+  const wrap = ([name, act]: [string, unknown]) => [name, guarded(place, act as (...args: unknown[]) => unknown)]
+  return Object.fromEntries(Object.entries(functions).map(wrap)) as T
 }

@@ -49,7 +49,7 @@ const steps: readonly string[] = [
 export const schemaVersion = steps.length
 
 /** Steps a store has seen. Errors: STORE_SCHEMA_NEWER when a newer build wrote it. */
-function seen(db: Database.Database): number {
+export function seen(db: Database.Database): number {
   const done = db.pragma('user_version', { simple: true }) as number
   if (done > steps.length)
     throw new MonitorError('STORE_SCHEMA_NEWER', `the store has schema ${done}, this build knows ${steps.length}`, {

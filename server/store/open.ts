@@ -3,9 +3,9 @@ import { join } from 'node:path'
 import Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
 import { auditStore } from './audit.ts'
-import { asStoreError, guarded } from './fault.ts'
+import { asStoreError, guarded, guardedAll } from './fault.ts'
 import { journalStore } from './journal.ts'
-import { checkSchema, migrate } from './migrate.ts'
+import { checkSchema, migrate, seen } from './migrate.ts'
 import { readingStore } from './readings.ts'
 import { reclaimer } from './reclaim.ts'
 import { runStore } from './runs.ts'
@@ -27,9 +27,6 @@ export interface StoreOptions {
 
 const fileName = 'clearbore.db'
 const pageBytes = 4096
-/** Free pages kept for reuse [16 MB]: staging frees and takes pages all the time. */
-const sparePages = 4096
-
 /** Held for the process's life; the system drops it when the process dies, however it dies. */
 function lock(dir: string): Database.Database {
   const held = new Database(join(dir, 'lock.db'), { timeout: 0 })
@@ -68,9 +65,12 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
     try {
       db = new Database(join(dir, fileName), { readonly, timeout: 5000 })
       if (!readonly) {
-        db.pragma(`page_size = ${pageBytes}`)
-        db.pragma('auto_vacuum = INCREMENTAL')
-        db.pragma('journal_mode = WAL')
+        if (seen(db) === 0) {
+          // On a file that has them already these would write to it.
+          db.pragma(`page_size = ${pageBytes}`)
+          db.pragma('auto_vacuum = INCREMENTAL')
+          db.pragma('journal_mode = WAL')
+        }
         db.pragma(`synchronous = ${options.synchronous ?? 'FULL'}`)
         db.pragma('journal_size_limit = 67108864')
         if (options.maxPages !== undefined) db.pragma(`max_page_count = ${options.maxPages}`)
@@ -93,16 +93,10 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
   const runs = runStore(db)
   const sequence = sequenceStore(db, segments)
   const journal = journalStore(db)
-  const readings = readingStore(db, segments)
   const reclaim = reclaimer(db)
-  const packNext = db.transaction(() => sequence.packNext())
-  const purgeNext = db.transaction(() => reclaim.purgeNext())
-  const append = db.transaction((batch: readonly Append[]): number[] => {
-    for (const { run, words } of batch) if (words !== undefined) runs.addWords(run, words.from, words.words)
-    return sequence.append(batch)
-  })
+  const packNext = db.transaction(() => sequence.packNext()).immediate
+  const purgeNext = db.transaction(() => reclaim.purgeNext()).immediate
 
-  const g = <A extends unknown[], R>(act: (...args: A) => R) => guarded(place, act)
   function* read(...args: Parameters<typeof sequence.read>): ReturnType<typeof sequence.read> {
     try {
       yield* sequence.read(...args)
@@ -110,48 +104,69 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
       throw asStoreError(error, place)
     }
   }
+  const g = <A extends unknown[], R>(act: (...args: A) => R) => guarded(place, act)
+  const all = <T extends { readonly [name: string]: unknown }>(functions: T): T => guardedAll(place, functions)
+  const { packNext: _, read: _read, append, ...sequenceRest } = sequence
   return {
-    runs: {
-      create: g(runs.create),
-      list: g(runs.list),
-      get: g(runs.get),
-      setState: g(runs.setState),
-      delete: g(runs.delete),
-      words: g(runs.words),
-      addWords: g(runs.addWords),
-    },
+    runs: all(runs),
     sequence: {
-      append: g(append),
+      ...all(sequenceRest),
+      /**
+       * Durable on return: one transaction for all of them, words included. Gives each run's next number.
+       * Errors: STORE_DATA, DISK_FULL; then nothing of it is kept.
+       */
+      append: g(
+        db.transaction((batch: readonly Append[]): number[] => {
+          for (const { run, words } of batch) if (words !== undefined) runs.addWords(run, words.from, words.words)
+          return append(batch)
+        }).immediate,
+      ),
+      /**
+       * A run's entries in the exact recorded order, from number `fromSeq` on; rows may come in other block sizes than they were
+       * appended in. The blocks are the reader's own. Entries appended while reading come too, packing while reading does not matter.
+       * Errors: STORE_DATA, STORE_CORRUPT.
+       */
       read,
-      count: g(sequence.count),
-      sourceState: g(sequence.sourceState),
-      acts: g(sequence.acts),
     },
-    readings: { envelope: g(readings.envelope), samples: g(readings.samples), span: g(readings.span) },
-    events: { append: g(journal.events.append), list: g(journal.events.list), count: g(journal.events.count) },
-    transitions: { append: g(journal.transitions.append), list: g(journal.transitions.list), count: g(journal.transitions.count) },
-    ...wrapSmall(db, g),
+    readings: all(readingStore(db, segments)),
+    events: all(journal.events),
+    transitions: all(journal.transitions),
+    snapshots: all(snapshotStore(db)),
+    settings: all(settingsStore(db)),
+    audit: all(auditStore(db)),
     /** Runs `act` as one transaction: all its writes share one commit, or none happens when it throws. */
     together: <R>(act: () => R): R => g(() => db.transaction(act).immediate())(),
     /**
      * The house work: packs full staging into segments, purges deleted runs, shrinks the file; each step is a transaction of its own
-     * of a few ms, and it stops after `maxMs` by `now`. Says whether some is left. Never changes what is read.
+     * of a few ms, and it stops after `maxMs` by `now`. Says whether some is left. Never changes what is read. Free space up to `spareMb`
+     * stays in the file: staging takes and frees pages all the time.
      */
-    upkeep: g(
-      ({ maxMs = Infinity, now = () => performance.now() }: { maxMs?: number; now?: () => number } = {}): { pending: boolean } => {
-        const end = now() + maxMs
-        for (const step of [packNext, purgeNext, () => reclaim.shrink(sparePages)]) {
-          while (step()) if (now() >= end) return { pending: true }
+    upkeep: g(({ maxMs = Infinity, spareMb = 16, now = () => performance.now() }: Upkeep = {}): { pending: boolean } => {
+      const end = now() + maxMs
+      for (const step of [packNext, purgeNext, () => reclaim.shrink((spareMb * 2 ** 20) / pageBytes)]) {
+        while (step()) if (now() >= end) return { pending: true }
+      }
+      return { pending: false }
+    }),
+    /** Everything that can be checked of the file, a line a fault; empty when sound. Reads and decodes the whole of it. */
+    check: g((): string[] => {
+      const found = (db.pragma('integrity_check') as { integrity_check: string }[])
+        .map((row) => row.integrity_check)
+        .filter((line) => line !== 'ok')
+      for (const { id, title } of runs.list()) {
+        try {
+          for (const _ of read(id));
+          segments.visit(id, -Infinity, Infinity, (node) => {
+            segments.page(node.id)
+            return false
+          })
+        } catch (error) {
+          if (!(error instanceof MonitorError)) throw error
+          found.push(`run ${id} (${title}): ${error.message}`)
         }
-        return { pending: false }
-      },
-    ),
-    /** Everything SQLite can check of the file, a line a fault; empty when sound. Reads the whole file. */
-    check: g((): string[] =>
-      (db.pragma('integrity_check', { simple: false }) as { integrity_check: string }[])
-        .map((r) => r.integrity_check)
-        .filter((r) => r !== 'ok'),
-    ),
+      }
+      return found
+    }),
     close(): void {
       db.close()
       held?.close()
@@ -159,17 +174,10 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
   }
 }
 
-type Guard = <A extends unknown[], R>(act: (...args: A) => R) => (...args: A) => R
-
-function wrapSmall(db: Database.Database, g: Guard) {
-  const snapshots = snapshotStore(db)
-  const settings = settingsStore(db)
-  const audit = auditStore(db)
-  return {
-    snapshots: { put: g(snapshots.put), latest: g(snapshots.latest) },
-    settings: { put: g(settings.put), list: g(settings.list), at: g(settings.at) },
-    audit: { append: g(audit.append), list: g(audit.list) },
-  }
+interface Upkeep {
+  readonly maxMs?: number
+  readonly spareMb?: number
+  readonly now?: () => number
 }
 
 export type Store = ReturnType<typeof assemble>

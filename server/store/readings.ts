@@ -5,7 +5,7 @@ import { readChannel } from './channel.ts'
 import { keyOf, type RunId } from './keys.ts'
 import { noRun } from './runs.ts'
 import { openStrip, stripTags } from './segment.ts'
-import type { SegmentTable } from './segments.ts'
+import { damaged, type SegmentTable } from './segments.ts'
 import { decodeStage } from './staging.ts'
 import { addToCells, cells, cellWidthsMs } from './tiers.ts'
 
@@ -41,6 +41,12 @@ interface Chunk {
   /** Every code is `cell.value`. */
   readonly plain: boolean
 }
+interface Head {
+  readonly width: number | null
+  readonly first: number | null
+  readonly last: number | null
+  readonly stagedRows: number
+}
 /** Rows of a segment or of a staged record: their times and a way to one tag; what it gives is good until asked again. */
 type Rows = { readonly tMs: Float64Array; readonly tag: (index: number) => Chunk }
 
@@ -57,14 +63,13 @@ export function bucketWidth(fromMs: number, toMs: number, most: number): number 
 
 /** Reads readings by time, packed and staged alike. The cost follows what is drawn, not the run's length. */
 export function readingStore(db: Database.Database, segments: SegmentTable) {
-  const head = db.prepare<[RunId], { width: number | null; first: number | null; last: number | null }>(
-    `SELECT width, first_ms AS "first", last_ms AS "last" FROM head JOIN run ON run.id = head.run WHERE run = ? AND state <> 'deleted'`,
+  const head = db.prepare<[RunId], Head>(
+    `SELECT width, first_ms AS "first", last_ms AS "last", staged_rows AS stagedRows
+     FROM head JOIN run ON run.id = head.run WHERE run = ? AND state <> 'deleted'`,
   )
-  const staged = db
-    .prepare<[number, number, number, number], number>(
-      'SELECT id FROM stage WHERE id >= ? AND id < ? AND t_min < ? AND t_max >= ? ORDER BY id',
-    )
-    .pluck()
+  const staged = db.prepare<[number, number], { id: number; rows: number; tMin: number; tMax: number }>(
+    'SELECT id, rows, t_min AS tMin, t_max AS tMax FROM stage WHERE id >= ? AND id < ? ORDER BY id',
+  )
   const stageBody = db.prepare<[number], Buffer>('SELECT body FROM stage WHERE id = ?').pluck()
 
   const check = (run: RunId, tags: readonly number[]) => {
@@ -96,10 +101,12 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
   }
 
   /** Staged rows in a span as if one segment. */
-  function stagedRows(run: RunId, width: number, fromMs: number, toMs: number): Rows | null {
-    const blocks = staged
-      .all(keyOf(run, 0), keyOf(run, 0) + 2 ** 36, toMs, fromMs)
-      .map((id) => decodeStage(stageBody.get(id)!, width).block)
+  function stagedRows(run: RunId, { width, stagedRows: expected }: Head, fromMs: number, toMs: number): Rows | null {
+    const all = staged.all(keyOf(run, 0), keyOf(run, 0) + 2 ** 36)
+    if (all.reduce((sum, { rows }) => sum + rows, 0) !== expected) throw damaged(`some of the latest rows of run ${run}`)
+    const blocks = all
+      .filter(({ tMin, tMax }) => tMin < toMs && tMax >= fromMs)
+      .map(({ id }) => decodeStage(stageBody.get(id)!, width ?? 0).block)
     const rows = blocks.reduce((sum, block) => sum + block.rows, 0)
     if (rows === 0) return null
     const tMs = new Float64Array(rows)
@@ -115,7 +122,7 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
       tag(index) {
         let row = 0
         for (const block of blocks) {
-          for (let i = 0, from = index; i < block.rows; i++, from += width) {
+          for (let i = 0, from = index; i < block.rows; i++, from += block.width) {
             values[row] = block.values[from]!
             codes[row++] = block.codes[from]!
           }
@@ -131,7 +138,7 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
         'STORE_DATA',
         `an envelope needs from < to and 2 to ${mostBuckets} buckets, got ${fromMs}, ${toMs}, ${buckets}`,
       )
-    const { width } = check(run, tags)
+    const known = check(run, tags)
     const bucketMs = bucketWidth(fromMs, toMs, Math.floor(buckets))
     const first = Math.floor(fromMs / bucketMs)
     const n = Math.ceil(toMs / bucketMs) - first
@@ -166,23 +173,23 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
         usePage(node.id)
         return true
       }
-      if (node.level === 0) addRows(segmentRows(run, node.seq, width ?? 0))
+      if (node.level === 0) addRows(segmentRows(run, node.seq, known.width ?? 0))
       return false
     })
-    const fresh = stagedRows(run, width ?? 0, low, high)
+    const fresh = stagedRows(run, known, low, high)
     if (fresh !== null) addRows(fresh)
     for (const own of out) for (let b = 0; b < n; b++) if (own.count[b]! > 0) own.mean[b] = own.mean[b]! / own.count[b]!
     return { fromMs: low, bucketMs, buckets: n, tags: out }
   }
 
   const samples = (run: RunId, tags: readonly number[], fromMs: number, toMs: number): SamplesOfTag[] => {
-    const { width } = check(run, tags)
+    const known = check(run, tags)
     const pieces: Piece[] = []
     segments.visit(run, fromMs, toMs, (node) => {
-      if (node.level === 0) pieces.push(windowed(segmentRows(run, node.seq, width ?? 0), fromMs, toMs))
+      if (node.level === 0) pieces.push(windowed(segmentRows(run, node.seq, known.width ?? 0), fromMs, toMs))
       return false
     })
-    const fresh = stagedRows(run, width ?? 0, fromMs, toMs)
+    const fresh = stagedRows(run, known, fromMs, toMs)
     if (fresh !== null) pieces.push(windowed(fresh, fromMs, toMs))
     const shared = sharedTimes(pieces)
     const rising = isRising(shared)
@@ -197,9 +204,9 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
      * Least, greatest, mean and number of the plain and uncertain readings of each tag in at most `buckets` (2 to 2,000) buckets
      * over [fromMs, toMs), whole buckets at both ends. Every raw extreme is in it. Errors: STORE_DATA, TAG_UNKNOWN, STORE_CORRUPT.
      */
-    envelope,
+    envelope: db.transaction(envelope),
     /** Every sample of each tag with fromMs ≤ time < toMs, with its code. Errors: STORE_DATA, TAG_UNKNOWN, STORE_CORRUPT. */
-    samples,
+    samples: db.transaction(samples),
     /** Earliest and latest source time of a run's rows; null before the first. */
     span(run: RunId): { fromMs: number; toMs: number } | null {
       const { first, last } = check(run, [])

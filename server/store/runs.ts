@@ -73,7 +73,7 @@ export function runStore(db: Database.Database) {
       const { skidText: _, ...kept } = need(run)
       audit.run(tMs, person, 'delete-run', reason, JSON.stringify({ ...kept, ...countRows.get(run) }))
       state.run('deleted', run)
-    }),
+    }).immediate,
     words: (run: RunId): string[] => words.all(run),
     /** Adds words from index `from` on; those already there must be the same (idempotent). Errors: STORE_DATA. */
     addWords: db.transaction((run: RunId, from: number, fresh: readonly string[]): void => {
@@ -85,6 +85,6 @@ export function runStore(db: Database.Database) {
         if (old === undefined) insertWord.run(run, from + i, word)
         else if (old !== word) throw new MonitorError('STORE_DATA', `word ${from + i} of run ${run} is '${old}', not '${word}'`)
       })
-    }),
+    }).immediate,
   }
 }

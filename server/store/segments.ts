@@ -47,7 +47,7 @@ export function segmentTable(db: Database.Database) {
   const addPage = (run: RunId, level: number, seq: number, endSeq: number, tMin: number, tMax: number, made: Page): void => {
     insertPage.run(run, level, seq, endSeq, tMin, tMax, made.cellMs, encodePage(made))
   }
-  /** Where the next level up stops, everything from there on is a root of this level. */
+  /** From where the next level up stops, every page is a root of this level. */
   const rootsOf = (run: RunId, level: number): Node[] => between.all(run, level, covered.get(run, level + 1) ?? 0, Infinity)
 
   return {
@@ -85,12 +85,30 @@ export function segmentTable(db: Database.Database) {
     },
     /** Pages of a run that overlap [fromMs, toMs), from the top; `use` says whether a page will do or its parts are wanted. Segments come as level 0. */
     visit(run: RunId, fromMs: number, toMs: number, use: (node: Node) => boolean): void {
+      // Pages of one level follow each other without a hole; a missing one must not look like a gap in the readings.
+      const inOrder = (nodes: readonly Node[], seq: number): number => {
+        let at = seq
+        for (const n of nodes) {
+          if (n.seq !== at) throw damaged(`summary page ${at} of run ${run}`)
+          at = n.endSeq
+        }
+        return at
+      }
       const down = (n: Node): void => {
         if (n.tMax < fromMs || n.tMin >= toMs || use(n) || n.level === 0) return
-        for (const child of between.all(run, n.level - 1, n.seq, n.endSeq)) down(child)
+        const children = between.all(run, n.level - 1, n.seq, n.endSeq)
+        if (inOrder(children, n.seq) !== n.endSeq) throw damaged(`summary pages of ${n.seq} to ${n.endSeq} of run ${run}`)
+        for (const child of children) down(child)
       }
-      for (let level = top.get(run) ?? -1; level >= 0; level--) for (const root of rootsOf(run, level)) down(root)
+      let seq = 0
+      for (let level = top.get(run) ?? -1; level >= 0; level--) {
+        const roots = rootsOf(run, level)
+        seq = inOrder(roots, seq)
+        for (const root of roots) down(root)
+      }
     },
+    /** Number of the first entry that is not packed yet. */
+    end: (run: RunId): number => covered.get(run, 0) ?? 0,
     page,
     order(run: RunId, seq: number): Order & { key: number } {
       const key = keyOf(run, seq)

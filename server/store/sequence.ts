@@ -40,6 +40,11 @@ interface StageRow {
   readonly body: Buffer
 }
 
+interface ActRow {
+  readonly id: number
+  readonly json: string
+}
+
 /** One stretch of the sequence, however it is stored. */
 interface Piece {
   readonly seq: number
@@ -94,9 +99,7 @@ export function sequenceStore(db: Database.Database, segments: SegmentTable) {
   const sourceState = db.prepare<[RunId], string | null>('SELECT source_state FROM head WHERE run = ?').pluck()
   const insertStage = db.prepare('INSERT INTO stage (id, count, rows, ticks, t_min, t_max, body) VALUES (?, ?, ?, ?, ?, ?, ?)')
   const insertAct = db.prepare('INSERT INTO act (id, json) VALUES (?, ?)')
-  const acts = db.prepare<[number, number], { id: number; json: string }>(
-    'SELECT id, json FROM act WHERE id >= ? AND id < ? ORDER BY id',
-  )
+  const acts = db.prepare<[number, number], ActRow>('SELECT id, json FROM act WHERE id >= ? AND id < ? ORDER BY id')
   const staged = db.prepare<[number, number], StageRow>(
     'SELECT id, count, body FROM stage WHERE id >= ? AND id < ? ORDER BY id LIMIT 256',
   )
@@ -157,20 +160,19 @@ export function sequenceStore(db: Database.Database, segments: SegmentTable) {
     const columns = columnsFor(width)
     const limit = keyOf(run, 0) + 2 ** 36
     let from = keyOf(run, 0)
-    let first = -1
+    const start = segments.end(run)
     while (!columns.full) {
       const some = staged.all(from, limit)
       if (some.length === 0) break
       for (const row of some) {
         if (columns.full) break
-        if (first < 0) first = row.id
         addStage(columns, decodeStage(row.body, width))
         from = row.id + row.count
       }
     }
-    if (first >= 0) {
-      dropStage.run(first, from)
-      segments.add(run, seqOf(first), seqOf(from), columns)
+    if (columns.rows + columns.ticks > 0) {
+      dropStage.run(keyOf(run, 0), from)
+      segments.add(run, start, seqOf(from), columns)
     }
     return { rows: columns.rows, ticks: columns.ticks }
   }
@@ -183,7 +185,7 @@ export function sequenceStore(db: Database.Database, segments: SegmentTable) {
     width: number,
   ): { stagedRows: number; stagedTicks: number } {
     const columns = columnsFor(width)
-    let start = old.next
+    let start = segments.end(run)
     let seq = old.next
     const closeIfFull = (): void => {
       if (!columns.full) return
@@ -196,7 +198,6 @@ export function sequenceStore(db: Database.Database, segments: SegmentTable) {
       const some = staged.all(from, limit)
       if (some.length === 0) break
       for (const row of some) {
-        if (columns.rows + columns.ticks === 0) start = seqOf(row.id)
         addStage(columns, decodeStage(row.body, width))
         from = row.id + row.count
         seq = seqOf(from)
@@ -286,31 +287,31 @@ export function sequenceStore(db: Database.Database, segments: SegmentTable) {
     return Math.min(end, ...keys.flatMap((key) => (key === undefined ? [] : [seqOf(key)])))
   }
 
+  /** The stretch that holds number `seq`, or only acts up to the next stretch; null at the end. One view of the store, whoever packs beside us. */
+  const stretch = db.transaction((run: RunId, seq: number): { piece: Piece | null; between: ActRow[]; end: number } | null => {
+    const { next, width } = need(run)
+    if (seq >= next) return null
+    const piece = pieceAt(run, seq, width ?? 0)
+    if (piece !== null) return { piece, between: acts.all(keyOf(run, piece.seq), keyOf(run, piece.end)), end: piece.end }
+    const end = nextPiece(run, seq, next)
+    const between = acts.all(keyOf(run, seq), keyOf(run, end))
+    if (between.length !== end - seq) throw damaged(`entries ${seq} to ${end} of run ${run}`)
+    return { piece, between, end }
+  })
+
   function* read(run: RunId, fromSeq = 0): Generator<Numbered> {
-    let seq = fromSeq
-    for (;;) {
-      const { next, width } = need(run)
-      if (seq >= next) return
-      const piece = pieceAt(run, seq, width ?? 0)
-      if (piece === null) {
-        const end = nextPiece(run, seq, next)
-        for (const { id, json } of acts.all(keyOf(run, seq), keyOf(run, end)))
-          yield { seq: seqOf(id), entry: { kind: 'act', act: JSON.parse(json) as Act } }
-        seq = end
-        continue
-      }
-      yield* unfold(piece, acts.all(keyOf(run, piece.seq), keyOf(run, piece.end)), seq)
-      seq = piece.end
+    for (let seq = fromSeq; ; ) {
+      const found = stretch(run, seq)
+      if (found === null) return
+      if (found.piece !== null) yield* unfold(found.piece, found.between, seq)
+      else for (const { id, json } of found.between) yield { seq: seqOf(id), entry: { kind: 'act', act: JSON.parse(json) as Act } }
+      seq = found.end
     }
   }
 
   return {
-    /** Durable on return: one transaction for all of them. Gives each run's next number. Errors: STORE_DATA, DISK_FULL; then nothing of it is kept. */
+    /** The caller brings the transaction and adds the words. */
     append: (batch: readonly Append[]): number[] => batch.map(appendOne),
-    /**
-     * A run's entries in the exact recorded order, from number `fromSeq` on; rows may come in other block sizes than they were
-     * appended in. The blocks are the reader's own. Entries appended while reading come too.
-     */
     read,
     /** Entries (rows, ticks and acts each count one) and rows of a run. */
     count(run: RunId): { entries: number; rows: number } {
@@ -373,7 +374,7 @@ const rowsOf = (block: RowBlock, from: number, to: number): RowBlock => ({
 })
 
 /** The entries of a piece from number `from` on, acts at their places between rows and ticks. */
-function* unfold(piece: Piece, acts: readonly { id: number; json: string }[], from: number): Generator<Numbered> {
+function* unfold(piece: Piece, acts: readonly ActRow[], from: number): Generator<Numbered> {
   const { block, tickAt, tickMs } = piece
   let seq = piece.seq
   let row = 0
@@ -400,4 +401,5 @@ function* unfold(piece: Piece, acts: readonly { id: number; json: string }[], fr
       seq += count
     }
   }
+  if (row !== block.rows || tick !== tickAt.length) throw damaged(`an act among entries ${piece.seq} to ${piece.end}`)
 }

@@ -101,6 +101,15 @@ export const act = (n: number): Act => ({
   person: 'demo operator',
 })
 
+/** A seeded noise in [0, 1). */
+export function noise(seed: number): () => number {
+  let s = seed
+  return () => {
+    s = (Math.imul(s, 1664525) + 1013904223) >>> 0
+    return s / 4294967296
+  }
+}
+
 /** Doubles of every kind, most of them on a decimal grid as loggers write them. */
 export const anyDouble: fc.Arbitrary<number> = fc.oneof(
   {

@@ -2,7 +2,7 @@ import fc from 'fast-check'
 import { expect, it } from 'vitest'
 import { ByteReader, ByteWriter } from '../../server/store/bytes.ts'
 import { readNumbers, writeNumbers } from '../../server/store/numbers.ts'
-import { anyDouble, bitsOf } from './helpers.ts'
+import { anyDouble, bitsOf, noise } from './helpers.ts'
 
 function encode(values: readonly number[]): Uint8Array {
   const out = new ByteWriter()
@@ -16,15 +16,6 @@ function decode(bytes: Uint8Array, n: number): number[] {
 }
 function same(values: readonly number[]): void {
   expect(decode(encode(values), values.length).map(bitsOf)).toEqual(values.map(bitsOf))
-}
-
-/** A fixed noise in [0, 1) without a library. */
-function noise(seed: number): () => number {
-  let s = seed
-  return () => {
-    s = (Math.imul(s, 1664525) + 1013904223) >>> 0
-    return s / 4294967296
-  }
 }
 
 it('gives back every bit of any mixture of doubles: grid values, NaN, −0, infinities, denormals', () => {

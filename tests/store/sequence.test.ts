@@ -84,7 +84,7 @@ it('reads back any sequence in the same order with the same bits, from any numbe
       check()
       close(store)
     }),
-    { numRuns: 40 },
+    { numRuns: 25 },
   )
 })
 
@@ -100,6 +100,38 @@ it('numbers blocks, ticks and acts by their place, counting rows one each', () =
   store.runs.setState(run, 'ended')
   store.upkeep()
   expect(seen()).toEqual(['0 rows', '3 tick', '4 act', '5 rows'])
+})
+
+it('is read and packed exactly beside a second connection of the same process that appends to another run', () => {
+  const folder = newFolder()
+  const live = newStore(folder)
+  const beside = newStore(folder, { joined: true, synchronous: 'NORMAL' })
+  const a = live.runs.create(aRun)
+  const b = beside.runs.create({ ...aRun, skidId: 'egret' })
+  const truth = { a: [] as string[], b: [] as string[] }
+  const add = (store: typeof live, run: typeof a, n: number, lines: string[]) => {
+    const entries: Entry[] = [
+      { kind: 'rows', block: manyRows(n, 2, lines.length) },
+      { kind: 'act', act: act(lines.length) },
+    ]
+    store.sequence.append([{ run, entries }])
+    lines.push(...linesOf(entries))
+  }
+  for (let round = 0; round < 12; round++) {
+    add(live, a, 700, truth.a)
+    add(beside, b, 5000, truth.b)
+    if (round % 4 === 1) beside.upkeep()
+    if (round % 4 === 3) live.upkeep()
+  }
+  // Packing by the one while the other is half-way through.
+  const half = beside.sequence.read(a)
+  const seen: Entry[] = [half.next().value!.entry]
+  live.runs.setState(a, 'ended')
+  live.upkeep()
+  for (const { entry } of half) seen.push(entry)
+  expect(linesOf(seen)).toEqual(truth.a)
+  expect(readLines(live, b)).toEqual(truth.b)
+  expect(live.check()).toEqual([])
 })
 
 it('keeps several runs apart in one commit, with the state of each source', () => {

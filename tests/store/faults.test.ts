@@ -1,0 +1,184 @@
+import { copyFileSync, mkdirSync, readFileSync, statSync, truncateSync, writeFileSync } from 'node:fs'
+import { join } from 'node:path'
+import { createInterface } from 'node:readline'
+import Database from 'better-sqlite3'
+import { expect, it } from 'vitest'
+import { MonitorError } from '../../server/core/errors.ts'
+import type { RunId } from '../../server/store/keys.ts'
+import { openStore, type Store } from '../../server/store/open.ts'
+import { entryAt } from './appender.ts'
+import { aRun, close, linesOf, newFolder, newStore, noise, readLines } from './helpers.ts'
+import { startAppender } from './killing.ts'
+
+function errorOf(act: () => unknown): MonitorError {
+  try {
+    act()
+  } catch (error) {
+    if (error instanceof MonitorError) return error
+    throw error
+  }
+  throw new Error('nothing was thrown')
+}
+const oneLine = (error: MonitorError) => expect(error.line()).not.toContain('\n')
+
+const entries = (run: number, from: number, to: number) => Array.from({ length: to - from }, (_, i) => entryAt(run, from + i))
+function fill(store: Store, run: RunId, count: number, batch: number): void {
+  for (let from = store.sequence.count(run).entries; from < count; from += batch) {
+    store.sequence.append([{ run, entries: entries(0, from, Math.min(count, from + batch)) }])
+  }
+}
+
+it('refuses a second process on one store while the first lives, and takes the store over when that one was killed', async () => {
+  const dir = newFolder()
+  const first = newStore(dir)
+  const run = first.runs.create(aRun)
+  expect(errorOf(() => openStore(dir)).code).toBe('STORE_LOCKED')
+  close(first)
+  const child = startAppender(newFolder(), dir, [run])
+  await new Promise<void>((resolve) => createInterface({ input: child.stdout! }).once('line', () => resolve()))
+  const refused = errorOf(() => openStore(dir))
+  expect(refused.code).toBe('STORE_LOCKED')
+  expect(refused.line()).toContain('in use by another process; stop that one, or choose another --data folder')
+  const looking = newStore(dir, { readonly: true })
+  expect(looking.sequence.count(run).entries).toBeGreaterThan(0)
+  const gone = new Promise((resolve) => child.once('close', resolve))
+  child.kill('SIGKILL')
+  await gone
+  expect(newStore(dir).sequence.count(run).entries).toBeGreaterThanOrEqual(looking.sequence.count(run).entries)
+})
+
+it('says what to do when the folder cannot be made, is a file, or holds no store to read', () => {
+  const file = join(newFolder(), 'taken')
+  writeFileSync(file, 'not a folder')
+  for (const error of [
+    errorOf(() => openStore(file)),
+    errorOf(() => openStore(join(file, 'below'))),
+    errorOf(() => openStore(newFolder(), { readonly: true })),
+  ]) {
+    expect(error.code).toBe('STORE_OPEN')
+    expect(error.hint).toContain('--data')
+    oneLine(error)
+  }
+})
+
+it('refuses to write where it only looks, and a file in its place that is no database', () => {
+  const dir = newFolder()
+  const store = newStore(dir)
+  close(store)
+  const error = errorOf(() => newStore(dir, { readonly: true }).runs.create(aRun))
+  expect(error.code).toBe('STORE_OPEN')
+  const other = newFolder()
+  writeFileSync(join(other, 'clearbore.db'), 'a text of more than a hundred bytes, which no database begins with. '.repeat(40))
+  const broken = errorOf(() => openStore(other))
+  expect(broken.code).toBe('STORE_CORRUPT')
+  oneLine(broken)
+  // The refusal let go of the lock.
+  expect(errorOf(() => openStore(other)).code).toBe('STORE_CORRUPT')
+})
+
+it('refuses a store of a newer version and leaves it untouched', () => {
+  const dir = newFolder()
+  close(newStore(dir))
+  const db = new Database(join(dir, 'clearbore.db'))
+  db.pragma('user_version = 99')
+  db.close()
+  const before = readFileSync(join(dir, 'clearbore.db'))
+  for (const options of [{}, { readonly: true }]) {
+    const error = errorOf(() => openStore(dir, options))
+    expect(error.code).toBe('STORE_SCHEMA_NEWER')
+    expect(error.line()).toContain('use the newer version of the tool')
+  }
+  expect(readFileSync(join(dir, 'clearbore.db')).equals(before)).toBe(true)
+})
+
+it('says that the disk is full, keeps what was acknowledged, and goes on from there once there is room', () => {
+  const dir = newFolder()
+  const small = newStore(dir, { maxPages: 100, synchronous: 'NORMAL' })
+  const run = small.runs.create(aRun)
+  let acknowledged = 0
+  const full = errorOf(() => {
+    for (let n = 0; n < 1000; n++) {
+      small.sequence.append([{ run, entries: entries(0, acknowledged, acknowledged + 200) }])
+      acknowledged += 200
+    }
+  })
+  expect(full.code).toBe('DISK_FULL')
+  expect(full.line()).toContain('free some space')
+  expect(acknowledged).toBeGreaterThan(1000)
+  expect(readLines(small, run)).toEqual(linesOf(entries(0, 0, acknowledged)))
+  close(small)
+  const roomy = newStore(dir)
+  expect(roomy.sequence.count(run).entries).toBe(acknowledged)
+  fill(roomy, run, acknowledged + 9000, 9000)
+  roomy.upkeep()
+  expect(readLines(roomy, run)).toEqual(linesOf(entries(0, 0, acknowledged + 9000)))
+})
+
+it('never reads other readings out of a file with a damaged page: it says so, or the page did not matter', () => {
+  const dir = newFolder()
+  const store = newStore(dir)
+  const run = store.runs.create(aRun)
+  fill(store, run, 15_000, 6000)
+  fill(store, run, 16_000, 100)
+  const truth = readLines(store, run)
+  const { fromMs, toMs } = store.readings.span(run)!
+  const ask = (s: Store) =>
+    JSON.stringify([
+      s.readings.envelope(run, [0, 2], fromMs, toMs, 500),
+      s.readings.samples(run, [1], fromMs, toMs + 1),
+      s.sequence.acts(run).length,
+    ])
+  const answer = ask(store)
+  close(store)
+  const file = join(dir, 'clearbore.db')
+  const sound = readFileSync(file)
+  const next = noise(5)
+  const outcomes = { said: 0, sound: 0 }
+  for (let round = 0; round < 30; round++) {
+    const broken = Buffer.from(sound)
+    const page = 1 + Math.floor(next() * (sound.length / 4096 - 1))
+    for (let i = 0; i < 4096; i++) broken[page * 4096 + i] = round % 2 === 0 ? 0 : Math.floor(next() * 256)
+    writeFileSync(file, broken)
+    for (const look of [(s: Store) => expect(readLines(s, run)).toEqual(truth), (s: Store) => expect(ask(s)).toBe(answer)]) {
+      try {
+        const opened = newStore(dir)
+        try {
+          look(opened)
+          outcomes.sound++
+        } finally {
+          close(opened)
+        }
+      } catch (error) {
+        if (!(error instanceof MonitorError)) throw error
+        expect(error.code).toBe('STORE_CORRUPT')
+        oneLine(error)
+        outcomes.said++
+      }
+    }
+  }
+  expect(outcomes.said).toBeGreaterThan(10)
+})
+
+it('comes back to the last whole commit when its log of writes was cut short anywhere, and goes on from there', () => {
+  const dir = newFolder()
+  const store = newStore(dir)
+  const run = store.runs.create(aRun)
+  fill(store, run, 3000, 100)
+  const wal = join(dir, 'clearbore.db-wal')
+  const size = statSync(wal).size
+  const next = noise(9)
+  for (let round = 0; round < 12; round++) {
+    const copy = newFolder()
+    mkdirSync(copy, { recursive: true })
+    for (const name of ['clearbore.db', 'clearbore.db-wal']) copyFileSync(join(dir, name), join(copy, name))
+    // The first commits of the log hold the schema and the run; without them there is no run to ask for.
+    truncateSync(join(copy, 'clearbore.db-wal'), Math.floor(size * (0.5 + next() / 2)))
+    const back = newStore(copy)
+    const { entries: kept } = back.sequence.count(run)
+    expect(kept % 100).toBe(0)
+    expect(readLines(back, run)).toEqual(linesOf(entries(0, 0, kept)))
+    fill(back, run, kept + 500, 250)
+    expect(readLines(back, run)).toEqual(linesOf(entries(0, 0, kept + 500)))
+    close(back)
+  }
+})
