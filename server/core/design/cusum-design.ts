@@ -41,11 +41,14 @@ export interface CusumDesign {
 /** Allowance limits [σ]: a deposit is a ramp and passes the small shifts first, and noise is never known well enough for less. */
 const LEAST_K = 0.1
 const MOST_K = 1
+/** Beyond this interval [σ] a chart finds nothing in useful time; a baseline that would need more cannot keep the promise. */
+const MOST_H = 60
 
 /**
  * From a promise to the chart. k is half the shift to be found, between 0.1 and 1 σ; h makes the false alarms of all charts together
  * keep the promise: per step 1/(falseAlarmHours·3600/stepS·charts), averaged over what an estimated baseline may be. Whitened steps
  * have σ√(1 − φ²) and show (1 − φ) of a lasting shift after their first.
+ * A baseline too short for the promise ends at h = 60 and a `falseAlarmHours` below the one asked for: read it.
  * Valid for |φ| < 0.98, baselines of 10 steps or more, promises up to 1e8 steps.
  * Errors: CONFIG_RANGE for anything not positive, |φ| ≥ 0.98, fewer than 10 baseline steps, a head start outside [0, 1).
  */
@@ -59,7 +62,8 @@ export function designCusum(promise: CusumPromise): CusumDesign {
     throw new MonitorError('CONFIG_RANGE', `a chart needs a correlation within ±0.98, got ${correlation}`)
   if (baselineSteps !== null && !(baselineSteps >= 10))
     throw new MonitorError('CONFIG_RANGE', `a baseline needs 10 steps or more, got ${baselineSteps}`)
-  if (!(headStart >= 0 && headStart < 1)) throw new MonitorError('CONFIG_RANGE', `a head start is a part of h, 0 to below 1, got ${headStart}`)
+  if (!(headStart >= 0 && headStart < 1))
+    throw new MonitorError('CONFIG_RANGE', `a head start is a part of h, 0 to below 1, got ${headStart}`)
 
   const phi = correlation ?? 0
   const chartSigma = sigma * Math.sqrt(1 - phi * phi)
@@ -88,9 +92,10 @@ export function designCusum(promise: CusumPromise): CusumDesign {
 function intervalFor(k: number, wanted: number, runLength: (h: number) => number): number {
   let low = 0.05
   let high = 1
-  while (siegmundRunLength(k, high, 0) < wanted && high < 60) high *= 1.25
+  while (siegmundRunLength(k, high, 0) < wanted && high < MOST_H) high = Math.min(MOST_H, 1.2 * high)
   const target = Math.log(wanted)
-  while (Math.log(runLength(high)) < target && high < 120) high *= 1.5
+  while (Math.log(runLength(high)) < target && high < MOST_H) high = Math.min(MOST_H, 1.3 * high)
+  if (Math.log(runLength(high)) < target) return high
   let lnLow = Math.log(runLength(low))
   let lnHigh = Math.log(runLength(high))
   if (lnLow >= target) return low
@@ -99,7 +104,7 @@ function intervalFor(k: number, wanted: number, runLength: (h: number) => number
     const line = low + ((high - low) * (target - lnLow)) / (lnHigh - lnLow)
     h = i % 3 === 2 ? (low + high) / 2 : line
     const ln = Math.log(runLength(h))
-    if (Math.abs(ln - target) < 1e-10 || high - low < 1e-12) break
+    if (Math.abs(ln - target) < 1e-9 || high - low < 1e-12) break
     if (ln < target) {
       low = h
       lnLow = ln

@@ -21,7 +21,7 @@ const density = (x: number): number => 0.3989422804014327 * Math.exp(-0.5 * x * 
  *
  * by Nyström's method on Gauss–Legendre nodes; two-sided by combining the two arms, head start included (Lucas and Crosier 1982).
  * shift  δ, mean of z [σ].  firstShift  mean of the first sample alone, when it differs: whitened readings show the whole of a shift
- * once, then (1 − φ) of it.  Good to 1e-6 for 0 < k ≤ 3, 0 < h ≤ 25, run lengths up to about 1e9.
+ * once, then (1 − φ) of it.  Good to 1e-6 for 0 < k ≤ 3, 0 < h ≤ 30, run lengths up to about 1e9.
  * Sources: E. S. Page, Biometrika 41 (1954) 100; A. L. Goel and S. M. Wu, Technometrics 13 (1971) 221; J. M. Lucas and R. B. Crosier,
  * Technometrics 24 (1982) 199. Checked against R spc 0.6.7 and the printed tables (fixtures/statistics).
  */
@@ -36,7 +36,7 @@ export function cusumRunLength(chart: CusumChart, shift: number, firstShift = sh
 
 /** L of one arm as a function of its start. */
 function arm({ k, h }: CusumChart, shift: number, firstShift: number): (start: number) => number {
-  const n = Math.max(40, Math.min(110, Math.ceil(9 * h)))
+  const n = Math.min(110, 24 + Math.ceil(4 * h))
   const { at, weight } = gaussLegendre(n)
   const size = n + 1
   const a = new Float64Array(size * size)
