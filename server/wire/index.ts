@@ -1,0 +1,31 @@
+/**
+ * What crosses the network. Types only; pages take them with `import type`. Times are ms since 1970 UTC, names end in their unit,
+ * null is what is not known.
+ *
+ *   GET  /api/openapi.json                                   the description of all below
+ *   GET  /api/service                                        Service
+ *   GET  /api/runs                                           RunRow[]
+ *   GET  /api/runs/:run                                      RunDetail
+ *   GET  /api/runs/:run/state?atMs                           LiveState (of a stored run as at atMs, its end by default)
+ *   GET  /api/runs/:run/report?atMs                          Report of core/report.ts (what was known at atMs)
+ *   GET  /api/runs/:run/trends?fromMs&toMs&buckets&tags      Trends
+ *   GET  /api/runs/:run/marks                                Marks
+ *   GET  /api/runs/:run/alarms                               AlarmRow[]
+ *   GET  /api/runs/:run/transitions                          TransitionRow[]
+ *   GET  /api/runs/:run/acts    POST (ActBody → ActReply)    ActRow[]
+ *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
+ *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|record.json    downloads
+ *   POST /api/uploads (UploadBody → Upload)                  begins an upload: the skid file and the events as text
+ *   PUT  /api/uploads/:upload/logs/:name (the file's bytes as application/octet-stream → Upload)   one for each log file
+ *   POST /api/uploads/:upload/import (→ RunRow, state importing)   what was uploaded becomes a run; it appears in GET /api/runs
+ *   WS   /ws                                                 ClientMessage, ServerMessage
+ */
+export type * from './act.ts'
+export type * from './alarm.ts'
+export type * from './live.ts'
+export type * from './run.ts'
+export type * from './service.ts'
+export type * from './skid.ts'
+export type * from './socket.ts'
+export type * from './trend.ts'
+export type * from './upload.ts'
