@@ -3,5 +3,5 @@
 import { ensureBuilt, ensureInstalled } from './prepare.js'
 
 ensureInstalled()
-await ensureBuilt()
+await ensureBuilt({ pages: process.argv[2] === 'serve' })
 await import('../dist/server/main.js')

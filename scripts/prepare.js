@@ -43,6 +43,7 @@ export function ensureInstalled() {
 /** Newest change in a folder, ms. */
 function newest(dir) {
   let top = 0
+  if (!existsSync(dir)) return top
   for (const entry of readdirSync(dir, { withFileTypes: true })) {
     const path = join(dir, entry.name)
     top = Math.max(top, entry.isDirectory() ? newest(path) : statSync(path).mtimeMs)
@@ -53,7 +54,7 @@ function newest(dir) {
 const age = (file) => (existsSync(file) ? statSync(file).mtimeMs : 0)
 
 /** Bundles the server, and the pages where there are any, when a source is newer than what was built. */
-export async function ensureBuilt({ force = false } = {}) {
+export async function ensureBuilt({ force = false, pages = true } = {}) {
   const main = at('dist', 'server', 'main.js')
   const manifest = Math.max(age(at('package-lock.json')), age(at('scripts', 'prepare.js')))
   if (force || Math.max(newest(at('server')), manifest) > age(main)) {
@@ -72,6 +73,7 @@ export async function ensureBuilt({ force = false } = {}) {
   }
   const page = at('dist', 'web', 'index.html')
   if (
+    pages &&
     existsSync(at('web', 'index.html')) &&
     (force || Math.max(newest(at('web')), newest(at('server', 'wire')), manifest) > age(page))
   ) {

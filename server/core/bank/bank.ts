@@ -9,7 +9,7 @@ import {
   giveBirth,
   isKept,
   type Kind,
-  likelihood,
+  likelihood as likelihoodAt,
   loadColumn,
   observe,
   saveColumn,
@@ -85,7 +85,8 @@ interface SegmentTrack {
   /** Left out of the filter: a deposit stands here; its clean parameters are those in `clean`. */
   fouled: boolean
   clean: { c: number; a: number; k: number } | null
-  noiseVar: number
+  /** White noise of one step's mean ΔP, Pa²: instruments are noisy in bar, whatever the ΔP. */
+  noisePa2: number
   noiseSteps: number
   lastResidual: number | null
   lastLnVisc: number | null
@@ -142,7 +143,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     started: false,
     fouled: false,
     clean: null,
-    noiseVar: 0.003 ** 2,
+    noisePa2: 0,
     noiseSteps: 0,
     lastResidual: null,
     lastLnVisc: null,
@@ -171,6 +172,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   }
   let columns: Column[] = saved ? saved.columns.map(loadColumn) : []
 
+  const likelihood = (c: Column): number => likelihoodAt(c, s.steps)
   const watched = (seg: number): boolean => s.tracks[seg]!.started && !s.tracks[seg]!.fouled
   const touches = (e: Explanation): number[] =>
     e.kind === 'tap-ramp' || e.kind === 'tap-step'
@@ -213,19 +215,21 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     t.lastLnFlow = o.lnFlow
     if (dFlow > 0.015 || dVisc > 0.01) s.sinceMove = 0
     return (
-      t.noiseVar + (d.thermalLag * t.viscMove) ** 2 + (d.flowMove * dFlow) ** 2 + (d.profileSpread * o.k0 * o.profileSpreadK) ** 2
+      whiteVar(t, o.dpPa) +
+      (d.thermalLag * t.viscMove) ** 2 +
+      (d.flowMove * dFlow) ** 2 +
+      (d.profileSpread * o.k0 * o.profileSpreadK) ** 2
     )
   }
 
-  /** White noise from first differences of y less flow and viscosity: running mean over 30 steps, clipped at six times. */
+  /** White noise from first differences of y less flow and viscosity: running mean over 30 steps, clipped at six times. In Pa. */
   function learnNoise(seg: number, o: SegmentObservation): void {
     const t = s.tracks[seg]!
     const residual = o.y - f.x[map.flowExp(seg)]! * o.lnFlow - f.x[map.viscExp(seg)]! * o.lnVisc
     if (t.lastResidual !== null && s.sinceMove > 2) {
-      const v = (residual - t.lastResidual) ** 2 / 2
+      const v = ((residual - t.lastResidual) ** 2 / 2) * o.dpPa ** 2
       t.noiseSteps = Math.min(t.noiseSteps + 1, 30)
-      t.noiseVar += (Math.min(v, 36 * Math.max(t.noiseVar, 1e-7)) - t.noiseVar) / Math.max(t.noiseSteps, 3)
-      t.noiseVar = Math.max(t.noiseVar, 1e-7)
+      t.noisePa2 += (Math.min(v, 36 * t.noisePa2) - t.noisePa2) / Math.max(t.noiseSteps, 3)
     }
     t.lastResidual = residual
   }
@@ -235,7 +239,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     if (!t.started) {
       filter.startSegment(f, seg, o, false)
       t.started = true
-      t.noiseVar = Math.max(o.stepVar, 1e-6)
+      t.noisePa2 = Math.max(o.stepVar, 1e-6) * o.dpPa ** 2
     }
     learnNoise(seg, o)
     const row = rowOf(layout, map, seg, o, s.tapStartPa)
@@ -430,7 +434,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       )
       if (columns.length > 0) decayColumns(1 + gapSteps)
       columns = columns.filter((c) => isKept(s.steps - c.born, c.born))
-      if (armed && s.steps % births.every === 0) giveBirth(columns, list, s.steps, map, isWatched)
+      if (armed && s.steps % births.every === 0) giveBirth(layout, columns, list, s.steps, map, isWatched)
       const moved = s.sinceMove
       observations.forEach((o, seg) => {
         const t = s.tracks[seg]!
@@ -440,6 +444,11 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       })
       if (s.sinceMove < moved) s.moves = [...s.moves.filter((m) => m > s.steps - births.twelfth), s.steps]
       const events: BankEvent[] = []
+      ;(globalThis as any).DBG?.(
+        s.steps,
+        columns.map((c) => ({ k: c.kind, of: c.of, age: s.steps - c.born, L: likelihood(c), A: sizeOf(c) })),
+        s.tracks,
+      )
       if (armed) {
         for (let round = 0; round < 4; round++) {
           const e = judgeDeposit() ?? judgeOthers()
@@ -449,7 +458,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       }
       const segments = observations.map((o, seg): BankSegment => {
         const t = s.tracks[seg]!
-        const sd = { whiteSd: Math.sqrt(t.noiseVar), wanderSd: Math.sqrt(wanderVar(t.lastDpPa)) }
+        const sd = { whiteSd: Math.sqrt(whiteVar(t, t.lastDpPa)), wanderSd: Math.sqrt(wanderVar(t.lastDpPa)) }
         if (o === null || !t.started) return { lnRatio: null, ...sd }
         const shift = t.cRef === null ? 0 : (t.clean === null ? f.x[map.level(seg)]! : t.clean.c) - t.cRef
         return { lnRatio: o.y - meanWithoutWander(seg, o) + shift, ...sd }
@@ -507,7 +516,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     isFouled: (seg: number): boolean => s.tracks[seg]!.fouled,
     seen: (seg: number): number => s.tracks[seg]!.seen,
     noise: (seg: number): { whiteSd: number; wanderSd: number } => ({
-      whiteSd: Math.sqrt(s.tracks[seg]!.noiseVar),
+      whiteSd: Math.sqrt(whiteVar(s.tracks[seg]!, s.tracks[seg]!.lastDpPa)),
       wanderSd: Math.sqrt(wanderVar(s.tracks[seg]!.lastDpPa)),
     }),
 
@@ -532,4 +541,8 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     }
   }
 }
+/** White noise of ln ΔP at a ΔP; never better than 0.03 %. */
+const whiteVar = (t: { readonly noisePa2: number }, dpPa: number | null): number =>
+  Math.max(1e-7, dpPa === null ? 1e-5 : t.noisePa2 / dpPa ** 2)
+
 export type Bank = ReturnType<typeof createBank>

@@ -43,7 +43,8 @@ export function createFilter(layout: Layout, map: StateMap) {
       for (const i of [c, a, k, w]) for (let j = 0; j < n; j++) f.p[i * n + j] = f.p[j * n + i] = 0
       const seg = layout.segments[s]!.spec
       const slope = seg.temperatures.length === 1 && seg.kind === 'precooler' ? d.viscositySlopeOneThermocouple : d.viscositySlope
-      const zero = (zeroChecked ? d.zeroOffsetCheckedPa : d.zeroOffsetPa) / o.dpPa
+      // On a ΔP of the size of its own zero error the exponents stay near the hydraulics: noise must not teach them.
+      const zero = Math.min(d.zeroShareAtMost, (zeroChecked ? d.zeroOffsetCheckedPa : d.zeroOffsetPa) / o.dpPa)
       const fit = d.coilAndFittings
       f.x[c] = o.y
       f.x[a] = f.x[k] = f.x[w] = 0

@@ -20,6 +20,8 @@ export interface Explanation {
 export interface Column {
   readonly kind: Kind
   readonly of: number
+  /** Sd of the size that is believable, in the column's own unit (of the whole shift, for a ramp). */
+  readonly scale: number
   /** Step number of its birth. */
   readonly born: number
   readonly response: Float64Array
@@ -27,8 +29,33 @@ export interface Column {
   j: number
 }
 
-export const likelihood = (c: Column): number => (c.j > 0 ? (c.d * c.d) / (2 * c.j) : 0)
+/**
+ * Log likelihood ratio, the size held to what is believable: L = d²/(2(J + 1/s²)), s the sd of sizes of this kind. A tap that would have to be
+ * off by more than instruments drift, or a liquid that doubled its viscosity, explains nothing however well its shape fits.
+ */
+export function likelihood(c: Column, now: number): number {
+  if (c.j <= 0) return 0
+  const s = c.kind === 'tap-ramp' ? c.scale / Math.max(1, now - c.born) : c.scale
+  return (c.d * c.d) / (2 * (c.j + 1 / (s * s)))
+}
 export const sizeOf = (c: Column): number => (c.j > 0 ? c.d / c.j : 0)
+
+/** Believable sizes: share of a tap's span, ln viscosity of a stream, lone step of ln ΔP. A deposit may grow at any rate. Starting values. */
+const believable = { tapShare: 0.005, assumedSpanPa: 2.5e6, stream: 0.08, step: 0.1 }
+
+function scaleOf(layout: Layout, e: Explanation): number {
+  switch (e.kind) {
+    case 'deposit':
+      return Number.MAX_VALUE
+    case 'step':
+    case 'settling':
+      return believable.step
+    case 'stream':
+      return believable.stream
+    default:
+      return (believable.tapShare * (layout.taps[e.of]!.spanPa ?? believable.assumedSpanPa)) / 1000
+  }
+}
 
 /** Steps between births; how long births live, by thinning: all, every 4th, every 12th, none. */
 export const births = { every: 2, all: 30, fourth: 120, twelfth: 400 }
@@ -85,6 +112,7 @@ export function isKept(age: number, born: number): boolean {
 
 /** Gives every explanation that can touch a watched segment a new column. */
 export function giveBirth(
+  layout: Layout,
   columns: Column[],
   list: readonly Explanation[],
   now: number,
@@ -92,7 +120,16 @@ export function giveBirth(
   isWatched: (e: Explanation) => boolean,
 ): void {
   for (const e of list)
-    if (isWatched(e)) columns.push({ kind: e.kind, of: e.of, born: now, response: new Float64Array(map.size), d: 0, j: 0 })
+    if (isWatched(e))
+      columns.push({
+        kind: e.kind,
+        of: e.of,
+        scale: scaleOf(layout, e),
+        born: now,
+        response: new Float64Array(map.size),
+        d: 0,
+        j: 0,
+      })
 }
 
 /** One measurement of segment `s` seen by every column. */
@@ -124,6 +161,7 @@ export function observe(
 export interface ColumnState {
   kind: Kind
   of: number
+  scale: number
   born: number
   response: number[]
   d: number
@@ -132,6 +170,7 @@ export interface ColumnState {
 export const saveColumn = (c: Column): ColumnState => ({
   kind: c.kind,
   of: c.of,
+  scale: c.scale,
   born: c.born,
   response: Array.from(c.response),
   d: c.d,

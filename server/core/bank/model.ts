@@ -10,6 +10,7 @@ export const disturbances = {
   coilAndFittings: 0.05,
   zeroOffsetPa: 2400,
   zeroOffsetCheckedPa: 500,
+  zeroShareAtMost: 0.3,
   viscositySlope: 0.05,
   viscositySlopeOneThermocouple: 0.09,
   wander: 0.0022,

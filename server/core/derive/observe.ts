@@ -37,6 +37,8 @@ const fittingShare = { channel: 0.05, other: 0.12 }
 const assumedCoilM = 0.1
 /** Stand-ins where the skid names no fluid or has no thermometer: only changes count, so any constant will do. */
 const assumed = { viscPaS: 1e-3, rhoKgM3: 1000, tempK: 293.15, massFlowKgS: 1e-3 }
+/** Sd of its own noise that a step's mean ΔP must reach to be a reading of resistance. */
+const significant = 1.5
 /** A ΔP at rest beyond this is no zero error, Pa. */
 const restAtMostPa = 30_000
 
@@ -185,6 +187,8 @@ export function createObserver(layout: Layout, saved?: ObserveState) {
         if (raw === null) return bare
         const head = rho * G * (seg.spec.channel?.heightM ?? 0)
         const dpPa = raw - head - s.zeroPa[i]!
+        // A ΔP that noise can bring about says nothing of a resistance.
+        if (!(dpPa > significant * Math.sqrt(step.dpVarPa2[i] ?? 0))) return { ...bare, dpPa }
         if (production && s.reference[i] === null && dpPa > 0) {
           s.reference[i] = makeReference(i, massFlow, rho, visc)
           s.profileK[i] = temp!.profile.map((r) => r ?? 0)
