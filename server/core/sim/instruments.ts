@@ -153,8 +153,8 @@ export function instrumentOf(
   }
 }
 
-/** 4 to 20 mA over the range, held between 3.8 and 20.5 mA as NE 43 has it. */
+/** 4 to 20 mA over the range, held between 3.8 and 20.5 mA as NE 43 has it, in steps of 1 uA. */
 const loopCurrent = (value: number, tag: TagSpec): number => {
   const [low, high] = tag.range ?? [0, 1]
-  return Math.min(20.5, Math.max(3.8, 4 + (16 * (value - low)) / (high - low)))
+  return Math.round(1000 * Math.min(20.5, Math.max(3.8, 4 + (16 * (value - low)) / (high - low)))) / 1000
 }
