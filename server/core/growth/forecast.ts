@@ -1,6 +1,16 @@
 import { normalQuantile } from '../stats/normal.ts'
 import { filmOfRatio, growthShape, ratioOfFilm } from './law.ts'
-import { type Bin, binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
+import {
+  type Bin,
+  binPoints,
+  evenEdges,
+  findSloughs,
+  finitePoints,
+  type GrowthPoint,
+  type Interval,
+  type Noise,
+  withoutSpikes,
+} from './points.ts'
 import { type GrowthSettings, growthDefaults } from './settings.ts'
 import { type WanderStep, wanderSteps } from './wander.ts'
 
@@ -52,7 +62,11 @@ export function forecastLimit(
   nowMs: number,
   settings: GrowthSettings = growthDefaults,
 ): LimitForecast | null {
-  const seen = finitePoints(points).filter((p) => p.tMs <= nowMs)
+  const seen = withoutSpikes(
+    finitePoints(points).filter((p) => p.tMs <= nowMs),
+    noise,
+    settings.spikeSigmas,
+  )
   const stepMs = noise.stepS * 1000
   const grownFrom = Math.min(onset.atMs, nowMs)
   const grown = seen.filter((p) => p.tMs >= grownFrom)

@@ -1,5 +1,15 @@
 import { normalCdf } from '../stats/normal.ts'
-import { type Bin, binPoints, evenEdges, findSloughs, finitePoints, type GrowthPoint, type Interval, type Noise } from './points.ts'
+import {
+  type Bin,
+  binPoints,
+  evenEdges,
+  findSloughs,
+  finitePoints,
+  type GrowthPoint,
+  type Interval,
+  type Noise,
+  withoutSpikes,
+} from './points.ts'
 import { type GrowthSettings, growthDefaults } from './settings.ts'
 import { type WanderStep, wanderSteps, whiten, whitener } from './wander.ts'
 
@@ -26,7 +36,7 @@ interface Pass {
  *   ln r = c + A·g(t − τ) for t > τ, c before;  g from the thickness law at constant deposition: −4 ln(1 − x s/4), unit at the end
  *
  * with wander and white noise, c and A > 0 integrated out, τ on a grid, the likelihood to the power `onsetPower`. A first pass over
- * everything finds the region, a second works there with finer means. After a slough-off the later points are not used.
+ * everything finds the region, a second works there with finer means. Lone spikes, and all after a slough-off, are not used.
  * Works for runs of minutes as for weeks: all lengths are taken from the points. Source of the method: two-phase regression with
  * integrated nuisance parameters (common practice); the power as in tempered likelihoods, set for coverage.
  * points  at the middles of their steps, rising in time, clean part included.  searchFromMs  the earliest onset possible.
@@ -38,7 +48,7 @@ export function fitOnset(
   searchFromMs: number,
   settings: GrowthSettings = growthDefaults,
 ): Onset | null {
-  let used = finitePoints(points)
+  let used = withoutSpikes(finitePoints(points), noise, settings.spikeSigmas)
   if (used.length < 4) return null
   const fall = findSloughs(used, noise, settings.sloughSigmas, settings.sloughLeast)[0]
   if (fall !== undefined) {

@@ -1,3 +1,5 @@
+import { median } from '../stats/robust.ts'
+
 /** One detector step of a segment (typically a 30-s mean), stamped at its middle: lnRatio = ln of resistance over clean [-]. */
 export interface GrowthPoint {
   readonly tMs: number
@@ -64,7 +66,23 @@ export function evenEdges(aMs: number, bMs: number, n: number): number[] {
   return edges
 }
 
-const median5 = (v: readonly number[]): number => [...v].sort((a, b) => a - b)[v.length >> 1]!
+/**
+ * The points without lone spikes (a gas slug, a flow step caught half way): those further from the median of themselves and up to
+ * three neighbours on each side than `sigmas` times the noise of a step. The first and last three stay: growth shows there first.
+ */
+export function withoutSpikes(points: readonly GrowthPoint[], noise: Noise, sigmas: number): GrowthPoint[] {
+  const around = 3
+  const limit = sigmas * Math.hypot(noise.whiteSd, wanderOver(noise, around * noise.stepS))
+  const values = points.map((p) => p.lnRatio)
+  return points.filter((p, i) => {
+    if (i < around || i >= points.length - around) return true
+    return Math.abs(p.lnRatio - median(values.slice(i - around, i + around + 1))) <= limit
+  })
+}
+
+/** sd of what the wander changes by in a time [-]. */
+const wanderOver = (noise: Noise, seconds: number): number =>
+  noise.wanderSd * Math.sqrt(-2 * Math.expm1(-seconds / Math.max(noise.wanderTauS, 1e-9)))
 
 /**
  * Times at which a deposit sloughed off: a lasting sudden fall of lnRatio, the medians of the few points before and after it
@@ -78,13 +96,11 @@ export function findSloughs(
 ): { tMs: number; fall: number }[] {
   const half = 3
   const found: { tMs: number; fall: number }[] = []
-  const gapS = (half + 1) * noise.stepS
-  const wander = noise.wanderSd * Math.sqrt(2 * (1 - Math.exp(-gapS / Math.max(noise.wanderTauS, 1e-9))))
-  const limit = Math.max(leastFall, sigmas * Math.hypot(wander, noise.whiteSd * 1.2))
+  const limit = Math.max(leastFall, sigmas * Math.hypot(wanderOver(noise, (half + 1) * noise.stepS), noise.whiteSd * 1.2))
   let best: { tMs: number; fall: number } | null = null
   for (let i = half; i + half <= points.length; i++) {
-    const before = median5(points.slice(i - half, i).map((p) => p.lnRatio))
-    const after = median5(points.slice(i, i + half).map((p) => p.lnRatio))
+    const before = median(points.slice(i - half, i).map((p) => p.lnRatio))
+    const after = median(points.slice(i, i + half).map((p) => p.lnRatio))
     const fall = before - after
     if (fall > limit) {
       if (best === null || fall > best.fall) best = { tMs: points[i]!.tMs, fall }

@@ -30,6 +30,8 @@ export interface GrowthSettings {
   readonly leastPart: number
   /** no forecast when the median lies further ahead than so many times the growth seen */
   readonly farthest: number
+  /** a lone point counts as a spike beyond so many sd */
+  readonly spikeSigmas: number
   /** a fall counts as slough-off beyond so many sd, and never below this ln ratio */
   readonly sloughSigmas: number
   readonly sloughLeast: number
@@ -60,6 +62,7 @@ export const growthDefaults: GrowthSettings = {
   gridReach: 3.5,
   leastPart: 0.02,
   farthest: 20,
+  spikeSigmas: 6,
   sloughSigmas: 5,
   sloughLeast: 0.02,
 }
