@@ -99,3 +99,6 @@ export interface TagState {
 export interface AdviceState extends AdviceReport {
   readonly atMs: number
 }
+
+/** A LiveState without the large parts that are as they were: `{ ...last, ...update }` is the state now. */
+export type LiveUpdate = Omit<LiveState, 'alarms' | 'advice'> & Partial<Pick<LiveState, 'alarms' | 'advice'>>

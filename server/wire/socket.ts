@@ -1,6 +1,6 @@
 import type { ActRow } from './act.ts'
 import type { AlarmRow } from './alarm.ts'
-import type { LiveState } from './live.ts'
+import type { LiveState, LiveUpdate } from './live.ts'
 import type { RunRow } from './run.ts'
 import type { Problem, RunClock } from './service.ts'
 import type { ReadingFrame, StepPoint } from './trend.ts'
@@ -14,7 +14,7 @@ export type ClientMessage =
   | { readonly type: 'subscribe'; readonly run: number; readonly topics: readonly Topic[]; readonly sinceMs: number | null }
   | { readonly type: 'unsubscribe'; readonly run: number }
 
-/** state: the LiveState whole. steps, readings: new points of trends. alarms: occurrences that changed. acts: what people did. */
+/** state: the LiveState, without what has not changed (merge it over the last one). steps, readings: new points of trends. alarms: occurrences that changed. acts: what people did. */
 export type Topic = 'state' | 'steps' | 'readings' | 'alarms' | 'acts'
 
 export type ServerMessage =
@@ -45,7 +45,7 @@ export interface Delta {
   readonly type: 'delta'
   readonly run: number
   readonly seq: number
-  readonly state?: LiveState
+  readonly state?: LiveUpdate
   readonly steps?: readonly StepPoint[]
   readonly readings?: ReadingFrame
   readonly alarms?: readonly AlarmRow[]
