@@ -81,6 +81,10 @@ export const flushPlanCommand: Command = {
   summary: 'the computed flush of a segment, step by step',
   help,
   async run(args, io) {
+    if (args.some((a) => a === '--help' || a === '-h')) {
+      await io.out(help)
+      return 0
+    }
     const o = options(args)
     const skid = await loadSkidFile(o.skid)
     const ids = skid.segments.map((s) => s.id)

@@ -31,6 +31,14 @@ function block(f: SegmentFigures): string {
     line('uncertainty of its taps', uncertainty),
     line('U (inner area)', u),
     ...(heat?.cooledToK == null ? [] : [line('cools a 20 °C feed to', celsius(heat.cooledToK))]),
+    ...(heat?.uNowWM2K == null
+      ? []
+      : [
+          line(
+            'U from the readings',
+            `${show(heat.uNowWM2K, 'W/(m² K)')}; fouling resistance ${show(heat.foulingM2KW, 'm² K/W', 2)}`,
+          ),
+        ]),
     ...(heat?.adiabaticRiseK == null
       ? []
       : [

@@ -1,9 +1,9 @@
 import type { FluidState } from '../fluids/fluid.ts'
-import { exchanger } from '../thermal/exchanger.ts'
+import { exchanger, uFromReadings } from '../thermal/exchanger.ts'
 import { filmCoefficient, nusselt } from '../thermal/nusselt.ts'
 import { hotSpot, plugFlowProfile } from '../thermal/profile.ts'
 import { adiabaticRiseOfFeeds, mtsr, mtsrStoppedFlow } from '../thermal/reaction-heat.ts'
-import { type Overall, overallU } from '../thermal/wall.ts'
+import { foulingResistance, type Overall, overallU } from '../thermal/wall.ts'
 import type { SegmentOperation } from './operation.ts'
 
 export interface HeatFigures {
@@ -20,6 +20,9 @@ export interface HeatFigures {
   readonly hotSpotK: number | null
   /** Outlet of a precooler fed at 20 °C, coolant at the working temperature or as given, K. */
   readonly cooledToK: number | null
+  /** From the readings given, of a segment without reaction; null where they do not carry it. Fouling resistance against the clean U above. */
+  readonly uNowWM2K: number | null
+  readonly foulingM2KW: number | null
   readonly notes: readonly string[]
   readonly missing: readonly string[]
 }
@@ -84,6 +87,26 @@ function coefficients(op: SegmentOperation, state: FluidState, re: number): Coef
   }
 }
 
+/** Standard uncertainty of a temperature difference, K: a pair of class 1 thermocouples (common practice). */
+const differenceK = 1
+
+/** U of a segment without reaction from its first and last temperature; a precooler with one takes the feed's 20 °C as its inlet. */
+function liveU(op: SegmentOperation, state: FluidState, wettedPerM: number): number | null {
+  const { readK, coolantK, channel, massFlowKgS, spec } = op
+  const outK = readK.at(-1)
+  const inK = readK.length > 1 ? readK[0] : spec.kind === 'precooler' ? op.streams[0]?.tempK : undefined
+  if (
+    spec.reaction !== null ||
+    coolantK === null ||
+    channel === null ||
+    massFlowKgS === null ||
+    inK === undefined ||
+    outK === undefined
+  )
+    return null
+  return uFromReadings(massFlowKgS, state.cpJKgK, wettedPerM * channel.lengthM, inK, outK, coolantK, differenceK)?.uWM2K ?? null
+}
+
 /** Conversion that counts as all of it, for the rate of the assumed first-order reaction. */
 const nearlyAll = 0.99
 
@@ -132,6 +155,7 @@ export function heatFigures(op: SegmentOperation, state: FluidState, re: number)
   }
   if (reaction !== null && rise === null)
     missing.push(`adiabatic rise: needs flow and liquid of every feed, and of ${reaction.limitingStream}`)
+  const now = liveU(op, state, wettedPerM)
   const precool = op.spec.kind === 'precooler' && c.u !== null && channel !== null && massFlowKgS !== null && massFlowKgS > 0
   const cooledToK =
     !precool || c.u === null || channel === null || massFlowKgS === null
@@ -154,6 +178,8 @@ export function heatFigures(op: SegmentOperation, state: FluidState, re: number)
     mtsrK,
     hotSpotK,
     cooledToK,
+    uNowWM2K: now,
+    foulingM2KW: now === null || c.u === null ? null : foulingResistance(now, c.u.uInnerWM2K),
     notes: c.notes,
     missing,
   }

@@ -3,7 +3,10 @@ import { type ChannelGeometry, channelOf, channelVolumeM3 } from '../hydraulics/
 import type { SegmentSpec, Skid, StreamSpec, TagSpec } from '../skid.ts'
 import { kFromC, toSi, valueUnit } from '../units.ts'
 
-/** What is known of the present or intended operation; keys are stream ids and temperature tags, values in the unit of the tag. */
+/**
+ * What is known of the present or intended operation; keys are stream ids and temperature tags, values in the unit of the tag. A flow of 0 (pump
+ * stopped) says nothing of the normal flow and counts as not given.
+ */
 export interface Given {
   readonly flows?: Readonly<Record<string, number | null>>
   readonly temperatures?: Readonly<Record<string, number | null>>
@@ -31,6 +34,8 @@ export interface SegmentOperation {
   readonly tempK: number
   readonly coldestK: number
   readonly coolantK: number | null
+  /** Temperatures read along the flow, inlet first, K; empty where none or not all are given. */
+  readonly readK: readonly number[]
   readonly channel: ChannelGeometry | null
   readonly volumeM3: number | null
 }
@@ -59,7 +64,7 @@ function streamFlows(skid: Skid, given: Given, assumptions: string[]): StreamFlo
   }
   for (const s of skid.streams) {
     const value = given.flows?.[s.id]
-    if (value !== undefined && value !== null) volumes.set(s.id, asVolume(s, value))
+    if (value !== undefined && value !== null && value > 0) volumes.set(s.id, asVolume(s, value))
   }
   const half = (s: StreamSpec): number | null => {
     const range = skid.tags.find((t) => t.tag === s.flowTag)?.range
@@ -108,7 +113,7 @@ function temperatureOf(
   spec: SegmentSpec,
   given: Given,
   assumptions: string[],
-): { readonly meanK: number; readonly coldestK: number } {
+): { readonly meanK: number; readonly coldestK: number; readonly readK: readonly number[] } {
   const read = spec.temperatures.flatMap((name) => {
     const value = given.temperatures?.[name]
     const tag = skid.tags.find((t) => t.tag === name)
@@ -119,7 +124,11 @@ function temperatureOf(
       assumptions.push(
         `${spec.id}: ${spec.temperatures.length - read.length} of ${spec.temperatures.length} temperatures not given`,
       )
-    return { meanK: read.reduce((a, b) => a + b, 0) / read.length, coldestK: Math.min(...read) }
+    return {
+      meanK: read.reduce((a, b) => a + b, 0) / read.length,
+      coldestK: Math.min(...read),
+      readK: read.length === spec.temperatures.length ? read : [],
+    }
   }
   const workingC = workingFromLimits(skid, spec)
   const tempC = workingC ?? 20
@@ -128,7 +137,7 @@ function temperatureOf(
       ? `${spec.id}: no temperature given, ${tempC} °C assumed`
       : `${spec.id}: no temperature given, ${tempC.toFixed(0)} °C assumed (${alarmMarginK} K below the high limit on its coolant)`,
   )
-  return { meanK: kFromC(tempC), coldestK: kFromC(tempC) }
+  return { meanK: kFromC(tempC), coldestK: kFromC(tempC), readK: [] }
 }
 
 /** A high temperature limit stands about this far above the working temperature (common practice for cooled flow reactors). */
@@ -157,7 +166,7 @@ export function operationOf(skid: Skid, given: Given = {}): Operation {
         ? mixByMass(parts.map((p) => ({ fluid: p.fluid, massFraction: p.mass / total })))
         : null
     const channel = spec.channel === null ? null : channelOf(spec.channel)
-    const { meanK, coldestK } = temperatureOf(skid, spec, given, assumptions)
+    const { meanK, coldestK, readK } = temperatureOf(skid, spec, given, assumptions)
     const coolant = spec.coolantTemperature === null ? undefined : given.temperatures?.[spec.coolantTemperature]
     const coolantTag = skid.tags.find((t) => t.tag === spec.coolantTemperature)
     const coolantK =
@@ -172,6 +181,7 @@ export function operationOf(skid: Skid, given: Given = {}): Operation {
       tempK: meanK,
       coldestK: coolantK === null ? coldestK : Math.min(coldestK, coolantK),
       coolantK,
+      readK,
       channel,
       volumeM3,
     }

@@ -8,7 +8,7 @@ import { paFromBar } from '../units.ts'
 import { dpUncertainty } from './dp-uncertainty.ts'
 import { type HeatFigures, heatFigures } from './heat-figures.ts'
 import { type Given, type Operation, operationOf, type SegmentOperation } from './operation.ts'
-import { isOrganolithium } from './organolithium.ts'
+import { carriesOrganolithium } from './organolithium.ts'
 
 /** What the tool derives for one segment at its working point, SI; null where the file does not carry it. */
 export interface SegmentFigures {
@@ -39,7 +39,7 @@ export interface SkidFigures {
  * meet. The organolithium's own water has reacted in its drum. None in a quench, where lithium hydroxide stays dissolved.
  */
 function wettingStreams(op: SegmentOperation, all: Operation): SegmentOperation['streams'] {
-  const active = all.streams.filter((s) => isOrganolithium(s.spec.reagent?.name ?? '')).map((s) => s.id)
+  const active = all.streams.filter((s) => carriesOrganolithium(s.spec)).map((s) => s.id)
   const meets = (ids: readonly string[]) => (active.length > 0 ? ids.some((id) => active.includes(id)) : ids.length > 1)
   if (op.spec.kind === 'quench' || !meets(op.spec.streams)) return []
   const earlier = all.segments.slice(0, all.segments.indexOf(op)).filter((s) => meets(s.spec.streams))
@@ -142,7 +142,7 @@ export function skidFigures(skid: Skid, given: Given = {}): SkidFigures {
       }
     }
   })
-  const named = skid.streams.some((s) => isOrganolithium(s.reagent?.name ?? ''))
+  const named = skid.streams.some((s) => carriesOrganolithium(s))
   const assumptions = named
     ? operation.assumptions
     : [...operation.assumptions, 'no feed is named as an organolithium: the water of every feed counted where feeds first meet']

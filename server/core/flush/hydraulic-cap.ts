@@ -43,7 +43,7 @@ export function cappedFlow(path: FlushPath, fluid: Fluid, tempOf: (leg: Leg) => 
       flowM3S: null,
       limitedBy: 'not computed',
       legs: [],
-      missing: ['flush flow: needs the flow (or the range of the flow tag) and the liquid of every feed on the way'],
+      missing: ['flush flow: needs the flow (or the range of the flow tag) and the liquid of every feed on the path'],
     }
   let computable = true
   for (const leg of path.legs) {

@@ -2,7 +2,7 @@ import { MonitorError } from '../errors.ts'
 import { type Operation, operationOf, type SegmentOperation } from '../figures/operation.ts'
 import type { FlushInput } from './input.ts'
 
-/** A segment on the way of the flush liquid. */
+/** A segment on the path of the flush liquid. */
 export interface Leg {
   readonly id: string
   readonly op: SegmentOperation
@@ -14,7 +14,7 @@ export interface Leg {
 
 export interface FlushPath {
   readonly legs: readonly Leg[]
-  /** Legs one after another on the way of each feed. */
+  /** Legs one after another that each feed passes. */
   readonly chains: readonly (readonly Leg[])[]
   /** Normal flow of all feeds of the path together, m³/s. */
   readonly normalM3S: number | null
@@ -23,9 +23,16 @@ export interface FlushPath {
   readonly hasQuench: boolean
 }
 
+/** The path as it would be without a deposit. */
+export const cleanPath = (path: FlushPath): FlushPath => ({
+  ...path,
+  legs: path.legs.map((l) => ({ ...l, ratio: 1 })),
+  chains: path.chains.map((c) => c.map((l) => ({ ...l, ratio: 1 }))),
+})
+
 /**
- * The way of the flush liquid: the asked segments, what follows them up to a quench (aqueous, isolated instead), and every leg that feeds these.
- * A segment follows another if it comes later and carries all its streams; a leg feeds if all its streams arrive on the way.
+ * The path of the flush liquid: the asked segments, what follows them up to a quench (aqueous, isolated instead), and every leg that feeds these.
+ * A segment follows another if it comes later and carries all its streams; a leg feeds if all its streams arrive on the path.
  * Errors: FLUSH_REFUSED without a segment or for one the skid does not have.
  */
 export function flushPath(input: FlushInput): FlushPath {

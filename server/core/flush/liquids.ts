@@ -49,7 +49,7 @@ function pick(
   if (entry.freezingC >= cFromK(coldestK))
     throw new MonitorError(
       'FLUSH_REFUSED',
-      `${entry.name} freezes at ${entry.freezingC.toFixed(0)} °C, above the ${cFromK(coldestK).toFixed(0)} °C of the coldest place on the way`,
+      `${entry.name} freezes at ${entry.freezingC.toFixed(0)} °C, above the ${cFromK(coldestK).toFixed(0)} °C of the coldest place on the path`,
     )
   return { fluid: pureFluid(entry), chosen: false }
 }

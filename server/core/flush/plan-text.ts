@@ -42,7 +42,7 @@ export function planText(plan: FlushPlan): string {
       `${r.segment}: clean ${r.cleanDpBar.toFixed(2)} bar, predicted ${r.predictedDpBar.toFixed(2)} bar at ratio ${r.ratio.toFixed(2)}, ${r.flowMlMin.toFixed(0)} mL/min, ${r.tempC.toFixed(0)} °C${r.dpHighBar === null ? '' : `, high limit ${r.dpHighBar} bar`}`,
   )
   return [
-    `Flush plan for ${plan.segments.join(', ')} (way: ${plan.path.join(', ')}): ${plan.totalMinutes === null ? 'time not computed' : `about ${plan.totalMinutes.toFixed(0)} min in all`}\n`,
+    `Flush plan for ${plan.segments.join(', ')} (path: ${plan.path.join(', ')}): ${plan.totalMinutes === null ? 'time not computed' : `about ${plan.totalMinutes.toFixed(0)} min in all`}\n`,
     list('Cautions', plan.cautions),
     list(
       'Not advised as things stand',

@@ -2,7 +2,7 @@ import { MonitorError } from '../errors.ts'
 import type { FlushPlan } from '../report.ts'
 import { toSi, valueUnit } from '../units.ts'
 import { type FlushInput, type FlushSettings, flushDefaults } from './input.ts'
-import { activeStreams, inventoryOf } from './inventory.ts'
+import { activeStreams, carriedBy, inventoryOf } from './inventory.ts'
 import { type FlushPath, flushPath } from './legs.ts'
 import { flushLiquids } from './liquids.ts'
 import { addMinutes, type Stage } from './stage.ts'
@@ -40,12 +40,12 @@ function checked(settings: FlushSettings): FlushSettings {
   return settings
 }
 
-/** Why the flush is not advised at all: hardly any flow left within the pressure share. */
-function blocked(path: FlushPath, flowM3S: number | null): string | null {
+/** Why the flush is not advised at all: the deposit leaves hardly any flow within the pressure share. `clear` is the flow a clean path would have. */
+function blocked(path: FlushPath, flowM3S: number | null, clear: number | null): string | null {
   const normal = path.normalM3S
-  if (flowM3S === null || normal === null) return null
-  if (flowM3S < 0.1 * normal)
-    return `only ${(flowM3S * 6e7).toFixed(1)} mL/min would stay within the pressure share, under a tenth of the normal flow`
+  if (flowM3S === null || normal === null || clear === null || flowM3S >= clear) return null
+  if (flowM3S < 0.1 * clear)
+    return `only ${(flowM3S * 6e7).toFixed(1)} mL/min would stay within the pressure share, under a tenth of what a clean path takes`
   for (const leg of path.legs) {
     const { flowLow } = leg.op.spec.limits
     const first = leg.op.streams[0]
@@ -54,9 +54,10 @@ function blocked(path: FlushPath, flowM3S: number | null): string | null {
     const low = toSi(flowLow, valueUnit(tag))
     const rho = first.fluid?.at(first.tempK).rhoKgM3 ?? null
     const lowM3S = tag.quantity === 'massFlow' ? (rho === null ? null : low / rho) : low
-    const own = (first.volumeFlowM3S * flowM3S) / normal
-    if (lowM3S !== null && own < lowM3S && first.volumeFlowM3S >= lowM3S)
-      return `the flow of ${first.id} within the pressure share, ${(own * 6e7).toFixed(1)} mL/min, is below the low-flow limit of ${leg.id}`
+    const share = first.volumeFlowM3S / normal
+    if (lowM3S !== null && flowM3S * share < lowM3S && clear * share >= lowM3S) {
+      return `the flow of ${first.id} within the pressure share, ${(flowM3S * share * 6e7).toFixed(1)} mL/min, is below the low-flow limit of ${leg.id}, and would not be with a clean path`
+    }
   }
   return null
 }
@@ -72,14 +73,15 @@ export function planFlush(input: FlushInput): FlushPlan {
   const path = flushPath(input)
   const liquids = flushLiquids(path, settings)
   const { ids: active, assumption } = activeStreams(path)
+  const reagents = carriedBy(path, active)
   const stage: Stage = { path, liquids, settings, active }
   const f1 = displace(stage)
   const f3 = water(stage)
   const f4 = dry(stage)
   const built = [prepare(stage), f1, warm(stage), f3, f4, recool(stage), restart(stage)]
   const steps = built.map((b) => b.step)
-  const stuck = blocked(path, f1.flowM3S)
-  const wet = blocked(path, f3.flowM3S)
+  const stuck = blocked(path, f1.flowM3S, f1.clearM3S)
+  const wet = blocked(path, f3.flowM3S, f3.clearM3S)
   const refused = [
     ...(stuck === null
       ? []
@@ -91,9 +93,12 @@ export function planFlush(input: FlushInput): FlushPlan {
         ]),
     ...(stuck === null && wet !== null ? [{ step: 'F3', reason: `${wet}: escalate before water.` }] : []),
   ]
-  const inventory = path.legs.map((l) => inventoryOf(l.op, active))
+  const leftOut = path.legs.some((l) => !l.asked && l.op.volumeM3 === null)
+  const inventory = path.legs.map((l) => inventoryOf(l.op, reagents.carried, active))
   const cautions = [
     standing,
+    "To be approved by the site's authorised person. Another ratio, temperature, flow or tracer test than counted here changes the plan.",
+    ...(leftOut ? ['Volumes are lower bounds: a segment on the path has no known volume (see what is not computed).'] : []),
     'Assume the line holds active organolithium until the effluent test says otherwise.',
     'Do not admit water before displacement and warm-up are both confirmed.',
     'Do not raise pressure to clear a blockage.',
@@ -110,6 +115,7 @@ export function planFlush(input: FlushInput): FlushPlan {
     ...path.assumptions,
     ...liquids.assumptions,
     ...(assumption === null ? [] : [assumption]),
+    ...reagents.assumptions,
     'inventory counted as if nothing had reacted',
     'deposit counted as a uniform film of LiOH crystal',
   ]

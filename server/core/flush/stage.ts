@@ -18,6 +18,12 @@ export interface Built {
   readonly missing: readonly string[]
 }
 
+/** Flow of a step, and what the same liquid would have without a deposit; null where not computed. */
+export interface Flows {
+  readonly flowM3S: number | null
+  readonly clearM3S: number | null
+}
+
 export interface Draft {
   readonly id: string
   readonly title: string

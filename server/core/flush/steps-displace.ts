@@ -1,6 +1,7 @@
 import { cFromK, kFromC } from '../units.ts'
 import { cappedFlow } from './hydraulic-cap.ts'
-import { addMinutes, type Built, criterion, finish, parallelHazard, pumpMinutes, type Stage } from './stage.ts'
+import { cleanPath } from './legs.ts'
+import { addMinutes, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage } from './stage.ts'
 import { washout } from './washout.ts'
 
 const activeNames = ({ path, active }: Stage): string =>
@@ -29,7 +30,7 @@ export function prepare(stage: Stage): Built {
       minutes: settings.confirmMinutes,
       holdPoints: [
         'Before this step: approved site procedure, competent person and permit in place; waste vessel compatible, vented, not aqueous while the effluent is active; nitrogen purge running.',
-        'Before this step: list of ratings read, lowest-rated component of the way known.',
+        'Before this step: list of ratings read, lowest-rated component of the path known.',
       ],
       criteria: [
         criterion(
@@ -37,7 +38,7 @@ export function prepare(stage: Stage): Built {
           `flow of ${reagent === '' ? 'the organolithium feed' : reagent} is zero by two independent signs, then of the partner feeds${partners.length === 0 ? '' : ` ${partners.join(', ')}`}`,
         ),
         criterion('outlet-diverted', 'outlet diverted from product'),
-        criterion('path-proven', 'way of the flush proven open at low pressure drop'),
+        criterion('path-proven', 'flush path proven open at low pressure drop'),
       ],
       hazards: [
         'Assume the line holds active organolithium until the effluent test says otherwise.',
@@ -50,13 +51,14 @@ export function prepare(stage: Stage): Built {
 }
 
 /** F1: dry, cold, aprotic solvent displaces the reactive inventory. */
-export function displace(stage: Stage): Built & { readonly flowM3S: number | null } {
+export function displace(stage: Stage): Built & Flows {
   const { path, settings, liquids } = stage
   const cold = (leg: { readonly op: { readonly coldestK: number } }) => leg.op.coldestK
   const cap = cappedFlow(path, liquids.displacement, cold, settings.dpShare)
   const out = washout(path, settings.residualFraction, liquids.displacement, cap.flowM3S, cold, settings.rtd)
   return {
     flowM3S: cap.flowM3S,
+    clearM3S: cappedFlow(cleanPath(path), liquids.displacement, cold, settings.dpShare).flowM3S,
     missing: [...cap.missing, ...out.missing],
     step: finish({
       id: 'F1',
@@ -77,11 +79,11 @@ export function displace(stage: Stage): Built & { readonly flowM3S: number | nul
       criteria: [
         criterion(
           'volume',
-          `volume passed${out.volumeM3 === null ? ' (not computed: set one by the site procedure)' : ` ${(out.volumeM3 * 1e6).toFixed(0)} mL, counted by flow and not by clock`}`,
+          `volume passed${out.volumeM3 === null ? ' (not computed: set one by the site procedure)' : `${out.atLeast ? ', at least' : ''} ${(out.volumeM3 * 1e6).toFixed(0)} mL, counted by flow and not by clock`}`,
         ),
         criterion('reaction-heat-gone', 'outlet within 1 K of the blank against the coolant'),
         criterion('effluent-inactive', 'test of the effluent for active organolithium below the site limit'),
-        ...(path.hasQuench ? [criterion('quench-isolated', 'aqueous quench isolated from the way')] : []),
+        ...(path.hasQuench ? [criterion('quench-isolated', 'aqueous quench isolated from the flush path')] : []),
       ],
       hazards: [
         ...parallelHazard(path),

@@ -1,18 +1,13 @@
 import { cFromK, kFromC } from '../units.ts'
 import { cappedFlow } from './hydraulic-cap.ts'
+import { cleanPath } from './legs.ts'
 import { addMinutes, type Built, criterion, finish, pumpMinutes, type Stage } from './stage.ts'
 import { washout } from './washout.ts'
 
-/** The deposit is gone by now: the clean channel counts, but the flow stays within the same share of the limit. */
-const cleaned = (stage: Stage): Stage => ({
-  ...stage,
-  path: { ...stage.path, legs: stage.path.legs.map((l) => ({ ...l, ratio: 1 })) },
-})
-
-/** F5: cool again with dry solvent flowing. */
+/** F5: the deposit is gone by now, the clean channel counts. Cool again with dry solvent flowing. */
 export function recool(stage: Stage): Built {
   const { settings, liquids } = stage
-  const { path } = cleaned(stage)
+  const path = cleanPath(stage.path)
   const cap = cappedFlow(path, liquids.drying, (l) => l.op.coldestK, settings.dpShare)
   const times = path.legs.map((leg) => ({
     leg,
@@ -48,7 +43,7 @@ export function recool(stage: Stage): Built {
 /** F6: back to control with the outlet diverted. */
 export function restart(stage: Stage): Built {
   const { settings, active } = stage
-  const { path } = cleaned(stage)
+  const path = cleanPath(stage.path)
   const fluid = stage.liquids.drying
   const normal = (l: { readonly op: { readonly tempK: number } }) => l.op.tempK
   const cap = cappedFlow(path, fluid, normal, 1)

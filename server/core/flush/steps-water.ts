@@ -3,15 +3,16 @@ import type { WaterReference } from '../report.ts'
 import { barFromPa, cFromK, kFromC, mlMinFromM3s } from '../units.ts'
 import { cappedFlow } from './hydraulic-cap.ts'
 import { depositKg } from './inventory.ts'
+import { cleanPath } from './legs.ts'
 import { waterShareLeft } from './liquids.ts'
-import { addMinutes, type Built, criterion, finish, parallelHazard, pumpMinutes, type Stage, shown } from './stage.ts'
+import { addMinutes, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage, shown } from './stage.ts'
 import { washout } from './washout.ts'
 
 /**
  * F3: water dissolves LiOH and lithium halides. Viscosity of water at the coldest place that F2 accepts, volume the larger of what the solubility
  * asks (with margin) and the washout, the first volume of the way at the starting share of the flow.
  */
-export function water(stage: Stage): Built & { readonly reference: readonly WaterReference[]; readonly flowM3S: number | null } {
+export function water(stage: Stage): Built & Flows & { readonly reference: readonly WaterReference[] } {
   const { path, settings, liquids } = stage
   const tempK = kFromC(settings.warmC)
   const at = () => tempK
@@ -49,6 +50,7 @@ export function water(stage: Stage): Built & { readonly reference: readonly Wate
   return {
     reference,
     flowM3S: cap.flowM3S,
+    clearM3S: cappedFlow(cleanPath(path), liquids.water, at, settings.dpShare).flowM3S,
     missing: [
       ...cap.missing,
       ...out.missing,
@@ -65,7 +67,7 @@ export function water(stage: Stage): Built & { readonly reference: readonly Wate
       minutes,
       holdPoints: [
         'Before this step: F1 and F2 accepted, both. Do not admit water before displacement and warm-up are both confirmed.',
-        `Advised start: ${shown(cap.flowM3S === null ? null : mlMinFromM3s(cap.flowM3S * settings.waterStartShare), 'mL/min')} (${(100 * settings.waterStartShare).toFixed(0)} % of the flow) for the first volume of the way, watching temperature and off-gas; then up to the flow above.`,
+        `Advised start: ${shown(cap.flowM3S === null ? null : mlMinFromM3s(cap.flowM3S * settings.waterStartShare), 'mL/min')} (${(100 * settings.waterStartShare).toFixed(0)} % of the flow) for the first volume of the path, watching temperature and off-gas; then up to the flow above.`,
         ...(settings.soakMinutes > 0
           ? [`Soak of ${settings.soakMinutes} min, outlet open.`]
           : ['A soak is optional; none is counted.']),
@@ -115,7 +117,7 @@ export function water(stage: Stage): Built & { readonly reference: readonly Wate
 }
 
 /** F4: a fully miscible dry solvent takes the water out again, down to the ppm limit. */
-export function dry(stage: Stage): Built & { readonly flowM3S: number | null } {
+export function dry(stage: Stage): Built {
   const { path, settings, liquids } = stage
   const tempK = kFromC(settings.warmC)
   const at = () => tempK
@@ -128,7 +130,6 @@ export function dry(stage: Stage): Built & { readonly flowM3S: number | null } {
   const cap = cappedFlow(path, liquids.drying, at, settings.dpShare)
   const out = washout(path, share, liquids.drying, cap.flowM3S, at, settings.rtd)
   return {
-    flowM3S: cap.flowM3S,
     missing: [...cap.missing, ...out.missing],
     step: finish({
       id: 'F4',
@@ -148,7 +149,9 @@ export function dry(stage: Stage): Built & { readonly flowM3S: number | null } {
       alsoEnds:
         out.volumeM3 === null
           ? []
-          : [`volume passed ${(out.volumeM3 * 1e6).toFixed(0)} mL, then two results; a failing or missing result means go on`],
+          : [
+              `volume passed${out.atLeast ? ', at least' : ''} ${(out.volumeM3 * 1e6).toFixed(0)} mL, then two results; a failing or missing result means go on`,
+            ],
       hazards: ['Water left behind freezes in F5 and makes LiOH in F6.', ...parallelHazard(path)],
       basis: [
         `flow limited by: ${cap.limitedBy}`,

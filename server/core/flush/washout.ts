@@ -5,34 +5,42 @@ import { describeRtd, type Rtd } from '../rtd/rtd.ts'
 import type { FlushPath, Leg } from './legs.ts'
 
 export interface Washout {
-  /** Whole flush volume, m³; null where a volume or flow on the way is not known. */
+  /** Whole flush volume, m³; null where the flow, or the volume of an asked segment, is not known. */
   readonly volumeM3: number | null
-  /** Volume of the slowest way itself, in whole flush flow, m³. */
+  /** Volume of the slowest chain itself, in whole flush flow, m³. */
   readonly pathM3: number | null
+  /** True where a leg of unknown volume was left out. */
+  readonly atLeast: boolean
   readonly basis: readonly string[]
   readonly missing: readonly string[]
 }
 
 /**
  * The chain of vessels one feed's flush liquid passes, in volume of the whole flush flow: a leg that carries the share f of it counts V/f.
- * Residence-time models by `rtdOf` for this liquid, flow and temperature, unless one was measured.
+ * Residence-time models by `rtdOf` for this liquid, flow and temperature, unless one was measured. A leg of unknown volume is left out and named, `unknown`
+ * says that an asked one was.
  */
-export function chainSteps(
+function chainSteps(
   chain: readonly Leg[],
   fluid: Fluid,
   flowM3S: number,
   tempOf: (leg: Leg) => number,
   measured: Readonly<Record<string, Rtd>>,
-): { readonly steps: PathStep[]; readonly why: string[]; readonly missing: string[] } {
+): { readonly steps: PathStep[]; readonly why: string[]; readonly missing: string[]; readonly unknown: boolean } {
   const steps: PathStep[] = []
   const why: string[] = []
   const missing: string[] = []
+  let unknown = false
   for (const leg of chain) {
     const { volumeM3, channel, spec } = leg.op
     if (volumeM3 === null || leg.share === null || leg.share <= 0) {
+      const needs = volumeM3 === null ? 'volumeMl or a channel with bore and length' : 'the flow of its streams'
       missing.push(
-        `${leg.id}: washout, needs ${volumeM3 === null ? 'volumeMl or a channel with bore and length' : 'the flow of its streams'}`,
+        leg.asked
+          ? `${leg.id}: washout, needs ${needs}`
+          : `${leg.id}: left out of every washout, which is a lower bound; needs ${needs}`,
       )
+      unknown ||= leg.asked
       continue
     }
     const { rhoKgM3, viscPaS } = fluid.at(tempOf(leg))
@@ -55,7 +63,7 @@ export function chainSteps(
     steps.push({ rtd: chosen.rtd, volume: volumeM3 / leg.share })
     why.push(`${leg.id}: ${describeRtd(chosen.rtd)} (${chosen.why})`)
   }
-  return { steps, why, missing }
+  return { steps, why, missing, unknown }
 }
 
 /** Flush volume until the share r of what lay in the worst chain is still inside; the residence-time models are named in `basis`. */
@@ -68,13 +76,15 @@ export function washout(
   measured: Readonly<Record<string, Rtd>>,
 ): Washout {
   if (flowM3S === null || flowM3S <= 0)
-    return { volumeM3: null, pathM3: null, basis: [], missing: ['washout volume: needs the flush flow'] }
+    return { volumeM3: null, pathM3: null, atLeast: false, basis: [], missing: ['washout volume: needs the flush flow'] }
   const chains = path.chains.map((chain) => chainSteps(chain, fluid, flowM3S, tempOf, measured))
   const missing = [...new Set(chains.flatMap((c) => c.missing))]
-  if (missing.length > 0 || chains.length === 0) return { volumeM3: null, pathM3: null, basis: [], missing }
+  if (chains.some((c) => c.unknown) || chains.every((c) => c.steps.length === 0))
+    return { volumeM3: null, pathM3: null, atLeast: false, basis: [], missing }
   let volumeM3 = 0
   let pathM3 = 0
   for (const { steps } of chains) {
+    if (steps.length === 0) continue
     volumeM3 = Math.max(volumeM3, pathVolume(steps, r))
     pathM3 = Math.max(
       pathM3,
@@ -82,8 +92,9 @@ export function washout(
     )
   }
   const basis = [
-    `washout to ${r.toPrecision(2)} of the old content: ${(volumeM3 / pathM3).toFixed(1)} volumes of the way (${(pathM3 * 1e6).toFixed(0)} mL)`,
+    ...missing,
+    `washout to ${r.toPrecision(2)} of the old content: ${(volumeM3 / pathM3).toFixed(1)} volumes of the path (${(pathM3 * 1e6).toFixed(0)} mL)`,
     ...new Set(chains.flatMap((c) => c.why)),
   ]
-  return { volumeM3, pathM3, basis, missing }
+  return { volumeM3, pathM3, atLeast: missing.length > 0, basis, missing }
 }

@@ -23,7 +23,7 @@ const deanMixes = 5
 
 /**
  * The residence-time model that fits what is known of a vessel, the slower one in doubt: turbulent tube dispersion with open ends (Taylor 1954);
- * laminar tube Taylor-Aris once diffusion has had time to level the profile, else segregated laminar flow, of a coil where it is bent; a vessel
+ * laminar tube Taylor-Aris once diffusion has had time to level the profile, else laminar flow with diffusion across it, of a coil where it is bent; a vessel
  * without a known channel one stirred tank, the slowest of well-made small vessels. Every choice is an assumption until a tracer test stands in its place.
  */
 export function rtdOf({ kind, tube, diffusivityM2S }: VesselFlow): { readonly rtd: Rtd; readonly why: string } {
@@ -39,13 +39,15 @@ export function rtdOf({ kind, tube, diffusivityM2S }: VesselFlow): { readonly rt
   const taylor = taylorAris(diameterM / 2, velocityMS, lengthM, diffusivityM2S)
   if (taylor.settled)
     return { rtd: { kind: 'dispersion', pe: taylor.pe, ends: 'open' }, why: 'laminar and slow enough for Taylor-Aris dispersion' }
+  const beta = (diffusivityM2S * (lengthM / velocityMS)) / (diameterM / 2) ** 2
   if (coilDiameterM !== null && re * Math.sqrt(diameterM / coilDiameterM) > deanMixes)
-    return { rtd: { kind: 'coil' }, why: 'laminar coil, too fast for diffusion: segregated flow in a coil' }
-  return { rtd: { kind: 'laminar' }, why: 'laminar straight tube, too fast for diffusion: segregated flow' }
+    return { rtd: { kind: 'coil', beta }, why: 'laminar, too fast for Taylor-Aris' }
+  return { rtd: { kind: 'laminar', beta }, why: 'laminar, too fast for Taylor-Aris' }
 }
 
 /**
- * Molecular diffusivity of a small solute in a liquid, 1.0e-9 m²/s at 1 mPa s and 298 K, in proportion to T/μ (Stokes-Einstein) [m²/s].
- * Order of magnitude only, factor 3 (common practice); it decides between models, not their figures.
+ * Molecular diffusivity of a small solute in a liquid, 0.5e-9 m²/s at 1 mPa s and 298 K, in proportion to T/μ (Stokes-Einstein) [m²/s].
+ * The lower end of 0.5 to 2 for water, salts and organolithium clusters (common practice): slow diffusion is the
+ * cautious side for a washout, which answers to its cube root.
  */
-export const smallSoluteDiffusivity = (tempK: number, viscPaS: number): number => (1e-9 * (tempK / 298.15) * 1e-3) / viscPaS
+export const smallSoluteDiffusivity = (tempK: number, viscPaS: number): number => (0.5e-9 * (tempK / 298.15) * 1e-3) / viscPaS

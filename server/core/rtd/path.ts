@@ -7,7 +7,7 @@ export interface PathStep {
   readonly volume: number
 }
 
-const bins = 2048
+const bins = 1024
 
 /** Mass of one vessel's residence volume in each bin of width h. */
 function masses({ rtd, volume }: PathStep, h: number): Float64Array {
@@ -26,15 +26,15 @@ function convolve(a: Float64Array, b: Float64Array): Float64Array {
   for (let i = 0; i < bins; i++) {
     const ai = a[i] ?? 0
     if (ai === 0) continue
-    for (let j = 0; i + j < bins; j++) out[i + j] = (out[i + j] ?? 0) + ai * (b[j] ?? 0)
+    for (let j = 0; i + j < bins; j++) out[i + j]! += ai * b[j]!
   }
   return out
 }
 
 /**
  * Volume passed through vessels in series until the share r of what entered (or lay) upstream is still to leave the last one.
- * The residence volumes add, so their densities are convolved, on 2048 bins up to Σ V_k θ_k(r/K): by the union bound no more than r lies
- * beyond that. Bin middles keep the mean; the error is of the order of a bin, 0.05 % of that bound. One vessel: exact.
+ * The residence volumes add, so their densities are convolved, on 1024 bins up to Σ V_k θ_k(r/K): by the union bound no more than r lies
+ * beyond that. Bin middles keep the mean; the error is of the order of a bin, 0.1 % of that bound. One vessel: exact.
  * Source: O. Levenspiel, Chemical Reaction Engineering, ch. 11 (convolution). Errors: RTD_RANGE for an empty path, volumes ≤ 0, r outside (0, 1).
  */
 export function pathVolume(path: readonly PathStep[], r: number): number {

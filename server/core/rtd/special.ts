@@ -4,7 +4,7 @@ const lanczos = [
 ]
 
 /** ln Γ(x) for x > 0, Lanczos (g = 7, n = 9), about 15 digits. Source: W. H. Press et al., Numerical Recipes, 3rd ed., 6.1. */
-export function lnGamma(x: number): number {
+function lnGamma(x: number): number {
   if (x < 0.5) return Math.log(Math.PI / Math.sin(Math.PI * x)) - lnGamma(1 - x)
   const t = x + 6.5
   const sum = lanczos.reduce((s, c, i) => (i === 0 ? c : s + c / (x - 1 + i)), 0)

@@ -2,8 +2,8 @@ import { MonitorError } from '../errors.ts'
 import { coilCriticalReynolds } from '../hydraulics/curvature.ts'
 
 /** Largest Reynolds number of laminar flow in a straight tube, and the least of fully turbulent flow (Gnielinski 2013). */
-export const reLaminar = 2300
-export const reTurbulent = 4000
+const reLaminar = 2300
+const reTurbulent = 4000
 
 /** Filonenko friction factor of a smooth tube, f = (0.79 ln Re − 1.64)^−2 [-], 3e3 < Re < 5e6. Source: Petukhov, Adv. Heat Transfer 6 (1970). */
 export const filonenko = (re: number): number => (0.79 * Math.log(re) - 1.64) ** -2

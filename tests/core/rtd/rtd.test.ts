@@ -3,7 +3,7 @@ import { describe, expect, it } from 'vitest'
 import { MonitorError } from '../../../server/core/errors.ts'
 import { taylorAris, turbulentPe, varianceClosed } from '../../../server/core/rtd/dispersion.ts'
 import { pulseMoments } from '../../../server/core/rtd/pulse.ts'
-import { meanVolumes, type Rtd, residual, washoutVolumes } from '../../../server/core/rtd/rtd.ts'
+import { type Rtd, residual, washoutVolumes } from '../../../server/core/rtd/rtd.ts'
 import { hasShared, sharedCases } from '../thermal/shared-cases.ts'
 
 const num = (min: number, max: number) => fc.double({ min, max, noNaN: true })
@@ -14,6 +14,7 @@ const models: fc.Arbitrary<Rtd> = fc.oneof(
     .map(([pe, ends]): Rtd => ({ kind: 'dispersion', pe, ends })),
   fc.constant<Rtd>({ kind: 'laminar' }),
   fc.constant<Rtd>({ kind: 'coil' }),
+  fc.tuple(fc.constantFrom('laminar' as const, 'coil' as const), num(0.001, 0.8)).map(([kind, beta]): Rtd => ({ kind, beta })),
   fc.tuple(num(0, 0.9), num(1, 20)).map(([plugShare, n]): Rtd => ({ kind: 'plugThenTanks', plugShare, n })),
 )
 
@@ -57,6 +58,7 @@ it('has the stated mean: the area under 1 - F is 1 volume (1 + 2/Pe between open
     for (let i = 0; i < 4000; i++) sum += residual(rtd, (i + 0.5) * h) * h
     return sum
   }
+  const mean = (rtd: Rtd) => (rtd.kind === 'dispersion' && rtd.ends === 'open' ? 1 + 2 / rtd.pe : 1)
   const all: Rtd[] = [
     { kind: 'tanks', n: 3.5 },
     { kind: 'dispersion', pe: 8, ends: 'open' },
@@ -65,7 +67,7 @@ it('has the stated mean: the area under 1 - F is 1 volume (1 + 2/Pe between open
     { kind: 'coil' },
     { kind: 'plugThenTanks', plugShare: 0.4, n: 2 },
   ]
-  for (const rtd of all) expect(Math.abs(area(rtd, rtd.kind === 'coil' ? 200 : 15) / meanVolumes(rtd) - 1)).toBeLessThan(3e-3)
+  for (const rtd of all) expect(Math.abs(area(rtd, rtd.kind === 'coil' ? 200 : 15) / mean(rtd) - 1)).toBeLessThan(3e-3)
   // 1/(4 theta^2) keeps 1/(4 * 400) of its mean beyond 400 volumes
   expect(Math.abs(area({ kind: 'laminar' }, 400) - 1)).toBeLessThan(3e-3)
 })
@@ -113,6 +115,66 @@ it('refuses models and fractions out of range', () => {
   ]) {
     expect(bad).toThrow(MonitorError)
   }
+})
+
+/** Share still inside after each θ, of flux-weighted particles that drift with 2(1 - r²) and wander across with β (direct random walk). */
+function walked(beta: number, thetas: readonly number[], particles: number): number[] {
+  let seed = 20_240_607
+  const uniform = () => {
+    seed = (Math.imul(seed, 1664525) + 1013904223) >>> 0
+    return (seed + 0.5) / 2 ** 32
+  }
+  const step = 0.01
+  // uniform steps of the same variance as Gaussian ones: 2 β step in each direction
+  const reach = Math.sqrt(6 * beta * step)
+  const inside = thetas.map(() => 0)
+  const end = thetas.at(-1) ?? 0
+  for (let p = 0; p < particles; p++) {
+    const q = 1 - Math.sqrt(1 - uniform())
+    let [x, y, z, t, r2] = [Math.sqrt(q), 0, 0, 0, q]
+    while (z < 1 && t <= end) {
+      const before = 1 - r2
+      x += reach * (2 * uniform() - 1)
+      y += reach * (2 * uniform() - 1)
+      r2 = x * x + y * y
+      if (r2 > 1) {
+        const back = (2 - Math.sqrt(r2)) / Math.sqrt(r2)
+        x *= back
+        y *= back
+        r2 = x * x + y * y
+      }
+      z += (before + 1 - r2) * step
+      t += step
+    }
+    for (const [k, theta] of thetas.entries()) if (t > theta) inside[k] = (inside[k] ?? 0) + 1
+  }
+  return inside.map((n) => n / particles)
+}
+
+it('laminar flow with diffusion across: never below random walks of 20 000 particles, and within a factor 12 of them', () => {
+  for (const [beta, thetas] of [
+    [0.005, [0.8, 1.5, 3, 5]],
+    [0.05, [0.8, 1.2, 2, 2.8]],
+    [0.3, [0.8, 1, 1.3, 1.8]],
+    [0.7, [0.8, 1, 1.2, 1.5]],
+  ] as const) {
+    for (const [k, share] of walked(beta, thetas, 20_000).entries()) {
+      const envelope = residual({ kind: 'laminar', beta }, thetas[k] ?? 0)
+      expect(envelope).toBeGreaterThan(share * 0.98)
+      expect(envelope).toBeLessThan(12 * share)
+      expect(residual({ kind: 'coil', beta }, (thetas[k] ?? 0) + 1)).toBeLessThanOrEqual(
+        Math.max(residual({ kind: 'coil' }, (thetas[k] ?? 0) + 1), 0),
+      )
+    }
+  }
+})
+
+it('diffusion pays where it has time: 1e-4 left after 50 volumes segregated, after 4.4 at beta 0.05 (walks: 3.9), and nothing gained at beta 0', () => {
+  expect(washoutVolumes({ kind: 'laminar' }, 1e-4)).toBe(50)
+  const v = washoutVolumes({ kind: 'laminar', beta: 0.05 }, 1e-4)
+  expect(v).toBeGreaterThan(3.9)
+  expect(v).toBeLessThan(5)
+  expect(washoutVolumes({ kind: 'laminar', beta: 0 }, 1e-2)).toBeCloseTo(washoutVolumes({ kind: 'laminar' }, 1e-2), 6)
 })
 
 describe.runIf(hasShared)('shared check values 09 (runs where the folder exists)', () => {
