@@ -95,7 +95,8 @@ async function peek(source: LogSource, options: LogOptions): Promise<{ source: L
     else {
       // The producer may use its buffer again.
       held.push(next.value.slice())
-      probe.feed(next.value.subarray(0, piece))
+      for (let from = 0; from < next.value.length && probe.point() === null; from += piece)
+        probe.feed(next.value.subarray(from, from + piece))
     }
   }
   if (done && held.length > 0) probe.settle()

@@ -109,6 +109,22 @@ describe('properties', () => {
     )
   })
 
+  it('any decimal of up to 30 digits, with and without exponent, is the double that Number(text) gives', () => {
+    const digits = fc.string({ unit: fc.constantFrom(...'0123456789'), minLength: 1, maxLength: 15 })
+    const exponent = fc.oneof(
+      fc.constant(''),
+      fc.integer({ min: -30, max: 30 }).map((e) => `e${e}`),
+    )
+    const text = fc.tuple(fc.constantFrom('', '-', '+'), digits, digits, exponent).map(([sign, a, b, e]) => `${sign}${a}.${b}${e}`)
+    fc.assert(
+      fc.property(fc.array(text, { minLength: 1, maxLength: 50 }), (texts) => {
+        const file = `time,PT-1\n${[...texts, '9007199254740993', '-9007199254740993.0'].map((t, i) => `${1_900_000_000 + i},${t}\n`).join('')}`
+        expect(read(file, skid).values[0]).toEqual([...texts.map(Number), 9007199254740992, -9007199254740992])
+      }),
+      { numRuns: 200, seed: 14 },
+    )
+  })
+
   it('agrees with a plain split on 60 random tables of simple cells, words and gaps among them', () => {
     const cell = fc.oneof(fc.integer({ min: -9999, max: 9999 }).map((n) => String(n / 100)), fc.constantFrom('', 'NaN', 'n/a', 'abc', '7.', '.5', '1e400')) // biome-ignore format: one line
     fc.assert(
