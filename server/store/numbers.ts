@@ -1,5 +1,6 @@
 import type { ByteReader, ByteWriter } from './bytes.ts'
 import { ByteWriter as Writer } from './bytes.ts'
+import { powers, toGrid } from './decimal-grid.ts'
 
 /*
  * Lossless coding of doubles that come from instruments: a logger prints a fixed number of decimals, so v = k / 10^d with integers k.
@@ -21,11 +22,6 @@ const double = 2
 const single = 3
 
 const blockSize = 64
-const mostPlaces = 9
-/** |k| stays below this, so that differences (2^52) and their zigzag form (2^53) are exact doubles; holds microseconds since 1970 until 2041. */
-const mostK = 2 ** 51
-const powers = Array.from({ length: mostPlaces + 1 }, (_, d) => 10 ** d)
-
 const heads = new Writer()
 let grid = new Float64Array(8192)
 let words = new Uint32Array(16384)
@@ -37,51 +33,6 @@ function roomFor(n: number): void {
   if (words.length < 2 * n + 2) {
     words = new Uint32Array(4 * n)
     wordBytes = new Uint8Array(words.buffer)
-  }
-}
-
-/** Fewest decimal places at which v is on the grid, from `least` on; −1 when there is none (NaN, −0, infinities, finer fractions). */
-function placesOf(v: number, least: number): number {
-  if (v === 0) return Object.is(v, -0) ? -1 : least
-  for (let d = least; d <= mostPlaces; d++) {
-    const p = powers[d]!
-    const k = Math.round(v * p)
-    if (k / p === v && k < mostK && k > -mostK) return d
-  }
-  return -1
-}
-
-/**
- * Fills `grid` with v·10^d, `off` with 1 for each block that has a value off the grid. Returns d and whether all values are on it.
- * d grows to what the finest value on any grid asks for; a value off every grid does not move it.
- */
-function toGrid(values: Float64Array, n: number, off: Uint8Array): { places: number; whole: boolean } {
-  let places = 0
-  for (;;) {
-    const p = powers[places]!
-    let finer = places
-    let whole = true
-    off.fill(0)
-    for (let start = 0, b = 0; start < n && finer === places; start += blockSize, b++) {
-      const end = Math.min(n, start + blockSize)
-      for (let i = start; i < end; i++) {
-        const v = values[i]!
-        const k = Math.round(v * p)
-        if (k / p === v && k < mostK && k > -mostK && (k !== 0 || !Object.is(v, -0))) {
-          grid[i] = k
-          continue
-        }
-        const d = placesOf(v, places)
-        if (d > places) finer = d
-        else {
-          off[b] = 1
-          whole = false
-        }
-        break
-      }
-    }
-    if (finer === places) return { places, whole }
-    places = finer
   }
 }
 
@@ -127,7 +78,7 @@ export function writeNumbers(out: ByteWriter, values: Float64Array, n: number): 
   roomFor(n)
   const off =
     n <= offBlocks.length * blockSize ? offBlocks.subarray(0, Math.ceil(n / blockSize)) : new Uint8Array(Math.ceil(n / blockSize))
-  const { places, whole } = toGrid(values, n, off)
+  const { places, whole } = toGrid(values, n, grid, off, blockSize)
   if (whole) {
     const step = n > 1 ? grid[1]! - grid[0]! : 0
     let i = 1

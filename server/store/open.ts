@@ -2,17 +2,21 @@ import { accessSync, constants, existsSync, mkdirSync } from 'node:fs'
 import { join } from 'node:path'
 import Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
+import { actTable } from './acts.ts'
 import { auditStore } from './audit.ts'
 import { asStoreError, guarded, guardedAll } from './fault.ts'
+import { headTable } from './heads.ts'
 import { journalStore } from './journal.ts'
 import { checkSchema, migrate, seen } from './migrate.ts'
 import { readingStore } from './readings.ts'
 import { reclaimer } from './reclaim.ts'
 import { runStore } from './runs.ts'
 import { segmentTable } from './segments.ts'
-import { type Append, sequenceStore } from './sequence.ts'
+import { type Append, sequenceWriter } from './sequence.ts'
+import { sequenceReader } from './sequence-read.ts'
 import { settingsStore } from './settings.ts'
 import { snapshotStore } from './snapshots.ts'
+import { stageTable } from './stage-table.ts'
 
 export interface StoreOptions {
   /** FULL (default): a commit is on the disk when it returns. NORMAL: it survives a crash of the process, not of the machine. */
@@ -90,23 +94,25 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
 
 function assemble(db: Database.Database, held: Database.Database | null, place: string) {
   const segments = segmentTable(db)
+  const tables = { heads: headTable(db), acts: actTable(db), stages: stageTable(db), segments }
   const runs = runStore(db)
-  const sequence = sequenceStore(db, segments)
+  const sequence = sequenceWriter(tables)
+  const readEntries = sequenceReader(db, tables)
   const journal = journalStore(db)
   const reclaim = reclaimer(db)
   const packNext = db.transaction(() => sequence.packNext()).immediate
   const purgeNext = db.transaction(() => reclaim.purgeNext()).immediate
 
-  function* read(...args: Parameters<typeof sequence.read>): ReturnType<typeof sequence.read> {
+  function* read(...args: Parameters<typeof readEntries>): ReturnType<typeof readEntries> {
     try {
-      yield* sequence.read(...args)
+      yield* readEntries(...args)
     } catch (error) {
       throw asStoreError(error, place)
     }
   }
   const g = <A extends unknown[], R>(act: (...args: A) => R) => guarded(place, act)
   const all = <T extends { readonly [name: string]: unknown }>(functions: T): T => guardedAll(place, functions)
-  const { packNext: _, read: _read, append, ...sequenceRest } = sequence
+  const { packNext: _, append, ...sequenceRest } = sequence
   return {
     runs: all(runs),
     sequence: {
@@ -128,7 +134,7 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
        */
       read,
     },
-    readings: all(readingStore(db, segments)),
+    readings: all(readingStore(db, tables)),
     events: all(journal.events),
     transitions: all(journal.transitions),
     snapshots: all(snapshotStore(db)),

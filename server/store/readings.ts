@@ -1,13 +1,13 @@
 import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
-import { cell } from '../core/reading.ts'
 import { readChannel } from './channel.ts'
-import { keyOf, type RunId } from './keys.ts'
-import { noRun } from './runs.ts'
+import { damaged } from './checksum.ts'
+import type { Head } from './heads.ts'
+import type { RunId } from './keys.ts'
 import { openStrip, stripTags } from './segment.ts'
-import { damaged, type SegmentTable } from './segments.ts'
-import { decodeStage } from './staging.ts'
+import type { Tables } from './sequence-read.ts'
 import { addToCells, cells, cellWidthsMs } from './tiers.ts'
+import { gather, inOrder, isRising, type Piece, type Rows, type SamplesOfTag, sharedTimes, windowed } from './window.ts'
 
 export const mostBuckets = 2000
 
@@ -27,29 +27,6 @@ export interface EnvelopeOfTag {
   readonly count: Float64Array
 }
 
-/** Every sample of one tag in a window by source time, equal times in order of arrival; codes as in a RowBlock, never absent. */
-export interface SamplesOfTag {
-  readonly tag: number
-  readonly tMs: Float64Array
-  readonly values: Float64Array
-  readonly codes: Uint8Array
-}
-
-interface Chunk {
-  readonly values: Float64Array
-  readonly codes: Uint8Array
-  /** Every code is `cell.value`. */
-  readonly plain: boolean
-}
-interface Head {
-  readonly width: number | null
-  readonly first: number | null
-  readonly last: number | null
-  readonly stagedRows: number
-}
-/** Rows of a segment or of a staged record: their times and a way to one tag; what it gives is good until asked again. */
-type Rows = { readonly tMs: Float64Array; readonly tag: (index: number) => Chunk }
-
 /**
  * Width of the buckets on their fixed grid. A span of n − 1 widths touches at most n buckets, wherever it begins. From 10 s on the
  * width is a multiple of a tier's cells, which are a third of it or less once the finest tier is left behind.
@@ -62,27 +39,16 @@ export function bucketWidth(fromMs: number, toMs: number, most: number): number 
 }
 
 /** Reads readings by time, packed and staged alike. The cost follows what is drawn, not the run's length. */
-export function readingStore(db: Database.Database, segments: SegmentTable) {
-  const head = db.prepare<[RunId], Head>(
-    `SELECT width, first_ms AS "first", last_ms AS "last", staged_rows AS stagedRows
-     FROM head JOIN run ON run.id = head.run WHERE run = ? AND state <> 'deleted'`,
-  )
-  const staged = db.prepare<[number, number], { id: number; rows: number; tMin: number; tMax: number }>(
-    'SELECT id, rows, t_min AS tMin, t_max AS tMax FROM stage WHERE id >= ? AND id < ? ORDER BY id',
-  )
-  const stageBody = db.prepare<[number], Buffer>('SELECT body FROM stage WHERE id = ?').pluck()
-
-  const check = (run: RunId, tags: readonly number[]) => {
-    const found = head.get(run)
-    if (found === undefined) throw noRun(run)
-    const wrong = tags.find((tag) => !(Number.isInteger(tag) && tag >= 0 && (found.width === null || tag < found.width)))
-    if (wrong !== undefined)
-      throw new MonitorError('TAG_UNKNOWN', `run ${run} has ${found.width ?? 0} tags, there is no tag ${wrong}`)
-    return found
+export function readingStore(db: Database.Database, { heads, stages, segments }: Tables) {
+  const check = (run: RunId, tags: readonly number[]): Head => {
+    const head = heads.get(run)
+    const wrong = tags.find((tag) => !(Number.isInteger(tag) && tag >= 0 && (head.width === null || tag < head.width)))
+    if (wrong === undefined) return head
+    throw new MonitorError('TAG_UNKNOWN', `run ${run} has ${head.width ?? 0} tags, there is no tag ${wrong}`)
   }
 
   function segmentRows(run: RunId, seq: number, width: number): Rows {
-    const { key, tMs } = segments.order(run, seq)
+    const { tMs } = segments.order(run, seq)
     const values = new Float64Array(tMs.length)
     const codes = new Uint8Array(tMs.length)
     const opened = new Map<number, ReturnType<typeof openStrip>>()
@@ -92,7 +58,7 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
         const strip = Math.floor(index / stripTags)
         let readers = opened.get(strip)
         if (readers === undefined) {
-          readers = openStrip(segments.strip(key, strip), Math.min(stripTags, width - strip * stripTags))
+          readers = openStrip(segments.strip(run, seq, strip), Math.min(stripTags, width - strip * stripTags))
           opened.set(strip, readers)
         }
         return { values, codes, plain: readChannel(readers[index % stripTags]!, values, codes, tMs.length) }
@@ -102,11 +68,11 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
 
   /** Staged rows in a span as if one segment. */
   function stagedRows(run: RunId, { width, stagedRows: expected }: Head, fromMs: number, toMs: number): Rows | null {
-    const all = staged.all(keyOf(run, 0), keyOf(run, 0) + 2 ** 36)
+    const all = stages.list(run)
     if (all.reduce((sum, { rows }) => sum + rows, 0) !== expected) throw damaged(`some of the latest rows of run ${run}`)
     const blocks = all
       .filter(({ tMin, tMax }) => tMin < toMs && tMax >= fromMs)
-      .map(({ id }) => decodeStage(stageBody.get(id)!, width ?? 0).block)
+      .map(({ seq }) => stages.open(run, seq, width ?? 0).block)
     const rows = blocks.reduce((sum, block) => sum + block.rows, 0)
     if (rows === 0) return null
     const tMs = new Float64Array(rows)
@@ -209,7 +175,7 @@ export function readingStore(db: Database.Database, segments: SegmentTable) {
     samples: db.transaction(samples),
     /** Earliest and latest source time of a run's rows; null before the first. */
     span(run: RunId): { fromMs: number; toMs: number } | null {
-      const { first, last } = check(run, [])
+      const { firstMs: first, lastMs: last } = check(run, [])
       return first === null || last === null ? null : { fromMs: first, toMs: last }
     },
   }
@@ -234,85 +200,5 @@ function addCells(
     if (count[s] === 0 || cells.max[i]! > max[s]!) max[s] = cells.max[i]!
     count[s] = count[s]! + cells.count[i]!
     mean[s] = mean[s]! + cells.sum[i]!
-  }
-}
-
-/** The stretch of rows from the first to the last in [fromMs, toMs), and whether all between are. */
-interface Piece extends Rows {
-  readonly from: number
-  readonly to: number
-  readonly whole: boolean
-}
-
-function windowed(rows: Rows, fromMs: number, toMs: number): Piece {
-  const { tMs, tag } = rows
-  let from = tMs.length
-  let to = 0
-  let inside = 0
-  for (let i = 0; i < tMs.length; i++) {
-    const t = tMs[i]!
-    if (t < fromMs || t >= toMs) continue
-    if (from > i) from = i
-    to = i + 1
-    inside++
-  }
-  from = Math.min(from, to)
-  return { tMs, tag, from, to, whole: inside === to - from }
-}
-
-/** The times of all pieces, one after the other: those of every tag that has a sample in each row. */
-function sharedTimes(pieces: readonly Piece[]): Float64Array {
-  const all = new Float64Array(pieces.reduce((n, { from, to }) => n + to - from, 0))
-  let at = 0
-  for (const { tMs, from, to } of pieces) {
-    all.set(tMs.subarray(from, to), at)
-    at += to - from
-  }
-  return all
-}
-
-/** One tag's samples in order of arrival; `tMs` is `shared` itself where nothing was left out. */
-function gather(tag: number, pieces: readonly Piece[], shared: Float64Array, fromMs: number, toMs: number): SamplesOfTag {
-  const values = new Float64Array(shared.length)
-  const codes = new Uint8Array(shared.length)
-  let times: Float64Array | null = null
-  let n = 0
-  for (const { tMs, tag: read, from, to, whole } of pieces) {
-    const chunk = read(tag)
-    const gap = chunk.plain ? -1 : chunk.codes.indexOf(cell.absent, from)
-    if (whole && (gap < 0 || gap >= to)) {
-      values.set(chunk.values.subarray(from, to), n)
-      if (chunk.plain) codes.fill(cell.value, n, n + to - from)
-      else codes.set(chunk.codes.subarray(from, to), n)
-      times?.set(tMs.subarray(from, to), n)
-      n += to - from
-      continue
-    }
-    times ??= shared.slice()
-    for (let i = from; i < to; i++) {
-      if (chunk.codes[i] === cell.absent || tMs[i]! < fromMs || tMs[i]! >= toMs) continue
-      times[n] = tMs[i]!
-      values[n] = chunk.values[i]!
-      codes[n++] = chunk.codes[i]!
-    }
-  }
-  return times === null
-    ? { tag, tMs: shared, values, codes }
-    : { tag, tMs: times.slice(0, n), values: values.slice(0, n), codes: codes.slice(0, n) }
-}
-
-function isRising(tMs: Float64Array): boolean {
-  for (let i = 1; i < tMs.length; i++) if (tMs[i]! < tMs[i - 1]!) return false
-  return true
-}
-
-/** By time; equal times stay in order of arrival. */
-function inOrder({ tag, tMs, values, codes }: SamplesOfTag): SamplesOfTag {
-  const order = Array.from(tMs, (_, j) => j).sort((a, b) => tMs[a]! - tMs[b]! || a - b)
-  return {
-    tag,
-    tMs: Float64Array.from(order, (j) => tMs[j]!),
-    values: Float64Array.from(order, (j) => values[j]!),
-    codes: Uint8Array.from(order, (j) => codes[j]!),
   }
 }

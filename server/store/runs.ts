@@ -40,7 +40,7 @@ export function runStore(db: Database.Database) {
     `INSERT INTO run (skid_id, title, skid_file, skid_text, source, started_ms, tool_version, state)
      VALUES (@skidId, @title, @skidFile, @skidText, @source, @startedMs, @toolVersion, @state)`,
   )
-  const insertHead = db.prepare('INSERT INTO head (run, next_seq, rows, staged_rows, staged_ticks) VALUES (?, 0, 0, 0, 0)')
+  const insertHead = db.prepare('INSERT INTO head (run, next_seq, rows, acts, staged_rows, staged_ticks) VALUES (?, 0, 0, 0, 0, 0)')
   const all = db.prepare<[], RunSummary>(`SELECT ${columns} FROM run WHERE state <> 'deleted' ORDER BY id`)
   const one = db.prepare<[RunId], Run>(`SELECT ${columns}, skid_text AS skidText FROM run WHERE id = ? AND state <> 'deleted'`)
   const state = db.prepare("UPDATE run SET state = ? WHERE id = ? AND state <> 'deleted'")

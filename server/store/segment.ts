@@ -79,9 +79,10 @@ export class Columns {
 const out = new ByteWriter()
 const part = new ByteWriter()
 
-/** Times of the rows, places and times of the ticks. */
-export function encodeOrder(columns: Columns): Uint8Array {
+/** Numbers [start, end), rows, ticks; times of the rows, places and times of the ticks. */
+export function encodeOrder(columns: Columns, start: number, end: number): Uint8Array {
   out.clear()
+  for (const n of [start, end, columns.rows, columns.ticks]) out.varint(n)
   writeNumbers(out, columns.tMs, columns.rows)
   writeNumbers(out, Float64Array.from(columns.tickAt), columns.ticks)
   writeNumbers(out, Float64Array.from(columns.tickMs), columns.ticks)
@@ -89,14 +90,21 @@ export function encodeOrder(columns: Columns): Uint8Array {
 }
 
 export interface Order {
+  readonly start: number
+  readonly end: number
   readonly tMs: Float64Array
   readonly tickAt: Float64Array
   readonly tickMs: Float64Array
 }
 
-export function decodeOrder(body: Uint8Array, rows: number, ticks: number): Order {
+/** Errors: STORE_CORRUPT. */
+export function decodeOrder(body: Uint8Array): Order {
   const from = ByteReader.open(body)
-  const order = { tMs: new Float64Array(rows), tickAt: new Float64Array(ticks), tickMs: new Float64Array(ticks) }
+  const start = from.varint()
+  const end = from.varint()
+  const rows = from.varint()
+  const ticks = from.varint()
+  const order = { start, end, tMs: new Float64Array(rows), tickAt: new Float64Array(ticks), tickMs: new Float64Array(ticks) }
   readNumbers(from, order.tMs, rows)
   readNumbers(from, order.tickAt, ticks)
   readNumbers(from, order.tickMs, ticks)

@@ -1,8 +1,9 @@
 import type Database from 'better-sqlite3'
-import { MonitorError } from '../core/errors.ts'
-import { keyOf, type RunId } from './keys.ts'
+import { checksum, damaged } from './checksum.ts'
+import { keyOf, type RunId, seqOf } from './keys.ts'
 import { type Columns, decodeOrder, encodeOrder, encodeStrips, type Order } from './segment.ts'
-import { cells, encodePage, fan, merge, openPage, type Page, summarise } from './tiers.ts'
+import { encodePage, openPage } from './tier-page.ts'
+import { cells, fan, merge, type Page, summarise } from './tiers.ts'
 
 export interface Node {
   readonly id: number
@@ -12,31 +13,36 @@ export interface Node {
   readonly tMin: number
   readonly tMax: number
   readonly cellMs: number
+  readonly sum: number
 }
 
-const node = 'id, level, seq, end_seq AS endSeq, t_min AS tMin, t_max AS tMax, cell_ms AS cellMs'
-
-export const damaged = (what: string) =>
-  new MonitorError('STORE_CORRUPT', `the store lacks ${what}`, { hint: 'restore the data folder from a backup' })
+const node = 'id, level, seq, end_seq AS endSeq, t_min AS tMin, t_max AS tMax, cell_ms AS cellMs, sum'
 
 /** Packed segments with their strips, and the tree of summary pages above them. Callers bring the transaction. */
 export function segmentTable(db: Database.Database) {
-  const insert = db.prepare('INSERT INTO segment (id, count, rows, ticks, body) VALUES (?, ?, ?, ?, ?)')
+  const insert = db.prepare('INSERT INTO segment (id, body) VALUES (?, ?)')
   const insertStrip = db.prepare('INSERT INTO strip (segment, strip, body) VALUES (?, ?, ?)')
   const insertPage = db.prepare(
-    'INSERT INTO tier (run, level, seq, end_seq, t_min, t_max, cell_ms, body) VALUES (?, ?, ?, ?, ?, ?, ?, ?)',
+    'INSERT INTO tier (run, level, seq, end_seq, t_min, t_max, cell_ms, sum, body) VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)',
   )
   const top = db.prepare<[RunId], number>('SELECT max(level) FROM tier WHERE run = ?').pluck()
   const covered = db
     .prepare<[RunId, number], number>('SELECT end_seq FROM tier WHERE run = ? AND level = ? ORDER BY seq DESC LIMIT 1')
     .pluck()
-  const between = db.prepare<[RunId, number, number, number], Node>(
+  const select = db.prepare<[RunId, number, number, number], Node>(
     `SELECT ${node} FROM tier WHERE run = ? AND level = ? AND seq >= ? AND seq < ? ORDER BY seq`,
   )
+  const between = (run: RunId, level: number, from: number, to: number): Node[] => {
+    const nodes = select.all(run, level, from, to)
+    for (const { level: l, seq, endSeq, tMin, tMax, cellMs, sum } of nodes)
+      if (sum !== checksum([run, l, seq, endSeq, tMin, tMax, cellMs])) throw damaged(`summary page ${seq} of run ${run}`)
+    return nodes
+  }
   const body = db.prepare<[number], Buffer>('SELECT body FROM tier WHERE id = ?').pluck()
-  const segment = db.prepare<[number], { rows: number; ticks: number; body: Buffer }>(
-    'SELECT rows, ticks, body FROM segment WHERE id = ?',
-  )
+  const segment = db.prepare<[number], Buffer>('SELECT body FROM segment WHERE id = ?').pluck()
+  const before = db
+    .prepare<[number, number], number>('SELECT id FROM segment WHERE id <= ? AND id >= ? ORDER BY id DESC LIMIT 1')
+    .pluck()
   const strip = db.prepare<[number, number], Buffer>('SELECT body FROM strip WHERE segment = ? AND strip = ?').pluck()
 
   const page = (id: number) => {
@@ -45,17 +51,27 @@ export function segmentTable(db: Database.Database) {
     return openPage(found)
   }
   const addPage = (run: RunId, level: number, seq: number, endSeq: number, tMin: number, tMax: number, made: Page): void => {
-    insertPage.run(run, level, seq, endSeq, tMin, tMax, made.cellMs, encodePage(made))
+    insertPage.run(
+      run,
+      level,
+      seq,
+      endSeq,
+      tMin,
+      tMax,
+      made.cellMs,
+      checksum([run, level, seq, endSeq, tMin, tMax, made.cellMs]),
+      encodePage(made),
+    )
   }
   /** From where the next level up stops, every page is a root of this level. */
-  const rootsOf = (run: RunId, level: number): Node[] => between.all(run, level, covered.get(run, level + 1) ?? 0, Infinity)
+  const rootsOf = (run: RunId, level: number): Node[] => between(run, level, covered.get(run, level + 1) ?? 0, Infinity)
 
   return {
     /** Writes the columns as the segment of numbers [seq, endSeq) with its pages, merging upwards where `fan` pages have come together. */
     add(run: RunId, seq: number, endSeq: number, columns: Columns): void {
       const key = keyOf(run, seq)
       const { strips, places } = encodeStrips(columns)
-      insert.run(key, endSeq - seq, columns.rows, columns.ticks, encodeOrder(columns))
+      insert.run(key, encodeOrder(columns, seq, endSeq))
       strips.forEach((bytes, i) => {
         insertStrip.run(key, i, bytes)
       })
@@ -96,7 +112,7 @@ export function segmentTable(db: Database.Database) {
       }
       const down = (n: Node): void => {
         if (n.tMax < fromMs || n.tMin >= toMs || use(n) || n.level === 0) return
-        const children = between.all(run, n.level - 1, n.seq, n.endSeq)
+        const children = between(run, n.level - 1, n.seq, n.endSeq)
         if (inOrder(children, n.seq) !== n.endSeq) throw damaged(`summary pages of ${n.seq} to ${n.endSeq} of run ${run}`)
         for (const child of children) down(child)
       }
@@ -110,15 +126,21 @@ export function segmentTable(db: Database.Database) {
     /** Number of the first entry that is not packed yet. */
     end: (run: RunId): number => covered.get(run, 0) ?? 0,
     page,
-    order(run: RunId, seq: number): Order & { key: number } {
-      const key = keyOf(run, seq)
-      const found = segment.get(key)
-      if (found === undefined) throw damaged(`segment ${seq} of run ${run}`)
-      return { key, ...decodeOrder(found.body, found.rows, found.ticks) }
+    /** First number of the segment that holds number `seq`, which is below `end`. */
+    at(run: RunId, seq: number): number {
+      const found = before.get(keyOf(run, seq), keyOf(run, 0))
+      if (found === undefined) throw damaged(`the segment of entry ${seq} of run ${run}`)
+      return seqOf(found)
     },
-    strip(key: number, index: number): Buffer {
-      const found = strip.get(key, index)
-      if (found === undefined) throw damaged(`strip ${index} of segment ${key}`)
+    /** Errors: STORE_CORRUPT. */
+    order(run: RunId, seq: number): Order {
+      const found = segment.get(keyOf(run, seq))
+      if (found === undefined) throw damaged(`segment ${seq} of run ${run}`)
+      return decodeOrder(found)
+    },
+    strip(run: RunId, seq: number, index: number): Buffer {
+      const found = strip.get(keyOf(run, seq), index)
+      if (found === undefined) throw damaged(`strip ${index} of segment ${seq} of run ${run}`)
       return found
     },
   }

@@ -23,6 +23,10 @@ export function entryAt(run: number, seq: number): Entry {
   }
 }
 
+/** Entries with from ≤ number < to. */
+export const entriesOf = (run: number, from: number, to: number): Entry[] =>
+  Array.from({ length: to - from }, (_, i) => entryAt(run, from + i))
+
 export function work(dir: string, runs: readonly RunId[], say: (line: string) => void): void {
   const store = openStore(dir)
   for (let round = 0; ; round++) {
