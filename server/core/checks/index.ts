@@ -2,7 +2,14 @@ import { flowExamples } from './flow-examples.ts'
 import { heatExamples } from './heat-examples.ts'
 import { liquidExamples } from './liquid-examples.ts'
 import { residenceExamples } from './residence-examples.ts'
+import { statisticsExamples } from './statistics-examples.ts'
 import type { WorkedExample } from './worked-example.ts'
 
 /** Every published figure that `self-check` recomputes; one file a subject, added here. */
-export const workedExamples: readonly WorkedExample[] = [...flowExamples, ...heatExamples, ...residenceExamples, ...liquidExamples]
+export const workedExamples: readonly WorkedExample[] = [
+  ...flowExamples,
+  ...heatExamples,
+  ...residenceExamples,
+  ...liquidExamples,
+  ...statisticsExamples,
+]

@@ -5,7 +5,7 @@ import { type FlushInput, type FlushSettings, flushDefaults } from './input.ts'
 import { activeStreams, carriedBy, inventoryOf } from './inventory.ts'
 import { type FlushPath, flushPath } from './legs.ts'
 import { flushLiquids } from './liquids.ts'
-import { addMinutes, type Stage } from './stage.ts'
+import { addKnown, type Stage } from './stage.ts'
 import { displace, prepare, warm } from './steps-displace.ts'
 import { recool, restart } from './steps-recover.ts'
 import { dry, water } from './steps-water.ts'
@@ -74,7 +74,9 @@ export function planFlush(input: FlushInput): FlushPlan {
   const liquids = flushLiquids(path, settings)
   const { ids: active, assumption } = activeStreams(path)
   const reagents = carriedBy(path, active)
-  const stage: Stage = { path, liquids, settings, active }
+  const inventory = path.legs.map((l) => inventoryOf(l.op, reagents.carried, active))
+  const activeMol = addKnown(...inventory.flatMap((i) => i.reagents.filter((x) => active.includes(x.stream)).map((x) => x.mol)))
+  const stage: Stage = { path, liquids, settings, active, activeMol }
   const f1 = displace(stage)
   const f3 = water(stage)
   const f4 = dry(stage)
@@ -94,7 +96,6 @@ export function planFlush(input: FlushInput): FlushPlan {
     ...(stuck === null && wet !== null ? [{ step: 'F3', reason: `${wet}: escalate before water.` }] : []),
   ]
   const leftOut = path.legs.some((l) => !l.asked && l.op.volumeM3 === null)
-  const inventory = path.legs.map((l) => inventoryOf(l.op, reagents.carried, active))
   const cautions = [
     standing,
     "To be approved by the site's authorised person. Another ratio, temperature, flow or tracer test than counted here changes the plan.",
@@ -123,7 +124,7 @@ export function planFlush(input: FlushInput): FlushPlan {
     steps,
     segments: [...input.segments],
     path: path.legs.map((l) => l.id),
-    totalMinutes: addMinutes(...steps.map((s) => s.minutes)),
+    totalMinutes: addKnown(...steps.map((s) => s.minutes)),
     inventory,
     waterReference: f3.reference,
     refused,

@@ -10,6 +10,8 @@ export interface Stage {
   readonly liquids: FlushLiquids
   readonly settings: FlushSettings
   readonly active: readonly string[]
+  /** Active reagent on the whole path before the flush, mol; null where a part is not computed. */
+  readonly activeMol: number | null
 }
 
 /** A step and what could not be computed for it. */
@@ -58,7 +60,7 @@ export const finish = (d: Draft): FlushStep => ({
 export const pumpMinutes = (volumeM3: number | null, flowM3S: number | null): number | null =>
   volumeM3 === null || flowM3S === null || flowM3S <= 0 ? null : volumeM3 / flowM3S / 60
 /** Sum that is null where a part is. */
-export const addMinutes = (...parts: readonly (number | null)[]): number | null =>
+export const addKnown = (...parts: readonly (number | null)[]): number | null =>
   parts.reduce<number | null>((a, b) => (a === null || b === null ? null : a + b), 0)
 export const criterion = (id: string, text: string): FlushCriterion => ({ id, text })
 export const shown = (value: number | null, unit: string, digits = 3): string =>

@@ -1,7 +1,7 @@
 import { cFromK, kFromC } from '../units.ts'
 import { cappedFlow } from './hydraulic-cap.ts'
 import { cleanPath } from './legs.ts'
-import { addMinutes, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage } from './stage.ts'
+import { addKnown, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage } from './stage.ts'
 import { washout } from './washout.ts'
 
 const activeNames = ({ path, active }: Stage): string =>
@@ -66,7 +66,7 @@ export function displace(stage: Stage): Built & Flows {
       liquid: `dry ${liquids.displacement.name}`,
       flowM3S: cap.flowM3S,
       volumeM3: out.volumeM3,
-      minutes: addMinutes(pumpMinutes(out.volumeM3, cap.flowM3S), settings.confirmMinutes),
+      minutes: addKnown(pumpMinutes(out.volumeM3, cap.flowM3S), settings.confirmMinutes),
       holdPoints: [
         'Before this step: F0 accepted; peroxide test of the solvent in date.',
         `Every leg in turn, with bypasses and dead legs${path.legs.length > 1 ? `: ${path.legs.map((l) => l.id).join(', ')}` : ''}; the last volume fully water-miscible (here ${liquids.displacement.name} throughout).`,
@@ -102,6 +102,11 @@ export function displace(stage: Stage): Built & Flows {
           .filter((l) => l.leg.asked)
           .map((l) => `${l.leg.id}: ${(l.predictedPa / 1e5).toFixed(2)} bar predicted at ${cFromK(l.tempK).toFixed(0)} °C`),
         ...out.basis,
+        ...(stage.activeMol === null || out.volumeM3 === null
+          ? []
+          : [
+              `leaves at most ${(stage.activeMol * settings.residualFraction * 1e3).toPrecision(2)} mmol of ${(stage.activeMol * 1e3).toPrecision(3)} mmol organolithium, by the model`,
+            ]),
       ],
     }),
   }

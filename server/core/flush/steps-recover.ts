@@ -1,7 +1,7 @@
 import { cFromK, kFromC } from '../units.ts'
 import { cappedFlow } from './hydraulic-cap.ts'
 import { cleanPath } from './legs.ts'
-import { addMinutes, type Built, criterion, finish, pumpMinutes, type Stage } from './stage.ts'
+import { addKnown, type Built, criterion, finish, pumpMinutes, type Stage } from './stage.ts'
 import { washout } from './washout.ts'
 
 /** F5: the deposit is gone by now, the clean channel counts. Cool again with dry solvent flowing. */
@@ -56,7 +56,7 @@ export function restart(stage: Stage): Built {
       liquid: 'feeds',
       flowM3S: cap.flowM3S,
       volumeM3: out.volumeM3,
-      minutes: addMinutes(pumpMinutes(out.volumeM3, cap.flowM3S), settings.confirmMinutes),
+      minutes: addKnown(pumpMinutes(out.volumeM3, cap.flowM3S), settings.confirmMinutes),
       holdPoints: [
         `Before this step: F5 accepted; feed drums' Karl Fischer results in date. Order advised: solvent, partner feeds, ${active.length === 0 ? 'organolithium' : active.join(', ')} last.`,
       ],

@@ -5,7 +5,7 @@ import { cappedFlow } from './hydraulic-cap.ts'
 import { depositKg } from './inventory.ts'
 import { cleanPath } from './legs.ts'
 import { waterShareLeft } from './liquids.ts'
-import { addMinutes, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage, shown } from './stage.ts'
+import { addKnown, type Built, criterion, type Flows, finish, parallelHazard, pumpMinutes, type Stage, shown } from './stage.ts'
 import { washout } from './washout.ts'
 
 /**
@@ -30,7 +30,7 @@ export function water(stage: Stage): Built & Flows & { readonly reference: reado
       ? null
       : least.heatJ / (volumeM3 * liquids.water.at(tempK).rhoKgM3 * liquids.water.at(tempK).cpJKgK)
   const startM3 = out.pathM3 === null || volumeM3 === null ? null : Math.min(out.pathM3, volumeM3)
-  const minutes = addMinutes(
+  const minutes = addKnown(
     pumpMinutes(startM3, cap.flowM3S === null ? null : cap.flowM3S * settings.waterStartShare),
     pumpMinutes(volumeM3 === null || startM3 === null ? null : volumeM3 - startM3, cap.flowM3S),
     settings.soakMinutes,
@@ -137,7 +137,7 @@ export function dry(stage: Stage): Built {
       liquid: `dry ${liquids.drying.name}`,
       flowM3S: cap.flowM3S,
       volumeM3: out.volumeM3,
-      minutes: addMinutes(pumpMinutes(out.volumeM3, cap.flowM3S), 2 * settings.karlFischerMinutes, settings.confirmMinutes),
+      minutes: addKnown(pumpMinutes(out.volumeM3, cap.flowM3S), 2 * settings.karlFischerMinutes, settings.confirmMinutes),
       holdPoints: [
         'Before this step: F3 accepted; peroxide test of the solvent in date.',
         `Fully water-miscible and dry (feed below ${settings.drySolventPpm} ppm); not hexane, toluene or 2-methyltetrahydrofuran. Dead legs and sample points too.`,

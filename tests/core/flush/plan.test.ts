@@ -159,6 +159,8 @@ it('counts the inventory by hand: 63.6 mL of R1 hold 45.7 mmol hexyllithium, 11 
   expect(inventory?.hydrolysisKJ).toBeCloseTo(0.0459 * 240, 0)
   expect(inventory?.reactionKJ).toBeCloseTo(0.0636 * (6.764 / 9.855) * 160, 1)
   expect(r1().inventory.map((i) => i.segment)).toEqual(['PA', 'PB', 'R1', 'PC', 'R2'])
+  // a thousandth of 4.6 + 45.9 + 23.9 mmol
+  expect(step(r1(), 'F1').basis.join(' ')).toMatch(/leaves at most 0\.07\d mmol of 74\.\d mmol organolithium/)
 })
 
 it('names parallel branches in F1 and F3, back-flow and the quench order in F1, blocked-in liquid in F2, ice in F5', () => {
