@@ -1,0 +1,187 @@
+import type { Priority } from '../../server/core/report.ts'
+import type { AlarmRow, LiveState, SegmentFacts, SegmentState, SkidFacts } from '../../server/wire/index.ts'
+import type { ZoneClock } from './clock.ts'
+import { duration, figure, fixed, range, unitText } from './format.ts'
+import { actionWords, causeWords, inPlantTime, kindWords, limitWords } from './words.ts'
+
+/** One of the four answers: what is read from three metres, and the sentence below that says on what it rests. */
+export interface Answer {
+  readonly far: string
+  /** Smaller, after `far`: a unit, or the upper end of a range. */
+  readonly unit: string | null
+  readonly to: string | null
+  readonly below: string
+}
+
+export interface Answers {
+  /** Segment that the answers are about; null when nothing stands. */
+  readonly segment: string | null
+  readonly alarm: AlarmRow | null
+  readonly where: Answer
+  readonly howBad: Answer
+  readonly howLong: Answer
+  readonly whatNow: Answer
+}
+
+const weight: Record<Priority, number> = { high: 3, medium: 2, low: 1 }
+/** Among alarms of one priority the faster hazard comes first. */
+const urgency = [
+  'exotherm',
+  'temperature-limit',
+  'pressure-limit',
+  'dp-limit',
+  'fouling',
+  'feed-ratio',
+  'flow',
+  'no-data',
+  'monitor',
+  'sensor',
+]
+const answer = (far: string, below: string, unit: string | null = null, to: string | null = null): Answer => ({
+  far,
+  unit,
+  to,
+  below,
+})
+
+/** The standing alarm that the answers are about: most urgent priority, then fastest hazard, then the one furthest above clean. */
+export function leading(state: LiveState): AlarmRow | null {
+  const ratio = (a: AlarmRow) => state.segments.find((s) => s.segment === a.segment)?.ratio ?? 0
+  const standing = state.alarms.filter((a) => a.active && a.state !== 'SHELVED' && a.state !== 'SBD' && a.state !== 'OOS')
+  return (
+    standing.sort(
+      (a, b) =>
+        weight[b.priority] - weight[a.priority] ||
+        urgency.indexOf(a.kind) - urgency.indexOf(b.kind) ||
+        ratio(b) - ratio(a) ||
+        b.raisedMs - a.raisedMs,
+    )[0] ?? null
+  )
+}
+
+/** Where, how bad, how long, what now. Null state: nothing is known yet. */
+export function answersOf(facts: SkidFacts, state: LiveState, clock: ZoneClock): Answers {
+  const alarm = leading(state)
+  const spec = facts.segments.find((s) => s.id === alarm?.segment)
+  const now = state.segments.find((s) => s.segment === alarm?.segment)
+  const whatNow = nowOf(state, clock, alarm)
+  if (alarm === null) return { segment: null, alarm, ...quiet(state), whatNow }
+  return {
+    segment: alarm.segment,
+    alarm,
+    where: answer(
+      alarm.segment ?? alarm.tag ?? 'Skid',
+      [kindWords[alarm.kind], alarm.cause === null ? null : causeWords[alarm.cause], placeOf(alarm, spec)]
+        .filter(Boolean)
+        .join(', '),
+    ),
+    howBad: badOf(alarm, now, spec),
+    howLong: longOf(alarm, now, state.clock.nowMs, clock),
+    whatNow,
+  }
+}
+
+function placeOf(alarm: AlarmRow, spec: SegmentFacts | undefined): string | null {
+  if (spec === undefined) return null
+  if (alarm.tag !== null) return alarm.tag
+  return (
+    spec.dpTag ??
+    (spec.pressureIn !== null && spec.pressureOut !== null ? `${spec.pressureIn} to ${spec.pressureOut}` : spec.pressureIn)
+  )
+}
+
+function badOf(alarm: AlarmRow, now: SegmentState | undefined, spec: SegmentFacts | undefined): Answer {
+  const ratio = fixed(now?.ratio, 2)
+  const dp = now?.dpBar == null ? null : `ΔP ${fixed(now.dpBar, 2)} bar`
+  const clean = now?.cleanDpBar == null ? null : `clean would be ${fixed(now.cleanDpBar, 2)} bar`
+  if (alarm.kind === 'fouling') {
+    if (ratio === null) return answer('not known', dp ?? 'no ratio: readings bad or not in production')
+    return answer(ratio, [dp, clean].filter(Boolean).join(', '), '× clean')
+  }
+  if (alarm.kind === 'dp-limit' && now?.dpNowBar != null)
+    return answer(
+      fixed(now.dpNowBar, 2)!,
+      [limitOf(alarm), ratio === null ? null : `${ratio} × clean`].filter(Boolean).join(', '),
+      'bar',
+    )
+  const hot = hottest(now)
+  if ((alarm.kind === 'exotherm' || alarm.kind === 'temperature-limit') && hot !== null)
+    return answer(
+      fixed(hot.tempC, 1)!,
+      `${hot.tag}, the highest of ${spec?.id ?? 'it'}${limitOf(alarm) === '' ? '' : `; ${limitOf(alarm)}`}`,
+      '°C',
+    )
+  const value = fixed(alarm.value, 2)
+  return value === null
+    ? answer('see alarm', alarm.message)
+    : answer(value, `when raised; ${limitOf(alarm)}`.replace(/; $/, ''), unitText(alarm.unit))
+}
+
+const limitOf = (alarm: AlarmRow): string => (alarm.limit === null ? '' : `limit ${figure(alarm.limit, alarm.unit)}`)
+const hottest = (now: SegmentState | undefined) =>
+  (now?.temperatures ?? []).reduce<{ tag: string; tempC: number } | null>(
+    (top, t) => (t.tempC !== null && (top === null || t.tempC > top.tempC) ? { tag: t.tag, tempC: t.tempC } : top),
+    null,
+  )
+
+/** Always a range, never a single time. */
+function longOf(alarm: AlarmRow, now: SegmentState | undefined, nowMs: number, clock: ZoneClock): Answer {
+  const f = now?.forecast ?? null
+  const limit = now?.limits.dpHighBar ?? now?.limits.dpHighHighBar ?? null
+  if (limit !== null && now?.dpNowBar != null && now.dpNowBar >= limit)
+    return answer('limit met', `ΔP ${fixed(now.dpNowBar, 2)} bar, limit ${fixed(limit, 1)} bar`)
+  if (f !== null) {
+    const { low, high } = range(f.lowMs - nowMs, f.highMs - nowMs)
+    const words = limitWords[f.limit]
+    return answer(
+      low,
+      `to the ${f.limitBar === null ? '' : `${fixed(f.limitBar, 1)} bar `}${words.name}, ${clock.hm(f.lowMs)} to ${clock.hm(f.highMs)} (${Math.round(100 * f.level)} %)`,
+      null,
+      high,
+    )
+  }
+  if (alarm.help !== null && alarm.kind !== 'fouling')
+    return answer(duration(alarm.help.timeToRespondS * 1000), 'time to respond by the alarm’s rationalisation; no forecast')
+  return answer(
+    'no forecast',
+    now?.growthPerHour == null
+      ? 'growth not yet sure enough'
+      : `grows ${fixed(now.growthPerHour, 2)} a hour; no limit within reach`,
+  )
+}
+
+function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> {
+  const known = state.segments.filter((s) => s.ratio !== null)
+  const top = known.reduce<SegmentState | null>((t, s) => (t === null || s.ratio! > t.ratio! ? s : t), null)
+  const based = state.segments.filter((s) => s.baseline !== null).length
+  const howLong = answer('no limit', 'nothing grows, so nothing is extrapolated')
+  if (top === null)
+    return {
+      where: answer('not yet', based === 0 ? 'no clean baseline yet, so no verdict' : 'no ratio now: not in production'),
+      howBad: answer('not known', 'no ratio of resistance to clean'),
+      howLong: answer('not known', 'no forecast without a ratio'),
+    }
+  return {
+    where: answer('All steady', `no alarm stands; ${known.length} of ${state.segments.length} segments judged`),
+    howBad: answer(fixed(top.ratio, 2)!, `the highest, ${top.segment}`, '× clean'),
+    howLong,
+  }
+}
+
+function nowOf(state: LiveState, clock: ZoneClock, alarm: AlarmRow | null): Answer {
+  const advice = state.advice[0]
+  if (advice === undefined)
+    return alarm === null
+      ? answer('Carry on', 'nothing advised; keep to the site procedure')
+      : answer('See the alarm', 'no advice beyond the text of the alarm')
+  const reason = inPlantTime(advice.reason, clock, state.clock.nowMs)
+  return answer(
+    actionWords[advice.action],
+    `${advice.segments.length === 0 ? '' : `for ${advice.segments.join(', ')}: `}${firstClause(reason)}`,
+  )
+}
+
+const firstClause = (text: string): string => {
+  const end = text.search(/[;.] /)
+  return end < 0 || end > 140 ? (text.length > 140 ? `${text.slice(0, 139)}…` : text) : text.slice(0, end)
+}

@@ -1,0 +1,48 @@
+import type { Priority } from '../../server/core/report.ts'
+import type { Point } from '../model/series.ts'
+
+/** What stands in a trend besides its lines. Times in ms, values on the chart's own scale. */
+export interface Overlay {
+  /** Right of it nothing is known: now, or the moment shown. */
+  readonly nowMs: number
+  readonly nowLabel: string | null
+  readonly bands: readonly {
+    readonly fromMs: number
+    readonly toMs: number
+    readonly low: number
+    readonly high: number
+    readonly label: string
+  }[]
+  /** A limit as it was in force: value from `fromMs` on; the last holds to the end. side 1: above is not allowed. */
+  readonly limits: readonly {
+    readonly steps: readonly { readonly fromMs: number; readonly value: number | null }[]
+    readonly side: 1 | -1
+    readonly label: string
+  }[]
+  readonly gaps: readonly { readonly fromMs: number; readonly toMs: number; readonly label: string }[]
+  readonly fan: {
+    readonly low: readonly Point[]
+    readonly mid: readonly Point[]
+    readonly high: readonly Point[]
+    readonly limit: number
+    readonly lowMs: number
+    readonly highMs: number
+    readonly label: string
+  } | null
+  readonly onset: { readonly lowMs: number; readonly atMs: number; readonly highMs: number; readonly label: string } | null
+  readonly alarms: readonly { readonly tMs: number; readonly priority: Priority }[]
+  /** A dashed upright with words: a change, a moment of notice. */
+  readonly notes: readonly { readonly tMs: number; readonly label: string }[]
+}
+
+export const emptyOverlay = (nowMs: number): Overlay => ({
+  nowMs,
+  nowLabel: null,
+  bands: [],
+  limits: [],
+  gaps: [],
+  fan: null,
+  onset: null,
+  alarms: [],
+  notes: [],
+})
