@@ -12,8 +12,8 @@ const logBetween = (r: Random, low: number, high: number): number => Math.exp(r.
 const spanOf = (tag: TagSpec): number => (tag.range === null ? 25 : tag.range[1] - tag.range[0])
 const sign = (r: Random): number => (r.chance(0.5) ? 1 : -1)
 
-/** A step, slug, drift or the like that is no deposit, somewhere between two hours. */
-function confounder(skid: Skid, r: Random, fromH: number, toH: number): SimEvent {
+/** A step, slug, drift or the like that is no deposit, somewhere between two hours. `ratioHeld`: none that moves one feed alone. */
+function confounder(skid: Skid, r: Random, fromH: number, toH: number, ratioHeld = false): SimEvent {
   const atHours = rounded(r.between(fromH, toH))
   const stream = r.pick(skid.streams).id
   const step = () => rounded(r.chance(0.5) ? r.between(0.78, 0.95) : r.between(1.05, 1.22))
@@ -38,7 +38,10 @@ function confounder(skid: Skid, r: Random, fromH: number, toH: number): SimEvent
     () => ({ kind: 'pumpSlip', atHours, stream, factor: rounded(r.between(0.85, 0.95)), overS: Math.round(r.between(600, 5400)) }),
     () => ({ kind: 'nanGap', atHours, minutes: rounded(r.between(2, 12)), tags: r.chance(0.5) ? 'all' : [r.pick(skid.tags).tag] }),
   ]
-  return r.pick(kinds)()
+  for (;;) {
+    const event = r.pick(kinds)()
+    if (!ratioHeld || (event.kind !== 'flowStepOne' && event.kind !== 'pumpSlip')) return event
+  }
 }
 
 function sensorFault(skid: Skid, r: Random, fromH: number, toH: number): SimEvent {
@@ -138,7 +141,7 @@ export function randomScenario(skid: Skid, kind: ScenarioKind, seed: number, ove
         factor: what === 'dosing-ratio' ? factor : 1,
       }
     })
-    return scenarioOf({ ...base, hours, logSeconds: 1, events: [...events, ...confounders(1, h0 + 0.6)] })
+    return scenarioOf({ ...base, hours, logSeconds: 1, events: [...events, confounder(skid, r, h0 + 0.3, h0 + 0.5, true)] })
   }
   const hours = rounded(h0 + (kind === 'sensor' ? r.between(4, 6) : kind === 'dirty' ? r.between(2, 3) : r.between(8, 12)), 2)
   const events = confounders(Math.floor(kind === 'clean' ? r.between(3, 7) : r.between(1, 3)), hours)
