@@ -77,12 +77,20 @@ function shares(dtS: number): readonly number[] {
   return last
 }
 
-/** How far the lag in use and its neighbours differ now, K: half of it is what the model may err by. */
+/**
+ * How far the lag in use may be wrong now, K: its difference to its neighbours, and to every other lag that the data do not yet rule out
+ * (log likelihood within 2 of the best; overlapping 3-min differences count for a sixth).
+ */
 export function lagDoubtK(s: Coolant): number {
   const f = s.f[s.best] as number
-  const up = s.best + 1 < lagsS.length ? Math.abs((s.f[s.best + 1] as number) - f) : 0
-  const down = s.best > 0 ? Math.abs((s.f[s.best - 1] as number) - f) : 0
-  return Math.max(up, down)
+  const least = s.cost[s.best] as number
+  let doubt = 0
+  for (let k = 0; k < lagsS.length; k++) {
+    const near = Math.abs(k - s.best) <= 1
+    const open = near || ((s.cost[k] as number) - least) * s.weighed <= 24 * least
+    if (open) doubt = Math.max(doubt, Math.abs((s.f[k] as number) - f))
+  }
+  return doubt
 }
 
 /** Ends a block: pushes the means of the lags and returns the mean of the one in use, null where nothing came. */

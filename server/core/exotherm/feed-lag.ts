@@ -2,7 +2,18 @@ import type { ReactorConfig, ReactorScan } from './types.ts'
 import type { Reactor } from './watch-state.ts'
 
 /** Lags of the feed, s: the one in use, a faster and a slower one for the doubt between, and a long one. */
-export const feedLagsS = [35, 20, 55, 600] as const
+export const feedLagsS = [35, 10, 55, 600] as const
+
+/** The limiting feed; all feeds together where nothing is known of the wall. */
+function feedOf(rc: ReactorConfig, s: ReactorScan): number | null {
+  if (rc.coolant !== null) return s.flowsKgS[rc.limiting ?? 0] ?? null
+  let sum = 0
+  for (const f of s.flowsKgS) {
+    if (f === null) return null
+    sum += f
+  }
+  return s.flowsKgS.length === 0 ? null : sum
+}
 
 /** A feed ten times its reference says no more than that. */
 const mostH = 10
@@ -12,7 +23,7 @@ const mostH = 10
  * longer than `gapS`, the move itself stays in doubt until the lag has forgotten it.
  */
 export function feedScan(r: Reactor, rc: ReactorConfig, s: ReactorScan, tMs: number, gapS: number): void {
-  const flow = s.flowsKgS[rc.limiting ?? 0] ?? null
+  const flow = feedOf(rc, s)
   if (flow === null || !s.production) return
   r.flowSum += flow
   r.flowN++

@@ -1,6 +1,6 @@
 import { type Coolant, chooseLag, coolantBlock, lagBlocks, weighLags } from './coolant.ts'
 import { setReference } from './feed-lag.ts'
-import { learn } from './level.ts'
+import { learn, openGain } from './level.ts'
 import { push } from './ring.ts'
 import { restart } from './series.ts'
 import type { ReactorConfig, ReactorScan, WatchConfig } from './types.ts'
@@ -20,7 +20,10 @@ export function endBlock(config: WatchConfig, state: WatchState, scans: readonly
     const r = state.reactors[i] as Reactor
     const s = scans[i] as ReactorScan
     const base = rc.coolant === null ? 0 : (means[rc.coolant] ?? null)
-    if (s.armed && s.production && r.refKgS === 0 && r.flowN > 0) setReference(r)
+    if (s.armed && s.production && r.refKgS === 0 && r.flowN > 0) {
+      setReference(r)
+      for (const th of r.thermos) openGain(th.level)
+    }
     // A stop of over 8 min changes what is normal: the level starts anew, offsets stay.
     if (!s.production) r.outS += blockS
     const anew = s.production && r.outS > 480
@@ -35,7 +38,7 @@ export function endBlock(config: WatchConfig, state: WatchState, scans: readonly
         th.level.pco = 0
       }
       if (mean !== null && base !== null && s.production) {
-        learn(th.level, mean - base, rc.coolant === null || r.hN === 0 ? 1 : r.hSum / r.hN, blockS, !s.armed)
+        learn(th.level, mean - base, rc.coolant === null || r.hN === 0 ? 1 : r.hSum / r.hN, blockS, !s.armed || r.unsteady)
         if (rc.coolant !== null && r.sparedBlocks === 0) weighLags(state.coolants[rc.coolant] as Coolant, th.blocks)
       }
       th.c = s.armed && r.wasArmed ? th.nextC : th.level.c

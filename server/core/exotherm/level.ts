@@ -5,10 +5,11 @@
  *
  * z  30-s mean of T − lagged coolant, K      h  limiting feed over its reference [-]
  * c  excess at the reference feed, K; random walk of `walk` K per root hour
- * o  the thermocouple's own offset against the coolant's, K; prior 0 ± 0.7
- * so that c − o, the part that goes with the feed, is known from the start to within the offset. A gain that floats instead turns every
- * flow step into an alarm. Two-state Kalman filter; a block off by more than `far` hardly teaches (its variance is raised by the fourth
- * power of how far). Valid for |h − 1| up to about 0.5. Source: own study of methods on simulated skids.
+ * o  the part of it that does not go with the feed, K: the thermocouple's own offset against the coolant's, and what a warm inlet or a moving hot
+ *    spot make of the feed; prior 0 ± √(0.7² + (0.3 c)²)
+ * so that c − o, the part that goes with the feed, is known from the start to within that. A gain that floats instead turns every flow step into
+ * an alarm. Two-state Kalman filter; a block off by more than `far`, and by more than 2.5 sd of what the filter itself doubts, hardly teaches
+ * (its variance is raised by the fourth power of how far). Valid for |h − 1| up to about 0.5. Source: own study of methods on simulated skids.
  */
 export interface Level {
   c: number
@@ -24,8 +25,14 @@ const offsetSd = 0.7
 const noiseSd = 0.12
 const walk = 0.1
 const far = 0.35
+const gainSd = 0.3
 
 export const freshLevel = (): Level => ({ c: 0, o: 0, pcc: 1, pco: 0, poo: offsetSd * offsetSd, n: 0 })
+
+/** Once c is known: how far the gain may be from it. */
+export function openGain(l: Level): void {
+  l.poo += (gainSd * l.c) ** 2
+}
 
 /** What the level explains at feed h, K. */
 export const explained = (l: { readonly c: number; readonly o: number }, h: number): number => l.c * h - l.o * (h - 1)
@@ -37,10 +44,10 @@ export function learn(l: Level, zK: number, h: number, blockS: number, settling:
   l.pcc += settling ? 0.25 : (walk * walk * blockS) / 3600
   const b = 1 - h
   const off = zK - explained(l, h)
-  const ratio = settling ? 1 : Math.max(1, Math.abs(off) / far)
-  const noise = noiseSd * noiseSd * ratio ** 4
   const kc = l.pcc * h + l.pco * b
   const ko = l.pco * h + l.poo * b
+  const ratio = settling ? 1 : Math.max(1, Math.abs(off) / Math.max(far, 2.5 * Math.sqrt(h * kc + b * ko)))
+  const noise = noiseSd * noiseSd * ratio ** 4
   const s = h * kc + b * ko + noise
   l.c += (kc / s) * off
   l.o += (ko / s) * off

@@ -81,14 +81,18 @@ export const restart = (s: Series): void => {
   s.whole = 0
 }
 
-/** Greatest rise over 12 or 25 s to `nowK`, not yet remembered; null where the window has a hole. */
+/**
+ * Greatest rise over 12 or 25 s to `nowK`, not yet remembered, K; both windows must be without a hole, and the lesser rise is at least half the
+ * greater, or that is what is given: a dip of one moment, 12 s ago, is no rise.
+ */
 export function riseK(s: Series, p: Pace, nowK: number): number | null {
-  let most: number | null = null
-  for (const n of p.rise) {
-    const then = s.whole < n ? null : ago(s.recent, n - 1)
-    if (then !== null && (most === null || nowK - then > most)) most = nowK - then
-  }
-  return most
+  if (s.whole < p.rise[1]) return null
+  const short = ago(s.recent, p.rise[0] - 1)
+  const long = ago(s.recent, p.rise[1] - 1)
+  if (short === null || long === null) return null
+  const a = nowK - short
+  const b = nowK - long
+  return Math.min(Math.max(a, b), 2 * Math.min(a, b))
 }
 
 export function remember(s: Series, xK: number | null, slow: boolean): void {

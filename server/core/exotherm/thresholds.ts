@@ -11,7 +11,7 @@ export const exothermDefaults = {
   /** What the model may err by: share of the difference of neighbouring lags, of the gain for the flow's lag, sds of the offset. */
   lagShare: 0.5,
   flowShare: 0.9,
-  offsetSds: 1.3,
+  offsetSds: 2,
   ratioHighShare: 2 / 3,
   coldShare: 2,
   coldS: 30,
@@ -87,7 +87,7 @@ export function test(
 ): void {
   const share = ratioHigh ? d.ratioHighShare : 1
   const level = share * Math.max(leastK, d.sds * series.sdK) + allow
-  const rise = share * Math.max(d.riseK, d.sds * series.sdK) + allow
+  const rise = share * Math.max(d.riseK, Math.SQRT2 * d.sds * series.sdK) + allow
   const risen = riseK(series, p, x)
   // The latest reading itself must be half way there: one wild reading lives on in the mean for 4 s and is no excursion.
   const high = x > level && raw > 0.5 * level

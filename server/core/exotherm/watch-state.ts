@@ -23,7 +23,7 @@ export interface Thermo {
 export interface Reactor {
   readonly thermos: Thermo[]
   readonly mean: Series
-  /** Reference feed, kg/s, 0 until armed; the feed over it now, and through lags of 35, 20, 55 s and 10 min. */
+  /** Reference feed, kg/s, 0 until armed; the feed over it now, and through lags of 35, 10, 55 s and 10 min. */
   refKgS: number
   hNow: number
   h: number
@@ -40,8 +40,10 @@ export interface Reactor {
   flowMs: number
   outS: number
   wasArmed: boolean
-  /** Highest inlet reading over its level lately, K; only without a coolant reading. */
+  /** Only without a coolant reading: the inlet's readings of 15 min, how far they reach, K, and whether inlet or feed have moved. */
   readonly inlet: Ring
+  inletMoveK: number
+  unsteady: boolean
   over: boolean
   /** Blocks still too close to an excursion to weigh lags by. */
   sparedBlocks: number
@@ -101,7 +103,9 @@ export function freshWatch(config: WatchConfig): WatchState {
       flowMs: 0,
       outS: 0,
       wasArmed: false,
-      inlet: ring(rc.coolant === null ? 90 : 1),
+      inlet: ring(rc.coolant === null ? Math.max(2, Math.round(900 / (p.slowEvery * p.scanS))) : 1),
+      inletMoveK: 0,
+      unsteady: false,
       over: false,
       sparedBlocks: 0,
       startMs: 0,

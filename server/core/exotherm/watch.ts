@@ -1,6 +1,7 @@
 import { type Coolant, coolantScan, lagDoubtK, lagsS } from './coolant.ts'
 import { feedScan } from './feed-lag.ts'
 import { clearHubJones, hubJones } from './hub-jones.ts'
+import { followInlet, inletOf } from './inlet.ts'
 import { endBlock } from './learning.ts'
 import { explained } from './level.ts'
 import { ago, forget, meanOf, push } from './ring.ts'
@@ -18,7 +19,7 @@ import { freshWatch, hubJonesConfig, type Reactor, type Thermo, type WatchState 
  * (symbols: `level.ts`, `coolant.ts`; h the limiting feed over its reference through 35 s). It speaks when the 4-s mean of one thermocouple, of
  * a reactor or of all, two scans in a row, passes its threshold: the least one or 5.5 robust sd, plus what the model may err by at the moment;
  * or has risen by as much within 12 or 25 s; or when the criterion of Hub and Jones holds. It looks back only: the level is 30 to 60 s
- * old. Without a coolant reading the level is the temperature's own, and what the inlet brought along in the last 15 min is no excursion.
+ * old. Without a coolant reading the level is the temperature's own (`inlet.ts`).
  *
  * The state is plain JSON of bounded size and changes in place, since this runs for every thermocouple at every scan; write it out between scans.
  * Valid for scans of 0.1 to 60 s; above 4 s there is nothing to average and an excursion takes two scans. Not a safety function.
@@ -53,7 +54,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       const r = state.reactors[i] as Reactor
       const s = scans[i] as ReactorScan
       feedScan(r, config.reactors[i] as ReactorConfig, s, tMs, gapS)
-      const f = examine(r, config.reactors[i] as ReactorConfig, s, tMs, gap, slow)
+      const f = examine(i, scans, tMs, gap, slow)
       found.push(f)
       if (f.n > 0) {
         allSum += f.sum
@@ -99,7 +100,10 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     return rc.coolant === null ? null : (state.coolants[rc.coolant] as Coolant)
   }
 
-  function examine(r: Reactor, rc: ReactorConfig, s: ReactorScan, tMs: number, gap: boolean, slow: boolean): Finding {
+  function examine(i: number, scans: readonly ReactorScan[], tMs: number, gap: boolean, slow: boolean): Finding {
+    const r = state.reactors[i] as Reactor
+    const rc = config.reactors[i] as ReactorConfig
+    const s = scans[i] as ReactorScan
     const f = noFinding()
     const coolant = coolantOf(rc)
     const base = coolant === null ? 0 : (coolant.f[coolant.best] as number)
@@ -125,11 +129,10 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
         f.hotSpotC = t
       }
     }
+    const inlet = bare ? inletOf(scans, i) : null
     if (bare) {
-      const inlet = s.tempsC[0] ?? null
-      const first = r.thermos[0]
-      if (slow) push(r.inlet, inlet === null || first === undefined || r.thermos.length < 2 ? null : inlet - first.c)
-      for (let n = 0; n < r.inlet.v.length; n++) doubt = Math.max(doubt, ago(r.inlet, n) ?? 0)
+      if (slow) followInlet(r, inlet)
+      doubt = r.inletMoveK
     }
     for (let j = 0; j < r.thermos.length; j++) {
       const th = r.thermos[j] as Thermo
@@ -144,7 +147,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       const x = meanOf(th.excess, p.smooth)
       const ready = x !== null && s.armed && usable && th.level.n >= 4 && !(bare && j === 0 && r.thermos.length > 1)
       if (ready) {
-        const gain = bare ? highest - coldest : Math.abs(th.c - th.o)
+        const gain = bare ? Math.max(2, highest - coldest, inlet === null ? 0 : Math.abs(highest - inlet)) : Math.abs(th.c - th.o)
         const offset = bare ? 0 : d.offsetSds * Math.sqrt(th.level.poo) * Math.abs(r.h - 1)
         const allow = doubt + d.flowShare * gain * common + offset
         const raw = ago(th.excess, 0) ?? x
