@@ -6,7 +6,7 @@ import type { Head } from './heads.ts'
 import type { RunId } from './keys.ts'
 import { openStrip, stripTags } from './segment.ts'
 import type { Tables } from './sequence-read.ts'
-import { addToCells, cells, cellWidthsMs } from './tiers.ts'
+import { addToCells, cells } from './tiers.ts'
 import { gather, inOrder, isRising, type Piece, type Rows, type SamplesOfTag, sharedTimes, windowed } from './window.ts'
 
 export const mostBuckets = 2000
@@ -28,14 +28,16 @@ export interface EnvelopeOfTag {
 }
 
 /**
- * Width of the buckets on their fixed grid. A span of n − 1 widths touches at most n buckets, wherever it begins. From 10 s on the
- * width is a multiple of a tier's cells, which are a third of it or less once the finest tier is left behind.
+ * Width of the buckets on their fixed grid. A span of n − 1 widths touches at most n buckets, wherever it begins. `cellMs` is the width
+ * of the run's finest summary cells, null without any. Where buckets of half that or more are wanted, they are made of whole cells, two or
+ * more of them where they can be, and at most twice as wide as wanted; below that readings are drawn one by one, some 100 a bucket at most.
  */
-export function bucketWidth(fromMs: number, toMs: number, most: number): number {
+export function bucketWidth(fromMs: number, toMs: number, most: number, cellMs: number | null): number {
   const wanted = (toMs - fromMs) / (most - 1)
-  let unit = 1
-  for (const width of cellWidthsMs) if (width * (width === cellWidthsMs[0] ? 1 : 3) <= wanted) unit = width
-  return Math.max(1, Math.ceil(wanted / unit)) * unit
+  if (cellMs === null || wanted * 2 < cellMs) return Math.max(1, Math.ceil(wanted))
+  let unit = cellMs
+  while (unit * 4 <= wanted) unit *= 2
+  return Math.ceil(wanted / unit) * unit
 }
 
 /** Reads readings by time, packed and staged alike. The cost follows what is drawn, not the run's length. */
@@ -105,7 +107,7 @@ export function readingStore(db: Database.Database, { heads, stages, segments }:
         `an envelope needs from < to and 2 to ${mostBuckets} buckets, got ${fromMs}, ${toMs}, ${buckets}`,
       )
     const known = check(run, tags)
-    const bucketMs = bucketWidth(fromMs, toMs, Math.floor(buckets))
+    const bucketMs = bucketWidth(fromMs, toMs, Math.floor(buckets), segments.finestCells(run))
     const first = Math.floor(fromMs / bucketMs)
     const n = Math.ceil(toMs / bucketMs) - first
     const low = first * bucketMs

@@ -32,6 +32,11 @@ export function segmentTable(db: Database.Database) {
   const select = db.prepare<[RunId, number, number, number], Node>(
     `SELECT ${node} FROM tier WHERE run = ? AND level = ? AND seq >= ? AND seq < ? ORDER BY seq`,
   )
+  const finest = db
+    .prepare<[RunId], number | null>(
+      'SELECT max(cell_ms) FROM (SELECT cell_ms FROM tier WHERE run = ? AND level = 0 ORDER BY seq LIMIT 8)',
+    )
+    .pluck()
   const between = (run: RunId, level: number, from: number, to: number): Node[] => {
     const nodes = select.all(run, level, from, to)
     for (const { level: l, seq, endSeq, tMin, tMax, cellMs, sum } of nodes)
@@ -122,6 +127,10 @@ export function segmentTable(db: Database.Database) {
         seq = inOrder(roots, seq)
         for (const root of roots) down(root)
       }
+    },
+    /** Width of the cells of level 0, judged by the first segments; null when nothing is packed. */
+    finestCells(run: RunId): number | null {
+      return finest.get(run) ?? null
     },
     /** Number of the first entry that is not packed yet. */
     end: (run: RunId): number => covered.get(run, 0) ?? 0,

@@ -7,13 +7,12 @@ import type { Columns } from './segment.ts'
  * of one width and each tag the number of readings, least, greatest and sum. Cells lie on the grid n·width since 1970 and each width
  * divides the next, so pages add up exactly, late and out-of-order readings included: they just add a cell to a later page.
  */
-export const fan = 8
-export const cellWidthsMs = [
-  10_000, 60_000, 300_000, 1_800_000, 7_200_000, 43_200_000, 172_800_000, 864_000_000, 4_320_000_000, 30_240_000_000,
-]
-/** Readings a tag a cell at least, at level 0; 1.6 of the fan of 8 goes into more cells a page, 5 into wider ones. */
+export const fan = 4
+/** 1.25 s to 485 days, doubling. */
+export const cellWidthsMs = Array.from({ length: 26 }, (_, i) => 1250 * 2 ** i)
+/** Readings a tag a cell at least, at level 0. Of a step up by `fan`, 2.5 goes into wider cells, 1.6 into more cells a page. */
 const readingsPerCell = 96
-const growth = 5
+const growth = 2.5
 
 export interface Cells {
   /** Readings of this tag in the cell; 0 leaves the others 0. */
