@@ -1,6 +1,7 @@
 import { MonitorError } from '../errors.ts'
 import type { SegmentSpec, Skid } from '../skid.ts'
-import { limitRatio, plantOf } from './plant.ts'
+import { limitRatio } from './nominal.ts'
+import { plantOf } from './plant.ts'
 import { type Scenario, type SimEvent, scenarioOf } from './scenario.ts'
 
 /** Segments that can foul at the flows simulated, those where something reacts first. */

@@ -1,4 +1,4 @@
-import type { Plant } from './plant.ts'
+import type { Plant } from './plant-model.ts'
 import { type Random, randomOf } from './random.ts'
 
 /**

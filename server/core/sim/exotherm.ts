@@ -1,4 +1,4 @@
-import type { Plant } from './plant.ts'
+import type { Plant } from './plant-model.ts'
 import { randomOf } from './random.ts'
 import { type ExothermKind, eventsOf, type Scenario, timeOf } from './scenario.ts'
 

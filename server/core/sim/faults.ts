@@ -1,5 +1,5 @@
 import { toSi, valueUnit } from '../units.ts'
-import { FEED_K, type Plant } from './plant.ts'
+import { FEED_K, type Plant } from './plant-model.ts'
 import { endOf, eventsOf, type FaultKind, hoursMs, type Scenario, timeOf } from './scenario.ts'
 
 export interface Fault {

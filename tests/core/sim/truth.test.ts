@@ -1,6 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { limitBar, plantOf } from '../../../server/core/sim/plant.ts'
+import { limitBar } from '../../../server/core/sim/nominal.ts'
+import { plantOf } from '../../../server/core/sim/plant.ts'
 import { processOf } from '../../../server/core/sim/process.ts'
 import { randomScenario, scenarioKinds } from '../../../server/core/sim/random-scenario.ts'
 import { type Scenario, type SimEvent, scenarioOf } from '../../../server/core/sim/scenario.ts'
