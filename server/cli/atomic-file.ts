@@ -37,7 +37,8 @@ export async function openAtomic(path: string): Promise<AtomicFile> {
   return {
     async write(text) {
       check()
-      if (!stream.write(text)) await Promise.race([once(stream, 'drain'), once(stream, 'close')]).catch(() => undefined)
+      // The callback also comes when the write fails; the error is then in `failure`.
+      await new Promise<void>((done) => stream.write(text, () => done()))
       check()
     },
     async commit() {
