@@ -222,7 +222,7 @@ function mixture(task: Task): Node[] {
             for (let i = 0; i < settings.gridNodes; i++) {
               const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
               const node = follow(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace }, lifeMs)
-              const log = prior + Math.log(spacing) + node.log
+              const log = prior + Math.log(spacing) + settings.forecastPower * node.log
               if (!(log > top - 30)) continue
               top = Math.max(top, log)
               raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })

@@ -68,7 +68,8 @@ export function evenEdges(aMs: number, bMs: number, n: number): number[] {
 
 /**
  * The points without lone spikes (a gas slug, a flow step caught half way): those further from the median of themselves and up to
- * three neighbours on each side than `sigmas` times the noise of a step. The first and last three stay: growth shows there first.
+ * three neighbours on each side than `sigmas` times the noise of a step plus what those (the outermost aside) span: a steep or
+ * ragged rise has no spikes. The first and last three stay: growth shows there first.
  */
 export function withoutSpikes(points: readonly GrowthPoint[], noise: Noise, sigmas: number): GrowthPoint[] {
   const around = 3
@@ -76,7 +77,8 @@ export function withoutSpikes(points: readonly GrowthPoint[], noise: Noise, sigm
   const values = points.map((p) => p.lnRatio)
   return points.filter((p, i) => {
     if (i < around || i >= points.length - around) return true
-    return Math.abs(p.lnRatio - median(values.slice(i - around, i + around + 1))) <= limit
+    const near = values.slice(i - around, i + around + 1).sort((a, b) => a - b)
+    return Math.abs(p.lnRatio - near[around]!) <= limit + near[2 * around - 1]! - near[1]!
   })
 }
 

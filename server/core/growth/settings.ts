@@ -13,6 +13,8 @@ export interface GrowthSettings {
   readonly onsetPoints: number
   /** probability that the forecast interval holds the time of the limit */
   readonly forecastLevel: number
+  /** the likelihood of each explanation of the growth is raised to this power before they are weighed: none of them is quite true */
+  readonly forecastPower: number
   /** means over the growth the forecast works on */
   readonly forecastMeans: number
   /** growth shape (e^(Ks) − 1)/(e^K − 1) of the thickness: K below 0 slows, above 0 speeds up; weights sum to 1 */
@@ -45,6 +47,7 @@ export const growthDefaults: GrowthSettings = {
   typicalLnLimit: 0.8,
   onsetPoints: 200,
   forecastLevel: 0.8,
+  forecastPower: 0.85,
   forecastMeans: 16,
   laws: [law(-2.4), law(-1.6), law(-0.8), { k: 0, weight: 0.5 }, law(0.8), law(1.6), law(2.4), law(3.2)],
   fractions: [

@@ -56,6 +56,13 @@ describe('fitOnset', () => {
     expect(Math.abs(onset.atMs - 100 * 30_000)).toBeLessThan(3 * 30_000)
   })
 
+  it('one step caught half way through a flow change, 3.5 % off, an hour before the growth does not draw the onset to it', () => {
+    const points = ramp(260, 220, 0.0008, 30_000, 0.0014, 8).map((p, i) => (i === 100 ? { ...p, lnRatio: p.lnRatio - 0.035 } : p))
+    const onset = fitOnset(points, quiet, 0)!
+    expect(Math.abs(onset.atMs - 220 * 30_000)).toBeLessThan(8 * 30_000)
+    expect(onset.lowMs).toBeGreaterThan(180 * 30_000)
+  })
+
   it('holds a gap without bridging it: growth that began in a gap of half an hour is dated into the gap', () => {
     const points = ramp(200, 120, 0.001, 30_000, 0.0015, 6).filter((_, i) => i < 100 || i >= 160)
     const onset = fitOnset(points, quiet, 0)!
