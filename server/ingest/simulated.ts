@@ -1,0 +1,78 @@
+import { cell, phases, rowBlock } from '../core/reading.ts'
+import { decimalsOf } from '../core/sim/instruments.ts'
+import type { Scenario } from '../core/sim/scenario.ts'
+import { createSimulator, rowsOf } from '../core/sim/simulator.ts'
+import type { Skid } from '../core/skid.ts'
+import type { Json } from '../store/keys.ts'
+import type { Source } from './source.ts'
+
+export interface SimulatedOptions {
+  readonly skid: Skid
+  readonly scenario: Scenario
+  /** Seconds of the run a second of the wall. */
+  readonly speed: number
+  readonly steadyMs: () => number
+  /** As the store kept it; null for a run that begins. */
+  readonly state: Json
+}
+
+interface State {
+  readonly rows: number
+}
+
+/** Most rows in one poll: after a pause of the process the run goes on where it stood, it does not rush. */
+const mostRows = 7200
+
+/**
+ * The simulated skid as a source, `speed` times faster than time. Its clock is the simulator's; it stands still while the process is
+ * down. A restart takes the rows up to where it stood again (the same scenario gives the same rows) and goes on.
+ */
+export function simulatedSource({ skid, scenario, speed, steadyMs, state }: SimulatedOptions): Source {
+  const simulator = createSimulator(skid, scenario)
+  const total = rowsOf(scenario)
+  const logMs = Math.round(scenario.logSeconds * 1000)
+  const width = skid.tags.length + (skid.phaseColumn === null ? 0 : 1)
+  const decimals = skid.tags.map(decimalsOf)
+  let taken = (state as State | null)?.rows ?? 0
+  for (let i = 0; i < taken; i++) simulator.next()
+  let lastMs = steadyMs()
+  let nowMs = scenario.fromMs + taken * logMs
+
+  const advance = (): void => {
+    const now = steadyMs()
+    nowMs = Math.min(nowMs + (now - lastMs) * speed, scenario.fromMs + Math.min(total, taken + mostRows) * logMs)
+    lastMs = now
+  }
+  return {
+    kind: 'simulated',
+    about: `simulator, scenario '${scenario.name}' with seed ${scenario.seed}, ${speed} times faster than time`,
+    async poll() {
+      advance()
+      const due = Math.min(total, Math.floor((nowMs - scenario.fromMs) / logMs)) - taken
+      const block = rowBlock(Math.max(0, due), width)
+      for (; block.rows < due; block.rows++) {
+        const r = block.rows
+        const row = simulator.next()
+        block.tMs[r] = row.tMs
+        row.values.forEach((value, i) => {
+          // As a logger would write it.
+          block.values[r * width + i] = value === null ? 0 : Number(value.toFixed(decimals[i]))
+          block.codes[r * width + i] = value === null ? cell.missing : cell.value
+        })
+        if (width > skid.tags.length) {
+          block.values[r * width + width - 1] = phases.indexOf(row.phase)
+          block.codes[r * width + width - 1] = cell.value
+        }
+      }
+      taken += Math.max(0, due)
+      return { entries: due > 0 ? [{ kind: 'rows', block }] : [], state: { rows: taken }, more: false, ended: taken >= total }
+    },
+    status: () => ({ state: taken >= total ? 'ended' : 'running', message: null }),
+    clock() {
+      advance()
+      return { kind: 'simulated', nowMs: Math.round(nowMs), speed }
+    },
+    usualGapS: () => scenario.logSeconds,
+    async close() {},
+  }
+}

@@ -1,0 +1,59 @@
+import type { Occurrence } from '../core/alarms/occurrence.ts'
+import { type Rationale, rationale } from '../core/alarms/rationale.ts'
+import type { Skid } from '../core/skid.ts'
+import type { AlarmHelp } from '../wire/alarm.ts'
+
+type Name = Rationale['name']
+
+/** The rationalisation that an occurrence falls under; the limit's name and the side stand in its key. */
+function nameOf(skid: Skid, o: Occurrence): Name {
+  const isHighHigh = o.key.includes('HighHigh')
+  const isLow = o.key.includes('Low') || o.key.includes(':low')
+  switch (o.kind) {
+    case 'fouling':
+      return skid.segments.some((s) => s.id === o.segment && s.kind === 'filter') ? 'fouling/filter' : 'fouling'
+    case 'dp-limit':
+      return isHighHigh ? 'dp-limit/high-high' : 'dp-limit/high'
+    case 'temperature-limit':
+      return isLow ? 'temperature-limit/low' : isHighHigh ? 'temperature-limit/high-high' : 'temperature-limit/high'
+    case 'feed-ratio':
+      return isLow ? 'feed-ratio/low' : 'feed-ratio/high'
+    case 'exotherm':
+      return o.key.includes('cold') ? 'exotherm/cold' : 'exotherm'
+    default:
+      return o.kind
+  }
+}
+
+/** Texts of alarms by occurrence, computed once each; null where the skid file's own fields are not usable. */
+export function alarmHelpOf(skid: Skid): (o: Occurrence) => AlarmHelp | null {
+  const known = new Map<string, AlarmHelp | null>()
+  return (o) => {
+    const name = nameOf(skid, o)
+    const id = `${name}\n${o.segment ?? ''}`
+    const found = known.get(id)
+    if (found !== undefined) return found
+    const made = make(skid, name, o.segment)
+    known.set(id, made)
+    return made
+  }
+}
+
+function make(skid: Skid, name: Name, segment: string | null): AlarmHelp | null {
+  const pick = (r: Rationale): AlarmHelp => ({
+    title: r.title,
+    causes: r.causes,
+    consequence: r.consequence,
+    check: r.check,
+    action: r.action,
+    timeToRespondS: r.timeToRespondS,
+    review: r.review,
+  })
+  const basis = { scanS: skid.scanSeconds, residenceS: null }
+  try {
+    return pick(rationale(name, segment, basis, skid.alarms))
+  } catch {
+    // A field of the skid file that is none of an alarm's does not take the tool's own text away.
+    return pick(rationale(name, segment, basis))
+  }
+}
