@@ -6,7 +6,8 @@
  * z  30-s mean of T − lagged coolant, K      h  limiting feed over its reference [-]
  * c  excess at the reference feed, K; random walk of `walk` K per root hour
  * o  the part of it that does not go with the feed, K: the thermocouple's own offset against the coolant's, and what a warm inlet or a moving hot
- *    spot make of the feed; prior 0 ± √(0.7² + (0.3 c)²)
+ *    spot make of the feed; prior 0 ± √(0.7² + (0.3 c)²); taught only by a feed more than 3 % off its reference, since
+ *    a feed and a temperature that both wander would soon prove anything
  * so that c − o, the part that goes with the feed, is known from the start to within that. A gain that floats instead turns every flow step into
  * an alarm. Two-state Kalman filter; a block off by more than `far`, and by more than 2.5 sd of what the filter itself doubts, hardly teaches
  * (its variance is raised by the fourth power of how far). Valid for |h − 1| up to about 0.5. Source: own study of methods on simulated skids.
@@ -26,6 +27,7 @@ const noiseSd = 0.12
 const walk = 0.1
 const far = 0.35
 const gainSd = 0.3
+const deadFeed = 0.03
 
 export const freshLevel = (): Level => ({ c: 0, o: 0, pcc: 1, pco: 0, poo: offsetSd * offsetSd, n: 0 })
 
@@ -42,7 +44,7 @@ export function learn(l: Level, zK: number, h: number, blockS: number, settling:
   if (l.n === 0) l.c = zK
   l.n++
   l.pcc += settling ? 0.25 : (walk * walk * blockS) / 3600
-  const b = 1 - h
+  const b = Math.abs(h - 1) < deadFeed ? 0 : 1 - h + Math.sign(h - 1) * deadFeed
   const off = zK - explained(l, h)
   const kc = l.pcc * h + l.pco * b
   const ko = l.pco * h + l.poo * b

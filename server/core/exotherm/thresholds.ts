@@ -9,7 +9,7 @@ export const exothermDefaults = {
   riseK: 0.5,
   sds: 5.5,
   /** What the model may err by: share of the difference of neighbouring lags, of the gain for the flow's lag, sds of the offset. */
-  lagShare: 0.5,
+  lagShare: 0.7,
   flowShare: 0.9,
   offsetSds: 2,
   ratioHighShare: 2 / 3,
