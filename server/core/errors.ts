@@ -29,6 +29,10 @@ export type ErrorCode =
   | 'STORE_CORRUPT'
   | 'DISK_FULL'
   | 'PORT_TAKEN'
+  | 'UPLOAD'
+  | 'RUN_UNKNOWN'
+  | 'RUN_ENDED'
+  | 'ACT_REFUSED'
 
 /** Where in a file a mistake stands; line and column count from 1. */
 export interface Place {

@@ -65,7 +65,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
             const when =
               lastMs > nowMs
                 ? `best begun before ${iso(lastMs)}`
-                : `the time a flush takes is more than what is surely left before the limit; the limit may come first`
+                : 'a flush may take longer than is surely left; a young forecast is wide, so prepare now and look again as it narrows'
             out.push(say(nowMs, 'flush', [g.id], `${g.id}: deposit grows${until(f)}; ${when}`, p))
             s.advised[g.id] = 'flush'
             continue

@@ -1,7 +1,7 @@
 import type { Priority } from '../report.ts'
 
-/** What happens if nobody acts: off-specification or repair; a lost campaign or a release within the equipment; harm, gas, burst or leak. */
-export const severities = ['minor', 'major', 'severe'] as const
+/** How bad if nobody acts. low: off-specification or repair; medium: a lost campaign, a lost margin; high: harm, gas, burst or leak. */
+export const severities = ['low', 'medium', 'high'] as const
 export type Severity = (typeof severities)[number]
 
 /** Upper ends of the time bands, s: under 3, 3–10, 10–30, over 30 min (common practice). */
@@ -9,9 +9,9 @@ export const bandsS = [180, 600, 1800] as const
 
 /** Priority by severity and time band: never by the size of the deviation. Common practice after ISA-18.2 cl. 9 (from memory). */
 export const priorityMatrix: Readonly<Record<Severity, readonly [Priority, Priority, Priority, Priority]>> = {
-  severe: ['high', 'high', 'medium', 'low'],
-  major: ['high', 'medium', 'low', 'low'],
-  minor: ['medium', 'low', 'low', 'low'],
+  high: ['high', 'high', 'medium', 'low'],
+  medium: ['high', 'medium', 'low', 'low'],
+  low: ['medium', 'low', 'low', 'low'],
 }
 
 /** Priority from severity and time to respond, s, and the reason in words (ALM-03). Over 30 min: reconsider whether it is an alarm. */
@@ -21,7 +21,7 @@ export function priorityFor(severity: Severity, timeToRespondS: number): { prior
   const words = ['under 3 min', '3 to 10 min', '10 to 30 min', 'over 30 min (reconsider whether this is an alarm)'] as const
   return {
     priority: priorityMatrix[severity][n as 0 | 1 | 2 | 3],
-    reason: `${severity} consequence, ${words[n as 0 | 1 | 2 | 3]} to respond`,
+    reason: `${severity} severity, ${words[n as 0 | 1 | 2 | 3]} to respond`,
   }
 }
 

@@ -1,23 +1,36 @@
 import { MonitorError } from '../errors.ts'
-import type { Priority } from '../report.ts'
+import type { AlarmKind, Priority } from '../report.ts'
 import { type DefaultRationale, defaultRationales, type RationaleName } from './default-rationale.ts'
 import { type DelayBasis, delays } from './delays.ts'
 import { priorityFor, type Severity, severities } from './priority.ts'
 
-/** The rationalisation of one alarm (ALM-02). */
-export interface Rationale extends Omit<DefaultRationale, 'causes' | 'signalled'> {
-  readonly name: RationaleName
+/** The rationalisation of one alarm (ALM-02), under the names that the skid file uses for the same fields. */
+export interface Rationale {
+  /** Which alarm: a kind, or kind/variant. */
+  readonly alarm: RationaleName
+  readonly kind: AlarmKind
   readonly segment: string | null
-  readonly causes: string
+  readonly name: string
+  readonly type: string
+  readonly basis: string
+  readonly cause: string
+  readonly consequence: string
+  readonly check: string
+  readonly action: string
+  readonly timeToRespondSeconds: number
+  readonly severity: Severity
   readonly priority: Priority
   readonly priorityReason: string
   readonly class: string
-  readonly onDelayS: number
-  readonly offDelayS: number
+  readonly onDelaySeconds: number
+  readonly offDelaySeconds: number
+  /** In the unit of the limit where the site gives one; null: `deadbandPct` of the range. */
+  readonly deadband: number | null
   readonly deadbandPct: number
+  readonly latching: boolean
   readonly suppression: string
   readonly approvedBy: string
-  readonly approvedAt: string
+  readonly approvedOn: string
   readonly version: string
   /** Whether a person of this site has looked at it. */
   readonly review: string
@@ -27,25 +40,25 @@ export const notReviewed = 'default, not reviewed for this site'
 
 /** Fields that a skid file may give, and what each must be. */
 export const rationaleFields = {
-  title: 'string',
+  name: 'string',
   type: 'string',
   basis: 'string',
-  causes: 'string',
+  cause: 'string',
   consequence: 'string',
   check: 'string',
   action: 'string',
+  timeToRespondSeconds: 'number',
   severity: 'string',
-  timeToRespondS: 'number',
   priority: 'string',
   priorityReason: 'string',
   class: 'string',
-  onDelayS: 'number',
-  offDelayS: 'number',
-  deadbandPct: 'number',
+  onDelaySeconds: 'number',
+  offDelaySeconds: 'number',
+  deadband: 'number',
   latching: 'boolean',
   suppression: 'string',
   approvedBy: 'string',
-  approvedAt: 'string',
+  approvedOn: 'string',
   version: 'string',
 } as const
 const mayBe: Readonly<Record<string, readonly string[]>> = {
@@ -62,33 +75,46 @@ export type Overrides = Readonly<Record<string, Readonly<Record<string, string |
  * Errors: CONFIG_RANGE for an unknown field, one of the wrong type or out of range, and an empty action, consequence or time to respond (ALM-02).
  */
 export function rationale(
-  name: RationaleName,
+  alarm: RationaleName,
   segment: string | null,
   basis: Omit<DelayBasis, 'timeToRespondS'>,
   overrides: Overrides = {},
 ): Rationale {
-  const { signalled, causes, ...base }: DefaultRationale = defaultRationales[name]
+  const base: DefaultRationale = defaultRationales[alarm]
   const given: Record<string, string | number | boolean> = {}
-  const names = name === base.kind ? [base.kind] : [base.kind, name]
+  const names = alarm === base.kind ? [base.kind] : [base.kind, alarm]
   for (const key of segment === null ? names : [...names, ...names.map((n) => `${n}:${segment}`)]) {
     const over = Object.hasOwn(overrides, key) ? overrides[key] : undefined
     for (const [field, value] of Object.entries(over ?? {})) given[field] = checked(key, field, value)
   }
-  const timeToRespondS = (given['timeToRespondS'] ?? base.timeToRespondS) as number
+  const timeToRespondSeconds = (given['timeToRespondSeconds'] ?? base.timeToRespondS) as number
   const severity = (given['severity'] ?? base.severity) as Severity
-  const ranked = priorityFor(severity, timeToRespondS)
+  const ranked = priorityFor(severity, timeToRespondSeconds)
+  const wait = delays(base.signalled, { ...basis, timeToRespondS: timeToRespondSeconds })
   return {
-    ...base,
-    causes: causes.join('; '),
-    name,
+    alarm,
+    kind: base.kind,
     segment,
+    name: base.title,
+    type: base.type,
+    basis: base.basis,
+    cause: base.causes.join('; '),
+    consequence: base.consequence,
+    check: base.check,
+    action: base.action,
+    timeToRespondSeconds,
+    severity,
     priority: ranked.priority,
     priorityReason: given['priority'] === undefined ? ranked.reason : 'given in the skid file',
     class: 'process',
-    ...delays(signalled, { ...basis, timeToRespondS }),
+    onDelaySeconds: wait.onDelayS,
+    offDelaySeconds: wait.offDelayS,
+    deadband: null,
+    deadbandPct: wait.deadbandPct,
+    latching: base.latching,
     suppression: 'none',
     approvedBy: '',
-    approvedAt: '',
+    approvedOn: '',
     version: 'default',
     ...given,
     review: given['approvedBy'] === undefined ? notReviewed : `approved by ${given['approvedBy']}`,
@@ -109,10 +135,14 @@ function checked(key: string, field: string, value: string | number | boolean): 
   if (words !== undefined && !words.includes(value as string)) {
     throw new MonitorError('CONFIG_RANGE', `${at} is '${value}'`, { hint: `one of ${words.join(', ')}` })
   }
-  if (typeof value === 'number' && !(Number.isFinite(value) && (field === 'timeToRespondS' ? value > 0 : value >= 0))) {
-    throw new MonitorError('CONFIG_RANGE', `${at} must be ${field === 'timeToRespondS' ? 'above' : 'at least'} 0, got ${value}`, {
-      hint: 'an alarm without a time to respond is an event, not an alarm',
-    })
+  if (typeof value === 'number' && !(Number.isFinite(value) && (field === 'timeToRespondSeconds' ? value > 0 : value >= 0))) {
+    throw new MonitorError(
+      'CONFIG_RANGE',
+      `${at} must be ${field === 'timeToRespondSeconds' ? 'above' : 'at least'} 0, got ${value}`,
+      {
+        hint: 'an alarm without a time to respond is an event, not an alarm',
+      },
+    )
   }
   if (typeof value === 'string' && value.trim() === '') {
     const hint = 'an alarm without action and consequence is an event, not an alarm'

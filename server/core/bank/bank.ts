@@ -8,77 +8,42 @@ import {
   explanations,
   giveBirth,
   isKept,
-  type Kind,
-  likelihood as likelihoodAt,
+  likelihood,
   loadColumn,
   observe,
   saveColumn,
-  sizeOf,
 } from './hypotheses.ts'
 import { disturbances as d, rowOf, type SegmentObservation, stateMap } from './model.ts'
+import {
+  type Court,
+  depositVerdict,
+  otherVerdict,
+  type Rival,
+  touches,
+  type Verdict,
+  verdictRules,
+  zeroSuspect,
+} from './verdicts.ts'
 
-/** Likelihood margins and ages (steps) at which an explanation is accepted; log likelihood ratios are in nats. */
-export const verdictRules = {
-  deposit: { likelihood: 14, size: 0.012, age: 3, sinceGap: 4, margin: 4 },
-  other: { likelihood: 16, age: 10, ramp: 20, overDeposit: 4, overOther: 3, waivedAfter: 60 },
-  tapLess: 1,
-  tapAloneLess: 6,
-  streamLess: 1,
-  gapStepLess: 10,
-  /** A lone sudden rise of this much is a blockage. */
-  blockage: 0.15,
-} as const
-
-export type BankEvent =
-  | {
-      readonly kind: 'deposit'
-      readonly segment: number
-      readonly likelihood: number
-      readonly size: number
-      readonly ageSteps: number
-      readonly rivals: readonly Rival[]
-    }
-  | {
-      readonly kind: 'blockage'
-      readonly segment: number
-      readonly likelihood: number
-      readonly size: number
-      readonly ageSteps: number
-      readonly rivals: readonly Rival[]
-    }
-  | {
-      readonly kind: 'step'
-      readonly segment: number
-      readonly likelihood: number
-      readonly size: number
-      readonly ageSteps: number
-      readonly nearMove: boolean
-    }
-  | {
-      readonly kind: 'tap'
-      readonly tap: number
-      readonly ramp: boolean
-      readonly likelihood: number
-      readonly sizePa: number
-      readonly ageSteps: number
-      readonly rivals: readonly Rival[]
-    }
-  | {
-      readonly kind: 'stream'
-      readonly stream: number
-      readonly likelihood: number
-      readonly size: number
-      readonly ageSteps: number
-      readonly nearMove: boolean
-      readonly rivals: readonly Rival[]
-    }
-
-/** Another explanation and how well it does, for the evidence shown with an alarm. */
-export interface Rival {
-  readonly kind: Kind
-  readonly of: number
+/** A verdict as the bank acted on it. */
+export type BankEvent = {
   readonly likelihood: number
-}
+  readonly ageSteps: number
+  readonly rivals: readonly Rival[]
+  /** It began with a step of flow or temperature: then the exponents are at fault, not the skid. */
+  readonly nearMove: boolean
+} & (
+  | { readonly kind: 'deposit' | 'blockage' | 'step'; readonly segment: number; readonly size: number }
+  | {
+      readonly kind: 'instrument'
+      readonly tag: string
+      readonly segment: number
+      readonly neighbours: boolean
+      readonly ramp: boolean
+      readonly sizePa: number
+    }
+  | { readonly kind: 'stream'; readonly stream: number; readonly size: number }
+)
 
 interface SegmentTrack {
   started: boolean
@@ -172,15 +137,8 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   }
   let columns: Column[] = saved ? saved.columns.map(loadColumn) : []
 
-  const likelihood = (c: Column): number => likelihoodAt(c, s.steps)
   const watched = (seg: number): boolean => s.tracks[seg]!.started && !s.tracks[seg]!.fouled
-  const touches = (e: Explanation): number[] =>
-    e.kind === 'tap-ramp' || e.kind === 'tap-step'
-      ? [...layout.taps[e.of]!.inletOf, ...layout.taps[e.of]!.outletOf]
-      : e.kind === 'stream'
-        ? layout.segments.flatMap((g, i) => (g.streams.includes(e.of) ? [i] : []))
-        : [e.of]
-  const isWatched = (e: Explanation): boolean => touches(e).some(watched)
+  const isWatched = (e: Explanation): boolean => touches(layout, e).some(watched)
 
   function meanWithoutWander(seg: number, o: SegmentObservation): number {
     const t = s.tracks[seg]!
@@ -256,149 +214,93 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     t.seen++
   }
 
-  const best = (test: (c: Column) => boolean): Column | null => {
-    let top: Column | null = null
-    for (const c of columns) if (test(c) && (top === null || likelihood(c) > likelihood(top))) top = c
-    return top
-  }
-  const bestOf = (kinds: readonly Kind[], of: number, alive?: (c: Column) => boolean): number =>
-    columns.reduce((m, c) => (kinds.includes(c.kind) && c.of === of && (alive?.(c) ?? true) ? Math.max(m, likelihood(c)) : m), 0)
+  const court = (): Court => ({
+    layout,
+    columns,
+    now: s.steps,
+    sinceGap: s.sinceGap,
+    gapAt: s.gapAt,
+    moves: s.moves,
+    drifting: s.drifting,
+    watched,
+  })
 
-  /** Best rival of a deposit in `seg`, with the handicaps that experience gives each. */
-  function rivalsOf(seg: number): Rival[] {
-    const g = layout.segments[seg]!
-    const rivals: Rival[] = []
-    const inGap = (c: Column) => s.gapAt >= 0 && Math.abs(c.born - s.gapAt) <= 2
-    let step = 0
-    for (const c of columns)
-      if ((c.kind === 'step' || c.kind === 'settling') && c.of === seg)
-        step = Math.max(step, likelihood(c) - (inGap(c) ? verdictRules.gapStepLess : 0))
-    rivals.push({ kind: 'step', of: seg, likelihood: step })
-    for (const tap of [g.tapIn, g.tapOut]) {
-      if (tap === null) continue
-      const mirror = touches({ kind: 'tap-ramp', of: tap }).some((o) => o !== seg && watched(o))
-      rivals.push({
-        kind: 'tap-ramp',
-        of: tap,
-        likelihood: bestOf(['tap-ramp', 'tap-step'], tap) - (mirror ? verdictRules.tapLess : verdictRules.tapAloneLess),
-      })
-    }
-    for (const i of g.streams) rivals.push({ kind: 'stream', of: i, likelihood: bestOf(['stream'], i) - verdictRules.streamLess })
-    return rivals.sort((a, b) => b.likelihood - a.likelihood)
-  }
-
-  function accept(c: Column): void {
-    const size = sizeOf(c)
-    filter.compensate(f, c.response, size, c.j)
+  /** Takes the explanation out of the filter and begins the competition anew. */
+  function accept(v: Verdict): void {
+    filter.compensate(f, v.column.response, v.size, v.column.j)
     columns = []
   }
-  const doubt = (c: Column, size: number): number => 1 / c.j + (0.1 * size) ** 2
   function putInto(index: number, size: number, variance: number): void {
     f.x[index]! += size
     f.p[index * map.size + index]! += variance
   }
-
-  function judgeDeposit(): BankEvent | null {
-    const rule = verdictRules.deposit
-    if (s.sinceGap < rule.sinceGap) return null
-    const top = best(
-      (c) =>
-        c.kind === 'deposit' &&
-        c.d > 0 &&
-        s.steps - c.born >= rule.age &&
-        likelihood(c) > rule.likelihood &&
-        sizeOf(c) * (s.steps - c.born) > rule.size,
-    )
-    if (top === null) return null
-    const rivals = rivalsOf(top.of)
-    if (likelihood(top) < (rivals[0]?.likelihood ?? 0) + rule.margin) return null
-    const t = s.tracks[top.of]!
-    const ageSteps = s.steps - top.born
-    const event: BankEvent = {
-      kind: 'deposit',
-      segment: top.of,
-      likelihood: likelihood(top),
-      size: sizeOf(top) * ageSteps,
-      ageSteps,
-      rivals,
-    }
-    accept(top)
-    freeze(top.of, t)
-    return event
-  }
-
-  function freeze(seg: number, t: SegmentTrack): void {
+  function freeze(seg: number): void {
+    const t = s.tracks[seg]!
     t.fouled = true
     t.clean = { c: f.x[map.level(seg)]!, a: f.x[map.flowExp(seg)]!, k: f.x[map.viscExp(seg)]! }
   }
 
-  function judgeOthers(): BankEvent | null {
-    const rule = verdictRules.other
-    const top = best(
-      (c) =>
-        c.kind !== 'deposit' &&
-        s.steps - c.born >= (c.kind === 'tap-ramp' ? rule.ramp : rule.age) &&
-        likelihood(c) > rule.likelihood,
-    )
-    if (top === null) return null
-    const l = likelihood(top)
-    const ageSteps = s.steps - top.born
-    const on = touches(top)
-    for (const seg of on)
-      if (
-        watched(seg) &&
-        l <
-          columns.reduce((m, c) => (c.kind === 'deposit' && c.of === seg && c.d > 0 ? Math.max(m, likelihood(c)) : m), 0) +
-            rule.overDeposit
-      )
-        return null
-    if (ageSteps < rule.waivedAfter)
-      for (const c of columns) {
-        if (c.kind === 'deposit' || (c.kind === top.kind && c.of === top.of)) continue
-        const sameStep =
-          (top.kind === 'step' || top.kind === 'settling') && (c.kind === 'step' || c.kind === 'settling') && c.of === top.of
-        const sameTap =
-          (top.kind === 'tap-ramp' || top.kind === 'tap-step') &&
-          (c.kind === 'tap-ramp' || c.kind === 'tap-step') &&
-          c.of === top.of
-        if (sameStep || sameTap) continue
-        if (touches(c).some((seg) => on.includes(seg)) && l < likelihood(c) + rule.overOther) return null
-      }
-    const size = sizeOf(top)
-    const variance = doubt(top, size)
-    const bornNearMove = s.moves.some((m) => Math.abs(m - top.born) <= 10)
-    const rivals = columns
-      .filter((c) => c.kind !== top.kind || c.of !== top.of)
-      .map((c): Rival => ({ kind: c.kind, of: c.of, likelihood: likelihood(c) }))
-      .sort((a, b) => b.likelihood - a.likelihood)
-      .slice(0, 3)
-    accept(top)
-    if (top.kind === 'step' || top.kind === 'settling') {
-      if (size > verdictRules.blockage && !bornNearMove) {
-        freeze(top.of, s.tracks[top.of]!)
-        return { kind: 'blockage', segment: top.of, likelihood: l, size, ageSteps, rivals }
-      }
-      putInto(map.level(top.of), size, variance)
-      return { kind: 'step', segment: top.of, likelihood: l, size, ageSteps, nearMove: bornNearMove }
+  function judge(): BankEvent | null {
+    const deposit = depositVerdict(court())
+    if (deposit !== null) {
+      accept(deposit)
+      freeze(deposit.column.of)
+      return { kind: 'deposit', segment: deposit.column.of, size: deposit.size * deposit.ageSteps, ...common(deposit) }
     }
-    if (top.kind === 'stream') {
-      putInto(map.visc[top.of]!, size, variance)
-      return { kind: 'stream', stream: top.of, likelihood: l, size, ageSteps, nearMove: bornNearMove, rivals }
+    const other = otherVerdict(court())
+    if (other === null) return null
+    accept(other)
+    const variance = 1 / other.column.j + (0.1 * other.size) ** 2
+    switch (other.column.kind) {
+      case 'stream':
+        putInto(map.visc[other.column.of]!, other.size, variance)
+        return { kind: 'stream', stream: other.column.of, size: other.size, ...common(other) }
+      case 'tap-ramp':
+      case 'tap-step':
+        return tapEvent(other, variance)
+      default:
+        return stepEvent(other, other.column.of, other.size, variance)
     }
-    const ramp = top.kind === 'tap-ramp'
-    const sizePa = size * 1000 * (ramp ? ageSteps : 1)
-    const zero = map.tapZero[top.of]!
-    if (zero >= 0) putInto(zero, sizePa, variance * 1e6 * (ramp ? ageSteps ** 2 : 1))
-    else {
+  }
+
+  const common = (v: Verdict) => ({
+    likelihood: v.likelihood,
+    ageSteps: v.ageSteps,
+    rivals: v.rivals,
+    nearMove: s.moves.some((m) => Math.abs(m - v.column.born) <= verdictRules.other.nearMove),
+  })
+
+  /** A lone step: the zero of an instrument nothing else checks, a blockage, or a plain step that goes into the level. */
+  function stepEvent(v: Verdict, segment: number, size: number, variance: number): BankEvent {
+    const more = common(v)
+    const dpPa = s.tracks[segment]!.lastDpPa ?? 0
+    const suspect = more.nearMove ? null : zeroSuspect(layout, segment, dpPa * -Math.expm1(-size))
+    if (suspect === null && size > verdictRules.blockage && !more.nearMove) {
+      freeze(segment)
+      return { kind: 'blockage', segment, size, ...more }
+    }
+    putInto(map.level(segment), size, variance)
+    if (suspect === null) return { kind: 'step', segment, size, ...more }
+    return { kind: 'instrument', tag: suspect.tag, segment, neighbours: false, ramp: false, sizePa: suspect.sizePa, ...more }
+  }
+
+  function tapEvent(v: Verdict, variance: number): BankEvent {
+    const tap = v.column.of
+    const ramp = v.column.kind === 'tap-ramp'
+    const grown = ramp ? v.ageSteps : 1
+    const sizePa = v.size * 1000 * grown
+    const zero = map.tapZero[tap]!
+    const on = touches(layout, v.column)
+    const segment = on.find(watched) ?? on[0]!
+    if (zero < 0) {
       // An end tap has no zero of its own: its shift goes into the level of its one segment.
-      for (const seg of on) {
-        const t = s.tracks[seg]!
-        if (t.lastDpPa !== null)
-          putInto(map.level(seg), ((layout.segments[seg]!.tapIn === top.of ? 1 : -1) * sizePa) / t.lastDpPa, variance)
-      }
-    }
-    if (ramp) s.drifting[top.of] = true
-    return { kind: 'tap', tap: top.of, ramp, likelihood: l, sizePa, ageSteps, rivals }
+      const dpPa = s.tracks[segment]!.lastDpPa ?? 1
+      const shift = ((layout.segments[segment]!.tapIn === tap ? 1 : -1) * sizePa) / dpPa
+      if (!ramp) return stepEvent(v, segment, shift, variance * (1000 / dpPa) ** 2)
+      putInto(map.level(segment), shift, (variance * (1000 * grown) ** 2) / dpPa ** 2)
+    } else putInto(zero, sizePa, variance * (1000 * grown) ** 2)
+    if (ramp) s.drifting[tap] = true
+    return { kind: 'instrument', tag: layout.taps[tap]!.name, segment, neighbours: zero >= 0, ramp, sizePa, ...common(v) }
   }
 
   return {
@@ -434,7 +336,8 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       )
       if (columns.length > 0) decayColumns(1 + gapSteps)
       columns = columns.filter((c) => isKept(s.steps - c.born, c.born))
-      if (armed && s.steps % births.every === 0) giveBirth(layout, columns, list, s.steps, map, isWatched)
+      if (s.tracks.some((t) => t.seen >= births.after) && s.steps % births.every === 0)
+        giveBirth(layout, columns, list, s.steps, map, isWatched)
       const moved = s.sinceMove
       observations.forEach((o, seg) => {
         const t = s.tracks[seg]!
@@ -444,14 +347,9 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       })
       if (s.sinceMove < moved) s.moves = [...s.moves.filter((m) => m > s.steps - births.twelfth), s.steps]
       const events: BankEvent[] = []
-      ;(globalThis as any).DBG?.(
-        s.steps,
-        columns.map((c) => ({ k: c.kind, of: c.of, age: s.steps - c.born, L: likelihood(c), A: sizeOf(c) })),
-        s.tracks,
-      )
       if (armed) {
         for (let round = 0; round < 4; round++) {
-          const e = judgeDeposit() ?? judgeOthers()
+          const e = judge()
           if (e === null) break
           events.push(e)
         }
@@ -522,7 +420,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
 
     /** Likelihood of a growing deposit in a segment now, for the screen. */
     suspicion: (seg: number): number =>
-      columns.reduce((m, c) => (c.kind === 'deposit' && c.of === seg && c.d > 0 ? Math.max(m, likelihood(c)) : m), 0),
+      columns.reduce((m, c) => (c.kind === 'deposit' && c.of === seg && c.d > 0 ? Math.max(m, likelihood(c, s.steps)) : m), 0),
 
     save: (): BankState => ({
       ...structuredClone({ ...s, columns: [] }),

@@ -58,7 +58,7 @@ function scaleOf(layout: Layout, e: Explanation): number {
 }
 
 /** Steps between births; how long births live, by thinning: all, every 4th, every 12th, none. */
-export const births = { every: 2, all: 30, fourth: 120, twelfth: 400 }
+export const births = { after: 4, every: 2, all: 30, fourth: 120, twelfth: 400 }
 /** A level or a viscosity settles within about two steps. */
 const settleSteps = 2
 

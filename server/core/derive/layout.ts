@@ -34,6 +34,7 @@ export interface SegmentLayout {
   readonly tapIn: number | null
   readonly tapOut: number | null
   readonly dpTag: number | null
+  readonly dpSpanPa: number | null
   /** Tag index of the inlet pressure, for limits; null with a dp cell. */
   readonly inTag: number | null
   readonly outHeldPa: number
@@ -72,6 +73,7 @@ export function layoutOf(skid: Skid): Layout {
       tapIn,
       tapOut,
       dpTag: dp.kind === 'dp' ? index(dp.dpTag) : null,
+      dpSpanPa: dp.kind === 'dp' ? spanOf(index(dp.dpTag)) : null,
       inTag: tapIn === null ? null : taps[tapIn]!.tag,
       outHeldPa: dp.kind === 'held' ? dp.outBar * 1e5 : 0,
       temperatures: spec.temperatures.map(index),

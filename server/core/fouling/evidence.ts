@@ -1,4 +1,5 @@
-import type { BankEvent, Rival } from '../bank/bank.ts'
+import type { BankEvent } from '../bank/bank.ts'
+import type { Rival } from '../bank/verdicts.ts'
 import type { Layout } from '../derive/layout.ts'
 import type { Cause } from '../report.ts'
 
@@ -30,7 +31,7 @@ function nameOf(layout: Layout, r: Rival): string {
 
 /** Cause and evidence of a verdict of the bank: every explanation that was weighed is listed, excluded or not. */
 export function findingOf(layout: Layout, e: BankEvent): Finding {
-  const rivals = 'rivals' in e ? e.rivals : []
+  const { rivals } = e
   const short = (r: Rival) => e.likelihood - Math.max(0, r.likelihood)
   const against = rivals
     .filter((r) => short(r) >= excludedBy)
@@ -64,12 +65,19 @@ export function findingOf(layout: Layout, e: BankEvent): Finding {
       }
     case 'step':
       return { cause: 'unknown', for: [likely], against, notExcluded }
-    case 'tap':
+    case 'instrument':
       return {
         cause: 'sensor',
-        for: [`neighbours of ${layout.taps[e.tap]!.name} move apart by the same ${(e.sizePa / 100).toFixed(0)} mbar`, likely],
+        for: [
+          e.neighbours
+            ? `neighbours of ${e.tag} move apart by the same ${(e.sizePa / 100).toFixed(0)} mbar`
+            : `ΔP of ${layout.segments[e.segment]!.spec.id} shifted by ${(e.sizePa / 100).toFixed(0)} mbar with nothing else moving`,
+          likely,
+        ],
         against,
-        notExcluded,
+        notExcluded: e.neighbours
+          ? notExcluded
+          : [...notExcluded, `a true step of resistance in ${layout.segments[e.segment]!.spec.id}`],
       }
     case 'stream':
       return {

@@ -215,23 +215,22 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         })
         return
       }
-      case 'tap': {
-        const tap = layout.taps[e.tap]!
-        const seg = tap.inletOf[0] ?? tap.outletOf[0]
+      case 'instrument': {
+        const key = `sensor:${e.tag}:zero`
         signal({
           ...base,
-          key: `sensor:${tap.name}:zero`,
+          key,
           kind: 'sensor',
-          segment: seg === undefined ? null : layout.segments[seg]!.spec.id,
-          tag: tap.name,
+          segment: layout.segments[e.segment]!.spec.id,
+          tag: e.tag,
           priority: 'low',
           value: barFromPa(e.sizePa),
           limit: 0,
           unit: 'bar',
-          message: `${tap.name}: its zero ${e.ramp ? 'drifts' : 'shifted'}, by about ${(e.sizePa / 100).toFixed(0)} mbar so far; verdicts allow for it`,
-          detector: 'tap likelihood',
+          message: `${e.tag}: its zero ${e.ramp ? 'drifts' : 'shifted'}, by about ${(e.sizePa / 100).toFixed(0)} mbar so far; verdicts allow for it`,
+          detector: e.neighbours ? 'tap likelihood' : 'step likelihood',
         })
-        s.timed.push({ key: `sensor:${tap.name}:zero`, untilMs: tMs + 4 * standsMs })
+        s.timed.push({ key, untilMs: tMs + 4 * standsMs })
         return
       }
       case 'stream': {

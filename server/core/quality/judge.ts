@@ -47,7 +47,7 @@ export const judgeStart = (tags: number): JudgeState => {
 /** A healthy quiet sensor may repeat itself; it is frozen after three times its own longest run, never before these. */
 const frozen = { samples: 30, timesLongest: 3, fewChanges: 20, fewChangesS: 600 }
 /** Readings that must agree on a new level before a jump is taken for a step; a pause this long ends all suspicion, ms. */
-const spike = { agree: 3, wiggles: 8, forgetMs: 30_000 }
+const spike = { agree: 3, wiggles: 8, forgetMs: 30_000, impossibleMs: 300_000 }
 
 /**
  * Judges one reading and returns its reason's index (`why`). Order: what the source says, the loop and range, open circuit, a jump
@@ -81,11 +81,20 @@ export function judge(
   } else {
     const step = Math.abs(value - state.last[tag]!)
     const wiggle = state.wiggle[tag]!
-    if (step > rule.spikeStep && step > spike.wiggles * wiggle && tMs - state.lastMs[tag]! < spike.forgetMs) {
+    if (
+      step > rule.spikeStep &&
+      step > spike.wiggles * wiggle &&
+      tMs - state.lastMs[tag]! < (step > rule.mostStep ? spike.impossibleMs : spike.forgetMs)
+    ) {
+      if (step > rule.mostStep) return why['impossible-rate']
       const agrees = state.jumps[tag]! > 0 && Math.abs(value - state.jumpTo[tag]!) < Math.max(0.25 * step, spike.wiggles * wiggle)
       state.jumps[tag] = agrees ? state.jumps[tag]! + 1 : 1
       state.jumpTo[tag] = value
-      if (state.jumps[tag]! < spike.agree) return why.spike
+      if (state.jumps[tag]! < spike.agree) {
+        // A pump that pulsates by more than this is learnt, not rejected for ever.
+        state.wiggle[tag] = wiggle + (Math.min(step, 6 * wiggle + rule.spikeStep) - wiggle) / 64
+        return why.spike
+      }
     }
     state.jumps[tag] = 0
     if (value === state.last[tag]) {

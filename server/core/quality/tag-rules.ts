@@ -13,6 +13,7 @@ export const reasons = [
   'loop-undefined',
   'open-circuit',
   'spike',
+  'impossible-rate',
   'frozen',
   'late',
   'duplicate',
@@ -33,6 +34,7 @@ export const gradeOf: Record<Reason, Grade> = {
   'loop-undefined': 'uncertain',
   'open-circuit': 'bad',
   spike: 'bad',
+  'impossible-rate': 'bad',
   frozen: 'uncertain',
   late: 'bad',
   duplicate: 'bad',
@@ -57,6 +59,8 @@ export interface TagRule {
   readonly openLow: number
   /** Least jump that may be called a spike; Infinity where none may. */
   readonly spikeStep: number
+  /** A jump between neighbours beyond this is impossible, however many readings agree on it; Infinity where none is. */
+  readonly mostStep: number
   /** A reading unchanged for this long may be frozen, s; Infinity for tags that may stand still. */
   readonly frozenS: number
 }
@@ -94,6 +98,7 @@ export function ruleOf(tag: TagSpec): TagRule {
       openHigh: open,
       openLow: -open,
       spikeStep: open,
+      mostStep: open,
       frozenS: text ? open : (frozenSeconds[tag.quantity] ?? open),
     }
   const [lo, hi] = tag.range
@@ -108,11 +113,15 @@ export function ruleOf(tag: TagSpec): TagRule {
     sureLow: lo + band.sureLow * span,
     sureHigh: hi + band.sureHigh * span,
     loop: raw || tag.signal === '4-20mA',
-    openHigh: tag.burnout === 'high' ? hi : open,
-    openLow: tag.burnout === 'low' ? lo : -open,
+    // Without a stated direction either end of the range of a thermocouple is taken for an open circuit.
+    openHigh: tag.burnout === 'high' || (tag.burnout === null && thermocouple(tag)) ? hi : open,
+    openLow: tag.burnout === 'low' || (tag.burnout === null && thermocouple(tag)) ? lo : -open,
+    mostStep: tag.quantity === 'temperature' ? 0.15 * span : open,
     spikeStep: 0.02 * span,
     frozenS: frozenSeconds[tag.quantity] ?? open,
   }
 }
+
+const thermocouple = (tag: TagSpec): boolean => tag.quantity === 'temperature' && tag.sensor !== null && /^[A-Z]$/i.test(tag.sensor)
 
 export const rulesOf = (skid: Skid): TagRule[] => skid.tags.map(ruleOf)

@@ -10,6 +10,8 @@ export interface InstrumentState {
   missingMs: number[]
   frozenMs: number[]
   lastReason: number[]
+  /** Share of recent scans in which a reading was rejected as a spike. */
+  spiky: number[]
   lastRowMs: number
   /** Smoothed time between scans with rows, ms. */
   rowGapMs: number
@@ -24,6 +26,8 @@ export interface InstrumentState {
 /** How long before a diagnostic alarm, s: failing or missing; standing still, by whether it is a flow. Default values, common practice. */
 const after = { failing: 30, missing: 60, frozen: 420, frozenFlow: 90, noData: 10, lateRows: 20 }
 
+/** Share of scans with a rejected spike, about two minutes' worth, at which an instrument is called faulty, and well again. */
+const spikyShare = { raise: 0.06, clear: 0.01 }
 const none = { for: [], against: [], notExcluded: [] }
 
 /**
@@ -40,6 +44,7 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     missingMs: fill(),
     frozenMs: fill(),
     lastReason: fill(),
+    spiky: new Array<number>(n).fill(0),
     lastRowMs: -1,
     rowGapMs: 0,
     badTime: 0,
@@ -59,7 +64,14 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     frozenFlow: after.frozenFlow * finer,
     off: 30 * finer,
   }
-  const failing = new Set([why['out-of-range'], why['loop-failure'], why['open-circuit'], why['source-bad'], why.unreadable])
+  const failing = new Set([
+    why['out-of-range'],
+    why['loop-failure'],
+    why['open-circuit'],
+    why['source-bad'],
+    why.unreadable,
+    why['impossible-rate'],
+  ])
 
   const mark = (list: number[], t: number, on: boolean, off: boolean, tMs: number) => {
     if (on && list[t]! < 0) list[t] = tMs
@@ -131,21 +143,24 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
     const fails = over(s.failingMs[t]!, delay.failing, tMs)
     const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
+    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike ? 1 : 0) - s.spiky[t]!) / 120
+    const spiky = s.spiky[t]! > (s.sensorOver[t] === 1 ? spikyShare.clear : spikyShare.raise)
+    if (spiky) s.lastReason[t] = why.spike
     const gone = over(s.missingMs[t]!, delay.missing, tMs)
     const spec = skid.tags[t]!
     // A healthy tag costs no signal: nothing is said of what was never over.
-    if (fails || frozen || s.sensorOver[t] === 1) {
-      const clear = s.failingMs[t]! < 0 && s.frozenMs[t]! < 0
+    if (fails || frozen || spiky || s.sensorOver[t] === 1) {
+      const clear = s.failingMs[t]! < 0 && s.frozenMs[t]! < 0 && !spiky
       emit({
         ...base(t, tMs),
         key: `sensor:${spec.tag}:reading`,
-        over: fails || frozen,
+        over: fails || frozen || spiky,
         under: clear,
         kind: 'sensor',
         priority: 'medium',
         detector: frozen && !fails ? 'frozen' : 'quality',
         message: () =>
-          `${spec.tag}: ${frozen && !fails ? 'reading stands still while liquid flows' : (reasons[s.lastReason[t]!] ?? 'reading fails').replaceAll('-', ' ')}; nothing is computed from it`,
+          `${spec.tag}: ${frozen && !fails ? 'reading stands still while liquid flows' : spiky && !fails ? 'reading jumps away and back again and again' : (reasons[s.lastReason[t]!] ?? 'reading fails').replaceAll('-', ' ')}; nothing is computed from it`,
       })
       s.sensorOver[t] = 1
     }

@@ -1,0 +1,146 @@
+import { type Belief, observe } from './growth-filter.ts'
+import { filmOfRatio, growthShape, ratioOfFilm } from './law.ts'
+import type { Bin, Interval } from './points.ts'
+import type { GrowthSettings } from './settings.ts'
+import type { WanderStep } from './wander.ts'
+
+/** One weighed explanation of the growth: the time it leaves from now to the limit, with its sd. */
+export interface Explained {
+  readonly weight: number
+  /** time from now to the limit and its sd [ms] */
+  readonly leftMs: number
+  readonly sdMs: number
+  readonly growthPerMs: number
+}
+
+/** The growth so far, and what is asked. */
+export interface Task {
+  readonly bins: readonly Bin[]
+  readonly steps: readonly WanderStep[]
+  readonly falls: readonly number[]
+  readonly base: Belief
+  readonly lnLimit: number
+  readonly onset: Interval
+  readonly nowMs: number
+  readonly anchor: number
+  readonly lastSd: number
+  readonly settings: GrowthSettings
+}
+
+/** One explanation of the growth, its life aside. */
+interface Hypothesis {
+  readonly onsetMs: number
+  readonly k: number
+  readonly fraction: number
+  readonly filmLimit: number
+  readonly cv: number
+  /** after a slough-off growth goes on at the pace it had (true) or at the pace of the thinner film (false) */
+  readonly keepsPace: boolean
+}
+
+/** Every explanation the settings allow, weighed by how well it tells the growth so far; the weights sum to 1. */
+export function explanations(task: Task): Explained[] {
+  const { onset, nowMs, settings, base, lnLimit } = task
+  // Nodes at the median and the 5 % and 95 % ends; 0.185 gives the variance of a normal distribution.
+  const onsets = [
+    { ms: onset.lowMs, weight: 0.185 },
+    { ms: onset.atMs, weight: 0.63 },
+    { ms: onset.highMs, weight: 0.185 },
+  ]
+  const raw: { log: number; left: number; sd: number; growth: number }[] = []
+  let top = -Infinity
+  const sloughed = task.falls.some((fall) => fall > 0)
+  for (const { ms, weight: wOnset } of onsets) {
+    const grownMs = nowMs - ms
+    if (!(grownMs > 0)) continue
+    for (const { fraction, weight: wFraction } of settings.fractions) {
+      const filmLimit = filmOfRatio(Math.exp(lnLimit - base.c), fraction)
+      for (const { k, weight: wLaw } of settings.laws) {
+        for (const { cv, weight: wClock } of settings.clocks) {
+          const prior = Math.log(wOnset * wFraction * wLaw * wClock)
+          const { lnLifeMs, sd } = lifeNear(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace: false })
+          const spacing = (2 * settings.gridReach * sd) / (settings.gridNodes - 1)
+          for (const keepsPace of sloughed ? [false, true] : [false]) {
+            for (let i = 0; i < settings.gridNodes; i++) {
+              const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
+              const node = follow(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace }, lifeMs)
+              const log = prior + Math.log(spacing) + settings.forecastPower * node.log
+              if (!(log > top - 30)) continue
+              top = Math.max(top, log)
+              raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
+            }
+          }
+        }
+      }
+    }
+  }
+  let total = 0
+  for (const r of raw) total += Math.exp(r.log - top)
+  return raw
+    .map((r) => ({ weight: Math.exp(r.log - top) / total, leftMs: r.left, sdMs: r.sd, growthPerMs: r.growth }))
+    .filter((node) => node.weight > 1e-6)
+}
+
+/**
+ * Where the life T of a hypothesis must lie to explain the rise at the anchor (the last mean, or the last before a slough-off), and
+ * how loosely: sd of ln T from raggedness and noise. The grid over T lies around it, evenly in ln T.
+ */
+function lifeNear(task: Task, { onsetMs, k, fraction, filmLimit, cv }: Hypothesis): { lnLifeMs: number; sd: number } {
+  const anchor = task.bins[task.anchor]!
+  const rise = Math.max(0.002, anchor.lnRatio - task.base.c)
+  const part = filmOfRatio(Math.exp(rise), fraction) / filmLimit
+  const linear = Math.abs(k) < 1e-6
+  const u = Math.max(0.01, Math.min(1.5, linear ? part : Math.log1p(Math.max(-0.99, part * Math.expm1(k))) / k))
+  const film = Math.min(0.97, filmLimit * growthShape(k, u))
+  const slope =
+    (4 * fraction * (1 - film) ** -5 * filmLimit * (linear ? 1 : (k * Math.exp(k * u)) / Math.expm1(k))) /
+    ratioOfFilm(film, fraction)
+  const sd = Math.min(1.2, Math.hypot(cv / Math.sqrt(u), task.lastSd / Math.max(slope * u, 1e-6)))
+  return { lnLifeMs: Math.log(Math.max(anchor.tMs - onsetMs, 1000) / u), sd }
+}
+
+/** One hypothesis followed through the data; times in lives T. */
+function follow(task: Task, { onsetMs, k, fraction, filmLimit, cv, keepsPace }: Hypothesis, lifeMs: number) {
+  const { bins, steps, falls, nowMs } = task
+  let lost = 0
+  const b: Belief = { ...task.base }
+  const cv2 = cv * cv
+  const linear = Math.abs(k) < 1e-6
+  const unit = linear ? 1 : 1 / Math.expm1(k)
+  let log = 0
+  let before = 0
+  let slopeNow = 0
+  let ratioNow = 1
+  for (let i = 0; i < bins.length; i++) {
+    const t = (bins[i]!.tMs - onsetMs) / lifeMs
+    if (t > before) {
+      b.ww += cv2 * (t - before)
+      before = t
+    }
+    const u = Math.max(0, t + b.w)
+    const grow = linear ? 0 : Math.exp(k * u)
+    const film = Math.max(0, Math.min(0.97, filmLimit * (linear ? u : (grow - 1) * unit) - lost))
+    const gap = 1 - film
+    const power = fraction / (gap * gap * gap * gap)
+    const ratio = 1 - fraction + power
+    const slope = t <= 0 ? 0 : (4 * power * filmLimit * (linear ? 1 : k * grow * unit)) / (gap * ratio)
+    const fall = falls[i]!
+    if (fall > 0 && keepsPace) {
+      const rest = filmOfRatio(Math.max(1, Math.exp(bins[i]!.lnRatio - b.c)), fraction)
+      lost += Math.max(0, film - rest)
+      b.ww += task.lastSd ** 2 / Math.max(slope * slope, 1e-6)
+      log -= Math.log(2 * fall)
+      continue
+    }
+    if (fall > 0) b.ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
+    log += observe(b, steps[i]!, Math.log(ratio), slope, bins[i]!.lnRatio)
+    slopeNow = slope
+    ratioNow = ratio
+  }
+  const now = (nowMs - onsetMs) / lifeMs
+  const end = 1 + lost / filmLimit
+  const uEnd = linear ? end : Math.min(4, Math.log1p(Math.max(-0.99, end * Math.expm1(k))) / k)
+  const left = Math.max(0, uEnd - now - b.w)
+  const sd = Math.sqrt(Math.max(0, b.ww) + cv2 * (left + Math.max(0, now - before)))
+  return { log, left: left * lifeMs, sd: sd * lifeMs, growth: (slopeNow * ratioNow) / lifeMs }
+}
