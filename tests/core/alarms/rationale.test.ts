@@ -34,11 +34,11 @@ describe('priority', () => {
       for (let s = 1; s < 3; s++) {
         expect(rank[priorityMatrix[severities[s]!][b]!]).toBeGreaterThanOrEqual(rank[priorityMatrix[severities[s - 1]!][b]!])
       }
-    expect(priorityFor('severe', 179.9).priority).toBe('high')
-    expect(priorityFor('major', 180).priority).toBe('medium')
-    expect(priorityFor('severe', 1800)).toEqual({
+    expect(priorityFor('high', 179.9).priority).toBe('high')
+    expect(priorityFor('medium', 180).priority).toBe('medium')
+    expect(priorityFor('high', 1800)).toEqual({
       priority: 'low',
-      reason: 'severe consequence, over 30 min (reconsider whether this is an alarm) to respond',
+      reason: 'high severity, over 30 min (reconsider whether this is an alarm) to respond',
     })
   })
   it('an alarm with 120 s to respond and 14 + 2 + 1 + 30 + 20 + 60 s of delays cannot be relied on: 7 s short', () => {
@@ -51,9 +51,9 @@ describe('rationalisation', () => {
     expect(new Set(names.map((n) => defaultRationales[n].kind))).toEqual(new Set(alarmKinds))
     for (const n of names) {
       const r = rationale(n, null, basis)
-      for (const text of [r.title, r.basis, r.causes, r.consequence, r.check, r.action, r.priorityReason])
+      for (const text of [r.name, r.basis, r.cause, r.consequence, r.check, r.action, r.priorityReason])
         expect(text.length).toBeGreaterThan(3)
-      expect(r.timeToRespondS).toBeGreaterThan(0)
+      expect(r.timeToRespondSeconds).toBeGreaterThan(0)
       expect(r.review).toBe(notReviewed)
     }
     expect(Object.keys(causeGuide)).toEqual([...causes])
@@ -67,17 +67,17 @@ describe('rationalisation', () => {
   })
   it('takes the site over the default, the segment over the kind, and moves the priority with the time to respond', () => {
     const overrides = {
-      fouling: { timeToRespondS: 400, action: 'flush R1 by procedure 7' },
-      'fouling:R1': { timeToRespondS: 100, approvedBy: 'process engineer' },
+      fouling: { timeToRespondSeconds: 400, action: 'flush R1 by procedure 7' },
+      'fouling:R1': { timeToRespondSeconds: 100, approvedBy: 'process engineer' },
     }
     expect(rationale('fouling', 'R2', basis, overrides)).toMatchObject({
-      timeToRespondS: 400,
+      timeToRespondSeconds: 400,
       priority: 'medium',
       action: 'flush R1 by procedure 7',
       review: notReviewed,
     })
     expect(rationale('fouling', 'R1', basis, overrides)).toMatchObject({ priority: 'high', review: 'approved by process engineer' })
-    expect(rationale('fouling', 'R1', basis, { fouling: { priority: 'low', severity: 'severe' } })).toMatchObject({
+    expect(rationale('fouling', 'R1', basis, { fouling: { priority: 'low', severity: 'high' } })).toMatchObject({
       priority: 'low',
       priorityReason: 'given in the skid file',
     })
@@ -87,9 +87,9 @@ describe('rationalisation', () => {
     for (const [fields, text] of [
       [{ action: ' ' }, /action is empty/],
       [{ consequence: '' }, /consequence is empty/],
-      [{ timeToRespondS: 0 }, /above 0/],
-      [{ timeToRespondS: Number.NaN }, /above 0/],
-      [{ onDelayS: -1 }, /at least 0/],
+      [{ timeToRespondSeconds: 0 }, /above 0/],
+      [{ timeToRespondSeconds: Number.NaN }, /above 0/],
+      [{ onDelaySeconds: -1 }, /at least 0/],
       [{ acton: 'x' }, /not a field/],
       [{ latching: 'yes' }, /must be a boolean/],
       [{ priority: 'urgent' }, /is 'urgent'/],
