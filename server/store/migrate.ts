@@ -6,7 +6,7 @@ import { MonitorError } from '../core/errors.ts'
  *
  * Keys `id` of stage, segment and act are run · 2^36 + number in the run's sequence: one run's records lie together, in order.
  */
-const steps: readonly string[] = [
+export const steps: readonly string[] = [
   `
   CREATE TABLE run (
     id INTEGER PRIMARY KEY AUTOINCREMENT, skid_id TEXT NOT NULL, title TEXT NOT NULL, skid_file TEXT NOT NULL, skid_text TEXT NOT NULL,
@@ -46,8 +46,6 @@ const steps: readonly string[] = [
   CREATE TRIGGER settings_kept BEFORE DELETE ON settings BEGIN SELECT RAISE(ABORT, 'settings are kept by version'); END;
   `,
 ]
-
-export const schemaVersion = steps.length
 
 /** Steps a store has seen. Errors: STORE_SCHEMA_NEWER when a newer build wrote it. */
 export function seen(db: Database.Database): number {

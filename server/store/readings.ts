@@ -101,7 +101,7 @@ export function readingStore(db: Database.Database, { heads, stages, segments }:
   }
 
   const envelope = (run: RunId, tags: readonly number[], fromMs: number, toMs: number, buckets = mostBuckets): Envelope => {
-    if (!(toMs > fromMs) || !(buckets >= 2 && buckets <= mostBuckets))
+    if (!(toMs > fromMs && Number.isFinite(toMs - fromMs)) || !(buckets >= 2 && buckets <= mostBuckets))
       throw new MonitorError(
         'STORE_DATA',
         `an envelope needs from < to and 2 to ${mostBuckets} buckets, got ${fromMs}, ${toMs}, ${buckets}`,

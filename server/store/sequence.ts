@@ -166,6 +166,11 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
       const { next, rows } = heads.get(run)
       return { entries: next, rows }
     },
+    /** Source time of the earliest and the latest row; null without a row. Errors: STORE_DATA. */
+    span(run: RunId): { fromMs: number; toMs: number } | null {
+      const { firstMs, lastMs } = heads.get(run)
+      return firstMs === null || lastMs === null ? null : { fromMs: firstMs, toMs: lastMs }
+    },
     /** As last appended; null before. */
     sourceState(run: RunId): Json {
       const text = heads.source(run)

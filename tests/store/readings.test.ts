@@ -123,14 +123,20 @@ it('agrees with brute force over 300,000 rows, where pages of three levels serve
   for (const buckets of [2000, 900, 400, 120, 50, 20]) {
     const { fromMs, bucketMs, tags } = store.readings.envelope(run, [0], t0, t0 + n * 1000, buckets)
     const [own] = tags
+    const thousandths = own!.count.map(() => 0)
     const truth = { count: own!.count.map(() => 0), min: own!.min.map(() => Infinity), max: own!.max.map(() => -Infinity) }
     values.forEach((v, i) => {
       const b = Math.floor((t0 + i * 1000 - fromMs) / bucketMs)
       truth.count[b]!++
+      thousandths[b] = thousandths[b]! + Math.round(v * 1000)
       truth.min[b] = Math.min(truth.min[b]!, v)
       truth.max[b] = Math.max(truth.max[b]!, v)
     })
     expect([own!.count, own!.min, own!.max]).toEqual([truth.count, truth.min, truth.max])
+    // Each cell's sum is exact; adding those of a bucket rounds in the last digits of a double.
+    thousandths.forEach((sum, b) => {
+      if (truth.count[b]! > 0) expect(Math.abs(own!.mean[b]! - sum / 1000 / truth.count[b]!)).toBeLessThan(1e-13)
+    })
     expect(Math.max(...own!.max)).toBe(99.9)
   }
 })
@@ -179,5 +185,6 @@ it('refuses an unknown tag and an empty span by name', () => {
   expect(() => store.readings.envelope(run, [3], t0, t0 + 1)).toThrow(`run ${run} has 3 tags, there is no tag 3`)
   expect(() => store.readings.samples(run, [-1], t0, t0 + 1)).toThrow('there is no tag -1')
   expect(() => store.readings.envelope(run, [0], t0, t0)).toThrow('from < to')
+  expect(() => store.readings.envelope(run, [0], t0, Infinity)).toThrow('from < to')
   expect(() => store.readings.envelope(run, [0], t0, t0 + 1, 2001)).toThrow('2 to 2000 buckets')
 })
