@@ -3,7 +3,7 @@ import { type Rationale, rationale } from '../core/alarms/rationale.ts'
 import type { Skid } from '../core/skid.ts'
 import type { AlarmHelp } from '../wire/alarm.ts'
 
-type Name = Rationale['name']
+type Name = Rationale['alarm']
 
 /** The rationalisation that an occurrence falls under; the limit's name and the side stand in its key. */
 function nameOf(skid: Skid, o: Occurrence): Name {
@@ -41,12 +41,12 @@ export function alarmHelpOf(skid: Skid): (o: Occurrence) => AlarmHelp | null {
 
 function make(skid: Skid, name: Name, segment: string | null): AlarmHelp | null {
   const pick = (r: Rationale): AlarmHelp => ({
-    title: r.title,
-    causes: r.causes,
+    title: r.name,
+    causes: r.cause,
     consequence: r.consequence,
     check: r.check,
     action: r.action,
-    timeToRespondS: r.timeToRespondS,
+    timeToRespondS: r.timeToRespondSeconds,
     review: r.review,
   })
   const basis = { scanS: skid.scanSeconds, residenceS: null }
