@@ -1,14 +1,36 @@
-import { parseDocument } from 'yaml'
-import { MonitorError } from '../core/errors.ts'
 import { type LimitName, limitNames } from '../core/sequence.ts'
-import type { Skid } from '../core/skid.ts'
+import type { LimitsSpec, Skid } from '../core/skid.ts'
+import { firstOf } from '../skid/check.ts'
+import { parseSkidText } from '../skid/document.ts'
 import { meant } from '../skid/nearest.ts'
+import { inFileOrder } from '../skid/problem.ts'
+import { dictionary, group, type Reader } from '../skid/readers.ts'
+import { detectionShape, limitFields } from '../skid/skid-shape.ts'
+import { isNull, walkOf } from '../skid/walk.ts'
 
-/** What a settings file may change for one analysis: the promise and limits by segment. */
-interface Settings {
-  detection?: { falseAlarmDays?: number; riseToFindPct?: number }
-  limits?: Record<string, Partial<Record<LimitName, number | null>>>
-}
+/** A limit, or null for none. */
+const orNone = (limit: Reader<number>): Reader<number | null> => ({
+  says: `${limit.says}, or null for no limit`,
+  read: (node, path, walk) => (isNull(walk.real(node)) ? null : limit.read(node, path, walk)),
+})
+
+const segmentLimits = group(
+  Object.fromEntries(limitNames.map((name) => [name, orNone(limitFields[name])])) as Record<LimitName, Reader<number | null>>,
+  { nullable: false },
+)
+
+/** What a settings file may change for one analysis: the promise, and limits by segment. */
+const settingsShape = (ids: readonly string[]) =>
+  group({
+    detection: detectionShape,
+    limits: dictionary(`a segment (${ids.join(', ')})`, segmentLimits, (id) =>
+      ids.includes(id) ? null : { hint: meant(id, ids) },
+    ),
+  })
+
+/** The values that the file gives. */
+const given = <T extends object>(values: { [K in keyof T]?: T[K] | undefined } | undefined): Partial<T> =>
+  Object.fromEntries(Object.entries(values ?? {}).filter(([, v]) => v !== undefined)) as Partial<T>
 
 /**
  * The skid with other settings laid over it, to see what they would have told. YAML or JSON:
@@ -16,51 +38,18 @@ interface Settings {
  *   detection: { falseAlarmDays: 30, riseToFindPct: 5 }
  *   limits: { R1: { dpHighBar: 5.5 } }
  *
- * Errors: SKID_FILE with place for text that does not parse, an unknown key, a segment the skid has not, a value that is no number.
+ * Read with the same care as a skid file. Errors: SKID_FILE with the place of the first mistake and how many more there are.
  */
 export function withSettings(skid: Skid, text: string, file: string): Skid {
-  const doc = parseDocument(text, { strict: true, uniqueKeys: true })
-  const fault = doc.errors[0]
-  if (fault !== undefined) {
-    const at = fault.linePos?.[0]
-    throw new MonitorError('SKID_FILE', fault.message.split('\n')[0]!, {
-      place: { file, ...(at === undefined ? {} : { line: at.line, column: at.col }) },
-    })
-  }
-  const refuse = (message: string, hint: string): never => {
-    throw new MonitorError('SKID_FILE', message, { place: { file }, hint })
-  }
-  const known = (name: string, list: readonly string[], what: string): void => {
-    if (list.includes(name)) return
-    const near = meant(name, list)
-    refuse(`unknown ${what} '${name}'`, near === null ? `one of ${list.join(', ')}` : `did you mean ${near}?`)
-  }
-  const data = doc.toJS({ maxAliasCount: 20 }) as Settings | null
-  if (data === null || typeof data !== 'object' || Array.isArray(data))
-    return refuse('a settings file holds detection and limits', 'see clearbore analyse --help')
-  for (const key of Object.keys(data)) known(key, ['detection', 'limits'], 'setting')
-  const number = (value: unknown, path: string): number =>
-    typeof value === 'number' && Number.isFinite(value)
-      ? value
-      : refuse(`${path} must be a number, found ${JSON.stringify(value)}`, 'give a number in the unit the name ends with')
-  for (const [key, value] of Object.entries(data.detection ?? {})) {
-    known(key, ['falseAlarmDays', 'riseToFindPct'], 'key of detection')
-    if (number(value, `detection.${key}`) <= 0) refuse(`detection.${key} must be above 0`, 'give a positive number')
-  }
-  for (const [segment, limits] of Object.entries(data.limits ?? {})) {
-    known(
-      segment,
-      skid.segments.map((s) => s.id),
-      'segment',
-    )
-    for (const [key, value] of Object.entries(limits)) {
-      known(key, limitNames, 'limit')
-      if (value !== null) number(value, `limits.${segment}.${key}`)
-    }
-  }
+  const wrong = (problems: Parameters<typeof firstOf>[0]) => firstOf(problems, file, null, 'see clearbore analyse --help')
+  const { doc, lines, problems } = parseSkidText(text)
+  if (doc === null) throw wrong(problems)
+  const walk = walkOf(doc, lines)
+  const settings = settingsShape(skid.segments.map((s) => s.id)).read(doc.contents, [], walk)
+  if (settings === undefined || walk.problems.length > 0) throw wrong(inFileOrder(walk.problems))
   return {
     ...skid,
-    detection: { ...skid.detection, ...data.detection },
-    segments: skid.segments.map((s) => ({ ...s, limits: { ...s.limits, ...data.limits?.[s.id] } })),
+    detection: { ...skid.detection, ...given<Skid['detection']>(settings.detection) },
+    segments: skid.segments.map((s) => ({ ...s, limits: { ...s.limits, ...given<LimitsSpec>(settings.limits?.get(s.id)) } })),
   }
 }

@@ -42,15 +42,18 @@ export const problemLine = (file: string, p: Problem): string =>
 /** The skid of a file's text. Errors: SKID_FILE with the first mistake, its place, and how many more there are. */
 export function loadSkid(text: string, file: string): Skid {
   const { skid, problems } = checkSkid(text, file)
-  const first = problems[0]
-  if (skid !== null && first === undefined) return skid
-  if (first === undefined) throw new MonitorError('SKID_FILE', 'the skid file cannot be read', { place: { file } })
+  if (skid !== null && problems.length === 0) return skid
+  throw firstOf(problems, file, 'clearbore check-skid FILE lists them all', 'see the skid file keys in README.md')
+}
+
+/** The first of the mistakes in a file as an error; `all` says where the others are listed, `otherwise` what to do where it has no mend. */
+export function firstOf(problems: readonly Problem[], file: string, all: string | null, otherwise: string): MonitorError {
+  const [first] = problems
+  if (first === undefined) return new MonitorError('SKID_FILE', 'the file cannot be read', { place: { file }, hint: otherwise })
   const more = problems.length - 1
   const others = more === 0 ? '' : ` (and ${more} more ${more === 1 ? 'mistake' : 'mistakes'})`
-  throw new MonitorError('SKID_FILE', `${first.message}; expected ${first.expected}${others}`, {
-    hint:
-      [first.hint, more > 0 ? 'clearbore check-skid FILE lists them all' : null].filter((part) => part !== null).join('; ') ||
-      'see the skid file keys in README.md',
+  return new MonitorError('SKID_FILE', `${first.message}; expected ${first.expected}${others}`, {
+    hint: [first.hint, more > 0 ? all : null].filter((part) => part !== null).join('; ') || otherwise,
     place: { file, line: first.line, column: first.column },
   })
 }

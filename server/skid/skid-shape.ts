@@ -96,7 +96,8 @@ const channel = group({
   outerFilmWM2K: number({ above: 0, max: 1e6, unit: 'W/(m2 K)' }),
 })
 
-const limits = group({
+/** The limits that settings may change too, each with what it may be. */
+export const limitFields = {
   dpHighBar: bar,
   dpHighHighBar: bar,
   pressureHighBar: bar,
@@ -104,6 +105,10 @@ const limits = group({
   temperatureHighHighC: celsius,
   temperatureLowC: celsius,
   flowLow: number({ min: 0, max: 1e9, unit: 'in the unit of the flow tag' }),
+}
+
+const limits = group({
+  ...limitFields,
   feedRatio: group(
     {
       of: list(streamRef, { min: 2, max: 2, name: 'streams' }),
@@ -141,6 +146,12 @@ const segment = group(
   { required: ['id', 'kind', 'streams'] },
 )
 
+/** The promise, in a skid file and in settings. */
+export const detectionShape = group({
+  falseAlarmDays: number({ above: 0, max: 3650, unit: 'days' }),
+  riseToFindPct: number({ above: 0, max: 100, unit: '%' }),
+})
+
 /** The whole skid file, key by key. What holds between keys is in references.ts and consistency.ts. */
 export const skidShape = group(
   {
@@ -151,10 +162,7 @@ export const skidShape = group(
     lateSeconds: number({ min: 0, max: 86_400, unit: 'seconds' }),
     phaseColumn: text('a column of the log'),
     log: logShape,
-    detection: group({
-      falseAlarmDays: number({ above: 0, max: 3650, unit: 'days' }),
-      riseToFindPct: number({ above: 0, max: 100, unit: '%' }),
-    }),
+    detection: detectionShape,
     tags: list(tag, { min: 1, name: 'tags' }),
     streams: list(stream, { min: 1, name: 'streams' }),
     segments: list(segment, { min: 1, name: 'segments' }),
