@@ -49,6 +49,8 @@ export interface ExothermVerdict {
   /** Hot spot: highest reading and its thermocouple. */
   readonly hotSpotC: number | null
   readonly hotSpot: number | null
+  /** How far the centre of the heat has moved from where it usually is, thermocouple spacings, downstream positive; see `profile.ts`. */
+  readonly heatShift: number | null
   /** Hub-Jones criterion fulfilled, whether or not it spoke first. */
   readonly runaway: boolean
   /** As far below what is explained: a cold excursion, sustained 30 s. */

@@ -1,4 +1,5 @@
 import type { Coolant } from './coolant.ts'
+import { heatCentre } from './profile.ts'
 import { ago, lineOf } from './ring.ts'
 import type { Pace } from './series.ts'
 import type { Finding } from './thresholds.ts'
@@ -35,6 +36,7 @@ export function conclude(
     hottest: f.hottest,
     hotSpotC: f.hotSpotC,
     hotSpot: f.hotSpot,
+    heatShift: known ? heatShift(r) : null,
     runaway: f.runaway,
     cold: f.cold,
     cause: over ? causeOf(config, state, found, i, s) : null,
@@ -72,4 +74,18 @@ function causeOf(config: WatchConfig, state: WatchState, found: readonly Finding
   const least = Math.max(0.14, 0.4 * (found[i] as Finding).meanK)
   const others = found.some((f, k) => k !== i && config.reactors[k]?.coolant === name && f.n > 0 && f.meanK > least)
   return others ? 'coolant' : 'reaction'
+}
+
+/** Centre of the heat now, by the latest 4-s means, against that of the levels; only of thermocouples read now. */
+function heatShift(r: Reactor): number | null {
+  const usual: (number | null)[] = []
+  const now: (number | null)[] = []
+  for (const th of r.thermos) {
+    const x = ago(th.series.recent, 0)
+    usual.push(x === null ? null : (th.c - th.o) * r.h)
+    now.push(x === null ? null : (th.c - th.o) * r.h + x)
+  }
+  const a = heatCentre(now)
+  const b = heatCentre(usual)
+  return a === null || b === null ? null : a - b
 }
