@@ -29,6 +29,7 @@ export type ErrorCode =
   | 'STORE_CORRUPT'
   | 'DISK_FULL'
   | 'PORT_TAKEN'
+  | 'RECORD_FILE'
   | 'UPLOAD'
   | 'RUN_UNKNOWN'
   | 'RUN_ENDED'
