@@ -63,12 +63,15 @@ export function hubJones(c: HubJonesConfig, s: HubJones, tMs: number, hotC: numb
   const middle = (n - 1) / 2
   const spread = (n * n - 1) / 12
   const base = ago(s.t, 0) as number
+  // Both rings are full and in step: from the oldest on, without a look at holes.
+  let i = s.t.at
   for (let k = 0; k < n; k++) {
-    const u = middle - k
-    const x = (ago(s.t, k) as number) - base
+    const u = k - middle
+    const x = (s.t.v[i] as number) - base
     slope += u * x
     bend += (u * u - spread) * x
-    gap += u * (ago(s.d, k) as number)
+    gap += u * (s.d.v[i] as number)
+    if (++i === n) i = 0
   }
   const rate = slope / (n * spread) / c.scanS
   const rising = bend > 0 && gap > 0 && rate > c.leastRateKS && tMs >= s.holdOffMs

@@ -44,7 +44,12 @@ export interface Finding {
   cold: boolean
 }
 
-export const noFinding = (): Finding => ({
+/** Clears a finding for the next scan; one object a reactor is kept, since this runs at every scan. */
+export const clearFinding = (f: Finding): void => {
+  Object.assign(f, nothing)
+}
+
+const nothing: Finding = {
   sum: 0,
   rawSum: 0,
   allow: 0,
@@ -65,7 +70,9 @@ export const noFinding = (): Finding => ({
   under: true,
   runaway: false,
   cold: false,
-})
+}
+
+export const noFinding = (): Finding => ({ ...nothing })
 
 /** excess outranks rise outranks runaway: the plainest of those that speak is named. */
 export function speak(f: Finding, by: ExothermDetector): void {

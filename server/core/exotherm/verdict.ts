@@ -78,14 +78,20 @@ function causeOf(config: WatchConfig, state: WatchState, found: readonly Finding
 
 /** Centre of the heat now, by the latest 4-s means, against that of the levels; only of thermocouples read now. */
 function heatShift(r: Reactor): number | null {
-  const usual: (number | null)[] = []
-  const now: (number | null)[] = []
-  for (const th of r.thermos) {
+  scratchUsual.length = r.thermos.length
+  scratchNow.length = r.thermos.length
+  for (let j = 0; j < r.thermos.length; j++) {
+    const th = r.thermos[j] as Thermo
     const x = ago(th.series.recent, 0)
-    usual.push(x === null ? null : (th.c - th.o) * r.h)
-    now.push(x === null ? null : (th.c - th.o) * r.h + x)
+    const usual = (th.c - th.o) * r.h
+    scratchUsual[j] = x === null ? null : usual
+    scratchNow[j] = x === null ? null : usual + x
   }
-  const a = heatCentre(now)
-  const b = heatCentre(usual)
+  const a = heatCentre(scratchNow)
+  const b = heatCentre(scratchUsual)
   return a === null || b === null ? null : a - b
 }
+
+// Filled anew at every call; kept so that a scan allocates nothing for it.
+const scratchUsual: (number | null)[] = []
+const scratchNow: (number | null)[] = []

@@ -6,7 +6,7 @@ import { endBlock } from './learning.ts'
 import { explained } from './level.ts'
 import { ago, forget, meanOf, push } from './ring.ts'
 import { pace, remember, restart, spread } from './series.ts'
-import { exothermDefaults as d, type Finding, noFinding, speak, test } from './thresholds.ts'
+import { clearFinding, exothermDefaults as d, type Finding, noFinding, speak, test } from './thresholds.ts'
 import type { ExothermVerdict, ReactorConfig, ReactorScan, WatchConfig } from './types.ts'
 import { conclude } from './verdict.ts'
 import { freshWatch, hubJonesConfig, type Reactor, type Thermo, type WatchState } from './watch-state.ts'
@@ -30,6 +30,9 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
   const runawayConfig = hubJonesConfig(config.scanS)
   const gapS = Math.max(10, 5 * config.scanS)
 
+  const found: Finding[] = config.reactors.map(noFinding)
+  const names = Object.keys(state.coolants)
+
   function scan(tMs: number, scans: readonly ReactorScan[]): ExothermVerdict[] {
     const first = state.scans === 0
     const gap = !first && tMs - state.lastMs > gapS * 1000
@@ -37,7 +40,7 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     state.lastMs = tMs
     state.scans++
     const slow = state.scans % p.slowEvery === 0
-    for (const name of Object.keys(state.coolants)) {
+    for (const name of names) {
       let reading: number | null = null
       config.reactors.forEach((rc, i) => {
         if (rc.coolant === name) reading ??= scans[i]?.coolantC ?? null
@@ -49,13 +52,11 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     let allAllow = 0
     let allN = 0
     let reactors = 0
-    const found: Finding[] = []
     for (let i = 0; i < config.reactors.length; i++) {
       const r = state.reactors[i] as Reactor
       const s = scans[i] as ReactorScan
       feedScan(r, config.reactors[i] as ReactorConfig, s, tMs, gapS)
       const f = examine(i, scans, tMs, gap, slow)
-      found.push(f)
       if (f.n > 0) {
         allSum += f.sum
         allRaw += f.rawSum
@@ -104,7 +105,8 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     const r = state.reactors[i] as Reactor
     const rc = config.reactors[i] as ReactorConfig
     const s = scans[i] as ReactorScan
-    const f = noFinding()
+    const f = found[i] as Finding
+    clearFinding(f)
     const coolant = coolantOf(rc)
     const base = coolant === null ? 0 : (coolant.f[coolant.best] as number)
     const usable = s.production && (coolant === null || coolant.on)

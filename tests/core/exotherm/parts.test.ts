@@ -1,4 +1,5 @@
-import { linearRegression } from 'simple-statistics'
+import fc from 'fast-check'
+import { linearRegression, medianAbsoluteDeviation } from 'simple-statistics'
 import { describe, expect, it } from 'vitest'
 import {
   chooseLag,
@@ -122,6 +123,18 @@ describe('robust spread', () => {
     for (let i = 0; i < 12; i++) remember(s, 9, true)
     spread(s, p)
     expect(s.sdK).toBeLessThan(0.06)
+  })
+  it('is 1.4826 times the median absolute deviation by simple-statistics, ties and even counts included', () => {
+    const p = pace(1)
+    fc.assert(
+      fc.property(fc.array(fc.integer({ min: -9, max: 9 }), { minLength: 30, maxLength: 170 }), (xs) => {
+        const s = freshSeries(p)
+        for (const x of xs) remember(s, x / 10, true)
+        for (let i = 0; i < p.slowDelay; i++) remember(s, 7, true)
+        spread(s, p)
+        expect(s.sdK).toBeCloseTo(1.4826 * medianAbsoluteDeviation(xs.map((x) => x / 10)), 12)
+      }),
+    )
   })
   it('seconds become scans: 4, 12, 25 s are 40, 120, 250 scans at 0.1 s and 1, 1, 1 at 60 s', () => {
     expect([pace(0.1), pace(1), pace(5), pace(60)].map((p) => [p.smooth, ...p.rise])).toEqual([
