@@ -50,3 +50,20 @@ export function countsOf(alarms: readonly AlarmRow[]) {
   }
   return { ...by, shelved, outOfService }
 }
+
+/** An alarm as it stood at a moment of a stored run: what came later is not known yet. */
+export function asAt(a: AlarmRow, tMs: number): AlarmRow {
+  const clearedMs = a.clearedMs !== null && a.clearedMs <= tMs ? a.clearedMs : null
+  const owned = a.acknowledgedMs !== null && a.acknowledgedMs <= tMs
+  const active = clearedMs === null
+  return {
+    ...a,
+    clearedMs,
+    active,
+    state: active ? (owned ? 'ACKED' : 'UNACK') : owned ? 'NORM' : 'RTNUN',
+    needsAck: !owned,
+    acknowledgedMs: owned ? a.acknowledgedMs : null,
+    acknowledgedBy: owned ? a.acknowledgedBy : null,
+    shelvedUntilMs: null,
+  }
+}

@@ -6,12 +6,16 @@ export interface Point {
   readonly high?: number | null
 }
 
+/** A frame that covers more than this is what was missed while cut off, not the rhythm of the feed. */
+const longestFrameMs = 120_000
+
 /**
- * A series that grows at its end. Two neighbours further apart than `gapMs` get an empty point between them, so that no line crosses a gap.
+ * A series that grows at its end. Two neighbours further apart than the gap get an empty point between them, so that no line crosses a gap.
  * What is older than the newest less `keepMs` is dropped: memory does not grow with the run.
  */
-export function growingSeries(gapMs: number, keepMs = Infinity) {
+export function growingSeries(leastGapMs: number, keepMs = Infinity) {
   let points: Point[] = []
+  let gapMs = leastGapMs
   return {
     points: (): readonly Point[] => points,
     /** An empty point is kept only as the gap it makes. A point not after the last one is dropped. */
@@ -30,8 +34,13 @@ export function growingSeries(gapMs: number, keepMs = Infinity) {
       points = []
       for (const p of [...all.values()].sort((a, b) => a.x - b.x)) this.push(p)
     },
-    widen(toMs: number): void {
-      gapMs = Math.max(gapMs, toMs)
+    /** Points come this far apart at most from now on: what is further apart is a gap. */
+    spacing(ms: number): void {
+      gapMs = Math.max(leastGapMs, 2.2 * ms)
+    },
+    /** The same, but never narrower than it was: after coarse history live points come closer. */
+    widen(ms: number): void {
+      gapMs = Math.max(gapMs, 2.2 * Math.min(ms, longestFrameMs))
     },
     clear(): void {
       points = []
@@ -40,16 +49,13 @@ export function growingSeries(gapMs: number, keepMs = Infinity) {
 }
 export type GrowingSeries = ReturnType<typeof growingSeries>
 
-/** Stretches without data inside [fromMs, toMs]: where neighbours are further apart than `gapMs`, or points are empty. */
-export function gapsOf(points: readonly Point[], gapMs: number): { fromMs: number; toMs: number }[] {
-  const gaps: { fromMs: number; toMs: number }[] = []
-  let last: number | null = null
-  for (const p of points) {
-    if (p.y === null) continue
-    if (last !== null && p.x - last > gapMs) gaps.push({ fromMs: last, toMs: p.x })
-    last = p.x
-  }
-  return gaps
+/** Stretches without data: between the neighbours of every empty point. */
+export function gapsOf(points: readonly Point[]): { fromMs: number; toMs: number }[] {
+  return points.flatMap((p, i) => {
+    const before = points[i - 1]
+    const after = points[i + 1]
+    return p.y === null && before !== undefined && after !== undefined ? [{ fromMs: before.x, toMs: after.x }] : []
+  })
 }
 
 /**

@@ -1,6 +1,6 @@
 import type { Priority } from '../../server/core/report.ts'
+import type { Overlay } from '../model/overlay.ts'
 import type { Point } from '../model/series.ts'
-import type { Overlay } from './overlay.ts'
 import type { Palette } from './palette.ts'
 
 export interface Box {

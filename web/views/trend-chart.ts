@@ -1,32 +1,11 @@
 import { Chart, type ChartDataset, LinearScale, LineController, LineElement, type Plugin, PointElement } from 'chart.js'
-import type { ZoneClock } from '../model/clock.ts'
+import { emptyOverlay, type Line, type TrendSpec } from '../model/overlay.ts'
 import { type Point, thin } from '../model/series.ts'
 import { timeTicks, valueTicks } from '../model/ticks.ts'
-import { emptyOverlay, type Overlay } from './overlay.ts'
 import { drawOver, drawUnder, type Frame, label } from './overlay-pen.ts'
 import { onPalette, palette } from './palette.ts'
 
 Chart.register(LineController, LineElement, PointElement, LinearScale)
-
-export interface Line {
-  readonly name: string
-  readonly points: readonly Point[]
-  /** main: what the chart is about. The others differ by dash and carry their name at the end. */
-  readonly look: 'main' | 'other'
-}
-
-export interface TrendSpec {
-  readonly fromMs: number
-  readonly toMs: number
-  readonly low: number
-  readonly high: number
-  /** Name with unit, for the axis. */
-  readonly yTitle: string
-  readonly lines: readonly Line[]
-  readonly overlay: Overlay
-  readonly clock: ZoneClock
-  readonly zone: string
-}
 
 /** Left of every time picture there is so much room for figures, so that charts and strips below each other share their time axis. */
 export const gutterRem = 4.4

@@ -1,5 +1,6 @@
 import type { Priority } from '../../server/core/report.ts'
-import type { Point } from '../model/series.ts'
+import type { ZoneClock } from './clock.ts'
+import type { Point } from './series.ts'
 
 /** What stands in a trend besides its lines. Times in ms, values on the chart's own scale. */
 export interface Overlay {
@@ -46,3 +47,23 @@ export const emptyOverlay = (nowMs: number): Overlay => ({
   alarms: [],
   notes: [],
 })
+
+export interface Line {
+  readonly name: string
+  readonly points: readonly Point[]
+  /** main: what the chart is about. The others differ by dash and carry their name at the end. */
+  readonly look: 'main' | 'other'
+}
+
+export interface TrendSpec {
+  readonly fromMs: number
+  readonly toMs: number
+  readonly low: number
+  readonly high: number
+  /** Name with unit, for the axis. */
+  readonly yTitle: string
+  readonly lines: readonly Line[]
+  readonly overlay: Overlay
+  readonly clock: ZoneClock
+  readonly zone: string
+}

@@ -1,0 +1,104 @@
+import type { Band, Marks, ReadingFrame, RunDetail, StepPoint, Trends } from '../../server/wire/index.ts'
+import { type ZoneClock, zoneClock } from './clock.ts'
+import { type GrowingSeries, growingSeries, type Point } from './series.ts'
+
+export interface SegmentSeries {
+  readonly ratio: GrowingSeries
+  readonly dpBar: GrowingSeries
+  readonly flowMlMin: GrowingSeries
+}
+
+/** What the pages know of one run. Series are those of the window last fetched, and of what came live since. */
+export interface RunData {
+  readonly detail: RunDetail
+  readonly clock: ZoneClock
+  readonly marks: Marks
+  readonly segments: ReadonlyMap<string, SegmentSeries>
+  readonly tags: ReadonlyMap<string, GrowingSeries>
+  /** Where at least one tag read: its gaps are the gaps of the log. */
+  readonly heard: GrowingSeries
+  /** 1 in production, 0 not. */
+  readonly production: GrowingSeries
+  readonly window: { fromMs: number; toMs: number }
+}
+
+/** Longest silence of a tag that is not yet a gap (DSP-11). */
+const quietMs = 15_000
+
+export function emptyRun(detail: RunDetail, marks: Marks): RunData {
+  const f = detail.skidFacts
+  const stepGap = 2200 * f.stepSeconds
+  return {
+    detail,
+    marks,
+    clock: zoneClock(f.timeZone),
+    segments: new Map(
+      f.segments.map((s) => [
+        s.id,
+        { ratio: growingSeries(stepGap), dpBar: growingSeries(stepGap), flowMlMin: growingSeries(stepGap) },
+      ]),
+    ),
+    tags: new Map(f.tags.map((t) => [t.tag, growingSeries(quietMs)])),
+    heard: growingSeries(quietMs),
+    production: growingSeries(Infinity),
+    window: { fromMs: 0, toMs: 0 },
+  }
+}
+
+/** Puts a fetched window in place of what the series held; live points after its end stay. */
+export function putTrends(data: RunData, t: Trends): void {
+  const end = t.fromMs + t.buckets * t.bucketMs
+  const put = (series: GrowingSeries | undefined, band: Band) => {
+    if (series === undefined) return
+    series.spacing(t.bucketMs)
+    const later = series.points().filter((p) => p.x >= end)
+    const points: Point[] = band.mean.map((y, i) => ({
+      x: t.fromMs + (i + 0.5) * t.bucketMs,
+      y,
+      low: band.min[i] ?? null,
+      high: band.max[i] ?? null,
+    }))
+    series.clear()
+    series.fill([...points, ...later])
+  }
+  for (const s of t.segments) {
+    const own = data.segments.get(s.segment)
+    put(own?.ratio, s.ratio)
+    put(own?.dpBar, s.dpBar)
+    put(own?.flowMlMin, s.flowMlMin)
+  }
+  for (const s of t.tags) put(data.tags.get(s.tag), s)
+  const any = Array.from({ length: t.buckets }, (_, i) => (t.tags.some((s) => s.mean[i] != null) ? 1 : null))
+  put(data.heard, { min: any, max: any, mean: any })
+  const on = t.production.map((p) => (p === null ? null : p ? 1 : 0))
+  put(data.production, { min: on, max: on, mean: on })
+}
+
+/** New steps and readings at the end of the series. */
+export function grow(data: RunData, steps: readonly StepPoint[], frames: readonly ReadingFrame[]): void {
+  const ids = data.detail.skidFacts.segments.map((s) => s.id)
+  for (const s of steps) {
+    s.segments.forEach((v, i) => {
+      const own = data.segments.get(ids[i] ?? '')
+      own?.ratio.push({ x: s.tMs, y: v.ratio })
+      own?.dpBar.push({ x: s.tMs, y: v.dpBar })
+      own?.flowMlMin.push({ x: s.tMs, y: v.flowMlMin })
+    })
+    data.production.push({ x: s.tMs, y: s.production ? 1 : 0 })
+  }
+  const tags = data.detail.skidFacts.tags
+  for (const f of frames) {
+    const x = (f.fromMs + f.toMs) / 2
+    const widthMs = f.toMs - f.fromMs
+    f.tags.forEach((v, i) => {
+      const own = data.tags.get(tags[i]?.tag ?? '')
+      own?.widen(widthMs)
+      if (v !== null) own?.push({ x, y: v.mean, low: v.min, high: v.max })
+    })
+    data.heard.widen(widthMs)
+    if (f.tags.some((v) => v !== null)) data.heard.push({ x, y: 1 })
+  }
+}
+
+/** Points held in the longest series: past a few thousand the window is fetched again in buckets, so that memory does not grow with the run. */
+export const longest = (data: RunData): number => Math.max(0, ...[...data.tags.values()].map((s) => s.points().length))

@@ -1,0 +1,271 @@
+import type { LimitName } from '../../server/core/sequence.ts'
+import type { AlarmRow, LiveState, Marks, SegmentFacts, SegmentState } from '../../server/wire/index.ts'
+import { fanEdge } from './fan.ts'
+import { axisUnit, figure, fixed, unitText } from './format.ts'
+import type { Line, Overlay, TrendSpec } from './overlay.ts'
+import type { RunData } from './run-data.ts'
+import { gapsOf, type Point } from './series.ts'
+import { limitWords } from './words.ts'
+
+export const trendKinds = ['ratio', 'dp', 'temperature', 'pressure', 'flow'] as const
+export type TrendKind = (typeof trendKinds)[number]
+export const trendWords: Record<TrendKind, { readonly tab: string; readonly title: string }> = {
+  ratio: { tab: 'Ratio', title: 'flow resistance over clean [–]' },
+  dp: { tab: 'ΔP', title: 'pressure drop [bar]' },
+  temperature: { tab: 'Temperatures', title: 'temperatures [°C]' },
+  pressure: { tab: 'Pressures', title: 'pressures at its ends' },
+  flow: { tab: 'Feeds', title: 'flows of its feeds' },
+}
+
+export interface TrendView {
+  readonly kind: TrendKind
+  readonly segment: string
+  readonly fromMs: number
+  readonly toMs: number
+  /** Now, or the moment shown; nothing later is known. */
+  readonly atMs: number
+  readonly alarms: readonly AlarmRow[]
+}
+
+/** What a trend shows of a segment at a moment: pure, from what the page knows. */
+export function trendSpec(data: RunData, state: LiveState, marks: Marks, view: TrendView): TrendSpec {
+  const facts = data.detail.skidFacts
+  const spec = facts.segments.find((s) => s.id === view.segment) ?? facts.segments[0]!
+  const now = state.segments.find((s) => s.segment === spec.id)
+  const picture = pictureOf(data, marks, view, spec, now)
+  const visible = picture.lines.flatMap((l) => l.points.filter((p) => p.x >= view.fromMs && p.x <= view.atMs))
+  const limits = picture.limits.flatMap((l) => l.steps.map((s) => s.value)).filter((v) => v !== null)
+  const [low, high] = extent(view.kind, visible, limits, picture.fan !== null)
+  return {
+    fromMs: view.fromMs,
+    toMs: view.toMs,
+    low,
+    high,
+    yTitle: picture.yTitle,
+    lines: picture.lines,
+    clock: data.clock,
+    zone: facts.timeZone,
+    overlay: {
+      nowMs: view.atMs,
+      nowLabel: picture.nowLabel,
+      bands: picture.bands,
+      limits: picture.limits,
+      gaps: gaps(data, view, view.kind === 'ratio' || view.kind === 'dp' ? spec.id : null),
+      fan: picture.fan,
+      onset: onsetOf(data, marks, view, spec.id, now),
+      alarms: view.alarms
+        .filter((a) => a.raisedMs <= view.atMs && (a.segment === spec.id || a.segment === null))
+        .map((a) => ({ tMs: a.raisedMs, priority: a.priority })),
+      notes: noticed(data, view, spec.id),
+    },
+  }
+}
+
+type Picture = Pick<Overlay, 'bands' | 'limits' | 'fan' | 'nowLabel'> & { readonly lines: readonly Line[]; readonly yTitle: string }
+
+function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFacts, now: SegmentState | undefined): Picture {
+  const own = data.segments.get(spec.id)
+  const facts = data.detail.skidFacts
+  const tagLine = (tag: string, look: Line['look'], name = tag): Line => ({
+    name,
+    look,
+    points: data.tags.get(tag)?.points() ?? [],
+  })
+  const limit = (name: LimitName, side: 1 | -1, scale = 1, unit = limitWords[name].unit) =>
+    limitOf(marks, view, spec.id, name, side, scale, unit)
+  const none = { bands: [], fan: null, limits: [] }
+  switch (view.kind) {
+    case 'ratio': {
+      const clean = now?.cleanDpBar ?? now?.baseline?.dpBar ?? null
+      const limits = clean === null || !(clean > 0) ? [] : [...limit('dpHighBar', 1, 1 / clean)]
+      const b = now?.baseline ?? null
+      const band =
+        b === null
+          ? []
+          : [
+              {
+                fromMs: b.fromMs,
+                toMs: view.atMs,
+                low: 1 - 2 * b.sigma,
+                high: 1 + 2 * b.sigma,
+                label: `clean baseline${b.provisional ? ', provisional,' : ''} 1.00 ± ${fixed(2 * b.sigma, 3)}`,
+              },
+            ]
+      return {
+        lines: [{ name: spec.id, look: 'main', points: own?.ratio.points() ?? [] }],
+        yTitle: 'ratio [–]',
+        bands: band,
+        limits,
+        fan: fanOf(data, view, now, clean),
+        nowLabel: now?.ratio == null ? null : fixed(now.ratio, 2),
+      }
+    }
+    case 'dp':
+      return {
+        ...none,
+        lines: [{ name: spec.id, look: 'main', points: own?.dpBar.points() ?? [] }],
+        yTitle: 'ΔP [bar]',
+        limits: [...limit('dpHighBar', 1), ...limit('dpHighHighBar', 1)],
+        nowLabel: now?.dpBar == null ? null : figure(now.dpBar, 'bar'),
+      }
+    case 'temperature': {
+      const lines = spec.temperatures.map((t, i) => tagLine(t, i === hottest(spec, now) ? 'main' : 'other'))
+      if (spec.coolantTemperature !== null)
+        lines.push(tagLine(spec.coolantTemperature, 'other', `${spec.coolantTemperature} coolant`))
+      return {
+        ...none,
+        lines,
+        yTitle: 'temperature [°C]',
+        limits: [...limit('temperatureHighC', 1), ...limit('temperatureHighHighC', 1), ...limit('temperatureLowC', -1)],
+        nowLabel: null,
+      }
+    }
+    case 'pressure': {
+      const unit = facts.tags.find((t) => t.tag === spec.pressureIn)?.unit ?? null
+      const lines = [spec.pressureIn, spec.pressureOut]
+        .filter((t) => t !== null)
+        .map((t, i) => tagLine(t, i === 0 ? 'main' : 'other'))
+      if (spec.dpTag !== null) lines.push(tagLine(spec.dpTag, 'other'))
+      return {
+        ...none,
+        lines,
+        yTitle: `pressure ${axisUnit(unit)}`,
+        limits: unit === 'bar' ? limit('pressureHighBar', 1) : [],
+        nowLabel: null,
+      }
+    }
+    case 'flow': {
+      const tags = facts.streams.filter((s) => spec.streams.includes(s.id))
+      const unit = facts.tags.find((t) => t.tag === tags[0]?.flowTag)?.unit ?? null
+      return {
+        ...none,
+        lines: tags
+          .filter((s) => facts.tags.find((t) => t.tag === s.flowTag)?.unit === unit)
+          .map((s, i) => tagLine(s.flowTag, i === 0 ? 'main' : 'other', `${s.id} ${s.flowTag}`)),
+        yTitle: `flow ${axisUnit(unit)}`,
+        limits: limit('flowLow', -1, 1, unit),
+        nowLabel: null,
+      }
+    }
+  }
+}
+
+const hottest = (spec: SegmentFacts, now: SegmentState | undefined): number => {
+  let top = 0
+  spec.temperatures.forEach((tag, i) => {
+    const of = (t: string | undefined) => now?.temperatures.find((x) => x.tag === t)?.tempC ?? -Infinity
+    if (of(tag) > of(spec.temperatures[top])) top = i
+  })
+  return top
+}
+
+/** A limit as it was in force up to the moment shown, in the unit it is named in times `scale`. */
+function limitOf(
+  marks: Marks,
+  view: TrendView,
+  segment: string,
+  name: LimitName,
+  side: 1 | -1,
+  scale: number,
+  unit: string | null,
+): Overlay['limits'] {
+  const all = marks.limits
+    .filter((l) => l.segment === segment && l.limit === name && l.fromMs <= view.atMs)
+    .sort((a, b) => a.fromMs - b.fromMs)
+  if (!all.some((l) => l.value !== null)) return []
+  const last = all.at(-1)!
+  const was = all.at(-2)
+  const value = last.value === null ? 'off' : `${fixed(last.value, 1)} ${unitText(unit)}`
+  const changed =
+    was === undefined || last.person === null ? '' : `, was ${was.value === null ? 'off' : fixed(was.value, 1)}; ${last.person}`
+  return [
+    {
+      side,
+      label: `${limitWords[name].name} ${value}${changed}`,
+      steps: all.map((l, i) => ({
+        fromMs: i === 0 ? Math.min(l.fromMs, view.fromMs) : l.fromMs,
+        value: l.value === null ? null : l.value * scale,
+      })),
+    },
+  ]
+}
+
+function fanOf(data: RunData, view: TrendView, now: SegmentState | undefined, clean: number | null): Overlay['fan'] {
+  const f = now?.forecast ?? null
+  if (f === null || now?.ratio == null || clean === null || f.limitBar === null) return null
+  const limit = f.limitBar / clean
+  const edge = (atMs: number) => fanEdge(view.atMs, now.ratio!, limit, atMs)
+  const mid = edge(f.atMs)
+  if (mid.length === 0) return null
+  return {
+    low: edge(f.lowMs),
+    mid,
+    high: edge(f.highMs),
+    limit,
+    lowMs: f.lowMs,
+    highMs: f.highMs,
+    label: `${data.clock.hm(f.lowMs)} to ${data.clock.hm(f.highMs)} (${Math.round(100 * f.level)} %)`,
+  }
+}
+
+function onsetOf(data: RunData, marks: Marks, view: TrendView, segment: string, now: SegmentState | undefined): Overlay['onset'] {
+  const o = now?.onset ?? [...marks.onsets].reverse().find((x) => x.segment === segment && x.foundMs <= view.atMs) ?? null
+  if (o === null || view.kind === 'flow' || view.kind === 'pressure') return null
+  const { hm } = data.clock
+  return {
+    lowMs: o.lowMs,
+    atMs: o.atMs,
+    highMs: o.highMs,
+    label: `began ${hm(o.atMs)} (${hm(o.lowMs)} to ${hm(o.highMs)}, ${Math.round(100 * o.level)} %)`,
+  }
+}
+
+/** The moment that the growth was noticed: the fouling alarm. */
+const noticed = (data: RunData, view: TrendView, segment: string): Overlay['notes'] =>
+  view.alarms
+    .filter((a) => a.kind === 'fouling' && a.segment === segment && a.raisedMs <= view.atMs)
+    .slice(-1)
+    .map((a) => ({ tMs: a.raisedMs, label: `noticed ${data.clock.hm(a.raisedMs)}` }))
+
+/** Hatched stretches: no row of the log, or rows but no ratio while in production. */
+function gaps(data: RunData, view: TrendView, segment: string | null): Overlay['gaps'] {
+  const { hm } = data.clock
+  const near = (g: { fromMs: number; toMs: number }) => g.toMs > view.fromMs && g.fromMs < view.atMs
+  const heard = data.heard.points()
+  const silent = gapsOf(heard).filter(near)
+  const last = heard.at(-1)
+  if (last !== undefined && view.atMs - last.x > 120_000 && view.atMs > last.x) silent.push({ fromMs: last.x, toMs: view.atMs })
+  const named = silent.map((g) => ({ ...g, label: `no data ${hm(g.fromMs)} to ${g.toMs === view.atMs ? 'now' : hm(g.toMs)}` }))
+  if (segment === null) return named
+  const produced = data.production.points()
+  const between = (g: { fromMs: number; toMs: number }) => produced.some((p) => p.y === 0 && p.x >= g.fromMs && p.x <= g.toMs)
+  const inside = (g: { fromMs: number; toMs: number }) => silent.some((s) => s.fromMs < g.toMs && s.toMs > g.fromMs)
+  const blind = gapsOf(data.segments.get(segment)?.ratio.points() ?? []).filter((g) => near(g) && !between(g) && !inside(g))
+  return [...named, ...blind.map((g) => ({ ...g, label: `no ratio ${hm(g.fromMs)} to ${hm(g.toMs)}` }))]
+}
+
+/** Range of the value axis: the data with room, and the limits as far as they do not squeeze the data flat. */
+function extent(kind: TrendKind, points: readonly Point[], limits: readonly number[], fan: boolean): [number, number] {
+  let low = Infinity
+  let high = -Infinity
+  for (const p of points) {
+    if (p.y === null) continue
+    low = Math.min(low, p.low ?? p.y)
+    high = Math.max(high, p.high ?? p.y)
+  }
+  if (kind === 'ratio') {
+    low = Math.min(low, 0.9)
+    high = Math.max(high, 1.2)
+  }
+  if (low === Infinity) [low, high] = limits.length > 0 ? [Math.min(...limits), Math.max(...limits)] : [0, 1]
+  const span = Math.max(high - low, kind === 'temperature' ? 4 : 0.05 * Math.abs(high), 1e-6)
+  for (const l of limits) {
+    const far = Math.max(l - high, low - l)
+    if (kind === 'ratio' ? fan || l < 4 : far < 2.5 * span) {
+      low = Math.min(low, l)
+      high = Math.max(high, l)
+    }
+  }
+  const room = Math.max(high - low, span) * 0.1
+  return [kind === 'dp' || kind === 'flow' ? Math.max(0, low - room) : low - room, high + room]
+}

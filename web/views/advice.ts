@@ -1,0 +1,81 @@
+import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
+import type { ZoneClock } from '../model/clock.ts'
+import { actionWords, inPlantTime } from '../model/words.ts'
+import { el, fill } from './dom.ts'
+
+/** The advice in force: why, what speaks for it and against, what is not ruled out, what is still open, and its plan. */
+export function adviceView(clock: ZoneClock, openPlan: () => void) {
+  const node = el('section', { class: 'sheet adv', 'aria-label': 'Advice' })
+  let key = ''
+  return {
+    node,
+    show(state: LiveState, alarm: AlarmRow | null, planOpen: boolean): void {
+      const advice = state.advice[0]
+      const k = JSON.stringify([
+        advice?.atMs,
+        advice?.action,
+        advice?.segments,
+        alarm?.id,
+        alarm?.evidence,
+        planOpen,
+        state.advice.length,
+      ])
+      if (k === key) return
+      key = k
+      const focused = node.contains(document.activeElement)
+      if (advice === undefined) {
+        fill(
+          node,
+          el(
+            'p',
+            {},
+            el('b', { text: 'Nothing is advised. ' }),
+            'Advice appears here with its reason as soon as something stands.',
+          ),
+        )
+        return
+      }
+      const about =
+        state.alarms.find((a) => a.active && a.kind === 'fouling' && a.segment !== null && advice.segments.includes(a.segment)) ??
+        alarm
+      const pairs: [string, string, boolean][] = [['Why', inPlantTime(advice.reason, clock, state.clock.nowMs), false]]
+      if (about !== null) {
+        const e = about.evidence
+        if (e.for.length > 0) pairs.push(['Speaks for', e.for.join('; '), false])
+        if (e.against.length > 0) pairs.push(['Against', e.against.join('; '), true])
+        if (e.notExcluded.length > 0) pairs.push(['Not ruled out', e.notExcluded.join('; '), true])
+      }
+      const plan = advice.plan
+      if (plan !== null) {
+        const points = plan.steps[0]?.holdPoints ?? []
+        if (points.length > 0) pairs.push(['Still open', `${points[0]}; the shift lead must approve`, false])
+      }
+      for (const other of state.advice.slice(1, 3))
+        pairs.push(['Also', `${actionWords[other.action]}: ${inPlantTime(other.reason, clock, state.clock.nowMs)}`, true])
+      pairs.push(['Given', `${clock.hms(advice.atMs)}; a recommendation under the site’s own procedure, it can be wrong`, true])
+      const list = el('dl', { class: 'advice' })
+      for (const [name, text, folds] of pairs)
+        list.append(el('dt', { class: folds ? 'more' : '', text: name }), el('dd', { class: folds ? 'more' : '', text }))
+      const all = el('button', {
+        type: 'button',
+        class: 'only-short',
+        text: 'All evidence',
+        'aria-expanded': String(node.classList.contains('whole')),
+      })
+      all.addEventListener('click', () => all.setAttribute('aria-expanded', String(node.classList.toggle('whole'))))
+      const open =
+        plan === null
+          ? null
+          : el('button', {
+              type: 'button',
+              class: 'solid',
+              id: 'open-plan',
+              text: planOpen ? 'Close the plan' : 'Open the flush plan',
+              'aria-expanded': String(planOpen),
+              on: { click: openPlan },
+            })
+      fill(node, list, el('div', { class: 'row' }, open, all))
+      if (focused) (open ?? all).focus()
+    },
+  }
+}

@@ -1,0 +1,168 @@
+import type { SkidFacts } from '../../server/wire/index.ts'
+import { drawnShare } from '../model/bore.ts'
+import type { RunData } from '../model/run-data.ts'
+import { gapsOf, type Point, thin } from '../model/series.ts'
+import { el } from './dom.ts'
+import { clamp } from './overlay-pen.ts'
+import { onPalette, palette } from './palette.ts'
+import { gutterRem } from './trend-chart.ts'
+
+const rowRem = 1.12
+const hotRem = 1.75
+const phaseRem = 1.4
+
+/** The open bore of every segment through time, under the trend and on its time axis: one sees where and since when without reading a number. */
+export function boresView(facts: SkidFacts, data: RunData) {
+  const canvas = el('canvas', { class: 'bores', role: 'img' })
+  let frame = 0
+  let shown: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string } | null = null
+
+  function draw(): void {
+    frame = 0
+    if (shown === null) return
+    const s = shown
+    const look = palette()
+    const em = look.rootPx
+    const ratio = window.devicePixelRatio || 1
+    const width = canvas.parentElement?.clientWidth ?? 0
+    const height = em * (phaseRem + facts.segments.reduce((h, g) => h + (g.id === s.hot ? hotRem : rowRem), 0) + 0.3)
+    if (width === 0) return
+    canvas.width = Math.round(width * ratio)
+    canvas.height = Math.round(height * ratio)
+    canvas.style.width = `${width}px`
+    canvas.style.height = `${height}px`
+    const pen = canvas.getContext('2d')
+    if (pen === null) return
+    pen.scale(ratio, ratio)
+    const left = gutterRem * em
+    const right = width - 2
+    const x = (t: number) => clamp(left + ((right - left) * (t - s.fromMs)) / (s.toMs - s.fromMs), left, right)
+    const nowX = x(s.atMs)
+    pen.textBaseline = 'middle'
+    const word = (text: string, at: number, y: number, bold = false, align: CanvasTextAlign = 'left') => {
+      pen.font = `${bold ? 700 : 400} ${1.0625 * em}px ${look.font}`
+      pen.textAlign = align
+      pen.fillText(text, at, y)
+    }
+    // Production or not.
+    let y = 0
+    const h = phaseRem * em - 3
+    for (const p of stretches(data.production.points(), s.fromMs, s.atMs)) {
+      const [l, r] = [x(p.fromMs), x(p.toMs)]
+      pen.fillStyle = look.colour[p.on ? 'band' : 'paper']
+      pen.fillRect(l, y, r - l, h)
+      pen.fillStyle = look.colour[p.on ? 'band-edge' : 'rule']
+      pen.fillRect(l, y, 3, h)
+      pen.fillStyle = look.colour.ink
+      pen.font = `400 ${1.0625 * em}px ${look.font}`
+      const text = p.on ? `production since ${data.clock.hm(p.fromMs)}` : 'not in production'
+      const fits = [text, p.on ? 'production' : 'not'].find((t) => pen.measureText(t).width < r - l - em)
+      if (fits !== undefined) word(fits, l + 0.5 * em, y + h / 2)
+    }
+    if (right - nowX > 4 * em) {
+      pen.fillStyle = look.colour['ink-2']
+      word('not yet', nowX + 0.5 * em, y + h / 2)
+    }
+    y += phaseRem * em
+    for (const g of facts.segments) {
+      const tall = g.id === s.hot
+      const full = (tall ? hotRem : rowRem) * em
+      const top = y + 1
+      const size = full - 3
+      const points = thin(
+        (data.segments.get(g.id)?.ratio.points() ?? []).filter((p) => p.x >= s.fromMs && p.x <= s.atMs),
+        600,
+      )
+      pen.fillStyle = look.colour[tall ? 'ink' : 'ink-2']
+      pen.save()
+      pen.beginPath()
+      pen.rect(0, y, left - 0.3 * em, full)
+      pen.clip()
+      word(g.id, left - 0.6 * em, top + size / 2, tall, 'right')
+      pen.restore()
+      pen.fillStyle = look.colour.bore
+      pen.fillRect(left, top, nowX - left, size)
+      deposit(pen, points, x, top, size, look.colour.deposit)
+      pen.fillStyle = look.hatch
+      for (const gap of gapsOf(points)) pen.fillRect(x(gap.fromMs), top, Math.max(1, x(gap.toMs) - x(gap.fromMs)), size)
+      pen.strokeStyle = look.colour['band-edge']
+      pen.lineWidth = 1
+      pen.strokeRect(left + 0.5, top - 0.5, nowX - left, size + 1)
+      if (tall && s.word !== '' && right - nowX > 9 * em) {
+        pen.fillStyle = look.colour.ink
+        word(s.word, nowX + 0.5 * em, top + size / 2)
+      }
+      y += full
+    }
+    canvas.dataset['segments'] = String(facts.segments.length)
+  }
+  const ask = (): void => {
+    frame ||= requestAnimationFrame(draw)
+  }
+  const off = onPalette(ask)
+  return {
+    node: canvas,
+    show(next: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string }): void {
+      shown = next
+      canvas.setAttribute(
+        'aria-label',
+        `Open bore of ${facts.segments.length} segments through time. ${next.word === '' ? '' : `${next.hot} ${next.word}.`}`,
+      )
+      ask()
+    },
+    destroy(): void {
+      off()
+      cancelAnimationFrame(frame)
+    },
+  }
+}
+
+/** Layer on both walls, its thickness drawn larger than it is; nothing where nothing is known. */
+function deposit(
+  pen: CanvasRenderingContext2D,
+  points: readonly Point[],
+  x: (t: number) => number,
+  top: number,
+  size: number,
+  colour: string,
+): void {
+  pen.fillStyle = colour
+  let run: { x: number; d: number }[] = []
+  const close = () => {
+    const first = run[0]
+    const last = run.at(-1)
+    if (first !== undefined && last !== undefined && run.some((p) => p.d > 0))
+      for (const side of [0, 1]) {
+        const wall = side === 0 ? top : top + size
+        pen.beginPath()
+        pen.moveTo(first.x, wall)
+        for (const p of run) pen.lineTo(p.x, side === 0 ? wall + p.d : wall - p.d)
+        pen.lineTo(last.x, wall)
+        pen.fill()
+      }
+    run = []
+  }
+  for (const p of points) {
+    const share = drawnShare(p.y)
+    if (share === null) close()
+    else run.push({ x: x(p.x), d: (share * size) / 2 })
+  }
+  close()
+}
+
+/** Stretches of production and not, cut to the window. */
+export function stretches(points: readonly Point[], fromMs: number, toMs: number): { fromMs: number; toMs: number; on: boolean }[] {
+  const out: { fromMs: number; toMs: number; on: boolean }[] = []
+  for (const p of points) {
+    if (p.y === null || p.x > toMs) continue
+    const on = p.y > 0
+    const last = out.at(-1)
+    if (last === undefined || last.on !== on) {
+      if (last !== undefined) last.toMs = p.x
+      out.push({ fromMs: p.x, toMs: p.x, on })
+    } else last.toMs = p.x
+  }
+  const end = out.at(-1)
+  if (end !== undefined && toMs - end.toMs < 120_000) end.toMs = toMs
+  return out.filter((s) => s.toMs > fromMs && s.toMs > s.fromMs)
+}

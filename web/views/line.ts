@@ -1,0 +1,290 @@
+import type { LiveState, SegmentState, SkidFacts } from '../../server/wire/index.ts'
+import { drawnShare, exaggeration, openPct } from '../model/bore.ts'
+import { figure, fixed, range, short } from '../model/format.ts'
+import { feedHalf, type LineLayout, layoutLine, mainHalf, type PlacedSegment, profileHeight, wall } from '../model/line-layout.ts'
+import { el, fill, place, svg } from './dom.ts'
+import { lookOf, markView, shortOf } from './mark.ts'
+
+/** The line of the skid, cut open lengthways: bore and deposit of every segment, figures under each, temperatures along it. */
+export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
+  const layout = layoutLine(facts)
+  const still = svg('g')
+  const moving = svg('g')
+  const picture = svg(
+    'svg',
+    { viewBox: `0 0 1000 ${layout.height}`, preserveAspectRatio: 'none', 'aria-hidden': 'true' },
+    still,
+    moving,
+  )
+  const words = el('div', { class: 'words' })
+  const node = el('figure', { class: 'pic line', role: 'group', 'aria-label': 'The line, cut open lengthways' }, picture, words)
+  node.style.setProperty('--design-height', String(layout.height))
+  still.append(
+    svg(
+      'defs',
+      {},
+      svg(
+        'pattern',
+        { id: 'not-known', width: 9, height: 9, patternUnits: 'userSpaceOnUse', patternTransform: 'rotate(45)' },
+        svg('path', { class: 'k-hatch-bg', d: 'M0 0H9V9H0Z' }),
+        svg('path', { class: 'k-hatch-line', d: 'M0 0H2V9H0Z' }),
+      ),
+    ),
+  )
+  drawStill(still, layout)
+  const figures = new Map(layout.segments.map((s) => [s.id, figureView(s, layout, pick)]))
+  const feeds = layout.feeds.map((f) => {
+    const flow = el('p', { class: 'soft' })
+    const streams = f.streams.map((id) => facts.streams.find((s) => s.id === id))
+    const label = el(
+      'div',
+      {
+        class: `fig feed${f.joinX === null && f.x < 100 ? ' first' : ''}`,
+        title: streams.map((s) => `${s?.id} ${s?.title}`).join(', '),
+      },
+      el('p', {}, el('b', { text: f.streams.join(' + ') }), ` ${short(streams[0]?.reagent ?? streams[0]?.title ?? '', 18)}`),
+      flow,
+    )
+    place(label, { x: f.x / 10, y: (100 * f.y) / layout.height })
+    words.append(label)
+    return { flow, tags: streams.map((s) => s?.flowTag ?? '') }
+  })
+  words.append(...[...figures.values()].map((f) => f.node))
+  const scaleNote = el('p', { class: 'lab scale soft', text: `Deposit × ${exaggeration}; dots: ΔP limit` })
+  place(scaleNote, { x: 0, y: (100 * (layout.rows[0]?.figuresY ?? 0)) / layout.height })
+  words.append(scaleNote)
+  const temps = el('div')
+  words.append(temps)
+
+  function show(state: LiveState): void {
+    moving.replaceChildren()
+    for (const s of layout.segments) {
+      const now = state.segments.find((x) => x.segment === s.id)
+      drawSegment(moving, s, now)
+      figures.get(s.id)?.show(now, state)
+    }
+    for (const f of feeds) {
+      const texts = f.tags.map((tag) => {
+        const t = state.tags.find((x) => x.tag === tag)
+        return t === undefined || t.quality === 'bad' || t.quality === 'none' ? 'flow not known' : figure(t.value, t.unit)
+      })
+      f.flow.textContent = texts.join(' + ')
+    }
+    fill(temps)
+    for (const row of layout.rows) drawProfile(moving, temps, layout, row, facts, state)
+    const closing = state.segments
+      .filter((s) => (s.ratio ?? 1) >= 1.05)
+      .map((s) => `${s.segment}: open to ${fixed(openPct(s.ratio), 0)} % of its clean bore`)
+    node.setAttribute(
+      'aria-label',
+      `The line, cut open lengthways. ${closing.length === 0 ? 'No segment is closing.' : `${closing.join('; ')}.`}`,
+    )
+  }
+  return { node, show }
+}
+
+function figureView(s: PlacedSegment, layout: LineLayout, pick: (segment: string) => void) {
+  const mark = el('span')
+  const big = el('b', { class: 'r' })
+  const unit = el('span', { class: 'u', text: ' × clean' })
+  const grows = el('p', { class: 'g' })
+  const name = el(
+    'button',
+    { class: 'bare', type: 'button', title: `${s.id} ${s.title}: show its trend`, on: { click: () => pick(s.id) } },
+    el('b', { text: s.id }),
+  )
+  const head = el('p', { class: 'n' }, name, el('span', { class: 'name', text: s.title }), mark)
+  const ratio = el('p', { class: 'x' }, big, unit)
+  const node = el('div', { class: `fig seg${s.main ? '' : ' over'}` }, head, ratio, grows)
+  const row = layout.rows[s.row]!
+  place(node, { x: s.x / 10, y: (100 * (s.main ? row.figuresY : s.y - feedHalf - wall - 4)) / layout.height, w: (s.w + 24) / 10 })
+  let key = ''
+  return {
+    node,
+    show(now: SegmentState | undefined, state: LiveState): void {
+      const hot = now?.standing ?? null
+      const ratioText = fixed(now?.ratio, 2)
+      big.textContent = ratioText ?? 'no ratio'
+      unit.hidden = ratioText === null
+      node.classList.toggle('hot', hot !== null && ratioText !== null)
+      node.dataset['ratio'] = ratioText ?? ''
+      grows.textContent = growth(now, state)
+      grows.classList.toggle('soft', hot === null)
+      const k = hot === null ? '' : `${hot.priority} ${hot.needsAck}`
+      if (k === key) return
+      key = k
+      fill(mark)
+      const alarm = state.alarms.find((a) => a.id === hot?.alarm)
+      if (hot !== null)
+        mark.append(markView(hot.priority, alarm === undefined ? (hot.needsAck ? 'unack' : 'ack') : lookOf(alarm.state)))
+    },
+  }
+}
+
+/** Time to the limit as a range, or why there is none. */
+function growth(now: SegmentState | undefined, state: LiveState): string {
+  if (now === undefined) return 'no data'
+  if (now.forecast !== null) {
+    const { low, high } = range(now.forecast.lowMs - state.clock.nowMs, now.forecast.highMs - state.clock.nowMs)
+    const rate = now.growthPerHour === null ? '' : `+${fixed(now.growthPerHour, 2)} /h · `
+    return `${rate}limit in ${low} to ${high}`
+  }
+  if (now.ratio === null)
+    return now.baseline === null
+      ? state.mode.production
+        ? 'taking its baseline'
+        : 'no baseline yet'
+      : state.mode.production
+        ? 'not known'
+        : 'not in production'
+  if (now.growthPerHour !== null) return `grows ${fixed(now.growthPerHour, 2)} /h`
+  return now.standing === null ? 'steady' : 'no forecast yet'
+}
+
+const rect = (x0: number, y0: number, x1: number, y1: number, cls: string): SVGElement =>
+  svg('path', { ...(cls === 'k-hatch' ? { fill: 'url(#not-known)' } : { class: cls }), d: `M${x0} ${y0}H${x1}V${y1}H${x0}Z` })
+/** A length across that looks like `px` design pixels along. */
+const dx = (px: number): number => (px * 1000) / 1380
+
+/** Bodies, pipes and arrows. */
+function drawStill(g: SVGElement, layout: LineLayout): void {
+  const pipe = 7
+  const walls: SVGElement[] = []
+  const bores: SVGElement[] = []
+  const arrows: SVGElement[] = []
+  const add = (x0: number, y0: number, x1: number, y1: number) => {
+    const horizontal = Math.abs(y1 - y0) < 0.01
+    const [wx, wy] = horizontal ? [0, pipe + wall - 2] : [dx(pipe + wall - 2), 0]
+    const [bx, by] = horizontal ? [0, pipe] : [dx(pipe), 0]
+    walls.push(rect(x0 - wx, y0 - wy, x1 + wx, y1 + wy, 'k-wall'))
+    bores.push(rect(x0 - bx, y0 - by, x1 + bx, y1 + by, 'k-bore'))
+  }
+  for (const row of layout.rows) {
+    walls.push(rect(row.x0, row.y - mainHalf - wall, row.x1, row.y + mainHalf + wall, 'k-wall'))
+    bores.push(rect(row.x0, row.y - mainHalf, row.x1, row.y + mainHalf, 'k-bore'))
+    add(row.x0 - 24, row.y, row.x0 + 2, row.y)
+    add(row.x1 - 2, row.y, 1000, row.y)
+    arrows.push(arrow(row.x1 + 40, row.y), arrow(row.x0 - 21, row.y))
+  }
+  for (const f of layout.feeds) {
+    if (f.joinX === null || f.y === f.joinY) continue
+    add(f.x, f.y, f.joinX, f.y)
+    walls.push(
+      rect(f.joinX - dx(pipe + wall - 2), f.y - pipe - wall + 2, f.joinX + dx(pipe + wall - 2), f.joinY - mainHalf, 'k-wall'),
+    )
+    bores.push(rect(f.joinX - dx(pipe), f.y - pipe, f.joinX + dx(pipe), f.joinY - mainHalf + 4, 'k-bore'))
+    arrows.push(arrow(f.x + 4, f.y))
+  }
+  for (const s of layout.segments)
+    if (!s.main) {
+      walls.push(rect(s.x, s.y - s.half - wall, s.x + s.w, s.y + s.half + wall, 'k-wall'))
+      bores.push(rect(s.x, s.y - s.half, s.x + s.w, s.y + s.half, 'k-bore'))
+    }
+  g.append(...walls, ...bores, ...arrows)
+}
+
+const arrow = (x: number, y: number): SVGElement =>
+  svg('path', { class: 'k-wall', d: `M${x} ${y - 5}L${x + dx(9)} ${y}L${x} ${y + 5}Z` })
+
+/** Deposit, the dots where it would be at its limit, an alarm's bars; hatched where the ratio is not known. */
+function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined): void {
+  const share = drawnShare(now?.ratio)
+  const end = s.x + s.w
+  const e = Math.min(dx(10), s.w / 4)
+  if (share === null) g.append(rect(s.x, s.y - s.half, end, s.y + s.half, 'k-hatch'))
+  else if (share > 0)
+    for (const side of [-1, 1]) {
+      const [at, to] = [s.y + side * s.half, s.y + side * s.half * (1 - share)]
+      g.append(svg('path', { class: 'k-dep', d: `M${s.x} ${at}L${s.x + e} ${to}H${end - e}L${end} ${at}Z` }))
+    }
+  const limit = now?.limits.dpHighBar ?? null
+  const clean = now?.cleanDpBar ?? now?.baseline?.dpBar ?? null
+  const atLimit = limit === null || clean === null || clean <= 0 ? null : drawnShare(limit / clean)
+  if (atLimit !== null)
+    for (const side of [-1, 1])
+      g.append(svg('path', { class: 's-room', d: `M${s.x + e} ${s.y + side * s.half * (1 - atLimit)}H${end - e}` }))
+  for (const x of [s.x, end]) g.append(svg('path', { class: 's-line', d: `M${x} ${s.y + s.half + wall}v7` }))
+  const hot = now?.standing?.priority
+  if (hot !== undefined)
+    for (const side of [-1, 1]) {
+      const a = s.y + side * (s.half + wall + 2)
+      g.append(svg('path', { class: `k-${shortOf(hot)} e-${shortOf(hot)}`, d: `M${s.x} ${a}H${end}V${a + side * 8}H${s.x}Z` }))
+    }
+}
+
+/** Temperatures along one row, each at its place in its segment; a bad one is hatched and named. */
+function drawProfile(
+  g: SVGElement,
+  words: HTMLElement,
+  layout: LineLayout,
+  row: LineLayout['rows'][number],
+  facts: SkidFacts,
+  state: LiveState,
+): void {
+  const mine = layout.segments.filter((s) => s.main && layout.rows[s.row] === row)
+  const points = mine.map((s) => {
+    const spec = facts.segments.find((f) => f.id === s.id)!
+    const n = spec.temperatures.length
+    return {
+      s,
+      readings: spec.temperatures.map((tag, i) => {
+        const t = state.tags.find((x) => x.tag === tag)
+        const usable = t !== undefined && t.quality !== 'bad' && t.quality !== 'none'
+        return {
+          tag,
+          x: n === 1 ? s.x + s.w - 4 : s.x + 4 + ((s.w - 8) * i) / (n - 1),
+          tempC: usable && t.unit === 'degC' ? t.value : null,
+          why: t?.reason ?? 'no reading',
+        }
+      }),
+    }
+  })
+  const known = points.flatMap((p) => p.readings.map((r) => r.tempC)).filter((t) => t !== null)
+  if (known.length === 0) return
+  const step = Math.max(...known) - Math.min(...known) > 60 ? 40 : 20
+  const low = Math.floor(Math.min(...known) / step) * step
+  const high = Math.max(low + step, Math.ceil(Math.max(...known) / step) * step)
+  const top = row.profileY
+  const y = (c: number) => top + profileHeight * (1 - (c - low) / (high - low))
+  for (let c = low; c <= high; c += step) {
+    g.append(svg('path', { class: 's-axis', d: `M112 ${y(c)}H${row.x1}` }))
+    words.append(
+      place(el('span', { class: 'lab rm soft', text: `${c > 0 ? '+' : ''}${fixed(c, 0)}${c === high ? ' °C' : ''}` }), {
+        x: 10.8,
+        y: (100 * y(c)) / layout.height,
+      }),
+    )
+  }
+  for (const p of points) {
+    let pen = ''
+    let d = ''
+    for (const r of p.readings) {
+      if (r.tempC === null) {
+        g.append(rect(r.x - 14, top, r.x + 14, top + profileHeight, 'k-hatch'))
+        words.append(
+          place(el('span', { class: 'lab cm on', title: r.why, text: `${r.tag} bad` }), {
+            x: r.x / 10,
+            y: (100 * (top + profileHeight / 2)) / layout.height,
+          }),
+        )
+        pen = ''
+        continue
+      }
+      d += `${pen === '' ? 'M' : 'L'}${r.x} ${y(r.tempC)}`
+      pen = 'L'
+    }
+    g.append(svg('path', { class: 's-thin', d }))
+    for (const r of p.readings) if (r.tempC !== null) g.append(svg('path', { class: 's-dot', d: `M${r.x} ${y(r.tempC)}h.01` }))
+    const hot = p.readings.reduce<(typeof p.readings)[number] | null>(
+      (t, r) => (r.tempC !== null && (t?.tempC == null || r.tempC > t.tempC) ? r : t),
+      null,
+    )
+    if (hot?.tempC != null && p.readings.length > 2)
+      words.append(
+        place(el('span', { class: 'lab cb' }, el('b', { text: `${fixed(hot.tempC, 1)} °C` }), ` ${hot.tag}`), {
+          x: hot.x / 10,
+          y: (100 * (y(hot.tempC) - 8)) / layout.height,
+        }),
+      )
+  }
+}

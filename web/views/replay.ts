@@ -1,0 +1,284 @@
+import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
+import { getJson, said } from '../api.ts'
+import { asAt } from '../model/alarm-list.ts'
+import { answersOf } from '../model/answers.ts'
+import { duration, fixed } from '../model/format.ts'
+import type { RunData } from '../model/run-data.ts'
+import { fetchWindow } from '../run-store.ts'
+import { alarmsView } from './alarms.ts'
+import { el, say } from './dom.ts'
+import { clamp } from './overlay-pen.ts'
+import { trendsView } from './trends.ts'
+import type { Shell } from './watch.ts'
+
+const leastSpanMs = 60_000
+
+/** A stored run. A moment is shown; right of it nothing is known, and nothing here can be acknowledged. */
+export function replayView(data: RunData, shell: Shell) {
+  const { detail, clock } = data
+  const facts = detail.skidFacts
+  const first = detail.fromMs ?? 0
+  const last = Math.max(detail.toMs ?? first, first + leastSpanMs)
+  let window = { fromMs: first, toMs: last }
+  let atMs = last
+  let state: LiveState | null = null
+  let all: readonly AlarmRow[] = []
+  let stateAsked: AbortController | null = null
+  let windowAsked: AbortController | null = null
+  let windowTimer: ReturnType<typeof setTimeout> | undefined
+
+  const findings = el('dl', { class: 'answers findings' })
+  const figures = ['Began', 'Noticed', 'How bad', 'How long'].map((q) => {
+    const far = el('span', { class: 'mid' })
+    const below = el('span', { class: 'd' })
+    findings.append(el('div', { class: 'answer' }, el('dt', { text: q }), el('dd', {}, far, ' ', below)))
+    return { far, below }
+  })
+  const button = (text: string, label: string, run: () => void) =>
+    el('button', { type: 'button', class: 'small', text, 'aria-label': label, on: { click: run } })
+  const tools = el(
+    'div',
+    { class: 'row zoom', role: 'group', 'aria-label': 'Part of the run shown' },
+    button('◂', 'Earlier', () => pan(-0.5)),
+    button('▸', 'Later', () => pan(0.5)),
+    button('+', 'Zoom in', () => zoom(0.5)),
+    button('−', 'Zoom out', () => zoom(2)),
+    button('whole run', 'Whole run', () => look(first, last)),
+  )
+  const trends = trendsView(data, tools)
+  const slider = el('input', { type: 'range', id: 'moment', min: 0, max: 1000, step: 1, value: 1000, 'aria-label': 'Moment shown' })
+  const sliderText = el('output', { for: 'moment', class: 'moment-text' })
+  const moment = el(
+    'div',
+    { class: 'moment row' },
+    el('label', { for: 'moment', text: 'Moment shown' }),
+    button('−10 min', 'Ten minutes earlier', () => seek(atMs - 600_000)),
+    slider,
+    button('+10 min', 'Ten minutes later', () => seek(atMs + 600_000)),
+    button('end', 'To the end', () => seek(last)),
+    sliderText,
+  )
+  const alarms = alarmsView(clock, { act: null, trend: (a) => jump(a) })
+  const links = el(
+    'section',
+    { class: 'exports' },
+    el('h2', { text: 'Take it along' }),
+    el(
+      'p',
+      { class: 'row' },
+      ...[
+        ['alarms.csv', 'Alarm history, CSV'],
+        ['alarms.json', 'Alarm history, JSON'],
+        ['samples.csv', 'Readings, CSV'],
+        ['record.json', 'Record, JSON'],
+      ].map(([file, text]) =>
+        el('a', {
+          class: 'button small',
+          href: `/api/runs/${detail.run}/export/${file}`,
+          download: `run-${detail.run}-${file}`,
+          text: text!,
+        }),
+      ),
+    ),
+    el('p', { class: 'soft', text: `Times in the files are UTC; this page shows ${facts.timeZone}.` }),
+  )
+  const says = el('p', { class: 'says', role: 'status' })
+  const node = el(
+    'main',
+    { id: 'main', class: 'halves replay', tabindex: -1 },
+    el('h1', { class: 'vh', text: `Replay of run ${detail.run}, skid ${facts.skid}: nothing here is live` }),
+    el('section', { class: 'plant', 'aria-label': 'The run' }, findings, moment, trends.node, says),
+    el('section', { class: 'person', 'aria-label': 'What was known' }, alarms.node, links),
+  )
+  node.dataset['page'] = 'replay'
+
+  slider.addEventListener('input', () => seek(first + ((last - first) * Number(slider.value)) / 1000))
+  trends.canvas.addEventListener('keydown', (event) => {
+    const keys: Record<string, () => void> = {
+      ArrowLeft: () => pan(-0.15),
+      ArrowRight: () => pan(0.15),
+      '+': () => zoom(0.5),
+      '=': () => zoom(0.5),
+      '-': () => zoom(2),
+      '0': () => look(first, last),
+      Home: () => seek(first),
+      End: () => seek(last),
+      ',': () => seek(atMs - (window.toMs - window.fromMs) / 100),
+      '.': () => seek(atMs + (window.toMs - window.fromMs) / 100),
+    }
+    const run = keys[event.key]
+    if (run === undefined || event.ctrlKey || event.metaKey || event.altKey) return
+    event.preventDefault()
+    run()
+  })
+  trends.canvas.addEventListener(
+    'wheel',
+    (event) => {
+      event.preventDefault()
+      zoom(event.deltaY > 0 ? 1.25 : 0.8, trends.chart.timeAt(event.clientX))
+    },
+    { passive: false },
+  )
+  let drag: { x: number; fromMs: number; toMs: number; moved: boolean } | null = null
+  trends.canvas.addEventListener('pointerdown', (event) => {
+    drag = { x: event.clientX, ...window, moved: false }
+    trends.canvas.setPointerCapture(event.pointerId)
+  })
+  trends.canvas.addEventListener('pointermove', (event) => {
+    if (drag === null || Math.abs(event.clientX - drag.x) < 4) return
+    drag.moved = true
+    const perPx = (drag.toMs - drag.fromMs) / Math.max(1, trends.canvas.clientWidth)
+    const by = (drag.x - event.clientX) * perPx
+    look(drag.fromMs + by, drag.toMs + by)
+  })
+  trends.canvas.addEventListener('pointerup', (event) => {
+    if (drag !== null && !drag.moved) seek(trends.chart.timeAt(event.clientX))
+    drag = null
+  })
+
+  const pan = (share: number): void => {
+    const by = (window.toMs - window.fromMs) * share
+    look(window.fromMs + by, window.toMs + by)
+  }
+  const zoom = (
+    factor: number,
+    about = atMs >= window.fromMs && atMs <= window.toMs ? atMs : (window.fromMs + window.toMs) / 2,
+  ): void => look(about - (about - window.fromMs) * factor, about + (window.toMs - about) * factor)
+
+  /** Shows a part of the run; never less than a minute, never beyond its ends. */
+  function look(fromMs: number, toMs: number): void {
+    const span = clamp(toMs - fromMs, leastSpanMs, last - first)
+    const from = clamp(fromMs, first, last - span)
+    window = { fromMs: from, toMs: from + span }
+    draw()
+    clearTimeout(windowTimer)
+    windowTimer = setTimeout(() => void fetchNow(), 120)
+  }
+
+  async function fetchNow(): Promise<void> {
+    windowAsked?.abort()
+    windowAsked = new AbortController()
+    try {
+      await fetchWindow(data, window.fromMs, window.toMs + 1, windowAsked.signal)
+      node.dataset['window'] = `${Math.round(window.fromMs)} ${Math.round(window.toMs)}`
+      draw()
+    } catch (error) {
+      if (!(error instanceof DOMException)) say(says, said(error))
+    }
+  }
+
+  function seek(tMs: number): void {
+    atMs = clamp(tMs, first, last)
+    slider.value = String(Math.round((1000 * (atMs - first)) / (last - first)))
+    slider.setAttribute('aria-valuetext', clock.full(atMs))
+    draw()
+    stateAsked?.abort()
+    stateAsked = new AbortController()
+    const asked = Math.round(atMs)
+    getJson<LiveState>(`/api/runs/${detail.run}/state?atMs=${asked}`, stateAsked.signal).then(
+      (s) => {
+        state = s
+        say(says, '')
+        node.dataset['shownMs'] = String(asked)
+        draw()
+      },
+      (error: unknown) => {
+        if (!(error instanceof DOMException)) say(says, said(error))
+      },
+    )
+  }
+
+  /** From an alarm to its trend: its segment, the hour around it, and the moment that it was raised. */
+  function jump(a: AlarmRow): void {
+    if (a.segment !== null)
+      trends.pick(
+        a.kind === 'exotherm' || a.kind === 'temperature-limit'
+          ? 'temperature'
+          : a.kind === 'feed-ratio' || a.kind === 'flow'
+            ? 'flow'
+            : 'ratio',
+        a.segment,
+      )
+    const from = a.onset === null ? a.raisedMs - 1_800_000 : Math.min(Date.parse(a.onset.low), a.raisedMs) - 1_200_000
+    look(from, a.raisedMs + 1_800_000)
+    if (atMs < a.raisedMs) seek(a.raisedMs + 1000 * facts.stepSeconds)
+    node.dataset['jumped'] = String(a.id)
+    trends.canvas.focus()
+  }
+
+  function draw(): void {
+    const known = all.filter((a) => a.raisedMs <= atMs).map((a) => asAt(a, atMs))
+    say(sliderText, `${clock.full(atMs)} ${clock.offset(atMs)}`)
+    alarms.show(known, atMs, 'No alarm up to this moment.')
+    shell.foot.show(state?.alarms ?? [])
+    strip()
+    if (state === null) return
+    const a = answersOf(facts, state, clock)
+    const fouling =
+      known.find((x) => x.kind === 'fouling' && x.segment !== null && x.segment === a.segment) ??
+      known.find((x) => x.kind === 'fouling')
+    const segment = fouling?.segment ?? a.segment
+    const onset = state.segments.find((s) => s.segment === segment)?.onset ?? null
+    const found = [
+      onset === null
+        ? ['no onset', 'nothing grew up to this moment']
+        : [
+            clock.hm(onset.atMs),
+            `${segment}, between ${clock.hm(onset.lowMs)} and ${clock.hm(onset.highMs)} (${Math.round(100 * onset.level)} %)`,
+          ],
+      fouling === undefined
+        ? ['not noticed', 'no fouling alarm up to this moment']
+        : [
+            clock.hm(fouling.raisedMs),
+            `${onset === null ? '' : `${duration(fouling.raisedMs - onset.atMs)} after it began, `}at ${fixed(fouling.value, 2) ?? 'unknown'} × clean`,
+          ],
+      [`${a.howBad.far}${a.howBad.unit === null ? '' : ` ${a.howBad.unit}`}`, a.howBad.below],
+      [a.howLong.to === null ? a.howLong.far : `${a.howLong.far} to ${a.howLong.to}`, a.howLong.below],
+    ]
+    found.forEach(([far, below], i) => {
+      say(figures[i]!.far, far ?? '')
+      say(figures[i]!.below, below ?? '')
+    })
+    trends.show({ state, marks: data.marks, alarms: known, ...window, atMs, lead: segment ?? a.segment })
+    node.dataset['ready'] = 'true'
+    node.dataset['onset'] = onset === null ? '' : String(onset.atMs)
+  }
+
+  function strip(): void {
+    shell.strip.show({
+      page: 'replay',
+      skid: facts.skid,
+      mode: 'REPLAY',
+      facts: [
+        { bold: `run ${detail.run}`, text: `of ${clock.day(first)}, nothing here is live` },
+        { text: `${duration(last - first)}, ${detail.rows} rows` },
+      ],
+      comb: null,
+      nowMs: atMs,
+      clock,
+      zone: facts.timeZone,
+    })
+  }
+
+  strip()
+  void fetchNow()
+  getJson<AlarmRow[]>(`/api/runs/${detail.run}/alarms`).then(
+    (rows) => {
+      all = rows
+      node.dataset['alarms'] = String(rows.length)
+      draw()
+    },
+    (error: unknown) => say(says, said(error)),
+  )
+  seek(last)
+  return {
+    node,
+    stop(): void {
+      stateAsked?.abort()
+      windowAsked?.abort()
+      clearTimeout(windowTimer)
+      trends.destroy()
+    },
+  }
+}
+export type ReplayView = ReturnType<typeof replayView>

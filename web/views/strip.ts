@@ -1,0 +1,139 @@
+import type { Link } from '../feed.ts'
+import { type ZoneClock, zoneClock } from '../model/clock.ts'
+import { combOf, teeth } from '../model/comb.ts'
+import { age, duration } from '../model/format.ts'
+import { el, fill, say, svg } from './dom.ts'
+
+export interface StripState {
+  readonly page: 'watch' | 'replay'
+  readonly skid: string
+  readonly mode: 'LIVE' | 'REPLAY' | 'RUNS'
+  /** Short facts in the middle: run state, speed. */
+  readonly facts: readonly { readonly text: string; readonly bold?: string }[]
+  readonly comb: { readonly received: readonly boolean[]; readonly text: readonly [string, string] } | null
+  readonly nowMs: number | null
+  readonly clock: ZoneClock
+  readonly zone: string
+}
+
+export interface StripHooks {
+  person(): string
+  setPerson(name: string): void
+  theme(): 'day' | 'night'
+  toggleTheme(): void
+}
+
+/** The strip on top: which skid, live or not, what the run does, whether it is alive, and who is at the screen. */
+export function stripView(hooks: StripHooks) {
+  const skid = el('p', { class: 'skid' })
+  const mode = el('p', { class: 'mode' })
+  const watch = el('a', { href: '#/watch', text: 'Watch' })
+  const replay = el('a', { href: '#/replay', text: 'Replay' })
+  const facts = el('div', { class: 'facts' })
+  const teethPath = svg('path')
+  const comb = svg(
+    'svg',
+    { class: 'comb', viewBox: '0 0 120 20', role: 'img' },
+    svg('path', { class: 'base', d: 'M0 19H120' }),
+    teethPath,
+  )
+  const combText = el('span')
+  const alive = el('div', { class: 'alive' }, comb, combText)
+  const time = el('time')
+  const zone = el('small')
+  const theme = el('button', { class: 'small', type: 'button', id: 'theme', on: { click: () => hooks.toggleTheme() } })
+  const node = el(
+    'header',
+    { class: 'strip' },
+    skid,
+    mode,
+    el('nav', { 'aria-label': 'Pages' }, el('ul', {}, el('li', {}, watch), el('li', {}, replay))),
+    el('span', { class: 'grow' }),
+    facts,
+    alive,
+    el('p', { class: 'clock' }, time, ' ', zone),
+    personView(hooks),
+    theme,
+  )
+  let factsKey = ''
+
+  return {
+    node,
+    show(s: StripState): void {
+      say(skid, s.skid)
+      say(mode, s.mode)
+      mode.classList.toggle('replay', s.mode === 'REPLAY')
+      node.classList.toggle('past', s.mode === 'REPLAY')
+      node.dataset['mode'] = s.mode
+      for (const [link, page] of [
+        [watch, 'watch'],
+        [replay, 'replay'],
+      ] as const)
+        if (s.page === page) link.setAttribute('aria-current', 'page')
+        else link.removeAttribute('aria-current')
+      const key = JSON.stringify(s.facts)
+      if (key !== factsKey) {
+        factsKey = key
+        fill(facts, ...s.facts.map((f) => el('p', {}, f.bold === undefined ? null : el('b', { text: `${f.bold} ` }), f.text)))
+      }
+      alive.hidden = s.comb === null
+      if (s.comb !== null) {
+        const n = s.comb.received.length
+        teethPath.setAttribute(
+          'd',
+          s.comb.received.map((on, i) => (on ? `M${2 + (i + teeth - n) * 4} ${i === n - 1 ? 1 : 5}V19` : '')).join(''),
+        )
+        comb.setAttribute('aria-label', `last ${n} scans, ${s.comb.received.filter(Boolean).length} received`)
+        fill(combText, 'data ', el('b', { text: s.comb.text[0] }), ' old, lag ', el('b', { text: s.comb.text[1] }))
+      }
+      say(time, s.nowMs === null ? '--:--:--' : s.clock.hms(s.nowMs))
+      if (s.nowMs !== null) time.setAttribute('datetime', new Date(s.nowMs).toISOString())
+      say(zone, s.nowMs === null ? s.zone : s.clock.offset(s.nowMs))
+      zone.title = s.zone
+      say(theme, hooks.theme() === 'day' ? 'Night' : 'Day')
+      theme.setAttribute('aria-label', `Change to ${hooks.theme() === 'day' ? 'night' : 'day'} colours`)
+    },
+  }
+}
+export const utc = zoneClock('UTC')
+export { age, combOf }
+
+/** Who acts. Shown always; changed in place. */
+function personView(hooks: StripHooks): HTMLElement {
+  const name = el('input', { type: 'text', id: 'person', maxlength: 60, autocomplete: 'name', placeholder: 'your name', size: 14 })
+  name.value = hooks.person()
+  name.addEventListener('change', () => hooks.setPerson(name.value.trim()))
+  return el('label', { class: 'person-name' }, el('span', { class: 'soft', text: 'You' }), name)
+}
+
+/** The board that covers nothing but cannot be missed: the values on this screen are old. */
+export function cutView() {
+  const title = el('h2')
+  const text = el('p')
+  const again = el('p', { class: 'soft' })
+  const node = el('section', { class: 'cut', role: 'alert', hidden: true }, title, text, again)
+  return {
+    node,
+    show(cut: { since: string; ms: number; link: boolean; message: string | null; retryInMs: number | null } | null): void {
+      if (node.hidden !== (cut === null)) node.hidden = cut === null
+      document.documentElement.dataset['cut'] = cut === null ? 'no' : 'yes'
+      if (cut === null) return
+      say(title, `NO DATA since ${cut.since}, ${duration(cut.ms)}`)
+      say(
+        text,
+        cut.link
+          ? 'This screen runs, the server does not answer. All values below are old. Go to the local panel.'
+          : `The server runs, its source of data is silent${cut.message === null ? '' : `: ${cut.message}`}. All values below are old. Go to the local panel.`,
+      )
+      say(
+        again,
+        cut.link
+          ? cut.retryInMs === null
+            ? 'trying again'
+            : `trying again in ${Math.ceil(cut.retryInMs / 1000)} s`
+          : 'waiting for the source',
+      )
+    },
+  }
+}
+export type Cut = Link

@@ -1,0 +1,132 @@
+import type { AlarmRow, LiveState, Marks } from '../../server/wire/index.ts'
+import { short } from '../model/format.ts'
+import type { RunData } from '../model/run-data.ts'
+import { type TrendKind, trendKinds, trendSpec, trendWords } from '../model/trend-spec.ts'
+import { boresView } from './bores.ts'
+import { el, fill, say } from './dom.ts'
+import { trendChart } from './trend-chart.ts'
+
+export interface TrendsShown {
+  readonly state: LiveState
+  readonly marks: Marks
+  readonly alarms: readonly AlarmRow[]
+  readonly fromMs: number
+  readonly toMs: number
+  readonly atMs: number
+  /** Segment to show while nobody has chosen one. */
+  readonly lead: string | null
+}
+
+/** One trend of one segment with tabs for both, and the bores of all segments below it on the same time axis. */
+export function trendsView(data: RunData, tools: HTMLElement) {
+  const facts = data.detail.skidFacts
+  let kind: TrendKind = 'ratio'
+  let chosen: string | null = null
+  let shown: TrendsShown | null = null
+  const title = el('h2')
+  const kinds = el('div', { class: 'tabs', role: 'group', 'aria-label': 'What the trend shows' })
+  const places = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Segment of the trend' })
+  const canvas = el('canvas', { role: 'img', tabindex: 0, id: 'trend' })
+  const readout = el('p', { class: 'readout soft' })
+  const frame = el('div', { class: 'chart' }, canvas)
+  const bores = boresView(facts, data)
+  const below = el('div', { class: 'below' }, bores.node)
+  const node = el(
+    'section',
+    { class: 'trend', 'aria-label': 'Trends' },
+    el('div', { class: 'head' }, title, places, kinds, tools),
+    frame,
+    readout,
+    below,
+  )
+  const chart = trendChart(canvas)
+  const kindButtons = trendKinds.map((k) => {
+    const b = el('button', { type: 'button', class: 'tab', text: trendWords[k].tab, on: { click: () => pick(k, chosen) } })
+    return { k, b }
+  })
+  const placeButtons = facts.segments.map((s) => {
+    const b = el('button', {
+      type: 'button',
+      class: 'tab',
+      text: short(s.id, 10),
+      title: `${s.id} ${s.title}`,
+      on: { click: () => pick(kind, s.id) },
+    })
+    return { id: s.id, b }
+  })
+  fill(kinds, ...kindButtons.map((x) => x.b))
+  fill(places, ...placeButtons.map((x) => x.b))
+
+  function pick(k: TrendKind, segment: string | null): void {
+    kind = k
+    chosen = segment
+    draw()
+  }
+  canvas.addEventListener('pointermove', (event) => {
+    if (shown !== null) read(chart.timeAt(event.clientX))
+  })
+  canvas.addEventListener('pointerleave', () => say(readout, ''))
+
+  function read(tMs: number): void {
+    if (shown === null) return
+    const spec = trendSpec(data, shown.state, shown.marks, { ...shown, kind, segment: segmentNow() })
+    const span = (shown.toMs - shown.fromMs) / 100
+    const parts = spec.lines.map((l) => {
+      const near = l.points.reduce<{ d: number; y: number | null }>(
+        (b, p) => (Math.abs(p.x - tMs) < b.d ? { d: Math.abs(p.x - tMs), y: p.y } : b),
+        { d: span, y: null },
+      )
+      return `${l.name} ${near.y === null ? 'not known' : near.y.toFixed(2)}`
+    })
+    say(
+      readout,
+      tMs > shown.atMs
+        ? `${data.clock.hms(tMs)}: not yet`
+        : `${data.clock.hms(tMs)} ${data.clock.offset(tMs)}: ${parts.join(', ')} · ${spec.yTitle}`,
+    )
+  }
+  const segmentNow = (): string =>
+    chosen ?? shown?.lead ?? facts.segments.find((s) => s.kind === 'reactor')?.id ?? facts.segments[0]!.id
+
+  function draw(): void {
+    if (shown === null) return
+    const segment = segmentNow()
+    const spec = trendSpec(data, shown.state, shown.marks, { ...shown, kind, segment })
+    chart.show(spec)
+    say(title, `${segment}, ${trendWords[kind].title}`)
+    for (const { k, b } of kindButtons) b.setAttribute('aria-pressed', String(k === kind))
+    for (const { id, b } of placeButtons) b.setAttribute('aria-pressed', String(id === segment))
+    const o = spec.overlay
+    canvas.setAttribute(
+      'aria-label',
+      `${segment}, ${trendWords[kind].title}, ${data.clock.full(shown.fromMs)} to ${data.clock.full(shown.atMs)}. ${[o.onset?.label, o.fan === null ? null : `limit met ${o.fan.label}`, ...o.gaps.map((g) => g.label)].filter(Boolean).join(', ')}`,
+    )
+    canvas.dataset['segment'] = segment
+    canvas.dataset['kind'] = kind
+    const hot = shown.state.segments.find((s) => s.segment === segment)
+    bores.show({
+      fromMs: shown.fromMs,
+      toMs: shown.toMs,
+      atMs: shown.atMs,
+      hot: segment,
+      word: hot?.onset == null ? '' : `closing since ${data.clock.hm(hot.onset.atMs)}`,
+    })
+  }
+
+  return {
+    node,
+    canvas,
+    chart,
+    pick,
+    kind: () => kind,
+    show(next: TrendsShown): void {
+      shown = next
+      draw()
+    },
+    destroy(): void {
+      chart.destroy()
+      bores.destroy()
+    },
+  }
+}
+export type TrendsView = ReturnType<typeof trendsView>

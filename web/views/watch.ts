@@ -1,0 +1,294 @@
+import type { ActReply, LiveState, ServerMessage, Service } from '../../server/wire/index.ts'
+import { postJson } from '../api.ts'
+import { type Feed, type Link, silentMs } from '../feed.ts'
+import { answersOf } from '../model/answers.ts'
+import { age, duration } from '../model/format.ts'
+import { longest, type RunData } from '../model/run-data.ts'
+import { fetchWindow, follow } from '../run-store.ts'
+import { adviceView } from './advice.ts'
+import { type ActBodyOf, alarmsView } from './alarms.ts'
+import { answersView, nowView } from './answers.ts'
+import { el, fill, say } from './dom.ts'
+import type { footView } from './foot.ts'
+import { lineView } from './line.ts'
+import { planView } from './plan.ts'
+import type { cutView, StripState } from './strip.ts'
+import { trendsView } from './trends.ts'
+
+export interface Shell {
+  readonly strip: { show(s: StripState): void }
+  readonly foot: ReturnType<typeof footView>
+  readonly cut: ReturnType<typeof cutView>
+  /** Said to assistive technology, politely. */
+  announce(text: string): void
+  person(): string
+  /** Asks for a name where none is set; true when there is one. */
+  needPerson(): boolean
+}
+
+const spans = [
+  { id: '30m', text: '30 min', ms: 1_800_000 },
+  { id: '2h', text: '2 h', ms: 7_200_000 },
+  { id: '12h', text: '12 h', ms: 43_200_000 },
+  { id: 'all', text: 'whole run', ms: Infinity },
+] as const
+const mostPoints = 4000
+
+/** The live page of one run. */
+export function watchView(data: RunData, feed: Feed, service: Service, shell: Shell) {
+  const facts = data.detail.skidFacts
+  const run = data.detail.run
+  let span: (typeof spans)[number] = spans[2]
+  let received = 0
+  let link: Link = { up: false, heardAt: null, retryInMs: null }
+  let cutSince: { text: string; at: number } | null = null
+  let planOpen = false
+  let chartAt = 0
+  let chartDue = 0
+  let fetching = false
+  let spoken = ''
+
+  const answers = answersView()
+  const now = nowView()
+  const tools = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Time shown' })
+  const trends = trendsView(data, tools)
+  const line = lineView(facts, (segment) => trends.pick(trends.kind(), segment))
+  const openPlan = (): void => {
+    planOpen = !planOpen
+    show()
+    if (planOpen) plan.focus()
+    else document.getElementById('open-plan')?.focus()
+  }
+  const plan = planView(openPlan)
+  const advice = adviceView(data.clock, openPlan)
+  const alarms = alarmsView(data.clock, {
+    act: async (body: ActBodyOf) => {
+      if (!shell.needPerson()) return 'say who you are first: your name is asked for in the top strip'
+      const reply = await postJson<ActReply>(`/api/runs/${run}/acts`, { ...body, person: shell.person() })
+      const refused = reply.transitions.find((t) => t.outcome === 'refused')
+      if (refused === undefined)
+        shell.announce(body.kind === 'acknowledge' ? `alarm ${body.alarm} acknowledged by ${shell.person()}` : 'kept in the record')
+      return refused === undefined ? '' : `refused: ${refused.reason ?? 'not in this state'}`
+    },
+    trend: (a) => {
+      if (a.segment === null) return
+      trends.pick(
+        a.kind === 'exotherm' || a.kind === 'temperature-limit'
+          ? 'temperature'
+          : a.kind === 'feed-ratio' || a.kind === 'flow'
+            ? 'flow'
+            : 'ratio',
+        a.segment,
+      )
+      trends.canvas.focus()
+    },
+  })
+  const waiting = el('p', { class: 'quiet', text: 'Waiting for the first state of the run.' })
+  const plant = el(
+    'section',
+    { class: 'plant', 'aria-label': 'The plant' },
+    waiting,
+    answers.node,
+    line.node,
+    plan.node,
+    trends.node,
+  )
+  const person = el('section', { class: 'person', 'aria-label': 'What to do' }, now.node, advice.node, alarms.node)
+  const node = el(
+    'main',
+    { id: 'main', class: 'halves', tabindex: -1 },
+    el('h1', { class: 'vh', text: `Skid ${facts.skid}, live` }),
+    plant,
+    person,
+  )
+  node.dataset['page'] = 'watch'
+  for (const part of [answers.node, line.node, trends.node, person]) part.hidden = true
+
+  const spanButtons = spans.map((s) => ({
+    s,
+    b: el('button', { type: 'button', class: 'tab', text: s.text, on: { click: () => choose(s) } }),
+  }))
+  fill(tools, ...spanButtons.map((x) => x.b))
+  function choose(s: (typeof spans)[number]): void {
+    span = s
+    for (const x of spanButtons) x.b.setAttribute('aria-pressed', String(x.s === s))
+    void refetch()
+  }
+
+  const followed = follow(data, feed, (what) => {
+    if (what.state) received = performance.now()
+    chartDue = performance.now()
+    if (data.window.toMs === 0 && !fetching) void refetch()
+    if (longest(data) > mostPoints && !fetching) void refetch()
+    ask()
+  })
+
+  /** The run's now: the server's, carried on by this machine's clock while the link is up. */
+  function runNow(state: LiveState): number {
+    const since = (Math.min(performance.now(), (link.heardAt ?? received) + silentMs) - received) * state.clock.speed
+    return state.clock.nowMs + Math.max(0, since)
+  }
+  const windowOf = (nowMs: number): [number, number] => {
+    const first = data.detail.fromMs ?? followed.state()?.comb.endMs ?? nowMs
+    const from = Math.max(first, nowMs - span.ms)
+    const past = Math.max(nowMs - from, 600_000)
+    return [nowMs - past, nowMs + 0.4 * past]
+  }
+  async function refetch(): Promise<void> {
+    const state = followed.state()
+    if (state === null) return
+    fetching = true
+    try {
+      const nowMs = runNow(state)
+      const [from] = windowOf(nowMs)
+      await fetchWindow(data, from, state.data.lastRowMs === null ? nowMs : Math.max(state.data.lastRowMs + 1, from + 1000))
+      chartDue = performance.now()
+      ask()
+    } catch {
+      // The trends come with the next try; the state and the live points are on the page already.
+      data.window.toMs = 0
+    } finally {
+      fetching = false
+    }
+  }
+
+  let frame = 0
+  const ask = (): void => {
+    frame ||= requestAnimationFrame(() => {
+      frame = 0
+      show()
+    })
+  }
+
+  function show(): void {
+    const state = followed.state()
+    if (state === null) return
+    const first = waiting.isConnected
+    if (first) {
+      waiting.remove()
+      for (const part of [answers.node, line.node, trends.node, person]) part.hidden = false
+      choose(span)
+    }
+    const a = answersOf(facts, state, data.clock)
+    answers.show(a)
+    now.show(a.whatNow)
+    line.show(state)
+    advice.show(state, a.alarm, planOpen)
+    plan.show(state.advice[0]?.plan ?? null, planOpen)
+    if (state.advice[0]?.plan == null) planOpen = false
+    trends.node.hidden = planOpen
+    alarms.show(state.alarms, state.clock.nowMs, quietText(state))
+    shell.foot.show(state.alarms)
+    const text = `${a.where.far}, ${a.whatNow.far}, ${state.alarms.filter((x) => x.needsAck).length} not acknowledged`
+    if (text !== spoken) {
+      spoken = text
+      shell.announce(text)
+    }
+    if (chartDue > chartAt && performance.now() - chartAt > 400) charts(state, a.segment)
+    node.dataset['ready'] = 'true'
+    node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
+    node.dataset['lead'] = a.segment ?? ''
+    strip(state)
+  }
+
+  function charts(state: LiveState, lead: string | null): void {
+    chartAt = performance.now()
+    const atMs = state.data.lastRowMs === null ? state.clock.nowMs : Math.max(state.data.lastRowMs, state.clock.nowMs - 10_000)
+    const [fromMs, toMs] = windowOf(atMs)
+    trends.show({ state, marks: followed.marks(), alarms: state.alarms, fromMs, toMs, atMs, lead })
+  }
+
+  function strip(state: LiveState): void {
+    const nowMs = runNow(state)
+    const silent = state.data.cutOff || state.data.source.state === 'failed'
+    const wall = performance.now()
+    const isCut = !link.up || silent
+    if (isCut && cutSince === null) {
+      const at = link.up ? (state.data.lastRowMs ?? nowMs) : nowMs
+      cutSince = {
+        text: data.clock.hms(at),
+        at: link.up ? wall - (1000 * (state.data.ageS ?? 0)) / state.clock.speed : (link.heardAt ?? wall),
+      }
+    }
+    if (!isCut) cutSince = null
+    shell.cut.show(
+      cutSince === null
+        ? null
+        : {
+            since: cutSince.text,
+            ms: wall - cutSince.at,
+            link: !link.up,
+            message: state.data.source.message,
+            retryInMs: link.retryInMs,
+          },
+    )
+    node.dataset['cut'] = isCut ? (link.up ? 'source' : 'link') : 'no'
+    const phase = state.mode.phase ?? (state.mode.production ? 'production' : 'no phase named')
+    const since = data.production.points()
+    let begin: number | null = null
+    for (let i = since.length - 1; i >= 0 && since[i]!.y === (state.mode.production ? 1 : 0); i--) begin = since[i]!.x
+    const dataAge = state.data.ageS === null ? null : 1000 * state.data.ageS + (nowMs - state.clock.nowMs)
+    shell.strip.show({
+      page: 'watch',
+      skid: facts.skid,
+      mode: 'LIVE',
+      facts: [
+        ...(service.demo
+          ? [
+              {
+                bold: 'DEMO',
+                text:
+                  state.clock.speed === 1 ? 'simulated skid' : `clock runs ${Math.round(state.clock.speed)} times faster than time`,
+              },
+            ]
+          : []),
+        {
+          bold: `${phase[0]!.toUpperCase()}${phase.slice(1)}${state.mode.inferred ? ', inferred' : ''}`,
+          text: begin === null || !state.mode.production ? '' : duration(nowMs - begin),
+        },
+      ],
+      comb: {
+        received: state.comb.received,
+        text: [dataAge === null ? 'none' : age(dataAge), state.data.lagS === null ? 'none' : age(1000 * state.data.lagS)],
+      },
+      nowMs,
+      clock: data.clock,
+      zone: facts.timeZone,
+    })
+  }
+
+  const quietText = (state: LiveState): string => {
+    const judged = state.segments.filter((s) => s.baseline !== null).length
+    return judged === 0
+      ? 'No alarm stands. The clean baseline is not there yet: until then no verdict and no forecast.'
+      : `No alarm stands; ${judged} of ${state.segments.length} segments have their clean baseline.`
+  }
+
+  const tick = setInterval(() => {
+    const state = followed.state()
+    if (state !== null) strip(state)
+    if (state !== null && chartDue > chartAt) ask()
+    if (data.window.toMs === 0 && state !== null && link.up && !fetching) void refetch()
+  }, 250)
+
+  return {
+    node,
+    take: (m: ServerMessage) => followed.take(m),
+    open: () => followed.subscribe(),
+    link(l: Link): void {
+      link = l
+      node.dataset['link'] = l.up ? 'up' : 'down'
+      const state = followed.state()
+      if (state !== null) strip(state)
+      else say(waiting, l.up ? 'Waiting for the first state of the run.' : 'The server does not answer; trying again.')
+    },
+    stop(): void {
+      followed.stop()
+      clearInterval(tick)
+      cancelAnimationFrame(frame)
+      trends.destroy()
+      shell.cut.show(null)
+    },
+  }
+}
+export type WatchView = ReturnType<typeof watchView>
