@@ -7,6 +7,7 @@ import { phases } from './core/reading.ts'
 import type { Report } from './core/report.ts'
 import type { Act } from './core/sequence.ts'
 import type { Skid } from './core/skid.ts'
+import { cannotRead } from './file-trouble.ts'
 import { type LogSource, type LogTally, readLogs } from './ingest/csv/read-log.ts'
 
 export interface AnalyseOptions {
@@ -90,10 +91,7 @@ export function fileSource(path: string): LogSource {
       for await (const chunk of createReadStream(path, { highWaterMark: 1 << 18 })) yield chunk as Uint8Array
     } catch (cause) {
       if (cause instanceof MonitorError) throw cause
-      throw new MonitorError('FILE_READ', `cannot read: ${cause instanceof Error ? cause.message : String(cause)}`, {
-        place: { file: path },
-        cause,
-      })
+      throw cannotRead(path, cause)
     }
   }
   return { name: basename(path), chunks: chunks() }

@@ -4,6 +4,7 @@ import { parseArgs } from 'node:util'
 import { analyseLog, fileSource } from '../analyse.ts'
 import { MonitorError } from '../core/errors.ts'
 import { reportText } from '../core/pipeline/collect.ts'
+import { cannotRead } from '../file-trouble.ts'
 import { readEvents } from '../ingest/events-file.ts'
 import { instantOf } from '../ingest/instant.ts'
 import { loadSkidFile } from '../skid/skid-path.ts'
@@ -51,10 +52,7 @@ async function readText(file: string): Promise<Buffer> {
   try {
     return await readFile(file)
   } catch (cause) {
-    throw new MonitorError('FILE_READ', `cannot read: ${cause instanceof Error ? cause.message : String(cause)}`, {
-      place: { file },
-      cause,
-    })
+    throw cannotRead(file, cause)
   }
 }
 
@@ -79,7 +77,7 @@ export const analyseCommand: Command = {
         try {
           total += (await stat(log)).size
         } catch (cause) {
-          throw new MonitorError('FILE_READ', 'no such log', { place: { file: log }, hint: 'check the path', cause })
+          throw cannotRead(log, cause)
         }
       }
     const line = progressLine(io, 'analyse', total / 1e6, 'MB')

@@ -1,7 +1,7 @@
 import { once } from 'node:events'
 import { createWriteStream } from 'node:fs'
 import { rename, rm } from 'node:fs/promises'
-import { MonitorError } from '../core/errors.ts'
+import { cannotWrite } from '../file-trouble.ts'
 
 export interface AtomicFile {
   /** Resolves once more may follow. */
@@ -25,8 +25,7 @@ export async function openAtomic(path: string): Promise<AtomicFile> {
   })
   const check = () => {
     if (failure === null) return
-    const code = failure.code === 'ENOSPC' ? 'DISK_FULL' : 'FILE_WRITE'
-    throw new MonitorError(code, `cannot write: ${failure.message}`, { place: { file: path }, cause: failure })
+    throw cannotWrite(path, failure)
   }
   const discard = async () => {
     stream.destroy()
@@ -50,11 +49,7 @@ export async function openAtomic(path: string): Promise<AtomicFile> {
         await rename(temporary, path)
       } catch (cause) {
         await rm(temporary, { force: true })
-        throw new MonitorError(
-          'FILE_WRITE',
-          `cannot put the file in place: ${cause instanceof Error ? cause.message : String(cause)}`,
-          { place: { file: path }, cause },
-        )
+        throw cannotWrite(path, cause)
       }
     },
     discard,

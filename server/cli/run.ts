@@ -48,7 +48,7 @@ export async function runCli(args: readonly string[], io: Io): Promise<number> {
       name,
       commands.map((c) => c.name),
     )
-    io.err(`clearbore: unknown command '${name}'${near === null ? '' : `; did you mean ${near}?`}; clearbore --help lists them\n`)
+    io.err(`clearbore: unknown command '${name}'${near === null ? '' : `; ${near}`}; clearbore --help lists them\n`)
     return 2
   }
   if (rest.includes('--help') || rest.includes('-h')) {

@@ -14,6 +14,7 @@ import {
 } from '../core/sim/scenario.ts'
 import { eventFromText, scenarioFromJson } from '../core/sim/scenario-text.ts'
 import type { Skid } from '../core/skid.ts'
+import { cannotRead } from '../file-trouble.ts'
 import { nearest } from '../skid/nearest.ts'
 
 export const usage = (message: string, hint = 'clearbore simulate --help'): never => {
@@ -109,10 +110,7 @@ export const readText = async (file: string): Promise<string> => {
   try {
     return await readFile(file, 'utf8')
   } catch (cause) {
-    throw new MonitorError('FILE_READ', `cannot read: ${cause instanceof Error ? cause.message : String(cause)}`, {
-      place: { file },
-      cause,
-    })
+    throw cannotRead(file, cause)
   }
 }
 

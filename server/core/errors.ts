@@ -63,6 +63,6 @@ export class MonitorError extends Error {
     const p = this.place
     const where =
       p === null ? '' : `${p.file}${p.line === undefined ? '' : `:${p.line}${p.column === undefined ? '' : `:${p.column}`}`}: `
-    return `${where}${this.message}${this.hint === null ? '' : `; ${this.hint}`}`
+    return `${where}${this.message}${this.hint === null ? '' : `; ${this.hint}`}`.replace(/\s*\n\s*/g, ' ')
   }
 }

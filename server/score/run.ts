@@ -45,8 +45,9 @@ export async function findCases(dir: string): Promise<CaseFiles[]> {
     try {
       return await readdir(path, { withFileTypes: true })
     } catch (cause) {
-      throw new MonitorError('FILE_READ', `cannot read the folder: ${cause instanceof Error ? cause.message : String(cause)}`, {
+      throw new MonitorError('FILE_READ', 'cannot read the folder', {
         place: { file: path },
+        hint: 'give a folder of cases',
         cause,
       })
     }

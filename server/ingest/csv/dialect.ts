@@ -135,7 +135,9 @@ function noMatch(
   }
   const expected = wanted.map((w) => w.column)
   const filled = first.cells.filter((c) => c.trim() !== '')
-  if (filled.every((c) => formatsOf(c.trim()).length > 0 || missingWords.has(c.trim().toLowerCase())))
+  // Besides values alone, a date or time in full: a header has none, whatever words stand beside it.
+  const isMoment = (c: string): boolean => formatsOf(c.trim()).some((f) => !/^(elapsed|epoch)/.test(f))
+  if (filled.some(isMoment) || filled.every((c) => formatsOf(c.trim()).length > 0 || missingWords.has(c.trim().toLowerCase())))
     return new MonitorError(
       'CSV_HEADER',
       `found values in the first row (${listed(first.cells)}), expected a header with ${listed(expected)}`,
