@@ -43,7 +43,10 @@ export const freshCoolant = (): Coolant => ({
   best: startLag,
 })
 
-/** Takes one reading; null leaves the lags where they are. `gapS`: longer than that without a reading is a gap. */
+const leapK = 1.5
+const leapKS = 0.1
+
+/** Takes one reading; null, or a leap of more than 1.5 K and 0.1 K/s that has not lasted, leaves the lags where they are. `gapS`: longer than that without a reading is a gap. */
 export function coolantScan(s: Coolant, tMs: number, readingC: number | null, gapS: number): void {
   if (readingC === null) return
   if (!s.on) {
@@ -52,6 +55,8 @@ export function coolantScan(s: Coolant, tMs: number, readingC: number | null, ga
   } else {
     const dtS = (tMs - s.lastMs) / 1000
     const gap = dtS > gapS
+    // No bath does that: not believed until it has stood for as long as a gap, and then only as one.
+    if (!gap && Math.abs(readingC - s.lastC) > leapK + leapKS * dtS) return
     // Over a gap the mean of its two ends stands for what was not seen; the move itself stays in doubt until forgotten.
     const driveC = gap ? (readingC + s.lastC) / 2 : readingC
     const share = shares(dtS)

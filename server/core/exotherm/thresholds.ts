@@ -8,7 +8,7 @@ export const exothermDefaults = {
   meanK: 0.28,
   riseK: 0.5,
   sds: 5.5,
-  /** What the model may err by: share of the difference of neighbouring lags, of the gain for the flow's lag, sds of the offset. */
+  /** What the model may err by: share of the difference of the lags still open, of the gain for the feed's lag, sds of the offset. */
   lagShare: 0.7,
   flowShare: 0.9,
   offsetSds: 2,

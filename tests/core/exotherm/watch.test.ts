@@ -136,6 +136,16 @@ describe('what is missing', () => {
     expect(found[0].map((s) => s.tS - 2400).every((t) => t >= 0 && t < 10)).toBe(true)
     expect(found[0]).toHaveLength(1)
   })
+  it('a coolant reading that spikes by 6 K every 17 s raises nothing, and a 10 K ignition is still found within 6 s', () => {
+    const spiky = (k: number, s: [ReactorScan, ReactorScan]) =>
+      k < 900 || k % 17 > 1 ? s : s.map((r) => ({ ...r, coolantC: r.coolantC! + (k % 3 === 0 ? 6 : -6) }))
+    for (const seed of [41, 42]) {
+      const { found } = spells({ scanS: 1, hours: 1, seed, extraK: pulse(2400, 10, 8) }, spiky)
+      expect(found[0]).toHaveLength(1)
+      expect(found[0][0]!.tS - 2400).toBeGreaterThanOrEqual(0)
+      expect(found[0][0]!.tS - 2400).toBeLessThanOrEqual(6)
+    }
+  })
   it('without a coolant thermocouple: an inlet that brings 15 K along is no excursion, a rise of 5 K past it is', () => {
     const run = (extra: number) => {
       const watch = createExothermWatch({ scanS: 1, reactors: [{ segment: 'R1', thermocouples: 2, coolant: null, streams: 1 }] })
