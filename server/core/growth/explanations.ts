@@ -64,7 +64,9 @@ export function explanations(task: Task): Explained[] {
             for (let i = 0; i < settings.gridNodes; i++) {
               const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
               const node = follow(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace }, lifeMs)
-              const log = prior + Math.log(spacing) + settings.forecastPower * node.log
+              // the question may come at any time of a life alike: a life of twice the length has half the chance to be at this age
+              const age = Math.log(grownMs / (grownMs + node.left))
+              const log = prior + Math.log(spacing) + age + settings.forecastPower * node.log
               if (!(log > top - 30)) continue
               top = Math.max(top, log)
               raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })

@@ -21,7 +21,7 @@ export function cleanBelief(clean: readonly Bin[], steps: readonly WanderStep[])
   return b
 }
 
-/** One filter step: y = size·z + m + slope·(w − its mean) + c + white. Returns the log likelihood; a far innovation is widened. */
+/** One filter step: y = size·z + m + slope·(w − its mean) + c + white. Returns the log likelihood; an innovation beyond 5 sd is widened to it. */
 export function observe(b: Belief, step: WanderStep, m: number, slope: number, y: number): number {
   const rho = step.rho
   b.z *= rho
@@ -34,7 +34,7 @@ export function observe(b: Belief, step: WanderStep, m: number, slope: number, y
   const hc = h * b.zc + slope * b.wc + b.cc
   let s = h * hz + slope * hw + hc + step.white
   const e = y - h * b.z - m - b.c
-  if (e * e > 12 * s) s = (e * e) / 12
+  if (e * e > 25 * s) s = (e * e) / 25
   const kz = hz / s
   const kw = hw / s
   const kc = hc / s

@@ -58,8 +58,8 @@ export const growthDefaults: GrowthSettings = {
   ],
   clockCv: 0.06,
   clocks: [
-    { cv: 0.06, weight: 0.75 },
-    { cv: 0.14, weight: 0.25 },
+    { cv: 0.06, weight: 0.6 },
+    { cv: 0.11, weight: 0.4 },
   ],
   gridNodes: 13,
   gridReach: 3.5,
