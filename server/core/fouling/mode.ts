@@ -4,6 +4,8 @@ import type { Step } from '../derive/step.ts'
 export interface ModeState {
   /** Usual flow of each stream while it runs, in the stream's own SI unit; 0 before it has run. */
   usual: number[]
+  /** Usual temperature in production by tag, K; 0 before it is known. */
+  usualK: number[]
   production: boolean
   inferred: boolean
   /** Steps in production since it began; steps out of it with data. */
@@ -38,16 +40,19 @@ const least = { production: 0.4, rest: 0.03 }
 /** Steps: before detectors are armed at first and after a stop; out of production before it counts as a stop; settled window. */
 export const modeSteps = { arm: 10, armAgain: 24, stop: 16, settled: 4 }
 const settled = { flow: 0.03, tempK: 0.8 }
+/** Half of all thermometers so far from their usual readings is a flush or a warm-up, not production, K; how slowly the usual follows, steps. */
+const band = { tempK: 8, follow: 120 }
 
 /**
  * Whether the skid is in production. By the log's own phase word where it has one (a whole step decides, at 90 %: one missing word
- * ends nothing); otherwise inferred: every stream that has run flows at 40 % of its usual at least, and, to begin with, flows and
- * temperatures have settled. No data is not the end of production: everything holds.
+ * ends nothing); otherwise inferred: every stream that has run flows at 40 % of its usual at least, temperatures are in their usual band and, to
+ * begin with, flows and temperatures have settled. No data is not the end of production: everything holds.
  */
 export function createMode(layout: Layout, saved?: ModeState) {
   const { streams } = layout
   const s: ModeState = saved ?? {
     usual: streams.map(() => 0),
+    usualK: layout.skid.tags.map(() => 0),
     production: false,
     inferred: false,
     steps: 0,
@@ -94,6 +99,21 @@ export function createMode(layout: Layout, saved?: ModeState) {
     return true
   }
 
+  /** Temperatures in band; a band is known only once production has been seen. */
+  function isInBand(step: Step): boolean {
+    const off: number[] = []
+    step.tempK.forEach((t, i) => {
+      if (t !== null && s.usualK[i]! > 0) off.push(Math.abs(t - s.usualK[i]!))
+    })
+    off.sort((a, b) => a - b)
+    return off.length === 0 || off[off.length >> 1]! < band.tempK
+  }
+  function learnBand(step: Step): void {
+    step.tempK.forEach((t, i) => {
+      if (t !== null) s.usualK[i] = s.usualK[i] === 0 ? t : s.usualK[i]! + (t - s.usualK[i]!) / band.follow
+    })
+  }
+
   return {
     state: s,
     step(step: Step): Mode {
@@ -110,7 +130,8 @@ export function createMode(layout: Layout, saved?: ModeState) {
       s.recent.push({ flow: [...step.flow], tempK: [...step.tempK] })
       if (s.recent.length > modeSteps.settled) s.recent.shift()
       s.inferred = step.production === null
-      const now = flow.enough && (step.production === null ? was || isSettled() : step.production >= 0.9)
+      const now = flow.enough && (step.production === null ? isInBand(step) && (was || isSettled()) : step.production >= 0.9)
+      if (now) learnBand(step)
       let begins = false
       let stops = false
       if (now) {

@@ -27,7 +27,7 @@ export interface InstrumentState {
 const after = { failing: 30, missing: 60, frozen: 420, frozenFlow: 90, noData: 10, lateRows: 20 }
 
 /** Share of scans with a rejected spike, about two minutes' worth, at which an instrument is called faulty, and well again. */
-const spikyShare = { raise: 0.06, clear: 0.01 }
+const spikyShare = { raise: 0.05, clear: 0.01 }
 const none = { for: [], against: [], notExcluded: [] }
 
 /**
@@ -127,13 +127,16 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
         onDelayS: 0,
         offDelayS: 0,
       })
-      for (let t = 0; t < n; t++) if (used[t]!) tag(t, scan, tMs, silent, emit)
+      // Several readings that jump at once are gas or a pump, not instruments.
+      let jumping = 0
+      for (let t = 0; t < n; t++) if (scan.flaw[t] === why.spike) jumping++
+      for (let t = 0; t < n; t++) if (used[t]!) tag(t, scan, tMs, silent, jumping === 1, emit)
       monitorClock(tMs, counts, emit)
       return silent
     },
   }
 
-  function tag(t: number, scan: Scan, tMs: number, silent: boolean, emit: (s: Signal) => void): void {
+  function tag(t: number, scan: Scan, tMs: number, silent: boolean, alone: boolean, emit: (s: Signal) => void): void {
     const flaw = scan.flaw[t]!
     const fresh = scan.used[t]! > 0 && scan.held[t] === 0
     const isFailing = failing.has(flaw)
@@ -143,7 +146,7 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
     const fails = over(s.failingMs[t]!, delay.failing, tMs)
     const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
-    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike ? 1 : 0) - s.spiky[t]!) / 120
+    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike && alone ? 1 : 0) - s.spiky[t]!) / 120
     const spiky = s.spiky[t]! > (s.sensorOver[t] === 1 ? spikyShare.clear : spikyShare.raise)
     if (spiky) s.lastReason[t] = why.spike
     const gone = over(s.missingMs[t]!, delay.missing, tMs)
