@@ -106,4 +106,35 @@ describe('forecastLimit', () => {
     console.log(`forecast after slough-offs: 80 % interval covers ${((100 * held) / n).toFixed(0)} % of ${n}`)
     expect(held / n).toBeGreaterThan(0.7)
   })
+
+  // A stated limit: growth twice as ragged as the settings know, or of a law they lack (a sigmoid), is held less often than promised.
+  it('is wider for growth twice as ragged, and early rather than late for a law it does not know', () => {
+    const ask = (seed: number, more: Parameters<typeof randomGrowth>[1]) => {
+      const g = randomGrowth(seed, more)
+      const life = g.limitMs - g.onsetMs
+      const now = g.onsetMs + 0.5 * life
+      const known = g.points.filter((p) => p.tMs + 15_000 <= now)
+      const exact = { atMs: g.onsetMs, lowMs: g.onsetMs - 0.01 * life, highMs: g.onsetMs + 0.01 * life, level: 0.9 }
+      const f = forecastLimit(known, g.noise, exact, g.limitRatio, now)
+      return f === null
+        ? null
+        : { width: (f.highMs - f.lowMs) / (0.5 * life), late: f.lowMs > g.limitMs, early: f.highMs < g.limitMs }
+    }
+    const many = (more: Parameters<typeof randomGrowth>[1]) => {
+      const asked = Array.from({ length: 80 }, (_, i) => ask(40_000 + i, more)).filter((x) => x !== null)
+      const widths = asked.map((x) => x.width).sort((a, b) => a - b)
+      const late = asked.filter((x) => x.late).length
+      const early = asked.filter((x) => x.early).length
+      return { width: widths[widths.length >> 1]!, late, early, n: asked.length }
+    }
+    const known = many({})
+    const ragged = many({ clockCv: 0.12 })
+    const sigmoid = many({ law: 'sigmoid' })
+    for (const [name, x] of Object.entries({ known, ragged, sigmoid }))
+      console.log(
+        `forecast half way, ${name}: covers ${(100 - (100 * (x.late + x.early)) / x.n).toFixed(0)} % of ${x.n}, width ${x.width.toFixed(2)}`,
+      )
+    expect(ragged.width).toBeGreaterThan(1.3 * known.width)
+    expect(sigmoid.early).toBeGreaterThan(sigmoid.late)
+  })
 })
