@@ -9,9 +9,9 @@ export interface BaselineDoubt {
 
 /**
  * The doubt left by a baseline of so many steps [-]. Mean: 1/√n, for whitened steps too, as the wander that spoils the mean is the
- * wander the whitening divides by. σ: sd 1/√(2(n − 1)) of its logarithm, on average 1/(2(n − 1)) too small (log of χ²). A correlation estimated from the same steps is off by sd √((1 − φ²)/n) and on
- * average (1 + 3φ)/n too small (Bartlett; Marriott and Pope, Biometrika 41 (1954) 390); what stays unwhitened acts like a σ larger by
- * √((1 + ρ)/(1 − ρ)), about e^ρ.  correlation  null when none was estimated.
+ * wander the whitening divides by. σ: sd 1/√(2(n − 1)) of its logarithm, on average 1/(2(n − 1)) too small (log of χ²). A correlation
+ * estimated from the same steps is off by sd √((1 − φ²)/n) and on average (1 + 3φ)/n too small (Marriott and Pope, Biometrika 41
+ * (1954) 390); what stays unwhitened acts like a σ larger by √((1 + ρ)/(1 − ρ)), about e^ρ.  correlation  null when none was estimated.
  */
 export function baselineDoubt(steps: number, correlation: number | null): BaselineDoubt {
   const scale = 1 / (2 * Math.max(1, steps - 1))

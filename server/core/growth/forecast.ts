@@ -29,6 +29,7 @@ export interface LimitForecast extends Interval {
  * W is the raggedness of growth: a clock that wanders with variance cv²·T per time, followed by a Kalman filter together with the
  * clean level c and the wander of the measurement. The interval holds the doubt about all of them and the ragged growth still to
  * come. After a slough-off growth goes on either at the pace of the film that is left or at the pace it had; both are weighed.
+ * Held less often than it says: growth twice as ragged as the settings know, and a law they lack (a sigmoid), 65 % instead of 80.
  * limitRatio  the ratio over clean at which the limit is met, at the flow and temperature of now.
  * Null when the limit ratio is not above 1 and not met, when there are fewer than 4 points since the onset, when the growth does not
  * stand out of its noise by 2 sd or is below `leastPart` of the way in ln ratio (2 %), or when the median lies further ahead than
