@@ -5,8 +5,11 @@ import { meant } from '../skid/nearest.ts'
 import { analyseCommand } from './analyse.ts'
 import { checkSkidCommand } from './check-skid.ts'
 import type { Command, Io } from './command.ts'
+import { exportCommand } from './export.ts'
 import { flushPlanCommand } from './flush-plan.ts'
+import { importCommand } from './import.ts'
 import { scoreCommandWith } from './score.ts'
+import { serveCommand } from './serve.ts'
 import { simulateCommand } from './simulate.ts'
 
 export const caution =
@@ -17,7 +20,16 @@ const score = scoreCommandWith({
   analyse: async (files, skid, { cutMs }) => (await analyseLog({ skid, sources: [fileSource(files.logFile)], toMs: cutMs })).report,
 })
 
-export const commands: readonly Command[] = [analyseCommand, checkSkidCommand, simulateCommand, score, flushPlanCommand]
+export const commands: readonly Command[] = [
+  serveCommand,
+  importCommand,
+  exportCommand,
+  analyseCommand,
+  checkSkidCommand,
+  simulateCommand,
+  score,
+  flushPlanCommand,
+]
 
 /** Mistakes of the command line and failures of the machine; everything else a user can mend in the input. */
 const exitCodes: Partial<Record<ErrorCode, number>> = {

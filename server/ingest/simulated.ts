@@ -16,8 +16,10 @@ export interface SimulatedOptions {
   readonly state: Json
 }
 
+/** `night` and whatever else the run was begun with stays as it is. */
 interface State {
   readonly rows: number
+  readonly [kept: string]: Json
 }
 
 /** Most rows in one poll: after a pause of the process the run goes on where it stood, it does not rush. */
@@ -65,7 +67,12 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
         }
       }
       taken += Math.max(0, due)
-      return { entries: due > 0 ? [{ kind: 'rows', block }] : [], state: { rows: taken }, more: false, ended: taken >= total }
+      return {
+        entries: due > 0 ? [{ kind: 'rows', block }] : [],
+        state: { ...(state as State | null), rows: taken },
+        more: false,
+        ended: taken >= total,
+      }
     },
     status: () => ({ state: taken >= total ? 'ended' : 'running', message: null }),
     clock() {

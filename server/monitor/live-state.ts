@@ -1,3 +1,4 @@
+import { round9 } from '../core/pipeline/collect.ts'
 import { type LimitName, limitNames } from '../core/sequence.ts'
 import type { Skid } from '../core/skid.ts'
 import { barFromPa, toSi, valueUnit } from '../core/units.ts'
@@ -82,18 +83,18 @@ function newest(p: StateParts, tag: string): number | null {
 
 const celsius = (p: StateParts, tag: string): number | null => {
   const k = newest(p, tag)
-  return k === null ? null : k - 273.15
+  return k === null ? null : round9(k - 273.15)
 }
 
 function dpNow(p: StateParts, i: number): number | null {
   const dp = p.skid.segments[i]!.dp
   if (dp.kind === 'dp') {
     const pa = newest(p, dp.dpTag)
-    return pa === null ? null : barFromPa(pa)
+    return pa === null ? null : round9(barFromPa(pa))
   }
   const inPa = newest(p, dp.pressureIn)
   const outPa = dp.kind === 'held' ? dp.outBar * 1e5 : newest(p, dp.pressureOut)
-  return inPa === null || outPa === null ? null : barFromPa(inPa - outPa)
+  return inPa === null || outPa === null ? null : round9(barFromPa(inPa - outPa))
 }
 
 /** The latest of each recommendation (action and place) of the last hours, latest first. */

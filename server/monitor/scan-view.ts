@@ -1,3 +1,4 @@
+import { round9 } from '../core/pipeline/collect.ts'
 import { gradeOf, reasons } from '../core/quality/tag-rules.ts'
 import { type Phase, phases } from '../core/reading.ts'
 import type { Scan } from '../core/scan/grid.ts'
@@ -66,7 +67,8 @@ export function createScanView(skid: Skid, saved?: ScanViewState) {
         s.flaw[t] = scan.flaw[t]!
         s.held[t] = scan.held[t] === 1
         if (!used || isText[t]) continue
-        const value = fromSi(scan.si[t]!, unit[t]!)
+        // A way to SI and back leaves dust in the last digits.
+        const value = round9(fromSi(scan.si[t]!, unit[t]!)) ?? 0
         s.value[t] = value
         s.atMs[t] = endMs
         if (value < gather.min[t]!) gather.min[t] = value

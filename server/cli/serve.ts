@@ -1,0 +1,133 @@
+import { resolve } from 'node:path'
+import { instantOf } from '../ingest/instant.ts'
+import { cautions } from '../record/facts.ts'
+import { loadSkid } from '../skid/check.ts'
+import { readSkidText } from '../skid/skid-path.ts'
+import { openStore } from '../store/open.ts'
+import type { Command, Io } from './command.ts'
+import { demoSkidFile, toolVersion, webRoot } from './install.ts'
+import { readOptions, usage, wholeIn } from './options.ts'
+import { startServing, type Watched } from './serving.ts'
+
+const defaultPort = 8460
+
+const help = `Usage: clearbore serve [--skid FILE]… [--follow LOG.csv]… [--data DIR] [--port N] [--host H] [--speed N] [--start T]
+
+Watches skids and serves the pages. Without --skid: the demo, the skid "heron" from the simulator, faster than time.
+
+  --skid FILE       a skid file (YAML or JSON); repeatable
+  --follow LOG.csv  a log that a data logger is still appending to: the first for the first --skid, and so on;
+                    a skid without one runs from the simulator, and the pages say so
+  --data DIR        where everything is kept (default .clearbore); runs go on there after a restart
+  --port N          default ${defaultPort}, or the next free one; with --port exactly that one
+  --host H          address to listen on (default 127.0.0.1, this machine only); H is then a name it answers to as well
+  --speed N         simulated seconds in a second (default 60)
+  --start T         when a followed log with elapsed seconds or bare times of day began
+
+Ctrl-C or SIGTERM ends it cleanly. Exit code 0; 2 for a wrong command line; 3 when the machine fails (port taken, disk full …).
+`
+
+const text = { type: 'string' } as const
+const many = { type: 'string', multiple: true } as const
+
+async function watchedOf(
+  skids: readonly string[],
+  follows: readonly string[],
+  speed: number,
+  start: string | null,
+): Promise<Watched[]> {
+  const out: Watched[] = []
+  for (const [i, file] of skids.entries()) {
+    const content = await readSkidText(file)
+    const skid = loadSkid(content, file)
+    const path = follows[i]
+    const startMs = start === null ? null : instantOf(start, skid.timeZone, '--start')
+    out.push({
+      skid,
+      file,
+      text: content,
+      source: path === undefined ? { kind: 'simulated', speed } : { kind: 'followed', path: resolve(path), startMs },
+    })
+  }
+  return out
+}
+
+export const serveCommand: Command = {
+  name: 'serve',
+  summary: 'watch skids and serve the pages (the demo without --skid)',
+  help,
+  async run(args, io) {
+    const { values: v } = readOptions(
+      'serve',
+      args,
+      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text },
+      false,
+    )
+    const follows = v.follow ?? []
+    if (follows.length > (v.skid ?? []).length)
+      throw usage(
+        'serve',
+        `${follows.length} --follow for ${(v.skid ?? []).length} --skid: each followed log needs the skid it belongs to`,
+      )
+    const isDemo = v.skid === undefined
+    const speed = wholeIn('serve', '--speed', v.speed ?? '60', 1, 3600)
+    const port = v.port === undefined ? defaultPort : wholeIn('serve', '--port', v.port, 0, 65_535)
+    const watched = await watchedOf(v.skid ?? [demoSkidFile()], follows, speed, v.start ?? null)
+    const ids = watched.map((w) => w.skid.skid)
+    const twice = ids.find((id, i) => ids.indexOf(id) !== i)
+    if (twice !== undefined) throw usage('serve', `skid '${twice}' is given twice`)
+
+    const store = openStore(v.data ?? '.clearbore')
+    try {
+      let fail: (error: unknown) => void = () => undefined
+      const fatal = new Promise<never>((_, reject) => {
+        fail = reject
+      })
+      fatal.catch(() => undefined)
+      const serving = await startServing({
+        store,
+        watched,
+        isDemo,
+        person: isDemo ? 'demo operator' : null,
+        host: v.host ?? '127.0.0.1',
+        port,
+        tryPorts: v.port === undefined ? 20 : 0,
+        webRoot: webRoot(),
+        toolVersion: toolVersion(),
+        log: (line) => io.err(`${line}\n`),
+        onFatal: fail,
+      })
+      try {
+        await io.out(greeting(serving.url, watched, serving.port === port || port === 0 ? null : port, webRoot() !== null))
+        await Promise.race([aborted(io), fatal])
+      } finally {
+        await serving.stop()
+      }
+    } finally {
+      store.close()
+    }
+    return 0
+  },
+}
+
+function greeting(url: string, watched: readonly Watched[], taken: number | null, hasPages: boolean): string {
+  const lines = watched.map(({ skid, source: s }) =>
+    s.kind === 'simulated'
+      ? `  ${skid.skid}: simulated, ${s.speed} times faster than time (an invented run, not a plant)`
+      : `  ${skid.skid}: follows ${s.path}`,
+  )
+  return [
+    `Clearbore ${toolVersion()}: ${url}`,
+    ...(taken === null ? [] : [`  port ${taken} is taken, so this is the next free one`]),
+    ...(hasPages ? [] : ['  the pages have not been built; the API answers under /api (npm run build makes the pages)']),
+    ...lines,
+    ...cautions,
+    '',
+  ].join('\n')
+}
+
+const aborted = (io: Io): Promise<void> =>
+  new Promise((done) => {
+    if (io.signal.aborted) done()
+    else io.signal.addEventListener('abort', () => done(), { once: true })
+  })

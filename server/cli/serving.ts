@@ -1,0 +1,197 @@
+import { networkInterfaces } from 'node:os'
+import { buildApp } from '../app.ts'
+import { MonitorError } from '../core/errors.ts'
+import { demoScenario } from '../core/sim/demo.ts'
+import type { Skid } from '../core/skid.ts'
+import { followSource } from '../ingest/follow.ts'
+import { simulatedSource } from '../ingest/simulated.ts'
+import type { Source } from '../ingest/source.ts'
+import { createCatalogue, createPair, kindOf } from '../monitor/catalogue.ts'
+import { createImports } from '../monitor/imports.ts'
+import { createMonitor } from '../monitor.ts'
+import { loadSkid } from '../skid/check.ts'
+import type { RunId } from '../store/keys.ts'
+import type { Store } from '../store/open.ts'
+
+/** A skid to be watched and where its readings come from. */
+export interface Watched {
+  readonly skid: Skid
+  readonly file: string
+  readonly text: string
+  readonly source:
+    | { readonly kind: 'simulated'; readonly speed: number }
+    | { readonly kind: 'followed'; readonly path: string; readonly startMs: number | null }
+}
+
+export interface ServingOptions {
+  readonly store: Store
+  readonly watched: readonly Watched[]
+  readonly isDemo: boolean
+  readonly person: string | null
+  readonly host: string
+  readonly port: number
+  /** Further ports to try where the first is taken. */
+  readonly tryPorts: number
+  readonly webRoot: string | null
+  readonly toolVersion: string
+  readonly log: (line: string) => void
+  readonly onFatal: (error: unknown) => void
+  readonly beatMs?: number
+  readonly snapshotMs?: number
+  readonly giveUpMs?: number
+}
+
+const nightMs = 24 * 3_600_000
+
+/** Everything of a running server put together: store, monitor, imports, pages. Resolves once it listens. Errors: PORT_TAKEN, those of the sources' skids. */
+export async function startServing(o: ServingOptions) {
+  const { store } = o
+  const steadyMs = () => performance.now()
+  const wallMs = () => Date.now()
+  const monitor = createMonitor({
+    store,
+    steadyMs,
+    log: o.log,
+    onFatal: o.onFatal,
+    ...(o.snapshotMs === undefined ? {} : { snapshotMs: o.snapshotMs }),
+    ...(o.giveUpMs === undefined ? {} : { giveUpMs: o.giveUpMs }),
+  })
+  let changed = (): void => undefined
+  const imports = createImports({
+    store,
+    skidOf: loadSkid,
+    toolVersion: o.toolVersion,
+    wallMs,
+    log: o.log,
+    changed: () => changed(),
+  })
+  const catalogue = createCatalogue(store, loadSkid, {
+    engine: monitor.engine,
+    clock: monitor.clock,
+    sourceFault: (run) => {
+      const { state, message } = monitor.state(run).data.source
+      return state === 'failed' ? message : null
+    },
+    importing: imports.busy,
+  })
+
+  function sourceOf(w: Watched, run: RunId): Source {
+    const state = store.sequence.sourceState(run)
+    if (w.source.kind === 'followed') {
+      const { path, startMs } = w.source
+      return followSource({ skid: w.skid, path, startMs, wallMs, steadyMs, state, words: store.runs.words(run) })
+    }
+    const night = (state as { night?: number } | null)?.night ?? 0
+    const tonight = demoScenario(w.skid)
+    const scenario = demoScenario(w.skid, { seed: tonight.seed + night, fromMs: tonight.fromMs + night * nightMs })
+    return simulatedSource({ skid: w.skid, scenario, speed: w.source.speed, steadyMs, state })
+  }
+
+  function begin(w: Watched): RunId {
+    const earlier = store.runs.list().filter((r) => r.skidId === w.skid.skid && kindOf(r.source) === 'simulated').length
+    const isSimulated = w.source.kind === 'simulated'
+    const { run } = createPair(store, {
+      kind: w.source.kind,
+      about: w.source.kind === 'followed' ? w.source.path : 'simulated readings',
+      skidId: w.skid.skid,
+      title: isSimulated ? `${w.skid.title}, simulated night ${earlier + 1}` : w.skid.title,
+      skidFile: w.file,
+      skidText: w.text,
+      startedMs: wallMs(),
+      toolVersion: o.toolVersion,
+      state: 'live',
+    })
+    if (isSimulated) store.sequence.append([{ run, entries: [], sourceState: { night: earlier, rows: 0 } }])
+    return run
+  }
+
+  /** The run that a process before this one left alive with the same skid file and source. */
+  function left(w: Watched): RunId | null {
+    const about = w.source.kind === 'followed' ? w.source.path : 'simulated readings'
+    const same = store.runs.list().filter((r) => r.state === 'live' && r.source === `${w.source.kind}: ${about}`)
+    return same.findLast((r) => store.runs.get(r.id).skidText === w.text)?.id ?? null
+  }
+
+  const watchedOf = new Map<RunId, Watched>()
+  function watch(w: Watched, run: RunId): void {
+    const { stepsRun } = catalogue.parts(run)
+    watchedOf.set(run, w)
+    monitor.add({ run, stepsRun, skid: w.skid, source: sourceOf(w, run) })
+  }
+  monitor.onEnded(({ run }) => {
+    const w = watchedOf.get(run)
+    if (w?.source.kind === 'simulated') watch(w, begin(w))
+  })
+  for (const w of o.watched) watch(w, left(w) ?? begin(w))
+
+  const isLoopback = ['127.0.0.1', 'localhost', '::1'].includes(o.host)
+  const { app, hub, publisher } = await buildApp({
+    store,
+    monitor,
+    catalogue,
+    toolVersion: o.toolVersion,
+    person: o.person,
+    isDemo: () => o.isDemo,
+    wallMs,
+    uploadMaxBytes: 512 * 2 ** 20,
+    skidOf: loadSkid,
+    importLogs: (job) => catalogue.row(imports.begin(job)),
+    webRoot: o.webRoot,
+    hosts: isLoopback ? [] : [o.host],
+    log: o.log,
+  })
+  monitor.publishTo(publisher)
+  changed = publisher.runs
+
+  const port = await listen(o, (port) => app.listen({ host: o.host, port })).catch(async (error) => {
+    await app.close()
+    await monitor.stop()
+    throw error
+  })
+  monitor.start(o.beatMs)
+  const shown = isLoopback ? o.host : o.host === '0.0.0.0' || o.host === '::' ? (ownAddress() ?? o.host) : o.host
+  return {
+    port,
+    url: `http://${shown.includes(':') ? `[${shown}]` : shown}:${port}/`,
+    monitor,
+    imports,
+    counts: hub.counts,
+    /** Clients are let go, what was polled is committed, every run's place saved. The store stays open. */
+    async stop(): Promise<void> {
+      await app.close()
+      await imports.stop()
+      await monitor.stop()
+    },
+  }
+}
+
+const ownAddress = (): string | null =>
+  Object.values(networkInterfaces())
+    .flat()
+    .find((a) => a !== undefined && !a.internal && a.family === 'IPv4')?.address ?? null
+
+async function listen(o: ServingOptions, bind: (port: number) => Promise<string>): Promise<number> {
+  for (let port = o.port; ; port++) {
+    try {
+      const address = await bind(port)
+      return Number(new URL(address).port || 80)
+    } catch (cause) {
+      const { code, message } = cause as NodeJS.ErrnoException
+      if (code === 'EADDRINUSE' && port < o.port + o.tryPorts) continue
+      if (code === 'EADDRINUSE')
+        throw new MonitorError('PORT_TAKEN', `port ${port} on ${o.host} is taken by another program`, {
+          hint: 'stop that one, or choose another with --port',
+          cause,
+        })
+      if (code === 'EACCES')
+        throw new MonitorError('PORT_TAKEN', `port ${port} may not be used by this user`, {
+          hint: 'choose one above 1023 with --port',
+          cause,
+        })
+      throw new MonitorError('PORT_TAKEN', `cannot listen on ${o.host} port ${port}: ${message}`, {
+        hint: 'check --host and --port',
+        cause,
+      })
+    }
+  }
+}

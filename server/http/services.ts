@@ -1,0 +1,32 @@
+import type { Skid } from '../core/skid.ts'
+import type { Catalogue } from '../monitor/catalogue.ts'
+import type { MonitorStore } from '../monitor/needs.ts'
+import type { Monitor } from '../monitor.ts'
+import type { RunRow } from '../wire/run.ts'
+
+/** What the routes call; `app.ts` hands it to them. */
+export interface Services {
+  readonly store: MonitorStore
+  readonly monitor: Pick<Monitor, 'engine' | 'state' | 'act' | 'lives'>
+  readonly catalogue: Catalogue
+  readonly toolVersion: string
+  /** Name to fill in for the person of an act; null where each gives their own. */
+  readonly person: string | null
+  readonly isDemo: () => boolean
+  readonly wallMs: () => number
+  readonly uploadMaxBytes: number
+  readonly skidOf: (text: string, file: string) => Skid
+  /** Begins an import of logs that lie on disk; the run is listed at once, `done` runs when the files may go. */
+  readonly importLogs: (job: ImportJob) => RunRow
+}
+
+export interface ImportJob {
+  readonly title: string
+  readonly person: string
+  readonly skidFile: string
+  readonly skidText: string
+  readonly logs: readonly { readonly name: string; readonly path: string }[]
+  readonly events: { readonly name: string; readonly text: string } | null
+  readonly start: string | null
+  readonly done: () => void
+}
