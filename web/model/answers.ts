@@ -177,7 +177,7 @@ function nowOf(state: LiveState, clock: ZoneClock, alarm: AlarmRow | null): Answ
   const reason = inPlantTime(advice.reason, clock, state.clock.nowMs)
   return answer(
     actionWords[advice.action],
-    `${advice.segments.length === 0 ? '' : `for ${advice.segments.join(', ')}: `}${firstClause(reason)}`,
+    `${advice.segments.length === 0 || reason.startsWith(advice.segments[0]!) ? '' : `for ${advice.segments.join(', ')}: `}${firstClause(reason)}`,
   )
 }
 

@@ -22,6 +22,8 @@ export interface PlacedFeed {
   /** Where the pipe ends: straight into the body (null) or down into it at this x. */
   readonly joinX: number | null
   readonly joinY: number
+  /** Little room for its label: the name alone. */
+  readonly tight: boolean
   readonly row: number
 }
 
@@ -70,7 +72,7 @@ export function layoutLine(facts: SkidFacts): LineLayout {
   cut.forEach((part, row) => {
     const joins = joinsOf(facts, body, part)
     const levels = Math.max(0, ...joins.map((j) => j.branches.length))
-    const y = top + levels * 100 + mainHalf + wall + (levels === 0 ? 12 : 24)
+    const y = top + levels * 100 + mainHalf + wall + (levels === 0 ? 16 : 40)
     const placed = widths(part)
     for (const [i, s] of part.entries())
       segments.push({ id: s.id, title: s.title, main: true, row, ...placed[i]!, y, half: mainHalf })
@@ -79,6 +81,8 @@ export function layoutLine(facts: SkidFacts): LineLayout {
     for (const join of [...joins].reverse()) {
       const at = placed[join.index]!
       const joinX = join.index === 0 ? null : at.x - gap / 2
+      const left = joins[joins.indexOf(join) - 1]
+      const before = left === undefined ? 0 : placed[left.index]!.x
       join.branches.forEach((branch, level) => {
         const n = branch.segments.length
         const yFeed = y - mainHalf - wall - 62 - level * 100
@@ -87,15 +91,23 @@ export function layoutLine(facts: SkidFacts): LineLayout {
         const begin = end - n * w - Math.max(0, n - 1) * 12
         for (const [i, s] of branch.segments.entries())
           segments.push({ id: s.id, title: s.title, main: false, row, x: begin + i * (w + 12), w, y: yFeed, half: feedHalf })
-        feeds.push({ streams: branch.streams, x: begin - 26, y: yFeed, joinX: joinX ?? at.x + 60, joinY: y, row })
+        feeds.push({
+          streams: branch.streams,
+          x: begin - 26,
+          y: yFeed,
+          joinX: joinX ?? at.x + 60,
+          joinY: y,
+          row,
+          tight: begin - 26 - labelW < before,
+        })
         free[level] = begin - 26 - labelW
       })
     }
     const first = part[0]
     if (row === 0 && first !== undefined)
-      feeds.push({ streams: ownStreams(facts, first, joins), x: x0 - 26, y, joinX: null, joinY: y, row })
-    const figuresY = y + mainHalf + wall + 10
-    const profileY = figuresY + 94
+      feeds.push({ streams: ownStreams(facts, first, joins), x: x0 - 26, y, joinX: null, joinY: y, row, tight: false })
+    const figuresY = y + mainHalf + wall + 15
+    const profileY = figuresY + 92
     rows.push({ x0, x1, y, figuresY, profileY, last: row === cut.length - 1 })
     top = profileY + profileHeight + 22
   })

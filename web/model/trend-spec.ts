@@ -241,6 +241,18 @@ function gaps(data: RunData, view: TrendView, segment: string | null): Overlay['
   const between = (g: { fromMs: number; toMs: number }) => produced.some((p) => p.y === 0 && p.x >= g.fromMs && p.x <= g.toMs)
   const inside = (g: { fromMs: number; toMs: number }) => silent.some((s) => s.fromMs < g.toMs && s.toMs > g.fromMs)
   const blind = gapsOf(data.segments.get(segment)?.ratio.points() ?? []).filter((g) => near(g) && !between(g) && !inside(g))
+  // Rows still come, but no ratio since some time.
+  const own = data.segments.get(segment)?.ratio.points().at(-1)
+  const end = produced.at(-1)
+  const quietMs = 4000 * data.detail.skidFacts.stepSeconds
+  if (
+    own !== undefined &&
+    end?.y === 1 &&
+    end.x - own.x > quietMs &&
+    end.x <= view.atMs + quietMs &&
+    !inside({ fromMs: own.x, toMs: view.atMs })
+  )
+    blind.push({ fromMs: own.x, toMs: Math.min(end.x, view.atMs) })
   return [...named, ...blind.map((g) => ({ ...g, label: `no ratio ${hm(g.fromMs)} to ${hm(g.toMs)}` }))]
 }
 

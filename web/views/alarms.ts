@@ -20,7 +20,7 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
   const head = el('h2', { id: 'alarms-title', text: 'Alarms' })
   const note = el('p', { class: 'soft' })
   const list = el('ul', { class: 'alarms' })
-  const empty = el('p', { class: 'quiet' })
+  const empty = el('p', { class: 'hush' })
   const node = el(
     'section',
     { class: 'al', 'aria-labelledby': 'alarms-title' },

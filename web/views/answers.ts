@@ -44,7 +44,8 @@ function answerView(question: string) {
         )
         const n = a.far.length + (a.to?.length ?? 0)
         far.classList.toggle('long', n > 12)
-        far.classList.toggle('longer', n > 16)
+        far.classList.toggle('longer', n > 16 && n <= 20)
+        far.classList.toggle('longest', n > 20)
       }
       say(below, a.below)
     },

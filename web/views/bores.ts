@@ -1,7 +1,7 @@
 import type { SkidFacts } from '../../server/wire/index.ts'
 import { drawnShare } from '../model/bore.ts'
 import type { RunData } from '../model/run-data.ts'
-import { gapsOf, type Point, thin } from '../model/series.ts'
+import { type Point, thin } from '../model/series.ts'
 import { el } from './dom.ts'
 import { clamp } from './overlay-pen.ts'
 import { onPalette, palette } from './palette.ts'
@@ -47,7 +47,9 @@ export function boresView(facts: SkidFacts, data: RunData) {
     // Production or not.
     let y = 0
     const h = phaseRem * em - 3
-    for (const p of stretches(data.production.points(), s.fromMs, s.atMs)) {
+    const holdMs = 2200 * facts.stepSeconds
+    const made = stretches(data.production.points(), s.fromMs, s.atMs)
+    for (const p of made) {
       const [l, r] = [x(p.fromMs), x(p.toMs)]
       pen.fillStyle = look.colour[p.on ? 'band' : 'paper']
       pen.fillRect(l, y, r - l, h)
@@ -80,11 +82,20 @@ export function boresView(facts: SkidFacts, data: RunData) {
       pen.clip()
       word(g.id, left - 0.6 * em, top + size / 2, tall, 'right')
       pen.restore()
-      pen.fillStyle = look.colour.bore
-      pen.fillRect(left, top, nowX - left, size)
-      deposit(pen, points, x, top, size, look.colour.deposit)
+      // Not known in production is hatched, never a bore that looks clean; out of production nothing is drawn.
       pen.fillStyle = look.hatch
-      for (const gap of gapsOf(points)) pen.fillRect(x(gap.fromMs), top, Math.max(1, x(gap.toMs) - x(gap.fromMs)), size)
+      for (const p of made) if (p.on) pen.fillRect(x(p.fromMs), top, x(p.toMs) - x(p.fromMs), size)
+      for (const run of runsOf(points)) {
+        pen.fillStyle = look.colour.bore
+        pen.fillRect(
+          x(run[0]!.x),
+          top,
+          Math.max(1, (run.at(-1)!.x >= s.atMs - holdMs ? nowX : x(run.at(-1)!.x)) - x(run[0]!.x)),
+          size,
+        )
+        pen.fillStyle = look.colour.deposit
+        deposit(pen, run, x, top, size)
+      }
       pen.strokeStyle = look.colour['band-edge']
       pen.lineWidth = 1
       pen.strokeRect(left + 0.5, top - 0.5, nowX - left, size + 1)
@@ -117,37 +128,34 @@ export function boresView(facts: SkidFacts, data: RunData) {
   }
 }
 
-/** Layer on both walls, its thickness drawn larger than it is; nothing where nothing is known. */
-function deposit(
-  pen: CanvasRenderingContext2D,
-  points: readonly Point[],
-  x: (t: number) => number,
-  top: number,
-  size: number,
-  colour: string,
-): void {
-  pen.fillStyle = colour
-  let run: { x: number; d: number }[] = []
-  const close = () => {
-    const first = run[0]
-    const last = run.at(-1)
-    if (first !== undefined && last !== undefined && run.some((p) => p.d > 0))
-      for (const side of [0, 1]) {
-        const wall = side === 0 ? top : top + size
-        pen.beginPath()
-        pen.moveTo(first.x, wall)
-        for (const p of run) pen.lineTo(p.x, side === 0 ? wall + p.d : wall - p.d)
-        pen.lineTo(last.x, wall)
-        pen.fill()
-      }
-    run = []
-  }
+/** Runs of neighbouring points without a gap between them. */
+function runsOf(points: readonly Point[]): Point[][] {
+  const runs: Point[][] = []
+  let open = false
   for (const p of points) {
-    const share = drawnShare(p.y)
-    if (share === null) close()
-    else run.push({ x: x(p.x), d: (share * size) / 2 })
+    if (p.y === null || drawnShare(p.y) === null) open = false
+    else if (open) runs.at(-1)!.push(p)
+    else {
+      runs.push([p])
+      open = true
+    }
   }
-  close()
+  return runs
+}
+
+/** Layer on both walls, its thickness drawn larger than it is. */
+function deposit(pen: CanvasRenderingContext2D, run: readonly Point[], x: (t: number) => number, top: number, size: number): void {
+  if (!run.some((p) => (drawnShare(p.y) ?? 0) > 0)) return
+  for (const [wall, side] of [
+    [top, 1],
+    [top + size, -1],
+  ] as const) {
+    pen.beginPath()
+    pen.moveTo(x(run[0]!.x), wall)
+    for (const p of run) pen.lineTo(x(p.x), wall + (side * (drawnShare(p.y) ?? 0) * size) / 2)
+    pen.lineTo(x(run.at(-1)!.x), wall)
+    pen.fill()
+  }
 }
 
 /** Stretches of production and not, cut to the window. */

@@ -42,7 +42,12 @@ export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
         class: `fig feed${f.joinX === null && f.x < 100 ? ' first' : ''}`,
         title: streams.map((s) => `${s?.id} ${s?.title}`).join(', '),
       },
-      el('p', {}, el('b', { text: f.streams.join(' + ') }), ` ${short(streams[0]?.reagent ?? streams[0]?.title ?? '', 18)}`),
+      el(
+        'p',
+        {},
+        el('b', { text: f.streams.join(' + ') }),
+        ` ${f.tight ? '' : short(streams[0]?.reagent ?? streams[0]?.title ?? '', 18)}`,
+      ),
       flow,
     )
     place(label, { x: f.x / 10, y: (100 * f.y) / layout.height })
@@ -106,7 +111,7 @@ function figureView(s: PlacedSegment, layout: LineLayout, pick: (segment: string
       const ratioText = fixed(now?.ratio, 2)
       big.textContent = ratioText ?? 'no ratio'
       unit.hidden = ratioText === null
-      node.classList.toggle('hot', hot !== null && ratioText !== null)
+      node.classList.toggle('hot', hot !== null && ratioText !== null && (now?.growthPerHour ?? null) !== null)
       node.dataset['ratio'] = ratioText ?? ''
       grows.textContent = growth(now, state)
       grows.classList.toggle('soft', hot === null)
@@ -138,7 +143,8 @@ function growth(now: SegmentState | undefined, state: LiveState): string {
         ? 'not known'
         : 'not in production'
   if (now.growthPerHour !== null) return `grows ${fixed(now.growthPerHour, 2)} /h`
-  return now.standing === null ? 'steady' : 'no forecast yet'
+  const standing = state.alarms.find((a) => a.id === now.standing?.alarm)
+  return standing?.kind === 'fouling' || standing?.kind === 'dp-limit' ? 'no forecast yet' : 'steady'
 }
 
 const rect = (x0: number, y0: number, x1: number, y1: number, cls: string): SVGElement =>
@@ -281,10 +287,18 @@ function drawProfile(
     )
     if (hot?.tempC != null && p.readings.length > 2)
       words.append(
-        place(el('span', { class: 'lab cb' }, el('b', { text: `${fixed(hot.tempC, 1)} °C` }), ` ${hot.tag}`), {
-          x: hot.x / 10,
-          y: (100 * (y(hot.tempC) - 8)) / layout.height,
-        }),
+        place(
+          el(
+            'span',
+            { class: `lab ${p.readings[0] === hot ? 'lb' : p.readings.at(-1) === hot ? 'rb' : 'cb'}` },
+            el('b', { text: `${fixed(hot.tempC, 1)} °C` }),
+            ` ${hot.tag}`,
+          ),
+          {
+            x: hot.x / 10,
+            y: (100 * (y(hot.tempC) - 8)) / layout.height,
+          },
+        ),
       )
   }
 }

@@ -194,8 +194,11 @@ function words(f: Frame, o: Overlay, last: Point | null): void {
   for (const n of o.notes) {
     const x = f.x(n.tMs)
     if (!inside(x)) continue
-    const y = box.top + 2.4 * em
-    if (!label(f, n.label, x + 0.4 * em, y, 'left', 'middle')) label(f, n.label, x - 0.4 * em, y, 'right', 'middle')
+    // From the middle outwards, so that the words miss the line and the limits where they can.
+    for (const share of [0.3, 0.5, 0.15, 0.7]) {
+      const y = box.top + share * (box.bottom - box.top)
+      if (label(f, n.label, x + 0.4 * em, y, 'left', 'middle') || label(f, n.label, x - 0.4 * em, y, 'right', 'middle')) break
+    }
   }
 }
 
@@ -215,7 +218,7 @@ export function label(
   pen.font = `${how.bold === true ? 700 : 400} ${size}px ${look.font}`
   const w = pen.measureText(text).width
   let left = align === 'left' ? x : align === 'right' ? x - w : x - w / 2
-  if (align === 'center') left = clamp(left, box.left + 2, box.right - w - 2)
+  if (align === 'center') left = clamp(left, box.left + 4, box.right - w - 4)
   const top = grow === 'down' ? y : grow === 'up' ? y - size : y - size / 2
   const room: Box = { left: left - 3, right: left + w + 3, top, bottom: top + size * 1.1 }
   if (room.left < box.left || room.right > box.right || room.top < box.top || room.bottom > box.bottom + 2) return false

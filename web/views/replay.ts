@@ -45,7 +45,7 @@ export function replayView(data: RunData, shell: Shell) {
     button('−', 'Zoom out', () => zoom(2)),
     button('whole run', 'Whole run', () => look(first, last)),
   )
-  const trends = trendsView(data, tools)
+  const trends = trendsView(data, tools, true)
   const slider = el('input', { type: 'range', id: 'moment', min: 0, max: 1000, step: 1, value: 1000, 'aria-label': 'Moment shown' })
   const sliderText = el('output', { for: 'moment', class: 'moment-text' })
   const moment = el(

@@ -13,7 +13,7 @@ const kindWords = { simulated: 'simulated', followed: 'followed file', imported:
 /** All stored runs, newest first, and a place to bring one. */
 export function runsView(service: Service, shell: Shell) {
   const body = el('tbody')
-  const empty = el('p', { class: 'quiet', text: 'No run is stored yet.' })
+  const empty = el('p', { class: 'hush', text: 'No run is stored yet.' })
   const heads = ['Run', 'Skid', 'State', 'From, UTC', 'To, UTC', 'Length', 'Rows', 'Alarms', 'Furthest above clean', 'Source']
   const table = el(
     'table',

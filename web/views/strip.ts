@@ -10,7 +10,7 @@ export interface StripState {
   readonly mode: 'LIVE' | 'REPLAY' | 'RUNS'
   /** Short facts in the middle: run state, speed. */
   readonly facts: readonly { readonly text: string; readonly bold?: string }[]
-  readonly comb: { readonly received: readonly boolean[]; readonly text: readonly [string, string] } | null
+  readonly comb: { readonly received: readonly boolean[]; readonly text: readonly [string, string] | null } | null
   readonly nowMs: number | null
   readonly clock: ZoneClock
   readonly zone: string
@@ -84,7 +84,8 @@ export function stripView(hooks: StripHooks) {
           s.comb.received.map((on, i) => (on ? `M${2 + (i + teeth - n) * 4} ${i === n - 1 ? 1 : 5}V19` : '')).join(''),
         )
         comb.setAttribute('aria-label', `last ${n} scans, ${s.comb.received.filter(Boolean).length} received`)
-        fill(combText, 'data ', el('b', { text: s.comb.text[0] }), ' old, lag ', el('b', { text: s.comb.text[1] }))
+        if (s.comb.text === null) say(combText, 'no data yet')
+        else fill(combText, 'data ', el('b', { text: s.comb.text[0] }), ' old, lag ', el('b', { text: s.comb.text[1] }))
       }
       say(time, s.nowMs === null ? '--:--:--' : s.clock.hms(s.nowMs))
       if (s.nowMs !== null) time.setAttribute('datetime', new Date(s.nowMs).toISOString())

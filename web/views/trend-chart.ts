@@ -85,7 +85,14 @@ export function trendChart(canvas: HTMLCanvasElement) {
           font,
         },
         afterBuildTicks: (scale) => {
-          scale.ticks = timeTicks(s.fromMs, s.toMs, room, s.clock).map((t) => ({ value: t.at, label: t.label }))
+          // None so near the right end that its label would be cut.
+          const end = s.toMs - ((s.toMs - s.fromMs) * 1.6 * look.rootPx) / Math.max(1, chart.width - gutterRem * look.rootPx)
+          scale.ticks = timeTicks(s.fromMs, end, room, s.clock).map((t) => ({ value: t.at, label: t.label }))
+        },
+        afterFit: (scale) => {
+          const box = scale as unknown as { paddingLeft: number; paddingRight: number }
+          box.paddingLeft = 0
+          box.paddingRight = 0
         },
         ticks: {
           color: look.colour.ink,

@@ -18,7 +18,7 @@ export interface TrendsShown {
 }
 
 /** One trend of one segment with tabs for both, and the bores of all segments below it on the same time axis. */
-export function trendsView(data: RunData, tools: HTMLElement) {
+export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolean) {
   const facts = data.detail.skidFacts
   let kind: TrendKind = 'ratio'
   let chosen: string | null = null
@@ -28,15 +28,14 @@ export function trendsView(data: RunData, tools: HTMLElement) {
   const places = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Segment of the trend' })
   const canvas = el('canvas', { role: 'img', tabindex: 0, id: 'trend' })
   const readout = el('p', { class: 'readout soft' })
-  const frame = el('div', { class: 'chart' }, canvas)
+  const frame = el('div', { class: 'chart' }, canvas, readout)
   const bores = boresView(facts, data)
   const below = el('div', { class: 'below' }, bores.node)
   const node = el(
     'section',
     { class: 'trend', 'aria-label': 'Trends' },
-    el('div', { class: 'head' }, title, places, kinds, tools),
+    el('div', { class: 'head' }, title, withPlaces ? places : null, kinds, tools),
     frame,
-    readout,
     below,
   )
   const chart = trendChart(canvas)

@@ -51,7 +51,7 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
   const answers = answersView()
   const now = nowView()
   const tools = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Time shown' })
-  const trends = trendsView(data, tools)
+  const trends = trendsView(data, tools, false)
   const line = lineView(facts, (segment) => trends.pick(trends.kind(), segment))
   const openPlan = (): void => {
     planOpen = !planOpen
@@ -83,7 +83,7 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
       trends.canvas.focus()
     },
   })
-  const waiting = el('p', { class: 'quiet', text: 'Waiting for the first state of the run.' })
+  const waiting = el('p', { class: 'hush', text: 'Waiting for the first state of the run.' })
   const plant = el(
     'section',
     { class: 'plant', 'aria-label': 'The plant' },
@@ -227,7 +227,8 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
     const since = data.production.points()
     let begin: number | null = null
     for (let i = since.length - 1; i >= 0 && since[i]!.y === (state.mode.production ? 1 : 0); i--) begin = since[i]!.x
-    const dataAge = state.data.ageS === null ? null : 1000 * state.data.ageS + (nowMs - state.clock.nowMs)
+    // By the wall: an age in a simulated clock's seconds would look sixty times older than it is.
+    const dataAge = state.data.ageS === null ? null : (1000 * state.data.ageS + (nowMs - state.clock.nowMs)) / state.clock.speed
     shell.strip.show({
       page: 'watch',
       skid: facts.skid,
@@ -249,7 +250,7 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
       ],
       comb: {
         received: state.comb.received,
-        text: [dataAge === null ? 'none' : age(dataAge), state.data.lagS === null ? 'none' : age(1000 * state.data.lagS)],
+        text: dataAge === null || state.data.lagS === null ? null : [age(dataAge), age(1000 * state.data.lagS)],
       },
       nowMs,
       clock: data.clock,
