@@ -81,6 +81,9 @@ export interface WatchStep {
 /** Steps: of history kept for an onset; in a baseline before it is final; averaged for the ratio shown; between forecasts. */
 const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 10, clean: 20, pointsKept: 480 }
 
+/** Share of the time left after which a forecast is made anew, and the longest it may stand, ms. */
+const renew = { share: 0.04, mostMs: 3_600_000 }
+
 /**
  * Fouling of every segment: production or not, resistance over clean, deposits with their onset and forecast, baselines. One call a
  * detector step. `limits` says how high ΔP may go now, Pa; null where no limit is set.
@@ -165,7 +168,9 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         events.push({ kind: 'onset', segment: i, onset: again })
       }
     }
-    if (tMs - g.lastForecastMs < steps.forecast * stepMs) return
+    // A limit far off does not come nearer by the minute: the forecast is made anew after a small share of the time left.
+    const left = g.forecast === null ? 0 : Math.min(g.forecast.atMs - g.lastForecastMs, renew.mostMs / renew.share)
+    if (tMs - g.lastForecastMs < Math.max(steps.forecast * stepMs, renew.share * left)) return
     g.lastForecastMs = tMs
     const clean = watch[i]!.cleanLn
     if (limitPa === null || g.onset === null || clean.length === 0) {
