@@ -23,6 +23,7 @@ const tasks = {
   },
   soak: async () => (await import('./test.js')).soak(rest),
   bench: async () => (await import('./test.js')).bench(rest),
+  fixtures: async () => (await import('./fixtures.js')).fixtures(),
 }
 
 /** Runs a development tool of node_modules and ends with its code when it fails. */

@@ -46,16 +46,20 @@ segments:
 export const benchHeader = 'time,FT-1,PT-1,PT-2,TT-1,phase\n'
 export const benchStartMs = Date.UTC(2031, 4, 5, 18)
 
-/** Rows of a steady bench run, one a second: 6 kg/h, 2.1 to 2.3 bar between the taps, readings that move a little. */
+/**
+ * Rows of a bench run, one a second: 6 kg/h, 2.1 to 2.3 bar between the taps, readings that move a little; steady, but for `riseBar`
+ * by which the first tap rises each second after the first 20 minutes.
+ */
 export function benchRows(
   n: number,
   from = 0,
   stamp = (i: number): string => new Date(benchStartMs + 1000 * i).toISOString(),
+  riseBar = 0,
 ): string {
   let text = ''
   for (let i = from; i < from + n; i++) {
     const wave = Math.sin(i) + Math.sin(1.7 * i)
-    text += `${stamp(i)},${(6 + 0.01 * wave).toFixed(3)},${(7.2 + 0.02 * wave).toFixed(3)},${(5 - 0.01 * wave).toFixed(3)},${(-20 + 0.05 * wave).toFixed(2)},production\n`
+    text += `${stamp(i)},${(6 + 0.01 * wave).toFixed(3)},${(7.2 + 0.02 * wave + riseBar * Math.max(0, i - 1200)).toFixed(3)},${(5 - 0.01 * wave).toFixed(3)},${(-20 + 0.05 * wave).toFixed(2)},production\n`
   }
   return text
 }
