@@ -154,7 +154,7 @@ function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> 
   const known = state.segments.filter((s) => s.ratio !== null)
   const top = known.reduce<SegmentState | null>((t, s) => (t === null || s.ratio! > t.ratio! ? s : t), null)
   const based = state.segments.filter((s) => s.baseline !== null).length
-  const howLong = answer('no limit', 'nothing grows, so nothing is extrapolated')
+  const howLong = answer('no limit', 'nothing grows')
   if (top === null)
     return {
       where: answer('not yet', based === 0 ? 'no clean baseline yet, so no verdict' : 'no ratio now: not in production'),

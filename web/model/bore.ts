@@ -1,5 +1,5 @@
-/** Deposit is drawn this many times its thickness; the drawing states it. */
-export const exaggeration = 5
+/** Deposit is drawn several times its thickness; the drawing states how many. In strips through time five times. */
+export const stripTimes = 5
 
 /**
  * Share of the bore's radius that a uniform deposit takes at a resistance ratio r [-]: δ/a = 1 − r^(−1/4), laminar flow, round bore.
@@ -10,11 +10,21 @@ export function depositShare(ratio: number | null | undefined): number | null {
   return Math.max(0, 1 - ratio ** -0.25)
 }
 
+/** Short of a plug the drawing always leaves a gap this far from the middle. */
+const leastOpen = 0.97
+
 /** Share of the half height that the drawing fills: the deposit times the exaggeration, never past the middle. Nothing below 2 % over clean. */
-export function drawnShare(ratio: number | null | undefined): number | null {
+export function drawnShare(ratio: number | null | undefined, times: number): number | null {
   const share = depositShare(ratio)
   if (share === null) return null
-  return (ratio ?? 0) < 1.02 ? 0 : Math.min(1, exaggeration * share)
+  return (ratio ?? 0) < 1.02 ? 0 : Math.min(leastOpen, times * share)
+}
+
+/** The largest of 5 to 2 times at which the deposit at the lowest limit (as a ratio) still leaves a gap that is easily seen. */
+export function exaggerationFor(limitRatios: readonly number[]): number {
+  const shares = limitRatios.map((r) => depositShare(r)).filter((s) => s !== null)
+  const most = shares.length === 0 ? 0 : Math.min(...shares)
+  return [5, 4, 3].find((k) => k * most <= 0.9) ?? 2
 }
 
 /** Share of the clean diameter still open, per cent. */

@@ -47,7 +47,7 @@ export interface LineLayout {
 export const mainHalf = 34
 export const feedHalf = 15
 export const wall = 8
-export const profileHeight = 74
+export const profileHeight = 66
 const x0 = 118
 const x1 = 906
 const gap = 30
@@ -55,6 +55,7 @@ const leastShare = 0.09
 const mostInRow = 7
 const feedW = 112
 const labelW = 132
+const shortLabelW = 78
 
 /**
  * Places the segments of a skid for the drawing of the line: main path left to right, widths by share of residence with a minimum, feeds above
@@ -82,12 +83,13 @@ export function layoutLine(facts: SkidFacts): LineLayout {
       const at = placed[join.index]!
       const joinX = join.index === 0 ? null : at.x - gap / 2
       const left = joins[joins.indexOf(join) - 1]
-      const before = left === undefined ? 0 : placed[left.index]!.x
+      const before = left === undefined || left.index === 0 ? 0 : placed[left.index]!.x - gap / 2
       join.branches.forEach((branch, level) => {
         const n = branch.segments.length
         const yFeed = y - mainHalf - wall - 62 - level * 100
         const end = Math.min((joinX ?? at.x + 60) - 20, free[level]! - 16)
-        const w = n === 0 ? 0 : Math.max(56, Math.min(feedW, (end - labelW - (n - 1) * 12) / n))
+        const w =
+          n === 0 ? 0 : Math.max(56, Math.min(feedW, (end - Math.max(before + 14, 0) - 26 - shortLabelW - (n - 1) * 12) / n))
         const begin = end - n * w - Math.max(0, n - 1) * 12
         for (const [i, s] of branch.segments.entries())
           segments.push({ id: s.id, title: s.title, main: false, row, x: begin + i * (w + 12), w, y: yFeed, half: feedHalf })

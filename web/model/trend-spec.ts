@@ -273,7 +273,7 @@ function extent(kind: TrendKind, points: readonly Point[], limits: readonly numb
   const span = Math.max(high - low, kind === 'temperature' ? 4 : 0.05 * Math.abs(high), 1e-6)
   for (const l of limits) {
     const far = Math.max(l - high, low - l)
-    if (kind === 'ratio' ? fan || l < 4 : far < 2.5 * span) {
+    if (kind === 'ratio' ? l - 1 < (fan ? 8 : 5) * Math.max(high - 1, 0.1) : far < 2.5 * span) {
       low = Math.min(low, l)
       high = Math.max(high, l)
     }

@@ -53,9 +53,13 @@ export const actionWords: Readonly<Record<AdviceReport['action'], string>> = {
   'stop-cooling': 'Stop of cooling advised',
 }
 
-/** Instants written as RFC 3339 in a sentence of the tool, in the plant's time. */
+/** A sentence of the tool with its instants in the plant's time and its limits by the name people use. */
 export const inPlantTime = (text: string, clock: ZoneClock, nowMs: number): string =>
-  text.replace(/\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d(?:\.\d+)?Z/g, (iso) => {
-    const tMs = Date.parse(iso)
-    return Number.isNaN(tMs) ? iso : clock.day(tMs) === clock.day(nowMs) ? clock.hm(tMs) : `${clock.day(tMs)} ${clock.hm(tMs)}`
-  })
+  text
+    .replace(/\b(dp|pressure|temperature|flow)(High|HighHigh|Low)(Bar|C)?\b/g, (name) =>
+      name in limitWords ? `the ${limitWords[name as LimitName].name}` : name,
+    )
+    .replace(/\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d(?:\.\d+)?Z/g, (iso) => {
+      const tMs = Date.parse(iso)
+      return Number.isNaN(tMs) ? iso : clock.day(tMs) === clock.day(nowMs) ? clock.hm(tMs) : `${clock.day(tMs)} ${clock.hm(tMs)}`
+    })

@@ -1,5 +1,5 @@
 import type { SkidFacts } from '../../server/wire/index.ts'
-import { drawnShare } from '../model/bore.ts'
+import { drawnShare, stripTimes } from '../model/bore.ts'
 import type { RunData } from '../model/run-data.ts'
 import { type Point, thin } from '../model/series.ts'
 import { el } from './dom.ts'
@@ -133,7 +133,7 @@ function runsOf(points: readonly Point[]): Point[][] {
   const runs: Point[][] = []
   let open = false
   for (const p of points) {
-    if (p.y === null || drawnShare(p.y) === null) open = false
+    if (p.y === null || drawnShare(p.y, stripTimes) === null) open = false
     else if (open) runs.at(-1)!.push(p)
     else {
       runs.push([p])
@@ -145,14 +145,14 @@ function runsOf(points: readonly Point[]): Point[][] {
 
 /** Layer on both walls, its thickness drawn larger than it is. */
 function deposit(pen: CanvasRenderingContext2D, run: readonly Point[], x: (t: number) => number, top: number, size: number): void {
-  if (!run.some((p) => (drawnShare(p.y) ?? 0) > 0)) return
+  if (!run.some((p) => (drawnShare(p.y, stripTimes) ?? 0) > 0)) return
   for (const [wall, side] of [
     [top, 1],
     [top + size, -1],
   ] as const) {
     pen.beginPath()
     pen.moveTo(x(run[0]!.x), wall)
-    for (const p of run) pen.lineTo(x(p.x), wall + (side * (drawnShare(p.y) ?? 0) * size) / 2)
+    for (const p of run) pen.lineTo(x(p.x), wall + (side * (drawnShare(p.y, stripTimes) ?? 0) * size) / 2)
     pen.lineTo(x(run.at(-1)!.x), wall)
     pen.fill()
   }

@@ -1,8 +1,8 @@
 import type { LiveState, SegmentState, SkidFacts } from '../../server/wire/index.ts'
-import { drawnShare, exaggeration, openPct } from '../model/bore.ts'
+import { drawnShare, exaggerationFor, openPct } from '../model/bore.ts'
 import { figure, fixed, range, short } from '../model/format.ts'
 import { feedHalf, type LineLayout, layoutLine, mainHalf, type PlacedSegment, profileHeight, wall } from '../model/line-layout.ts'
-import { el, fill, place, svg } from './dom.ts'
+import { el, fill, place, say, svg } from './dom.ts'
 import { lookOf, markView, shortOf } from './mark.ts'
 
 /** The line of the skid, cut open lengthways: bore and deposit of every segment, figures under each, temperatures along it. */
@@ -55,7 +55,7 @@ export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
     return { flow, tags: streams.map((s) => s?.flowTag ?? '') }
   })
   words.append(...[...figures.values()].map((f) => f.node))
-  const scaleNote = el('p', { class: 'lab scale soft', text: `Deposit × ${exaggeration}; dots: ΔP limit` })
+  const scaleNote = el('p', { class: 'lab scale soft' })
   place(scaleNote, { x: 0, y: (100 * (layout.rows[0]?.figuresY ?? 0)) / layout.height })
   words.append(scaleNote)
   const temps = el('div')
@@ -63,9 +63,11 @@ export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
 
   function show(state: LiveState): void {
     moving.replaceChildren()
+    const times = exaggerationFor(state.segments.map(limitRatio).filter((r) => r !== null))
+    say(scaleNote, `Deposit × ${times}; dots: ΔP limit`)
     for (const s of layout.segments) {
       const now = state.segments.find((x) => x.segment === s.id)
-      drawSegment(moving, s, now)
+      drawSegment(moving, s, now, times)
       figures.get(s.id)?.show(now, state)
     }
     for (const f of feeds) {
@@ -192,9 +194,16 @@ function drawStill(g: SVGElement, layout: LineLayout): void {
 const arrow = (x: number, y: number): SVGElement =>
   svg('path', { class: 'k-wall', d: `M${x} ${y - 5}L${x + dx(9)} ${y}L${x} ${y + 5}Z` })
 
+/** Ratio at which ΔP meets its limit at the flow and temperature now. */
+function limitRatio(s: SegmentState): number | null {
+  const clean = s.cleanDpBar ?? s.baseline?.dpBar ?? null
+  const limit = s.limits.dpHighBar
+  return limit === null || clean === null || !(clean > 0) ? null : limit / clean
+}
+
 /** Deposit, the dots where it would be at its limit, an alarm's bars; hatched where the ratio is not known. */
-function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined): void {
-  const share = drawnShare(now?.ratio)
+function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined, times: number): void {
+  const share = drawnShare(now?.ratio, times)
   const end = s.x + s.w
   const e = Math.min(dx(10), s.w / 4)
   if (share === null) g.append(rect(s.x, s.y - s.half, end, s.y + s.half, 'k-hatch'))
@@ -203,9 +212,8 @@ function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefi
       const [at, to] = [s.y + side * s.half, s.y + side * s.half * (1 - share)]
       g.append(svg('path', { class: 'k-dep', d: `M${s.x} ${at}L${s.x + e} ${to}H${end - e}L${end} ${at}Z` }))
     }
-  const limit = now?.limits.dpHighBar ?? null
-  const clean = now?.cleanDpBar ?? now?.baseline?.dpBar ?? null
-  const atLimit = limit === null || clean === null || clean <= 0 ? null : drawnShare(limit / clean)
+  const limit = now === undefined ? null : limitRatio(now)
+  const atLimit = limit === null ? null : drawnShare(limit, times)
   if (atLimit !== null)
     for (const side of [-1, 1])
       g.append(svg('path', { class: 's-room', d: `M${s.x + e} ${s.y + side * s.half * (1 - atLimit)}H${end - e}` }))

@@ -174,7 +174,14 @@ function words(f: Frame, o: Overlay, last: Point | null): void {
     const y = f.y(step.value)
     const below = l.side === 1 ? 'down' : 'up'
     const at = Math.max(box.left, f.x(step.fromMs)) + 0.5 * em
-    if (y < box.top || y > box.bottom) continue
+    if (y < box.top || y > box.bottom) {
+      const off = y < box.top
+      const text = `${l.label}, ${off ? 'above' : 'below'} this range`
+      label(f, text, box.left + 0.6 * em, off ? box.top + 0.2 * em : box.bottom - 0.2 * em, 'left', off ? 'down' : 'up', {
+        soft: true,
+      })
+      continue
+    }
     if (!label(f, l.label, at, y + l.side * 0.25 * em, 'left', below))
       label(f, l.label, box.right - 0.5 * em, y + l.side * 0.25 * em, 'right', below)
   }
