@@ -86,6 +86,7 @@ const feed = openFeed(socketUrl.href, {
     if (m.type === 'hello' || m.type === 'runs') {
       runs = m.runs
       list?.show(runs)
+      if (watch === null) foot.live(runs)
       if (watch === null && route().page === 'watch') void go()
     } else if (m.type === 'error') say(says, m.problem.message)
     watch?.view.take(m)
@@ -124,7 +125,7 @@ function leave(): void {
   watch = null
   replay = null
   list = null
-  foot.show([])
+  foot.live(runs)
 }
 
 /** Goes where the address says. The last call wins. */
@@ -211,6 +212,19 @@ function redraw(): void {
     button.setAttribute('aria-label', `Change to ${theme() === 'day' ? 'night' : 'day'} colours`)
   }
 }
+
+// Away from the live page the foot still tells what stands there.
+setInterval(() => {
+  if (watch !== null || !link.up) return
+  getJson<RunRow[]>('/api/runs').then(
+    (rows) => {
+      runs = rows
+      if (watch === null) foot.live(rows)
+      list?.show(rows)
+    },
+    () => undefined,
+  )
+}, 5000)
 
 window.addEventListener('hashchange', () => void go())
 void go()

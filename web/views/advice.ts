@@ -47,8 +47,35 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
       }
       const plan = advice.plan
       if (plan !== null) {
-        const points = plan.steps[0]?.holdPoints.length ?? 0
-      pairs.push(['Still open', `${count(points, 'hold point')} before ${plan.steps[0]?.id ?? 'the first step'}; the shift lead must approve`, false])
+        const points = count(plan.steps[0]?.holdPoints.length ?? 0, 'hold point')
+        pairs.push(['Still open', `${points} before ${plan.steps[0]?.id ?? 'the first step'}; the shift lead must approve`, false])
+      }
+      for (const other of state.advice.slice(1, 3))
+        pairs.push(['Also', `${actionWords[other.action]}: ${inPlantTime(other.reason, clock, state.clock.nowMs)}`, true])
+      pairs.push(['Given', `${clock.hms(advice.atMs)}; a recommendation under the site’s own procedure, it can be wrong`, true])
+      const list = el('dl', { class: 'advice' })
+      for (const [name, text, folds] of pairs)
+        list.append(el('dt', { class: folds ? 'more' : '', text: name }), el('dd', { class: folds ? 'more' : '', text }))
+      const all = el('button', {
+        type: 'button',
+        class: 'only-short',
+        text: 'All evidence',
+        'aria-expanded': String(node.classList.contains('whole')),
+      })
+      all.addEventListener('click', () => all.setAttribute('aria-expanded', String(node.classList.toggle('whole'))))
+      const open =
+        plan === null
+          ? null
+          : el('button', {
+              type: 'button',
+              class: 'solid',
+              id: 'open-plan',
+              text: planOpen ? 'Close the plan' : 'Open the flush plan',
+              'aria-expanded': String(planOpen),
+              on: { click: openPlan },
+            })
+      fill(node, list, el('div', { class: 'row' }, open, all))
+      if (focused) (open ?? all).focus()
     },
   }
 }

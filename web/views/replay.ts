@@ -43,7 +43,7 @@ export function replayView(data: RunData, shell: Shell) {
     button('▸', 'Later', () => pan(0.5)),
     button('+', 'Zoom in', () => zoom(0.5)),
     button('−', 'Zoom out', () => zoom(2)),
-    button('whole run', 'Whole run', () => look(first, last)),
+    button('whole run', 'whole run', () => look(first, last)),
   )
   const trends = trendsView(data, tools, true)
   const slider = el('input', { type: 'range', id: 'moment', min: 0, max: 1000, step: 1, value: 1000, 'aria-label': 'Moment shown' })
@@ -52,10 +52,10 @@ export function replayView(data: RunData, shell: Shell) {
     'div',
     { class: 'moment row' },
     el('label', { for: 'moment', text: 'Moment shown' }),
-    button('−10 min', 'Ten minutes earlier', () => seek(atMs - 600_000)),
+    button('−10 min', '−10 min: ten minutes earlier', () => seek(atMs - 600_000)),
     slider,
-    button('+10 min', 'Ten minutes later', () => seek(atMs + 600_000)),
-    button('end', 'To the end', () => seek(last)),
+    button('+10 min', '+10 min: ten minutes later', () => seek(atMs + 600_000)),
+    button('end', 'end: to the end of the run', () => seek(last)),
     sliderText,
   )
   const alarms = alarmsView(clock, { act: null, trend: (a) => jump(a) })
@@ -210,7 +210,6 @@ export function replayView(data: RunData, shell: Shell) {
     const known = all.filter((a) => a.raisedMs <= atMs).map((a) => asAt(a, atMs))
     say(sliderText, `${clock.full(atMs)} ${clock.offset(atMs)}`)
     alarms.show(known, atMs, 'No alarm up to this moment.')
-    shell.foot.show(state?.alarms ?? [])
     strip()
     if (state === null) return
     const a = answersOf(facts, state, clock)

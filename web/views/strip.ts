@@ -41,6 +41,7 @@ export function stripView(hooks: StripHooks) {
   const alive = el('div', { class: 'alive' }, comb, combText)
   const time = el('time')
   const zone = el('small')
+  const clockText = el('p', { class: 'clock' }, time, ' ', zone)
   const theme = el('button', { class: 'small', type: 'button', id: 'theme', on: { click: () => hooks.toggleTheme() } })
   const node = el(
     'header',
@@ -51,7 +52,7 @@ export function stripView(hooks: StripHooks) {
     el('span', { class: 'grow' }),
     facts,
     alive,
-    el('p', { class: 'clock' }, time, ' ', zone),
+    clockText,
     personView(hooks),
     theme,
   )
@@ -87,7 +88,8 @@ export function stripView(hooks: StripHooks) {
         if (s.comb.text === null) say(combText, 'no data yet')
         else fill(combText, 'data ', el('b', { text: s.comb.text[0] }), ' old, lag ', el('b', { text: s.comb.text[1] }))
       }
-      say(time, s.nowMs === null ? '--:--:--' : s.clock.hms(s.nowMs))
+      clockText.hidden = s.nowMs === null
+      say(time, s.nowMs === null ? '' : s.clock.hms(s.nowMs))
       if (s.nowMs !== null) time.setAttribute('datetime', new Date(s.nowMs).toISOString())
       say(zone, s.nowMs === null ? s.zone : s.clock.offset(s.nowMs))
       zone.title = s.zone
