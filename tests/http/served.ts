@@ -1,0 +1,67 @@
+import { onTestFinished } from 'vitest'
+import { buildApp } from '../../server/app.ts'
+import type { Scenario } from '../../server/core/sim/scenario.ts'
+import { createCatalogue } from '../../server/monitor/catalogue.ts'
+import { createImports } from '../../server/monitor/imports.ts'
+import { loadSkid } from '../../server/skid/check.ts'
+import { shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
+
+export const local = { host: '127.0.0.1:8460' }
+
+/** The whole app over a simulated run whose time the test passes by hand; closed when the test ends. */
+export async function served(more: { scenario?: Scenario; hosts?: string[]; uploadMaxBytes?: number; heartbeatMs?: number } = {}) {
+  const bench = simulatedBench(tempDir(), more.scenario ?? shortNight(3))
+  const { store, monitor } = bench
+  const lines: string[] = []
+  const log = (line: string) => lines.push(line)
+  let told = (): void => undefined
+  const wallMs = () => Date.UTC(2031, 0, 1)
+  const imports = createImports({ store, skidOf: loadSkid, toolVersion: '9.9.9', wallMs, log, changed: () => told() })
+  const catalogue = createCatalogue(store, loadSkid, {
+    engine: monitor.engine,
+    clock: monitor.clock,
+    sourceFault: () => null,
+    importing: imports.busy,
+  })
+  const { app, hub, publisher } = await buildApp({
+    store,
+    monitor,
+    catalogue,
+    toolVersion: '9.9.9',
+    person: 'demo operator',
+    isDemo: () => true,
+    wallMs,
+    uploadMaxBytes: more.uploadMaxBytes ?? 2 ** 22,
+    skidOf: loadSkid,
+    importLogs: (job) => catalogue.row(imports.begin(job)),
+    webRoot: null,
+    hosts: more.hosts ?? [],
+    log,
+    ...(more.heartbeatMs === undefined ? {} : { heartbeatMs: more.heartbeatMs }),
+  })
+  monitor.publishTo(publisher)
+  told = publisher.runs
+  onTestFinished(async () => {
+    await app.close()
+    await imports.stop()
+    await monitor.stop()
+    store.close()
+  })
+  /** Passes minutes of the run in beats of one. */
+  const live = async (minutes: number): Promise<void> => {
+    for (let i = 0; i < minutes; i++) {
+      bench.clock.pass(1000)
+      await monitor.beat()
+    }
+  }
+  const get = async (url: string, headers: Record<string, string> = {}) => {
+    const reply = await app.inject({ url, headers: { ...local, ...headers } })
+    return { status: reply.statusCode, headers: reply.headers, text: reply.body, json: () => reply.json() }
+  }
+  const post = async (url: string, payload: unknown, headers: Record<string, string> = {}) => {
+    const reply = await app.inject({ method: 'POST', url, headers: { ...local, ...headers }, payload: payload as object })
+    return { status: reply.statusCode, json: () => reply.json() }
+  }
+  return { ...bench, app, hub, imports, catalogue, log: lines, live, get, post }
+}
+export type Served = Awaited<ReturnType<typeof served>>
