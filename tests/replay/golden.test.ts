@@ -39,6 +39,13 @@ describe.each(runs)('the recorded run $name', ({ name, skid, simulate }) => {
     expect([code, out === readFileSync(log, 'utf8')]).toEqual([0, true])
   })
 
+  it('weighs the neighbouring taps, the streams and a lone step against the deposit, each as excluded or not', () => {
+    const { evidence } = (JSON.parse(expected) as Report).alarms.find((a) => a.kind === 'fouling')!
+    expect(evidence.for.length).toBeGreaterThan(0)
+    for (const rival of ['a single step in R1', 'zero of PT-111', 'zero of PT-112', 'stream A', 'stream B'])
+      expect([...evidence.against, ...evidence.notExcluded].filter((e) => e.includes(rival))).toHaveLength(1)
+  })
+
   it('tells the truth of its simulation: the onset inside its interval, the limit inside most forecasts of half an hour and more ahead, one exotherm within 30 s', () => {
     const report = JSON.parse(expected) as Report
     const truth = readTruth(text(`runs/${name}.truth.json`), name)
