@@ -20,6 +20,9 @@ export interface FollowOptions {
   readonly words: string[]
 }
 
+/** Pause between rows that a logger is granted until its own is known, s: many write out a buffer each 10 s. */
+const firstGapS = 15
+
 interface Read {
   readonly blocks: RowBlock[]
   /** Where the reader stands after them. */
@@ -57,7 +60,7 @@ export function followSource(o: FollowOptions): Source {
   let offsetMs = saved?.offsetMs ?? null
   let newestMs: number | null = null
   let cameAt = o.steadyMs()
-  let usualS = o.skid.scanSeconds
+  let usualS = Math.max(o.skid.scanSeconds, firstGapS)
   let wordsKnown = o.words.length
   const wallAtStart = o.wallMs()
   const steadyAtStart = o.steadyMs()
