@@ -84,6 +84,7 @@ describe('odd data in a good log is counted, not taken and not fatal', () => {
     expect(report().run.rows.total).toBe(300)
   })
 
+  // SIG-02, USR-07
   it('a column of NaN: 300 of 300 bad, the ratio null and never a number', async () => {
     const { code, err } = await analyse((benchHeader + benchRows(300)).replaceAll(/^(\d[^,]*,[^,]*),[^,]*/gm, '$1,NaN'))
     expect([code, err]).toEqual([0, ''])

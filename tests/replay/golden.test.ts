@@ -39,6 +39,7 @@ describe.each(runs)('the recorded run $name', ({ name, skid, simulate }) => {
     expect([code, out === readFileSync(log, 'utf8')]).toEqual([0, true])
   })
 
+  // FOU-08
   it('weighs the neighbouring taps, the streams and a lone step against the deposit, each as excluded or not', () => {
     const { evidence } = (JSON.parse(expected) as Report).alarms.find((a) => a.kind === 'fouling')!
     expect(evidence.for.length).toBeGreaterThan(0)

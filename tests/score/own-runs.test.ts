@@ -48,6 +48,7 @@ describe('the pipeline on runs of the own simulator', () => {
     expect({ ...analysed(heron, scenario), notes: [] }).toEqual({ ...report, notes: [] })
   })
 
+  // FOU-07
   it('finds the four growths of four runs before their limits, in the right segment, and raises no false fouling alarm in some 14 h in control', () => {
     const summary = summarise(scenarios.map((s) => scoreCase(truthOf(heron, s), analysed(onGrid(heron, s), s), heron)))
     const figure = (id: string) => summary.figures.find((f) => f.id === id)!

@@ -72,6 +72,7 @@ it('deletes a run for every reader at once, keeps the act with person and reason
   expect(statSync(join(dir, 'clearbore.db')).size).toBeLessThan(40 * 4096 + 1)
 })
 
+// REC-02
 it('lets nobody change or drop an entry of the audit trail or a version of the settings, not even by SQL', () => {
   const dir = newFolder()
   const store = newStore(dir)
@@ -86,6 +87,7 @@ it('lets nobody change or drop an entry of the audit trail or a version of the s
   db.close()
 })
 
+// REC-06
 it('keeps settings as whole versions and knows which was in force when', () => {
   const store = newStore()
   const put = (tMs: number, dpHighBar: number) =>

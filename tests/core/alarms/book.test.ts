@@ -86,6 +86,7 @@ describe('the alarm book of a run', () => {
       ['cleared', 'pump'],
     ])
   })
+  // ALM-07
   it('acknowledges by id and person; an id that is not the latest of its key is refused with the reason, and journalled', () => {
     const book = createBook({ configVersion: 'v1' })
     for (const [tS, over] of [
@@ -115,6 +116,7 @@ describe('the alarm book of a run', () => {
     expect(book.act({ kind: 'comment', alarm: null, text: 'shift change', person, tMs: 6000 })).toEqual([])
     expect(book.drain().records).toHaveLength(6)
   })
+  // ALM-08
   it('a shelf runs out by the clock; what is still active then calls again, and an occurrence only tracked till then becomes annunciated', () => {
     const book = createBook({ configVersion: 'v1' })
     for (const [tS, over] of [
@@ -133,11 +135,13 @@ describe('the alarm book of a run', () => {
     expect(book.rows()).toMatchObject([{ state: 'UNACK', occurrence: { id: 2, annunciated: true } }])
     expect(book.drain().records.at(-1)).toMatchObject({ input: 'uns', logic: 'shelf time over', sound: true, person: null })
   })
+  // ALM-08
   it('an alarm of the highest priority cannot be shelved', () => {
     const book = createBook({ configVersion: 'v1' })
     book.signal(signal(1, true, { priority: 'high' }))
     expect(book.act(shelve(2, 1))[0]).toMatchObject({ outcome: 'refused', reason: expect.stringContaining('may not be shelved') })
   })
+  // ALM-09
   it('suppression by design lasts as long as its logic and leaves a named record at either end', () => {
     const book = createBook({ configVersion: 'v1' })
     for (const on of [true, true, false, false]) book.suppress('flow:R1', 'medium', 'pump stopped in phase hold', on, 1000)
@@ -218,6 +222,7 @@ describe('the alarm book of a run', () => {
       }),
     )
   })
+  // ALM-10
   it('its journal restores every alarm; ids rise by one; each key has at most one open occurrence', () => {
     fc.assert(
       fc.property(fc.array(step, { maxLength: 80 }), fc.boolean(), (steps, latching) => {

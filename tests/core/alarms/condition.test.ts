@@ -32,6 +32,7 @@ describe('delays (ALM-12)', () => {
       expect(run(one, 0, 0).map(([, i]) => i)).toEqual(['act', 'clr'])
     }
   })
+  // ALM-12
   it('noise of 0.4 bar about the limit with a deadband of 0.5 bar is exactly one occurrence', () => {
     const noisy: [number, Level][] = Array.from({ length: 600 }, (_, i) => [i, level(8 + 0.4 * Math.sin(i * 1.7), 8, 0.5, 'high')])
     expect(run(noisy, 0, 0)).toEqual([[1, 'act']])
@@ -44,6 +45,7 @@ describe('delays (ALM-12)', () => {
       [6, 'act'],
     ])
   })
+  // ALM-06
   it('an alarm whose input goes bad never clears meanwhile', () => {
     const levels: [number, Level][] = [[0, 'over'], ...Array.from({ length: 50 }, (_, i): [number, Level] => [i + 1, 'bad'])]
     expect(run(levels, 0, 0)).toEqual([

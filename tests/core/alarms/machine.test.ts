@@ -112,11 +112,13 @@ describe('the transition table of ISA-18.2 (from memory) and OPC 10000-9 cl. 5.8
 
 describe('the release rule ALM-05', () => {
   const course = (latching: boolean, ...kinds: InputKind[]) => walk(kinds, latching)
+  // ALM-05
   it('(1) active now sounds again, even if acknowledged before', () => {
     const { state, records } = course(false, 'act', 'ack', 'shv', 'uns')
     expect(stateName(state)).toBe('UNACK')
     expect(records.at(-1)).toMatchObject({ input: 'uns', sound: true })
   })
+  // ALM-05
   it('(2) latching and active just before or during the suppression gives LUNACK without sound', () => {
     for (const path of [
       ['act', 'shv', 'clr', 'uns'],
@@ -137,6 +139,7 @@ describe('the release rule ALM-05', () => {
     expect(stateName(course(false, 'act', 'clr', 'sbd+', 'sbd-').state)).toBe('RTNUN')
     expect(stateName(course(false, 'act', 'shv', 'clr', 'uns').state)).toBe('NORM')
   })
+  // ALM-05
   it('(5) otherwise NORM; and one suppression of two taken off leaves the other in force', () => {
     expect(stateName(course(false, 'sbd+', 'act', 'clr', 'sbd-').state)).toBe('NORM')
     expect(stateName(course(false, 'shv', 'sbd+', 'oos+', 'oos-').state)).toBe('SBD')
@@ -156,11 +159,13 @@ describe('who may ask, and for how long', () => {
     expect(out.records).toHaveLength(1)
     return out.records[0]?.reason
   }
+  // ALM-07
   it('acknowledging and resetting need an identified person, suppressing by design the name of its logic', () => {
     expect(refuse(walk(['act'], false).state, { kind: 'ack', person: '  ' })).toMatch(/identified person/)
     expect(refuse(normal, { kind: 'rst' })).toMatch(/identified person/)
     expect(refuse(normal, { kind: 'sbd+' })).toMatch(/name of its logic/)
   })
+  // ALM-08, USR-05
   it('shelving needs a reason and a duration of at most 30 min, 8 h in all with extensions', () => {
     expect(refuse(normal, { ...full('shv'), reason: 'x' })).toMatch(/at least 5 characters/)
     expect(refuse(normal, { ...full('shv'), durationS: 1801 })).toMatch(/30 min/)
@@ -193,6 +198,7 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
   const input = fc.constantFrom(...inputKinds).map((kind) => full(kind))
   const bare = fc.constantFrom(...inputKinds).map((kind): Input => ({ kind }))
   const steps = fc.array(fc.oneof({ weight: 4, arbitrary: input }, { weight: 1, arbitrary: bare }), { maxLength: 60 })
+  // ALM-10
   it('every record names a real state, at most one record an input, no sound from a suppressed state, and the journal alone restores the state', () => {
     fc.assert(
       fc.property(steps, fc.boolean(), (inputs, latching) => {
@@ -215,6 +221,7 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
       { numRuns: 300 },
     )
   })
+  // ALM-11
   it('an unacknowledged alarm reaches NORM only through ack or a suppression by a named person with a reason', () => {
     fc.assert(
       fc.property(steps, fc.boolean(), (inputs, latching) => {
@@ -236,6 +243,7 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
       { numRuns: 500 },
     )
   })
+  // ALM-11
   it('acknowledging twice is acknowledging once', () => {
     fc.assert(
       fc.property(steps, fc.boolean(), (inputs, latching) => {
@@ -246,6 +254,7 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
       }),
     )
   })
+  // ALM-11
   it('simultaneous inputs give the same state and records in whatever order they arrive', () => {
     fc.assert(
       fc.property(
@@ -263,6 +272,7 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
       ),
     )
   })
+  // ALM-11
   it('a restart leaves the state as it was and one record behind', () => {
     for (const path of Object.values(paths)) {
       const before = walk(path.by, path.latching).state

@@ -31,6 +31,7 @@ const clr = (tS: number, more: Partial<AlarmRecord> = {}) =>
 const hour = 3.6e6
 
 describe('metrics of the alarm system', () => {
+  // ALM-13
   it('counts 12 annunciations in 2 h as 6 an hour, in fixed windows of the clock, and calls it a short record', () => {
     const records = Array.from({ length: 12 }, (_, i) => act(i * 600 + 30, { key: `flow:${i % 3}` }))
     const m = alarmMetrics(records, 0, 2 * hour)
@@ -53,6 +54,7 @@ describe('metrics of the alarm system', () => {
     )
     expect([m.tenMinutes.over10, m.tenMinutes.most, m.hoursOver30.over30]).toEqual([1, 11, 1])
   })
+  // ALM-13
   it('leaves suppressed activations and refusals out of the count and lists them', () => {
     const m = alarmMetrics(
       [
@@ -111,6 +113,7 @@ describe('metrics of the alarm system', () => {
 })
 
 describe('floods', () => {
+  // ALM-13
   it('begin at the eleventh alarm in ten minutes and end when fewer than five are left in the window', () => {
     const times = Array.from({ length: 12 }, (_, i) => i * 10_000)
     // The window holds 12; the eighth (at 70 s) leaves at 670 s and leaves four behind.

@@ -10,6 +10,7 @@ const names = Object.keys(defaultRationales) as RationaleName[]
 const basis = { scanS: 1, residenceS: 20 }
 
 describe('priority', () => {
+  // ALM-03
   it('follows severity and time to respond: the minimum set of the skid comes out as common practice has it', () => {
     const want: Partial<Record<RationaleName, string>> = {
       exotherm: 'high',
@@ -26,6 +27,7 @@ describe('priority', () => {
     for (const [name, priority] of Object.entries(want))
       expect([name, rationale(name as RationaleName, 'R1', basis).priority]).toEqual([name, priority])
   })
+  // ALM-03
   it('never falls with severity and never rises with time', () => {
     const rank = { low: 0, medium: 1, high: 2 }
     for (const s of severities)
@@ -41,12 +43,14 @@ describe('priority', () => {
       reason: 'high severity, over 30 min (reconsider whether this is an alarm) to respond',
     })
   })
+  // ALM-04
   it('an alarm with 120 s to respond and 14 + 2 + 1 + 30 + 20 + 60 s of delays cannot be relied on: 7 s short', () => {
     expect(responseSlackS({ detectionS: 14, onDelayS: 2, displayS: 1, diagnosisS: 30, actionS: 20, deadTimeS: 60 }, 120)).toBe(-7)
   })
 })
 
 describe('rationalisation', () => {
+  // ALM-01
   it('every alarm kind has one, with cause, consequence, check, action and a time to respond; every cause has its guide', () => {
     expect(new Set(names.map((n) => defaultRationales[n].kind))).toEqual(new Set(alarmKinds))
     for (const n of names) {
@@ -59,12 +63,14 @@ describe('rationalisation', () => {
     expect(Object.keys(causeGuide)).toEqual([...causes])
     for (const g of Object.values(causeGuide)) for (const text of Object.values(g)) expect(text.length).toBeGreaterThan(3)
   })
+  // PRO-08, EXO-08
   it('recommends neither more pressure nor water: the cautions stand where a plug or a hot reactor is', () => {
     for (const n of ['dp-limit/high', 'dp-limit/high-high', 'pressure-limit'] as const)
       expect(defaultRationales[n].action).toContain('Do not raise pressure')
     for (const n of ['exotherm', 'temperature-limit/high-high'] as const)
       expect(defaultRationales[n].action).toContain('Never add water')
   })
+  // ALM-02
   it('takes the site over the default, the segment over the kind, and moves the priority with the time to respond', () => {
     const overrides = {
       fouling: { timeToRespondSeconds: 400, action: 'flush R1 by procedure 7' },
@@ -83,6 +89,7 @@ describe('rationalisation', () => {
     })
     expect(rationale('fouling/filter', 'F1', basis, { fouling: { class: 'a' }, 'fouling/filter': { class: 'b' } }).class).toBe('b')
   })
+  // ALM-02
   it('refuses an alarm without action, consequence or time to respond, unknown fields, wrong types and words', () => {
     for (const [fields, text] of [
       [{ action: ' ' }, /action is empty/],

@@ -36,6 +36,7 @@ describe('water in a feed', () => {
     expect(waterProducts(0, 889).liohKgM3).toBe(0)
   })
 
+  // PRO-04
   it('6 L/h of THF at 300 ppm make 1.46 cm3 LiOH an hour; streams without a figure do not count, none at all gives null', () => {
     const wet = { waterPpm: 300, rhoKgM3: 889, flowM3S: 6e-3 / 3600 }
     expect(liohRateM3S([wet, { waterPpm: null, rhoKgM3: 700, flowM3S: 1 }])! * 3600e6).toBeCloseTo(fixture.runLength.solidCm3H, 2)
@@ -63,6 +64,7 @@ describe('how long a run lasts', () => {
   const at = { massFlowKgS: (6e-3 / 3600) * 889, rhoKgM3: 889, viscPaS: 8e-4 }
   const rate = (ppm: number) => liohRateM3S([{ waterPpm: ppm, rhoKgM3: 889, flowM3S: 6e-3 / 3600 }])!
 
+  // PRO-04
   it('a tenth of the solid of 300 ppm reaches 1.51 in 20 h in 2 mm x 5 m, of 50 ppm 1.065 (within 1 %)', () => {
     expect(
       Math.abs(runLengthS(channel, at, fixture.runLength.ratioAfter20h300ppm, rate(300), USUAL_CAPTURE)! / 3600 / 20 - 1),
@@ -110,6 +112,7 @@ describe('lithium salts in water', () => {
       },
     )
 
+  // PRO-06
   it('a gram of LiOH needs 8.1 g of water at 20 °C and gives off 984 J, at most 29 K in that water', () => {
     const w = leastWater('LiOH', 1e-3, 20)
     expect(w.massKg * 1000).toBeCloseTo(8.1, 1)
@@ -119,6 +122,7 @@ describe('lithium salts in water', () => {
     expect(leastWater('LiOH', 0, 20)).toMatchObject({ massKg: 0, riseK: 0 })
   })
 
+  // PRO-06
   it('carbonate and fluoride do not wash out, the rest does, and less water is needed warm for LiOH but more for Li2CO3', () => {
     expect(lithiumSalts.filter((s) => !s.washesOut).map((s) => s.name)).toEqual(['LiF', 'Li2CO3'])
     expect(leastWater('LiOH', 1, 60).massKg).toBeLessThan(leastWater('LiOH', 1, 5).massKg)

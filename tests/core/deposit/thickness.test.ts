@@ -78,6 +78,7 @@ describe('a uniform deposit at constant flow', () => {
     }
   })
 
+  // FOU-05
   it('has exponent 4 laminar, 4.75 within 0.03 smooth turbulent, 4 to 4.3 in a laminar coil; the closed form keeps to the full one within 1 %', () => {
     expect(boreExponent(tube(), slow)).toBeCloseTo(4, 6)
     expect(Math.abs(boreExponent(tube(), fast) - 4.78)).toBeLessThan(0.04)
@@ -107,6 +108,7 @@ describe('a uniform deposit at constant flow', () => {
 })
 
 describe('a local constriction', () => {
+  // FOU-05
   it('over 1 % of the length at half the bore makes 1.15, at 0.3 of the bore 2.2 (closed form, laminar)', () => {
     expect(constrictionRatio(0.01, 0.5, 4)).toBeCloseTo(1.15, 3)
     expect(constrictionRatio(0.01, 0.3, 4)).toBeCloseTo(2.22, 2)

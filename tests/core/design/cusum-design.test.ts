@@ -40,12 +40,14 @@ describe('designCusum', () => {
     expect(Math.abs(designCusum({ falseAlarmHours, stepS, charts: 1, sigma: 1, shift: 1 }).h - h)).toBeLessThan(0.008)
   })
 
+  // STA-02
   it('seven days of 10-s and 60-s steps find 1σ in 3.1 and 15 min', () => {
     const delay = (stepS: number) => designCusum({ falseAlarmHours: 168, stepS, charts: 1, sigma: 1, shift: 1 }).expectedDelayS / 60
     expect(delay(10)).toBeCloseTo(3.1, 1)
     expect(Math.round(delay(60))).toBe(15)
   })
 
+  // STA-03
   it('shares the promise: six charts with one false alarm in 720 h together run as one chart with one in 4320 h', () => {
     const shared = designCusum({ falseAlarmHours: 720, stepS: 30, charts: 6, sigma: 1, shift: 1 })
     const alone = designCusum({ falseAlarmHours: 4320, stepS: 30, charts: 1, sigma: 1, shift: 1 })
@@ -80,6 +82,7 @@ describe('designCusum', () => {
     },
   )
 
+  // STA-04
   it('counts the correlation: with φ = 0.8 the whitened σ is 0.6 of a step’s and a lasting shift shrinks to a third', () => {
     const d = designCusum({ falseAlarmHours: 720, stepS: 30, charts: 1, sigma: 0.01, shift: 0.01, correlation: 0.8 })
     expect(d.chartSigma).toBeCloseTo(0.006, 12)
@@ -118,6 +121,7 @@ describe('designCusum', () => {
 
 describe('a baseline that is only an estimate', () => {
   // Common practice: σ taken 10 % too small cuts 931 to 387, 20 % to 178; a mean off by 0.1σ to 413 (k = 0.5, h = 5, one-sided).
+  // STA-05
   it('a σ 10 or 20 % too small and a mean 0.1σ off cut 931 to 387, 178 and 413', () => {
     const chart = { k: 0.5, h: 5, sided: 'one' as const }
     expect(Math.round(cusumRunLength({ k: 0.5 * 0.9, h: 5 * 0.9, sided: 'one' }, 0))).toBe(387)
@@ -176,6 +180,7 @@ describe('a baseline that is only an estimate', () => {
     expect(Math.abs(told / seen - 1)).toBeLessThan(0.1)
   })
 
+  // STA-05
   it('a shorter baseline asks for a wider interval, and one too short for the promise says so', () => {
     const h = (baselineSteps: number | null) =>
       designCusum({ falseAlarmHours: 720, stepS: 30, charts: 6, sigma: 1, shift: 2, baselineSteps }).h

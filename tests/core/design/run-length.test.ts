@@ -15,6 +15,7 @@ interface Printed {
 const printed = JSON.parse(readFileSync('fixtures/statistics/run-lengths.json', 'utf8')) as { cases: Printed[] }
 
 describe('mean run length of the CUSUM', () => {
+  // STA-02
   it.each(printed.cases)('k $k, h $h, shift $shift, $sided-sided, start $start: $printed samples ($source)', (c) => {
     const digits = c.printed.split('.')[1]?.length ?? 0
     const half = 0.5 * 10 ** -digits
@@ -35,6 +36,7 @@ describe('mean run length of the CUSUM', () => {
   })
 
   // The closed form is known to lie within 1 to 6 % at these settings (Siegmund 1985; common practice).
+  // STA-02
   it('Siegmund’s closed form lies within 6 % for k = 0.5, h = 4 to 8, shifts 0 and 1', () => {
     for (const h of [4, 5, 8]) {
       for (const shift of [0, 1]) {
@@ -45,6 +47,7 @@ describe('mean run length of the CUSUM', () => {
     }
   })
 
+  // STA-06
   it('a head start of h/2 cuts the delay at 1σ from 10.4 to 6.3 and the time between false alarms from 931 to 896 (k = 0.5, h = 5)', () => {
     const chart = { k: 0.5, h: 5, start: 2.5, sided: 'one' as const }
     expect(cusumRunLength(chart, 1)).toBeCloseTo(6.3, 1)

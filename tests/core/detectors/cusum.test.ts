@@ -16,6 +16,7 @@ const run = (config: CusumConfig, values: readonly (number | null)[]) => {
 }
 
 describe('cusum', () => {
+  // STA-08
   it('follows the handbook’s twenty readings: both sums, first signal at 14, change at 13, level 327.79 (NIST 6.3.2.3)', () => {
     const h = read<{ target: number; k: number; h: number; x: number[]; high: number[]; low: number[] }>(
       'fixtures/statistics/handbook-cusum.json',
@@ -37,6 +38,7 @@ describe('cusum', () => {
     expect(h.target + verdict.size).toBeCloseTo(327.79, 2)
   })
 
+  // STA-01
   it('a steady 1σ rise is flagged on the 11th sample, when 11 × 0.5 passes h = 5, on the 6th with a head start of h/2, dated to the first', () => {
     const flagged = (headStart: number) =>
       run({ k: 0.5, h: 5, cap: null, headStart }, Array(12).fill(1)).findIndex((o) => o.verdict.kind === 'shift')
@@ -52,6 +54,7 @@ describe('cusum', () => {
     expect(after.findIndex((o) => o.verdict.kind === 'quiet')).toBe(9)
   })
 
+  // STA-01
   it('mirrors: the verdict on −z is the verdict on z with the sides changed', () => {
     fc.assert(
       fc.property(fc.array(fc.double({ min: -4, max: 4, noNaN: true }), { maxLength: 60 }), (values) => {
@@ -89,6 +92,7 @@ describe('readings that remember the last one, k = 0.5, h = 5, both sides', () =
   const { cases } = read<{ cases: { phi: number; shift: number; mode: string; arl: number; se: number }[] }>(
     'fixtures/statistics/autocorrelated.json',
   )
+  // STA-04
   it.each(cases)(
     'correlation $phi, $mode, shift $shift σ: $arl samples, within four standard errors',
     ({ phi, shift, mode, arl, se }) => {

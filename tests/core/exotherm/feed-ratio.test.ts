@@ -40,6 +40,7 @@ const step = (atS: number, to: number, lagS: number) => (tS: number) =>
   tS < atS ? 1 : 1 + (to - 1) * (1 - Math.exp(-(tS - atS) / lagS))
 
 describe('feed ratio against its usual value', () => {
+  // EXO-07
   it('finds a pump 10 % fast, or 10 % slow, within 25 s and says which side and which feed moved', () => {
     for (const [to, side] of [
       [1.1, 'high'],
@@ -87,6 +88,7 @@ describe('feed ratio against its usual value', () => {
 describe('feed ratio in mol/mol', () => {
   // 2.3 mol/L at 705 kg/m³ over 1.0 mol/L at 905 kg/m³; 0.8 g/s over 2.0 g/s: (0.8 · 2.3/0.705) / (2.0 · 1.0/0.905) = 2.610/2.210 = 1.181 by hand.
   const pair = { molPerKg: [2.3 / 0.705, 1 / 0.905] as const, limits: { low: 1.05, high: 1.25 } }
+  // EXO-07
   it('0.8 g/s at 2.3 mol/L and 705 kg/m³ over 2.0 g/s at 1.0 mol/L and 905 kg/m³ is 1.181', () => {
     expect(Math.abs(course({ noise: 0, pair }).out.at(-1)!.v.molMol! - 1.181)).toBeLessThan(5e-4)
   })

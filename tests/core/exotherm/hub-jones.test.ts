@@ -84,6 +84,7 @@ describe('the criterion of Hub and Jones on a stirred tank sampled every 2 s, wi
       }
     })
   }
+  // EXO-04
   it('does not speak before a least rise of 5 K where one is asked, and then ahead of the maximum at 135.9 s', () => {
     const rows = cstr(cases[1]![1])
     const config: HubJonesConfig = { scanS: 2, windowS: 8, holdS: 5, leastRiseK: 5, leastRateKS: 1e-4 }

@@ -24,6 +24,7 @@ describe('ring', () => {
     forget(r)
     expect(meanOf(r, 3)).toBe(null)
   })
+  // EXO-03
   it('line through 1, 3, 2, 5, 4 at 1 s has slope 0.8 /s and standard error √0.12 = 0.346 /s (by hand), and half of both at 2 s', () => {
     const r = ring(5)
     for (const x of [1, 3, 2, 5, 4]) push(r, x)

@@ -4,6 +4,7 @@ import { createExothermWatch } from '../../../server/core/exotherm/watch.ts'
 import { twoReactors, world } from './world.ts'
 
 describe('where the heat sits', () => {
+  // EXO-05
   it('centre of 2, 6, 2 K is at 1; of 0, 2, 6 K at 1.75; null below 1 K in all or with one thermocouple', () => {
     expect(heatCentre([2, 6, 2])).toBe(1)
     expect(heatCentre([-3, 2, 6])).toBe(1.75)
@@ -11,6 +12,7 @@ describe('where the heat sits', () => {
     expect(heatCentre([0.3, 0.4])).toBe(null)
     expect(heatCentre([null, 6])).toBe(null)
   })
+  // EXO-05
   it('3 K that move from the middle to the outlet shift the centre of 16.7 K by 3/16.7 = 0.18 spacings downstream; before it stays within 0.1', () => {
     const watch = createExothermWatch(twoReactors(1))
     const shifts = world({ scanS: 1, hours: 0.8, seed: 5 }).map(({ tMs, scans: [one, two] }, k) => {
@@ -23,6 +25,7 @@ describe('where the heat sits', () => {
 })
 
 describe('time to a limit', () => {
+  // EXO-03
   it('from −20 °C to 0 °C at 0.5 ± 0.05 K/s is 40 s, 33 to 50 s', () => {
     const t = timeToLimit(-20, 0, 0.5, 0.05)
     expect([t.s, t.latestS]).toEqual([40, 50])

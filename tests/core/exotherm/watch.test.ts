@@ -93,6 +93,7 @@ describe('excursions on two cooled reactors, 0.1 K noise, 0.2 K wobble of the co
       expect(spells({ scanS, hours: scanS < 1 ? 0.7 : 1.2, seed: 6 }, spike).all).toEqual([])
     }
   })
+  // EXO-09
   it('flags a cold excursion of 3 K in 2 min as cold, not as an excess', () => {
     const { all, coldS } = spells({ scanS: 1, hours: 1, seed: 7, extraK: (t) => -pulse(2000, 3, 120, 300)(t) })
     expect(coldS! - 2000).toBeGreaterThan(0)

@@ -44,6 +44,7 @@ it('meets the hand table of the demo skid: clean pressure drop and Re of PA, PB,
   }
 })
 
+// EXO-01
 it('gives R1 by hand: residence time 63.6 mL / 164.3 mL/min = 23.2 s, De 186, adiabatic rise 73 K, MTSR at least inlet plus rise', () => {
   const f = of('R1', heron, table)
   expect(f.residenceS).toBeCloseTo((63.6 / (6 / 0.8853 / 60 + 2.04 / 0.6605 / 60)) * 60e-3, 1)
@@ -80,6 +81,7 @@ it('halves the run for twice the water, and shortens it with a lower limit', () 
   ).toBeLessThan(of('R1').runLengthS ?? 0)
 })
 
+// SIG-08
 it('puts 0.25 % of 25 bar on two taps to ±0.088 bar (stated as ±0.09), in any unit, and warns below 3 u and 1 u', () => {
   const spec = heron.segments.find((s) => s.id === 'R1')
   if (spec === undefined) throw new Error('no R1')
@@ -96,6 +98,7 @@ it('puts 0.25 % of 25 bar on two taps to ±0.088 bar (stated as ±0.09), in any 
   expect(slow(0.03)).toMatch(/below its own uncertainty u .* no baseline/)
 })
 
+// SIG-11
 it('does not care about the unit of a flow: kg/h, g/min, mL/min of the same stream give the same figures', () => {
   fc.assert(
     fc.property(fc.double({ min: 1, max: 12, noNaN: true }), (kgH) => {

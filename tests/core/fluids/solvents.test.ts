@@ -76,6 +76,7 @@ it('all eighteen solvents answer by full and short name, in any case, and every 
   }
 })
 
+// FOU-03
 it('outside the published range the state is uncertain and continuous, more than 60 K outside it is FLUID_RANGE', () => {
   expect(FAR_K).toBe(60)
   for (const s of solvents) {

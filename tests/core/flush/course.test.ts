@@ -28,6 +28,7 @@ it('walks F0 to F6 when every criterion is met, and is then done', () => {
   expect([end.step, end.done, end.refused]).toEqual([null, true, []])
 })
 
+// PRO-10
 it('refuses water with the reason while one criterion of F1 or F2 is open, whatever else is accepted', () => {
   for (const id of ['F1', 'F2']) {
     for (const c of plan.steps.find((s) => s.id === id)?.criteria ?? []) {
@@ -39,6 +40,7 @@ it('refuses water with the reason while one criterion of F1 or F2 is open, whate
   }
 })
 
+// PRO-10
 it('counts missing values, uncertain quality, no person and a skip as not accepted in F1; a reasoned skip passes only in a soft step', () => {
   const bad: Partial<Acceptance>[] = [
     { value: null },
@@ -74,6 +76,7 @@ it('does not advise a step the plan itself refuses, nor water from a plan withou
   expect(nextStep(odd, all(['F0', 'F2'])).step).toBeNull()
 })
 
+// PRO-10
 it('over 500 random walks: F3 and later are never next before F1 and F2 are met with good values; order of records of different times does not matter', () => {
   const one = fc.record({
     pick: fc.nat(),

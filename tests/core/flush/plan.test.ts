@@ -152,6 +152,7 @@ it('enforces miscibility: hexane, toluene and 2-methyltetrahydrofuran are refuse
   expect(step(r1(), 'F1').liquid).toBe('dry tetrahydrofuran')
 })
 
+// PRO-12
 it('counts the inventory by hand: 63.6 mL of R1 hold 45.7 mmol hexyllithium, 11 kJ against water, 7.0 kJ of its own reaction', () => {
   // 6 kg/h / 0.887 + 2.04 kg/h / 0.660 = 6.764 + 3.091 L/h; 0.0636 L · 2.3 mol/L · 3.091/9.855
   const inventory = r1().inventory.find((i) => i.segment === 'R1')
@@ -181,6 +182,7 @@ it('warms from the coldest place, the coolant at -24 °C: 29 K at 2 K/min, 5 min
   expect(silent.basis.join(' ')).toMatch(/R1: warm-up rate not given, 2 K\/min assumed/)
 })
 
+// PRO-08
 it('advises no flush but to escalate when hardly any flow fits under the limit (ratio 200)', () => {
   const plan = r1({ ratios: { R1: 200 } })
   expect(plan.refused.map((r) => r.step)).toEqual(['F1'])
@@ -235,6 +237,7 @@ it('does not care about units: flows in g/min and ranges in mbar give the same p
   }
 })
 
+// PRO-34
 it('is plain JSON, the same twice, and words everything as advice: no command, no permission', () => {
   const plan = r1()
   expect(JSON.parse(JSON.stringify(plan))).toEqual(plan)

@@ -59,6 +59,7 @@ describe('coverage on 300 simulated deposits: linear, saturating, accelerating, 
     )
   }
 
+  // STA-07
   it('the 90 % onset interval covers 86 to 95 %, as raised and refitted half way', () => {
     expect(score.n).toBeGreaterThan(280)
     expect(percent(score.raised, score.n)).toBeGreaterThan(86)
@@ -72,6 +73,7 @@ describe('coverage on 300 simulated deposits: linear, saturating, accelerating, 
     expect(middle(score.width)).toBeLessThan(0.07)
   })
 
+  // FOU-06
   it('the 80 % forecast interval covers 76 to 86 % half way, off by less than 0.22 of the time left in the median, given in 95 %', () => {
     const half = forecasts[1]!
     expect(percent(half.held, half.given)).toBeGreaterThan(76)

@@ -18,6 +18,7 @@ const film = (life: number, until: number, sd = 0.001, seed = 1): GrowthPoint[] 
 }
 
 describe('forecastLimit', () => {
+  // FOU-06
   it('finds the limit of a steady film at 4 h from half way: within 10 %, interval around it', () => {
     const f = forecastLimit(film(4, 2), quiet, onset, 2, 2 * hour)!
     expect(Math.abs(f.atMs - 4 * hour)).toBeLessThan(0.2 * hour)

@@ -10,6 +10,7 @@ const ramp = (n: number, from: number, slope: number, stepMs: number, sd: number
 }
 
 describe('fitOnset', () => {
+  // STA-07
   it('dates a noiseless ramp from step 100 of 140 to within one step', () => {
     const onset = fitOnset(ramp(140, 100, 0.002, 30_000, 0), quiet, 0)!
     expect(Math.abs(onset.atMs - 100 * 30_000)).toBeLessThan(30_000)
@@ -63,6 +64,7 @@ describe('fitOnset', () => {
     expect(onset.lowMs).toBeGreaterThan(180 * 30_000)
   })
 
+  // USR-07
   it('holds a gap without bridging it: growth that began in a gap of half an hour is dated into the gap', () => {
     const points = ramp(200, 120, 0.001, 30_000, 0.0015, 6).filter((_, i) => i < 100 || i >= 160)
     const onset = fitOnset(points, quiet, 0)!

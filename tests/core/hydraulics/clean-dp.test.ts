@@ -81,6 +81,7 @@ it('laminar straight flow is Hagen and Poiseuille, 128 μ L Q/(π d⁴), to 1e-1
   )
 })
 
+// SIG-08
 it('1 m of THF column weighs 0.087 bar, and adds to ΔP when the outlet is above the inlet, flowing or not', () => {
   const still = cleanDp(tube({ heightM: 1 }), 0, 887, 5e-4)
   expect(still.dpPa).toBeCloseTo(8698, 0)
@@ -167,6 +168,7 @@ describe('a temperature profile', () => {
     expect(one.dpPa).toBe(cleanDp(tube(), 1e-3, thf.rhoKgM3(250), thf.viscPaS(250)).dpPa)
   })
 
+  // FOU-03
   it('of 20 K, linear, is within 1 % of 400 steps by its two ends, and within 0.25 % by three', () => {
     const along = (n: number) =>
       cleanDpAlong(
@@ -188,6 +190,7 @@ describe('a temperature profile', () => {
 })
 
 describe('exponents', () => {
+  // FOU-01
   it('are 1 and 1 laminar straight, n + k = 2 in every regime at constant density', () => {
     expect(exponents(tube(), 1e-4, 900, 8e-4).n).toBeCloseTo(1, 8)
     for (const m of [1e-4, 2e-3, 8e-3])
@@ -197,6 +200,7 @@ describe('exponents', () => {
       }
   })
 
+  // FOU-01
   it('of smooth turbulent flow at Re 20000 are 1.75 and 0.25 (Blasius) within 0.03, of a laminar coil between 1.2 and 1.5', () => {
     const { n, k } = exponents(tube(), (20000 * Math.PI * 0.0016 * 8e-4) / 4, 900, 8e-4)
     expect(Math.abs(n - 1.75)).toBeLessThan(0.03)

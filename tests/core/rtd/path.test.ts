@@ -66,6 +66,7 @@ it('does not care about order or unit, falls with r, and never needs less than i
   )
 })
 
+// REC-14
 it('opens the outlet window by volume: half the flow, twice the time; a gap in the flow delays and is told', () => {
   const path = [tank(6e-5, 20)]
   const flow = (q: number | null) =>

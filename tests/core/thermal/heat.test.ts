@@ -150,6 +150,7 @@ it('reproduces the closed profile of a first-order reaction under constant coola
   }
 })
 
+// EXO-01
 it('follows T = T_in + X dT_ad without cooling, with and without activation energy', () => {
   for (const activationJMol of [0, 50e3]) {
     for (const p of plugFlowProfile({ ...tube, uaPerMWMK: 0, activationJMol }))
@@ -181,6 +182,7 @@ it('moves the hot spot down with more cooling and never above the adiabatic end'
   )
 })
 
+// EXO-01
 it('states the MTSR of a stopped tube as the worst of T + (1 - X) dT_ad: at least the inlet plus the whole rise', () => {
   expect(mtsr(253, 1, 60)).toBe(313)
   expect(mtsr(253, 0, 60)).toBe(253)

@@ -23,6 +23,7 @@ describe('bad input is one line with file, line, what came, what was expected, t
     ['CR line ends', 'time,PT-1\r1900000000,1\r', 'CSV_LINE', 1, undefined, /CR alone/],
     ['a doubled column', `time,PT-1,PT-2,PT-1\n${good(1)}`, 'CSV_HEADER', 1, 4, /two columns for tag PT-1, columns 2 and 4/],
     ['columns doubled but for case', `time,pt-1,PT-2,Pt-1\n${good(1)}`, 'CSV_HEADER', 1, 4, /two columns for tag PT-1/],
+    // SIG-11
     ['a units row that contradicts', `${head}s,bar,psi\n${good(1)}`, 'CSV_HEADER', 2, 3, /unit "psi" for tag PT-2, expected bar/],
     ['a foreign unit', `${head},bara,bar\n${good(1)}`, 'CSV_HEADER', 2, 2, /unit "bara" for tag PT-1, expected bar/],
     ['another unit in the header', `time,PT-1 [kPa],PT-2\n${good(1)}`, 'CSV_HEADER', 1, 2, /unit "kPa" for tag PT-1/],

@@ -43,6 +43,7 @@ describe('several files as one run', () => {
       expect(got.values[0]).toEqual([1, 1, 1, 2, 2, 3])
     }
   })
+  // SIG-10
   it('adds the clock offset of each logger by its file pattern before merging', async () => {
     const s = skidOf(['PT-1', 'PT-2'], { log: [logFormat({ files: 'slow_*.csv', clockOffsetSeconds: 10 }), logFormat()] })
     const { blocks } = readLogs([source('dir/slow_1.csv', file('PT-1', [0])), source('dir/other.csv', file('PT-2', [5]))], {

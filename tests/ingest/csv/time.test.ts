@@ -116,6 +116,7 @@ describe('time cells', () => {
 describe('local time', () => {
   // Europe/Amsterdam 2031: forward on 30 March 01:00 UTC, back on 26 October 01:00 UTC (Directive 2000/84/EC: last Sundays).
   const zone = 'Europe/Amsterdam'
+  // REC-09
   it('takes the repeated hour first as summer, then as winter time once the clock went back', () => {
     const got = times(
       [
@@ -134,6 +135,7 @@ describe('local time', () => {
     const got = times(['2031-10-26 02:30:00', '2031-10-26 02:30:05', '2031-10-26 02:30:03', '2031-10-26 02:30:10'], { zone })
     expect(got.map((t) => t.slice(11, 19))).toEqual(['00:30:00', '00:30:05', '00:30:03', '00:30:10'])
   })
+  // REC-09
   it('reads every second of both passes at 1 Hz in order, 7200 rows one second apart', () => {
     const hour = Array.from(
       { length: 3600 },
@@ -142,6 +144,7 @@ describe('local time', () => {
     const got = times([...hour, ...hour], { zone }).map((t) => Date.parse(t))
     expect(got).toEqual(Array.from({ length: 7200 }, (_, s) => at('2031-10-26T00:00:00Z') + 1000 * s))
   })
+  // REC-09
   it('reads a time in the skipped hour as if the clock had not moved, and counts it', () => {
     const file = 'time,PT-1\n2031-03-30 01:59:00,1\n2031-03-30 02:30:00,1\n2031-03-30 03:31:00,1\n'
     const got = read(file, skidOf(['PT-1'], { timeZone: zone }))
