@@ -9,6 +9,7 @@ import { exportCommand } from './export.ts'
 import { flushPlanCommand } from './flush-plan.ts'
 import { importCommand } from './import.ts'
 import { scoreCommandWith } from './score.ts'
+import { selfCheckCommand } from './self-check.ts'
 import { serveCommand } from './serve.ts'
 import { simulateCommand } from './simulate.ts'
 
@@ -29,6 +30,7 @@ export const commands: readonly Command[] = [
   simulateCommand,
   score,
   flushPlanCommand,
+  selfCheckCommand,
 ]
 
 /** Mistakes of the command line and failures of the machine; everything else a user can mend in the input. */
