@@ -37,7 +37,11 @@ export function orderOf(alarms: readonly AlarmRow[], shown: readonly number[], h
 
 /** Counts for the foot. */
 export function countsOf(alarms: readonly AlarmRow[]) {
-  const by = { high: { n: 0, unack: 0 }, medium: { n: 0, unack: 0 }, low: { n: 0, unack: 0 } }
+  const by = {
+    high: { n: 0, unack: 0, active: 0 },
+    medium: { n: 0, unack: 0, active: 0 },
+    low: { n: 0, unack: 0, active: 0 },
+  }
   let shelved = 0
   let outOfService = 0
   for (const a of alarms) {
@@ -46,6 +50,7 @@ export function countsOf(alarms: readonly AlarmRow[]) {
     else if (a.active || a.needsAck || a.state === 'LACKED') {
       by[a.priority].n++
       if (a.needsAck) by[a.priority].unack++
+      if (a.active) by[a.priority].active++
     }
   }
   return { ...by, shelved, outOfService }

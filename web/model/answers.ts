@@ -2,6 +2,7 @@ import type { Priority } from '../../server/core/report.ts'
 import type { AlarmRow, LiveState, SegmentFacts, SegmentState, SkidFacts } from '../../server/wire/index.ts'
 import type { ZoneClock } from './clock.ts'
 import { duration, figure, fixed, range, unitText } from './format.ts'
+import { adviceInForce } from './in-force.ts'
 import { actionWords, causeWords, inPlantTime, kindWords, limitWords } from './words.ts'
 
 /** One of the four answers: what is read from three metres, and the sentence below that says on what it rests. */
@@ -169,7 +170,7 @@ function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> 
 }
 
 function nowOf(state: LiveState, clock: ZoneClock, alarm: AlarmRow | null): Answer {
-  const advice = state.advice[0]
+  const advice = adviceInForce(state)[0]
   if (advice === undefined)
     return alarm === null
       ? answer('Carry on', 'nothing advised; keep to the site procedure')

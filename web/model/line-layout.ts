@@ -156,8 +156,8 @@ function widths(part: readonly SegmentFacts[]): { x: number; w: number }[] {
   const total = x1 - x0 - gap * (part.length - 1)
   const known = part.every((s) => s.share !== null)
   const raw = part.map((s) => (known ? Math.max(leastShare, s.share!) : 1))
-  // Long ones give way: the square root keeps a reactor wide and leaves the short ones room for their figures.
-  const soft = raw.map(Math.sqrt)
+  // Long ones give way: the square root leaves the short ones room for their figures. Reactors, where it closes, get more.
+  const soft = raw.map((share, i) => Math.sqrt(share) * (part[i]!.kind === 'reactor' ? 1.4 : 1))
   const sum = soft.reduce((a, b) => a + b, 0)
   let x = x0
   return soft.map((share) => {

@@ -1,5 +1,6 @@
 import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
 import type { ZoneClock } from '../model/clock.ts'
+import { adviceInForce } from '../model/in-force.ts'
 import { actionWords, inPlantTime } from '../model/words.ts'
 import { count, el, fill } from './dom.ts'
 
@@ -10,7 +11,8 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
   return {
     node,
     show(state: LiveState, alarm: AlarmRow | null, planOpen: boolean): void {
-      const advice = state.advice[0]
+      const inForce = adviceInForce(state)
+      const advice = inForce[0]
       const k = JSON.stringify([
         advice?.atMs,
         advice?.action,
@@ -38,19 +40,20 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
       const about =
         state.alarms.find((a) => a.active && a.kind === 'fouling' && a.segment !== null && advice.segments.includes(a.segment)) ??
         alarm
+      const words = (texts: readonly string[]) => inPlantTime(texts.join('; '), clock, state.clock.nowMs)
       const pairs: [string, string, boolean][] = [['Why', inPlantTime(advice.reason, clock, state.clock.nowMs), false]]
       if (about !== null) {
         const e = about.evidence
-        if (e.for.length > 0) pairs.push(['Speaks for', e.for.join('; '), false])
-        if (e.against.length > 0) pairs.push(['Against', e.against.join('; '), true])
-        if (e.notExcluded.length > 0) pairs.push(['Not ruled out', e.notExcluded.join('; '), true])
+        if (e.for.length > 0) pairs.push(['Speaks for', words(e.for), false])
+        if (e.against.length > 0) pairs.push(['Against', words(e.against), true])
+        if (e.notExcluded.length > 0) pairs.push(['Not ruled out', words(e.notExcluded), true])
       }
       const plan = advice.plan
       if (plan !== null) {
         const points = count(plan.steps[0]?.holdPoints.length ?? 0, 'hold point')
         pairs.push(['Still open', `${points} before ${plan.steps[0]?.id ?? 'the first step'}; the shift lead must approve`, false])
       }
-      for (const other of state.advice.slice(1, 3))
+      for (const other of inForce.slice(1, 3))
         pairs.push(['Also', `${actionWords[other.action]}: ${inPlantTime(other.reason, clock, state.clock.nowMs)}`, true])
       pairs.push(['Given', `${clock.hms(advice.atMs)}; a recommendation under the site’s own procedure, it can be wrong`, true])
       const list = el('dl', { class: 'advice' })

@@ -145,9 +145,11 @@ function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
         ['Causes', h.causes],
         ['Time', `${duration(h.timeToRespondS * 1000)} to respond`],
       )
-    if (alarm.evidence.for.length > 0) pairs.push(['Speaks for', alarm.evidence.for.join('; ')])
-    if (alarm.evidence.against.length > 0) pairs.push(['Against', alarm.evidence.against.join('; ')])
-    if (alarm.evidence.notExcluded.length > 0) pairs.push(['Not ruled out', alarm.evidence.notExcluded.join('; ')])
+    if (alarm.evidence.for.length > 0) pairs.push(['Speaks for', inPlantTime(alarm.evidence.for.join('; '), clock, alarm.raisedMs)])
+    if (alarm.evidence.against.length > 0)
+      pairs.push(['Against', inPlantTime(alarm.evidence.against.join('; '), clock, alarm.raisedMs)])
+    if (alarm.evidence.notExcluded.length > 0)
+      pairs.push(['Not ruled out', inPlantTime(alarm.evidence.notExcluded.join('; '), clock, alarm.raisedMs)])
     if (alarm.onset !== null)
       pairs.push([
         'Began',

@@ -57,7 +57,8 @@ export function boresView(facts: SkidFacts, data: RunData) {
       pen.fillRect(l, y, 3, h)
       pen.fillStyle = look.colour.ink
       pen.font = `400 ${1.0625 * em}px ${look.font}`
-      const text = p.on ? `production since ${data.clock.hm(p.fromMs)}` : 'not in production'
+      const cut = p === made[0] && p.fromMs - s.fromMs < 0.03 * (s.toMs - s.fromMs) && s.fromMs > (data.detail.fromMs ?? 0)
+      const text = !p.on ? 'not in production' : cut ? 'production' : `production since ${data.clock.hm(p.fromMs)}`
       const fits = [text, p.on ? 'production' : 'not'].find((t) => pen.measureText(t).width < r - l - em)
       if (fits !== undefined) word(fits, l + 0.5 * em, y + h / 2)
     }

@@ -22,7 +22,18 @@ export function footView() {
         el(
           'li',
           {},
-          markView(p, c[p].n === 0 ? 'quiet' : c[p].unack > 0 ? 'unack' : 'ack'),
+          markView(
+            p,
+            c[p].n === 0
+              ? 'quiet'
+              : c[p].active === 0
+                ? c[p].unack > 0
+                  ? 'returned'
+                  : 'latched'
+                : c[p].unack > 0
+                  ? 'unack'
+                  : 'ack',
+          ),
           el('span', {}, el('b', { text: String(c[p].n) }), c[p].unack > 0 ? `, ${c[p].unack} unack` : ''),
         ),
       ),
@@ -39,7 +50,7 @@ export function footView() {
     live(runs: readonly RunRow[]): void {
       const on = runs.filter((r) => r.state === 'live')
       const sum = (p: 'high' | 'medium' | 'low' | 'unacknowledged') => on.reduce((n, r) => n + r.alarms[p], 0)
-      const none = (n: number) => ({ n, unack: 0 })
+      const none = (n: number) => ({ n, unack: 0, active: n })
       draw(
         { high: none(sum('high')), medium: none(sum('medium')), low: none(sum('low')), shelved: 0, outOfService: 0 },
         sum('unacknowledged'),

@@ -1,6 +1,7 @@
-import type { LiveState, SegmentState, SkidFacts } from '../../server/wire/index.ts'
+import type { AlarmRow, LiveState, SegmentState, SkidFacts } from '../../server/wire/index.ts'
 import { drawnShare, exaggerationFor, openPct } from '../model/bore.ts'
 import { figure, fixed, range, short } from '../model/format.ts'
+import { standingOn } from '../model/in-force.ts'
 import { feedHalf, type LineLayout, layoutLine, mainHalf, type PlacedSegment, profileHeight, wall } from '../model/line-layout.ts'
 import { el, fill, place, say, svg } from './dom.ts'
 import { lookOf, markView, shortOf } from './mark.ts'
@@ -67,7 +68,7 @@ export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
     say(scaleNote, `Deposit × ${times}; dots: ΔP limit`)
     for (const s of layout.segments) {
       const now = state.segments.find((x) => x.segment === s.id)
-      drawSegment(moving, s, now, times)
+      drawSegment(moving, s, now, times, standingOn(state, s.id))
       figures.get(s.id)?.show(now, state)
     }
     for (const f of feeds) {
@@ -109,44 +110,38 @@ function figureView(s: PlacedSegment, layout: LineLayout, pick: (segment: string
   return {
     node,
     show(now: SegmentState | undefined, state: LiveState): void {
-      const hot = now?.standing ?? null
+      const alarm = standingOn(state, s.id)
       const ratioText = fixed(now?.ratio, 2)
       big.textContent = ratioText ?? 'no ratio'
       unit.hidden = ratioText === null
-      node.classList.toggle('hot', hot !== null && ratioText !== null && (now?.growthPerHour ?? null) !== null)
+      const rate = now?.growthPerHour ?? null
+      unit.textContent = ` × clean${rate === null ? '' : `, ${rate < 0 ? '' : '+'}${fixed(rate, 2)} /h`}`
+      node.classList.toggle('hot', alarm?.active === true && ratioText !== null && rate !== null)
       node.dataset['ratio'] = ratioText ?? ''
-      grows.textContent = growth(now, state)
-      grows.classList.toggle('soft', hot === null)
-      const k = hot === null ? '' : `${hot.priority} ${hot.needsAck}`
+      grows.textContent = growth(now, state, alarm)
+      grows.classList.toggle('soft', alarm === null)
+      const k = alarm === null ? '' : `${alarm.priority} ${alarm.state}`
       if (k === key) return
       key = k
       fill(mark)
-      const alarm = state.alarms.find((a) => a.id === hot?.alarm)
-      if (hot !== null)
-        mark.append(markView(hot.priority, alarm === undefined ? (hot.needsAck ? 'unack' : 'ack') : lookOf(alarm.state)))
+      if (alarm !== null) mark.append(markView(alarm.priority, lookOf(alarm.state)))
     },
   }
 }
 
 /** Time to the limit as a range, or why there is none. */
-function growth(now: SegmentState | undefined, state: LiveState): string {
+function growth(now: SegmentState | undefined, state: LiveState, alarm: AlarmRow | null): string {
   if (now === undefined) return 'no data'
+  if (now.forecast !== null && now.forecast.highMs <= state.clock.nowMs) return 'limit met'
   if (now.forecast !== null) {
     const { low, high } = range(now.forecast.lowMs - state.clock.nowMs, now.forecast.highMs - state.clock.nowMs)
-    const rate = now.growthPerHour === null ? '' : `+${fixed(now.growthPerHour, 2)} /h · `
-    return `${rate}limit in ${low} to ${high}`
+    return `limit in ${low} to ${high}`
   }
-  if (now.ratio === null)
-    return now.baseline === null
-      ? state.mode.production
-        ? 'taking its baseline'
-        : 'no baseline yet'
-      : state.mode.production
-        ? 'not known'
-        : 'not in production'
-  if (now.growthPerHour !== null) return `grows ${fixed(now.growthPerHour, 2)} /h`
-  const standing = state.alarms.find((a) => a.id === now.standing?.alarm)
-  return standing?.kind === 'fouling' || standing?.kind === 'dp-limit' ? 'no forecast yet' : 'steady'
+  if (now.ratio === null) {
+    if (!state.mode.production) return now.baseline === null ? 'no baseline yet' : 'not in production'
+    return now.baseline === null ? 'taking its baseline' : 'not known'
+  }
+  return alarm?.active === true && (alarm.kind === 'fouling' || alarm.kind === 'dp-limit') ? 'no forecast yet' : 'steady'
 }
 
 const rect = (x0: number, y0: number, x1: number, y1: number, cls: string): SVGElement =>
@@ -202,7 +197,7 @@ function limitRatio(s: SegmentState): number | null {
 }
 
 /** Deposit, the dots where it would be at its limit, an alarm's bars; hatched where the ratio is not known. */
-function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined, times: number): void {
+function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined, times: number, alarm: AlarmRow | null): void {
   const share = drawnShare(now?.ratio, times)
   const end = s.x + s.w
   const e = Math.min(dx(10), s.w / 4)
@@ -218,7 +213,7 @@ function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefi
     for (const side of [-1, 1])
       g.append(svg('path', { class: 's-room', d: `M${s.x + e} ${s.y + side * s.half * (1 - atLimit)}H${end - e}` }))
   for (const x of [s.x, end]) g.append(svg('path', { class: 's-line', d: `M${x} ${s.y + s.half + wall}v7` }))
-  const hot = now?.standing?.priority
+  const hot = alarm?.active === true ? alarm.priority : undefined
   if (hot !== undefined)
     for (const side of [-1, 1]) {
       const a = s.y + side * (s.half + wall + 2)

@@ -110,7 +110,7 @@ export function trendChart(canvas: HTMLCanvasElement) {
         max: s.high,
         title: { display: true, text: s.yTitle, color: look.colour['ink-2'], font, padding: 0 },
         afterBuildTicks: (scale) => {
-          const rows = Math.max(2, Math.floor(chart.height / (3.2 * look.rootPx)))
+          const rows = Math.max(3, Math.floor(chart.height / (2.8 * look.rootPx)))
           scale.ticks = valueTicks(s.low, s.high, rows).map((t) => ({ value: t.at, label: t.label }))
         },
         afterFit: (scale) => {

@@ -3,6 +3,7 @@ import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { answersOf } from '../model/answers.ts'
 import { age, duration } from '../model/format.ts'
+import { adviceInForce } from '../model/in-force.ts'
 import { longest, type RunData } from '../model/run-data.ts'
 import { fetchWindow, follow } from '../run-store.ts'
 import { adviceView } from './advice.ts'
@@ -174,8 +175,9 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
     now.show(a.whatNow)
     line.show(state)
     advice.show(state, a.alarm, planOpen)
-    plan.show(state.advice[0]?.plan ?? null, planOpen)
-    if (state.advice[0]?.plan == null) planOpen = false
+    const planned = adviceInForce(state)[0]?.plan ?? null
+    if (planned === null) planOpen = false
+    plan.show(planned, planOpen)
     trends.node.hidden = planOpen
     alarms.show(state.alarms, state.clock.nowMs, quietText(state))
     shell.foot.show(state.alarms)
