@@ -72,6 +72,7 @@ describe('the criterion of Hub and Jones on a stirred tank sampled every 2 s, wi
     ],
   ]
   for (const [name, reactor, held5, held20] of cases) {
+    // EXO-04
     it(`${name}: held 5 s at ${held5}, 20 s at ${held20} s`, () => {
       const rows = cstr(reactor)
       for (const [holdS, want] of [
