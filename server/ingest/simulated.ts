@@ -66,8 +66,11 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
           block.codes[r * width + width - 1] = cell.value
         }
       }
+      // The row's phase is an index into the run's words.
+      const words = taken === 0 && width > skid.tags.length ? { words: { from: 0, words: phases } } : {}
       taken += Math.max(0, due)
       return {
+        ...words,
         entries: due > 0 ? [{ kind: 'rows', block }] : [],
         state: { ...(state as State | null), rows: taken },
         more: false,

@@ -47,7 +47,11 @@ export const newHeronRun = (store: Store) =>
   }) // biome-ignore format: a list
 
 /** A monitor over the simulated heron with hand-driven time. */
-export function simulatedBench(dir: string, scenario: Scenario, more: Partial<MonitorOptions> & { pair?: { run: RunId; stepsRun: RunId } } = {}) {
+export function simulatedBench(
+  dir: string,
+  scenario: Scenario,
+  more: Partial<MonitorOptions> & { pair?: { run: RunId; stepsRun: RunId } } = {},
+) {
   const store = openStore(dir, { synchronous: 'NORMAL' })
   const clock = handClock()
   const lines: string[] = []
