@@ -14,6 +14,8 @@ export interface Head {
   /** Earliest and latest source time of its rows. */
   readonly firstMs: number | null
   readonly lastMs: number | null
+  /** All numbers below this are packed in segments. */
+  readonly packed: number
   readonly stagedRows: number
   readonly stagedTicks: number
 }
@@ -21,12 +23,12 @@ export interface Head {
 /** One small row a run, written with every append. */
 export function headTable(db: Database.Database) {
   const get = db.prepare<[RunId], Head>(
-    `SELECT next_seq AS next, rows, acts, width, first_ms AS firstMs, last_ms AS lastMs, staged_rows AS stagedRows, staged_ticks AS stagedTicks
-     FROM head JOIN run ON run.id = head.run WHERE run = ? AND state <> 'deleted'`,
+    `SELECT next_seq AS next, rows, acts, packed, width, first_ms AS firstMs, last_ms AS lastMs, staged_rows AS stagedRows,
+     staged_ticks AS stagedTicks FROM head JOIN run ON run.id = head.run WHERE run = ? AND state <> 'deleted'`,
   )
   const set = db.prepare(
-    `UPDATE head SET next_seq = @next, rows = @rows, acts = @acts, width = @width, first_ms = @firstMs, last_ms = @lastMs, staged_rows = @stagedRows,
-     staged_ticks = @stagedTicks, source_state = coalesce(@source, source_state) WHERE run = @run`,
+    `UPDATE head SET next_seq = @next, rows = @rows, acts = @acts, packed = @packed, width = @width, first_ms = @firstMs,
+     last_ms = @lastMs, staged_rows = @stagedRows, staged_ticks = @stagedTicks, source_state = coalesce(@source, source_state) WHERE run = @run`,
   )
   const source = db.prepare<[RunId], string | null>('SELECT source_state FROM head WHERE run = ?').pluck()
   const full = db

@@ -45,6 +45,11 @@ export const steps: readonly string[] = [
   CREATE TRIGGER settings_stay BEFORE UPDATE ON settings BEGIN SELECT RAISE(ABORT, 'settings are kept by version'); END;
   CREATE TRIGGER settings_kept BEFORE DELETE ON settings BEGIN SELECT RAISE(ABORT, 'settings are kept by version'); END;
   `,
+  // Up to which number a run is packed: a lost last segment must not look like a gap.
+  `
+  ALTER TABLE head ADD COLUMN packed INTEGER NOT NULL DEFAULT 0;
+  UPDATE head SET packed = coalesce((SELECT max(end_seq) FROM tier WHERE tier.run = head.run AND level = 0), 0);
+  `,
 ]
 
 /** Steps a store has seen. Errors: STORE_SCHEMA_NEWER when a newer build wrote it. */

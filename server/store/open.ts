@@ -162,7 +162,7 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
       for (const { id, title } of runs.list()) {
         try {
           for (const _ of read(id));
-          segments.visit(id, -Infinity, Infinity, (node) => {
+          segments.visit(id, tables.heads.get(id).packed, -Infinity, Infinity, (node) => {
             segments.page(node.id)
             return false
           })

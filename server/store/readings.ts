@@ -136,7 +136,7 @@ export function readingStore(db: Database.Database, { heads, stages, segments }:
       if (room.count.length < page.at.length) room = cells(page.at.length * 2)
       for (const own of out) addCells(own, slots, page.tag(own.tag, room))
     }
-    segments.visit(run, low, high, (node) => {
+    segments.visit(run, known.packed, low, high, (node) => {
       if (bucketMs % node.cellMs === 0) {
         usePage(node.id)
         return true
@@ -153,7 +153,7 @@ export function readingStore(db: Database.Database, { heads, stages, segments }:
   const samples = (run: RunId, tags: readonly number[], fromMs: number, toMs: number): SamplesOfTag[] => {
     const known = check(run, tags)
     const pieces: Piece[] = []
-    segments.visit(run, fromMs, toMs, (node) => {
+    segments.visit(run, known.packed, fromMs, toMs, (node) => {
       if (node.level === 0) pieces.push(windowed(segmentRows(run, node.seq, known.width ?? 0), fromMs, toMs))
       return false
     })

@@ -4,7 +4,7 @@ import { keyOf, type RunId } from './keys.ts'
 /** Gives back the space of deleted runs, a few records at a time. */
 export function reclaimer(db: Database.Database) {
   const next = db.prepare<[], RunId>("SELECT id FROM run WHERE state = 'deleted' LIMIT 1").pluck()
-  const few = 64
+  const few = 16
   const range = (run: RunId): [number, number] => [keyOf(run, 0), keyOf(run, 0) + 2 ** 36]
   const byKey = ['strip', 'segment', 'stage', 'act'].map((table) => {
     const key = table === 'strip' ? 'segment' : 'id'
@@ -32,7 +32,7 @@ export function reclaimer(db: Database.Database) {
     shrink(spare: number): boolean {
       const free = db.pragma('freelist_count', { simple: true }) as number
       if (free <= spare) return false
-      db.pragma(`incremental_vacuum(${Math.min(256, free - spare)})`)
+      db.pragma(`incremental_vacuum(${Math.min(128, free - spare)})`)
       return true
     },
   }

@@ -105,7 +105,7 @@ export function segmentTable(db: Database.Database) {
       }
     },
     /** Pages of a run that overlap [fromMs, toMs), from the top; `use` says whether a page will do or its parts are wanted. Segments come as level 0. */
-    visit(run: RunId, fromMs: number, toMs: number, use: (node: Node) => boolean): void {
+    visit(run: RunId, packed: number, fromMs: number, toMs: number, use: (node: Node) => boolean): void {
       // Pages of one level follow each other without a hole; a missing one must not look like a gap in the readings.
       const inOrder = (nodes: readonly Node[], seq: number): number => {
         let at = seq
@@ -127,13 +127,12 @@ export function segmentTable(db: Database.Database) {
         seq = inOrder(roots, seq)
         for (const root of roots) down(root)
       }
+      if (seq !== packed) throw damaged(`summary page ${seq} of run ${run}`)
     },
     /** Width of the cells of level 0, judged by the first segments; null when nothing is packed. */
     finestCells(run: RunId): number | null {
       return finest.get(run) ?? null
     },
-    /** Number of the first entry that is not packed yet. */
-    end: (run: RunId): number => covered.get(run, 0) ?? 0,
     page,
     /** First number of the segment that holds number `seq`, which is below `end`. */
     at(run: RunId, seq: number): number {

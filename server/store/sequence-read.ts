@@ -33,12 +33,14 @@ export interface Tables {
 
 /** A reader of runs' sequences in the exact recorded order. */
 export function sequenceReader(db: Database.Database, { heads, acts, stages, segments }: Tables) {
-  function pieceAt(run: RunId, seq: number, width: number): Piece | null {
-    if (seq >= segments.end(run)) {
+  function pieceAt(run: RunId, seq: number, packed: number, width: number): Piece | null {
+    if (seq >= packed) {
       const staged = stages.at(run, seq)
       return staged === null ? null : { seq: staged.seq, end: staged.end, ...stages.open(run, staged.seq, width) }
     }
     const { start, end, tMs, tickAt, tickMs } = segments.order(run, segments.at(run, seq))
+    // The segment before a lost one; going on at its end would never come to one.
+    if (seq < start || seq >= end) throw damaged(`the segment of entry ${seq} of run ${run}`)
     const strips = Array.from({ length: tMs.length === 0 ? 0 : Math.ceil(width / stripTags) }, (_, i) =>
       segments.strip(run, start, i),
     )
@@ -47,9 +49,9 @@ export function sequenceReader(db: Database.Database, { heads, acts, stages, seg
 
   /** The stretch that holds number `seq`, or only acts up to the next one; null at the end. One view of the store, whoever packs beside us. */
   const stretch = db.transaction((run: RunId, seq: number): { piece: Piece | null; between: NumberedAct[]; end: number } | null => {
-    const { next, width } = heads.get(run)
+    const { next, packed, width } = heads.get(run)
     if (seq >= next) return null
-    const piece = pieceAt(run, seq, width ?? 0)
+    const piece = pieceAt(run, seq, packed, width ?? 0)
     if (piece !== null) return { piece, between: acts.between(run, piece.seq, piece.end), end: piece.end }
     const end = Math.min(next, stages.list(run, seq, 1)[0]?.seq ?? next)
     const between = acts.between(run, seq, end)

@@ -80,12 +80,12 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
   /** Straight into full segments, as an import brings them; only the rest is staged. Gives what is staged then. */
   function appendBulk(
     run: RunId,
-    next: number,
+    { next, packed }: Head,
     entries: readonly Entry[],
     width: number,
-  ): { stagedRows: number; stagedTicks: number } {
+  ): Pick<Head, 'packed' | 'stagedRows' | 'stagedTicks'> {
     const columns = columnsFor(width)
-    let start = segments.end(run)
+    let start = packed
     const closeIfFull = (seq: number): false => {
       if (columns.full) {
         segments.add(run, start, seq, columns)
@@ -112,7 +112,7 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
         }
       }
     }
-    const rest = { stagedRows: columns.rows, stagedTicks: columns.ticks }
+    const rest = { packed: start, stagedRows: columns.rows, stagedTicks: columns.ticks }
     if (columns.rows + columns.ticks > 0) {
       const left = entriesOf(columns)
       const { rows, tMin, tMax } = measure(run, left, width)
@@ -129,8 +129,8 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
       if (entry.kind === 'act') acts.add(run, next, entry.act)
       next += entry.kind === 'rows' ? entry.block.rows : 1
     }
-    let staged = { stagedRows: old.stagedRows + rows, stagedTicks: old.stagedTicks + ticks }
-    if (rows >= bulkRows && staged.stagedRows >= segmentRows) staged = appendBulk(run, old.next, entries, width ?? 0)
+    let staged = { packed: old.packed, stagedRows: old.stagedRows + rows, stagedTicks: old.stagedTicks + ticks }
+    if (rows >= bulkRows && staged.stagedRows >= segmentRows) staged = appendBulk(run, old, entries, width ?? 0)
     else if (rows + ticks > 0) stages.add(run, { seq: old.next, end: next, rows, tMin, tMax }, entries, width ?? 0)
     const head: Head = {
       next,
@@ -153,12 +153,15 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
       if (run === null) return false
       const head = heads.get(run)
       const columns = columnsFor(head.width ?? 0)
-      const start = segments.end(run)
-      const end = unstage(run, columns, start, () => columns.full)
+      const end = unstage(run, columns, head.packed, () => columns.full)
       if (columns.rows + columns.ticks === 0) throw damaged(`staged entries of run ${run}`)
       stages.drop(run, end)
-      segments.add(run, start, end, columns)
-      heads.set(run, { ...head, stagedRows: head.stagedRows - columns.rows, stagedTicks: head.stagedTicks - columns.ticks }, null)
+      segments.add(run, head.packed, end, columns)
+      heads.set(
+        run,
+        { ...head, packed: end, stagedRows: head.stagedRows - columns.rows, stagedTicks: head.stagedTicks - columns.ticks },
+        null,
+      )
       return true
     },
     /** Entries (rows, ticks and acts each count one) and rows of a run. Errors: STORE_DATA. */

@@ -4,7 +4,7 @@ import { createInterface } from 'node:readline'
 import Database from 'better-sqlite3'
 import { expect, it } from 'vitest'
 import { MonitorError } from '../../server/core/errors.ts'
-import { openStore } from '../../server/store/open.ts'
+import { openStore, type Store } from '../../server/store/open.ts'
 import { entriesOf as entries } from './appender.ts'
 import { damageRounds, fill, oneLine } from './damage.ts'
 import { aRun, close, linesOf, newFolder, newStore, noise, readLines } from './helpers.ts'
@@ -108,6 +108,45 @@ it('says that the disk is full, keeps what was acknowledged, and goes on from th
 
 it('never reads other readings out of a file damaged in 40 ways (pages, sectors, single bits): it says so, or the place did not matter', () => {
   expect(damageRounds(40, 5).said).toBeGreaterThan(20)
+})
+
+it('tells a lost record of any table from a gap in the readings', () => {
+  const dir = newFolder()
+  const store = newStore(dir)
+  const run = store.runs.create(aRun)
+  fill(store, run, 48_000, 6000)
+  fill(store, run, 49_000, 100)
+  const { fromMs, toMs } = store.readings.span(run)!
+  close(store)
+  const file = join(dir, 'clearbore.db')
+  const sound = readFileSync(file)
+  const asks: Record<string, (s: Store) => unknown> = {
+    read: (s) => readLines(s, run),
+    envelope: (s) => s.readings.envelope(run, [0], fromMs, toMs, 50),
+    samples: (s) => s.readings.samples(run, [0], fromMs, toMs),
+    acts: (s) => s.sequence.acts(run),
+  }
+  const lost: [table: string, condition: string, asks: string[]][] = [
+    ['tier', 'level = 0', ['samples']],
+    ['tier', 'level = 0 AND end_seq = (SELECT max(end_seq) FROM tier)', ['samples']],
+    ['tier', 'level = 1', ['envelope', 'samples']],
+    ['segment', 'true', ['read', 'samples']],
+    ['strip', 'true', ['read', 'samples']],
+    ['stage', 'true', ['read', 'envelope', 'samples']],
+    ['act', 'true', ['read', 'acts']],
+  ]
+  for (const [table, condition, names] of lost) {
+    writeFileSync(file, sound)
+    const db = new Database(file)
+    db.pragma('foreign_keys = OFF')
+    const rowids = db.prepare(`SELECT rowid FROM ${table} WHERE ${condition} ORDER BY rowid`).pluck().all()
+    db.prepare(`DELETE FROM ${table} WHERE rowid = ?`).run(rowids[Math.floor((rowids.length - 1) / 2)])
+    db.close()
+    const opened = newStore(dir)
+    for (const name of names) expect(() => asks[name]!(opened), `${table} ${condition} ${name}`).toThrow('has lost or damaged')
+    expect(opened.check().length).toBeGreaterThan(0)
+    close(opened)
+  }
 })
 
 it('comes back to the last whole commit when its log of writes was cut short anywhere, and goes on from there', () => {

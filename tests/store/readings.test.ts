@@ -44,6 +44,7 @@ function stored(shape: Shape, packShare: number): { store: Store; run: RunId; ro
   for (let i = 0; i < cut; i += 8000) append(store, run, rows.slice(i, Math.min(cut, i + 8000)))
   store.upkeep()
   for (let i = cut; i < rows.length; i += 100) append(store, run, rows.slice(i, i + 100))
+  if (shape.seed % 2 === 1) store.upkeep()
   return { store, run, rows }
 }
 function append(store: Store, run: RunId, rows: Row[]): void {
