@@ -52,6 +52,8 @@ const x0 = 118
 const x1 = 906
 const gap = 30
 const leastShare = 0.09
+/** No segment of the main path is narrower than its figures. */
+const leastW = 76
 const mostInRow = 7
 const feedW = 112
 const labelW = 132
@@ -100,7 +102,7 @@ export function layoutLine(facts: SkidFacts): LineLayout {
           joinX: joinX ?? at.x + 60,
           joinY: y,
           row,
-          tight: begin - 26 - labelW < before,
+          tight: begin - 26 - labelW - 50 < before,
         })
         free[level] = begin - 26 - labelW
       })
@@ -158,10 +160,12 @@ function widths(part: readonly SegmentFacts[]): { x: number; w: number }[] {
   const raw = part.map((s) => (known ? Math.max(leastShare, s.share!) : 1))
   // Long ones give way: the square root leaves the short ones room for their figures. Reactors, where it closes, get more.
   const soft = raw.map((share, i) => Math.sqrt(share) * (part[i]!.kind === 'reactor' ? 1.4 : 1))
+  // Everyone gets the least width; what is left goes by share.
+  const spare = total - leastW * part.length
   const sum = soft.reduce((a, b) => a + b, 0)
   let x = x0
   return soft.map((share) => {
-    const w = (total * share) / sum
+    const w = leastW + (spare * share) / sum
     const at = { x, w }
     x += w + gap
     return at

@@ -35,15 +35,11 @@ export function planView(close: () => void) {
             'article',
             { class: 'step', 'data-step': s.id },
             el('h3', { text: `${s.id} ${s.title}` }),
-            el(
-              'p',
-              { class: 'quant' },
-              el('span', { text: s.liquid ?? 'no liquid' }),
-              el('span', { text: s.flowMlMin === null ? 'flow not computed' : figure(s.flowMlMin, 'mL/min') }),
-              el('span', { text: s.volumeMl === null ? 'volume not computed' : `${fixed(s.volumeMl, 0)} mL` }),
-              el('span', { text: s.minutes === null ? 'time not computed' : `${fixed(s.minutes, 0)} min` }),
+            el('p', { class: 'quant' }, ...quantities(s).map((t) => el('span', { text: t }))),
+            lines(
+              'Before it',
+              s.holdPoints.map((t) => t.replace(/^Before this step: /, '')),
             ),
-            lines('Before it', s.holdPoints),
             lines('Ends when', s.endsWhen),
             lines('Can hurt', s.hazards, 'hurt'),
             plan.refused.some((r) => r.step === s.id)
@@ -62,6 +58,18 @@ export function planView(close: () => void) {
       )
     },
   }
+}
+
+/** Flow, volume and time of a step; a step without a liquid has only its time. */
+function quantities(s: FlushPlan['steps'][number]): string[] {
+  const time = s.minutes === null ? 'time not computed' : `${fixed(s.minutes, 0)} min`
+  if (s.liquid === null) return [time]
+  return [
+    s.liquid,
+    s.flowMlMin === null ? 'flow not computed' : figure(s.flowMlMin, 'mL/min'),
+    s.volumeMl === null ? 'volume not computed' : `${fixed(s.volumeMl, 0)} mL`,
+    time,
+  ]
 }
 
 const lines = (name: string, texts: readonly string[], cls = ''): HTMLElement | null =>

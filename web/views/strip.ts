@@ -1,7 +1,5 @@
-import type { Link } from '../feed.ts'
-import { type ZoneClock, zoneClock } from '../model/clock.ts'
-import { combOf, teeth } from '../model/comb.ts'
-import { age, duration } from '../model/format.ts'
+import type { ZoneClock } from '../model/clock.ts'
+import { duration } from '../model/format.ts'
 import { el, fill, say, svg } from './dom.ts'
 
 export interface StripState {
@@ -22,6 +20,9 @@ export interface StripHooks {
   theme(): 'day' | 'night'
   toggleTheme(): void
 }
+
+/** The comb shows so many scans. */
+const teeth = 30
 
 /** The strip on top: which skid, live or not, what the run does, whether it is alive, and who is at the screen. */
 export function stripView(hooks: StripHooks) {
@@ -98,8 +99,6 @@ export function stripView(hooks: StripHooks) {
     },
   }
 }
-export const utc = zoneClock('UTC')
-export { age, combOf }
 
 /** Who acts. Shown always; changed in place. */
 function personView(hooks: StripHooks): HTMLElement {
@@ -139,4 +138,3 @@ export function cutView() {
     },
   }
 }
-export type Cut = Link

@@ -1,0 +1,81 @@
+import fc from 'fast-check'
+import { describe, expect, it } from 'vitest'
+import type { AlarmRow } from '../../server/wire/index.ts'
+import { asAt, countsOf, firstOut, inFlood, orderOf } from '../../web/model/alarm-list.ts'
+import { alarmOf, t0 } from '../helpers/scene.ts'
+
+const minute = 60_000
+const raised = (id: number, min: number, more: Partial<AlarmRow> = {}) => alarmOf(id, { raisedMs: t0 + min * minute, ...more })
+
+describe('order of the list', () => {
+  it('is newest on top, and by number where two come at once', () => {
+    expect(orderOf([raised(1, 0), raised(2, 5), raised(3, 5)], [], false)).toEqual([3, 2, 1])
+  })
+  it('never moves a row while somebody points at the list: new ones go below, gone ones keep their place until let go', () => {
+    const shown = [2, 1]
+    expect(orderOf([raised(1, 0), raised(3, 9)], shown, true)).toEqual([2, 1, 3])
+    expect(orderOf([raised(1, 0), raised(3, 9)], shown, false)).toEqual([3, 1])
+  })
+  it('while held, every row shown keeps its index whatever comes and goes', () => {
+    fc.assert(
+      fc.property(
+        fc.uniqueArray(fc.integer({ min: 1, max: 30 })),
+        fc.uniqueArray(fc.integer({ min: 1, max: 30 })),
+        (shown, now) => {
+          const order = orderOf(
+            now.map((id) => raised(id, id)),
+            shown,
+            true,
+          )
+          expect(order.slice(0, shown.length)).toEqual(shown)
+          expect(new Set(order).size).toBe(order.length)
+          for (const id of now) expect(order).toContain(id)
+        },
+      ),
+    )
+  })
+})
+
+describe('flood', () => {
+  it('begins with the eleventh alarm in ten minutes, holds at five and ends at four', () => {
+    const eleven = Array.from({ length: 11 }, (_, i) => raised(i + 1, i * 0.5))
+    const now = t0 + 6 * minute
+    expect(inFlood(eleven.slice(1), now, false)).toBe(false)
+    expect(inFlood(eleven, now, false)).toBe(true)
+    expect(inFlood(eleven.slice(0, 5), now, true)).toBe(true)
+    expect(inFlood(eleven.slice(0, 4), now, true)).toBe(false)
+    expect(firstOut(eleven, now)?.id).toBe(1)
+  })
+})
+
+it('counts what stands, what is not acknowledged and what is put aside, by priority', () => {
+  const c = countsOf([
+    raised(1, 0),
+    raised(2, 0, { state: 'ACKED', needsAck: false }),
+    raised(3, 0, { priority: 'high', state: 'RTNUN', active: false }),
+    raised(4, 0, { priority: 'low', state: 'SHELVED' }),
+  ])
+  expect(c.medium).toEqual({ n: 2, unack: 1, active: 2 })
+  expect(c.high).toEqual({ n: 1, unack: 1, active: 0 })
+  expect(c.low.n).toBe(0)
+  expect(c.shelved).toBe(1)
+})
+
+it('shows an alarm of a stored run as it stood: before its acknowledgement UNACK, after it ACK, after both NORM', () => {
+  const a = raised(1, 0, {
+    clearedMs: t0 + 20 * minute,
+    acknowledgedMs: t0 + 10 * minute,
+    acknowledgedBy: 'demo operator',
+    state: 'NORM',
+    active: false,
+    needsAck: false,
+  })
+  const states = [5, 15, 25].map((min) => asAt(a, t0 + min * minute))
+  expect(states.map((s) => [s.state, s.active, s.needsAck])).toEqual([
+    ['UNACK', true, true],
+    ['ACKED', true, false],
+    ['NORM', false, false],
+  ])
+  expect(states[0]!.clearedMs).toBeNull()
+  expect(asAt({ ...a, acknowledgedMs: null }, t0 + 25 * minute).state).toBe('RTNUN')
+})
