@@ -87,8 +87,8 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
       const count = async function* (source: AsyncIterable<Uint8Array>) {
         for await (const chunk of source) {
           bytes += chunk.length
-          if (bytes > s.uploadMaxBytes) return
-          yield chunk
+          // The rest is read and dropped: a connection cut in the middle would lose the reply.
+          if (bytes <= s.uploadMaxBytes) yield chunk
         }
       }
       if (body === undefined || body === null) await writeFile(path, '')

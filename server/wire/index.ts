@@ -7,7 +7,7 @@
  *   GET  /api/runs                                           RunRow[]
  *   GET  /api/runs/:run                                      RunDetail
  *   GET  /api/runs/:run/state?atMs                           LiveState (of a stored run as at atMs, its end by default)
- *   GET  /api/runs/:run/report?atMs                          Report of core/report.ts (what was known at atMs)
+ *   GET  /api/runs/:run/report                               Report of core/report.ts; of a live run as it stands
  *   GET  /api/runs/:run/trends?fromMs&toMs&buckets&tags      Trends
  *   GET  /api/runs/:run/marks                                Marks
  *   GET  /api/runs/:run/alarms                               AlarmRow[]
