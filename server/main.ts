@@ -8,7 +8,10 @@ process.stdout.on('error', (e: NodeJS.ErrnoException) => {
 })
 
 process.exitCode = await runCli(process.argv.slice(2), {
-  out: (text) => new Promise((done) => (process.stdout.write(text) ? done() : process.stdout.once('drain', done))),
+  out: (text) =>
+    new Promise((done, fail) => {
+      process.stdout.write(text, (e) => (e ? fail(e) : done()))
+    }),
   err: (text) => {
     process.stderr.write(text)
   },

@@ -31,6 +31,7 @@ export const launch = (executablePath: string): Promise<Browser> =>
       '--disable-sync',
       '--disable-dev-shm-usage',
       '--force-color-profile=srgb',
+      '--disable-lcd-text',
     ],
   })
 

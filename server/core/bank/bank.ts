@@ -234,6 +234,10 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     f.x[index]! += size
     f.p[index * map.size + index]! += variance
   }
+  function shiftReference(seg: number, size: number): void {
+    const t = s.tracks[seg]!
+    if (t.cRef !== null) t.cRef += size
+  }
   function freeze(seg: number): void {
     const t = s.tracks[seg]!
     t.fouled = true
@@ -274,12 +278,15 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   function stepEvent(v: Verdict, segment: number, size: number, variance: number): BankEvent {
     const more = common(v)
     const dpPa = s.tracks[segment]!.lastDpPa ?? 0
-    const suspect = more.nearMove ? null : zeroSuspect(layout, segment, dpPa * -Math.expm1(-size))
+    const clear = v.likelihood > verdictRules.zeroLikelihood && Math.abs(size) > verdictRules.zeroSize && !more.nearMove
+    const suspect = clear ? zeroSuspect(layout, segment, dpPa * -Math.expm1(-size)) : null
     if (suspect === null && size > verdictRules.blockage && !more.nearMove) {
       freeze(segment)
       return { kind: 'blockage', segment, size, ...more }
     }
     putInto(map.level(segment), size, variance)
+    // What an instrument or the exponents did is no resistance: the clean level moves along, and the ratio stays.
+    if (suspect !== null || more.nearMove) shiftReference(segment, size)
     if (suspect === null) return { kind: 'step', segment, size, ...more }
     return { kind: 'instrument', tag: suspect.tag, segment, neighbours: false, ramp: false, sizePa: suspect.sizePa, ...more }
   }
@@ -298,6 +305,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       const shift = ((layout.segments[segment]!.tapIn === tap ? 1 : -1) * sizePa) / dpPa
       if (!ramp) return stepEvent(v, segment, shift, variance * (1000 / dpPa) ** 2)
       putInto(map.level(segment), shift, (variance * (1000 * grown) ** 2) / dpPa ** 2)
+      shiftReference(segment, shift)
     } else putInto(zero, sizePa, variance * (1000 * grown) ** 2)
     if (ramp) s.drifting[tap] = true
     return { kind: 'instrument', tag: layout.taps[tap]!.name, segment, neighbours: zero >= 0, ramp, sizePa, ...common(v) }
@@ -409,6 +417,13 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       t.z1 = t.z2 = 0
       t.lastResidual = null
       if (fresh) t.cRef = null
+      columns = []
+    },
+    /** A deposit was found by other means: its segment leaves the filter, clean being the level of its baseline. */
+    declare(seg: number): void {
+      const t = s.tracks[seg]!
+      if (t.cRef !== null) f.x[map.level(seg)] = t.cRef
+      freeze(seg)
       columns = []
     },
     isFouled: (seg: number): boolean => s.tracks[seg]!.fouled,

@@ -12,6 +12,9 @@ export const verdictRules = {
   /** A lone sudden rise of this much is a blockage, unless the zero of an instrument may well have shifted so far: this share of its span. */
   blockage: 0.15,
   zeroShare: 0.01,
+  /** Least likelihood and size (ln ΔP) of a lone step before an instrument is named for it. */
+  zeroLikelihood: 40,
+  zeroSize: 0.03,
 } as const
 
 /** Another explanation and how well it does, for the evidence shown with an alarm. */

@@ -7,6 +7,7 @@ import { forecastLimit } from '../growth/forecast.ts'
 import { fitOnset } from '../growth/onset.ts'
 import type { GrowthPoint, Interval, Noise } from '../growth/points.ts'
 import type { LimitName } from '../sequence.ts'
+import { type ChartReading, type ChartState, readCharts, startCharts, stepCharts } from './charts.ts'
 import { createMode, type Mode, type ModeState } from './mode.ts'
 
 export interface BaselineRecord {
@@ -45,6 +46,8 @@ interface SegmentWatch {
   hindsight: Interval | null
   window: { dpPa: number[]; flow: number[]; tempK: number[]; fromMs: number }
   baselined: boolean
+  /** The charts by the promise, from the final baseline on; null before. */
+  charts: ChartState | null
   /** ln of the clean ΔP over the last ten minutes, newest last. */
   cleanLn: number[]
 }
@@ -59,6 +62,15 @@ export interface WatchState {
 
 export type WatchEvent =
   | { readonly kind: 'bank'; readonly event: BankEvent; readonly onset: Interval | null; readonly ratio: number | null }
+  /** Both charts of a segment signal and no explanation of the bank has taken the rise: creeping growth. `shared`: its neighbours rise alike. */
+  | {
+      readonly kind: 'creep'
+      readonly segment: number
+      readonly onset: Interval | null
+      readonly ratio: number
+      readonly reading: ChartReading
+      readonly shared: boolean
+    }
   | { readonly kind: 'onset'; readonly segment: number; readonly onset: Interval }
   | { readonly kind: 'forecast'; readonly segment: number; readonly forecast: ForecastRecord | null }
   | { readonly kind: 'cleared'; readonly segment: number; readonly why: 'stopped' | 'fell back' }
@@ -79,16 +91,17 @@ export interface WatchStep {
 }
 
 /** Steps: of history kept for an onset; in a baseline before it is final; averaged for the ratio shown; between forecasts. */
-const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 10, clean: 20, pointsKept: 480 }
+const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 2, clean: 20, pointsKept: 480 }
 
-/** Share of the time left after which a forecast is made anew, and the longest it may stand, ms. */
-const renew = { share: 0.04, mostMs: 3_600_000 }
+/** Share of a growth's age after which its forecast is made anew. */
+const renewShare = 0.03
 
 /**
  * Fouling of every segment: production or not, resistance over clean, deposits with their onset and forecast, baselines. One call a
  * detector step. `limits` says how high ΔP may go now, Pa; null where no limit is set.
  */
 export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) {
+  const promise = layout.skid.detection
   const mode = createMode(layout, saved?.mode)
   const observer = createObserver(layout, saved?.observer)
   const bank: Bank = createBank(layout, stepMs, saved?.bank ?? undefined)
@@ -100,6 +113,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
     hindsight: null,
     window: { dpPa: [], flow: [], tempK: [], fromMs: 0 },
     baselined: false,
+    charts: null,
     cleanLn: [],
   })
   const watch: SegmentWatch[] = saved?.segments ?? layout.segments.map(seg)
@@ -168,9 +182,9 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         events.push({ kind: 'onset', segment: i, onset: again })
       }
     }
-    // A limit far off does not come nearer by the minute: the forecast is made anew after a small share of the time left.
-    const left = g.forecast === null ? 0 : Math.min(g.forecast.atMs - g.lastForecastMs, renew.mostMs / renew.share)
-    if (tMs - g.lastForecastMs < Math.max(steps.forecast * stepMs, renew.share * left)) return
+    // Made anew after a share of the growth's age: what an hour taught stands longer than what a minute did.
+    const age = g.onset === null ? 0 : tMs - g.onset.atMs
+    if (tMs - g.lastForecastMs < Math.max(steps.forecast * stepMs, renewShare * age)) return
     g.lastForecastMs = tMs
     const clean = watch[i]!.cleanLn
     if (limitPa === null || g.onset === null || clean.length === 0) {
@@ -196,7 +210,12 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
   function baseline(i: number, tMs: number, provisional: boolean, events: WatchEvent[]): void {
     const w = watch[i]!
     if (w.baselined || w.window.dpPa.length === 0) return
-    if (!provisional) w.baselined = true
+    if (!provisional) {
+      w.baselined = true
+      const noise = noiseOf(i)
+      const level = w.recent.reduce((a, x) => a + x, 0) / Math.max(1, w.recent.length)
+      w.charts = startCharts(promise, layout.segments.length, noise, level)
+    }
     bank.setBaseline(i)
     const n = bank.noise(i)
     events.push({
@@ -219,6 +238,8 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
     segment: (i: number): Readonly<SegmentWatch> => watch[i]!,
     suspicion: bank.suspicion,
     noise: bank.noise,
+    charts: (i: number): ChartReading | null =>
+      watch[i]!.charts === null ? null : readCharts(watch[i]!.charts!, promise.riseToFindPct),
 
     step(step: Step, limits: readonly ({ name: LimitName; pa: number } | null)[]): WatchStep {
       const m = mode.step(step)
@@ -228,6 +249,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         layout.segments.forEach((_, i) => {
           clear(i, 'stopped', events)
           watch[i]!.baselined = false
+          watch[i]!.charts = null
           watch[i]!.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
           watch[i]!.recent = []
         })
@@ -273,12 +295,17 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
             w.recent = []
             if (fresh) {
               w.baselined = false
+              w.charts = null
               w.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
             }
           }
-        } else learnBaseline(i, w, segs[i]!, step, m, endMs, events)
+        } else {
+          learnBaseline(i, w, segs[i]!, step, m, endMs, events)
+          if (w.charts !== null) stepCharts(w.charts, step.tMs, ln)
+        }
         return { ratio, step: segs[i]!, lnRatio: ln, whiteSd: b.whiteSd, wanderSd: b.wanderSd }
       })
+      if (m.armed) creep(endMs, events)
       return { mode: m, now, events }
     },
 
@@ -303,6 +330,43 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
     if (!m.armed) return
     if (w.window.dpPa.length === steps.provisional) baseline(i, endMs, true, events)
     if (w.window.dpPa.length >= steps.baseline) baseline(i, endMs, false, events)
+  }
+
+  /** Creeping growth, too slow for the bank's window: the charts decide. Segments of one stream that rise together share another cause. */
+  function creep(endMs: number, events: WatchEvent[]): void {
+    layout.segments.forEach((g, i) => {
+      const w = watch[i]!
+      if (w.charts === null || w.growth !== null || w.recent.length === 0) return
+      const reading = readCharts(w.charts, promise.riseToFindPct)
+      if (!reading.alarms) return
+      const alike = layout.segments.filter(
+        (o, j) => j !== i && o.streams.some((x) => g.streams.includes(x)) && (watch[j]!.charts?.over ?? false),
+      )
+      const shared = alike.length > 0
+      const ratio = Math.exp(w.recent.reduce((a, x) => a + x, 0) / w.recent.length)
+      if (shared) {
+        w.charts = startCharts(promise, layout.segments.length, noiseOf(i), Math.log(ratio))
+        events.push({ kind: 'creep', segment: i, onset: null, ratio, reading, shared })
+        return
+      }
+      const points = w.charts.points.map((p) => ({ tMs: p.tMs, lnRatio: p.lnRatio + w.charts!.zeroLn }))
+      const noise = { ...noiseOf(i), stepS: (10 * stepMs) / 1000 }
+      const onset = fitOnset(points, noise, points[0]!.tMs)
+      bank.declare(i)
+      w.growth = {
+        raisedMs: endMs,
+        onset,
+        riseAtFit: Math.log(ratio),
+        fits: 1,
+        points: [...w.charts.points],
+        peakLn: Math.log(ratio),
+        forecast: null,
+        growthPerHour: null,
+        lastForecastMs: 0,
+      }
+      w.hindsight = onset
+      events.push({ kind: 'creep', segment: i, onset, ratio, reading, shared })
+    })
   }
 
   /** The resistance came down: a filter that was changed, a deposit that let go. Six steps must agree. */

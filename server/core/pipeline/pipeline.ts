@@ -15,6 +15,7 @@ import type { Act, Entry, LimitName } from '../sequence.ts'
 import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
 import { createInstruments, type InstrumentState } from '../signals/instruments.ts'
 import { createLimits, type LimitTable, limitsOf } from '../signals/limits.ts'
+import { siteRules } from '../signals/site-rules.ts'
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, mlMinFromM3s, paFromBar } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
@@ -67,13 +68,14 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   const stepMs = stepScans(skid.scanSeconds) * scanMs
   let events: PipelineEvent[] = []
 
-  const book = createBook({ configVersion: options.configVersion ?? skid.skid }, saved?.book)
+  const site = siteRules(skid)
+  const book = createBook({ configVersion: options.configVersion ?? skid.skid, policyOf: site.policyOf }, saved?.book)
   const watch = createWatch(layout, stepMs, saved?.watch)
   const instruments = createInstruments(layout, saved?.instruments)
   const adviser = createAdviser(saved?.adviser, (segments, ratios) => planFlush({ skid, segments, ratios }))
   const excursions = createExcursions(layout, book.knows, saved?.excursions)
   const limits: LimitTable = saved?.limits ?? limitsOf(layout)
-  const limitChecks = createLimits(layout, limits, book.knows)
+  const limitChecks = createLimits(layout, limits, book.knows, site)
   const fouled = (i: number): boolean => watch.segment(i).growth !== null
   const s = {
     timed: saved?.timed ?? [],
@@ -95,7 +97,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       ratio: s.ratio[i] ?? null,
       growth: watch.segment(i).growth,
     }))
-  const signal = (x: Signal) => book.signal(x)
+  const signal = (x: Signal) => book.signal(site.apply(x))
 
   function drainBook(): void {
     const { changes, records } = book.drain()
@@ -159,6 +161,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       case 'bank':
         onBank(e.event, e.onset, e.ratio, tMs)
         return
+      case 'creep':
+        onCreep(e, tMs)
+        return
       case 'baseline':
         events.push({ kind: 'baseline', segment: layout.segments[e.segment]!.spec.id, baseline: e.baseline })
         return
@@ -175,7 +180,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   function onBank(e: BankEvent, onset: Interval | null, ratio: number | null, tMs: number): void {
     const finding = findingOf(layout, e)
-    const evidence = { for: finding.for, against: finding.against, notExcluded: finding.notExcluded }
+    const charts = e.kind === 'deposit' || e.kind === 'blockage' ? chartsSay(e.segment) : []
+    const evidence = { for: [...finding.for, ...charts], against: finding.against, notExcluded: finding.notExcluded }
     const base = {
       tMs,
       over: true,
@@ -266,6 +272,54 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
           text: `${layout.segments[e.segment]!.spec.id}: resistance stepped by ${(100 * Math.expm1(e.size)).toFixed(1)} %${e.nearMove ? ', with a step of flow or temperature' : ''}; taken into the level`,
         })
     }
+  }
+
+  /** Creeping growth found by the charts of the promise; what neighbours on one stream share is noted, not alarmed. */
+  function onCreep(e: Extract<WatchEvent, { kind: 'creep' }>, tMs: number): void {
+    const g = layout.segments[e.segment]!.spec
+    const d = e.reading.drift!
+    if (e.shared) {
+      events.push({
+        kind: 'note',
+        tMs,
+        text: `${g.id}: resistance crept to ${e.ratio.toFixed(3)} times clean together with its neighbours: lot, feed or flow reading; its charts begin anew from there`,
+      })
+      return
+    }
+    signal({
+      key: `fouling:${g.id}`,
+      tMs,
+      over: true,
+      kind: 'fouling',
+      segment: g.id,
+      tag: null,
+      priority: 'low',
+      value: e.ratio,
+      limit: 1,
+      unit: 'ratio',
+      message: `${g.title}: resistance creeps up, ${e.ratio.toFixed(3)} times clean`,
+      cause: g.kind === 'filter' ? 'filter' : 'fouling',
+      onset: e.onset === null ? null : onsetReport(e.onset),
+      detector: 'cusum and drift',
+      evidence: {
+        for: [
+          `CUSUM ${e.reading.cusum.toFixed(1)} over its interval ${e.reading.h.toFixed(1)}`,
+          `rises by ${(100 * d.perHour).toFixed(2)} % an hour (99 %: ${(100 * d.low).toFixed(2)} to ${(100 * d.high).toFixed(2)})`,
+        ],
+        against: [],
+        notExcluded: ['slow drift of an instrument', 'slow change of composition'],
+      },
+      onDelayS: 0,
+      offDelayS: 0,
+    })
+  }
+
+  /** What the charts of a segment say beside the verdict. */
+  function chartsSay(segment: number): string[] {
+    const c = watch.charts(segment)
+    if (c === null) return ['charts by the promise: not yet, they need a final baseline']
+    const slope = c.drift === null ? 'no drift told apart from none' : `drift ${(100 * c.drift.perHour).toFixed(1)} % an hour`
+    return [`CUSUM ${c.cusum.toFixed(1)} of ${c.h.toFixed(1)} σ, ${c.cusumOver ? 'agrees' : 'silent so far'}; ${slope}`]
   }
 
   /** The condition of an alarm without a value of its own is over. */

@@ -6,6 +6,7 @@ import type { Priority } from '../report.ts'
 import type { Scan } from '../scan/grid.ts'
 import { type LimitName, limitNames } from '../sequence.ts'
 import { barFromPa, fromSi, type Unit, valueUnit } from '../units.ts'
+import type { SiteRules } from './site-rules.ts'
 
 /** Limits in force, by segment; people may change them during a run. */
 export type LimitTable = Record<LimitName, number | null>[]
@@ -108,7 +109,7 @@ interface Check {
   readonly key: string
   /** Tags behind the value; a flaw in any of them makes it unknown. */
   readonly tags: readonly number[]
-  readonly span: number
+  readonly deadband: number
   readonly unit: Unit | null
 }
 
@@ -117,9 +118,11 @@ interface Check {
  * not report says nothing, unless the log has gone `silent`: loggers jitter, and an empty cell is not a bad reading.
  * `knows` tells whether the book holds an alarm: what was never over costs no signal.
  */
-export function createLimits(layout: Layout, limits: LimitTable, knows: (key: string) => boolean) {
+export function createLimits(layout: Layout, limits: LimitTable, knows: (key: string) => boolean, site: SiteRules) {
   const scanS = layout.skid.scanSeconds
-  const checks = layout.segments.flatMap((_, i) => rules.map((rule) => checkOf(layout, i, rule)).filter((c) => c.tags.length > 0))
+  const checks = layout.segments.flatMap((_, i) =>
+    rules.map((rule) => checkOf(layout, i, rule, site)).filter((c) => c.tags.length > 0),
+  )
   return {
     scan(
       scan: Scan,
@@ -135,7 +138,7 @@ export function createLimits(layout: Layout, limits: LimitTable, knows: (key: st
         const at = worst(layout, c, scan)
         if (at === null && !idle && !on.silent && !c.tags.some((t) => scan.flaw[t] !== 0)) continue
         const value = at === null ? null : at.value
-        const now = idle ? 'under' : level(value, limit, c.rule.deadband * c.span, c.rule.side)
+        const now = idle ? 'under' : level(value, limit, c.deadband, c.rule.side)
         if (!known && now !== 'over') continue
         const seg = layout.segments[c.segment]!.spec
         const delay = delayOnGrid(c.rule.delayS, scanS)
@@ -166,7 +169,7 @@ export function createLimits(layout: Layout, limits: LimitTable, knows: (key: st
 }
 const none = { for: [], against: [], notExcluded: [] }
 
-function checkOf(layout: Layout, i: number, rule: LimitRule): Check {
+function checkOf(layout: Layout, i: number, rule: LimitRule, site: SiteRules): Check {
   const seg = layout.segments[i]!
   const { tags } = layout.skid
   const spanOf = (t: number): number => {
@@ -178,7 +181,7 @@ function checkOf(layout: Layout, i: number, rule: LimitRule): Check {
     segment: i,
     key: `${rule.kind}:${seg.spec.id}:${rule.limit}`,
     tags: list,
-    span,
+    deadband: site.deadband(rule.kind, seg.spec.id) ?? rule.deadband * span,
     unit,
   })
   switch (rule.kind) {

@@ -1,0 +1,112 @@
+import { type CusumDesign, designCusum } from '../design/cusum-design.ts'
+import { type CusumState, cusum } from '../detectors/cusum.ts'
+import { type DriftState, drift } from '../detectors/drift.ts'
+import type { GrowthPoint } from '../growth/points.ts'
+
+/** Steps averaged to one point of the charts: five minutes on a one-second grid. */
+const stepsPerPoint = 10
+/** What flow and viscosity corrections leave unexplained for hours, as a share of ΔP; noise alone would promise too much. Starting value. */
+const modelSd = 0.004
+/** The drift chart looks back a month: creeping growth is a matter of days. */
+const driftConfig = { windowHours: 720, leastPerHour: 0, level: 0.99 }
+/** Share of the rise to be found that the last half hour must stand at before the charts alone raise an alarm. */
+const riseShare = 0.6
+const recentPoints = 6
+
+/** The charts a plant engineer can follow by hand, one pair for each segment, from a final baseline on. Plain JSON. */
+export interface ChartState {
+  /** k, h in units of `design.chartSigma`; σ of a point and its lag-1 correlation. */
+  readonly design: CusumDesign
+  readonly sigma: number
+  readonly correlation: number
+  /** ln ratio of the baseline the charts stand on. */
+  readonly zeroLn: number
+  sum: number
+  n: number
+  sumMs: number
+  last: number | null
+  recent: number[]
+  cusum: CusumState
+  drift: DriftState
+  points: GrowthPoint[]
+  /** Points since the start, and how often the CUSUM began to signal: the false-alarm interval observed while clean. */
+  seen: number
+  signals: number
+  over: boolean
+}
+
+export interface ChartReading {
+  /** CUSUM of the upper side and its decision interval, in σ of a whitened point. */
+  readonly cusum: number
+  readonly h: number
+  readonly cusumOver: boolean
+  /** Robust slope with its 99 % interval, ln ratio per hour; null while not told apart from none. */
+  readonly drift: { readonly perHour: number; readonly low: number; readonly high: number } | null
+  /** Both signal and the last half hour stands high: the charts alone would raise an alarm. */
+  readonly alarms: boolean
+}
+
+/**
+ * Designs the pair of charts of a segment from the promise: on average one false fouling alarm per skid in `falseAlarmDays` of clean
+ * production, all `charts` together; find a rise of `riseToFindPct`. Points are means of ten detector steps, so the wander (mean-reverting,
+ * `wanderTauS`) correlates them; the CUSUM takes whitened points x − φ·x₋₁.
+ */
+export function startCharts(
+  promise: { readonly falseAlarmDays: number; readonly riseToFindPct: number },
+  charts: number,
+  noise: { readonly whiteSd: number; readonly wanderSd: number; readonly wanderTauS: number; readonly stepS: number },
+  zeroLn: number,
+): ChartState {
+  const pointS = stepsPerPoint * noise.stepS
+  const slow = noise.wanderSd ** 2
+  const sigma = Math.sqrt(slow + noise.whiteSd ** 2 / stepsPerPoint + modelSd ** 2)
+  const correlation = Math.min(0.95, (slow / sigma ** 2) * Math.exp(-pointS / noise.wanderTauS))
+  const design = designCusum({
+    falseAlarmHours: 24 * promise.falseAlarmDays,
+    stepS: pointS,
+    charts,
+    sigma,
+    shift: Math.log1p(promise.riseToFindPct / 100),
+    correlation,
+  })
+  return {
+    design, sigma, correlation, zeroLn, sum: 0, n: 0, sumMs: 0, last: null, recent: [],
+    cusum: cusum.start({ k: design.k, h: design.h, cap: 2 * design.h, headStart: 0.5 }),
+    drift: drift.start(driftConfig), points: [], seen: 0, signals: 0, over: false,
+  } // biome-ignore format: a list
+}
+
+/** One detector step; ln ratio null leaves everything as it is. Changes the state in place. */
+export function stepCharts(c: ChartState, tMs: number, lnRatio: number | null): void {
+  if (lnRatio === null) return
+  c.sum += lnRatio - c.zeroLn
+  c.sumMs += tMs
+  c.n++
+  if (c.n < stepsPerPoint) return
+  const x = c.sum / c.n
+  const at = c.sumMs / c.n
+  c.sum = c.sumMs = c.n = 0
+  const white = (x - c.correlation * (c.last ?? 0)) / c.design.chartSigma
+  if (c.last !== null) {
+    const out = cusum.step({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h }, c.cusum, { tMs: at, z: white })
+    c.cusum = out.state
+    const over = out.verdict.kind === 'shift' && out.verdict.side === 'high'
+    if (over && !c.over) c.signals++
+    c.over = over
+  }
+  c.last = x
+  c.seen++
+  c.recent = [...c.recent, x].slice(-recentPoints)
+  c.drift = drift.step(driftConfig, c.drift, { tMs: at, z: x / c.sigma }).state
+  c.points.push({ tMs: at, lnRatio: x })
+  if (c.points.length > 480) c.points = c.points.filter((_, i) => i % 2 === 0)
+}
+
+export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {
+  const v = c.drift.verdict
+  const rising =
+    v.kind === 'rising' ? { perHour: v.perHour * c.sigma, low: v.lowPerHour * c.sigma, high: v.highPerHour * c.sigma } : null
+  const mean = c.recent.reduce((a, b) => a + b, 0) / Math.max(1, c.recent.length)
+  const stands = c.recent.length === recentPoints && mean > riseShare * Math.log1p(riseToFindPct / 100)
+  return { cusum: c.cusum.high.sum, h: c.design.h, cusumOver: c.over, drift: rising, alarms: c.over && rising !== null && stands }
+}
