@@ -26,7 +26,7 @@ export interface InstrumentState {
 /** How long before a diagnostic alarm, s: failing or missing; standing still, by whether it is a flow. Default values, common practice. */
 const after = { failing: 30, missing: 60, frozen: 420, frozenFlow: 90, noData: 10, lateRows: 20 }
 
-/** Share of scans with a rejected spike, about two minutes' worth, at which an instrument is called faulty, and well again. */
+/** Share of scans with a rejected spike, over two minutes' worth or 120 scans, at which an instrument is called faulty, and well again. */
 const spikyShare = { raise: 0.05, clear: 0.01 }
 const none = { for: [], against: [], notExcluded: [] }
 
@@ -64,6 +64,7 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     frozenFlow: after.frozenFlow * finer,
     off: 30 * finer,
   }
+  const spikyScans = Math.max(120, Math.round(60 / skid.scanSeconds))
   const failing = new Set([
     why['out-of-range'],
     why['loop-failure'],
@@ -146,7 +147,7 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
     const fails = over(s.failingMs[t]!, delay.failing, tMs)
     const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
-    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike && alone ? 1 : 0) - s.spiky[t]!) / 120
+    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike && alone ? 1 : 0) - s.spiky[t]!) / spikyScans
     const spiky = s.spiky[t]! > (s.sensorOver[t] === 1 ? spikyShare.clear : spikyShare.raise)
     if (spiky) s.lastReason[t] = why.spike
     const gone = over(s.missingMs[t]!, delay.missing, tMs)
