@@ -73,7 +73,8 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     const source = `${state.data.source.state} ${state.data.source.message ?? ''}`
     if (source !== live.sourceState) {
       live.sourceState = source
-      if (state.data.source.state === 'failed') log(`run ${live.run}: ${state.data.source.message ?? 'its source failed'}`)
+      if (state.data.source.state === 'failed' && fault === null)
+        log(`run ${live.run}: ${state.data.source.message ?? 'its source failed'}`)
       for (const p of publishers) p.runs()
     }
   }

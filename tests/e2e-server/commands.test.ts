@@ -126,7 +126,7 @@ describe('what the machine refuses: one line, what to do, exit code 3', () => {
     oneLine(await run('serve', '--data', data, '--port', '0'), /newer/)
   })
   it('an export into a place that takes no file', async () => {
-    const { data, run: imported } = await anImport()
+    const { data, run: imported } = await anImport(0.02)
     const file = join(tempDir(), 'file')
     writeFileSync(file, '')
     const args = ['--data', data, '--what', 'samples', '--format', 'csv', '--out', join(file, 'x.csv')]
@@ -150,14 +150,14 @@ describe('what the command line refuses: exit code 2', () => {
   })
 })
 
-/** Forty-five minutes of the demo, written as a log and imported. */
-async function anImport() {
+/** Some of the demo, forty-five minutes by default, written as a log and imported. */
+async function anImport(hours = 0.75) {
   const data = tempDir()
   const log = join(data, 'night.csv')
   const night = demoScenario(heron)
   writeFileSync(
     log,
-    [...logText(heron, { ...night, hours: 0.75, events: night.events.filter((e) => e.atHours < 0.75) }).lines()].join(''),
+    [...logText(heron, { ...night, hours, events: night.events.filter((e) => e.atHours < hours) }).lines()].join(''),
   )
   const r = await run('import', log, '--skid', heronFile, '--data', join(data, 'store'), '--title', 'last night')
   expect([r.code, r.err]).toEqual([0, ''])
