@@ -37,5 +37,11 @@ async function call<T>(path: string, init: RequestInit): Promise<T> {
 
 export const getJson = <T>(path: string, signal?: AbortSignal): Promise<T> => call<T>(path, signal === undefined ? {} : { signal })
 export const postJson = <T>(path: string, body: unknown): Promise<T> =>
-  call<T>(path, { method: 'POST', headers: { 'content-type': 'application/json' }, body: JSON.stringify(body) })
-export const postForm = <T>(path: string, body: FormData): Promise<T> => call<T>(path, { method: 'POST', body })
+  call<T>(
+    path,
+    body === undefined
+      ? { method: 'POST' }
+      : { method: 'POST', headers: { 'content-type': 'application/json' }, body: JSON.stringify(body) },
+  )
+export const putFile = <T>(path: string, file: File): Promise<T> =>
+  call<T>(path, { method: 'PUT', headers: { 'content-type': 'application/octet-stream' }, body: file })

@@ -55,7 +55,7 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
     feed.send({ type: 'subscribe', run, topics: ['state', 'steps', 'readings', 'alarms', 'acts'], sinceMs })
 
   function points(steps: readonly StepPoint[], frames: readonly ReadingFrame[]): void {
-    grow(data, steps, frames)
+    grow(data, steps, frames, state?.clock.speed ?? 1)
     sinceMs = Math.max(sinceMs ?? 0, steps.at(-1)?.tMs ?? 0, frames.at(-1)?.toMs ?? 0)
   }
 
@@ -77,13 +77,15 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
   }
 
   function snapshot(m: Snapshot): void {
+    const again = state !== null
     seq = m.seq
     state = m.state
     points(m.steps, m.readings)
     checkMarks()
     changed({ state: true, points: true, marks: false })
-    if (m.moreFromMs !== null)
-      fetchWindow(data, data.window.fromMs, m.state.clock.nowMs).then(
+    // After a break, and where the snapshot could not hold all of it, the stored trends fill in what was missed.
+    if (again || m.moreFromMs !== null)
+      fetchWindow(data, data.window.fromMs, (m.state.data.lastRowMs ?? m.state.clock.nowMs) + 1).then(
         () => changed({ state: false, points: true, marks: false }),
         () => undefined,
       )

@@ -1,8 +1,7 @@
-import type { Priority } from '../../server/core/report.ts'
 import type { AlarmRow, LiveState, SegmentFacts, SegmentState, SkidFacts } from '../../server/wire/index.ts'
 import type { ZoneClock } from './clock.ts'
 import { duration, figure, fixed, range, unitText } from './format.ts'
-import { adviceInForce } from './in-force.ts'
+import { adviceInForce, urgencyOf, weight } from './in-force.ts'
 import { actionWords, causeWords, inPlantTime, kindWords, limitWords } from './words.ts'
 
 /** One of the four answers: what is read from three metres, and the sentence below that says on what it rests. */
@@ -24,20 +23,6 @@ export interface Answers {
   readonly whatNow: Answer
 }
 
-const weight: Record<Priority, number> = { high: 3, medium: 2, low: 1 }
-/** Among alarms of one priority the faster hazard comes first. */
-const urgency = [
-  'exotherm',
-  'temperature-limit',
-  'pressure-limit',
-  'dp-limit',
-  'fouling',
-  'feed-ratio',
-  'flow',
-  'no-data',
-  'monitor',
-  'sensor',
-]
 const answer = (far: string, below: string, unit: string | null = null, to: string | null = null): Answer => ({
   far,
   unit,
@@ -53,7 +38,7 @@ export function leading(state: LiveState): AlarmRow | null {
     standing.sort(
       (a, b) =>
         weight[b.priority] - weight[a.priority] ||
-        urgency.indexOf(a.kind) - urgency.indexOf(b.kind) ||
+        urgencyOf(a.kind) - urgencyOf(b.kind) ||
         ratio(b) - ratio(a) ||
         b.raisedMs - a.raisedMs,
     )[0] ?? null

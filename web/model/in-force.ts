@@ -1,7 +1,21 @@
 import type { Action, AlarmKind, Priority } from '../../server/core/report.ts'
 import type { AdviceState, AlarmRow, LiveState } from '../../server/wire/index.ts'
 
-const weight: Record<Priority, number> = { high: 3, medium: 2, low: 1 }
+export const weight: Record<Priority, number> = { high: 3, medium: 2, low: 1 }
+/** Among alarms of one priority the faster hazard comes first, and the cause before what follows from it. */
+const urgency: readonly AlarmKind[] = [
+  'exotherm',
+  'temperature-limit',
+  'dp-limit',
+  'pressure-limit',
+  'fouling',
+  'feed-ratio',
+  'flow',
+  'no-data',
+  'monitor',
+  'sensor',
+]
+export const urgencyOf = (kind: AlarmKind): number => urgency.indexOf(kind)
 const putAside = (a: AlarmRow): boolean => a.state === 'SHELVED' || a.state === 'SBD' || a.state === 'OOS'
 
 /** The alarm whose mark a segment carries: the most urgent whose condition is there, else one that is gone but not acknowledged. */
@@ -49,6 +63,11 @@ export function adviceInForce(state: LiveState): AdviceState[] {
     )[0]
     return cause === undefined ? [] : [{ advice, cause }]
   })
-  rated.sort((a, b) => weight[b.cause.priority] - weight[a.cause.priority] || b.advice.atMs - a.advice.atMs)
+  rated.sort(
+    (a, b) =>
+      weight[b.cause.priority] - weight[a.cause.priority] ||
+      urgencyOf(a.cause.kind) - urgencyOf(b.cause.kind) ||
+      b.advice.atMs - a.advice.atMs,
+  )
   return rated.filter((r, i) => !rated.slice(0, i).some((e) => e.cause.id === r.cause.id)).map((r) => r.advice)
 }

@@ -74,8 +74,11 @@ export function putTrends(data: RunData, t: Trends): void {
   put(data.production, { min: on, max: on, mean: on })
 }
 
+/** Longest stretch between two frames of a feed in order, in the run's time: three seconds of the wall, or the quiet that a log may keep. */
+export const rhythmMs = (speed: number): number => Math.max(quietMs, 3000 * speed)
+
 /** New steps and readings at the end of the series. */
-export function grow(data: RunData, steps: readonly StepPoint[], frames: readonly ReadingFrame[]): void {
+export function grow(data: RunData, steps: readonly StepPoint[], frames: readonly ReadingFrame[], speed = 1): void {
   const ids = data.detail.skidFacts.segments.map((s) => s.id)
   for (const s of steps) {
     s.segments.forEach((v, i) => {
@@ -89,7 +92,8 @@ export function grow(data: RunData, steps: readonly StepPoint[], frames: readonl
   const tags = data.detail.skidFacts.tags
   for (const f of frames) {
     const x = (f.fromMs + f.toMs) / 2
-    const widthMs = f.toMs - f.fromMs
+    // A frame longer than the feed's rhythm is what was missed while cut off: it does not stretch what counts as a gap.
+    const widthMs = Math.min(f.toMs - f.fromMs, rhythmMs(speed))
     f.tags.forEach((v, i) => {
       const own = data.tags.get(tags[i]?.tag ?? '')
       own?.widen(widthMs)

@@ -6,16 +6,14 @@ export interface Point {
   readonly high?: number | null
 }
 
-/** A frame that covers more than this is what was missed while cut off, not the rhythm of the feed. */
-const longestFrameMs = 120_000
-
 /**
  * A series that grows at its end. Two neighbours further apart than the gap get an empty point between them, so that no line crosses a gap.
  * What is older than the newest less `keepMs` is dropped: memory does not grow with the run.
  */
 export function growingSeries(leastGapMs: number, keepMs = Infinity) {
   let points: Point[] = []
-  let gapMs = leastGapMs
+  let fetchedMs = 0
+  let liveMs = 0
   return {
     points: (): readonly Point[] => points,
     /** An empty point is kept only as the gap it makes. A point not after the last one is dropped. */
@@ -23,7 +21,8 @@ export function growingSeries(leastGapMs: number, keepMs = Infinity) {
       if (p.y === null) return
       const last = points.at(-1)
       if (last !== undefined && p.x <= last.x) return
-      if (last !== undefined && p.x - last.x > gapMs) points.push({ x: (last.x + p.x) / 2, y: null })
+      if (last !== undefined && p.x - last.x > Math.max(leastGapMs, fetchedMs, liveMs))
+        points.push({ x: (last.x + p.x) / 2, y: null })
       points.push(p)
       if (points.length > 64 && p.x - points[0]!.x > 1.25 * keepMs) points = points.filter((q) => q.x >= p.x - keepMs)
     },
@@ -34,13 +33,13 @@ export function growingSeries(leastGapMs: number, keepMs = Infinity) {
       points = []
       for (const p of [...all.values()].sort((a, b) => a.x - b.x)) this.push(p)
     },
-    /** Points come this far apart at most from now on: what is further apart is a gap. */
+    /** Fetched points come this far apart. */
     spacing(ms: number): void {
-      gapMs = Math.max(leastGapMs, 2.2 * ms)
+      fetchedMs = 2.2 * ms
     },
-    /** The same, but never narrower than it was: after coarse history live points come closer. */
+    /** Live points come this far apart at most: never narrower than it was. */
     widen(ms: number): void {
-      gapMs = Math.max(gapMs, 2.2 * Math.min(ms, longestFrameMs))
+      liveMs = Math.max(liveMs, 2.2 * ms)
     },
     clear(): void {
       points = []

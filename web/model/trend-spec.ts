@@ -3,7 +3,7 @@ import type { AlarmRow, LiveState, Marks, SegmentFacts, SegmentState } from '../
 import { fanEdge } from './fan.ts'
 import { axisUnit, figure, fixed, unitText } from './format.ts'
 import type { Line, Overlay, TrendSpec } from './overlay.ts'
-import type { RunData } from './run-data.ts'
+import { type RunData, rhythmMs } from './run-data.ts'
 import { gapsOf, type Point } from './series.ts'
 import { limitWords } from './words.ts'
 
@@ -50,7 +50,7 @@ export function trendSpec(data: RunData, state: LiveState, marks: Marks, view: T
       nowLabel: picture.nowLabel,
       bands: picture.bands,
       limits: picture.limits,
-      gaps: gaps(data, view, view.kind === 'ratio' || view.kind === 'dp' ? spec.id : null),
+      gaps: gaps(data, view, rhythmMs(state.clock.speed), view.kind === 'ratio' || view.kind === 'dp' ? spec.id : null),
       fan: picture.fan,
       onset: onsetOf(data, marks, view, spec.id, now),
       alarms: view.alarms
@@ -228,13 +228,13 @@ const noticed = (data: RunData, view: TrendView, segment: string): Overlay['note
     .map((a) => ({ tMs: a.raisedMs, label: `noticed ${data.clock.hm(a.raisedMs)}` }))
 
 /** Hatched stretches: no row of the log, or rows but no ratio while in production. */
-function gaps(data: RunData, view: TrendView, segment: string | null): Overlay['gaps'] {
+function gaps(data: RunData, view: TrendView, rhythm: number, segment: string | null): Overlay['gaps'] {
   const { hm } = data.clock
   const near = (g: { fromMs: number; toMs: number }) => g.toMs > view.fromMs && g.fromMs < view.atMs
   const heard = data.heard.points()
   const silent = gapsOf(heard).filter(near)
   const last = heard.at(-1)
-  if (last !== undefined && view.atMs - last.x > 120_000 && view.atMs > last.x) silent.push({ fromMs: last.x, toMs: view.atMs })
+  if (last !== undefined && view.atMs - last.x > Math.max(120_000, rhythm)) silent.push({ fromMs: last.x, toMs: view.atMs })
   const named = silent.map((g) => ({ ...g, label: `no data ${hm(g.fromMs)} to ${g.toMs === view.atMs ? 'now' : hm(g.toMs)}` }))
   if (segment === null) return named
   const produced = data.production.points()
@@ -244,7 +244,7 @@ function gaps(data: RunData, view: TrendView, segment: string | null): Overlay['
   // Rows still come, but no ratio since some time.
   const own = data.segments.get(segment)?.ratio.points().at(-1)
   const end = produced.at(-1)
-  const quietMs = 4000 * data.detail.skidFacts.stepSeconds
+  const quietMs = Math.max(4000 * data.detail.skidFacts.stepSeconds, rhythm)
   if (
     own !== undefined &&
     end?.y === 1 &&

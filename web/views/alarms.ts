@@ -129,7 +129,7 @@ function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
     {},
     el('div', { class: 'mk' }, mark, state),
     el('div', { class: 'tx' }, title, el('p', { class: 'w' }, pin, ' ', when)),
-    el('div', { class: 'bt' }, ack, more),
+    el('div', { class: 'bt' }, hooks.act === null ? null : ack, more),
     refused,
     details,
   )

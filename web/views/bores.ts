@@ -15,7 +15,7 @@ const phaseRem = 1.4
 export function boresView(facts: SkidFacts, data: RunData) {
   const canvas = el('canvas', { class: 'bores', role: 'img' })
   let frame = 0
-  let shown: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string } | null = null
+  let shown: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string; rhythmMs: number } | null = null
 
   function draw(): void {
     frame = 0
@@ -47,7 +47,7 @@ export function boresView(facts: SkidFacts, data: RunData) {
     // Production or not.
     let y = 0
     const h = phaseRem * em - 3
-    const holdMs = 2200 * facts.stepSeconds
+    const holdMs = Math.max(2200 * facts.stepSeconds, s.rhythmMs)
     const made = stretches(data.production.points(), s.fromMs, s.atMs)
     for (const p of made) {
       const [l, r] = [x(p.fromMs), x(p.toMs)]
@@ -114,7 +114,7 @@ export function boresView(facts: SkidFacts, data: RunData) {
   const off = onPalette(ask)
   return {
     node: canvas,
-    show(next: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string }): void {
+    show(next: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string; rhythmMs: number }): void {
       shown = next
       canvas.setAttribute(
         'aria-label',

@@ -1,6 +1,6 @@
 import type { AlarmRow, LiveState, Marks } from '../../server/wire/index.ts'
 import { short } from '../model/format.ts'
-import type { RunData } from '../model/run-data.ts'
+import { type RunData, rhythmMs } from '../model/run-data.ts'
 import { type TrendKind, trendKinds, trendSpec, trendWords } from '../model/trend-spec.ts'
 import { boresView } from './bores.ts'
 import { el, fill, say } from './dom.ts'
@@ -108,6 +108,7 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
       toMs: shown.toMs,
       atMs: shown.atMs,
       hot: segment,
+      rhythmMs: rhythmMs(shown.state.clock.speed),
       word: hot?.onset == null ? '' : `closing since ${data.clock.hm(hot.onset.atMs)}`,
     })
   }

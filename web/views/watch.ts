@@ -195,7 +195,9 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
 
   function charts(state: LiveState, lead: string | null): void {
     chartAt = performance.now()
-    const atMs = state.data.lastRowMs === null ? state.clock.nowMs : Math.max(state.data.lastRowMs, state.clock.nowMs - 10_000)
+    const { lastRowMs } = state.data
+    const fresh = lastRowMs !== null && state.clock.nowMs - lastRowMs < 10_000 * state.clock.speed
+    const atMs = fresh ? lastRowMs : state.clock.nowMs
     const [fromMs, toMs] = windowOf(atMs)
     trends.show({ state, marks: followed.marks(), alarms: state.alarms, fromMs, toMs, atMs, lead })
   }

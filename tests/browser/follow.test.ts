@@ -1,0 +1,82 @@
+import { appendFileSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
+import { tmpdir } from 'node:os'
+import { join } from 'node:path'
+import type { Browser, Page } from 'playwright-core'
+import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import type { RunRow } from '../../server/wire/index.ts'
+import { chromiumPath, launch, open } from '../helpers/browser.ts'
+import { command, type ServerProcess, startServer } from '../helpers/server-process.ts'
+
+const chromium = chromiumPath()
+const until = (page: Page, test: string) =>
+  expect.poll(async () => page.evaluate(`Boolean(${test})`), { timeout: 20_000, interval: 100, message: test }).toBe(true)
+const data = 'document.querySelector("main").dataset'
+
+describe.runIf(chromium !== null)('a log that a data logger is still appending to', () => {
+  const dir = mkdtempSync(join(tmpdir(), 'clearbore-follow-'))
+  const log = join(dir, 'logger.csv')
+  let rows: string[] = []
+  let browser: Browser
+  let server: ServerProcess
+  let writer: NodeJS.Timeout
+  let next = 0
+
+  beforeAll(async () => {
+    // Forty minutes that end half a minute ahead of now: the writer appends the last minute as it happens.
+    const from = new Date(Math.floor(Date.now() / 1000) * 1000 - 39.5 * 60_000).toISOString().replace('.000', '')
+    const whole = join(dir, 'whole.csv')
+    await command([
+      'simulate',
+      '--skid',
+      'fixtures/skids/heron.yaml',
+      '--hours',
+      '0.67',
+      '--seed',
+      '3',
+      '--from',
+      from,
+      '--out',
+      whole,
+    ])
+    rows = readFileSync(whole, 'utf8').split('\n')
+    next = 39 * 60
+    writeFileSync(log, `${rows.slice(0, next).join('\n')}\n`)
+    ;[browser, server] = await Promise.all([
+      launch(chromium!),
+      startServer(['--skid', 'fixtures/skids/heron.yaml', '--follow', log, '--data', join(dir, 'store'), '--port', '0']),
+    ])
+  })
+  afterAll(async () => {
+    clearInterval(writer)
+    await browser?.close()
+    await server?.stop('SIGTERM')
+    rmSync(dir, { recursive: true, force: true })
+  })
+
+  it('is watched as a live skid with ratios from its own baseline, row by row, and told cut off when the logger stops', async () => {
+    const { page, faults } = await open(browser, server.url)
+    await until(page, `${data}.ready === 'true'`)
+    expect(await page.textContent('.strip .facts')).not.toContain('DEMO')
+    await until(page, `[...document.querySelectorAll('.fig.seg')].every((f) => f.dataset.ratio !== '')`)
+    const rowsNow = async () => ((await (await fetch(new URL('/api/runs', server.url))).json()) as RunRow[])[0]!.rows
+    const first = await rowsNow()
+    writer = setInterval(() => {
+      // Half of each row comes late, as from a logger that flushes when it likes.
+      const row = `${rows[next++] ?? ''}\n`
+      const cut = Math.floor(row.length / 2)
+      appendFileSync(log, row.slice(0, cut))
+      appendFileSync(log, row.slice(cut))
+    }, 250)
+    await until(
+      page,
+      `document.querySelector('main').dataset.cut === 'no' && document.querySelectorAll('.comb path')[1].getAttribute('d').length > 30`,
+    )
+    await expect.poll(rowsNow, { timeout: 10_000 }).toBeGreaterThan(first + 8)
+    clearInterval(writer)
+    await until(page, `document.querySelector('main').dataset.cut === 'source'`)
+    expect(await page.textContent('.cut')).toContain('its source of data is silent')
+    expect(await page.inputValue('#person')).toBe('')
+    expect(faults).toEqual([])
+    await page.context().close()
+  })
+})
