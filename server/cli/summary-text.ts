@@ -6,29 +6,16 @@ import { tableText } from './table-text.ts'
 
 /** What `analyse` prints: the run, each segment, alarms, advice, what was not used. Times in the skid's own zone with its offset. */
 export function summaryText(skid: Skid, report: Report, tallies: readonly LogTally[]): string {
-  const clock = localClock(skid.timeZone)
   const { run } = report
   const out: string[] = []
   const hours = run.from === null || run.to === null ? 0 : (Date.parse(run.to) - Date.parse(run.from)) / 3.6e6
+  const clock = localClock(skid.timeZone, hours > 20)
   out.push(
     `${skid.title}: ${run.from === null ? 'no usable rows' : `${clock.full(run.from)} to ${clock.full(run.to!)}, ${hours.toFixed(2)} h, ${run.rows.total} rows, ${run.scans} scans`}`,
   )
   if (run.phaseInferred) out.push('The log names no phases: production is inferred from flows and temperatures.')
   out.push('')
-  out.push(
-    tableText(
-      ['segment', 'clean ΔP [bar]', 'ratio now', 'ratio max', 'began (90 %)', 'growth [1/h]', 'limit met (80 %)'],
-      report.segments.map((s) => [
-        s.segment,
-        s.baseline === null ? '–' : `${s.baseline.dpBar.toFixed(3)}${s.baseline.provisional ? ' *' : ''}`,
-        ratio(s.ratio.last),
-        ratio(s.ratio.max),
-        interval(s.onset, clock),
-        s.growthPerHour === null ? '–' : s.growthPerHour.toFixed(3),
-        limit(s.forecast, clock),
-      ]),
-    ),
-  )
+  if (report.segments.length > 0) out.push(segmentTable(report, clock))
   if (report.segments.some((s) => s.baseline?.provisional)) out.push('* provisional: too little clean running for a final baseline')
   out.push('', `Alarms: ${report.alarms.length}`)
   if (report.alarms.length > 0)
@@ -49,11 +36,27 @@ export function summaryText(skid: Skid, report: Report, tallies: readonly LogTal
   return `${out.join('\n')}\n\n${caution}`
 }
 
+function segmentTable(report: Report, clock: Clock): string {
+  return tableText(
+    ['segment', 'clean ΔP [bar]', 'ratio now', 'ratio max', 'began (90 %)', 'growth [1/h]', 'limit met (80 %)'],
+    report.segments.map((s) => [
+      s.segment,
+      s.baseline === null ? '–' : `${s.baseline.dpBar.toFixed(3)}${s.baseline.provisional ? ' *' : ''}`,
+      ratio(s.ratio.last),
+      ratio(s.ratio.max),
+      interval(s.onset, clock),
+      s.growthPerHour === null ? '–' : s.growthPerHour.toFixed(3),
+      limit(s.forecast, report.run.to, clock),
+    ]),
+  )
+}
+
 type Clock = ReturnType<typeof localClock>
 const ratio = (r: number | null): string => (r === null ? '–' : r.toFixed(3))
 const interval = (o: OnsetReport | null, c: Clock): string =>
   o === null ? '–' : `${c.time(o.at)} (${c.time(o.low)} to ${c.time(o.high)})`
-const limit = (f: ForecastReport | null, c: Clock): string => (f === null ? '–' : `${c.time(f.low)} to ${c.time(f.high)}`)
+const limit = (f: ForecastReport | null, to: string | null, c: Clock): string =>
+  f === null ? '–' : to !== null && f.high <= to ? 'is met' : `${c.time(f.low)} to ${c.time(f.high)}`
 const alarmRow = (a: AlarmReport, c: Clock): string[] => [
   c.time(a.raised),
   a.cleared === null ? 'stands' : c.time(a.cleared),
@@ -77,8 +80,8 @@ function notUsedOf(report: Report, tallies: readonly LogTally[]): string[] {
   return [...out, ...report.notes]
 }
 
-/** Times of the zone: HH:mm:ss, and with date and offset; instants inside a text are put into the zone too. */
-function localClock(timeZone: string) {
+/** Times of the zone: HH:mm:ss, in a run longer than most of a day with month and day before it, and in full with date and offset; instants inside a text are put into the zone too. */
+function localClock(timeZone: string, dated: boolean) {
   const part = (options: Intl.DateTimeFormatOptions) => new Intl.DateTimeFormat('en-GB', { timeZone, hourCycle: 'h23', ...options })
   const time = part({ hour: '2-digit', minute: '2-digit', second: '2-digit' })
   const date = part({ year: 'numeric', month: '2-digit', day: '2-digit' })
@@ -93,6 +96,9 @@ function localClock(timeZone: string) {
         ?.value.replace('GMT', '') || '+00:00'
     return `${year}-${month}-${day} ${time.format(d)} ${zone}`
   }
-  const short = (iso: string): string => time.format(new Date(iso))
+  const short = (iso: string): string => {
+    const [day, month] = dated ? date.format(new Date(iso)).split('/') : []
+    return `${dated ? `${month}-${day} ` : ''}${time.format(new Date(iso))}`
+  }
   return { time: short, full, within: (text: string) => text.replace(/\d{4}-\d{2}-\d{2}T[\d:.]+Z/g, short) }
 }

@@ -164,8 +164,9 @@ export const skidShape = group(
     log: logShape,
     detection: detectionShape,
     tags: list(tag, { min: 1, name: 'tags' }),
-    streams: list(stream, { min: 1, name: 'streams' }),
-    segments: list(segment, { min: 1, name: 'segments' }),
+    // A file of tags alone is a beginning: its log is judged and kept, nothing is computed from it.
+    streams: list(stream, { min: 0, name: 'streams' }),
+    segments: list(segment, { min: 0, name: 'segments' }),
     alarms: alarmsShape,
   },
   { required: ['skid', 'tags', 'streams', 'segments'] },

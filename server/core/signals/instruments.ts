@@ -102,8 +102,10 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
       for (let t = 0; t < n; t++) anything ||= scan.used[t]! > 0 && scan.held[t] === 0
       if (anything) {
         if (s.lastRowMs >= 0) {
-          const gap = Math.min(tMs - s.lastRowMs, 60_000)
-          s.rowGapMs = s.rowGapMs === 0 ? gap : s.rowGapMs + (gap - s.rowGapMs) / 16
+          // One outage must not make the watch deaf: the usual gap grows by a quarter at most.
+          const gap = tMs - s.lastRowMs
+          const usual = s.rowGapMs
+          s.rowGapMs = usual === 0 ? gap : usual + Math.min(usual / 4, (gap - usual) / 16)
         }
         s.lastRowMs = tMs
       }
@@ -229,5 +231,5 @@ function touchesTag(layout: Layout, g: Layout['segments'][number], t: number): b
 }
 
 /** Tags that something is computed from. */
-export const usedTags = (layout: Layout): boolean[] =>
+const usedTags = (layout: Layout): boolean[] =>
   layout.skid.tags.map((_, t) => layout.segments.some((g) => touchesTag(layout, g, t)))

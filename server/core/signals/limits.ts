@@ -100,7 +100,7 @@ const rules: readonly LimitRule[] = [
 ]
 
 /** A delay never asks for more than fifteen scans: a grid finer than a second belongs to a run that lives for minutes. */
-export const delayOnGrid = (delayS: number, scanS: number): number => Math.min(delayS, 15 * scanS)
+const delayOnGrid = (delayS: number, scanS: number): number => Math.min(delayS, 15 * scanS)
 
 /** One limit of one segment, with what it reads. */
 interface Check {
