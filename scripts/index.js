@@ -24,6 +24,7 @@ const tasks = {
   soak: async () => (await import('./test.js')).soak(rest),
   bench: async () => (await import('./test.js')).bench(rest),
   fixtures: async () => (await import('./fixtures.js')).fixtures(),
+  unused: async () => (await import('./unused.js')).unused(),
 }
 
 /** Runs a development tool of node_modules and ends with its code when it fails. */

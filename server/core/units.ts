@@ -1,5 +1,3 @@
-import { MonitorError } from './errors.ts'
-
 /** What a tag measures. */
 export const quantities = [
   'pressure',
@@ -103,17 +101,8 @@ export const toSi = (value: number, unit: Unit | null): number =>
 export const fromSi = (si: number, unit: Unit | null): number =>
   unit === null ? si : (si - units[unit].offset) / units[unit].factor
 
-/** `toSi` of a unit given by name. Errors: CONFIG_RANGE for a unit the table does not hold. */
-export function unitNamed(name: string): Unit {
-  if (!Object.hasOwn(units, name))
-    throw new MonitorError('CONFIG_RANGE', `unknown unit '${name}'`, { hint: `one of ${Object.keys(units).join(', ')}` })
-  return name as Unit
-}
-
 export const paFromBar = (bar: number): number => bar * 1e5
 export const barFromPa = (pa: number): number => pa / 1e5
 export const kFromC = (c: number): number => c + 273.15
 export const cFromK = (k: number): number => k - 273.15
-export const m3sFromMlMin = (q: number): number => (q * 1e-6) / 60
 export const mlMinFromM3s = (q: number): number => q * 60e6
-export const msFromS = (s: number): number => s * 1000

@@ -1,7 +1,7 @@
 import { expect, it } from 'vitest'
 import { createCollector } from '../../server/core/pipeline/collect.ts'
 import { createPipeline } from '../../server/core/pipeline/pipeline.ts'
-import { simulatedBlocks } from '../../server/core/sim/blocks.ts'
+import { simulatedBlocks } from '../helpers/simulated-blocks.ts'
 import { randomScenario } from '../../server/core/sim/random-scenario.ts'
 import { truthOf } from '../../server/core/sim/truth-of.ts'
 import { type CaseScore, scoreCase } from '../../server/score/score.ts'

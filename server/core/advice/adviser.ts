@@ -25,7 +25,7 @@ export type Planner = (segments: readonly string[], ratios: Readonly<Record<stri
  * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare, at least, and a share of
  * the time left, as a forecast far off is a wide one. Site choice under change control; common practice.
  */
-export const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25 } as const
+const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25 } as const
 
 /**
  * When a flush should begin and what else is worth doing, as recommendations under the site's own procedure. A flush is advised before

@@ -1,7 +1,7 @@
 import type { Priority } from '../report.ts'
 
 /** States that an alarm has when nothing suppresses it. */
-export const baseStates = ['NORM', 'UNACK', 'ACKED', 'RTNUN', 'LUNACK', 'LACKED'] as const
+const baseStates = ['NORM', 'UNACK', 'ACKED', 'RTNUN', 'LUNACK', 'LACKED'] as const
 export type BaseState = (typeof baseStates)[number]
 /** All states by name: normal; active unacknowledged, acknowledged; returned unacknowledged; latched unacknowledged, acknowledged; suppressed. */
 export const alarmStates = [...baseStates, 'SHELVED', 'SBD', 'OOS'] as const

@@ -1,5 +1,3 @@
-import type { Quantity } from '../units.ts'
-
 /** What is alarmed on: a plain variable, an excursion found by a detector with its own persistence, or a derived chart. */
 export type Signalled = 'flow' | 'temperature' | 'exotherm' | 'pressure' | 'level' | 'derived' | 'quality'
 
@@ -35,12 +33,4 @@ export function delays(of: Signalled, b: DelayBasis): { deadbandPct: number; onD
   const capped = Math.min(on, 0.1 * b.timeToRespondS, of === 'flow' && b.residenceS !== null ? b.residenceS / 2 : on)
   const whole = (s: number) => (s === 0 ? 0 : Math.max(1, Math.round(s / b.scanS)) * b.scanS)
   return { deadbandPct, onDelayS: whole(capped), offDelayS: whole(off) }
-}
-
-/** Which row of the table a plant quantity falls under. */
-export function signalledBy(quantity: Quantity): Signalled {
-  if (quantity === 'massFlow' || quantity === 'volumeFlow') return 'flow'
-  if (quantity === 'pressure' || quantity === 'differentialPressure') return 'pressure'
-  if (quantity === 'temperature' || quantity === 'dewPoint') return 'temperature'
-  return quantity === 'level' || quantity === 'mass' ? 'level' : 'derived'
 }

@@ -1,5 +1,5 @@
 /** A flood begins with more than so many alarms in 10 min and ends with fewer than so many (ISA-18.2 cl. 16, from memory; some texts say ≥ 10). */
-export const floodDefaults = { startOver: 10, endUnder: 5, windowMs: 600_000 } as const
+const floodDefaults = { startOver: 10, endUnder: 5, windowMs: 600_000 } as const
 
 export interface Flood {
   readonly fromMs: number
@@ -39,6 +39,3 @@ export function flood(timesMs: readonly number[], toMs: number, { startOver, end
   }
   return floods
 }
-
-/** Whether there is a flood now, for the live list: the same rule, from annunciation times in rising order. */
-export const inFlood = (timesMs: readonly number[], nowMs: number): boolean => flood(timesMs, nowMs).at(-1)?.toMs === nowMs

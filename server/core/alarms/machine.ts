@@ -3,7 +3,6 @@ import {
   type AlarmState,
   type Context,
   type Input,
-  inputKinds,
   isSuppressed,
   type Outcome,
   type Policy,
@@ -30,25 +29,6 @@ export function transition(state: AlarmState, input: Input, ctx: Context): { sta
   const step = apply(state, input, ctx)
   if (step.outcome === null) return { state, records: [] }
   return { state: step.state, records: [record(state, step, input, ctx)] }
-}
-
-/** Simultaneous inputs in the fixed order quality, condition, logic, person, whatever order they came in. */
-export function transitionAll(
-  state: AlarmState,
-  inputs: readonly Input[],
-  ctx: Context,
-): { state: AlarmState; records: AlarmRecord[] } {
-  const rank = (i: Input) => inputKinds.indexOf(i.kind)
-  const text = (i: Input) => `${i.person ?? ''}\n${i.logic ?? ''}\n${i.reason ?? ''}\n${i.durationS ?? ''}\n${i.oneShot ?? ''}`
-  const sorted = [...inputs].sort((a, b) => rank(a) - rank(b) || (text(a) < text(b) ? -1 : text(a) > text(b) ? 1 : 0))
-  const records: AlarmRecord[] = []
-  let now = state
-  for (const input of sorted) {
-    const out = transition(now, input, ctx)
-    now = out.state
-    records.push(...out.records)
-  }
-  return { state: now, records }
 }
 
 function record(from: AlarmState, step: Step, input: Input, ctx: Context): AlarmRecord {

@@ -5,7 +5,7 @@ export const severities = ['low', 'medium', 'high'] as const
 export type Severity = (typeof severities)[number]
 
 /** Upper ends of the time bands, s: under 3, 3–10, 10–30, over 30 min (common practice). */
-export const bandsS = [180, 600, 1800] as const
+const bandsS = [180, 600, 1800] as const
 
 /** Priority by severity and time band: never by the size of the deviation. Common practice after ISA-18.2 cl. 9 (from memory). */
 export const priorityMatrix: Readonly<Record<Severity, readonly [Priority, Priority, Priority, Priority]>> = {

@@ -39,7 +39,7 @@ export interface Rationale {
 export const notReviewed = 'default, not reviewed for this site'
 
 /** Fields that a skid file may give, and what each must be. */
-export const rationaleFields = {
+const rationaleFields = {
   name: 'string',
   type: 'string',
   basis: 'string',
@@ -149,20 +149,4 @@ function checked(key: string, field: string, value: string | number | boolean): 
     throw new MonitorError('CONFIG_RANGE', `${at} is empty`, field === 'action' || field === 'consequence' ? { hint } : {})
   }
   return value
-}
-
-/** Checks all overrides of a skid file at load: every key must name an alarm, every field be right. Errors: CONFIG_RANGE, as `rationale`. */
-export function checkOverrides(overrides: Overrides, segments: readonly string[]): void {
-  const names = Object.keys(defaultRationales)
-  const kinds = Object.values(defaultRationales).map((r) => r.kind as string)
-  for (const [key, fields] of Object.entries(overrides)) {
-    const [name = '', segment] = key.split(':')
-    if (!names.includes(name) && !kinds.includes(name)) {
-      throw new MonitorError('CONFIG_RANGE', `alarms.${key} names no alarm`, { hint: `one of ${names.join(', ')}` })
-    }
-    if (segment !== undefined && !segments.includes(segment)) {
-      throw new MonitorError('CONFIG_RANGE', `alarms.${key} names no segment`, { hint: `one of ${segments.join(', ')}` })
-    }
-    for (const [field, value] of Object.entries(fields)) checked(key, field, value)
-  }
 }

@@ -77,7 +77,7 @@ export function explanations(layout: Layout): Explanation[] {
 }
 
 /** Signature of a unit disturbance on segment `s`, `age` steps after its birth; deposit and ramp grow by 1 a step. */
-export function signature(
+function signature(
   layout: Layout,
   c: Explanation,
   s: number,

@@ -3,7 +3,7 @@ import { flowAtDp } from '../hydraulics/branches.ts'
 import { type ChannelGeometry, roundArea } from '../hydraulics/channel.ts'
 import { cleanDp } from '../hydraulics/clean-dp.ts'
 import { coilCriticalReynolds, whiteCoilRatio } from '../hydraulics/curvature.ts'
-import { colebrook, darcyFriction } from '../hydraulics/friction.ts'
+import { colebrook, darcyFriction, reynolds } from '../hydraulics/friction.ts'
 import type { WorkedExample } from './worked-example.ts'
 
 const pipe = (diameterM: number, lengthM: number, more: Partial<ChannelGeometry> = {}): ChannelGeometry => ({
@@ -83,6 +83,15 @@ export const flowExamples: readonly WorkedExample[] = [
     unit: 'm³/s',
     tolerance: 0.01,
     compute: () => flowAtDp(oil, 100_000, 900, 0.18) / 900,
+  },
+  {
+    subject,
+    name: 'the same: Reynolds number',
+    source: white,
+    printed: 810,
+    unit: '',
+    tolerance: 0.01,
+    compute: () => reynolds(flowAtDp(oil, 100_000, 900, 0.18), 0.06, 0.18),
   },
   {
     subject,

@@ -21,11 +21,17 @@ const viscosities: readonly (readonly [string, number, number, number])[] = [
   ['ethanol', 25, 1.074, 0.05],
   ['acetone', 25, 0.306, 0.05],
   ['diethyl-ether', 25, 0.224, 0.05],
+  ['dichloromethane', -25, 0.727, 0.1],
   ['dichloromethane', 25, 0.413, 0.05],
   ['ethyl-acetate', 25, 0.423, 0.05],
   ['acetonitrile', 25, 0.369, 0.08],
   ['1,4-dioxane', 25, 1.177, 0.05],
   ['dimethylformamide', 25, 0.794, 0.08],
+]
+/** Viscosity of water as its standard prints it, mPa s. */
+const waterViscosities: readonly (readonly [number, number])[] = [
+  [0, 1.792],
+  [20, 1.0016],
 ]
 const densities: readonly (readonly [string, number, number])[] = [
   ['tetrahydrofuran', 20, 888],
@@ -62,6 +68,17 @@ export const liquidExamples: readonly WorkedExample[] = [
     tolerance: 1e-4,
     compute: () => at('water', 25).rhoKgM3,
   },
+  ...waterViscosities.map(
+    ([tempC, printed]): WorkedExample => ({
+      subject: 'liquids',
+      name: `water viscosity, ${tempC} °C`,
+      source: 'IAPWS 2008',
+      printed,
+      unit: 'mPa s',
+      tolerance: 1e-3,
+      compute: () => at('water', tempC).viscPaS * 1e3,
+    }),
+  ),
   ...viscosities.map(
     ([solvent, tempC, printed, tolerance]): WorkedExample => ({
       subject: 'liquids',

@@ -56,23 +56,6 @@ function refuseStill(at: WorkingPoint): void {
   if (at.massFlowKgS === 0) throw new MonitorError('HYDRAULICS_RANGE', 'a deposit cannot be told from a channel without flow')
 }
 
-/**
- * Bore exponent e = -∂ln ΔP/∂ln d at constant flow: 4 laminar, 4.75 smooth turbulent, 5 rough, about 4.2 in a laminar coil.
- * Central difference of 1e-4. With it the closed forms below stand in for the full solution in the scan loop: within 1 % of ln
- * ratio while the regime stays.
- */
-export function boreExponent(channel: ChannelGeometry, at: WorkingPoint, options?: DpOptions): number {
-  refuseStill(at)
-  const h = 1e-4
-  const ln = (scale: number): number => Math.log(resistance(narrowed(channel, (channel.diameterM * (1 - scale)) / 2), at, options))
-  return (ln(Math.exp(-h)) - ln(Math.exp(h))) / (2 * h)
-}
-
-/** Closed form, uniform: δ/a = 1 - r^(-1/e) [-], a the radius; 0 at r ≤ 1. */
-export const thicknessShare = (ratio: number, exponent: number): number => (ratio > 1 ? 1 - ratio ** (-1 / exponent) : 0)
-/** Closed form, uniform: r = (1 - δ/a)^-e; the inverse of `thicknessShare`. */
-export const ratioOfShare = (share: number, exponent: number): number => (1 - share) ** -exponent
-
 /** Closed form, local: a constriction to bore ratio b (0 to 1) over a share f of the length, 1 - f + f b^-e; no throat losses. */
 export const constrictionRatio = (lengthShare: number, boreRatio: number, exponent: number): number =>
   1 - lengthShare + lengthShare * boreRatio ** -exponent

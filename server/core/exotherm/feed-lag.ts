@@ -2,7 +2,7 @@ import type { ReactorConfig, ReactorScan } from './types.ts'
 import type { Reactor } from './watch-state.ts'
 
 /** Lags of the feed, s: the one in use, a faster and a slower one for the doubt between, and a long one. */
-export const feedLagsS = [35, 10, 55, 600] as const
+const feedLagsS = [35, 10, 55, 600] as const
 
 /** The limiting feed; all feeds together where nothing is known of the wall. */
 function feedOf(rc: ReactorConfig, s: ReactorScan): number | null {

@@ -52,7 +52,7 @@ export interface FeedRatioState {
   over: boolean
 }
 
-export const feedRatioDefaults = {
+const feedRatioDefaults = {
   smoothS: 3,
   windowS: 1200,
   /** Least and greatest deviation that counts as off, and sds between them. */

@@ -7,7 +7,7 @@ import { type SolventEntry, solventNamed, solvents } from './solvents.ts'
 import { FAR_K, type Fluid, refuseFar } from './state.ts'
 import { tableFluid } from './table-fluid.ts'
 
-export { mixByMass, mixState } from './mixture.ts'
+export { mixByMass } from './mixture.ts'
 export { solventNamed } from './solvents.ts'
 export type { Fluid, FluidState } from './state.ts'
 

@@ -38,7 +38,7 @@ export interface Mode {
 /** Below this share of its usual flow a stream is out of production; below the second it stands still. */
 const least = { production: 0.4, rest: 0.03 }
 /** Steps: before detectors are armed at first and after a stop; out of production before it counts as a stop; settled window. */
-export const modeSteps = { arm: 10, armAgain: 24, stop: 16, settled: 4 }
+const modeSteps = { arm: 10, armAgain: 24, stop: 16, settled: 4 }
 const settled = { flow: 0.03, tempK: 0.8 }
 /** Half of all thermometers so far from their usual readings is a flush or a warm-up, not production, K; how slowly the usual follows, steps. */
 const band = { tempK: 8, follow: 120 }

@@ -27,7 +27,7 @@ const isKind = (name: unknown): name is EventKind => typeof name === 'string' &&
 const texts = new Set(['segment', 'law', 'what', 'stream', 'tag', 'fault'])
 
 /** An event from its keys: what is missing is filled in, what is unknown or of the wrong type refused. Errors: SIM_OPTION. */
-export function eventFrom(raw: unknown, where: string): SimEvent {
+function eventFrom(raw: unknown, where: string): SimEvent {
   if (typeof raw !== 'object' || raw === null) return fail(`${where}: expected an object`)
   const { kind, ...given } = raw as Record<string, unknown>
   if (!isKind(kind)) return fail(`${where}: unknown kind of event '${String(kind)}'`, `one of ${eventKinds.join(', ')}`)

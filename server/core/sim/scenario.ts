@@ -97,7 +97,7 @@ export interface Dirt {
   readonly broken: number
 }
 
-export const cleanFile: Dirt = { jitterMs: 0, missing: 0, duplicate: 0, outOfOrder: 0, broken: 0 }
+const cleanFile: Dirt = { jitterMs: 0, missing: 0, duplicate: 0, outOfOrder: 0, broken: 0 }
 
 /** A quiet run of so many hours from 2031-05-05T18:00Z with a row a second; give what differs. */
 export const scenarioOf = (over: Partial<Scenario> & Pick<Scenario, 'hours' | 'seed'>): Scenario => ({

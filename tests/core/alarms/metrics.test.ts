@@ -1,7 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import type { AlarmRecord } from '../../../server/core/alarms/alarm-state.ts'
-import { flood, inFlood } from '../../../server/core/alarms/flood.ts'
+import { flood } from '../../../server/core/alarms/flood.ts'
 import { alarmMetrics } from '../../../server/core/alarms/metrics.ts'
 
 const base: AlarmRecord = {
@@ -137,14 +137,5 @@ describe('floods', () => {
       [3_010_000, 11],
     ])
     expect(found[0]!.toMs).toBe(100_000 + 5 * 120_000 + 600_000)
-  })
-  it('is seen live: in flood at the eleventh, not before, and over ten minutes after the last but four', () => {
-    const times = Array.from({ length: 11 }, (_, i) => i * 1000)
-    expect([inFlood(times.slice(0, 10), 9000), inFlood(times, 10_000), inFlood(times, 605_000), inFlood(times, 606_001)]).toEqual([
-      false,
-      true,
-      true,
-      false,
-    ])
   })
 })

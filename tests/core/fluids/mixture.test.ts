@@ -1,6 +1,7 @@
 import fc from 'fast-check'
 import { expect, it } from 'vitest'
-import { fluidOf, mixByMass, mixState } from '../../../server/core/fluids/fluid.ts'
+import { fluidOf, mixByMass } from '../../../server/core/fluids/fluid.ts'
+import { mixState } from '../../../server/core/fluids/mixture.ts'
 import { tableFluid } from '../../../server/core/fluids/table-fluid.ts'
 
 const thf = fluidOf({ kind: 'solvent', solvent: 'THF' })

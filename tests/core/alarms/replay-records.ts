@@ -1,5 +1,5 @@
-import { type AlarmRecord, type AlarmState, type Input, normal, type Policy } from './alarm-state.ts'
-import { transition } from './machine.ts'
+import { type AlarmRecord, type AlarmState, type Input, normal, type Policy } from '../../../server/core/alarms/alarm-state.ts'
+import { transition } from '../../../server/core/alarms/machine.ts'
 
 /** The state after a journal: replays every accepted input of one alarm in order, so the record alone restores the alarm (ALM-10). */
 export function replayRecords(records: readonly AlarmRecord[], policy: Policy): AlarmState {

@@ -1,10 +1,10 @@
-import { cell, phases, type RowBlock, rowBlock } from '../reading.ts'
-import type { Skid } from '../skid.ts'
-import type { Scenario } from './scenario.ts'
-import { rowsOf, type SimRow, simulate } from './simulator.ts'
+import { cell, phases, type RowBlock, rowBlock } from '../../server/core/reading.ts'
+import type { Scenario } from '../../server/core/sim/scenario.ts'
+import { rowsOf, type SimRow, simulate } from '../../server/core/sim/simulator.ts'
+import type { Skid } from '../../server/core/skid.ts'
 
 /** Puts a simulated row behind those in a block; the phase follows the tags where the skid has a phase column. */
-export function putRow(block: RowBlock, skid: Skid, row: SimRow): void {
+function putRow(block: RowBlock, skid: Skid, row: SimRow): void {
   const at = block.rows * block.width
   block.tMs[block.rows] = row.tMs
   for (let i = 0; i < skid.tags.length; i++) {
@@ -20,7 +20,7 @@ export function putRow(block: RowBlock, skid: Skid, row: SimRow): void {
 }
 
 /** The columns of a block of this skid. */
-export const blockWidth = (skid: Skid): number => skid.tags.length + (skid.phaseColumn === null ? 0 : 1)
+const blockWidth = (skid: Skid): number => skid.tags.length + (skid.phaseColumn === null ? 0 : 1)
 
 /**
  * A whole run as blocks for the pipeline, without a file between: the same entries as reading the log that the run would write (dirt left
