@@ -1,10 +1,10 @@
+import { solventNamed, solvents, solventWords } from '../core/fluids/solvents.ts'
 import type { FluidSpec } from '../core/skid.ts'
 import { nearest } from './nearest.ts'
 import { pathText } from './problem.ts'
 import { group, list, number, type Reader, text } from './readers.ts'
-import { solventNamed, solventNames, solventWords } from './solvents.ts'
 
-const solvent = text(`one of ${solventNames.join(', ')}`, (value) => {
+const solvent = text(`one of ${solvents.map((s) => s.name).join(', ')}`, (value) => {
   if (solventNamed(value) !== null) return null
   const near = nearest(value, solventWords)
   return { hint: near === null ? 'or give densityKgM3 and viscosityMPaS of the liquid' : `did you mean '${near}'?` }
@@ -55,7 +55,7 @@ export const fluidShape: Reader<FluidSpec> = {
       walk.say([...path, 'mixture'], `the mass fractions sum to ${Number(sum.toPrecision(6))}`, 'a sum of 1 within 0.001')
     const named = new Set<string>()
     found.mixture?.forEach((part, i) => {
-      const name = part?.solvent === undefined ? null : solventNamed(part.solvent)
+      const name = part?.solvent === undefined ? null : (solventNamed(part.solvent)?.name ?? null)
       if (name !== null && named.has(name))
         walk.say(
           [...path, 'mixture', i, 'solvent'],
@@ -85,7 +85,7 @@ export const fluidShape: Reader<FluidSpec> = {
 
 /** Only called once nothing is wrong with it. */
 function spec(found: NonNullable<ReturnType<typeof keys.read>>): FluidSpec | undefined {
-  const full = (name: string | undefined): string => solventNamed(name ?? '') ?? ''
+  const full = (name: string | undefined): string => solventNamed(name ?? '')?.name ?? ''
   if (found.solvent !== undefined) return { kind: 'solvent', solvent: full(found.solvent) }
   if (found.mixture !== undefined)
     return {

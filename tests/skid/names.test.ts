@@ -1,9 +1,8 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { solventNamed as physicsOf } from '../../server/core/fluids/fluid.ts'
+import { solventNamed, solvents, solventWords } from '../../server/core/fluids/solvents.ts'
 import { timeParser } from '../../server/ingest/csv/time-parse.ts'
 import { editDistance, nearest } from '../../server/skid/nearest.ts'
-import { solventNamed, solventNames, solventWords } from '../../server/skid/solvents.ts'
 import { timeFormatMend } from '../../server/skid/time-format.ts'
 
 describe('nearest name', () => {
@@ -38,13 +37,13 @@ describe('nearest name', () => {
 })
 
 describe('solvents', () => {
-  it('has the 18 of the contract, each with its properties in the physics', () => {
-    expect(solventNames.length).toBe(18)
-    expect(solventNames.filter((name) => physicsOf(name) === null)).toEqual([])
+  it('has the 18 that a skid file may name, each under one full name', () => {
+    expect(new Set(solvents.map((s) => s.name)).size).toBe(18)
+    expect(solvents.filter((s) => solventNamed(s.name) !== s)).toEqual([])
   })
   it('takes full and short names in any case, with blanks for hyphens', () => {
     const full = ['THF', 'thf', '2-MeTHF', 'mtbe', 'DCM', 'DMF', 'Dme', 'Diethyl Ether', 'ETHYL-ACETATE', ' toluene '].map(
-      solventNamed,
+      (name) => solventNamed(name)?.name,
     )
     // biome-ignore format: one list
     expect(full).toEqual([

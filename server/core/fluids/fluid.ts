@@ -8,7 +8,6 @@ import { FAR_K, type Fluid, refuseFar } from './state.ts'
 import { tableFluid } from './table-fluid.ts'
 
 export { mixByMass } from './mixture.ts'
-export { solventNamed } from './solvents.ts'
 export type { Fluid, FluidState } from './state.ts'
 
 /** A pure solvent as a Fluid. Errors: `at` throws FLUID_RANGE more than FAR_K outside the published range. */

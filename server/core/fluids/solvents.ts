@@ -195,7 +195,7 @@ export const solvents: readonly SolventEntry[] = [
   },
   {
     name: 'dichloromethane',
-    aliases: ['DCM', 'methylene-chloride'],
+    aliases: ['DCM', 'methylene chloride'],
     molarMassKgMol: 0.08493258,
     freezingC: -95,
     boilingC: 39.8,
@@ -297,7 +297,10 @@ export const solvents: readonly SolventEntry[] = [
 const key = (name: string): string => name.toLowerCase().replace(/[\s_-]+/g, '-')
 const byName = new Map(solvents.flatMap((s) => [s.name, ...s.aliases].map((n) => [key(n), s] as const)))
 
+/** Every name that is taken, full ones first. */
+export const solventWords: readonly string[] = [...solvents.map((s) => s.name), ...solvents.flatMap((s) => s.aliases)]
+
 /** The solvent by its full or short name (case, spaces and hyphens do not matter); null when there is none. */
 export function solventNamed(name: string): SolventEntry | null {
-  return byName.get(key(name)) ?? null
+  return byName.get(key(name.trim())) ?? null
 }

@@ -1,5 +1,6 @@
 import { MonitorError } from '../errors.ts'
-import { type Fluid, pureFluid, solventNamed } from '../fluids/fluid.ts'
+import { type Fluid, pureFluid } from '../fluids/fluid.ts'
+import { solventNamed } from '../fluids/solvents.ts'
 import { cFromK } from '../units.ts'
 import type { FlushSettings } from './input.ts'
 import type { FlushPath } from './legs.ts'

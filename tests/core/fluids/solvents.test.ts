@@ -1,8 +1,8 @@
 import { readFileSync } from 'node:fs'
 import { describe, expect, it } from 'vitest'
 import { MonitorError } from '../../../server/core/errors.ts'
-import { fluidOf, solventNamed } from '../../../server/core/fluids/fluid.ts'
-import { solvents } from '../../../server/core/fluids/solvents.ts'
+import { fluidOf } from '../../../server/core/fluids/fluid.ts'
+import { solventNamed, solvents } from '../../../server/core/fluids/solvents.ts'
 import { FAR_K } from '../../../server/core/fluids/state.ts'
 import { kFromC } from '../../../server/core/units.ts'
 
