@@ -1,4 +1,4 @@
-import { type Belief, observe } from './growth-filter.ts'
+import type { Belief } from './growth-filter.ts'
 import { filmOfRatio, growthShape, ratioOfFilm } from './law.ts'
 import type { Bin, Interval } from './points.ts'
 import type { GrowthSettings } from './settings.ts'
@@ -35,7 +35,7 @@ interface Hypothesis {
   readonly filmLimit: number
   readonly cv: number
   /** after a slough-off growth goes on at the pace it had (true) or at the pace of the thinner film (false) */
-  readonly keepsPace: boolean
+  keepsPace: boolean
 }
 
 /** Every explanation the settings allow, weighed by how well it tells the growth so far; the weights sum to 1. */
@@ -48,6 +48,7 @@ export function explanations(task: Task): Explained[] {
     { ms: onset.highMs, weight: 0.185 },
   ]
   const raw: { log: number; left: number; sd: number; growth: number }[] = []
+  const node: Followed = { log: 0, left: 0, sd: 0, growth: 0 }
   let top = -Infinity
   const sloughed = task.falls.some((fall) => fall > 0)
   for (const { ms, weight: wOnset } of onsets) {
@@ -58,12 +59,14 @@ export function explanations(task: Task): Explained[] {
       for (const { k, weight: wLaw } of settings.laws) {
         for (const { cv, weight: wClock } of settings.clocks) {
           const prior = Math.log(wOnset * wFraction * wLaw * wClock)
-          const { lnLifeMs, sd } = lifeNear(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace: false })
+          const hypothesis: Hypothesis = { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace: false }
+          const { lnLifeMs, sd } = lifeNear(task, hypothesis)
           const spacing = (2 * settings.gridReach * sd) / (settings.gridNodes - 1)
           for (const keepsPace of sloughed ? [false, true] : [false]) {
             for (let i = 0; i < settings.gridNodes; i++) {
               const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
-              const node = follow(task, { onsetMs: ms, k, fraction, filmLimit, cv, keepsPace }, lifeMs)
+              hypothesis.keepsPace = keepsPace
+              follow(task, hypothesis, lifeMs, node)
               // the question may come at any time of a life alike: a life of twice the length has half the chance to be at this age
               const age = Math.log(grownMs / (grownMs + node.left))
               const log = prior + Math.log(spacing) + age + settings.forecastPower * node.log
@@ -101,25 +104,38 @@ function lifeNear(task: Task, { onsetMs, k, fraction, filmLimit, cv }: Hypothesi
   return { lnLifeMs: Math.log(Math.max(anchor.tMs - onsetMs, 1000) / u), sd }
 }
 
-/** One hypothesis followed through the data; times in lives T. */
-function follow(task: Task, { onsetMs, k, fraction, filmLimit, cv, keepsPace }: Hypothesis, lifeMs: number) {
-  const { bins, steps, falls, nowMs } = task
-  let lost = 0
-  const b: Belief = { ...task.base }
+/** What became of a hypothesis: ln likelihood, time left to the limit with its sd, ms, growth of the ratio now, 1/ms. */
+interface Followed {
+  log: number
+  left: number
+  sd: number
+  growth: number
+}
+
+/**
+ * One hypothesis followed through the data; times in lives T. Thousands are followed a forecast: `out` takes the result, and the step of
+ * `growth-filter.ts` is written out here in local numbers, in the same order.
+ */
+function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followed): void {
+  const { onsetMs, k, fraction, filmLimit, cv, keepsPace } = hypothesis
+  const { bins, steps, falls, nowMs, lastSd } = task
+  let { z, w, c, zz, zw, zc, ww, wc, cc } = task.base
   const cv2 = cv * cv
   const linear = Math.abs(k) < 1e-6
   const unit = linear ? 1 : 1 / Math.expm1(k)
+  let lost = 0
   let log = 0
   let before = 0
   let slopeNow = 0
   let ratioNow = 1
   for (let i = 0; i < bins.length; i++) {
-    const t = (bins[i]!.tMs - onsetMs) / lifeMs
+    const bin = bins[i]!
+    const t = (bin.tMs - onsetMs) / lifeMs
     if (t > before) {
-      b.ww += cv2 * (t - before)
+      ww += cv2 * (t - before)
       before = t
     }
-    const u = Math.max(0, t + b.w)
+    const u = Math.max(0, t + w)
     const grow = linear ? 0 : Math.exp(k * u)
     const film = Math.max(0, Math.min(0.97, filmLimit * (linear ? u : (grow - 1) * unit) - lost))
     const gap = 1 - film
@@ -128,21 +144,47 @@ function follow(task: Task, { onsetMs, k, fraction, filmLimit, cv, keepsPace }: 
     const slope = t <= 0 ? 0 : (4 * power * filmLimit * (linear ? 1 : k * grow * unit)) / (gap * ratio)
     const fall = falls[i]!
     if (fall > 0 && keepsPace) {
-      const rest = filmOfRatio(Math.max(1, Math.exp(bins[i]!.lnRatio - b.c)), fraction)
+      const rest = filmOfRatio(Math.max(1, Math.exp(bin.lnRatio - c)), fraction)
       lost += Math.max(0, film - rest)
-      b.ww += task.lastSd ** 2 / Math.max(slope * slope, 1e-6)
+      ww += lastSd ** 2 / Math.max(slope * slope, 1e-6)
       log -= Math.log(2 * fall)
       continue
     }
-    if (fall > 0) b.ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
-    log += observe(b, steps[i]!, Math.log(ratio), slope, bins[i]!.lnRatio)
+    if (fall > 0) ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
+    const { rho, size, white } = steps[i]!
+    z *= rho
+    zz = rho * rho * zz + 1 - rho * rho
+    zw *= rho
+    zc *= rho
+    const hz = size * zz + slope * zw + zc
+    const hw = size * zw + slope * ww + wc
+    const hc = size * zc + slope * wc + cc
+    let s = size * hz + slope * hw + hc + white
+    const e = bin.lnRatio - size * z - Math.log(ratio) - c
+    if (e * e > 25 * s) s = (e * e) / 25
+    const kz = hz / s
+    const kw = hw / s
+    const kc = hc / s
+    z += kz * e
+    w += kw * e
+    c += kc * e
+    zz -= kz * hz
+    zw -= kz * hw
+    zc -= kz * hc
+    ww -= kw * hw
+    wc -= kw * hc
+    cc -= kc * hc
+    log += -0.5 * (Math.log(s) + (e * e) / s)
     slopeNow = slope
     ratioNow = ratio
   }
   const now = (nowMs - onsetMs) / lifeMs
   const end = 1 + lost / filmLimit
   const uEnd = linear ? end : Math.min(4, Math.log1p(Math.max(-0.99, end * Math.expm1(k))) / k)
-  const left = Math.max(0, uEnd - now - b.w)
-  const sd = Math.sqrt(Math.max(0, b.ww) + cv2 * (left + Math.max(0, now - before)))
-  return { log, left: left * lifeMs, sd: sd * lifeMs, growth: (slopeNow * ratioNow) / lifeMs }
+  const left = Math.max(0, uEnd - now - w)
+  const sd = Math.sqrt(Math.max(0, ww) + cv2 * (left + Math.max(0, now - before)))
+  out.log = log
+  out.left = left * lifeMs
+  out.sd = sd * lifeMs
+  out.growth = (slopeNow * ratioNow) / lifeMs
 }

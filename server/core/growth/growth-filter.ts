@@ -22,7 +22,7 @@ export function cleanBelief(clean: readonly Bin[], steps: readonly WanderStep[])
 }
 
 /** One filter step: y = size·z + m + slope·(w − its mean) + c + white. Returns the log likelihood; an innovation beyond 5 sd is widened to it. */
-export function observe(b: Belief, step: WanderStep, m: number, slope: number, y: number): number {
+function observe(b: Belief, step: WanderStep, m: number, slope: number, y: number): number {
   const rho = step.rho
   b.z *= rho
   b.zz = rho * rho * b.zz + 1 - rho * rho
