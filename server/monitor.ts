@@ -28,12 +28,7 @@ export interface MonitorOptions {
   readonly giveUpMs?: number
 }
 
-export interface LiveRun {
-  readonly run: RunId
-  readonly stepsRun: RunId
-  readonly skid: Skid
-  readonly source: Source
-}
+export type LiveRun = { readonly run: RunId; readonly stepsRun: RunId; readonly skid: Skid; readonly source: Source }
 
 interface Live extends LiveRun {
   readonly engine: Engine
@@ -42,6 +37,8 @@ interface Live extends LiveRun {
   /** In the engine and not yet journalled and told. */
   untold: boolean
   sourceState: string
+  /** Why the analysis of this run stopped; its readings are recorded all the same, and other runs go on. */
+  broken: string | null
 }
 
 const passing = new Set(['DISK_FULL', 'STORE_LOCKED'])
@@ -63,7 +60,8 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
   const ended: ((live: LiveRun) => void)[] = []
 
   const stateOfLive = (live: Live): LiveState => {
-    const source = fault === null ? live.source.status() : { state: 'failed' as const, message: `not recording: ${fault}` }
+    const said = fault !== null ? `not recording: ${fault}` : live.broken
+    const source = said === null ? live.source.status() : { state: 'failed' as const, message: said }
     return engineState(live.engine, live.source.clock(), source, live.source.usualGapS())
   }
 
@@ -81,8 +79,14 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
 
   /** Entries are appended, so the engine may take them. */
   function take(live: Live, entries: readonly Entry[]): void {
-    live.engine.push(entries)
     live.untold = true
+    if (live.broken !== null) return
+    try {
+      live.engine.push(entries)
+    } catch (error) {
+      live.broken = `the analysis failed after entry ${live.engine.seq()}; readings are still recorded`
+      log(`run ${live.run}: ${live.broken}: ${error instanceof Error ? (error.stack ?? error.message) : String(error)}`)
+    }
   }
 
   /** Writes what the engines said and gives it to the publishers. */
@@ -143,15 +147,17 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
 
   function snapshot(): void {
     snapshotAt = steadyMs()
-    for (const live of lives.values()) if (!live.untold) live.engine.save()
+    for (const live of lives.values()) if (!live.untold && live.broken === null) live.engine.save()
   }
 
   /** The run is over: its last scans close, its report stands. */
   function end(live: Live): void {
-    live.engine.finish()
-    live.untold = true
-    journalAndTell([live])
-    live.engine.save()
+    if (live.broken === null) {
+      live.engine.finish()
+      live.untold = true
+      journalAndTell([live])
+      live.engine.save()
+    }
     store.runs.setState(live.run, 'ended')
     store.runs.setState(live.stepsRun, 'ended')
     lives.delete(live.run)
@@ -177,7 +183,7 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     /** A run that lives from now on: a new one, or one that a process before this one left; it goes on where it stood. */
     add(live: LiveRun): void {
       const engine = createEngine({ skid: live.skid, store, run: live.run, stepsRun: live.stepsRun })
-      lives.set(live.run, { ...live, engine, waiting: null, untold: true, sourceState: '' })
+      lives.set(live.run, { ...live, engine, waiting: null, untold: true, sourceState: '', broken: null })
       for (const p of publishers) p.runs()
     },
     publishTo: (p: Publisher): void => {

@@ -122,7 +122,18 @@ export async function startServing(o: ServingOptions) {
     const w = watchedOf.get(run)
     if (w?.source.kind === 'simulated') watch(w, begin(w))
   })
-  for (const w of o.watched) watch(w, left(w) ?? begin(w))
+  for (const w of o.watched) {
+    const run = left(w)
+    try {
+      watch(w, run ?? begin(w))
+    } catch (error) {
+      // A run that cannot be taken up again must not keep its skid from being watched.
+      const isStore = error instanceof MonitorError && /^(STORE|DISK)_/.test(error.code)
+      if (run === null || isStore) throw error
+      o.log(`run ${run} cannot be taken up again, a new one begins: ${error instanceof Error ? error.stack : String(error)}`)
+      watch(w, begin(w))
+    }
+  }
 
   const isLoopback = ['127.0.0.1', 'localhost', '::1'].includes(o.host)
   const { app, hub, publisher } = await buildApp({

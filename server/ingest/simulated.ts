@@ -22,8 +22,10 @@ interface State {
   readonly [kept: string]: Json
 }
 
-/** Most rows in one poll: after a pause of the process the run goes on where it stood, it does not rush. */
-const mostRows = 7200
+/** The clock runs at most so many rows ahead: after a pause of the process, or on a slow machine, the run goes on where it stood, it does not rush. */
+const mostAhead = 7200
+/** Most rows in one poll, so that requests of people get their turn in between. */
+const mostRows = 512
 
 /**
  * The simulated skid as a source, `speed` times faster than time. Its clock is the simulator's; it stands still while the process is
@@ -42,7 +44,7 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
 
   const advance = (): void => {
     const now = steadyMs()
-    nowMs = Math.min(nowMs + (now - lastMs) * speed, scenario.fromMs + Math.min(total, taken + mostRows) * logMs)
+    nowMs = Math.min(nowMs + (now - lastMs) * speed, scenario.fromMs + Math.min(total, taken + mostAhead) * logMs)
     lastMs = now
   }
   return {
@@ -50,7 +52,8 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
     about: `simulator, scenario '${scenario.name}' with seed ${scenario.seed}, ${speed} times faster than time`,
     async poll() {
       advance()
-      const due = Math.min(total, Math.floor((nowMs - scenario.fromMs) / logMs)) - taken
+      const waiting = Math.min(total, Math.floor((nowMs - scenario.fromMs) / logMs)) - taken
+      const due = Math.min(waiting, mostRows)
       const block = rowBlock(Math.max(0, due), width)
       for (; block.rows < due; block.rows++) {
         const r = block.rows
@@ -73,7 +76,7 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
         ...words,
         entries: due > 0 ? [{ kind: 'rows', block }] : [],
         state: { ...(state as State | null), rows: taken },
-        more: false,
+        more: waiting > due,
         ended: taken >= total,
       }
     },

@@ -1,14 +1,12 @@
-import { chmodSync, mkdirSync, readFileSync, writeFileSync } from 'node:fs'
+import { chmodSync, writeFileSync } from 'node:fs'
 import { createServer } from 'node:net'
 import { join } from 'node:path'
 import Database from 'better-sqlite3'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
-import type { Report } from '../../server/core/report.ts'
-import { demoScenario } from '../../server/core/sim/demo.ts'
-import { logText } from '../../server/core/sim/log-text.ts'
+import { runCli } from '../../server/cli/run.ts'
 import type { RunRow } from '../../server/wire/index.ts'
 import { openPage } from '../live/page.ts'
-import { heron, heronFile, tempDir } from '../monitor/bench.ts'
+import { heronFile, tempDir } from '../monitor/bench.ts'
 import { bundled, dropBundles, start } from './children.ts'
 
 let main = ''
@@ -25,6 +23,24 @@ async function run(...args: string[]) {
 }
 const serve = (...args: string[]) => start(main, ['serve', ...args])
 const url = /^Clearbore \S+: (http:\S+)/
+
+/** The same in this process, for what ends before anything is opened. */
+async function here(...args: string[]) {
+  const said = { out: '', err: '' }
+  const code = await runCli(args, {
+    out: async (text) => {
+      said.out += text
+    },
+    err: (text) => {
+      said.err += text
+    },
+    errIsTerminal: false,
+    outIsTerminal: false,
+    nowMs: () => 0,
+    signal: new AbortController().signal,
+  })
+  return { code, ...said }
+}
 
 /** Holds a port of the machine until the test ends. */
 async function holdPort(port = 0): Promise<{ port: number; free: () => void }> {
@@ -125,13 +141,6 @@ describe('what the machine refuses: one line, what to do, exit code 3', () => {
     db.close()
     oneLine(await run('serve', '--data', data, '--port', '0'), /newer/)
   })
-  it('an export into a place that takes no file', async () => {
-    const { data, run: imported } = await anImport(0.02)
-    const file = join(tempDir(), 'file')
-    writeFileSync(file, '')
-    const args = ['--data', data, '--what', 'samples', '--format', 'csv', '--out', join(file, 'x.csv')]
-    oneLine(await run('export', imported, ...args), /x\.csv: cannot write/)
-  })
 })
 
 describe('what the command line refuses: exit code 2', () => {
@@ -144,95 +153,8 @@ describe('what the command line refuses: exit code 2', () => {
     ['an export as PDF', ['export', '1', '--what', 'alarms', '--format', 'pdf', '--out', 'x'], /no PDF yet/],
     ['readings as JSON', ['export', 'one', '--what', 'samples', '--format', 'csv', '--out', 'x'], /RUN needs a whole number/],
   ])('%s', async (_, args, says) => {
-    const r = await run(...args)
+    const r = await here(...args)
     expect([r.code, r.out]).toEqual([2, ''])
     expect(r.err).toMatch(says)
-  })
-})
-
-/** Some of the demo, forty-five minutes by default, written as a log and imported. */
-async function anImport(hours = 0.75) {
-  const data = tempDir()
-  const log = join(data, 'night.csv')
-  const night = demoScenario(heron)
-  writeFileSync(
-    log,
-    [...logText(heron, { ...night, hours, events: night.events.filter((e) => e.atHours < hours) }).lines()].join(''),
-  )
-  const r = await run('import', log, '--skid', heronFile, '--data', join(data, 'store'), '--title', 'last night')
-  expect([r.code, r.err]).toEqual([0, ''])
-  return { data: join(data, 'store'), log, run: /^run (\d+)/.exec(r.out)![1]!, out: r.out }
-}
-
-describe('import and export', () => {
-  it('imports a log, shows it in the list of a server, and exports its alarms, readings and record', async () => {
-    const { data, log, run: id, out } = await anImport()
-    expect(out).toMatch(/2700 rows, 1 alarm, 2031-05-05T18:00:00\.000Z to 2031-05-05T18:44:59\.000Z/)
-    expect(out).toMatch(/Advisory only/)
-    const dir = tempDir()
-    const to = (name: string) => join(dir, name)
-    const written = async (what: string, format: string) => {
-      const r = await run('export', id, '--data', data, '--what', what, '--format', format, '--out', to(`${what}.${format}`))
-      expect(r.code).toBe(0)
-      return readFileSync(to(`${what}.${format}`), 'utf8')
-    }
-    const [head, ...lines] = (await written('alarms', 'csv')).trimEnd().split('\r\n')
-    expect(head).toMatch(/^run,skid,config_version,tool_version,time_utc,time_local,alarm,key,kind,priority,/)
-    expect(lines.length).toBe(1)
-    expect(lines[0]).toMatch(/,1,fouling:R1,fouling,medium,R1,,NORM,UNACK,act,moved,/)
-    expect(lines[0]).toMatch(/2031-05-05T18:\d\d:\d\d\.000Z,2031-05-05T20:\d\d:\d\d\.000\+02:00/)
-    const facts = JSON.parse(readFileSync(to('alarms.csv.facts.json'), 'utf8'))
-    expect(facts).toMatchObject({
-      export: 'alarms',
-      run: Number(id),
-      rows: 1,
-      timeZone: 'Europe/Amsterdam',
-      from: '2031-05-05T18:00:00.000Z',
-    })
-    expect(facts.cautions[0]).toMatch(/Advisory only/)
-    const history = JSON.parse(await written('alarms', 'json'))
-    expect([history.rows, history.alarms.length, history.history[0].to]).toEqual([1, 1, 'UNACK'])
-
-    const samples = await written('samples', 'csv')
-    const numbers = (text: string) =>
-      text
-        .trimEnd()
-        .split('\n')
-        .slice(1)
-        .map((l) =>
-          l
-            .split(',')
-            .slice(1)
-            .map((c) => (Number.isNaN(Number(c)) ? c : Number(c))),
-        )
-    expect(numbers(samples)).toEqual(numbers(readFileSync(log, 'utf8')))
-    const record = JSON.parse(await written('record', 'json')) as { report: Report; skidFile: { text: string } }
-    expect(record.report.alarms.map((a) => a.kind)).toEqual(['fouling'])
-    expect(record.skidFile.text).toBe(readFileSync(heronFile, 'utf8'))
-
-    const only = await run('export', id, '--data', data, '--what', 'alarms', '--format', 'csv', '--priority', 'high', '--out', '-')
-    expect(only.out.trim().split('\n').length).toBe(1)
-    const never = await run('export', '77', '--data', data, '--what', 'alarms', '--format', 'csv', '--out', '-')
-    expect([never.code, never.err]).toEqual([1, expect.stringContaining('no run 77')])
-  })
-
-  it('keeps nothing of an import that fails, and tells the line', async () => {
-    const dir = tempDir()
-    const log = join(dir, 'bad.csv')
-    const data = join(dir, 'store')
-    mkdirSync(data)
-    writeFileSync(
-      log,
-      `time,"PT-101 feed A [bar]"\n${Array.from({ length: 30 }, (_, i) => `2031-05-05T18:00:${String(i).padStart(2, '0')}Z,6.5\n`).join('')}05/05/2031 18:01:00,6.5\n`,
-    )
-    const r = await run('import', log, '--skid', heronFile, '--data', data)
-    expect([r.code, r.err.split('\n').length]).toEqual([1, 1])
-    expect(r.err).toMatch(/bad\.csv:32:1: found a date format that changes/)
-    const child = serve('--data', data, '--port', '0')
-    const [, at] = await child.line(url)
-    const rows = (await (await fetch(`${at}api/runs`)).json()) as RunRow[]
-    expect(rows.map((x) => x.kind)).toEqual(['simulated'])
-    child.process.kill('SIGTERM')
-    await child.ended
   })
 })

@@ -48,11 +48,20 @@ async function use(port: number, told: Told): Promise<void> {
   }
 }
 
-async function round(server: string, data: string, aliveMs: number, told: Told): Promise<void> {
-  const child: Child = start(server, [data, heronFile, '1200'])
+/** Lets it serve until so many more acts were acknowledged and minutes of the run shown, then kills it `afterMs` later. */
+async function round(
+  server: string,
+  data: string,
+  told: Told,
+  more: { acts: number; minutes: number; afterMs: number },
+): Promise<void> {
+  const child: Child = start(server, [data, heronFile, '400'])
   const [, port] = await child.line(/^listening (\d+)/)
+  const acts = told.acts.length + more.acts
+  const shownMs = Math.max(told.shownMs, demoScenario(heron).fromMs) + more.minutes * 60_000
   const using = use(Number(port), told)
-  await new Promise((done) => setTimeout(done, aliveMs))
+  while (told.acts.length < acts || told.shownMs < shownMs) await new Promise((done) => setTimeout(done, 2))
+  await new Promise((done) => setTimeout(done, more.afterMs))
   child.process.kill('SIGKILL')
   expect(await child.ended).toBe('SIGKILL')
   expect(child.err).toEqual([])
@@ -80,14 +89,15 @@ function holdsRows(store: Store, run: RunId): number {
 }
 
 /**
- * Kills a serving process `times` times at seeded moments while it ingests the demo 1200 times faster than time and a client acts on it.
+ * Kills a serving process `times` times at seeded moments while it ingests the demo 400 times faster than time and a client acts on it.
  * Then: every acknowledged act and every row that was shown is there; no row is missing or doubled; the report, resumed over all those
  * kills, is that of one undisturbed pass over the sequence, and so is the journal of events and alarms.
  */
 export async function killRounds(server: string, data: string, times: number, seed: number) {
   const next = seeded(seed)
   const told: Told = { acts: [], shownMs: 0 }
-  for (let i = 0; i < times; i++) await round(server, data, 150 + 1500 * next(), told)
+  for (let i = 0; i < times; i++)
+    await round(server, data, told, { acts: 2 + Math.floor(6 * next()), minutes: 6 * next(), afterMs: 80 * next() })
   const store = openStore(data)
   try {
     const run = 1 as RunId

@@ -15,5 +15,5 @@ it('killed at 200 moments, ten to a run, loses nothing acknowledged, doubles not
     sum.unacknowledged += found.unacknowledged
   }
   console.log(`200 kills: ${sum.rows} rows, ${sum.acts} acts acknowledged, ${sum.unacknowledged} on disk that were not yet`)
-  expect(sum.acts).toBeGreaterThan(1000)
+  expect(sum.acts).toBeGreaterThan(400)
 }, 3_600_000)
