@@ -113,6 +113,12 @@ export function otherVerdict(court: Court): Verdict | null {
   )
   if (top === null) return null
   const l = likelihood(top, now)
+  // A ramp may be old enough only because it was born before a jump: the jump of the same tap, if it fits better, is waited for.
+  if (
+    top.kind === 'tap-ramp' &&
+    columns.some((c) => c.kind === 'tap-step' && c.of === top.of && likelihood(c, now) > l + rule.overOther)
+  )
+    return null
   const on = touches(layout, top)
   for (const c of columns)
     if (c.kind === 'deposit' && c.d > 0 && on.includes(c.of) && court.watched(c.of) && l < likelihood(c, now) + rule.overDeposit)
