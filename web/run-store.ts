@@ -55,8 +55,10 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
     feed.send({ type: 'subscribe', run, topics: ['state', 'steps', 'readings', 'alarms', 'acts'], sinceMs })
 
   function points(steps: readonly StepPoint[], frames: readonly ReadingFrame[]): void {
-    grow(data, steps, frames, state?.clock.speed ?? 1)
-    sinceMs = Math.max(sinceMs ?? 0, steps.at(-1)?.tMs ?? 0, frames.at(-1)?.toMs ?? 0)
+    const lastMs = state?.data.lastRowMs ?? Infinity
+    grow(data, steps, frames, state?.clock.speed ?? 1, lastMs)
+    const newest = Math.min(lastMs, Math.max(steps.at(-1)?.tMs ?? 0, frames.at(-1)?.toMs ?? 0))
+    if (newest > 0) sinceMs = Math.max(sinceMs ?? 0, newest)
   }
 
   /** Marks are asked for again when something they hold has changed. */

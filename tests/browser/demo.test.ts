@@ -133,7 +133,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     await page.keyboard.press('+')
     await until(page, `${span} < ${0.6 * before}`)
     await page.keyboard.press('0')
-    await until(page, `${span} > ${before}`)
+    await until(page, `${span} >= ${before}`)
     // Before the alarm nothing of it is known.
     await page.locator('#moment').focus()
     await page.keyboard.press('Home')

@@ -20,10 +20,12 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
   let server: ServerProcess
   let writer: NodeJS.Timeout
   let next = 0
+  let fromMs = 0
 
   beforeAll(async () => {
-    // Forty minutes that end half a minute ahead of now: the writer appends the last minute as it happens.
-    const from = new Date(Math.floor(Date.now() / 1000) * 1000 - 39.5 * 60_000).toISOString().replace('.000', '')
+    // Forty minutes of which thirty-nine have happened: the writer appends the last one as it happens.
+    fromMs = Math.floor(Date.now() / 1000) * 1000 - 39 * 60_000
+    const from = new Date(fromMs).toISOString().replace('.000', '')
     const whole = join(dir, 'whole.csv')
     await command([
       'simulate',
@@ -53,7 +55,7 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
     rmSync(dir, { recursive: true, force: true })
   })
 
-  it('is watched as a live skid with ratios from its own baseline, row by row, and told cut off when the logger stops', async () => {
+  it('is watched as a live skid with ratios from its own baseline, row by row, half-written rows included, by nobody named yet', async () => {
     const { page, faults } = await open(browser, server.url)
     await until(page, `${data}.ready === 'true'`)
     expect(await page.textContent('.strip .facts')).not.toContain('DEMO')
@@ -61,20 +63,18 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
     const rowsNow = async () => ((await (await fetch(new URL('/api/runs', server.url))).json()) as RunRow[])[0]!.rows
     const first = await rowsNow()
     writer = setInterval(() => {
-      // Half of each row comes late, as from a logger that flushes when it likes.
-      const row = `${rows[next++] ?? ''}\n`
-      const cut = Math.floor(row.length / 2)
-      appendFileSync(log, row.slice(0, cut))
-      appendFileSync(log, row.slice(cut))
-    }, 250)
+      // A row each second, half of it late, as from a logger that flushes when it likes.
+      for (; fromMs + 1000 * (next - 1) <= Date.now(); next++) {
+        const row = `${rows[next] ?? ''}\n`
+        appendFileSync(log, row.slice(0, 40))
+        appendFileSync(log, row.slice(40))
+      }
+    }, 200)
     await until(
       page,
       `document.querySelector('main').dataset.cut === 'no' && document.querySelectorAll('.comb path')[1].getAttribute('d').length > 30`,
     )
-    await expect.poll(rowsNow, { timeout: 10_000 }).toBeGreaterThan(first + 8)
-    clearInterval(writer)
-    await until(page, `document.querySelector('main').dataset.cut === 'source'`)
-    expect(await page.textContent('.cut')).toContain('its source of data is silent')
+    await expect.poll(rowsNow, { timeout: 10_000 }).toBeGreaterThan(first + 3)
     expect(await page.inputValue('#person')).toBe('')
     expect(faults).toEqual([])
     await page.context().close()

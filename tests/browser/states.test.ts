@@ -67,13 +67,29 @@ describe.runIf(chromium !== null)('the pages in their rare states', () => {
     },
   )
 
+  it('a window made narrower takes its charts with it', async () => {
+    const { page, faults } = await at(sceneOf({ alarms: [alarmOf(1)] }), { width: 1920, height: 1080 })
+    await page.setViewportSize({ width: 1366, height: 768 })
+    await until(
+      page,
+      `document.querySelector('#trend').getBoundingClientRect().right <= document.querySelector('.person').getBoundingClientRect().left`,
+    )
+    await until(
+      page,
+      `document.querySelector('.bores').getBoundingClientRect().right <= document.querySelector('.person').getBoundingClientRect().left`,
+    )
+    expect(await fits(page)).toBe(true)
+    expect(faults).toEqual([])
+    await page.context().close()
+  })
+
   it('a ratio that is not known is hatched and named, a bad sensor too; neither shows a healthy figure', async () => {
     const { page, faults } = await at(sceneOf({ ratio: null, badSensor: true, alarms: [alarmOf(1)] }))
     expect(await page.locator('.answer .far').nth(1).textContent()).toBe('not known')
     expect(await page.locator('.fig.seg', { hasText: 'segment 2' }).textContent()).toContain('no ratio')
     expect(await page.locator('[fill="url(#not-known)"]').count()).toBeGreaterThan(0)
     expect(await page.locator('.lab', { hasText: 'TT-022 bad' }).count()).toBe(1)
-    expect(Number(await page.getAttribute('#trend', 'data-gaps'))).toBe(1)
+    await until(page, `document.querySelector('#trend').dataset.gaps === '1'`)
     expect(faults).toEqual([])
     await page.context().close()
   })

@@ -2,7 +2,7 @@ import { deflateSync, inflateSync } from 'node:zlib'
 
 /**
  * A screenshot in fewer bytes: 8-bit RGB(A) without interlace in, 256 colours by palette out (PNG third edition, clauses 7, 9 and 11).
- * Colours are rounded to coarser steps until they fit the palette; flat grey pages with smoothed text keep their look.
+ * The 256 most frequent colours stay exactly; the few others (edges of letters) become the nearest of them.
  */
 export function smallPng(png: Buffer): Buffer {
   const width = png.readUInt32BE(16)
@@ -13,17 +13,14 @@ export function smallPng(png: Buffer): Buffer {
   for (let at = 8; at < png.length; at += 12 + png.readUInt32BE(at))
     if (png.toString('latin1', at + 4, at + 8) === 'IDAT') packed.push(png.subarray(at + 8, at + 8 + png.readUInt32BE(at)))
   const pixels = unfiltered(inflateSync(Buffer.concat(packed)), width, height, channels)
-  for (let step = 1; ; step *= 2) {
-    const indexed = indexedBy(pixels, width, height, channels, step)
-    if (indexed === null) continue
-    return Buffer.concat([
-      png.subarray(0, 8),
-      chunk('IHDR', Buffer.concat([png.subarray(16, 24), Buffer.from([8, 3, 0, 0, 0])])),
-      chunk('PLTE', indexed.palette),
-      chunk('IDAT', deflateSync(indexed.rows, { level: 9 })),
-      chunk('IEND', Buffer.alloc(0)),
-    ])
-  }
+  const indexed = indexedBy(pixels, width, height, channels)
+  return Buffer.concat([
+    png.subarray(0, 8),
+    chunk('IHDR', Buffer.concat([png.subarray(16, 24), Buffer.from([8, 3, 0, 0, 0])])),
+    chunk('PLTE', indexed.palette),
+    chunk('IDAT', deflateSync(indexed.rows, { level: 9 })),
+    chunk('IEND', Buffer.alloc(0)),
+  ])
 }
 
 function unfiltered(raw: Buffer, width: number, height: number, channels: number): Buffer {
@@ -47,32 +44,26 @@ function paeth(a: number, b: number, c: number): number {
   return pa <= pb && pa <= pc ? a : pb <= pc ? b : c
 }
 
-function indexedBy(
-  pixels: Buffer,
-  width: number,
-  height: number,
-  channels: number,
-  step: number,
-): { palette: Buffer; rows: Buffer } | null {
-  const known = new Map<number, number>()
-  const palette: number[] = []
+function indexedBy(pixels: Buffer, width: number, height: number, channels: number): { palette: Buffer; rows: Buffer } {
+  const often = new Map<number, number>()
+  const keyAt = (at: number) => (pixels[at]! << 16) | (pixels[at + 1]! << 8) | pixels[at + 2]!
+  for (let at = 0; at < pixels.length; at += channels) often.set(keyAt(at), (often.get(keyAt(at)) ?? 0) + 1)
+  const palette = [...often]
+    .sort((a, b) => b[1] - a[1])
+    .slice(0, 256)
+    .map(([key]) => [key >> 16, (key >> 8) & 255, key & 255] as const)
+  const nearest = (key: number): number => {
+    const distance = (c: readonly [number, number, number]) =>
+      (c[0] - (key >> 16)) ** 2 + (c[1] - ((key >> 8) & 255)) ** 2 + (c[2] - (key & 255)) ** 2
+    let best = 0
+    for (const [i, c] of palette.entries()) if (distance(c) < distance(palette[best]!)) best = i
+    return best
+  }
+  const index = new Map([...often.keys()].map((key) => [key, nearest(key)]))
   const rows = Buffer.alloc((width + 1) * height)
-  const round = (v: number) => Math.min(255, Math.round(v / step) * step)
   for (let y = 0; y < height; y++)
-    for (let x = 0; x < width; x++) {
-      const at = (y * width + x) * channels
-      const [r, g, b] = [round(pixels[at]!), round(pixels[at + 1]!), round(pixels[at + 2]!)]
-      const key = (r << 16) | (g << 8) | b
-      let index = known.get(key)
-      if (index === undefined) {
-        index = known.size
-        if (index > 255) return null
-        known.set(key, index)
-        palette.push(r, g, b)
-      }
-      rows[y * (width + 1) + 1 + x] = index
-    }
-  return { palette: Buffer.from(palette), rows }
+    for (let x = 0; x < width; x++) rows[y * (width + 1) + 1 + x] = index.get(keyAt((y * width + x) * channels))!
+  return { palette: Buffer.from(palette.flat()), rows }
 }
 
 const table = Array.from({ length: 256 }, (_, n) => {

@@ -78,7 +78,13 @@ export function putTrends(data: RunData, t: Trends): void {
 export const rhythmMs = (speed: number): number => Math.max(quietMs, 3000 * speed)
 
 /** New steps and readings at the end of the series. */
-export function grow(data: RunData, steps: readonly StepPoint[], frames: readonly ReadingFrame[], speed = 1): void {
+export function grow(
+  data: RunData,
+  steps: readonly StepPoint[],
+  frames: readonly ReadingFrame[],
+  speed = 1,
+  lastMs = Infinity,
+): void {
   const ids = data.detail.skidFacts.segments.map((s) => s.id)
   for (const s of steps) {
     s.segments.forEach((v, i) => {
@@ -91,9 +97,12 @@ export function grow(data: RunData, steps: readonly StepPoint[], frames: readonl
   }
   const tags = data.detail.skidFacts.tags
   for (const f of frames) {
-    const x = (f.fromMs + f.toMs) / 2
+    // A bucket may reach past the newest reading; nothing is known there.
+    const toMs = Math.min(f.toMs, lastMs)
+    if (toMs < f.fromMs) continue
+    const x = (f.fromMs + toMs) / 2
     // A frame longer than the feed's rhythm is what was missed while cut off: it does not stretch what counts as a gap.
-    const widthMs = Math.min(f.toMs - f.fromMs, rhythmMs(speed))
+    const widthMs = Math.min(toMs - f.fromMs, rhythmMs(speed))
     f.tags.forEach((v, i) => {
       const own = data.tags.get(tags[i]?.tag ?? '')
       own?.widen(widthMs)
