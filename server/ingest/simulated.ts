@@ -38,12 +38,14 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
   const width = skid.tags.length + (skid.phaseColumn === null ? 0 : 1)
   const decimals = skid.tags.map(decimalsOf)
   let taken = (state as State | null)?.rows ?? 0
-  for (let i = 0; i < taken; i++) simulator.next()
+  /** Rows of before that the simulator has made again; a little at each poll, so that the server is up meanwhile. */
+  let again = 0
   let lastMs = steadyMs()
   let nowMs = scenario.fromMs + taken * logMs
 
   const advance = (): void => {
     const now = steadyMs()
+    if (again < taken) lastMs = now
     nowMs = Math.min(nowMs + (now - lastMs) * speed, scenario.fromMs + Math.min(total, taken + mostAhead) * logMs)
     lastMs = now
   }
@@ -51,6 +53,11 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
     kind: 'simulated',
     about: `simulator, scenario '${scenario.name}' with seed ${scenario.seed}, ${speed} times faster than time`,
     async poll() {
+      if (again < taken) {
+        for (let i = 0; i < mostRows && again < taken; i++, again++) simulator.next()
+        lastMs = steadyMs()
+        return { entries: [], more: true, ended: false }
+      }
       advance()
       const waiting = Math.min(total, Math.floor((nowMs - scenario.fromMs) / logMs)) - taken
       const due = Math.min(waiting, mostRows)
@@ -72,6 +79,7 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
       // The row's phase is an index into the run's words.
       const words = taken === 0 && width > skid.tags.length ? { words: { from: 0, words: phases } } : {}
       taken += Math.max(0, due)
+      again = taken
       return {
         ...words,
         entries: due > 0 ? [{ kind: 'rows', block }] : [],
@@ -80,7 +88,10 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
         ended: taken >= total,
       }
     },
-    status: () => ({ state: taken >= total ? 'ended' : 'running', message: null }),
+    status: () =>
+      again < taken
+        ? { state: 'waiting', message: 'the simulator returns to where it stood' }
+        : { state: taken >= total ? 'ended' : 'running', message: null },
     clock() {
       advance()
       return { kind: 'simulated', nowMs: Math.round(nowMs), speed }

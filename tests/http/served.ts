@@ -9,7 +9,9 @@ import { shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
 export const local = { host: '127.0.0.1:8460' }
 
 /** The whole app over a simulated run whose time the test passes by hand; closed when the test ends. */
-export async function served(more: { scenario?: Scenario; hosts?: string[]; uploadMaxBytes?: number; heartbeatMs?: number } = {}) {
+export async function served(
+  more: { scenario?: Scenario; hosts?: string[]; uploadMaxBytes?: number; heartbeatMs?: number; webRoot?: string } = {},
+) {
   const bench = simulatedBench(tempDir(), more.scenario ?? shortNight(3))
   const { store, monitor } = bench
   const lines: string[] = []
@@ -34,7 +36,7 @@ export async function served(more: { scenario?: Scenario; hosts?: string[]; uplo
     uploadMaxBytes: more.uploadMaxBytes ?? 2 ** 22,
     skidOf: loadSkid,
     importLogs: (job) => catalogue.row(imports.begin(job)),
-    webRoot: null,
+    webRoot: more.webRoot ?? null,
     hosts: more.hosts ?? [],
     log,
     ...(more.heartbeatMs === undefined ? {} : { heartbeatMs: more.heartbeatMs }),

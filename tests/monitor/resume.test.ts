@@ -17,6 +17,8 @@ async function lived(stops: readonly { readonly minute: number; readonly cleanly
       if (stop.cleanly) await b.monitor.stop()
       b.store.close()
       b = simulatedBench(dir, shortNight(minutes / 60), { snapshotMs: 7000, pair: { run: b.run, stepsRun: b.stepsRun } })
+      // The simulator first returns to where it stood.
+      while (await b.monitor.beat());
     }
     // An act belongs to the state of the run, not of the process: it stands at the same row whatever was restarted.
     if (minute === 12 && b.store.sequence.acts(b.run).length === 0)
