@@ -1,59 +1,16 @@
-import { type JudgeState, judge, judgeStart, why } from '../quality/judge.ts'
+import { judgeRow, ruleColumns, why } from '../quality/judge.ts'
 import { reasons, rulesOf, type TagRule } from '../quality/tag-rules.ts'
 import { cell, type RowBlock } from '../reading.ts'
 import type { Skid } from '../skid.ts'
 import { units, valueUnit } from '../units.ts'
+import { freshGrid, freshScan, type GridState, type Scan } from './grid-state.ts'
 
-/** One closed cell of the analysis grid. The object and its arrays are reused: copy what must outlive the call. */
-export interface Scan {
-  /** Begin of the cell, ms UTC; it ends at tMs + scanMs. */
-  tMs: number
-  /** Mean of the usable readings in SI, by tag; meaningless where `used` is 0. */
-  readonly si: Float64Array
-  /** Usable readings in the cell, by tag; a held value counts 1. */
-  readonly used: Uint16Array
-  /** 1 where the value is a slow tag's last one, held. */
-  readonly held: Uint8Array
-  /** Last reason a reading of the tag was not good in this cell; 0 where all were, or none came. */
-  readonly flaw: Uint8Array
-  /** Rows that fell into the cell. */
-  rows: number
-  /** Index of the last phase word in the cell; −1 where none. */
-  phase: number
-  /** Empty cells before this one that were stepped over without a scan of their own. */
-  skipped: number
-}
+export type { GridState, Scan } from './grid-state.ts'
 
-/** Plain-JSON state of the intake. Open cells are kept as arrays by slot; the slot of cell k is k modulo their number. */
-export interface GridState {
-  judge: JudgeState
-  /** First cell not yet closed; −1 before the first row. */
-  next: number
-  /** Latest time the sequence has reached, ms. */
-  nowMs: number
-  firstMs: number
-  lastRowMs: number
-  rows: number
-  repeated: number
-  outOfOrder: number
-  badTime: number
-  lateRows: number
-  /** Time of a row that jumped far ahead and waits for a second that confirms it; −1 when none. */
-  farMs: number
-  farRow: { values: number[]; codes: number[] } | null
-  sum: number[][]
-  used: number[][]
-  flaw: number[][]
-  cellRows: number[]
-  phase: number[]
-  previous: { tMs: number; values: number[]; codes: number[] }
-  /** By tag: last closed cell with a value, that value in SI, typical spacing in cells. */
-  lastCell: number[]
-  lastSi: number[]
-  spacing: number[]
-  scans: number
-}
-
+/** Reasons whose readings count into a cell's mean: good and uncertain ones, never bad, frozen or late ones. */
+const usable = Uint8Array.from(reasons, (r) =>
+  Number(r === 'good' || r === 'over-range' || r === 'source-uncertain' || r === 'loop-undefined'),
+)
 /** A row this far ahead of all before it must be confirmed by the next one, or its time is bad, ms. */
 const farAheadMs = 3_600_000
 /** A slow tag is held at most so long, s, or three cells. */
@@ -73,46 +30,14 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
   const lateMs = skid.lateSeconds * 1000
   const slots = Math.ceil(lateMs / scanMs) + 2
   const rules: TagRule[] = rulesOf(skid)
+  const columns = ruleColumns(rules)
+  const reasonOf = new Uint8Array(tags)
   const siUnit = skid.tags.map(valueUnit)
   const toSiFactor = siUnit.map((u) => (u === null ? 1 : units[u].factor))
   const toSiOffset = siUnit.map((u) => (u === null ? 0 : units[u].offset))
   const holdCells = Math.max(3, Math.floor(holdAtMostS / skid.scanSeconds))
-  const zeros = (n: number) => new Array<number>(n).fill(0)
-  const table = () => Array.from({ length: slots }, () => zeros(tags))
-  const s: GridState = saved ?? {
-    judge: judgeStart(tags),
-    next: -1,
-    nowMs: -1,
-    firstMs: -1,
-    lastRowMs: -1,
-    rows: 0,
-    repeated: 0,
-    outOfOrder: 0,
-    badTime: 0,
-    lateRows: 0,
-    farMs: -1,
-    farRow: null,
-    sum: table(),
-    used: table(),
-    flaw: table(),
-    cellRows: zeros(slots),
-    phase: zeros(slots).fill(-1),
-    previous: { tMs: -1, values: zeros(width), codes: zeros(width) },
-    lastCell: zeros(tags).fill(-1),
-    lastSi: zeros(tags),
-    spacing: zeros(tags),
-    scans: 0,
-  }
-  const scan: Scan = {
-    tMs: 0,
-    si: new Float64Array(tags),
-    used: new Uint16Array(tags),
-    held: new Uint8Array(tags),
-    flaw: new Uint8Array(tags),
-    rows: 0,
-    phase: -1,
-    skipped: 0,
-  }
+  const s: GridState = saved ?? freshGrid(tags, width, slots)
+  const scan: Scan = freshScan(tags)
   let flowing = false
 
   function close(k: number, skipped: number): void {
@@ -184,51 +109,53 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
     }
     if (tMs > s.lastRowMs) s.lastRowMs = tMs
     const k = Math.floor(tMs / scanMs)
-    const late = k < s.next
-    if (late) s.lateRows++
+    if (k < s.next) {
+      s.lateRows++
+      countAll(codes, at, why.late)
+      return
+    }
     const slot = k % slots
     const counts = s.judge.counts
-    const sum = late ? null : s.sum[slot]!
-    const used = late ? null : s.used[slot]!
-    const flaw = late ? null : s.flaw[slot]!
+    const sum = s.sum[slot]!
+    const used = s.used[slot]!
+    const flaw = s.flaw[slot]!
+    judgeRow(s.judge, columns, codes, values, at, tMs, flowing, reasonOf)
     for (let t = 0; t < tags; t++) {
-      const code = codes[at + t]!
-      if (code === cell.absent) continue
-      if (late) {
-        counts[t * reasons.length + why.late]!++
-        continue
-      }
-      const value = values[at + t]!
-      const reason = judge(s.judge, rules[t]!, t, code, value, tMs, flowing)
+      if (codes[at + t] === cell.absent) continue
+      const reason = reasonOf[t]!
       counts[t * reasons.length + reason]!++
-      if (
-        reason === why.good ||
-        reason === why['over-range'] ||
-        reason === why['source-uncertain'] ||
-        reason === why['loop-undefined']
-      ) {
-        sum![t]! += value
-        used![t]!++
+      if (usable[reason] === 1) {
+        sum[t]! += values[at + t]!
+        used[t]!++
       }
-      if (reason !== why.good) flaw![t] = reason
+      if (reason !== why.good) flaw[t] = reason
     }
-    if (late) return
     s.cellRows[slot]!++
     if (width > tags && codes[at + tags] === cell.value) s.phase[slot] = values[at + tags]!
   }
 
-  function repeats(tMs: number, block: RowBlock, at: number): boolean {
+  /** Whether the row at `at` says what the row before it in the sequence said, at the same time. */
+  function repeats(block: RowBlock, i: number): boolean {
+    const tMs = block.tMs[i]!
+    if (i === 0 ? tMs !== s.previous.tMs : tMs !== block.tMs[i - 1]) return false
+    const at = i * block.width
+    const values = i === 0 ? s.previous.values : block.values
+    const codes = i === 0 ? s.previous.codes : block.codes
+    const before = i === 0 ? 0 : at - block.width
+    for (let t = 0; t < width; t++)
+      if (block.values[at + t] !== values[before + t] || block.codes[at + t] !== codes[before + t]) return false
+    return true
+  }
+
+  function keepLast(block: RowBlock): void {
+    if (block.rows === 0) return
+    const at = (block.rows - 1) * block.width
     const p = s.previous
-    let same = tMs === p.tMs
+    p.tMs = block.tMs[block.rows - 1]!
     for (let t = 0; t < width; t++) {
-      const v = block.values[at + t]!
-      const c = block.codes[at + t]!
-      if (same && (v !== p.values[t] || c !== p.codes[t])) same = false
-      p.values[t] = v
-      p.codes[t] = c
+      p.values[t] = block.values[at + t]!
+      p.codes[t] = block.codes[at + t]!
     }
-    p.tMs = tMs
-    return same
   }
 
   function countAll(codes: ArrayLike<number>, at: number, reason: number): void {
@@ -246,7 +173,7 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
         const tMs = block.tMs[i]!
         const at = i * block.width
         s.rows++
-        if (repeats(tMs, block, at)) {
+        if (repeats(block, i)) {
           s.repeated++
           countAll(block.codes, at, why.duplicate)
           continue
@@ -271,6 +198,7 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
         }
         take(tMs, block.values, block.codes, at)
       }
+      keepLast(block)
     },
     /** The monitor's clock: scans close even when no rows come. */
     tick(tMs: number): void {

@@ -1,21 +1,25 @@
 import { describe, expect, it } from 'vitest'
-import { judge, judgeStart } from '../../../server/core/quality/judge.ts'
+import { type JudgeState, judgeRow, judgeStart, ruleColumns } from '../../../server/core/quality/judge.ts'
 import { reasons, ruleOf } from '../../../server/core/quality/tag-rules.ts'
 import { cell } from '../../../server/core/reading.ts'
 import type { TagSpec } from '../../../server/core/skid.ts'
+
+const out = new Uint8Array(1)
+function judge(state: JudgeState, spec: TagSpec, code: number, value: number, tMs: number, flowing: boolean): string {
+  judgeRow(state, ruleColumns([ruleOf(spec)]), [code], [value], 0, tMs, flowing, out)
+  return reasons[out[0]!]!
+}
 
 const tag = (more: Partial<TagSpec>): TagSpec => ({
   tag: 'X-1', column: 'X-1', quantity: 'pressure', unit: 'bar', range: [0, 25], accuracyPct: 0.25, accuracyAssumed: true, signal: null, sensor: null,
   burnout: null, setpointFor: null, ...more,
 }) // biome-ignore format: a list
-const one = (spec: TagSpec, value: number, code: number = cell.value): string =>
-  reasons[judge(judgeStart(1), ruleOf(spec), 0, code, value, 0, true)]!
+const one = (spec: TagSpec, value: number, code: number = cell.value): string => judge(judgeStart(1), spec, code, value, 0, true)
 
 /** Reasons of readings `dtMs` apart. */
 function series(spec: TagSpec, values: readonly number[], dtMs = 1000, flowing = true): string[] {
   const state = judgeStart(1)
-  const rule = ruleOf(spec)
-  return values.map((v, i) => reasons[judge(state, rule, 0, cell.value, v, i * dtMs, flowing)]!)
+  return values.map((v, i) => judge(state, spec, cell.value, v, i * dtMs, flowing))
 }
 
 describe('quality of a reading', () => {
@@ -59,7 +63,15 @@ describe('quality of a reading', () => {
   })
 
   it('takes a jump for a step at the third reading that agrees', () => {
-    expect(series(tag({}), [5, 5.01, 4.99, 15, 15.02, 14.99, 15])).toEqual(['good', 'good', 'good', 'spike', 'spike', 'good', 'good'])
+    expect(series(tag({}), [5, 5.01, 4.99, 15, 15.02, 14.99, 15])).toEqual([
+      'good',
+      'good',
+      'good',
+      'spike',
+      'spike',
+      'good',
+      'good',
+    ])
   })
 
   it('calls a reading frozen after a minute and thirty repeats, but only while liquid flows', () => {
