@@ -15,16 +15,19 @@ const recentPoints = 6
 
 /** The charts a plant engineer can follow by hand, one pair for each segment, from a final baseline on. Plain JSON. */
 export interface ChartState {
-  /** k, h in units of `design.chartSigma`; σ of a point and its lag-1 correlation. */
+  /** k, h in units of `design.chartSigma`, the σ of a surprise; σ of a point. */
   readonly design: CusumDesign
   readonly sigma: number
-  readonly correlation: number
-  /** ln ratio of the baseline the charts stand on. */
-  readonly zeroLn: number
+  /** Share of the wander left a point later, and of a surprise that is wander. */
+  readonly memory: number
+  readonly gain: number
+  /** ln ratio that the charts stand on: that of the baseline, and steps explained since. */
+  zeroLn: number
   sum: number
   n: number
   sumMs: number
-  last: number | null
+  /** Wander expected in the next point. */
+  expected: number
   recent: number[]
   cusum: CusumState
   drift: DriftState
@@ -36,7 +39,7 @@ export interface ChartState {
 }
 
 export interface ChartReading {
-  /** CUSUM of the upper side and its decision interval, in σ of a whitened point. */
+  /** CUSUM of the upper side and its decision interval, in σ of a surprise. */
   readonly cusum: number
   readonly h: number
   readonly cusumOver: boolean
@@ -48,8 +51,9 @@ export interface ChartReading {
 
 /**
  * Designs the pair of charts of a segment from the promise: on average one false fouling alarm per skid in `falseAlarmDays` of clean
- * production, all `charts` together; find a rise of `riseToFindPct`. Points are means of ten detector steps, so the wander (mean-reverting,
- * `wanderTauS`) correlates them; the CUSUM takes whitened points x − φ·x₋₁.
+ * production, all `charts` together; find a rise of `riseToFindPct`. Points are means of ten detector steps; the wander (mean-reverting,
+ * `wanderTauS`) correlates them. The CUSUM takes what of a point the points before did not foretell, e = x − x̂, x̂ ← ρ(x̂ + K·e), which is white
+ * for wander plus white noise (steady Kalman filter); x − φ·x₋₁ is not, and signalled 3.5 times too often. A lasting shift δ shows as δ(1 − ρ)/(1 − ρ(1 − K)).
  */
 export function startCharts(
   promise: { readonly falseAlarmDays: number; readonly riseToFindPct: number },
@@ -59,21 +63,28 @@ export function startCharts(
 ): ChartState {
   const pointS = stepsPerPoint * noise.stepS
   const slow = noise.wanderSd ** 2
-  const sigma = Math.sqrt(slow + noise.whiteSd ** 2 / stepsPerPoint + modelSd ** 2)
-  const correlation = Math.min(0.95, (slow / sigma ** 2) * Math.exp(-pointS / noise.wanderTauS))
+  const white = noise.whiteSd ** 2 / stepsPerPoint + modelSd ** 2
+  const memory = Math.exp(-pointS / noise.wanderTauS)
+  const { gain, variance } = steady(memory, slow, white)
   const design = designCusum({
     falseAlarmHours: 24 * promise.falseAlarmDays,
     stepS: pointS,
     charts,
-    sigma,
-    shift: Math.log1p(promise.riseToFindPct / 100),
-    correlation,
+    sigma: Math.sqrt(variance),
+    shift: (Math.log1p(promise.riseToFindPct / 100) * (1 - memory)) / (1 - memory * (1 - gain)),
   })
   return {
-    design, sigma, correlation, zeroLn, sum: 0, n: 0, sumMs: 0, last: null, recent: [],
+    design, sigma: Math.sqrt(slow + white), memory, gain, zeroLn, sum: 0, n: 0, sumMs: 0, expected: 0, recent: [],
     cusum: cusum.start({ k: design.k, h: design.h, cap: 2 * design.h, headStart: 0.5 }),
     drift: drift.start(driftConfig), points: [], seen: 0, signals: 0, over: false,
   } // biome-ignore format: a list
+}
+
+/** Steady gain of the filter of a mean-reverting wander of variance `slow` in white noise, and the variance of its surprises. */
+function steady(memory: number, slow: number, white: number): { gain: number; variance: number } {
+  let ahead = slow
+  for (let i = 0; i < 500; i++) ahead = memory ** 2 * ahead * (white / (ahead + white)) + slow * (1 - memory ** 2)
+  return { gain: ahead / (ahead + white), variance: ahead + white }
 }
 
 /** One detector step; ln ratio null leaves everything as it is. Changes the state in place. */
@@ -86,15 +97,13 @@ export function stepCharts(c: ChartState, tMs: number, lnRatio: number | null): 
   const x = c.sum / c.n
   const at = c.sumMs / c.n
   c.sum = c.sumMs = c.n = 0
-  const white = (x - c.correlation * (c.last ?? 0)) / c.design.chartSigma
-  if (c.last !== null) {
-    const out = cusum.step({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h }, c.cusum, { tMs: at, z: white })
-    c.cusum = out.state
-    const over = out.verdict.kind === 'shift' && out.verdict.side === 'high'
-    if (over && !c.over) c.signals++
-    c.over = over
-  }
-  c.last = x
+  const surprise = x - c.expected
+  c.expected = c.memory * (c.expected + c.gain * surprise)
+  const out = cusum.step({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h }, c.cusum, { tMs: at, z: surprise / c.design.chartSigma })
+  c.cusum = out.state
+  const over = out.verdict.kind === 'shift' && out.verdict.side === 'high'
+  if (over && !c.over) c.signals++
+  c.over = over
   c.seen++
   c.recent = [...c.recent, x].slice(-recentPoints)
   c.drift = drift.step(driftConfig, c.drift, { tMs: at, z: x / c.sigma }).state

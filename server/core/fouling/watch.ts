@@ -272,7 +272,11 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
           const g = watch[e.segment]!.growth!
           watch[e.segment]!.hindsight = g.onset
           events.push({ kind: 'bank', event: e, onset: g.onset, ratio: Math.exp(g.peakLn) })
-        } else events.push({ kind: 'bank', event: e, onset: null, ratio: null })
+        } else {
+          // The charts look for what no explanation has taken: a step that stays in the ratio is no growth.
+          if (e.kind === 'step' && !e.nearMove && watch[e.segment]!.charts !== null) watch[e.segment]!.charts!.zeroLn += e.size
+          events.push({ kind: 'bank', event: e, onset: null, ratio: null })
+        }
       }
 
       const now = out.segments.map((b, i): SegmentNow => {
@@ -358,7 +362,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         onset,
         riseAtFit: Math.log(ratio),
         fits: 1,
-        points: [...w.charts.points],
+        points,
         peakLn: Math.log(ratio),
         forecast: null,
         growthPerHour: null,
@@ -372,8 +376,9 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
   /** The resistance came down: a filter that was changed, a deposit that let go. Six steps must agree. */
   function hasFallenBack(i: number, w: SegmentWatch): boolean {
     const g = w.growth!
-    if (g.points.length < 6) return false
-    const level = median(g.points.slice(-6).map((p) => p.lnRatio))
+    const since = g.points.slice(-6).filter((p) => p.tMs > g.raisedMs)
+    if (since.length < 6) return false
+    const level = median(since.map((p) => p.lnRatio))
     const n = bank.noise(i)
     const sigma = Math.hypot(n.whiteSd, n.wanderSd)
     const floor = layout.segments[i]!.spec.kind === 'filter' ? Math.max(0.35 * g.peakLn, 3 * sigma) : Math.max(0.012, 3 * sigma)
