@@ -99,7 +99,10 @@ export function stepCharts(c: ChartState, tMs: number, lnRatio: number | null): 
   c.sum = c.sumMs = c.n = 0
   const surprise = x - c.expected
   c.expected = c.memory * (c.expected + c.gain * surprise)
-  const out = cusum.step({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h }, c.cusum, { tMs: at, z: surprise / c.design.chartSigma })
+  const out = cusum.step({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h }, c.cusum, {
+    tMs: at,
+    z: surprise / c.design.chartSigma,
+  })
   c.cusum = out.state
   const over = out.verdict.kind === 'shift' && out.verdict.side === 'high'
   if (over && !c.over) c.signals++
