@@ -85,9 +85,10 @@ const feed = openFeed(socketUrl.href, {
   message(m: ServerMessage) {
     if (m.type === 'hello' || m.type === 'runs') {
       runs = m.runs
-      list?.show(runs)
-      if (watch === null) foot.live(runs)
-      if (watch === null && route().page === 'watch') void go()
+      tell()
+      // A run begins, or the one watched has ended and the address does not insist on it: the page goes where the life is.
+      const over = watch !== null && route().run === null && !runs.some((r) => r.run === watch?.run && r.state === 'live')
+      if (route().page === 'watch' && (watch === null || over)) void go()
     } else if (m.type === 'error') say(says, m.problem.message)
     watch?.view.take(m)
   },
@@ -125,7 +126,7 @@ function leave(): void {
   watch = null
   replay = null
   list = null
-  foot.live(runs)
+  tell()
 }
 
 /** Goes where the address says. The last call wins. */
@@ -179,6 +180,7 @@ async function go(): Promise<void> {
     if (!here()) return
     const view = watchView(data, feed, service, shell)
     watch = { run: live.run, view }
+    tell()
     fill(place, view.node)
     view.link(link)
     view.open()
@@ -213,14 +215,20 @@ function redraw(): void {
   }
 }
 
-// Away from the live page the foot still tells what stands there.
+/** The list of runs is new: the pages that show some of it. */
+function tell(): void {
+  list?.show(runs)
+  if (watch === null) foot.live(runs)
+  strip.skids(runs, watch?.run ?? null)
+}
+
+// Away from a live page, and with more than one skid, what stands elsewhere is still told.
 setInterval(() => {
-  if (watch !== null || !link.up) return
+  if (!link.up || (watch !== null && runs.filter((r) => r.state === 'live').length < 2)) return
   getJson<RunRow[]>('/api/runs').then(
     (rows) => {
       runs = rows
-      if (watch === null) foot.live(rows)
-      list?.show(rows)
+      tell()
     },
     () => undefined,
   )

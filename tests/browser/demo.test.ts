@@ -50,7 +50,6 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     await until(page, `document.querySelector('.alarms li[data-kind="fouling"][data-state="UNACK"]') !== null`)
     await until(page, `document.querySelector('.answers').dataset.segment === 'R1'`)
     await until(page, `document.querySelector('#trend').dataset.onset !== ''`)
-    await shoot(page, 'watch-day-1920x1080')
     expect(await violations(page)).toEqual([])
     const button = page.locator('.alarms li[data-kind="fouling"] button.ack')
     await button.focus()
@@ -69,6 +68,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
   it('shows the computed flush with its hold points, and takes a comment on the alarm', async () => {
     const { page, faults } = await open(browser, server.url, { width: 1366, height: 768, night: true })
     await until(page, `document.querySelector('#open-plan') !== null`)
+    await until(page, `Number(document.querySelector('#trend').dataset.points) > 30`)
     await shoot(page, 'watch-night-1366x768')
     await page.click('#open-plan')
     await until(page, `document.querySelectorAll('.plan [data-step]').length === 7`)
@@ -182,6 +182,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     })
     await until(page, `${data}.ready === 'true' && ${data}.cut === 'no'`)
     await until(page, `Number(document.querySelector('#trend').dataset.points) > 10`)
+    await shoot(page, 'watch-day-1920x1080')
     const killed = Date.now()
     await server.stop('SIGKILL')
     await until(page, `${data}.cut === 'link'`)

@@ -45,7 +45,10 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
     writeFileSync(log, `${rows.slice(0, next).join('\n')}\n`)
     ;[browser, server] = await Promise.all([
       launch(chromium!),
-      startServer(['--skid', 'fixtures/skids/heron.yaml', '--follow', log, '--data', join(dir, 'store'), '--port', '0']),
+      startServer([
+        ...['--skid', 'fixtures/skids/heron.yaml', '--follow', log, '--skid', 'fixtures/skids/filter-rig.yaml'],
+        ...['--data', join(dir, 'store'), '--port', '0'],
+      ]),
     ])
   })
   afterAll(async () => {
@@ -55,12 +58,14 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
     rmSync(dir, { recursive: true, force: true })
   })
 
-  it('is watched as a live skid with ratios from its own baseline, row by row, half-written rows included, by nobody named yet', async () => {
-    const { page, faults } = await open(browser, server.url)
+  it('is watched as a live skid with ratios from its own baseline, row by row, half-written rows included, beside a second skid', async () => {
+    const runs = async () => (await (await fetch(new URL('/api/runs', server.url))).json()) as RunRow[]
+    const heron = (await runs()).find((r) => r.skid === 'heron')!.run
+    const { page, faults } = await open(browser, `${server.url}#/watch/${heron}`)
     await until(page, `${data}.ready === 'true'`)
     expect(await page.textContent('.strip .facts')).not.toContain('DEMO')
     await until(page, `[...document.querySelectorAll('.fig.seg')].every((f) => f.dataset.ratio !== '')`)
-    const rowsNow = async () => ((await (await fetch(new URL('/api/runs', server.url))).json()) as RunRow[])[0]!.rows
+    const rowsNow = async () => (await runs()).find((r) => r.run === heron)!.rows
     const first = await rowsNow()
     writer = setInterval(() => {
       // A row each second, half of it late, as from a logger that flushes when it likes.
@@ -75,6 +80,10 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
       `document.querySelector('main').dataset.cut === 'no' && document.querySelectorAll('.comb path')[1].getAttribute('d').length > 30`,
     )
     await expect.poll(rowsNow, { timeout: 10_000 }).toBeGreaterThan(first + 3)
+    // The other skid is one press away, and is told to be invented.
+    const other = (await runs()).find((r) => r.run !== heron)!
+    await page.click(`nav[aria-label="Live skids"] a:has-text("${other.skid}")`)
+    await until(page, `${data}.ready === 'true' && document.querySelector('.strip .skid').textContent === '${other.skid}'`)
     expect(await page.inputValue('#person')).toBe('')
     expect(faults).toEqual([])
     await page.context().close()

@@ -54,6 +54,7 @@ function rowOf(r: RunRow): HTMLElement {
       'th',
       { scope: 'row' },
       el('a', { href: r.state === 'live' ? `#/watch/${r.run}` : `#/replay/${r.run}`, text: `${r.run} ${r.title}` }),
+      r.state === 'live' ? el('p', {}, el('a', { href: `#/replay/${r.run}`, text: 'replay it so far' })) : null,
     ),
     el('td', { text: r.skid }),
     el(

@@ -1,3 +1,4 @@
+import type { RunRow } from '../../server/wire/index.ts'
 import type { ZoneClock } from '../model/clock.ts'
 import { duration } from '../model/format.ts'
 import { el, fill, say, svg } from './dom.ts'
@@ -30,6 +31,7 @@ export function stripView(hooks: StripHooks) {
   const mode = el('p', { class: 'mode' })
   const watch = el('a', { href: '#/watch', text: 'Watch' })
   const replay = el('a', { href: '#/replay', text: 'Replay' })
+  const skids = el('nav', { 'aria-label': 'Live skids', hidden: true })
   const facts = el('div', { class: 'facts' })
   const teethPath = svg('path')
   const comb = svg(
@@ -50,6 +52,7 @@ export function stripView(hooks: StripHooks) {
     skid,
     mode,
     el('nav', { 'aria-label': 'Pages' }, el('ul', {}, el('li', {}, watch), el('li', {}, replay))),
+    skids,
     el('span', { class: 'grow' }),
     facts,
     alive,
@@ -58,9 +61,27 @@ export function stripView(hooks: StripHooks) {
     theme,
   )
   let factsKey = ''
+  let skidsKey = ''
 
   return {
     node,
+    /** Where more than one skid is live: a way to each, with what is not acknowledged there. */
+    skids(runs: readonly RunRow[], here: number | null): void {
+      const live = runs.filter((r) => r.state === 'live').sort((a, b) => a.run - b.run)
+      const key = JSON.stringify([here, ...live.map((r) => [r.run, r.skid, r.alarms.unacknowledged])])
+      if (key === skidsKey) return
+      skidsKey = key
+      skids.hidden = live.length < 2
+      const item = (r: RunRow) => {
+        const unack = r.alarms.unacknowledged === 0 ? '' : ` ${r.alarms.unacknowledged} unack`
+        return el(
+          'li',
+          {},
+          el('a', { href: `#/watch/${r.run}`, 'aria-current': r.run === here && 'page', text: `${r.skid}${unack}` }),
+        )
+      }
+      fill(skids, el('ul', {}, ...live.map(item)))
+    },
     show(s: StripState): void {
       say(skid, s.skid)
       say(mode, s.mode)

@@ -16,6 +16,9 @@ const dashes: readonly number[][] = [[], [7, 4], [2, 4], [9, 3, 2, 3], [1, 3]]
 export function trendChart(canvas: HTMLCanvasElement) {
   let spec: TrendSpec | null = null
   let frame = 0
+  const ask = (): void => {
+    frame ||= requestAnimationFrame(() => draw())
+  }
   const overlay: Plugin<'line'> = {
     id: 'overlay',
     beforeDatasetsDraw(chart) {
@@ -45,6 +48,8 @@ export function trendChart(canvas: HTMLCanvasElement) {
       maintainAspectRatio: false,
       spanGaps: false,
       events: [],
+      // How many ticks there is room for hangs on the width.
+      onResize: () => ask(),
       layout: { padding: { top: 2, right: 2 } },
       scales: { x: { type: 'linear' }, y: { type: 'linear' } },
     },
@@ -129,9 +134,6 @@ export function trendChart(canvas: HTMLCanvasElement) {
     canvas.dataset['limits'] = String(s.overlay.limits.reduce((n, l) => n + l.steps.length, 0))
     canvas.dataset['from'] = String(s.fromMs)
     canvas.dataset['to'] = String(s.toMs)
-  }
-  const ask = (): void => {
-    frame ||= requestAnimationFrame(draw)
   }
   const off = onPalette(ask)
 
