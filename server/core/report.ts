@@ -8,6 +8,10 @@ export interface Report {
   readonly timeline: readonly TimelinePoint[]
   /** Addition: what the tool left out or assumed, in plain words. */
   readonly notes: readonly string[]
+  /** Additions: what the readings say of the streams, when disturbances leave the skid, how the alarm system did. */
+  readonly streams: readonly StreamReport[]
+  readonly outlet: readonly OutletReport[]
+  readonly alarmMetrics: AlarmMetricsReport | null
 }
 
 export interface RunReport {
@@ -64,6 +68,21 @@ export interface ForecastReport {
   readonly level: number
 }
 
+/** The chart of the promise on one segment: how it was designed, where it stands, and how often it signalled on what it saw. */
+export interface ChartReport {
+  /** Allowance and decision interval in units of `sigma`, the sd of a whitened five-minute mean of ln ratio. */
+  readonly k: number
+  readonly h: number
+  readonly sigma: number
+  readonly cusum: number
+  /** Hours between false alarms of all charts of the skid together, as designed; and of this chart as observed, null while it has not signalled. */
+  readonly designedHours: number
+  readonly observedHours: number | null
+  readonly hours: number
+  /** Robust slope of ln ratio per hour with its 99 % interval; null while not told apart from none. */
+  readonly driftPerHour: { readonly at: number; readonly low: number; readonly high: number } | null
+}
+
 export interface SegmentReport {
   readonly segment: string
   readonly baseline: BaselineReport | null
@@ -72,6 +91,103 @@ export interface SegmentReport {
   readonly onset: OnsetReport | null
   readonly growthPerHour: number | null
   readonly forecast: ForecastReport | null
+  /** Addition: null before the final baseline. */
+  readonly chart: ChartReport | null
+  /** Additions: what would explain the ratio, null without a deposit; heat transfer from the readings, null where they do not carry it. */
+  readonly deposit: DepositReport | null
+  readonly heat: HeatReport | null
+}
+
+/** A ratio with its interval (± 2 sd) and everything that one pressure drop at one flow leaves open about it. */
+export interface DepositReport {
+  readonly ratio: number
+  readonly low: number
+  readonly high: number
+  readonly readings: readonly {
+    readonly kind: 'uniform' | 'local' | 'plugged-branch'
+    /** Share of the length covered; what is left of the bore there. */
+    readonly lengthShare: number | null
+    readonly boreRatio: number
+    readonly thicknessMm: number | null
+    readonly depositMl: number | null
+    /** Share of the liquid volume that no longer takes part. */
+    readonly volumeLost: number
+  }[]
+  readonly cannotTell: readonly string[]
+  readonly couldTell: readonly string[]
+  /** Share of the lithium hydroxide that the feeds' water makes which must have stayed, as an even film, since the onset. */
+  readonly capture: {
+    readonly share: number
+    readonly low: number | null
+    readonly high: number | null
+    readonly solidMlPerHour: number
+  } | null
+}
+
+export interface HeatReport {
+  /** Overall coefficient on the inner area now, W/(m² K), low and high from the sensors (2 sd). */
+  readonly uWM2K: number
+  readonly low: number
+  readonly high: number
+  /** The same at the clean baseline, and as computed from the file. */
+  readonly cleanUWM2K: number | null
+  readonly computedUWM2K: number | null
+  /** 1/U − 1/U0, m² K/W. */
+  readonly foulingM2KW: number | null
+}
+
+export interface StreamReport {
+  readonly stream: string
+  /** Viscosity over that of the file's liquid, learnt on the clean baselines of `segments` segments; null before any. */
+  readonly viscosityFactor: {
+    readonly factor: number
+    readonly low: number
+    readonly high: number
+    readonly level: number
+    readonly segments: number
+  } | null
+}
+
+/** When what a disturbance touched leaves the skid, counted by volume; `to` is null while it stands or is still inside. */
+export interface OutletReport {
+  readonly alarm: number
+  readonly segment: string
+  /** The segment at whose end it leaves. */
+  readonly outlet: string
+  readonly from: string | null
+  readonly to: string | null
+  /** Outlet volume until its first and last part appears. */
+  readonly firstMl: number
+  readonly lastMl: number
+  readonly divertedMl: number | null
+  /** Seconds without a known flow: the window is at least as late as given. */
+  readonly unknownSeconds: number
+  readonly epsilon: number
+  readonly models: readonly string[]
+}
+
+/** Performance of the alarm system over the run (ALM-13). */
+export interface AlarmMetricsReport {
+  readonly from: string
+  readonly to: string
+  readonly hours: number
+  readonly records: number
+  readonly label: string | null
+  readonly annunciated: number
+  readonly ratePerHour: number
+  readonly tenMinutes: { readonly windows: number; readonly over10: number; readonly most: number }
+  readonly hoursOver30: { readonly windows: number; readonly over30: number }
+  readonly floodShare: number
+  readonly floods: readonly { readonly from: string; readonly to: string; readonly count: number }[]
+  readonly mostFrequent: readonly { readonly key: string; readonly count: number; readonly share: number }[]
+  readonly topTenShare: number
+  readonly chattering: readonly { readonly key: string; readonly at: string }[]
+  readonly fleeting: readonly { readonly key: string; readonly at: string; readonly lastedSeconds: number }[]
+  readonly stale: readonly { readonly key: string; readonly from: string; readonly hours: number }[]
+  readonly priorityShare: Readonly<Record<Priority, number>>
+  readonly suppressed: readonly { readonly key: string; readonly count: number }[]
+  readonly outsideProcedure: number
+  readonly refused: number
 }
 
 export const alarmKinds = [

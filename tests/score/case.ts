@@ -183,11 +183,17 @@ export function reportWith(
         onset: hindsight,
         growthPerHour: null,
         forecast: null,
+        chart: null,
+          deposit: null,
+        heat: null,
       },
     ],
     alarms,
     advice: [],
     timeline,
     notes: [],
+    streams: [],
+    outlet: [],
+    alarmMetrics: null,
   }
 }

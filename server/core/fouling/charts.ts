@@ -2,6 +2,7 @@ import { type CusumDesign, designCusum } from '../design/cusum-design.ts'
 import { type CusumState, cusum } from '../detectors/cusum.ts'
 import { type DriftState, drift } from '../detectors/drift.ts'
 import type { GrowthPoint } from '../growth/points.ts'
+import type { ChartReport } from '../report.ts'
 
 /** Steps averaged to one point of the charts: five minutes on a one-second grid. */
 const stepsPerPoint = 10
@@ -112,6 +113,22 @@ export function stepCharts(c: ChartState, tMs: number, lnRatio: number | null): 
   c.drift = drift.step(driftConfig, c.drift, { tMs: at, z: x / c.sigma }).state
   c.points.push({ tMs: at, lnRatio: x })
   if (c.points.length > 480) c.points = c.points.filter((_, i) => i % 2 === 0)
+}
+
+/** The chart as the report shows it; `stepS` is the detector step. */
+export function chartReport(c: ChartState, riseToFindPct: number, stepS: number): ChartReport {
+  const now = readCharts(c, riseToFindPct)
+  const hours = (c.seen * stepsPerPoint * stepS) / 3600
+  return {
+    k: c.design.k,
+    h: c.design.h,
+    sigma: c.design.chartSigma,
+    cusum: now.cusum,
+    designedHours: c.design.falseAlarmHours,
+    observedHours: c.signals === 0 ? null : hours / c.signals,
+    hours,
+    driftPerHour: now.drift === null ? null : { at: now.drift.perHour, low: now.drift.low, high: now.drift.high },
+  }
 }
 
 export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {

@@ -1,18 +1,34 @@
+import type { AlarmRecord } from '../alarms/alarm-state.ts'
 import { alarmReport, type Occurrence } from '../alarms/occurrence.ts'
+import { stepScans } from '../derive/step.ts'
+import { chartReport } from '../fouling/charts.ts'
 import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
+import { alarmPerformance } from '../insight/alarm-system.ts'
+import { insightOf } from '../insight/insight.ts'
+import { createOutletFlow } from '../insight/outlet-flow.ts'
+import { outletOf } from '../insight/outlet-path.ts'
 import { gradeOf, reasons } from '../quality/tag-rules.ts'
-import type { AdviceReport, BaselineReport, ForecastReport, Report, SegmentReport, TagReport, TimelinePoint } from '../report.ts'
+import type {
+  AdviceReport,
+  AlarmKind,
+  BaselineReport,
+  ForecastReport,
+  Report,
+  SegmentReport,
+  TagReport,
+  TimelinePoint,
+} from '../report.ts'
 import type { Skid } from '../skid.ts'
-import { barFromPa, cFromK, mlMinFromM3s } from '../units.ts'
+import { barFromPa, cFromK, m3sFromMlMin, mlMinFromM3s } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
 import { onsetReport, type Pipeline } from './pipeline.ts'
 
 const iso = (ms: number): string => new Date(ms).toISOString()
 
-export const forecastReport = (f: ForecastRecord | null): ForecastReport | null =>
+const forecastReport = (f: ForecastRecord | null): ForecastReport | null =>
   f === null ? null : { limit: f.limit, at: iso(f.atMs), low: iso(f.lowMs), high: iso(f.highMs), level: f.level }
 
-export const baselineReport = (b: BaselineRecord): BaselineReport => ({
+const baselineReport = (b: BaselineRecord): BaselineReport => ({
   from: iso(b.fromMs),
   to: iso(b.toMs),
   dpBar: barFromPa(b.dpPa),
@@ -22,18 +38,33 @@ export const baselineReport = (b: BaselineRecord): BaselineReport => ({
   tempC: b.tempK === null ? null : cFromK(b.tempK),
 })
 
-/** Folds the pipeline's events into the report. Holds what the report holds: alarms, advice, baselines and a point each 600 s. */
+/** Alarms whose material is off-specification for as long as they stand, and so has a window at the outlet. */
+const disturbs: ReadonlySet<AlarmKind> = new Set<AlarmKind>(['fouling', 'exotherm', 'feed-ratio'])
+
+/**
+ * Folds the pipeline's events into the report. Holds what the report holds: alarms with their journal, advice, baselines, a point each 600 s,
+ * and the flow at each outlet for a week.
+ */
 export function createCollector(skid: Skid) {
   const alarms = new Map<number, Occurrence>()
   const baselines = new Map<string, BaselineRecord[]>()
   const advice: AdviceReport[] = []
   const timeline: TimelinePoint[] = []
   const notes: string[] = []
+  const records: AlarmRecord[] = []
+  const stepMs = stepScans(skid.scanSeconds) * skid.scanSeconds * 1000
+  const outlets = new Map(skid.segments.map((_, i) => [outletOf(skid, i), createOutletFlow()]))
   return {
     take(events: readonly PipelineEvent[]): void {
       for (const e of events) {
         if (e.kind === 'alarm') alarms.set(e.change.occurrence.id, e.change.occurrence)
         else if (e.kind === 'advice') advice.push(e.advice)
+        else if (e.kind === 'transition') records.push(e.record)
+        else if (e.kind === 'step')
+          for (const [i, flow] of outlets) {
+            const mlMin = e.segments[i]?.flowMlMin ?? null
+            flow.take(e.tMs, stepMs, mlMin === null ? null : m3sFromMlMin(mlMin))
+          }
         else if (e.kind === 'note') notes.push(`${iso(e.tMs)} ${e.text}`)
         else if (e.kind === 'timeline')
           for (const p of e.points)
@@ -61,6 +92,17 @@ export function createCollector(skid: Skid) {
         })
         return { tag: t.tag, samples: count.good + count.uncertain + count.bad, ...count, reasons: why }
       })
+      const insight = insightOf({
+        skid,
+        nowMs: g.lastRowMs,
+        now: view.present.now(),
+        segments: skid.segments.map((spec, i) => {
+          const { growth, last } = view.segment(i)
+          return { baseline: baselines.get(spec.id)?.at(-1) ?? null, ratio: last, growth, atBaseline: view.present.atBaseline(i) }
+        }),
+        disturbances: [...alarms.values()].filter((o) => o.annunciated && disturbs.has(o.kind)).sort((a, b) => a.id - b.id),
+        outletFlow: (i) => outlets.get(outletOf(skid, i))?.samples() ?? [],
+      })
       const segments = skid.segments.map((spec, i): SegmentReport => {
         const w = view.segment(i)
         const all = (baselines.get(spec.id) ?? []).map(baselineReport)
@@ -73,6 +115,9 @@ export function createCollector(skid: Skid) {
           onset: onset === null ? null : onsetReport(onset),
           growthPerHour: w.growth?.growthPerHour ?? null,
           forecast: forecastReport(w.growth?.forecast ?? null),
+          chart: w.charts === null ? null : chartReport(w.charts, skid.detection.riseToFindPct, stepScans(skid.scanSeconds) * skid.scanSeconds),
+          deposit: insight.deposits[i] ?? null,
+          heat: insight.heat[i] ?? null,
         }
       })
       return {
@@ -91,6 +136,9 @@ export function createCollector(skid: Skid) {
         advice,
         timeline,
         notes: [...extraNotes, ...notes],
+        streams: insight.streams,
+        outlet: insight.outlet,
+        alarmMetrics: g.firstMs < 0 ? null : alarmPerformance(records, g.firstMs, g.lastRowMs + skid.scanSeconds * 1000),
       }
     },
   }
