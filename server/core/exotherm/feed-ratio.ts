@@ -127,13 +127,13 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
       state.sinceSum = 0
       state.sinceN = 0
     }
-    const moves = state.flows.map((r) => moveOf(r))
-    const both = moves.every((m) => m > d.movedBy)
+    const first = moveOf(state.flows[0]) > d.movedBy
+    const second = moveOf(state.flows[1]) > d.movedBy
     const forS = (s.tMs - state.sinceMs) / 1000 + pair.scanS
     if (off !== 0) {
       state.sinceSum += now
       state.sinceN++
-      if (forS >= (both ? d.holdMovedS : d.holdS) && state.sinceN >= 2) state.over = true
+      if (forS >= (first && second ? d.holdMovedS : d.holdS) && state.sinceN >= 2) state.over = true
       if (beyond === 0 && forS >= d.acceptS) {
         state.mean = state.sinceSum / state.sinceN
         release()
@@ -143,7 +143,6 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
       // Gated: what is half way to off is not usual. Before it is armed everything is taken in.
       if (!known || Math.abs(dev) < allowed / 2) learn(dev)
     }
-    const one = (moves[0] as number) > d.movedBy !== (moves[1] as number) > d.movedBy
     return {
       over: s.armed ? state.over : null,
       under: Math.abs(dev) < allowed / 2 && beyond === 0,
@@ -153,7 +152,7 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
       molMol,
       side: off > 0 ? 'high' : off < 0 ? 'low' : null,
       detector: state.over ? (beyond !== 0 ? 'limit' : 'chart') : null,
-      moved: one ? ((moves[0] as number) > d.movedBy ? 0 : 1) : null,
+      moved: first === second ? null : first ? 0 : 1,
       startMs: state.over ? state.sinceMs : null,
     }
   }

@@ -1,4 +1,4 @@
-import { ago, push } from './ring.ts'
+import { push } from './ring.ts'
 import type { ReactorScan } from './types.ts'
 import type { Reactor } from './watch-state.ts'
 
@@ -23,9 +23,10 @@ export function followInlet(r: Reactor, inletC: number | null): void {
   push(r.inlet, inletC)
   let low = Number.POSITIVE_INFINITY
   let high = Number.NEGATIVE_INFINITY
-  for (let n = 0; n < r.inlet.v.length; n++) {
-    const t = ago(r.inlet, n)
-    if (t === null) continue
+  const { v, ok } = r.inlet
+  for (let n = 0; n < v.length; n++) {
+    if (ok[n] !== 1) continue
+    const t = v[n] as number
     if (t < low) low = t
     if (t > high) high = t
   }

@@ -44,12 +44,7 @@ export interface Finding {
   cold: boolean
 }
 
-/** Clears a finding for the next scan; one object a reactor is kept, since this runs at every scan. */
-export const clearFinding = (f: Finding): void => {
-  Object.assign(f, nothing)
-}
-
-const nothing: Finding = {
+export const noFinding = (): Finding => ({
   sum: 0,
   rawSum: 0,
   allow: 0,
@@ -70,13 +65,21 @@ const nothing: Finding = {
   under: true,
   runaway: false,
   cold: false,
+})
+
+/** Clears a finding for the next scan; one object a reactor is kept, field by field, since this runs at every scan. */
+export function clearFinding(f: Finding): void {
+  f.sum = f.rawSum = f.allow = f.n = f.meanK = f.excessK = f.risenK = f.riseLimitK = 0
+  f.hottest = f.hotSpot = f.hotSpotC = f.of = f.nearest = f.spoke = f.detector = null
+  f.hottestK = Number.NEGATIVE_INFINITY
+  f.thresholdK = 1e9
+  f.under = true
+  f.runaway = f.cold = false
 }
 
-export const noFinding = (): Finding => ({ ...nothing })
-
+const rank = { excess: 2, rise: 1, runaway: 0 }
 /** excess outranks rise outranks runaway: the plainest of those that speak is named. */
 export function speak(f: Finding, by: ExothermDetector): void {
-  const rank = { excess: 2, rise: 1, runaway: 0 }
   if (f.detector === null || rank[by] > rank[f.detector]) f.detector = by
 }
 

@@ -41,7 +41,7 @@ export interface ExothermVerdict {
   readonly of: 'thermocouple' | 'reactor' | 'all' | null
   /** Which of the ways spoke; null while none does. */
   readonly detector: ExothermDetector | null
-  /** Rate of the thermocouple with most excess, line through 12 s, and its standard error, K/s. */
+  /** Rate of the thermocouple with most excess, line through 12 s, and its standard error, K/s; null while not over. */
   readonly ratePerS: number | null
   readonly ratePerSSe: number | null
   /** Thermocouple with most excess. */
@@ -49,8 +49,6 @@ export interface ExothermVerdict {
   /** Hot spot: highest reading and its thermocouple. */
   readonly hotSpotC: number | null
   readonly hotSpot: number | null
-  /** How far the centre of the heat has moved from where it usually is, thermocouple spacings, downstream positive; see `profile.ts`. */
-  readonly heatShift: number | null
   /** Hub-Jones criterion fulfilled, whether or not it spoke first. */
   readonly runaway: boolean
   /** As far below what is explained: a cold excursion, sustained 30 s. */

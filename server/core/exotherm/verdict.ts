@@ -22,7 +22,7 @@ export function conclude(
   const over = known && f.detector !== null
   if (over && !r.over) r.startMs = began(f, p, tMs)
   r.over = over
-  const line = f.hottest === null ? null : lineOf((r.thermos[f.hottest] as Thermo).temps, p.rise[0], p.scanS)
+  const line = !over || f.hottest === null ? null : lineOf((r.thermos[f.hottest] as Thermo).temps, p.rise[0], p.scanS)
   const byRise = f.detector === 'rise'
   return {
     over: known ? over : null,
@@ -36,7 +36,6 @@ export function conclude(
     hottest: f.hottest,
     hotSpotC: f.hotSpotC,
     hotSpot: f.hotSpot,
-    heatShift: known ? heatShift(r) : null,
     runaway: f.runaway,
     cold: f.cold,
     cause: over ? causeOf(config, state, found, i, s) : null,
@@ -76,22 +75,21 @@ function causeOf(config: WatchConfig, state: WatchState, found: readonly Finding
   return others ? 'coolant' : 'reaction'
 }
 
-/** Centre of the heat now, by the latest 4-s means, against that of the levels; only of thermocouples read now. */
-function heatShift(r: Reactor): number | null {
-  scratchUsual.length = r.thermos.length
-  scratchNow.length = r.thermos.length
+/**
+ * How far the centre of the heat has moved from where it usually is, thermocouple spacings, downstream positive (see `profile.ts`): by the
+ * latest 4-s means against the levels; only of thermocouples read now. Null with fewer than two or too little heat.
+ */
+export function heatShift(r: Reactor): number | null {
+  const usualK: (number | null)[] = []
+  const nowK: (number | null)[] = []
   for (let j = 0; j < r.thermos.length; j++) {
     const th = r.thermos[j] as Thermo
     const x = ago(th.series.recent, 0)
     const usual = (th.c - th.o) * r.h
-    scratchUsual[j] = x === null ? null : usual
-    scratchNow[j] = x === null ? null : usual + x
+    usualK.push(x === null ? null : usual)
+    nowK.push(x === null ? null : usual + x)
   }
-  const a = heatCentre(scratchNow)
-  const b = heatCentre(scratchUsual)
+  const a = heatCentre(nowK)
+  const b = heatCentre(usualK)
   return a === null || b === null ? null : a - b
 }
-
-// Filled anew at every call; kept so that a scan allocates nothing for it.
-const scratchUsual: (number | null)[] = []
-const scratchNow: (number | null)[] = []

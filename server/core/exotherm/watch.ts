@@ -8,7 +8,7 @@ import { ago, forget, meanOf, push } from './ring.ts'
 import { pace, remember, restart, spread } from './series.ts'
 import { clearFinding, exothermDefaults as d, type Finding, noFinding, speak, test } from './thresholds.ts'
 import type { ExothermVerdict, ReactorConfig, ReactorScan, WatchConfig } from './types.ts'
-import { conclude } from './verdict.ts'
+import { conclude, heatShift } from './verdict.ts'
 import { freshWatch, hubJonesConfig, type Reactor, type Thermo, type WatchState } from './watch-state.ts'
 
 /**
@@ -42,9 +42,8 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     const slow = state.scans % p.slowEvery === 0
     for (const name of names) {
       let reading: number | null = null
-      config.reactors.forEach((rc, i) => {
-        if (rc.coolant === name) reading ??= scans[i]?.coolantC ?? null
-      })
+      for (let i = 0; i < config.reactors.length; i++)
+        if ((config.reactors[i] as ReactorConfig).coolant === name) reading ??= scans[i]?.coolantC ?? null
       coolantScan(state.coolants[name] as Coolant, tMs, reading, gapS)
     }
     let allSum = 0
@@ -128,9 +127,9 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
       if (t > highest) {
         highest = t
         f.hotSpot = j
-        f.hotSpotC = t
       }
     }
+    if (f.hotSpot !== null) f.hotSpotC = highest
     const inlet = bare ? inletOf(scans, i) : null
     if (bare) {
       if (slow) followInlet(r, inlet)
@@ -191,5 +190,5 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     return f
   }
 
-  return { scan, state }
+  return { scan, state, heatShift: (i: number): number | null => heatShift(state.reactors[i] as Reactor) }
 }

@@ -1,7 +1,7 @@
 import type { Signal } from '../alarms/occurrence.ts'
 import type { Layout, SegmentLayout } from '../derive/layout.ts'
 import { createFeedRatio, type FeedPair, type FeedRatioState, type FeedRatioVerdict } from '../exotherm/feed-ratio.ts'
-import type { ExothermVerdict, ReactorConfig, ReactorScan } from '../exotherm/types.ts'
+import type { ExothermVerdict, ReactorConfig } from '../exotherm/types.ts'
 import { createExothermWatch } from '../exotherm/watch.ts'
 import type { WatchState } from '../exotherm/watch-state.ts'
 import { fluidOf } from '../fluids/fluid.ts'
@@ -18,6 +18,17 @@ interface Pair extends FeedPair {
   /** Layout index of either stream, and the segment where they meet. */
   readonly streams: readonly [number, number]
   readonly segment: string
+  readonly key: string
+}
+
+/** What a reactor's thermocouples, coolant and feeds read in the scan at hand; filled anew each scan. */
+interface Readings {
+  readonly tempsC: (number | null)[]
+  coolantC: number | null
+  readonly flowsKgS: (number | null)[]
+  ratioHigh: boolean
+  production: boolean
+  armed: boolean
 }
 
 /** Feeds are metered near room temperature; their density is taken there, K. */
@@ -50,6 +61,12 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
     layout.streams[i]!.isMass ? 1 : s.fluid === null ? 1000 : fluidOf(s.fluid).at(feedTempK).rhoKgM3,
   )
 
+  const ratioHigh = new Uint8Array(skid.streams.length)
+  const readings = reactors.map(
+    (): Readings => ({ tempsC: [], coolantC: null, flowsKgS: [], ratioHigh: false, production: false, armed: false }),
+  )
+  const keys = reactors.map((g) => ({ key: `exotherm:${g.spec.id}`, coldKey: `temperature-limit:${g.spec.id}:cold` }))
+
   const flowOf = (stream: number, scan: Scan): number | null => {
     const tag = layout.streams[stream]!.tag
     return tag >= 0 && scan.used[tag]! > 0 ? scan.si[tag]! * kgPer[stream]! : null
@@ -61,31 +78,41 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
     state: (): ExcursionState => ({ watch: watch?.state ?? null, ratios: ratios.map((r) => r.state) }),
     scan(scan: Scan, tMs: number, on: { production: boolean; armed: boolean }, emit: (s: Signal) => void): void {
       if (scan.rows === 0) return
-      const high = new Set<number>()
-      ratios.forEach((r, i) => {
+      ratioHigh.fill(0)
+      for (let i = 0; i < pairs.length; i++) {
         const p = pairs[i]!
-        const v = r.scan({ tMs, flowsKgS: [flowOf(p.streams[0], scan), flowOf(p.streams[1], scan)], ...on })
-        if (v.highNow) for (const s of p.streams) high.add(s)
+        const [a, b] = p.streams
+        const { production, armed } = on
+        const v = ratios[i]!.scan({ tMs, flowsKgS: [flowOf(a, scan), flowOf(b, scan)], production, armed })
+        if (v.highNow) ratioHigh[a] = ratioHigh[b] = 1
         feedSignal(p, v, tMs, emit)
-      })
+      }
       if (watch === null) return
-      const scans = reactors.map(
-        (g): ReactorScan => ({
-          tempsC: g.temperatures.map((t) => tempOf(t, scan)),
-          coolantC: tempOf(g.coolant, scan),
-          flowsKgS: g.streams.map((s) => flowOf(s, scan)),
-          ratioHigh: g.streams.some((s) => high.has(s)),
-          ...on,
-        }),
-      )
-      watch.scan(tMs, scans).forEach((v, i) => {
-        heatSignal(reactors[i]!, v, tMs, emit)
-      })
+      for (let i = 0; i < reactors.length; i++) read(reactors[i]!, readings[i]!, scan, on)
+      const verdicts = watch.scan(tMs, readings)
+      for (let i = 0; i < reactors.length; i++) heatSignal(reactors[i]!, keys[i]!, verdicts[i]!, tMs, emit)
     },
   }
 
-  function heatSignal(g: SegmentLayout, v: ExothermVerdict, tMs: number, emit: (s: Signal) => void): void {
-    const key = `exotherm:${g.spec.id}`
+  function read(g: SegmentLayout, r: Readings, scan: Scan, on: { production: boolean; armed: boolean }): void {
+    for (let j = 0; j < g.temperatures.length; j++) r.tempsC[j] = tempOf(g.temperatures[j]!, scan)
+    r.coolantC = tempOf(g.coolant, scan)
+    r.ratioHigh = false
+    for (let j = 0; j < g.streams.length; j++) {
+      r.flowsKgS[j] = flowOf(g.streams[j]!, scan)
+      if (ratioHigh[g.streams[j]!] === 1) r.ratioHigh = true
+    }
+    r.production = on.production
+    r.armed = on.armed
+  }
+
+  function heatSignal(
+    g: SegmentLayout,
+    { key, coldKey }: { key: string; coldKey: string },
+    v: ExothermVerdict,
+    tMs: number,
+    emit: (s: Signal) => void,
+  ): void {
     const hottest = v.hottest === null ? null : skid.tags[g.temperatures[v.hottest]!]!.tag
     if (v.over === true || knows(key)) {
       const rate = v.ratePerS === null ? '' : `, ${(60 * v.ratePerS).toFixed(1)} ± ${(60 * (v.ratePerSSe ?? 0)).toFixed(1)} K/min`
@@ -129,7 +156,6 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
         offDelayS: 5 * Math.max(1, skid.scanSeconds),
       })
     }
-    const coldKey = `temperature-limit:${g.spec.id}:cold`
     if (v.cold || knows(coldKey))
       emit({
         key: coldKey,
@@ -153,7 +179,7 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
   }
 
   function feedSignal(p: Pair, v: FeedRatioVerdict, tMs: number, emit: (s: Signal) => void): void {
-    const key = `feed-ratio:${p.of.join('/')}`
+    const { key } = p
     if (v.over !== true && !knows(key)) return
     const off = v.relative === null ? '' : `${(100 * (v.relative - 1)).toFixed(1)} % off its usual value`
     emit({
@@ -205,6 +231,7 @@ function feedPairs(layout: Layout): Pair[] {
       molPerKg: conc[0] === null || conc[1] === null ? null : [conc[0], conc[1]],
       streams,
       segment,
+      key: `feed-ratio:${of.join('/')}`,
     })
   }
   for (const g of skid.segments) if (g.limits.feedRatio !== null) add(g.limits.feedRatio.of, g.id, g.limits.feedRatio)
