@@ -1,6 +1,6 @@
+import { type ExportKind, exportKinds, exportRun } from '../export-run.ts'
 import { instantOf } from '../ingest/instant.ts'
 import { createCatalogue } from '../monitor/catalogue.ts'
-import { type ExportKind, exportKinds, exportRun } from '../record/export-run.ts'
 import { loadSkid } from '../skid/check.ts'
 import { openStore } from '../store/open.ts'
 import { openAtomic, writeAtomic } from './atomic-file.ts'

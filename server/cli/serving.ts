@@ -3,11 +3,12 @@ import { buildApp } from '../app.ts'
 import { MonitorError } from '../core/errors.ts'
 import { demoScenario } from '../core/sim/demo.ts'
 import type { Skid } from '../core/skid.ts'
+import { exportRun } from '../export-run.ts'
+import { createImports } from '../imports.ts'
 import { followSource } from '../ingest/follow.ts'
 import { simulatedSource } from '../ingest/simulated.ts'
 import type { Source } from '../ingest/source.ts'
 import { createCatalogue, createPair, kindOf } from '../monitor/catalogue.ts'
-import { createImports } from '../monitor/imports.ts'
 import { createMonitor } from '../monitor.ts'
 import { loadSkid } from '../skid/check.ts'
 import type { RunId } from '../store/keys.ts'
@@ -145,6 +146,7 @@ export async function startServing(o: ServingOptions) {
     isDemo: () => o.isDemo,
     wallMs,
     uploadMaxBytes: 512 * 2 ** 20,
+    exportRun,
     skidOf: loadSkid,
     importLogs: (job) => catalogue.row(imports.begin(job)),
     webRoot: o.webRoot,

@@ -1,7 +1,6 @@
 import { Readable } from 'node:stream'
 import type { FastifyPluginAsyncTypebox } from '@fastify/type-provider-typebox'
 import { Type } from 'typebox'
-import { exportRun } from '../record/export-run.ts'
 import { problemSchema } from './schemas.ts'
 import type { Services } from './services.ts'
 
@@ -37,7 +36,7 @@ export const exportRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
       },
       async ({ params: { run }, query }, reply) => {
         const q = query as { fromMs?: number; toMs?: number; kind?: string; segment?: string; priority?: string }
-        const out = exportRun({
+        const out = s.exportRun({
           parts: s.catalogue.parts(run),
           row: s.catalogue.row(run),
           live: s.monitor.engine(run),

@@ -1,4 +1,5 @@
 import type { Skid } from '../core/skid.ts'
+import type { exportRun } from '../export-run.ts'
 import type { Catalogue } from '../monitor/catalogue.ts'
 import type { MonitorStore } from '../monitor/needs.ts'
 import type { Monitor } from '../monitor.ts'
@@ -15,6 +16,7 @@ export interface Services {
   readonly isDemo: () => boolean
   readonly wallMs: () => number
   readonly uploadMaxBytes: number
+  readonly exportRun: typeof exportRun
   readonly skidOf: (text: string, file: string) => Skid
   /** Begins an import of logs that lie on disk; the run is listed at once, `done` runs when the files may go. */
   readonly importLogs: (job: ImportJob) => RunRow

@@ -1,4 +1,4 @@
-import type { BaselineRecord } from '../core/fouling/watch.ts'
+import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
 import { createCollector } from '../core/pipeline/collect.ts'
 import type { PipelineEvent } from '../core/pipeline/events.ts'
 import { createPipeline, type PipelineState } from '../core/pipeline/pipeline.ts'
@@ -6,18 +6,18 @@ import type { RowBlock } from '../core/reading.ts'
 import type { AdviceReport, Report } from '../core/report.ts'
 import type { Entry } from '../core/sequence.ts'
 import type { Skid } from '../core/skid.ts'
-import { barFromPa } from '../core/units.ts'
-import type { AlarmTransition, StoredEvent } from '../store/journal.ts'
+import type { StoredEvent } from '../store/journal.ts'
 import type { Json, RunId } from '../store/keys.ts'
 import type { ActRow } from '../wire/act.ts'
 import type { AlarmRow, TransitionRow } from '../wire/alarm.ts'
 import type { Interval } from '../wire/live.ts'
-import type { Marks, ReadingFrame, StepPoint } from '../wire/trend.ts'
+import type { ReadingFrame, StepPoint } from '../wire/trend.ts'
 import { alarmHelpOf } from './alarm-help.ts'
 import { createAlarmLog, transitionRow } from './alarm-log.ts'
 import type { MonitorStore } from './needs.ts'
 import { createScanView, type ScanViewState } from './scan-view.ts'
-import { type GrowthNow, type StepRow, stepBlock, stepPoint } from './step-log.ts'
+import { type GrowthNow, readSteps, type StepRow, stepBlock, stepPoint } from './step-log.ts'
+import { type Baseline, baselineOf, storedTransition } from './stored-rows.ts'
 
 /** A snapshot: the pipeline after `seq` entries and how much it had said by then. Plain JSON. */
 export interface EngineState {
@@ -47,6 +47,9 @@ export interface EngineOptions {
   /** The run beside it that keeps its detector steps. */
   readonly stepsRun: RunId
 }
+
+/** The report looks back over steps for at most a week; two hours more for what lies beyond the snapshot. */
+const reportStepsMs = (7 * 24 + 2) * 3_600_000
 
 const toInterval = (i: { atMs: number; lowMs: number; highMs: number; level: number } | null): Interval | null =>
   i === null ? null : { atMs: i.atMs, lowMs: i.lowMs, highMs: i.highMs, level: i.level }
@@ -102,6 +105,7 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     let growth: GrowthNow[] | null = null
     for (const e of events) {
       if (e.kind === 'step') {
+        collector.take([e])
         growth ??= growthNow()
         lastStep = { tMs: e.tMs, production: e.production, segments: e.segments, growth }
         if (counts.steps++ >= stepsOnDisk) pending.steps.push(lastStep)
@@ -149,10 +153,20 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
       store.sequence.append([{ run: stepsRun, entries: [{ kind: 'rows', block: stepBlock(pending.steps, skid.segments.length) }] }])
   }
 
+  /** The steps that the report still needs; those beyond the snapshot come again by themselves. */
+  function foldSteps(): void {
+    const span = counts.steps === 0 ? null : store.sequence.span(stepsRun)
+    if (span === null) return
+    const stored = readSteps(store, stepsRun, skid.segments.length, span.toMs - reportStepsMs, span.toMs + 1)
+    for (const { tMs, production, segments } of stored.slice(0, Math.max(0, stored.length - (stepsOnDisk - counts.steps))))
+      collector.take([{ kind: 'step', tMs, production, inferred: skid.phaseColumn === null, segments }])
+  }
+
   function resume(): void {
     for (const { tMs, body } of store.events.list(run, 0, counts.events)) fold(body as unknown as PipelineEvent, tMs)
     for (const t of store.transitions.list(run).slice(0, counts.transitions))
-      alarms.take({ kind: 'transition', record: t.more as unknown as ReturnType<typeof recordOf> })
+      fold({ kind: 'transition', record: t.more as unknown as AlarmRecord }, t.tMs)
+    foldSteps()
     for (const { entry } of store.sequence.read(run, counts.seq)) push([entry])
   }
   resume()
@@ -206,34 +220,9 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
 }
 export type Engine = ReturnType<typeof createEngine>
 
-type Baseline = Omit<Marks['baselines'][number], 'segment'>
-export const baselineOf = (b: BaselineRecord): Baseline => ({
-  fromMs: b.fromMs,
-  toMs: b.toMs,
-  dpBar: barFromPa(b.dpPa),
-  sigma: b.sigma,
-  provisional: b.provisional,
-})
-
-type Record_ = Extract<PipelineEvent, { kind: 'transition' }>['record']
-const recordOf = (r: Record_): Record_ => r
-
 const empty = () => ({
   events: [] as StoredEvent[],
-  transitions: [] as Record_[],
+  transitions: [] as AlarmRecord[],
   steps: [] as StepRow[],
   acts: [] as ActRow[],
-})
-
-/** The record whole in `more`; its main fields beside it for readers of the database. */
-const storedTransition = (r: Record_): AlarmTransition => ({
-  alarm: r.alarm ?? 0,
-  tMs: r.tMs,
-  from: r.from,
-  to: r.to,
-  input: r.input,
-  person: r.person,
-  reason: r.reason,
-  value: r.value,
-  more: r as unknown as Json,
 })

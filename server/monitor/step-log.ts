@@ -1,8 +1,10 @@
 import type { StepEntry } from '../core/pipeline/events.ts'
 import { cell, type RowBlock, rowBlock } from '../core/reading.ts'
 import { type LimitName, limitNames } from '../core/sequence.ts'
+import type { RunId } from '../store/keys.ts'
 import type { Interval } from '../wire/live.ts'
 import type { StepPoint } from '../wire/trend.ts'
+import type { MonitorStore } from './needs.ts'
 
 /** What a segment's growth looked like at the end of a step. */
 export interface GrowthNow {
@@ -40,7 +42,7 @@ const channels = [
 ] as const
 export type StepChannel = (typeof channels)[number]
 
-export const stepWidth = (segments: number): number => 1 + segments * channels.length
+const stepWidth = (segments: number): number => 1 + segments * channels.length
 export const stepTag = (segment: number, channel: StepChannel): number => 1 + segment * channels.length + channels.indexOf(channel)
 export const stepsTitle = (run: number): string => `steps of run ${run}`
 export const isSteps = (source: string): boolean => source.startsWith('steps of run ')
@@ -73,7 +75,7 @@ export function stepBlock(rows: readonly StepRow[], segments: number): RowBlock 
 }
 
 /** A stored row as a step again; `at` gives a channel's value, null where it was missing. */
-export function stepOf(tMs: number, segments: number, at: (channel: number) => number | null): StepRow {
+function stepOf(tMs: number, segments: number, at: (channel: number) => number | null): StepRow {
   const intervalOf = (i: number, part: 'onset' | 'limit'): Interval | null => {
     const [atMs, lowMs, highMs, level] = (['AtMs', 'LowMs', 'HighMs', 'Level'] as const).map((end) =>
       at(stepTag(i, `${part}${end}`)),
@@ -100,6 +102,26 @@ export function stepOf(tMs: number, segments: number, at: (channel: number) => n
       }
     }),
   }
+}
+
+/** Stored steps whose end lies in [fromMs, toMs), oldest first. */
+export function readSteps(
+  store: Pick<MonitorStore, 'readings'>,
+  stepsRun: RunId,
+  segments: number,
+  fromMs: number,
+  toMs: number,
+): StepRow[] {
+  const width = stepWidth(segments)
+  const columns = store.readings.samples(
+    stepsRun,
+    Array.from({ length: width }, (_, i) => i),
+    fromMs,
+    toMs,
+  )
+  return Array.from(columns[0]?.tMs ?? [], (tMs, r) =>
+    stepOf(tMs, segments, (c) => (columns[c]!.codes[r] === cell.value ? columns[c]!.values[r]! : null)),
+  )
 }
 
 export const stepPoint = ({ tMs, production, segments }: StepRow): StepPoint => ({ tMs, production, segments })

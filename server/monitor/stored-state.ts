@@ -5,11 +5,12 @@ import { valueUnit } from '../core/units.ts'
 import type { LiveState, ScanComb, TagState } from '../wire/live.ts'
 import { alarmHelpOf } from './alarm-help.ts'
 import { type AlarmLog, createAlarmLog } from './alarm-log.ts'
-import { baselineOf, type Engine } from './engine.ts'
+import type { Engine } from './engine.ts'
 import { adviceInForce, limitsOfSkid, stateOf } from './live-state.ts'
 import { combTeeth } from './scan-view.ts'
 import { stepMsOf } from './skid-facts.ts'
 import { stepTag } from './step-log.ts'
+import { baselineOf } from './stored-rows.ts'
 import { type RunParts, stepsBetween } from './trends.ts'
 
 /** The alarms of a run as they stood at a moment, from its journal. */

@@ -5,10 +5,10 @@ import { valueUnit } from '../core/units.ts'
 import type { RunId } from '../store/keys.ts'
 import type { EnvelopeOfTag } from '../store/readings.ts'
 import type { Band, Marks, ReadingFrame, StepPoint, Trends } from '../wire/trend.ts'
-import { baselineOf } from './engine.ts'
 import { limitsOfSkid } from './live-state.ts'
 import type { MonitorStore } from './needs.ts'
-import { type StepRow, stepOf, stepPoint, stepTag, stepWidth } from './step-log.ts'
+import { readSteps, type StepRow, stepPoint, stepTag } from './step-log.ts'
+import { baselineOf } from './stored-rows.ts'
 
 export interface RunParts {
   readonly store: MonitorStore
@@ -46,20 +46,8 @@ export function trendsOf(p: RunParts, fromMs: number, toMs: number, buckets: num
 }
 
 /** Stored steps that ended in (afterMs, toMs], oldest first. */
-export function stepsBetween({ store, skid, stepsRun }: RunParts, afterMs: number, toMs: number): StepRow[] {
-  const width = stepWidth(skid.segments.length)
-  const columns = store.readings.samples(
-    stepsRun,
-    Array.from({ length: width }, (_, i) => i),
-    afterMs + 1,
-    toMs + 1,
-  )
-  const first = columns[0]
-  if (first === undefined) return []
-  return Array.from(first.tMs, (tMs, r) =>
-    stepOf(tMs, skid.segments.length, (c) => (columns[c]!.codes[r] === 1 ? columns[c]!.values[r]! : null)),
-  )
-}
+export const stepsBetween = ({ store, skid, stepsRun }: RunParts, afterMs: number, toMs: number): StepRow[] =>
+  readSteps(store, stepsRun, skid.segments.length, afterMs + 1, toMs + 1)
 
 /** What a page that was cut off at `sinceMs` has missed: steps, at most the latest `most`, and readings in at most 600 frames. */
 export function missedSince(p: RunParts, sinceMs: number, toMs: number, most = 2000) {

@@ -1,8 +1,9 @@
 import { onTestFinished } from 'vitest'
 import { buildApp } from '../../server/app.ts'
 import type { Scenario } from '../../server/core/sim/scenario.ts'
+import { exportRun } from '../../server/export-run.ts'
+import { createImports } from '../../server/imports.ts'
 import { createCatalogue } from '../../server/monitor/catalogue.ts'
-import { createImports } from '../../server/monitor/imports.ts'
 import { loadSkid } from '../../server/skid/check.ts'
 import { shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
 
@@ -34,6 +35,7 @@ export async function served(
     isDemo: () => true,
     wallMs,
     uploadMaxBytes: more.uploadMaxBytes ?? 2 ** 22,
+    exportRun,
     skidOf: loadSkid,
     importLogs: (job) => catalogue.row(imports.begin(job)),
     webRoot: more.webRoot ?? null,

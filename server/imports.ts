@@ -1,13 +1,13 @@
 import { createReadStream } from 'node:fs'
-import { MonitorError } from '../core/errors.ts'
-import type { Act } from '../core/sequence.ts'
-import type { Skid } from '../core/skid.ts'
-import { readEvents } from '../ingest/events-file.ts'
-import { instantOf } from '../ingest/instant.ts'
-import type { RunId } from '../store/keys.ts'
-import { type Busy, createPair } from './catalogue.ts'
+import { MonitorError } from './core/errors.ts'
+import type { Act } from './core/sequence.ts'
+import type { Skid } from './core/skid.ts'
 import { importRun } from './import-run.ts'
-import type { MonitorStore } from './needs.ts'
+import { readEvents } from './ingest/events-file.ts'
+import { instantOf } from './ingest/instant.ts'
+import { type Busy, createPair } from './monitor/catalogue.ts'
+import type { MonitorStore } from './monitor/needs.ts'
+import type { RunId } from './store/keys.ts'
 
 export interface UploadJob {
   readonly title: string

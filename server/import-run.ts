@@ -1,11 +1,11 @@
-import { MonitorError } from '../core/errors.ts'
-import { phases, type RowBlock } from '../core/reading.ts'
-import type { Act, Entry } from '../core/sequence.ts'
-import type { Skid } from '../core/skid.ts'
-import { type LogSource, type LogTally, readLogs } from '../ingest/csv/read-log.ts'
-import type { RunId } from '../store/keys.ts'
-import { createEngine } from './engine.ts'
-import type { MonitorStore } from './needs.ts'
+import { MonitorError } from './core/errors.ts'
+import { phases, type RowBlock } from './core/reading.ts'
+import type { Act, Entry } from './core/sequence.ts'
+import type { Skid } from './core/skid.ts'
+import { type LogSource, type LogTally, readLogs } from './ingest/csv/read-log.ts'
+import { createEngine } from './monitor/engine.ts'
+import type { MonitorStore } from './monitor/needs.ts'
+import type { RunId } from './store/keys.ts'
 
 export interface ImportOptions {
   readonly store: MonitorStore
