@@ -165,9 +165,11 @@ async function go(): Promise<void> {
     if (live === undefined) {
       idle('watch', 'Clearbore')
       note(
-        runs.length === 0
-          ? 'No run yet. As soon as a source sends its first reading, the skid appears here.'
-          : 'No run is live now. Stored runs are on the replay page.',
+        run !== null
+          ? `There is no run ${run}. Stored runs are on the replay page.`
+          : runs.length === 0
+            ? 'No run yet. As soon as a source sends its first reading, the skid appears here.'
+            : 'No run is live now. Stored runs are on the replay page.',
       )
       document.title = 'Watch · Clearbore'
       return
@@ -178,7 +180,7 @@ async function go(): Promise<void> {
     }
     const data = await loadRun(live.run)
     if (!here()) return
-    const view = watchView(data, feed, service, shell)
+    const view = watchView(data, feed, shell)
     watch = { run: live.run, view }
     tell()
     fill(place, view.node)

@@ -1,5 +1,4 @@
-/** Deposit is drawn several times its thickness; the drawing states how many. In strips through time five times. */
-export const stripTimes = 5
+import type { SegmentState } from '../../server/wire/index.ts'
 
 /**
  * Share of the bore's radius that a uniform deposit takes at a resistance ratio r [-]: δ/a = 1 − r^(−1/4), laminar flow, round bore.
@@ -32,3 +31,14 @@ export const openPct = (ratio: number | null | undefined): number | null => {
   const share = depositShare(ratio)
   return share === null ? null : 100 * (1 - share)
 }
+
+/** Ratio at which ΔP meets its limit at the flow and temperature now; null without a limit or a clean ΔP. */
+export function limitRatioOf(s: SegmentState): number | null {
+  const clean = s.cleanDpBar ?? s.baseline?.dpBar ?? null
+  const limit = s.limits.dpHighBar
+  return limit === null || clean === null || !(clean > 0) ? null : limit / clean
+}
+
+/** How many times its thickness deposit is drawn on a skid as it stands; one scale for the line and its strips through time. */
+export const timesOf = (segments: readonly SegmentState[]): number =>
+  exaggerationFor(segments.map(limitRatioOf).filter((r) => r !== null))

@@ -278,6 +278,8 @@ function extent(kind: TrendKind, points: readonly Point[], limits: readonly numb
       high = Math.max(high, l)
     }
   }
+  // A forecast towards a limit outside the range gets room to be seen in.
+  if (kind === 'ratio' && fan && !limits.some((l) => l <= high)) high += 0.8 * (high - 1)
   const room = Math.max(high - low, span) * 0.1
   return [kind === 'dp' || kind === 'flow' ? Math.max(0, low - room) : low - room, high + room]
 }

@@ -1,5 +1,5 @@
 import type { SkidFacts } from '../../server/wire/index.ts'
-import { drawnShare, stripTimes } from '../model/bore.ts'
+import { drawnShare } from '../model/bore.ts'
 import type { RunData } from '../model/run-data.ts'
 import { type Point, thin } from '../model/series.ts'
 import { el } from './dom.ts'
@@ -15,7 +15,15 @@ const phaseRem = 1.4
 export function boresView(facts: SkidFacts, data: RunData) {
   const canvas = el('canvas', { class: 'bores', role: 'img' })
   let frame = 0
-  let shown: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string; rhythmMs: number } | null = null
+  let shown: {
+    fromMs: number
+    toMs: number
+    atMs: number
+    hot: string | null
+    word: string
+    rhythmMs: number
+    times: number
+  } | null = null
 
   function draw(): void {
     frame = 0
@@ -95,7 +103,7 @@ export function boresView(facts: SkidFacts, data: RunData) {
           size,
         )
         pen.fillStyle = look.colour.deposit
-        deposit(pen, run, x, top, size)
+        deposit(pen, run, x, top, size, s.times)
       }
       pen.strokeStyle = look.colour['band-edge']
       pen.lineWidth = 1
@@ -114,7 +122,15 @@ export function boresView(facts: SkidFacts, data: RunData) {
   const off = onPalette(ask)
   return {
     node: canvas,
-    show(next: { fromMs: number; toMs: number; atMs: number; hot: string | null; word: string; rhythmMs: number }): void {
+    show(next: {
+      fromMs: number
+      toMs: number
+      atMs: number
+      hot: string | null
+      word: string
+      rhythmMs: number
+      times: number
+    }): void {
       shown = next
       canvas.setAttribute(
         'aria-label',
@@ -134,7 +150,7 @@ function runsOf(points: readonly Point[]): Point[][] {
   const runs: Point[][] = []
   let open = false
   for (const p of points) {
-    if (p.y === null || drawnShare(p.y, stripTimes) === null) open = false
+    if (p.y === null || p.y <= 0) open = false
     else if (open) runs.at(-1)!.push(p)
     else {
       runs.push([p])
@@ -145,15 +161,22 @@ function runsOf(points: readonly Point[]): Point[][] {
 }
 
 /** Layer on both walls, its thickness drawn larger than it is. */
-function deposit(pen: CanvasRenderingContext2D, run: readonly Point[], x: (t: number) => number, top: number, size: number): void {
-  if (!run.some((p) => (drawnShare(p.y, stripTimes) ?? 0) > 0)) return
+function deposit(
+  pen: CanvasRenderingContext2D,
+  run: readonly Point[],
+  x: (t: number) => number,
+  top: number,
+  size: number,
+  times: number,
+): void {
+  if (!run.some((p) => (drawnShare(p.y, times) ?? 0) > 0)) return
   for (const [wall, side] of [
     [top, 1],
     [top + size, -1],
   ] as const) {
     pen.beginPath()
     pen.moveTo(x(run[0]!.x), wall)
-    for (const p of run) pen.lineTo(x(p.x), wall + (side * (drawnShare(p.y, stripTimes) ?? 0) * size) / 2)
+    for (const p of run) pen.lineTo(x(p.x), wall + (side * (drawnShare(p.y, times) ?? 0) * size) / 2)
     pen.lineTo(x(run.at(-1)!.x), wall)
     pen.fill()
   }

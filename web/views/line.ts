@@ -1,5 +1,5 @@
 import type { AlarmRow, LiveState, SegmentState, SkidFacts } from '../../server/wire/index.ts'
-import { drawnShare, exaggerationFor, openPct } from '../model/bore.ts'
+import { drawnShare, limitRatioOf, openPct, timesOf } from '../model/bore.ts'
 import { figure, fixed, range, short } from '../model/format.ts'
 import { standingOn } from '../model/in-force.ts'
 import { feedHalf, type LineLayout, layoutLine, mainHalf, type PlacedSegment, profileHeight, wall } from '../model/line-layout.ts'
@@ -64,7 +64,7 @@ export function lineView(facts: SkidFacts, pick: (segment: string) => void) {
 
   function show(state: LiveState): void {
     moving.replaceChildren()
-    const times = exaggerationFor(state.segments.map(limitRatio).filter((r) => r !== null))
+    const times = timesOf(state.segments)
     say(scaleNote, `Deposit × ${times}; dots: ΔP limit`)
     for (const s of layout.segments) {
       const now = state.segments.find((x) => x.segment === s.id)
@@ -189,13 +189,6 @@ function drawStill(g: SVGElement, layout: LineLayout): void {
 const arrow = (x: number, y: number): SVGElement =>
   svg('path', { class: 'k-wall', d: `M${x} ${y - 5}L${x + dx(9)} ${y}L${x} ${y + 5}Z` })
 
-/** Ratio at which ΔP meets its limit at the flow and temperature now. */
-function limitRatio(s: SegmentState): number | null {
-  const clean = s.cleanDpBar ?? s.baseline?.dpBar ?? null
-  const limit = s.limits.dpHighBar
-  return limit === null || clean === null || !(clean > 0) ? null : limit / clean
-}
-
 /** Deposit, the dots where it would be at its limit, an alarm's bars; hatched where the ratio is not known. */
 function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefined, times: number, alarm: AlarmRow | null): void {
   const share = drawnShare(now?.ratio, times)
@@ -207,7 +200,7 @@ function drawSegment(g: SVGElement, s: PlacedSegment, now: SegmentState | undefi
       const [at, to] = [s.y + side * s.half, s.y + side * s.half * (1 - share)]
       g.append(svg('path', { class: 'k-dep', d: `M${s.x} ${at}L${s.x + e} ${to}H${end - e}L${end} ${at}Z` }))
     }
-  const limit = now === undefined ? null : limitRatio(now)
+  const limit = now === undefined ? null : limitRatioOf(now)
   const atLimit = limit === null ? null : drawnShare(limit, times)
   if (atLimit !== null)
     for (const side of [-1, 1])

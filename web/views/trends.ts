@@ -1,4 +1,5 @@
-import type { AlarmRow, LiveState, Marks } from '../../server/wire/index.ts'
+import type { AlarmRow, LiveState, Marks, SegmentFacts } from '../../server/wire/index.ts'
+import { timesOf } from '../model/bore.ts'
 import { short } from '../model/format.ts'
 import { type RunData, rhythmMs } from '../model/run-data.ts'
 import { type TrendKind, trendKinds, trendSpec, trendWords } from '../model/trend-spec.ts'
@@ -93,7 +94,15 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
     const spec = trendSpec(data, shown.state, shown.marks, { ...shown, kind, segment })
     chart.show(spec)
     say(title, `${segment}, ${trendWords[kind].title}`)
-    for (const { k, b } of kindButtons) b.setAttribute('aria-pressed', String(k === kind))
+    for (const { k, b } of kindButtons) {
+      b.setAttribute('aria-pressed', String(k === kind))
+      b.hidden =
+        k !== kind &&
+        !hasKind(
+          facts.segments.find((x) => x.id === segment),
+          k,
+        )
+    }
     for (const { id, b } of placeButtons) b.setAttribute('aria-pressed', String(id === segment))
     const o = spec.overlay
     canvas.setAttribute(
@@ -109,6 +118,7 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
       atMs: shown.atMs,
       hot: segment,
       rhythmMs: rhythmMs(shown.state.clock.speed),
+      times: timesOf(shown.state.segments),
       word: hot?.onset == null ? '' : `closing since ${data.clock.hm(hot.onset.atMs)}`,
     })
   }
@@ -130,3 +140,9 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
   }
 }
 export type TrendsView = ReturnType<typeof trendsView>
+
+/** Whether a segment has anything to show of a kind. */
+function hasKind(spec: SegmentFacts | undefined, kind: TrendKind): boolean {
+  if (kind === 'temperature') return spec !== undefined && (spec.temperatures.length > 0 || spec.coolantTemperature !== null)
+  return kind !== 'pressure' || spec?.pressureIn != null || spec?.dpTag != null
+}

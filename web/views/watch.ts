@@ -1,4 +1,4 @@
-import type { ActReply, LiveState, ServerMessage, Service } from '../../server/wire/index.ts'
+import type { ActReply, LiveState, ServerMessage } from '../../server/wire/index.ts'
 import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { answersOf } from '../model/answers.ts'
@@ -36,7 +36,7 @@ const spans = [
 const mostPoints = 4000
 
 /** The live page of one run. */
-export function watchView(data: RunData, feed: Feed, service: Service, shell: Shell) {
+export function watchView(data: RunData, feed: Feed, shell: Shell) {
   const facts = data.detail.skidFacts
   const run = data.detail.run
   let span: (typeof spans)[number] = spans[2]
@@ -238,7 +238,7 @@ export function watchView(data: RunData, feed: Feed, service: Service, shell: Sh
       skid: facts.skid,
       mode: 'LIVE',
       facts: [
-        ...(service.demo
+        ...(data.detail.kind === 'simulated'
           ? [
               {
                 bold: 'DEMO',
