@@ -1,6 +1,7 @@
 import type { AlarmReport, ForecastReport, OnsetReport, Report } from '../core/report.ts'
 import type { Skid } from '../core/skid.ts'
 import type { LogTally } from '../ingest/csv/read-log.ts'
+import { insightLines } from './insight-lines.ts'
 import { caution } from './run.ts'
 import { tableText } from './table-text.ts'
 
@@ -31,6 +32,9 @@ export function summaryText(skid: Skid, report: Report, tallies: readonly LogTal
       'Advised, under the site’s own procedure:',
       ...report.advice.map((a) => `  ${clock.time(a.at)}  ${a.action.padEnd(13)} ${clock.within(a.reason)}`),
     )
+  const computed = insightLines(report, clock.time)
+  if (computed.length > 0)
+    out.push('', 'Computed beside it, from the skid file and the readings:', ...computed.map((l) => `  ${l}`))
   const notUsed = notUsedOf(report, tallies)
   if (notUsed.length > 0) out.push('', 'Not used or assumed:', ...notUsed.map((n) => `  ${n}`))
   return `${out.join('\n')}\n\n${caution}`

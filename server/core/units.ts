@@ -105,4 +105,5 @@ export const paFromBar = (bar: number): number => bar * 1e5
 export const barFromPa = (pa: number): number => pa / 1e5
 export const kFromC = (c: number): number => c + 273.15
 export const cFromK = (k: number): number => k - 273.15
+export const m3sFromMlMin = (q: number): number => q / 60e6
 export const mlMinFromM3s = (q: number): number => q * 60e6

@@ -1,4 +1,5 @@
 import type { AlarmChange, Occurrence } from '../alarms/occurrence.ts'
+import { MonitorError } from '../errors.ts'
 import type { ForecastRecord } from '../fouling/watch.ts'
 import type { Interval } from '../growth/points.ts'
 import type { Action, AdviceReport, FlushPlan } from '../report.ts'
@@ -18,8 +19,8 @@ export interface SegmentForAdvice {
   readonly growth: { readonly onset: Interval | null; readonly forecast: ForecastRecord | null; readonly raisedMs: number } | null
 }
 
-/** Computes the flush plan of the segments that need one; ratios of all. */
-export type Planner = (segments: readonly string[], ratios: Readonly<Record<string, number | null>>) => FlushPlan
+/** Computes the flush plan of a segment; ratios of all. May throw a MonitorError: a liquid out of its range, a plan that is refused. */
+export type Planner = (segment: string, ratios: Readonly<Record<string, number | null>>) => FlushPlan
 
 /**
  * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare, at least, and a share of
@@ -34,8 +35,15 @@ const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25 } a
 export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
   const s: AdviserState = saved ?? { advised: {}, displaceMinutes: {} }
 
-  const planNow = (segment: string, all: readonly SegmentForAdvice[]) =>
-    plan([segment], Object.fromEntries(all.map((x) => [x.id, x.ratio])))
+  /** The plan, or why there is none; the advice stands either way. */
+  const planNow = (segment: string, all: readonly SegmentForAdvice[]): { plan: FlushPlan | null; without: string } => {
+    try {
+      return { plan: plan(segment, Object.fromEntries(all.map((x) => [x.id, x.ratio]))), without: '' }
+    } catch (cause) {
+      if (!(cause instanceof MonitorError)) throw cause
+      return { plan: null, without: `; no plan can be computed: ${cause.message}` }
+    }
+  }
 
   return {
     state: s,
@@ -57,16 +65,16 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         if (stands === 'flush' || stands === 'stop-feed') continue
         const f = g.growth.forecast
         if (f !== null) {
-          s.displaceMinutes[g.id] ??= minutesOf(planNow(g.id, segments))
+          s.displaceMinutes[g.id] ??= minutesOf(planNow(g.id, segments).plan)
           const lastMs = f.lowMs - (s.displaceMinutes[g.id]! + adviceSettings.marginMinutes) * 60_000
           const lead = Math.max(adviceSettings.leadMinutes * 60_000, adviceSettings.leadShare * (lastMs - nowMs))
           if (nowMs >= lastMs - lead) {
-            const p = planNow(g.id, segments)
+            const { plan: made, without } = planNow(g.id, segments)
             const when =
               lastMs > nowMs
                 ? `best begun before ${iso(lastMs)}`
                 : 'a flush may take longer than is surely left; a young forecast is wide, so prepare now and look again as it narrows'
-            out.push(say(nowMs, 'flush', [g.id], `${g.id}: deposit grows${until(f)}; ${when}`, p))
+            out.push(say(nowMs, 'flush', [g.id], `${g.id}: deposit grows${until(f)}; ${when}${without}`, made))
             s.advised[g.id] = 'flush'
             continue
           }
@@ -98,7 +106,8 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         const g = segments.find((x) => x.id === o.segment)
         if (g === undefined || g.kind === 'filter' || g.growth === null || s.advised[g.id] === 'flush') return []
         s.advised[g.id] = 'flush'
-        return [say(o.raisedMs, 'flush', segment, `${o.message}: the limit is reached`, planNow(g.id, segments))]
+        const { plan: made, without } = planNow(g.id, segments)
+        return [say(o.raisedMs, 'flush', segment, `${o.message}: the limit is reached${without}`, made)]
       }
       return [say(o.raisedMs, action, segment, o.message, null)]
     },
@@ -148,7 +157,8 @@ const say = (nowMs: number, action: Action, segments: readonly string[], reason:
 const iso = (ms: number): string => new Date(ms).toISOString()
 const until = (f: ForecastRecord | null): string =>
   f === null ? '' : `; ${f.limit} is met between ${iso(f.lowMs)} and ${iso(f.highMs)} (${Math.round(100 * f.level)} %)`
-/** Minutes from F0 to the end of F1 at least: with those the reagent is out and the deposit has stopped growing. */
-function minutesOf(plan: FlushPlan): number {
+/** Minutes from F0 to the end of F1 at least: with those the reagent is out and the deposit has stopped growing. A step of unknown time counts 10. */
+function minutesOf(plan: FlushPlan | null): number {
+  if (plan === null) return 20
   return plan.steps.filter((x) => x.id === 'F0' || x.id === 'F1').reduce((a, x) => a + (x.minutes ?? 10), 0)
 }

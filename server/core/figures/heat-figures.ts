@@ -1,4 +1,5 @@
 import type { FluidState } from '../fluids/fluid.ts'
+import type { SegmentKind } from '../skid.ts'
 import { exchanger, uFromReadings } from '../thermal/exchanger.ts'
 import { filmCoefficient, nusselt } from '../thermal/nusselt.ts'
 import { hotSpot, plugFlowProfile } from '../thermal/profile.ts'
@@ -22,6 +23,8 @@ export interface HeatFigures {
   readonly cooledToK: number | null
   /** From the readings given, of a segment without reaction; null where they do not carry it. Fouling resistance against the clean U above. */
   readonly uNowWM2K: number | null
+  readonly uNowLowWM2K: number | null
+  readonly uNowHighWM2K: number | null
   readonly foulingM2KW: number | null
   readonly notes: readonly string[]
   readonly missing: readonly string[]
@@ -87,16 +90,17 @@ function coefficients(op: SegmentOperation, state: FluidState, re: number): Coef
   }
 }
 
-/** Standard uncertainty of a temperature difference, K: a pair of class 1 thermocouples (common practice). */
-const differenceK = 1
+/** Streams that meet here mix and react with heat that the file does not give. */
+const unknownHeat: ReadonlySet<SegmentKind> = new Set<SegmentKind>(['mixer', 'quench'])
 
 /** U of a segment without reaction from its first and last temperature; a precooler with one takes the feed's 20 °C as its inlet. */
-function liveU(op: SegmentOperation, state: FluidState, wettedPerM: number): number | null {
+function liveU(op: SegmentOperation, state: FluidState, wettedPerM: number): ReturnType<typeof uFromReadings> {
   const { readK, coolantK, channel, massFlowKgS, spec } = op
   const outK = readK.at(-1)
   const inK = readK.length > 1 ? readK[0] : spec.kind === 'precooler' ? op.streams[0]?.tempK : undefined
   if (
     spec.reaction !== null ||
+    unknownHeat.has(spec.kind) ||
     coolantK === null ||
     channel === null ||
     massFlowKgS === null ||
@@ -104,7 +108,7 @@ function liveU(op: SegmentOperation, state: FluidState, wettedPerM: number): num
     outK === undefined
   )
     return null
-  return uFromReadings(massFlowKgS, state.cpJKgK, wettedPerM * channel.lengthM, inK, outK, coolantK, differenceK)?.uWM2K ?? null
+  return uFromReadings(massFlowKgS, state.cpJKgK, wettedPerM * channel.lengthM, inK, outK, coolantK, op.differenceUK)
 }
 
 /** Conversion that counts as all of it, for the rate of the assumed first-order reaction. */
@@ -178,8 +182,10 @@ export function heatFigures(op: SegmentOperation, state: FluidState, re: number)
     mtsrK,
     hotSpotK,
     cooledToK,
-    uNowWM2K: now,
-    foulingM2KW: now === null || c.u === null ? null : foulingResistance(now, c.u.uInnerWM2K),
+    uNowWM2K: now?.uWM2K ?? null,
+    uNowLowWM2K: now?.low ?? null,
+    uNowHighWM2K: now?.high ?? null,
+    foulingM2KW: now === null || c.u === null ? null : foulingResistance(now.uWM2K, c.u.uInnerWM2K),
     notes: c.notes,
     missing,
   }

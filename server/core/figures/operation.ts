@@ -1,7 +1,8 @@
 import { type Fluid, fluidOf, mixByMass } from '../fluids/fluid.ts'
 import { type ChannelGeometry, channelOf, channelVolumeM3 } from '../hydraulics/channel.ts'
+import { temperatureUncertainty } from '../instruments/tolerance.ts'
 import type { SegmentSpec, Skid, StreamSpec, TagSpec } from '../skid.ts'
-import { kFromC, toSi, valueUnit } from '../units.ts'
+import { cFromK, kFromC, toSi, valueUnit } from '../units.ts'
 
 /**
  * What is known of the present or intended operation; keys are stream ids and temperature tags, values in the unit of the tag. A flow of 0 (pump
@@ -36,6 +37,8 @@ export interface SegmentOperation {
   readonly coolantK: number | null
   /** Temperatures read along the flow, inlet first, K; empty where none or not all are given. */
   readonly readK: readonly number[]
+  /** Standard uncertainty of a reading of this segment against its coolant, by their sensors, K. */
+  readonly differenceUK: number
   readonly channel: ChannelGeometry | null
   readonly volumeM3: number | null
 }
@@ -104,6 +107,8 @@ function streamFlows(skid: Skid, given: Given, assumptions: string[]): StreamFlo
     }
   })
 }
+
+const uOf = (tag: TagSpec | undefined, tempK: number): number => temperatureUncertainty(tag?.sensor ?? null, cFromK(tempK)).uK
 
 const sum = (values: readonly (number | null)[]): number | null =>
   values.reduce<number | null>((a, b) => (a === null || b === null ? null : a + b), 0)
@@ -182,6 +187,13 @@ export function operationOf(skid: Skid, given: Given = {}): Operation {
       coldestK: coolantK === null ? coldestK : Math.min(coldestK, coolantK),
       coolantK,
       readK,
+      differenceUK: Math.hypot(
+        uOf(
+          skid.tags.find((t) => t.tag === spec.temperatures.at(-1)),
+          meanK,
+        ),
+        uOf(coolantTag, coolantK ?? meanK),
+      ),
       channel,
       volumeM3,
     }

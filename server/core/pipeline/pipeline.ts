@@ -9,6 +9,7 @@ import { planFlush } from '../flush/plan.ts'
 import { findingOf } from '../fouling/evidence.ts'
 import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } from '../fouling/watch.ts'
 import type { Interval } from '../growth/points.ts'
+import { createPresent, type PresentState } from '../insight/present.ts'
 import type { OnsetReport } from '../report.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
 import type { Act, Entry, LimitName } from '../sequence.ts'
@@ -30,6 +31,8 @@ export interface PipelineState {
   instruments: InstrumentState
   excursions: ExcursionState
   adviser: AdviserState
+  /** Missing in a state of an older build: learnt anew. */
+  present?: PresentState
   limits: LimitTable
   /** Alarms that clear by themselves at a time. */
   timed: { key: string; untilMs: number }[]
@@ -72,10 +75,22 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   const book = createBook({ configVersion: options.configVersion ?? skid.skid, policyOf: site.policyOf }, saved?.book)
   const watch = createWatch(layout, stepMs, saved?.watch)
   const instruments = createInstruments(layout, saved?.instruments)
-  const adviser = createAdviser(saved?.adviser, (segments, ratios) => planFlush({ skid, segments, ratios }))
-  const excursions = createExcursions(layout, book.knows, saved?.excursions)
+  const present = createPresent(layout, saved?.present)
+  const adviser = createAdviser(saved?.adviser, (segment, ratios) =>
+    planFlush({
+      // Limits as they stand now, a person may have changed them.
+      skid: {
+        ...skid,
+        segments: skid.segments.map((g, i) => ({ ...g, limits: { ...g.limits, dpHighBar: limits[i]!.dpHighBar } })),
+      },
+      segments: [segment],
+      ratios,
+      given: present.forFlush(layout.segments.findIndex((g) => g.spec.id === segment)),
+    }),
+  )
+  const excursions = createExcursions(layout, book.hears, saved?.excursions)
   const limits: LimitTable = saved?.limits ?? limitsOf(layout)
-  const limitChecks = createLimits(layout, limits, book.knows, site)
+  const limitChecks = createLimits(layout, limits, book.hears, site)
   const fouled = (i: number): boolean => watch.segment(i).growth !== null
   const s = {
     timed: saved?.timed ?? [],
@@ -132,6 +147,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       s.production = out.mode.production
       grid.setFlowing(s.production)
     }
+    if (s.production) present.take(step)
     s.inferred = out.mode.inferred
     s.armed = out.mode.armed
     out.now.forEach((n, i) => {
@@ -165,6 +181,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         onCreep(e, tMs)
         return
       case 'baseline':
+        present.baselined(e.segment)
         events.push({ kind: 'baseline', segment: layout.segments[e.segment]!.spec.id, baseline: e.baseline })
         return
       case 'onset':
@@ -406,6 +423,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       ratio: s.ratio,
       limits,
       segment: watch.segment,
+      present,
       alarms: book.rows(),
     }),
     save: (): PipelineState =>
@@ -418,6 +436,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         instruments: instruments.state,
         excursions: excursions.state(),
         adviser: adviser.state,
+        present: present.state,
         limits,
         ...s,
       }),

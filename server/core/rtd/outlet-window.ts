@@ -27,10 +27,13 @@ export interface OutletWindow {
  * When a disturbance that entered a path between two instants shows at its outlet, by volume and not by clock:
  *   outlet volume from V(t_start) + V_first to V(t_end) + V_last,  F(V_first) = ε,  F(V_last) = 1 − ε,  V(t) = ∫ Q dt
  * `path` volumes in m³, from the place of entry to the outlet; `flow` piecewise constant, in time order, from t_start on. Unknown flow adds no volume.
- * Errors: RTD_RANGE for an empty path, ε outside 0 … 0.5, samples out of order or starting after the disturbance.
+ * `through`: the vessel in which the disturbance acted. What lay anywhere in it may be affected, so it counts for the last only, and the first
+ * is what its end passes on; with it the path may be empty (V_first = 0).
+ * Errors: RTD_RANGE for an empty path without it, ε outside 0 … 0.5, samples out of order or starting after the disturbance.
  */
 export function outletWindow(input: {
   readonly path: readonly PathStep[]
+  readonly through?: PathStep
   readonly epsilon: number
   readonly flow: readonly FlowSample[]
   readonly startMs: number
@@ -39,8 +42,9 @@ export function outletWindow(input: {
   const { path, epsilon, flow, startMs, endMs } = input
   if (!(epsilon > 0 && epsilon < 0.5) || !(endMs >= startMs))
     throw new MonitorError('RTD_RANGE', `outlet window needs 0 < ε < 0.5 and an end after its start, got ε=${epsilon}`)
-  const firstM3 = pathVolume(path, 1 - epsilon)
-  const lastM3 = pathVolume(path, epsilon)
+  const all = input.through === undefined ? path : [input.through, ...path]
+  const firstM3 = input.through !== undefined && path.length === 0 ? 0 : pathVolume(path, 1 - epsilon)
+  const lastM3 = pathVolume(all, epsilon)
   if ((flow[0]?.tMs ?? Number.POSITIVE_INFINITY) > startMs)
     throw new MonitorError('RTD_RANGE', 'flow samples must begin at or before the disturbance')
   let volume = 0
@@ -66,5 +70,5 @@ export function outletWindow(input: {
     volume += rate * seconds
   }
   const divertedM3 = toMs === null || endVolume === null ? null : endVolume + lastM3 - firstM3
-  return { firstM3, lastM3, fromMs, toMs, divertedM3, unknownS, epsilon, models: path.map((s) => describeRtd(s.rtd)) }
+  return { firstM3, lastM3, fromMs, toMs, divertedM3, unknownS, epsilon, models: all.map((s) => describeRtd(s.rtd)) }
 }

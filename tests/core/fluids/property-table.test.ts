@@ -1,6 +1,7 @@
 import { expect, it } from 'vitest'
 import { fluidOf, mixByMass } from '../../../server/core/fluids/fluid.ts'
-import { viscosityFactor } from '../../../server/core/fluids/learned-factor.ts'
+import type { ViscosityFactor } from '../../../server/core/fluids/learned-factor.ts'
+import { viscosityFactors } from '../../../server/core/fluids/learned-factor.ts'
 import { mixedTable, propertyTable } from '../../../server/core/fluids/property-table.ts'
 import { solvents } from '../../../server/core/fluids/solvents.ts'
 
@@ -87,12 +88,31 @@ it('an aqueous quench with an organic stream is uncertain, and so is a mixed str
 })
 
 it('a stream 20 % thicker than its solvent is found on three segments as 1.17 with an interval that holds 1.2, and one segment leaves a wide one', () => {
-  const level = (k: number) => ({ lnLevel: k * Math.log(1.2), sd: 0.01, viscExponent: k })
-  const three = viscosityFactor([level(1), level(0.75), level(0.9)])
+  const level = (k: number) => ({ lnLevel: k * Math.log(1.2), sd: 0.01, exponents: [k] })
+  const [three] = viscosityFactors([level(1), level(0.75), level(0.9)], 1) as [ViscosityFactor]
   expect(three.factor).toBeGreaterThan(1.15)
   expect(three.low).toBeLessThan(1.2)
   expect(three.high).toBeGreaterThan(1.2)
-  const one = viscosityFactor([level(1)])
+  const [one] = viscosityFactors([level(1)], 1) as [ViscosityFactor]
   expect(one.high / one.low).toBeGreaterThan(three.high / three.low)
-  expect(viscosityFactor([])).toMatchObject({ factor: 1, segments: 0 })
+  expect(viscosityFactors([], 1)[0]).toMatchObject({ factor: 1, segments: 0 })
+})
+
+it('two streams are told apart by the segments each has alone; a shared one draws both; the answer does not hang on their order', () => {
+  const alone = (i: number, ln: number) => ({ lnLevel: ln, sd: 0.01, exponents: [i === 0 ? 1 : 0, i === 1 ? 1 : 0] })
+  const shared = { lnLevel: 0.7 * 0.2 + 0.3 * 0, sd: 0.01, exponents: [0.7, 0.3] }
+  const levels = [alone(0, 0.2), alone(0, 0.2), alone(1, 0), shared]
+  const [a, b] = viscosityFactors(levels, 2) as [ViscosityFactor, ViscosityFactor]
+  expect(a.factor).toBeGreaterThan(1.15)
+  expect(a.factor).toBeLessThan(1.222)
+  expect(Math.abs(Math.log(b.factor))).toBeLessThan(0.02)
+  expect([a.segments, b.segments]).toEqual([3, 2])
+  expect(a.high / a.low).toBeLessThan(b.high / b.low)
+  const turned = viscosityFactors(
+    levels.map((l) => ({ ...l, exponents: [...l.exponents].reverse() })),
+    2,
+  )
+  expect(turned[1]!.factor).toBeCloseTo(a.factor, 12)
+  const [only, none] = viscosityFactors([shared], 2) as [ViscosityFactor, ViscosityFactor]
+  expect(Math.log(only.factor) / Math.log(none.factor)).toBeCloseTo(0.7 / 0.3, 9)
 })
