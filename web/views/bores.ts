@@ -3,8 +3,8 @@ import { drawnShare } from '../model/bore.ts'
 import type { RunData } from '../model/run-data.ts'
 import { type Point, thin } from '../model/series.ts'
 import { el } from './dom.ts'
-import { clamp } from './overlay-pen.ts'
 import { onPalette, palette } from './palette.ts'
+import { clamp } from './pen.ts'
 import { gutterRem } from './trend-chart.ts'
 
 const rowRem = 1.12

@@ -7,7 +7,7 @@ import type { RunData } from '../model/run-data.ts'
 import { fetchWindow } from '../run-store.ts'
 import { alarmsView } from './alarms.ts'
 import { el, say } from './dom.ts'
-import { clamp } from './overlay-pen.ts'
+import { clamp } from './pen.ts'
 import { trendsView } from './trends.ts'
 import type { Shell } from './watch.ts'
 

@@ -2,8 +2,10 @@ import { Chart, type ChartDataset, LinearScale, LineController, LineElement, typ
 import { emptyOverlay, type Line, type TrendSpec } from '../model/overlay.ts'
 import { type Point, thin } from '../model/series.ts'
 import { timeTicks, valueTicks } from '../model/ticks.ts'
-import { drawOver, drawUnder, type Frame, label } from './overlay-pen.ts'
+import { drawOver, drawUnder } from './overlay-pen.ts'
+import { label } from './overlay-words.ts'
 import { onPalette, palette } from './palette.ts'
+import type { Frame } from './pen.ts'
 
 Chart.register(LineController, LineElement, PointElement, LinearScale)
 

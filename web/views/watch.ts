@@ -2,7 +2,6 @@ import type { ActReply, LiveState, ServerMessage } from '../../server/wire/index
 import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { answersOf } from '../model/answers.ts'
-import { age, duration } from '../model/format.ts'
 import { adviceInForce } from '../model/in-force.ts'
 import { longest, type RunData } from '../model/run-data.ts'
 import { fetchWindow, follow } from '../run-store.ts'
@@ -12,6 +11,7 @@ import { answersView, nowView } from './answers.ts'
 import { el, fill, say } from './dom.ts'
 import type { footView } from './foot.ts'
 import { lineView } from './line.ts'
+import { liveStrip } from './live-strip.ts'
 import { planView } from './plan.ts'
 import type { cutView, StripState } from './strip.ts'
 import { trendsView } from './trends.ts'
@@ -42,11 +42,11 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   let span: (typeof spans)[number] = spans[2]
   let received = 0
   let link: Link = { up: false, heardAt: null, retryInMs: null }
-  let cutSince: { text: string; at: number } | null = null
   let planOpen = false
   let chartAt = 0
   let chartDue = 0
   let fetching = false
+  let firstMs = data.detail.fromMs
   let spoken = ''
 
   const answers = answersView()
@@ -103,6 +103,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     person,
   )
   node.dataset['page'] = 'watch'
+  const strip = liveStrip(data, shell, node)
   for (const part of [answers.node, line.node, trends.node, person]) part.hidden = true
 
   const spanButtons = spans.map((s) => ({
@@ -130,7 +131,9 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     return state.clock.nowMs + Math.max(0, since)
   }
   const windowOf = (nowMs: number): [number, number] => {
-    const first = data.detail.fromMs ?? followed.state()?.comb.endMs ?? nowMs
+    // A run opened before its first reading begins where the page first heard of one.
+    firstMs ??= followed.state()?.comb.endMs ?? null
+    const first = firstMs ?? nowMs
     const from = Math.max(first, nowMs - span.ms)
     const past = Math.max(nowMs - from, 600_000)
     return [nowMs - past, nowMs + 0.4 * past]
@@ -190,7 +193,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     node.dataset['ready'] = 'true'
     node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
     node.dataset['lead'] = a.segment ?? ''
-    strip(state)
+    strip.show(state, runNow(state), link)
   }
 
   function charts(state: LiveState, lead: string | null): void {
@@ -202,66 +205,6 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     trends.show({ state, marks: followed.marks(), alarms: state.alarms, fromMs, toMs, atMs, lead })
   }
 
-  function strip(state: LiveState): void {
-    const nowMs = runNow(state)
-    const silent = state.data.cutOff || state.data.source.state === 'failed'
-    const wall = performance.now()
-    const isCut = !link.up || silent
-    if (isCut && cutSince === null) {
-      const at = link.up ? (state.data.lastRowMs ?? nowMs) : nowMs
-      cutSince = {
-        text: data.clock.hms(at),
-        at: link.up ? wall - (1000 * (state.data.ageS ?? 0)) / state.clock.speed : (link.heardAt ?? wall),
-      }
-    }
-    if (!isCut) cutSince = null
-    shell.cut.show(
-      cutSince === null
-        ? null
-        : {
-            since: cutSince.text,
-            ms: wall - cutSince.at,
-            link: !link.up,
-            message: state.data.source.message,
-            retryInMs: link.retryInMs,
-          },
-    )
-    node.dataset['cut'] = isCut ? (link.up ? 'source' : 'link') : 'no'
-    const phase = state.mode.phase ?? (state.mode.production ? 'production' : 'no phase named')
-    const since = data.production.points()
-    let begin: number | null = null
-    for (let i = since.length - 1; i >= 0 && since[i]!.y === (state.mode.production ? 1 : 0); i--) begin = since[i]!.x
-    // By the wall: an age in a simulated clock's seconds would look sixty times older than it is.
-    const dataAge = state.data.ageS === null ? null : (1000 * state.data.ageS + (nowMs - state.clock.nowMs)) / state.clock.speed
-    shell.strip.show({
-      page: 'watch',
-      skid: facts.skid,
-      mode: 'LIVE',
-      facts: [
-        ...(data.detail.kind === 'simulated'
-          ? [
-              {
-                bold: 'DEMO',
-                text:
-                  state.clock.speed === 1 ? 'simulated skid' : `clock runs ${Math.round(state.clock.speed)} times faster than time`,
-              },
-            ]
-          : []),
-        {
-          bold: `${phase[0]!.toUpperCase()}${phase.slice(1)}${state.mode.inferred ? ', inferred' : ''}`,
-          text: begin === null || !state.mode.production ? '' : duration(nowMs - begin),
-        },
-      ],
-      comb: {
-        received: state.comb.received,
-        text: dataAge === null || state.data.lagS === null ? null : [age(dataAge), age(1000 * state.data.lagS)],
-      },
-      nowMs,
-      clock: data.clock,
-      zone: facts.timeZone,
-    })
-  }
-
   const quietText = (state: LiveState): string => {
     const judged = state.segments.filter((s) => s.baseline !== null).length
     return judged === 0
@@ -271,7 +214,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
 
   const tick = setInterval(() => {
     const state = followed.state()
-    if (state !== null) strip(state)
+    if (state !== null) strip.show(state, runNow(state), link)
     if (state !== null && chartDue > chartAt) ask()
     if (data.window.toMs === 0 && state !== null && link.up && !fetching) void refetch()
   }, 250)
@@ -284,7 +227,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
       link = l
       node.dataset['link'] = l.up ? 'up' : 'down'
       const state = followed.state()
-      if (state !== null) strip(state)
+      if (state !== null) strip.show(state, runNow(state), link)
       else say(waiting, l.up ? 'Waiting for the first state of the run.' : 'The server does not answer; trying again.')
     },
     stop(): void {
