@@ -59,6 +59,8 @@ export const defaultPolicy = (priority: Priority, latching = false): Policy => (
   reasonMin: 5,
 })
 
+const nothing = { changes: [], records: [] } as const
+
 export type AlarmBook = ReturnType<typeof createBook>
 
 /**
@@ -183,6 +185,9 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
 
     /** The clock: shelves that have run out, re-alarms that are due. Delays wait for readings. */
     tick(tMs: number): void {
+      let waits = false
+      for (const e of entries.values()) if (e.machine.shelved !== null || e.ackedMs !== null) waits = true
+      if (!waits) return
       for (const [key, entry] of entries) {
         const { machine } = entry
         if (machine.shelved !== null && tMs >= machine.shelved.untilMs)
@@ -198,15 +203,24 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
     },
 
     /** Takes what has happened since the last call, in order. */
-    drain(): { changes: AlarmChange[]; records: AlarmRecord[] } {
+    drain(): { readonly changes: readonly AlarmChange[]; readonly records: readonly AlarmRecord[] } {
+      if (changes.length === 0 && records.length === 0) return nothing
       const out = { changes, records }
       changes = []
       records = []
       return out
     },
 
-    /** Whether the book holds an entry for a key; until it does, a signal that is not over says nothing. */
-    knows: (key: string): boolean => entries.has(key),
+    /**
+     * Whether a signal would change anything, or keep anything pending: saves making one. What was never over, and what is back to normal,
+     * says nothing by being not over; a bad input is news once, of an alarm the book holds.
+     */
+    hears(key: string, over: boolean | null): boolean {
+      if (over === true) return true
+      const c = entries.get(key)?.condition
+      if (c === undefined) return false
+      return over === null ? !c.bad : c.active || c.bad || c.sinceMs !== null
+    },
 
     isActive: (key: string): boolean => entries.get(key)?.machine.active ?? false,
 

@@ -1,3 +1,4 @@
+import type { AlarmBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
 import type { Layout, SegmentLayout } from '../derive/layout.ts'
 import { createFeedRatio, type FeedPair, type FeedRatioState, type FeedRatioVerdict } from '../exotherm/feed-ratio.ts'
@@ -39,7 +40,7 @@ const watchedKinds = new Set(['mixer', 'reactor', 'quench'])
  * Temperature excursions of every reactor-like segment and the ratio of every pair of feeds that meet in one, scan by scan, as alarm
  * signals. A scan without rows is passed over: an empty cell of a jittering logger is no reading.
  */
-export function createExcursions(layout: Layout, knows: (key: string) => boolean, saved?: ExcursionState) {
+export function createExcursions(layout: Layout, hears: AlarmBook['hears'], saved?: ExcursionState) {
   const { skid } = layout
   const reactors = layout.segments.filter((g) => watchedKinds.has(g.spec.kind) && g.temperatures.length > 0)
   const config = {
@@ -114,7 +115,7 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
     emit: (s: Signal) => void,
   ): void {
     const hottest = v.hottest === null ? null : skid.tags[g.temperatures[v.hottest]!]!.tag
-    if (v.over === true || knows(key)) {
+    if (hears(key, v.over)) {
       const rate = v.ratePerS === null ? '' : `, ${(60 * v.ratePerS).toFixed(1)} ± ${(60 * (v.ratePerSSe ?? 0)).toFixed(1)} K/min`
       const likely =
         v.cause === 'dosing'
@@ -156,11 +157,12 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
         offDelayS: 5 * Math.max(1, skid.scanSeconds),
       })
     }
-    if (v.cold || knows(coldKey))
+    const cold = v.over === null ? null : v.cold
+    if (hears(coldKey, cold))
       emit({
         key: coldKey,
         tMs,
-        over: v.over === null ? null : v.cold,
+        over: cold,
         kind: 'temperature-limit',
         segment: g.spec.id,
         tag: null,
@@ -180,7 +182,7 @@ export function createExcursions(layout: Layout, knows: (key: string) => boolean
 
   function feedSignal(p: Pair, v: FeedRatioVerdict, tMs: number, emit: (s: Signal) => void): void {
     const { key } = p
-    if (v.over !== true && !knows(key)) return
+    if (!hears(key, v.over)) return
     const off = v.relative === null ? '' : `${(100 * (v.relative - 1)).toFixed(1)} % off its usual value`
     emit({
       key,

@@ -1,3 +1,4 @@
+import type { AlarmBook } from '../alarms/book.ts'
 import { level } from '../alarms/condition.ts'
 import type { Signal } from '../alarms/occurrence.ts'
 import type { Layout } from '../derive/layout.ts'
@@ -116,13 +117,17 @@ interface Check {
 /**
  * Plain limits of every segment, scan by scan. A bad input is null: it neither raises nor clears (ALM-06). A scan in which a tag simply did
  * not report says nothing, unless the log has gone `silent`: loggers jitter, and an empty cell is not a bad reading.
- * `knows` tells whether the book holds an alarm: what was never over costs no signal.
+ * `hears` is the book's: what it would not hear costs no signal.
  */
-export function createLimits(layout: Layout, limits: LimitTable, knows: (key: string) => boolean, site: SiteRules) {
+export function createLimits(layout: Layout, limits: LimitTable, hears: AlarmBook['hears'], site: SiteRules) {
   const scanS = layout.skid.scanSeconds
   const checks = layout.segments.flatMap((_, i) =>
     rules.map((rule) => checkOf(layout, i, rule, site)).filter((c) => c.tags.length > 0),
   )
+  const dpBar = (c: Check, scan: Scan): number | null => {
+    const dp = segmentDp(layout, c.segment, scan)
+    return dp === null ? null : barFromPa(dp)
+  }
   return {
     scan(
       scan: Scan,
@@ -132,24 +137,24 @@ export function createLimits(layout: Layout, limits: LimitTable, knows: (key: st
     ): void {
       for (const c of checks) {
         const limit = limits[c.segment]![c.rule.limit]
-        const known = knows(c.key)
-        if (limit === null && !known) continue
+        if (limit === null && !hears(c.key, false)) continue
         const idle = limit === null || (c.rule.productionOnly && !on.production)
-        const at = worst(layout, c, scan)
-        if (at === null && !idle && !on.silent && !c.tags.some((t) => scan.flaw[t] !== 0)) continue
-        const value = at === null ? null : at.value
+        const tag = worst(c, scan)
+        const value = c.rule.kind === 'dp-limit' ? dpBar(c, scan) : tag < 0 ? null : fromSi(scan.si[tag]!, c.unit)
+        if (value === null && !idle && !on.silent && !c.tags.some((t) => scan.flaw[t] !== 0)) continue
         const now = idle ? 'under' : level(value, limit, c.deadband, c.rule.side)
-        if (!known && now !== 'over') continue
+        const over = now === 'bad' ? null : now === 'over'
+        if (!hears(c.key, over)) continue
         const seg = layout.segments[c.segment]!.spec
         const delay = delayOnGrid(c.rule.delayS, scanS)
         emit({
           key: c.key,
           tMs,
-          over: now === 'bad' ? null : now === 'over',
+          over,
           under: now === 'under',
           kind: c.rule.kind,
           segment: seg.id,
-          tag: at === null || at.tag === null ? null : layout.skid.tags[at.tag]!.tag,
+          tag: value === null || tag < 0 ? null : layout.skid.tags[tag]!.tag,
           priority: c.rule.priority,
           value,
           limit,
@@ -205,16 +210,15 @@ function checkOf(layout: Layout, i: number, rule: LimitRule, site: SiteRules): C
   }
 }
 
-/** The value a limit is held against in the unit of the limit, and the tag it is read from where that is one; null when unusable. */
-function worst(layout: Layout, c: Check, scan: Scan): { value: number; tag: number | null } | null {
-  if (c.rule.kind === 'dp-limit') {
-    const dp = segmentDp(layout, c.segment, scan)
-    return dp === null ? null : { value: barFromPa(dp), tag: c.tags.length === 1 ? c.tags[0]! : null }
-  }
+/** The tag a limit is read from: of several the one nearest the limit, of ΔP the cell where there is one; −1 where none is. */
+function worst(c: Check, scan: Scan): number {
+  if (c.rule.kind === 'dp-limit') return c.tags.length === 1 ? c.tags[0]! : -1
+  const { si, used } = scan
   let at = -1
-  for (const t of c.tags) {
-    if (scan.used[t] === 0) continue
-    if (at < 0 || (c.rule.side === 'high' ? scan.si[t]! > scan.si[at]! : scan.si[t]! < scan.si[at]!)) at = t
+  for (let i = 0; i < c.tags.length; i++) {
+    const t = c.tags[i]!
+    if (used[t] === 0) continue
+    if (at < 0 || (c.rule.side === 'high' ? si[t]! > si[at]! : si[t]! < si[at]!)) at = t
   }
-  return at < 0 ? null : { value: fromSi(scan.si[at]!, c.unit), tag: at }
+  return at
 }
