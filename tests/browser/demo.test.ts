@@ -58,6 +58,22 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     await until(page, `document.querySelector('#says').textContent !== ''`)
     const acts = await get<ActRow[]>('/api/runs/1/acts')
     expect(acts.map((a) => [a.act.kind, a.act.person])).toContainEqual(['acknowledge', 'demo operator'])
+    // A limit changed meanwhile is a step in the trend, with who changed it.
+    const steps = Number(await page.getAttribute('#trend', 'data-limits'))
+    const changed = await fetch(new URL('/api/runs/1/acts', server.url), {
+      method: 'POST',
+      headers: { 'content-type': 'application/json' },
+      body: JSON.stringify({
+        person: 'shift lead',
+        kind: 'limit',
+        segment: 'R1',
+        limit: 'dpHighBar',
+        value: 5.5,
+        reason: 'agreed at hand-over',
+      }),
+    })
+    expect(changed.status).toBe(200)
+    await until(page, `Number(document.querySelector('#trend').dataset.limits) > ${steps}`)
     // The answers stay legible from three metres: 72 px at the design size.
     expect(await page.evaluate(`parseFloat(getComputedStyle(document.querySelector('.answer .far')).fontSize)`)).toBe(72)
     expect(await page.textContent('.answer:nth-child(3) dt')).toBe('How long')
