@@ -100,7 +100,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   const map = stateMap(layout)
   const filter = createFilter(layout, map)
   const list = explanations(layout)
-  const segN = layout.segments.length
+  const wanders = layout.segments.map((_, i) => map.wander(i))
   /** Finer grids live faster: their hours are counted as if a step were 30 s. */
   const stepH = Math.max(stepMs, 30_000) / 3.6e6
   const f = saved ? { x: Float64Array.from(saved.x), p: Float64Array.from(saved.p) } : filter.fresh()
@@ -448,9 +448,9 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   function decayColumns(steps: number): void {
     const wander = Math.exp((-stepH * steps) / d.wanderTauH)
     const meter = Math.exp((-stepH * steps) / d.meterTauH)
-    for (const c of columns) {
-      for (let seg = 0; seg < segN; seg++) c.response[map.wander(seg)]! *= wander
-      for (const i of map.meter) c.response[i]! *= meter
+    for (const { response } of columns) {
+      for (let i = 0; i < wanders.length; i++) response[wanders[i]!]! *= wander
+      for (let i = 0; i < map.meter.length; i++) response[map.meter[i]!]! *= meter
     }
   }
 }

@@ -61,6 +61,9 @@ function scaleOf(layout: Layout, e: Explanation): number {
 export const births = { after: 4, every: 2, all: 30, fourth: 120, twelfth: 400 }
 /** A level or a viscosity settles within about two steps. */
 const settleSteps = 2
+/** Share settled by age, as far as births live: every column asks at every step. */
+const settled = Float64Array.from({ length: 512 }, (_, age) => 1 - Math.exp(-age / settleSteps))
+const settledAt = (age: number): number => settled[age] ?? 1 - Math.exp(-age / settleSteps)
 
 export function explanations(layout: Layout): Explanation[] {
   const list: Explanation[] = []
@@ -91,7 +94,7 @@ function signature(
     case 'step':
       return c.of === s ? 1 : 0
     case 'settling':
-      return c.of === s ? 1 - Math.exp(-age / settleSteps) : 0
+      return c.of === s ? settledAt(age) : 0
     case 'tap-ramp':
     case 'tap-step': {
       const sign = seg.tapIn === c.of ? 1 : seg.tapOut === c.of ? -1 : 0
@@ -99,7 +102,7 @@ function signature(
       return sign === 0 ? 0 : ((sign * 1000) / o.dpPa) * (c.kind === 'tap-ramp' ? age : 1)
     }
     case 'stream':
-      return seg.streams.includes(c.of) ? o.k0 * o.share[c.of]! * (1 - Math.exp(-age / settleSteps)) : 0
+      return seg.streams.includes(c.of) ? o.k0 * o.share[c.of]! * settledAt(age) : 0
   }
 }
 

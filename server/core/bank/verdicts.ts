@@ -61,12 +61,8 @@ export function depositVerdict(court: Court): Verdict | null {
   const { now } = court
   const top = best(
     court,
-    (c) =>
-      c.kind === 'deposit' &&
-      c.d > 0 &&
-      now - c.born >= rule.age &&
-      likelihood(c, now) > rule.likelihood &&
-      sizeOf(c) * (now - c.born) > rule.size,
+    (c) => c.kind === 'deposit',
+    (c) => c.d > 0 && now - c.born >= rule.age && likelihood(c, now) > rule.likelihood && sizeOf(c) * (now - c.born) > rule.size,
   )
   if (top === null) return null
   const seg = court.layout.segments[top.of]!
@@ -106,10 +102,8 @@ export function otherVerdict(court: Court): Verdict | null {
   const { columns, now, layout } = court
   const top = best(
     court,
-    (c) =>
-      c.kind !== 'deposit' &&
-      now - c.born >= (c.kind === 'tap-ramp' ? rule.ramp : rule.age) &&
-      likelihood(c, now) > rule.likelihood,
+    (c) => c.kind !== 'deposit',
+    (c) => now - c.born >= (c.kind === 'tap-ramp' ? rule.ramp : rule.age) && likelihood(c, now) > rule.likelihood,
   )
   if (top === null) return null
   const l = likelihood(top, now)
@@ -153,10 +147,12 @@ function bestByKind(court: Court, top: Column): Rival[] {
   return [...found.values()].sort((a, b) => b.likelihood - a.likelihood).slice(0, 3)
 }
 
-function best(court: Court, test: (c: Column) => boolean): Column | null {
+/** The likeliest column of a kind that passes the test. */
+function best(court: Court, isMeant: (c: Column) => boolean, test: (c: Column) => boolean): Column | null {
   let top: Column | null = null
   let most = 0
   for (const c of court.columns) {
+    if (!isMeant(c)) continue
     const l = likelihood(c, court.now)
     if (l > most && test(c)) {
       top = c
