@@ -37,6 +37,9 @@ describe('the four answers', () => {
     const { facts, state } = sceneOf({ alarms: [alarmOf(1), exotherm] })
     expect(answersOf(facts, state, clock).where.below).toContain('exotherm')
     expect(answersOf(facts, state, clock).howBad.unit).toBe('°C')
+    expect(answersOf(facts, state, clock).howBad.below).toContain('2.1 K above what coolant and feeds explain')
+    // The deposit's forecast is not the exotherm's: the time to respond stands there instead.
+    expect(answersOf(facts, state, clock).howLong).toMatchObject({ far: '30 min', to: null })
     const over = sceneOf({ alarms: [alarmOf(1), { ...exotherm, active: false, state: 'RTNUN' }] })
     expect(answersOf(over.facts, over.state, clock).where.below).toContain('flow resistance rising')
   })
@@ -64,9 +67,12 @@ describe('advice in force', () => {
   const withAdvice = (state: LiveState): LiveState => ({ ...state, advice: [feedStop, ...state.advice] })
   it('puts the feed stop first while the exotherm is there, and the flush first once it is over', () => {
     const on = withAdvice(sceneOf({ alarms: [alarmOf(1), exotherm] }).state)
-    expect(adviceInForce(on).map((a) => a.action)).toEqual(['stop-feed', 'flush'])
+    expect(adviceInForce(on).map((a) => [a.advice.action, a.cause.id])).toEqual([
+      ['stop-feed', 2],
+      ['flush', 1],
+    ])
     const off = withAdvice(sceneOf({ alarms: [alarmOf(1), { ...exotherm, active: false, state: 'RTNUN' }] }).state)
-    expect(adviceInForce(off).map((a) => a.action)).toEqual(['flush'])
+    expect(adviceInForce(off).map((a) => a.advice.action)).toEqual(['flush'])
   })
   it('is empty when no alarm that it answers stands', () => {
     expect(adviceInForce(withAdvice(sceneOf({ ratio: 1 }).state))).toEqual([])

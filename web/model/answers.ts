@@ -94,7 +94,7 @@ function badOf(alarm: AlarmRow, now: SegmentState | undefined, spec: SegmentFact
   if ((alarm.kind === 'exotherm' || alarm.kind === 'temperature-limit') && hot !== null)
     return answer(
       fixed(hot.tempC, 1)!,
-      `${hot.tag}, the highest of ${spec?.id ?? 'it'}${limitOf(alarm) === '' ? '' : `; ${limitOf(alarm)}`}`,
+      `${hot.tag}, the highest of ${spec?.id ?? 'it'}; ${alarm.kind === 'exotherm' ? `${figure(alarm.value, alarm.unit)} above what coolant and feeds explain when raised` : limitOf(alarm)}`,
       '°C',
     )
   const value = fixed(alarm.value, 2)
@@ -114,9 +114,11 @@ const hottest = (now: SegmentState | undefined) =>
 function longOf(alarm: AlarmRow, now: SegmentState | undefined, nowMs: number, clock: ZoneClock): Answer {
   const f = now?.forecast ?? null
   const limit = now?.limits.dpHighBar ?? now?.limits.dpHighHighBar ?? null
-  if (limit !== null && now?.dpNowBar != null && now.dpNowBar >= limit)
+  const isDeposit = alarm.kind === 'fouling' || alarm.kind === 'dp-limit'
+  if (isDeposit && limit !== null && now?.dpNowBar != null && now.dpNowBar >= limit)
     return answer('limit met', `ΔP ${fixed(now.dpNowBar, 2)} bar, limit ${fixed(limit, 1)} bar`)
-  if (f !== null) {
+  // The forecast is the deposit's: it says nothing of heat, flow or a sensor.
+  if (f !== null && isDeposit) {
     const { low, high } = range(f.lowMs - nowMs, f.highMs - nowMs)
     const words = limitWords[f.limit]
     return answer(
@@ -126,7 +128,7 @@ function longOf(alarm: AlarmRow, now: SegmentState | undefined, nowMs: number, c
       high,
     )
   }
-  if (alarm.help !== null && alarm.kind !== 'fouling')
+  if (alarm.help !== null && !isDeposit)
     return answer(duration(alarm.help.timeToRespondS * 1000), 'time to respond by the alarm’s rationalisation; no forecast')
   return answer(
     'no forecast',
@@ -155,7 +157,7 @@ function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> 
 }
 
 function nowOf(state: LiveState, clock: ZoneClock, alarm: AlarmRow | null): Answer {
-  const advice = adviceInForce(state)[0]
+  const advice = adviceInForce(state)[0]?.advice
   if (advice === undefined)
     return alarm === null
       ? answer('Carry on', 'nothing advised; keep to the site procedure')

@@ -46,7 +46,7 @@ const answersTo: Readonly<Record<Action, readonly AlarmKind[]>> = {
  * The advice whose cause still stands, most urgent cause first, then latest; a later advice for the same segments takes the place of an
  * earlier one of the same cause. What was advised against a condition that is gone is no longer what now.
  */
-export function adviceInForce(state: LiveState): AdviceState[] {
+export function adviceInForce(state: LiveState): { readonly advice: AdviceState; readonly cause: AlarmRow }[] {
   const rated = state.advice.flatMap((advice) => {
     const causes = state.alarms.filter(
       (a) =>
@@ -69,5 +69,5 @@ export function adviceInForce(state: LiveState): AdviceState[] {
       urgencyOf(a.cause.kind) - urgencyOf(b.cause.kind) ||
       b.advice.atMs - a.advice.atMs,
   )
-  return rated.filter((r, i) => !rated.slice(0, i).some((e) => e.cause.id === r.cause.id)).map((r) => r.advice)
+  return rated.filter((r, i) => !rated.slice(0, i).some((e) => e.cause.id === r.cause.id))
 }

@@ -12,15 +12,16 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
     node,
     show(state: LiveState, alarm: AlarmRow | null, planOpen: boolean): void {
       const inForce = adviceInForce(state)
-      const advice = inForce[0]
+      const advice = inForce[0]?.advice
+      const about = inForce[0]?.cause ?? alarm
       const k = JSON.stringify([
         advice?.atMs,
         advice?.action,
         advice?.segments,
-        alarm?.id,
-        alarm?.evidence,
+        about?.id,
+        about?.evidence,
         planOpen,
-        state.advice.length,
+        inForce.map((f) => f.advice.atMs),
       ])
       if (k === key) return
       key = k
@@ -37,9 +38,6 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
         )
         return
       }
-      const about =
-        state.alarms.find((a) => a.active && a.kind === 'fouling' && a.segment !== null && advice.segments.includes(a.segment)) ??
-        alarm
       const words = (texts: readonly string[]) => inPlantTime(texts.join('; '), clock, state.clock.nowMs)
       const pairs: [string, string, boolean][] = [['Why', inPlantTime(advice.reason, clock, state.clock.nowMs), false]]
       if (about !== null) {
@@ -53,7 +51,7 @@ export function adviceView(clock: ZoneClock, openPlan: () => void) {
         const points = count(plan.steps[0]?.holdPoints.length ?? 0, 'hold point')
         pairs.push(['Still open', `${points} before ${plan.steps[0]?.id ?? 'the first step'}; the shift lead must approve`, false])
       }
-      for (const other of inForce.slice(1, 3))
+      for (const { advice: other } of inForce.slice(1, 3))
         pairs.push(['Also', `${actionWords[other.action]}: ${inPlantTime(other.reason, clock, state.clock.nowMs)}`, true])
       pairs.push(['Given', `${clock.hms(advice.atMs)}; a recommendation under the site’s own procedure, it can be wrong`, true])
       const list = el('dl', { class: 'advice' })

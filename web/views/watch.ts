@@ -178,7 +178,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     now.show(a.whatNow)
     line.show(state)
     advice.show(state, a.alarm, planOpen)
-    const planned = adviceInForce(state)[0]?.plan ?? null
+    const planned = adviceInForce(state)[0]?.advice.plan ?? null
     if (planned === null) planOpen = false
     plan.show(planned, planOpen)
     trends.node.hidden = planOpen
