@@ -66,6 +66,8 @@ interface SegmentTrack {
   /** Steps since production began, with an observation. */
   seen: number
   lastDpPa: number | null
+  /** Mean of y over the last few steps. */
+  yMean: number | null
 }
 
 export interface BankState {
@@ -75,6 +77,8 @@ export interface BankState {
   tracks: SegmentTrack[]
   columns: ColumnState[]
   tapStartPa: (number | null)[]
+  /** Pressure of each tap over the last few steps before this one. */
+  tapMeanPa: (number | null)[]
   drifting: boolean[]
   sinceGap: number
   gapAt: number
@@ -82,6 +86,9 @@ export interface BankState {
   moves: number[]
   started: boolean
 }
+
+/** Share of a step in the mean of the last few. */
+const recentShare = 0.2
 
 /** Result of one step for one segment: ln of its resistance over clean, wander included. */
 export interface BankSegment {
@@ -120,6 +127,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     cRef: null,
     seen: 0,
     lastDpPa: null,
+    yMean: null,
   })
   const s = saved ?? {
     steps: 0,
@@ -128,6 +136,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     tracks: layout.segments.map(track),
     columns: [],
     tapStartPa: layout.taps.map(() => null),
+    tapMeanPa: layout.taps.map(() => null),
     drifting: layout.taps.map(() => false),
     sinceGap: 1e6,
     gapAt: -1,
@@ -200,8 +209,11 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       t.noisePa2 = Math.max(o.stepVar, 1e-6) * o.dpPa ** 2
     }
     learnNoise(seg, o)
-    const row = rowOf(layout, map, seg, o, s.tapStartPa)
-    let noise = measurementNoise(seg, o)
+    // What multiplies the states rests on the steps before: this step's own noise is in y too, and would teach zeros and gains for ever.
+    const before: SegmentObservation = { ...o, tapPa: s.tapMeanPa, dpPa: o.dpPa * Math.exp((t.yMean ?? o.y) - o.y) }
+    t.yMean = t.yMean === null ? o.y : t.yMean + recentShare * (o.y - t.yMean)
+    const row = rowOf(layout, map, seg, before, s.tapStartPa)
+    let noise = measurementNoise(seg, before)
     const { mean, variance } = filter.predict(f, row)
     const z = (o.y - mean) / Math.sqrt(variance + noise)
     const third =
@@ -210,7 +222,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     t.z2 = t.z1
     t.z1 = z
     const u = filter.update(f, row, o.y, noise)
-    observe(columns, layout, seg, s.steps, o, row, u.innovation, u.variance, u.gain)
+    observe(columns, layout, seg, s.steps, before, row, u.innovation, u.variance, u.gain)
     t.seen++
   }
 
@@ -335,6 +347,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
         if (o !== null)
           o.tapPa.forEach((p, i) => {
             s.tapStartPa[i] ??= p
+            s.tapMeanPa[i] ??= p
           })
       filter.advance(
         f,
@@ -354,6 +367,11 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
         if (!t.fouled) measure(seg, o)
       })
       if (s.sinceMove < moved) s.moves = [...s.moves.filter((m) => m > s.steps - births.twelfth), s.steps]
+      const seen = observations.find((o) => o !== null)
+      seen?.tapPa.forEach((p, i) => {
+        const mean = s.tapMeanPa[i] ?? null
+        if (p !== null) s.tapMeanPa[i] = mean === null ? p : mean + recentShare * (p - mean)
+      })
       const events: BankEvent[] = []
       if (armed) {
         for (let round = 0; round < 4; round++) {
@@ -401,7 +419,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
         t.fouled = false
         t.clean = null
         t.z1 = t.z2 = 0
-        t.lastResidual = t.lastLnVisc = t.lastLnFlow = null
+        t.lastResidual = t.lastLnVisc = t.lastLnFlow = t.yMean = null
         t.viscMove = 0
         t.seen = 0
       })
@@ -415,7 +433,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       t.fouled = false
       t.clean = null
       t.z1 = t.z2 = 0
-      t.lastResidual = null
+      t.lastResidual = t.yMean = null
       if (fresh) t.cRef = null
       columns = []
     },

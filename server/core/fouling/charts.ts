@@ -131,11 +131,14 @@ export function chartReport(c: ChartState, riseToFindPct: number, stepS: number)
   }
 }
 
+/** Where the last half hour stands over the charts' zero, ln ratio. */
+export const standing = (c: ChartState): number => c.recent.reduce((a, b) => a + b, 0) / Math.max(1, c.recent.length)
+
 export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {
   const v = c.drift.verdict
   const rising =
     v.kind === 'rising' ? { perHour: v.perHour * c.sigma, low: v.lowPerHour * c.sigma, high: v.highPerHour * c.sigma } : null
-  const mean = c.recent.reduce((a, b) => a + b, 0) / Math.max(1, c.recent.length)
+  const mean = standing(c)
   const stands = c.recent.length === recentPoints && mean > riseShare * Math.log1p(riseToFindPct / 100)
   return { cusum: c.cusum.high.sum, h: c.design.h, cusumOver: c.over, drift: rising, alarms: c.over && rising !== null && stands }
 }

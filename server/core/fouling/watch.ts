@@ -7,7 +7,7 @@ import { forecastLimit } from '../growth/forecast.ts'
 import { fitOnset } from '../growth/onset.ts'
 import type { GrowthPoint, Interval, Noise } from '../growth/points.ts'
 import type { LimitName } from '../sequence.ts'
-import { type ChartReading, type ChartState, readCharts, startCharts, stepCharts } from './charts.ts'
+import { type ChartReading, type ChartState, readCharts, standing, startCharts, stepCharts } from './charts.ts'
 import { createMode, type Mode, type ModeState } from './mode.ts'
 
 export interface BaselineRecord {
@@ -92,6 +92,9 @@ export interface WatchStep {
 
 /** Steps: of history kept for an onset; in a baseline before it is final; averaged for the ratio shown; between forecasts. */
 const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 2, clean: 20, pointsKept: 480 }
+
+/** A neighbour on the same stream that stands at this share of a segment's rise rises with it. */
+const alikeShare = 0.5
 
 /** Share of a growth's age after which its forecast is made anew. */
 const renewShare = 0.03
@@ -301,7 +304,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
               w.baselined = false
               w.charts = null
               w.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
-            }
+            } else if (w.charts !== null) w.charts = startCharts(promise, layout.segments.length, noiseOf(i), w.charts.zeroLn)
           }
         } else {
           learnBaseline(i, w, segs[i]!, step, m, endMs, events)
@@ -343,14 +346,20 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
       if (w.charts === null || w.growth !== null || w.recent.length === 0) return
       const reading = readCharts(w.charts, promise.riseToFindPct)
       if (!reading.alarms) return
-      const alike = layout.segments.filter(
-        (o, j) => j !== i && o.streams.some((x) => g.streams.includes(x)) && (watch[j]!.charts?.over ?? false),
-      )
-      const shared = alike.length > 0
-      const ratio = Math.exp(w.recent.reduce((a, x) => a + x, 0) / w.recent.length)
-      if (shared) {
-        w.charts = startCharts(promise, layout.segments.length, noiseOf(i), Math.log(ratio))
-        events.push({ kind: 'creep', segment: i, onset: null, ratio, reading, shared })
+      const level = (x: SegmentWatch): number => Math.exp(x.recent.reduce((a, y) => a + y, 0) / x.recent.length)
+      const ratio = level(w)
+      const own = standing(w.charts)
+      const alike = watch.filter((o, j) => {
+        const together = j !== i && layout.segments[j]!.streams.some((x) => g.streams.includes(x))
+        return together && o.charts !== null && o.growth === null && o.recent.length > 0 && standing(o.charts) > alikeShare * own
+      })
+      if (alike.length > 0) {
+        for (const o of [w, ...alike]) {
+          const j = watch.indexOf(o)
+          const read = readCharts(o.charts!, promise.riseToFindPct)
+          events.push({ kind: 'creep', segment: j, onset: null, ratio: level(o), reading: read, shared: true })
+          o.charts = startCharts(promise, layout.segments.length, noiseOf(j), Math.log(level(o)))
+        }
         return
       }
       const points = w.charts.points.map((p) => ({ tMs: p.tMs, lnRatio: p.lnRatio + w.charts!.zeroLn }))
@@ -369,7 +378,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         lastForecastMs: 0,
       }
       w.hindsight = onset
-      events.push({ kind: 'creep', segment: i, onset, ratio, reading, shared })
+      events.push({ kind: 'creep', segment: i, onset, ratio, reading, shared: false })
     })
   }
 
