@@ -10,6 +10,8 @@ export interface AdviserState {
   advised: Record<string, '' | 'watch' | 'flush' | 'change-filter' | 'stop-feed'>
   /** Minutes that F0 and F1 of a segment's plan take, computed once a deposit stands. */
   displaceMinutes: Record<string, number>
+  /** When a flush was last advised for a segment, and the early end of the forecast it rested on. */
+  flushed: Record<string, { atMs: number; lowMs: number }>
 }
 
 export interface SegmentForAdvice {
@@ -24,16 +26,17 @@ export type Planner = (segment: string, ratios: Readonly<Record<string, number |
 
 /**
  * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare, at least, and a share of
- * the time left, as a forecast far off is a wide one. Site choice under change control; common practice.
+ * the time left, as a forecast far off is a wide one. A flush advised is said again, with its new times, when the forecast has moved by a share of the time
+ * left and half an hour has passed. Site choice under change control; common practice.
  */
-const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25 } as const
+const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25, againMinutes: 30, againShare: 0.3 } as const
 
 /**
  * When a flush should begin and what else is worth doing, as recommendations under the site's own procedure. A flush is advised before
  * forecast.low − plan time − margin; until that is near the advice is to watch. Causes that no flush cures get their own check.
  */
 export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
-  const s: AdviserState = saved ?? { advised: {}, displaceMinutes: {} }
+  const s: AdviserState = saved ?? { advised: {}, displaceMinutes: {}, flushed: {} }
 
   /** The plan, or why there is none; the advice stands either way. */
   const planNow = (segment: string, all: readonly SegmentForAdvice[]): { plan: FlushPlan | null; without: string } => {
@@ -45,6 +48,12 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
     }
   }
 
+  function hasMoved(id: string, f: ForecastRecord | null, nowMs: number): boolean {
+    const last = s.flushed[id]
+    if (last === undefined || f === null || nowMs - last.atMs < adviceSettings.againMinutes * 60_000) return false
+    return Math.abs(f.lowMs - last.lowMs) > adviceSettings.againShare * Math.max(last.lowMs - last.atMs, f.lowMs - nowMs)
+  }
+
   return {
     state: s,
     step(nowMs: number, segments: readonly SegmentForAdvice[]): AdviceReport[] {
@@ -54,6 +63,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         if (g.growth === null) {
           if (stands !== '') s.advised[g.id] = ''
           delete s.displaceMinutes[g.id]
+          delete s.flushed[g.id]
           continue
         }
         if (g.kind === 'filter') {
@@ -62,13 +72,13 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
           s.advised[g.id] = 'change-filter'
           continue
         }
-        if (stands === 'flush' || stands === 'stop-feed') continue
         const f = g.growth.forecast
+        if (stands === 'stop-feed' || (stands === 'flush' && !hasMoved(g.id, f, nowMs))) continue
         if (f !== null) {
           s.displaceMinutes[g.id] ??= minutesOf(planNow(g.id, segments).plan)
           const lastMs = f.lowMs - (s.displaceMinutes[g.id]! + adviceSettings.marginMinutes) * 60_000
           const lead = Math.max(adviceSettings.leadMinutes * 60_000, adviceSettings.leadShare * (lastMs - nowMs))
-          if (nowMs >= lastMs - lead) {
+          if (nowMs >= lastMs - lead || stands === 'flush') {
             const { plan: made, without } = planNow(g.id, segments)
             const when =
               lastMs > nowMs
@@ -76,6 +86,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
                 : 'a flush may take longer than is surely left; a young forecast is wide, so prepare now and look again as it narrows'
             out.push(say(nowMs, 'flush', [g.id], `${g.id}: deposit grows${until(f)}; ${when}${without}`, made))
             s.advised[g.id] = 'flush'
+            s.flushed[g.id] = { atMs: nowMs, lowMs: f.lowMs }
             continue
           }
         }
