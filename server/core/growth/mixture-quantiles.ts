@@ -18,8 +18,8 @@ export function mixtureQuantiles(nodes: readonly Explained[], probabilities: rea
   const cells = new Float64Array(512)
   const width = Math.max((high - low) / (cells.length - 1), 1e-9)
   for (let i = 0; i < nodes.length; i++) {
-    for (const share of shares)
-      cells[Math.floor((middle[i]! + spread[i]! * share - low) / width + 1e-9)]! += nodes[i]!.weight / shares.length
+    const part = nodes[i]!.weight / shares.length
+    for (const share of shares) cells[Math.floor((middle[i]! + spread[i]! * share - low) / width + 1e-9)]! += part
   }
   let total = 0
   for (const cell of cells) total += cell

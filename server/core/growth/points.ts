@@ -1,5 +1,3 @@
-import { median } from '../stats/robust.ts'
-
 /** One detector step of a segment (typically a 30-s mean), stamped at its middle: lnRatio = ln of resistance over clean [-]. */
 export interface GrowthPoint {
   readonly tMs: number
@@ -74,12 +72,22 @@ export function evenEdges(aMs: number, bMs: number, n: number): number[] {
 export function withoutSpikes(points: readonly GrowthPoint[], noise: Noise, sigmas: number): GrowthPoint[] {
   const around = 3
   const limit = sigmas * Math.hypot(noise.whiteSd, wanderOver(noise, around * noise.stepS))
-  const values = points.map((p) => p.lnRatio)
+  const near = new Float64Array(2 * around + 1)
   return points.filter((p, i) => {
     if (i < around || i >= points.length - around) return true
-    const near = values.slice(i - around, i + around + 1).sort((a, b) => a - b)
+    sortedInto(near, points, i - around)
     return Math.abs(p.lnRatio - near[around]!) <= limit + near[2 * around - 1]! - near[1]!
   })
+}
+
+/** Fills `into` with ln ratios from point `from` on, in rising order. A handful: sorted as they come. */
+function sortedInto(into: Float64Array, points: readonly GrowthPoint[], from: number): void {
+  for (let n = 0; n < into.length; n++) {
+    const x = points[from + n]!.lnRatio
+    let k = n
+    for (; k > 0 && into[k - 1]! > x; k--) into[k] = into[k - 1]!
+    into[k] = x
+  }
 }
 
 /** sd of what the wander changes by in a time [-]. */
@@ -97,13 +105,15 @@ export function findSloughs(
   leastFall: number,
 ): { tMs: number; fall: number }[] {
   const half = 3
+  const few = new Float64Array(half)
   const found: { tMs: number; fall: number }[] = []
   const limit = Math.max(leastFall, sigmas * Math.hypot(wanderOver(noise, (half + 1) * noise.stepS), noise.whiteSd * 1.2))
   let best: { tMs: number; fall: number } | null = null
   for (let i = half; i + half <= points.length; i++) {
-    const before = median(points.slice(i - half, i).map((p) => p.lnRatio))
-    const after = median(points.slice(i, i + half).map((p) => p.lnRatio))
-    const fall = before - after
+    sortedInto(few, points, i - half)
+    const before = few[1]!
+    sortedInto(few, points, i)
+    const fall = before - few[1]!
     if (fall > limit) {
       if (best === null || fall > best.fall) best = { tMs: points[i]!.tMs, fall }
     } else if (best !== null) {
