@@ -1,12 +1,14 @@
 import { parseArgs } from 'node:util'
 import { MonitorError } from '../core/errors.ts'
+import { type NextStep, nextStep } from '../core/flush/course.ts'
 import { flushDefaults } from '../core/flush/input.ts'
 import { planFlush } from '../core/flush/plan.ts'
-import { planText } from '../core/flush/plan-text.ts'
+import { nextText, planText } from '../core/flush/plan-text.ts'
 import type { FlushPlan } from '../core/report.ts'
 import { meant } from '../skid/nearest.ts'
-import { loadSkidFile } from '../skid/skid-path.ts'
+import { loadSkidFile, readSkidText } from '../skid/skid-path.ts'
 import { writeAtomic } from './atomic-file.ts'
+import { readChecks } from './checks-file.ts'
 import type { Command } from './command.ts'
 
 const help = `Usage: clearbore flush-plan --skid FILE --segment ID [--segment ID ...] [--ratio R ...] [--json OUT|-]
@@ -19,13 +21,17 @@ with flow, volume, time, hold points, end criteria and hazards. Advice under the
   --ratio R         its present resistance over clean, 1 to 1000 (one for each --segment, in their order; default 1, said to be assumed)
   --solvent NAME    dry solvent for F1 and F4 (default: chosen from the skid's own; must mix fully with water)
   --water-ppm N     water in the effluent that ends F4, ppm by mass (default ${flushDefaults.waterPpmLimit})
+  --checks FILE     the checks stored so far, YAML or JSON: checks: [{ step: F0, criterion: path-proven, verdict: met, value: 80 mL/min at
+                    0.4 bar, source: FT-101, quality: good, person: M. Ovalle, time: 2031-05-05T21:40:00+02:00 }]; verdict met, failed or
+                    skipped (with a reason). The page ends with the step that may come next; water is refused until F1 and F2 are accepted
   --json OUT        the plan as JSON into a file; '-' writes it to stdout instead of the page
 
 Exit code 0; 1 when the file or a segment is wrong; 2 for a wrong command line.
 `
 
-const asJson = (plan: FlushPlan): string =>
-  `${JSON.stringify(plan, (_, v) => (typeof v === 'number' ? Number(v.toPrecision(9)) : v), 2)}\n`
+/** The plan with what may come next. */
+const asJson = (plan: FlushPlan, next: NextStep): string =>
+  `${JSON.stringify({ ...plan, next: { ...next, step: next.step?.id ?? null } }, (_, v) => (typeof v === 'number' ? Number(v.toPrecision(9)) : v), 2)}\n`
 
 const numberIn = (text: string, option: string, low: number, high: number): number => {
   const value = Number(text)
@@ -37,7 +43,15 @@ const numberIn = (text: string, option: string, low: number, high: number): numb
 }
 
 function options(args: readonly string[]) {
-  let values: { skid?: string; segment?: string[]; ratio?: string[]; solvent?: string; 'water-ppm'?: string; json?: string }
+  let values: {
+    skid?: string
+    segment?: string[]
+    ratio?: string[]
+    solvent?: string
+    'water-ppm'?: string
+    json?: string
+    checks?: string
+  }
   try {
     ;({ values } = parseArgs({
       args: [...args],
@@ -48,6 +62,7 @@ function options(args: readonly string[]) {
         solvent: { type: 'string' },
         'water-ppm': { type: 'string' },
         json: { type: 'string' },
+        checks: { type: 'string' },
       },
     }))
   } catch (cause) {
@@ -72,6 +87,7 @@ function options(args: readonly string[]) {
     waterPpm:
       values['water-ppm'] === undefined ? flushDefaults.waterPpmLimit : numberIn(values['water-ppm'], '--water-ppm', 1, 100_000),
     json: values.json ?? null,
+    checks: values.checks ?? null,
   }
 }
 
@@ -101,10 +117,11 @@ export const flushPlanCommand: Command = {
       ratios: Object.fromEntries(o.ratios.map((r, i) => [o.segments[i] ?? '', r])),
       settings: { displacementSolvent: o.solvent, dryingSolvent: o.solvent, waterPpmLimit: o.waterPpm },
     })
-    if (o.json === '-') await io.out(asJson(plan))
+    const next = nextStep(plan, o.checks === null ? [] : readChecks(plan, await readSkidText(o.checks), o.checks))
+    if (o.json === '-') await io.out(asJson(plan, next))
     else {
-      if (o.json !== null) await writeAtomic(o.json, asJson(plan))
-      await io.out(planText(plan))
+      if (o.json !== null) await writeAtomic(o.json, asJson(plan, next))
+      await io.out(`${planText(plan)}${nextText(next)}`)
     }
     return 0
   },

@@ -1,3 +1,4 @@
+import { causeGuide } from '../core/alarms/default-rationale.ts'
 import type { Occurrence } from '../core/alarms/occurrence.ts'
 import { type Rationale, rationale } from '../core/alarms/rationale.ts'
 import type { Skid } from '../core/skid.ts'
@@ -30,16 +31,28 @@ export function alarmHelpOf(skid: Skid): (o: Occurrence) => AlarmHelp | null {
   const known = new Map<string, AlarmHelp | null>()
   return (o) => {
     const name = nameOf(skid, o)
-    const id = `${name}\n${o.segment ?? ''}`
+    const id = `${name}\n${o.segment ?? ''}\n${o.cause ?? ''}`
     const found = known.get(id)
     if (found !== undefined) return found
-    const made = make(skid, name, o.segment)
+    const made = make(skid, name, o)
     known.set(id, made)
     return made
   }
 }
 
-function make(skid: Skid, name: Name, segment: string | null): AlarmHelp | null {
+/** Check and action of the cause that was found, where the alarm is of fouling, the cause is another, and the site says nothing of its own. */
+function byCause(skid: Skid, o: Occurrence): { readonly check?: string; readonly action?: string } {
+  if (o.kind !== 'fouling' || o.cause === null || o.cause === 'fouling') return {}
+  const guide = causeGuide[o.cause]
+  const given = { ...skid.alarms[o.kind], ...(o.segment === null ? {} : skid.alarms[`${o.kind}:${o.segment}`]) }
+  return {
+    ...(given['check'] === undefined ? { check: guide.check } : {}),
+    ...(given['action'] === undefined ? { action: guide.action } : {}),
+  }
+}
+
+function make(skid: Skid, name: Name, o: Occurrence): AlarmHelp | null {
+  const { segment } = o
   const pick = (r: Rationale): AlarmHelp => ({
     title: r.name,
     causes: r.cause,
@@ -48,6 +61,7 @@ function make(skid: Skid, name: Name, segment: string | null): AlarmHelp | null 
     action: r.action,
     timeToRespondS: r.timeToRespondSeconds,
     review: r.review,
+    ...byCause(skid, o),
   })
   const basis = { scanS: skid.scanSeconds, residenceS: null }
   try {

@@ -1,3 +1,6 @@
+import { defaultRationales, type RationaleName } from '../core/alarms/default-rationale.ts'
+import { responseSlackS } from '../core/alarms/priority.ts'
+import { rationale } from '../core/alarms/rationale.ts'
 import type { ChannelSpec, SegmentSpec, Skid, StreamSpec } from '../core/skid.ts'
 import { valueUnit } from '../core/units.ts'
 
@@ -18,7 +21,33 @@ export function notesOn(skid: Skid): string[] {
   }
   for (const stream of skid.streams) for (const note of streamNotes(stream, skid)) notes.push(`stream ${stream.id}: ${note}`)
   for (const segment of skid.segments) for (const note of segmentNotes(segment, skid)) notes.push(`segment ${segment.id}: ${note}`)
+  for (const key of Object.keys(skid.alarms)) {
+    const slackS = slackOf(skid, key)
+    if (slackS < 0)
+      notes.push(
+        `alarms.${key}: its delays and a minute to understand and act take ${(-slackS).toFixed(0)} s more than its timeToRespondSeconds: it cannot be relied on`,
+      )
+  }
   return notes
+}
+
+/** What the tool itself takes, and what a person needs to understand and to act, s (common practice). */
+const response = { detectionScans: 2, displayS: 1, diagnosisS: 30, actionS: 30 }
+
+/** Time to respond less every delay on the way (ALM-04) of an alarm that the file names; of several variants the tightest, s. */
+function slackOf(skid: Skid, key: string): number {
+  const [kind, segment] = key.split(':')
+  const names = (Object.keys(defaultRationales) as RationaleName[]).filter((n) => defaultRationales[n].kind === kind)
+  return Math.min(
+    ...names.map((name) => {
+      const r = rationale(name, segment ?? null, { scanS: skid.scanSeconds, residenceS: null }, skid.alarms)
+      const { detectionScans, ...rest } = response
+      return responseSlackS(
+        { ...rest, detectionS: detectionScans * skid.scanSeconds, onDelayS: r.onDelaySeconds, deadTimeS: 0 },
+        r.timeToRespondSeconds,
+      )
+    }),
+  )
 }
 
 function streamNotes(stream: StreamSpec, skid: Skid): string[] {

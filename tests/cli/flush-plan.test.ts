@@ -1,4 +1,4 @@
-import { mkdtempSync, readFileSync, rmSync } from 'node:fs'
+import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { fileURLToPath } from 'node:url'
@@ -83,4 +83,44 @@ it('names the nearest segment for a wrong one, and calls a wrong command line wr
 
 it('refuses a solvent that does not mix with water', async () => {
   expect((await run('--skid', skid, '--segment', 'R1', '--solvent', 'toluene')).error?.code).toBe('FLUSH_REFUSED')
+})
+
+// PRO-10
+it('ends with what may come next by the stored checks: F0 first, water refused until F1 and F2 are met by a person on good readings', async () => {
+  const plan = JSON.parse((await run('--skid', skid, '--segment', 'R1', '--json', '-')).out)
+  expect(plan.next.step).toBe('F0')
+  expect(plan.next.refused[0].step).toBe('F3')
+  const folder = mkdtempSync(join(tmpdir(), 'flush-checks-'))
+  const file = join(folder, 'checks.yaml')
+  type Step = { id: string; criteria: { id: string }[] }
+  const check = (step: string, criterion: string, more = 'verdict: met, value: seen, quality: good') =>
+    `  - { step: ${step}, criterion: ${criterion}, ${more}, source: panel, person: M. Ovalle, time: 2031-05-05T21:40:00+02:00 }`
+  const all = (...ids: string[]) =>
+    (plan.steps as Step[]).filter((s) => ids.includes(s.id)).flatMap((s) => s.criteria.map((c) => check(s.id, c.id)))
+  const next = async (lines: string[]) => {
+    writeFileSync(file, `checks:\n${lines.join('\n')}\n`)
+    return JSON.parse((await run('--skid', skid, '--segment', 'R1', '--checks', file, '--json', '-')).out).next
+  }
+  try {
+    expect((await next(all('F0', 'F1'))).step).toBe('F2')
+    expect((await next(all('F0', 'F2', 'F3'))).step).toBe('F1')
+    expect(await next(all('F0', 'F1', 'F2'))).toMatchObject({ step: 'F3', refused: [] })
+    const doubtful = [...all('F0', 'F1', 'F2'), check('F1', 'volume', 'verdict: met, value: 200 mL, quality: uncertain')]
+    expect(await next(doubtful)).toMatchObject({
+      step: 'F1',
+      waitingFor: [{ criterion: 'volume', why: 'value of uncertain quality' }],
+    })
+    const skipped = [
+      ...all('F0', 'F2'),
+      check('F1', 'volume', 'verdict: skipped, value: none, quality: good, reason: no time left tonight'),
+    ]
+    expect((await next(skipped)).waitingFor[0].why).toBe('cannot be skipped')
+    writeFileSync(file, `checks:\n${check('F1', 'volum')}\n`)
+    const wrong = await run('--skid', skid, '--segment', 'R1', '--checks', file)
+    expect(wrong.error?.line()).toMatch(/checks\.yaml:2:\d+: F1 has no criterion 'volum'; .*did you mean 'volume'/)
+    const page = await run('--skid', skid, '--segment', 'R1')
+    expect(page.out).toMatch(/Next by the checks stored: F0\n/)
+  } finally {
+    rmSync(folder, { recursive: true })
+  }
 })

@@ -54,6 +54,12 @@ export interface SegmentStep {
   readonly tempK: number | null
 }
 
+/**
+ * What each segment shows in a step: flow, mean temperature, and y = ln ΔP − ln ΔP_model at that mean. The mean temperature is enough: along the
+ * profile (`cleanDpAlong` at each thermocouple, trapezoid) the ratio was no better on runs of known truth (median error 0.00232 against 0.00230,
+ * p95 0.0085 either way), since the profile of the clean baseline is in the level; only a change of its shape is not, and that is given as
+ * noise (`profileSpreadK`). A lost thermocouple is filled by its learnt difference, so it does not move the mean.
+ */
 export function createObserver(layout: Layout, saved?: ObserveState) {
   const { skid, segments, streams } = layout
   const fluids: (PropertyTable | null)[] = skid.streams.map((s) => (s.fluid === null ? null : propertyTable(fluidOf(s.fluid))))

@@ -1,8 +1,10 @@
 import { type Fluid, fluidOf, mixByMass } from '../fluids/fluid.ts'
+import { risingRoot } from '../hydraulics/branches.ts'
 import { type ChannelGeometry, channelOf, channelVolumeM3 } from '../hydraulics/channel.ts'
+import { cleanDp } from '../hydraulics/clean-dp.ts'
 import { temperatureUncertainty } from '../instruments/tolerance.ts'
 import type { SegmentSpec, Skid, StreamSpec, TagSpec } from '../skid.ts'
-import { cFromK, kFromC, toSi, valueUnit } from '../units.ts'
+import { cFromK, kFromC, paFromBar, toSi, valueUnit } from '../units.ts'
 
 /**
  * What is known of the present or intended operation; keys are stream ids and temperature tags, values in the unit of the tag. A flow of 0 (pump
@@ -52,8 +54,8 @@ export interface Operation {
 
 const feedK = kFromC(20)
 
-/** Feed streams with the flow given, by the feed ratio from another feed, or half the flow tag's range. */
-function streamFlows(skid: Skid, given: Given, assumptions: string[]): StreamFlow[] {
+/** Feed streams with the flow given, by the feed ratio from another feed, or `scale` of half the flow tag's range. */
+function streamFlows(skid: Skid, given: Given, scale: number, assumptions: string[]): StreamFlow[] {
   const volumes = new Map<string, number | null>()
   const fluids = new Map(skid.streams.map((s) => [s.id, s.fluid === null ? null : fluidOf(s.fluid)]))
   const density = (id: string): number | null => fluids.get(id)?.at(feedK).rhoKgM3 ?? null
@@ -72,8 +74,12 @@ function streamFlows(skid: Skid, given: Given, assumptions: string[]): StreamFlo
   const half = (s: StreamSpec): number | null => {
     const range = skid.tags.find((t) => t.tag === s.flowTag)?.range
     if (range === undefined || range === null) return null
-    assumptions.push(`flow of ${s.id} not given: half the range of ${s.flowTag} assumed`)
-    return asVolume(s, (range[0] + range[1]) / 2)
+    assumptions.push(
+      scale === 1
+        ? `flow of ${s.id} not given: half the range of ${s.flowTag} assumed`
+        : `flow of ${s.id} not given: ${(50 * scale).toFixed(0)} % of the range of ${s.flowTag} assumed, where no clean pressure drop passes ${100 * loaded} % of its high limit`,
+    )
+    return asVolume(s, (scale * (range[0] + range[1])) / 2)
   }
   for (const s of skid.streams) {
     if (volumes.has(s.id)) continue
@@ -156,10 +162,40 @@ function workingFromLimits(skid: Skid, spec: SegmentSpec): number | null {
   return high === null ? null : Math.max(high - alarmMarginK, spec.limits.temperatureLowC ?? Number.NEGATIVE_INFINITY)
 }
 
-/** The working point of every segment from what is given, every gap filled by a stated assumption or left null. Errors: FLUID_* from a stream's liquid. */
+/** Where no flow is given, a skid is taken to run with its clean pressure drops below this share of their high limits (common practice). */
+const loaded = 0.45
+
+/** Clean ΔP over `loaded` of its high limit, the highest of all segments, less 1; below 0 where no limit is near. */
+function overload({ segments }: Operation): number {
+  return segments.reduce((worst, { channel, fluid, massFlowKgS, tempK, spec }) => {
+    const { dpHighBar } = spec.limits
+    if (channel === null || fluid === null || massFlowKgS === null || dpHighBar === null) return worst
+    if (tempK < fluid.limitK[0] || tempK > fluid.limitK[1]) return worst
+    const { rhoKgM3, viscPaS } = fluid.at(tempK)
+    return Math.max(worst, cleanDp(channel, massFlowKgS, rhoKgM3, viscPaS).dpPa / (loaded * paFromBar(dpHighBar)) - 1)
+  }, -1)
+}
+
+/**
+ * The working point of every segment from what is given, every gap filled by a stated assumption or left null. Where no flow is given at all, half
+ * the range of the flow tags, or less where that would bring a clean pressure drop near its limit. Errors: FLUID_* from a stream's liquid.
+ */
 export function operationOf(skid: Skid, given: Given = {}): Operation {
+  const half = operationAt(skid, given, 1)
+  const anyGiven = Object.values(given.flows ?? {}).some((f) => f !== null && f > 0)
+  if (anyGiven || overload(half) <= 0 || overload(operationAt(skid, given, leastScale)) >= 0) return half
+  return operationAt(
+    skid,
+    given,
+    risingRoot((scale) => overload(operationAt(skid, given, scale)), leastScale, 1),
+  )
+}
+/** Below this the static head alone is what stands against the limit. */
+const leastScale = 1e-3
+
+function operationAt(skid: Skid, given: Given, scale: number): Operation {
   const assumptions: string[] = []
-  const streams = streamFlows(skid, given, assumptions)
+  const streams = streamFlows(skid, given, scale, assumptions)
   const segments = skid.segments.map((spec): SegmentOperation => {
     const own = streams.filter((s) => spec.streams.includes(s.id))
     const massFlowKgS = own.length === 0 ? null : sum(own.map((s) => s.massFlowKgS))

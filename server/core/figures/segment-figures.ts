@@ -1,10 +1,12 @@
+import { type DepositReadings, depositReadings, pluggedRatio } from '../deposit/readings.ts'
 import { runLengthS, USUAL_CAPTURE } from '../deposit/run-length.ts'
-import { liohRateM3S } from '../deposit/water-in-feed.ts'
+import { liohRateM3S, reagentShareLost, waterProducts } from '../deposit/water-in-feed.ts'
 import { MonitorError } from '../errors.ts'
 import { channelVolumeM3 } from '../hydraulics/channel.ts'
 import { type CleanDp, cleanDp } from '../hydraulics/clean-dp.ts'
+import { temperatureUncertainty } from '../instruments/tolerance.ts'
 import type { Skid } from '../skid.ts'
-import { paFromBar } from '../units.ts'
+import { cFromK, paFromBar } from '../units.ts'
 import { dpUncertainty } from './dp-uncertainty.ts'
 import { type HeatFigures, heatFigures } from './heat-figures.ts'
 import { type Given, type Operation, operationOf, type SegmentOperation } from './operation.ts'
@@ -25,9 +27,21 @@ export interface SegmentFigures {
   /** Time from clean to dpHigh when a tenth of it stays, s. */
   readonly runLengthS: number | null
   readonly dpUncertaintyPa: number | null
+  /** Standard uncertainty of its thermometers, K; null where it has none. */
+  readonly temperatureUK: number | null
+  readonly temperatureBasis: string | null
+  /** Share of the organolithium that this water takes, and twice that should LiOH go on to Li2O; null where not known or none meets water. */
+  readonly reagentLost: number | null
+  /** What would show a resistance of `exampleRatio` times clean. */
+  readonly deposit: DepositReadings | null
+  /** Resistance over clean with one of its parallel branches plugged; null with one branch. */
+  readonly pluggedRatio: number | null
   readonly warnings: readonly string[]
   readonly missing: readonly string[]
 }
+
+/** A deposit that shows half as much again is the example of the page. */
+export const exampleRatio = 1.5
 
 export interface SkidFigures {
   readonly segments: readonly SegmentFigures[]
@@ -44,6 +58,20 @@ function wettingStreams(op: SegmentOperation, all: Operation): SegmentOperation[
   if (op.spec.kind === 'quench' || !meets(op.spec.streams)) return []
   const earlier = all.segments.slice(0, all.segments.indexOf(op)).filter((s) => meets(s.spec.streams))
   return op.streams.filter((s) => !active.includes(s.id) && !earlier.some((e) => e.spec.streams.includes(s.id)))
+}
+
+/** Moles of water that the wet feeds bring over moles of organolithium here; null where a flow, a content or a concentration is not known. */
+function reagentLost(wet: SegmentOperation['streams'], op: SegmentOperation): number | null {
+  const reagent = op.streams.find((s) => carriesOrganolithium(s.spec))
+  const concentration = reagent?.spec.reagent?.concentrationMolL ?? null
+  if (wet.length === 0 || reagent?.volumeFlowM3S == null || concentration === null) return null
+  let share = 0
+  for (const s of wet) {
+    if (s.spec.waterPpm === null || s.fluid === null || s.volumeFlowM3S === null) return null
+    const { waterMolM3 } = waterProducts(s.spec.waterPpm, s.fluid.at(s.tempK).rhoKgM3)
+    share += reagentShareLost(waterMolM3, s.volumeFlowM3S, concentration * 1000, reagent.volumeFlowM3S)
+  }
+  return share
 }
 
 function figuresOf(skid: Skid, op: SegmentOperation, all: Operation): SegmentFigures {
@@ -77,6 +105,9 @@ function figuresOf(skid: Skid, op: SegmentOperation, all: Operation): SegmentFig
         : `clean pressure drop is below 3 u of its taps (${u.tags.join(', ')}): small rises cannot be told`,
     )
   }
+  const probe = skid.tags.find((t) => t.tag === spec.temperatures[0])
+  const sensor = probe === undefined ? null : temperatureUncertainty(probe.sensor, cFromK(op.tempK))
+  const thermometers = { temperatureUK: sensor?.uK ?? null, temperatureBasis: sensor?.basis ?? null }
   const wet = wettingStreams(op, all)
   const liohM3S =
     wet.length === 0
@@ -109,6 +140,14 @@ function figuresOf(skid: Skid, op: SegmentOperation, all: Operation): SegmentFig
     liohM3S,
     runLengthS: run,
     dpUncertaintyPa: u.uPa,
+    ...thermometers,
+    reagentLost: reagentLost(wet, op),
+    pluggedRatio:
+      working === null || clean <= 0 || working.channel.parallel < 2 ? null : pluggedRatio(working.channel, working.at, 1),
+    deposit:
+      working === null || clean <= 0
+        ? null
+        : depositReadings(working.channel, working.at, { value: exampleRatio, low: exampleRatio, high: exampleRatio }),
     warnings: [...warnings, ...(heat?.notes ?? [])],
     missing,
   }
@@ -137,6 +176,11 @@ export function skidFigures(skid: Skid, given: Given = {}): SkidFigures {
         liohM3S: null,
         runLengthS: null,
         dpUncertaintyPa: null,
+        temperatureUK: null,
+        temperatureBasis: null,
+        reagentLost: null,
+        deposit: null,
+        pluggedRatio: null,
         warnings: [],
         missing: [cause.message],
       }

@@ -1,4 +1,5 @@
 import type { FlushPlan, FlushStep } from '../report.ts'
+import type { NextStep } from './course.ts'
 
 const wrap = (text: string, indent: string, width = 110): string => {
   const lines: string[] = []
@@ -53,5 +54,23 @@ export function planText(plan: FlushPlan): string {
     ...plan.steps.map(stepText),
     list('Water reference for F3', reference),
     list('Assumed', plan.assumptions),
+  ].join('')
+}
+
+/** What may come next by the checks stored so far, what stands open in it, and what is refused. */
+export function nextText(next: NextStep): string {
+  return [
+    `\nNext by the checks stored: ${next.done ? 'every step is accepted' : (next.step?.id ?? 'nothing; see what is refused')}\n`,
+    ...next.waitingFor.map((p) => bullet(`${p.step} ${p.criterion}: ${p.text} (${p.why})`, '-', '  ')),
+    list(
+      'Refused',
+      next.refused.map((r) => `${r.step}: ${r.reason}`),
+    ),
+    list(
+      'Failed, skipped or doubtful checks',
+      next.exceptions.map(
+        (e) => `${e.step} ${e.criterion}: ${e.verdict}, ${e.quality}${e.reason === null ? '' : `, ${e.reason}`} (${e.person})`,
+      ),
+    ),
   ].join('')
 }

@@ -1,7 +1,7 @@
 import type { Layout } from '../derive/layout.ts'
 import type { Step } from '../derive/step.ts'
 import type { Given } from '../figures/operation.ts'
-import { median } from '../stats/robust.ts'
+import { madSd, median } from '../stats/robust.ts'
 import { fromSi, valueUnit } from '../units.ts'
 
 /** Flows by stream (as the tag measures: kg/s or m³/s) and temperatures by temperature tag, K, in the layout's order; null where not known. */
@@ -19,16 +19,21 @@ export interface PresentState {
 
 /** A baseline is made of so many steps; the working point of now is the median of the last ten minutes of them. */
 const steps = { kept: 60, now: 20 }
+/** A temperature that moves by more than this (robust sd over the steps) is not that of a working point, K. */
+const steadyK = 2
 
-/** Median over steps of each column; null where no step has it. */
-function medians(list: readonly WorkingReadings[]): WorkingReadings | null {
+/** Median over steps of each column; null where no step has it, or a temperature spreads by more than `spreadK`. */
+function medians(list: readonly WorkingReadings[], spreadK: number): WorkingReadings | null {
   const first = list[0]
   if (first === undefined) return null
-  const column = (pick: (r: WorkingReadings) => number | null | undefined): number | null => {
+  const column = (pick: (r: WorkingReadings) => number | null | undefined, most: number): number | null => {
     const values = list.map(pick).filter((v): v is number => v !== null && v !== undefined)
-    return values.length === 0 ? null : median(values)
+    return values.length === 0 || madSd(values) > most ? null : median(values)
   }
-  return { flow: first.flow.map((_, i) => column((r) => r.flow[i])), tempK: first.tempK.map((_, i) => column((r) => r.tempK[i])) }
+  return {
+    flow: first.flow.map((_, i) => column((r) => r.flow[i], Number.POSITIVE_INFINITY)),
+    tempK: first.tempK.map((_, i) => column((r) => r.tempK[i], spreadK)),
+  }
 }
 
 /**
@@ -53,7 +58,7 @@ export function createPresent(layout: Layout, saved?: PresentState) {
       ),
     }
   }
-  const now = (): WorkingReadings | null => medians(s.recent.slice(-steps.now))
+  const last = (spreadK: number): WorkingReadings | null => medians(s.recent.slice(-steps.now), spreadK)
 
   return {
     state: s,
@@ -64,18 +69,19 @@ export function createPresent(layout: Layout, saved?: PresentState) {
     },
     /** A segment's baseline has just been made of the steps before. */
     baselined(segment: number): void {
-      s.baseline[segment] = medians(s.recent)
+      s.baseline[segment] = medians(s.recent, steadyK)
     },
     /** The present working point; null before production. */
-    now: (): Given | null => (s.recent.length === 0 ? null : given(now(), now())),
+    now: (): Given | null => (s.recent.length === 0 ? null : given(last(steadyK), last(steadyK))),
     /** That of a segment's clean baseline; null without one. */
     atBaseline: (segment: number): Given | null => {
       const at = s.baseline[segment] ?? null
       return at === null ? null : given(at, at)
     },
-    /** For a flush of this segment: flows of its clean baseline (a deposit may have throttled those of now), temperatures of now. */
+    /** For a flush of this segment: flows of its clean baseline (a deposit may have throttled those of now), temperatures of now, steady or not. */
     forFlush(segment: number): Given {
-      return given(s.baseline[segment] ?? now(), now())
+      const now = last(Number.POSITIVE_INFINITY)
+      return given(s.baseline[segment] ?? now, now)
     },
   }
 }

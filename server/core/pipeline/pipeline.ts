@@ -88,8 +88,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       given: present.forFlush(layout.segments.findIndex((g) => g.spec.id === segment)),
     }),
   )
-  const excursions = createExcursions(layout, book.hears, saved?.excursions)
   const limits: LimitTable = saved?.limits ?? limitsOf(layout)
+  const excursions = createExcursions(layout, limits, book.hears, saved?.excursions)
   const limitChecks = createLimits(layout, limits, book.hears, site)
   const fouled = (i: number): boolean => watch.segment(i).growth !== null
   const s = {

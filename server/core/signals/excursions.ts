@@ -2,6 +2,7 @@ import type { AlarmBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
 import type { Layout, SegmentLayout } from '../derive/layout.ts'
 import { createFeedRatio, type FeedPair, type FeedRatioState, type FeedRatioVerdict } from '../exotherm/feed-ratio.ts'
+import { timeToLimit } from '../exotherm/profile.ts'
 import type { ExothermVerdict, ReactorConfig } from '../exotherm/types.ts'
 import { createExothermWatch } from '../exotherm/watch.ts'
 import type { WatchState } from '../exotherm/watch-state.ts'
@@ -9,6 +10,7 @@ import { fluidOf } from '../fluids/fluid.ts'
 import type { Scan } from '../scan/grid.ts'
 import type { StreamSpec } from '../skid.ts'
 import { cFromK } from '../units.ts'
+import type { LimitTable } from './limits.ts'
 
 export interface ExcursionState {
   watch: WatchState | null
@@ -38,9 +40,9 @@ const watchedKinds = new Set(['mixer', 'reactor', 'quench'])
 
 /**
  * Temperature excursions of every reactor-like segment and the ratio of every pair of feeds that meet in one, scan by scan, as alarm
- * signals. A scan without rows is passed over: an empty cell of a jittering logger is no reading.
+ * signals. `limits` as they stand now, for how far a hot spot is from them. A scan without rows is passed over: an empty cell of a jittering logger is no reading.
  */
-export function createExcursions(layout: Layout, hears: AlarmBook['hears'], saved?: ExcursionState) {
+export function createExcursions(layout: Layout, limits: LimitTable, hears: AlarmBook['hears'], saved?: ExcursionState) {
   const { skid } = layout
   const reactors = layout.segments.filter((g) => watchedKinds.has(g.spec.kind) && g.temperatures.length > 0)
   const config = {
@@ -107,6 +109,18 @@ export function createExcursions(layout: Layout, hears: AlarmBook['hears'], save
     r.armed = on.armed
   }
 
+  /** How far from the highest limit that is set, at the rate found; '' where the rate is not rising or no limit is set. */
+  function timeLeft(g: SegmentLayout, v: ExothermVerdict): string {
+    const table = limits[layout.segments.indexOf(g)]
+    const limitC = table?.temperatureHighHighC ?? table?.temperatureHighC ?? null
+    if (limitC === null || v.hotSpotC === null || v.ratePerS === null) return ''
+    const left = timeToLimit(v.hotSpotC, limitC, v.ratePerS, v.ratePerSSe ?? 0)
+    if (left.s === null || left.soonestS === null) return ''
+    return left.s === 0
+      ? `; above ${limitC} °C already`
+      : `; ${limitC} °C in ${left.s.toFixed(0)} s at this rate, in ${left.soonestS.toFixed(0)} s at the soonest`
+  }
+
   function heatSignal(
     g: SegmentLayout,
     { key, coldKey }: { key: string; coldKey: string },
@@ -138,7 +152,7 @@ export function createExcursions(layout: Layout, hears: AlarmBook['hears'], save
         limit: v.thresholdC,
         unit: 'K',
         message: () =>
-          `${g.spec.title}: ${(v.excessC ?? 0).toFixed(1)} K above what coolant and feeds explain${rate}, at ${hottest ?? 'its thermocouples'}${likely}`,
+          `${g.spec.title}: ${(v.excessC ?? 0).toFixed(1)} K above what coolant and feeds explain${rate}, at ${hottest ?? 'its thermocouples'}${timeLeft(g, v)}${likely}`,
         cause: null,
         onset: null,
         detector: v.detector ?? 'excess',

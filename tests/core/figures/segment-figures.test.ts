@@ -114,15 +114,36 @@ it('does not care about the unit of a flow: kg/h, g/min, mL/min of the same stre
   )
 })
 
-it('says what it assumed when nothing is given: half of the range, the feed ratio, 15 K below the high limit', () => {
+it('says what it assumed when nothing is given: flows at 45 % of the tightest limit, the feed ratio, 15 K below the high limit', () => {
   const { assumptions, segments } = skidFigures(heron)
-  expect(assumptions.join('\n')).toMatch(/flow of A not given: half the range of FT-101/)
+  expect(assumptions.join('\n')).toMatch(
+    /flow of A not given: \d+ % of the range of FT-101 assumed, where no clean pressure drop passes 45 %/,
+  )
+  const loads = segments.map((s, i) => s.dp!.dpPa / (heron.segments[i]!.limits.dpHighBar! * 1e5))
+  expect(Math.max(...loads)).toBeCloseTo(0.45, 9)
+  const free = { ...heron, segments: heron.segments.map((s) => ({ ...s, limits: { ...s.limits, dpHighBar: null } })) }
+  expect(skidFigures(free).assumptions.join('\n')).toMatch(/flow of A not given: half the range of FT-101 assumed/)
   expect(assumptions.join('\n')).toMatch(/flow of B not given: taken from A at the middle of the feed-ratio limits, 1.05 mol\/mol/)
   expect(assumptions.join('\n')).toMatch(/R1: no temperature given, -20 °C assumed/)
   expect(segments.every((s) => s.dp !== null)).toBe(true)
   const b = operationOf(heron).streams.find((s) => s.id === 'B')?.volumeFlowM3S ?? 0
   const a = operationOf(heron).streams.find((s) => s.id === 'A')?.volumeFlowM3S ?? 0
   expect((b * 2.3) / a).toBeCloseTo(1.05, 9)
+})
+
+// SIG-04, SIG-08, FOU-05
+it('shows what a ratio of 1.5 may be, what a plugged branch would show, what water takes of the reagent, and u of the thermometers', () => {
+  const f = of('R1')
+  // 85 ppm in 6 kg/h and none counted of B: 28.3 mmol/h of water over 7.11 mol/h of n-hexyllithium.
+  expect(f.reagentLost).toBeCloseTo((85e-6 * 6000) / 18.015 / 7.11, 3)
+  expect(of('Q1').reagentLost).toBeNull()
+  expect(f.deposit!.readings[0]!.boreRatio).toBeCloseTo(1.5 ** -0.25, 1)
+  expect(f.pluggedRatio).toBeGreaterThan(2)
+  expect(of('PB').pluggedRatio).toBeNull()
+  expect(f.temperatureUK).toBeCloseTo(0.92, 2)
+  const page = derivedPage(heron, usual)
+  expect(page).toMatch(/organolithium lost to it +0\.4 %, at worst 0\.8 % \(Li2O\)/)
+  expect(page).toMatch(/What a pressure drop tells of a deposit\n {2}- One pressure drop at one flow does not tell/)
 })
 
 it('leaves figures null and names what is needed where the file is silent, and a page comes out all the same', () => {
