@@ -25,11 +25,11 @@ export interface SegmentForAdvice {
 export type Planner = (segment: string, ratios: Readonly<Record<string, number | null>>) => FlushPlan
 
 /**
- * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare, at least, and a share of
- * the time left, as a forecast far off is a wide one. A flush advised is said again, with its new times, when the forecast has moved by a share of the time
- * left and half an hour has passed. Site choice under change control; common practice.
+ * How much sooner than the last sensible moment a flush is advised: time for a person to decide and prepare. A flush advised is said
+ * again, with its new times, when the forecast has moved by a share of the time left and half an hour has passed. Site choice under
+ * change control; common practice.
  */
-const adviceSettings = { marginMinutes: 15, leadMinutes: 30, leadShare: 0.25, againMinutes: 30, againShare: 0.3 } as const
+const adviceSettings = { marginMinutes: 15, leadMinutes: 30, againMinutes: 30, againShare: 0.3 } as const
 
 /**
  * When a flush should begin and what else is worth doing, as recommendations under the site's own procedure. A flush is advised before
@@ -77,8 +77,7 @@ export function createAdviser(saved: AdviserState | undefined, plan: Planner) {
         if (f !== null) {
           s.displaceMinutes[g.id] ??= minutesOf(planNow(g.id, segments).plan)
           const lastMs = f.lowMs - (s.displaceMinutes[g.id]! + adviceSettings.marginMinutes) * 60_000
-          const lead = Math.max(adviceSettings.leadMinutes * 60_000, adviceSettings.leadShare * (lastMs - nowMs))
-          if (nowMs >= lastMs - lead || stands === 'flush') {
+          if (nowMs >= lastMs - adviceSettings.leadMinutes * 60_000 || stands === 'flush') {
             const { plan: made, without } = planNow(g.id, segments)
             const when =
               lastMs > nowMs
