@@ -1,5 +1,7 @@
+import { readFile } from 'node:fs/promises'
 import type { Acceptance } from '../core/flush/course.ts'
 import type { FlushPlan } from '../core/report.ts'
+import { cannotRead } from '../file-trouble.ts'
 import { firstOf } from '../skid/check.ts'
 import { parseSkidText } from '../skid/document.ts'
 import { meant } from '../skid/nearest.ts'
@@ -67,4 +69,13 @@ export function readChecks(plan: FlushPlan, source: string, file: string): Accep
           },
         ],
   )
+}
+
+/** Text of a file of checks. Errors: FILE_READ with the path. */
+export async function checksText(path: string): Promise<string> {
+  try {
+    return await readFile(path, 'utf8')
+  } catch (cause) {
+    throw cannotRead(path, cause)
+  }
 }

@@ -1,4 +1,3 @@
-import { parseArgs } from 'node:util'
 import { MonitorError } from '../core/errors.ts'
 import { type NextStep, nextStep } from '../core/flush/course.ts'
 import { flushDefaults } from '../core/flush/input.ts'
@@ -6,10 +5,11 @@ import { planFlush } from '../core/flush/plan.ts'
 import { nextText, planText } from '../core/flush/plan-text.ts'
 import type { FlushPlan } from '../core/report.ts'
 import { meant } from '../skid/nearest.ts'
-import { loadSkidFile, readSkidText } from '../skid/skid-path.ts'
+import { loadSkidFile } from '../skid/skid-path.ts'
 import { writeAtomic } from './atomic-file.ts'
-import { readChecks } from './checks-file.ts'
+import { checksText, readChecks } from './checks-file.ts'
 import type { Command } from './command.ts'
+import { readOptions } from './options.ts'
 
 const help = `Usage: clearbore flush-plan --skid FILE --segment ID [--segment ID ...] [--ratio R ...] [--json OUT|-]
 
@@ -43,34 +43,14 @@ const numberIn = (text: string, option: string, low: number, high: number): numb
 }
 
 function options(args: readonly string[]) {
-  let values: {
-    skid?: string
-    segment?: string[]
-    ratio?: string[]
-    solvent?: string
-    'water-ppm'?: string
-    json?: string
-    checks?: string
-  }
-  try {
-    ;({ values } = parseArgs({
-      args: [...args],
-      options: {
-        skid: { type: 'string' },
-        segment: { type: 'string', multiple: true },
-        ratio: { type: 'string', multiple: true },
-        solvent: { type: 'string' },
-        'water-ppm': { type: 'string' },
-        json: { type: 'string' },
-        checks: { type: 'string' },
-      },
-    }))
-  } catch (cause) {
-    throw new MonitorError('USAGE', cause instanceof Error ? cause.message : String(cause), {
-      hint: 'clearbore flush-plan --help',
-      cause,
-    })
-  }
+  const text = { type: 'string' } as const
+  const many = { type: 'string', multiple: true } as const
+  const { values } = readOptions(
+    'flush-plan',
+    args,
+    { skid: text, segment: many, ratio: many, solvent: text, 'water-ppm': text, json: text, checks: text },
+    false,
+  )
   const segments = values.segment ?? []
   const ratios = values.ratio ?? []
   if (values.skid === undefined || segments.length === 0)
@@ -117,7 +97,7 @@ export const flushPlanCommand: Command = {
       ratios: Object.fromEntries(o.ratios.map((r, i) => [o.segments[i] ?? '', r])),
       settings: { displacementSolvent: o.solvent, dryingSolvent: o.solvent, waterPpmLimit: o.waterPpm },
     })
-    const next = nextStep(plan, o.checks === null ? [] : readChecks(plan, await readSkidText(o.checks), o.checks))
+    const next = nextStep(plan, o.checks === null ? [] : readChecks(plan, await checksText(o.checks), o.checks))
     if (o.json === '-') await io.out(asJson(plan, next))
     else {
       if (o.json !== null) await writeAtomic(o.json, asJson(plan, next))
