@@ -2,6 +2,7 @@ import { defineConfig } from 'vitest/config'
 
 export default defineConfig({
   test: {
+    setupFiles: ['tests/setup.ts'],
     include: ['tests/**/*.test.ts'],
     exclude: ['tests/soak/**', 'tests/bench/**'],
     testTimeout: 60_000,

@@ -107,10 +107,22 @@ function coil(re: number, pr: number, curvature: number): number {
 }
 
 /**
+ * The straight tube's value that a coil never falls below: laminar to the coil's critical Re, turbulent from 22 000, linear between, as
+ * the coil stays laminar long after a straight tube has not.
+ */
+function coilFloor(re: number, pr: number, lengthOverDiameter: number, curvature: number): number {
+  const critical = Math.min(coilCriticalReynolds(curvature, 1), reTurbulentCoil * 0.95)
+  const laminar = (r: number) => gnielinskiLaminar((r * pr) / lengthOverDiameter)
+  if (re <= critical) return laminar(re)
+  if (re >= reTurbulentCoil) return straight(re, pr, lengthOverDiameter)
+  return blend(re, critical, reTurbulentCoil, laminar(critical), straight(reTurbulentCoil, pr, lengthOverDiameter))
+}
+
+/**
  * Mean Nusselt number inside a tube over every regime, with the spread of a second correlation as its range.
  * Straight: Gnielinski laminar to Re 2300, linear between 2300 and 4000 (Gnielinski, Int. J. Heat Mass Transfer 63 (2013) 134), Gnielinski
- * turbulent with entry factor 1 + (D/L)^(2/3) above. Coil: Schmidt to the critical Re, linear to 22 000, turbulent above; never below the
- * straight tube's laminar value (at Re < 100 a coil is a straight tube). Second opinions: Hausen, Sieder-Tate, Dittus-Boelter, Manlapaz-Churchill.
+ * turbulent with entry factor 1 + (D/L)^(2/3) above. Coil: Schmidt to the critical Re, linear to 22 000, turbulent above; never below
+ * `coilFloor` (at Re < 100 a coil is a straight tube). Second opinions: Hausen, Sieder-Tate, Dittus-Boelter, Manlapaz-Churchill.
  * Errors: THERMAL_RANGE unless Re > 0, Pr > 0, L/D > 0 and curvature in 0 … 0.5.
  */
 export function nusselt(flow: TubeFlow): Nusselt {
@@ -127,8 +139,7 @@ export function nusselt(flow: TubeFlow): Nusselt {
   const full = curvature === null ? reTurbulent : reTurbulentCoil
   const regime = re <= critical ? 'laminar' : re >= full ? 'turbulent' : 'transitional'
   const asStraight = straight(re, pr, lengthOverDiameter)
-  const nu =
-    curvature === null ? asStraight : Math.max(coil(re, pr, curvature), re <= critical ? gnielinskiLaminar(gz) : asStraight)
+  const nu = curvature === null ? asStraight : Math.max(coil(re, pr, curvature), coilFloor(re, pr, lengthOverDiameter, curvature))
   const others: number[] = []
   if (regime === 'laminar') {
     others.push(hausen(gz))
