@@ -26,9 +26,10 @@ function depositLines(s: SegmentReport): string[] {
 
 function outletLine(o: OutletReport, report: Report, time: (iso: string) => string): string {
   const kind = report.alarms.find((a) => a.id === o.alarm)?.kind ?? 'alarm'
+  if (o.from === null) return `${kind} in ${o.segment}: what it touched has not come to the end of ${o.outlet} yet`
   const until =
-    o.to === null ? 'on' : ` to ${time(o.to)}${o.divertedMl === null ? '' : `, ${(o.divertedMl / 1000).toPrecision(3)} L`}`
-  return `${kind} in ${o.segment}: what it touched leaves ${o.outlet} from ${o.from === null ? 'a time that is not reached yet' : time(o.from)}${until === 'on' ? ' on' : until} (by volume, ${percent(o.epsilon)} left out at either end)`
+    o.to === null ? ' on' : ` to ${time(o.to)}${o.divertedMl === null ? '' : `, ${(o.divertedMl / 1000).toPrecision(3)} L`}`
+  return `${kind} in ${o.segment}: what it touched leaves ${o.outlet} from ${time(o.from)}${until} (by volume, ${percent(o.epsilon)} left out at either end)`
 }
 
 /** The additions of a report as lines for the summary; empty where nothing is known. */
