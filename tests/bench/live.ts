@@ -1,0 +1,81 @@
+import { mkdtempSync, rmSync } from 'node:fs'
+import { tmpdir } from 'node:os'
+import { join } from 'node:path'
+import { monitorEventLoopDelay } from 'node:perf_hooks'
+import { cell, type RowBlock, rowBlock } from '../../server/core/reading.ts'
+import { createPair } from '../../server/monitor/catalogue.ts'
+import { createEngine } from '../../server/monitor/engine.ts'
+import { openStore } from '../../server/store/open.ts'
+import { channels, course, skid, skidText, startMs } from './input.ts'
+import type { Measured } from './measures.ts'
+
+/**
+ * Skids of 24 tags at 10 Hz in one process in real time: each second their rows go into one commit, through each one's pipeline, and what that said
+ * into the journal. `late` counts ticks that began more than half a second after they were due. No page is attached.
+ */
+export async function live(skids: number, seconds: number): Promise<Measured> {
+  const dir = mkdtempSync(join(tmpdir(), 'clearbore-bench-'))
+  const store = openStore(dir)
+  const engines = Array.from({ length: skids }, () => {
+    const pair = createPair(store, {
+      kind: 'simulated', about: 'bench', skidId: 'bench', title: 'bench', skidFile: 'bench.json', skidText, startedMs: 0, toolVersion: 'bench', state: 'live',
+    }) // biome-ignore format: a list
+    return createEngine({ skid: skid(), store, ...pair })
+  })
+  const row = course(36_000, 'normal')
+  const second = (k: number): RowBlock => {
+    const block = rowBlock(10, channels)
+    block.rows = 10
+    block.codes.fill(cell.value)
+    for (let i = 0; i < 10; i++) {
+      block.tMs[i] = startMs + 100 * (10 * k + i)
+      row(10 * k + i, block.values, i * channels)
+    }
+    return block
+  }
+  const tick = (k: number): void => {
+    const block = second(k)
+    store.sequence.append(engines.map((e) => ({ run: e.run, entries: [{ kind: 'rows' as const, block }] })))
+    for (const e of engines) e.push([{ kind: 'rows', block }])
+    store.together(() => {
+      for (const e of engines) e.journal()
+    })
+    for (const e of engines) e.news()
+    store.upkeep({ maxMs: 20 })
+  }
+  // Ten minutes pass at once and are not counted: after five the detectors are armed.
+  const before = 600
+  for (let k = 0; k < before; k++) tick(k)
+  const delay = monitorEventLoopDelay({ resolution: 10 })
+  delay.enable()
+  const from = performance.now()
+  const cpu = process.cpuUsage()
+  let late = 0
+  let slowestMs = 0
+  for (let k = 0; k < seconds; k++) {
+    const due = from + 1000 * (k + 1)
+    await new Promise((resolve) => setTimeout(resolve, Math.max(0, due - performance.now())))
+    const at = performance.now()
+    if (at > due + 500) late++
+    tick(before + k)
+    slowestMs = Math.max(slowestMs, performance.now() - at)
+  }
+  const spent = process.cpuUsage(cpu)
+  delay.disable()
+  const wallS = (performance.now() - from) / 1000
+  const rows = store.sequence.count(engines[0]!.run).rows
+  store.close()
+  rmSync(dir, { recursive: true, force: true })
+  const cpuS = (spent.user + spent.system) / 1e6
+  return {
+    cpuS,
+    rssMb: process.resourceUsage().maxRSS / 1024,
+    figures: {
+      share: cpuS / wallS,
+      late,
+      slowestMs,
+      loopP99Ms: delay.percentile(99) / 1e6,
+      missing: 10 * (before + seconds) - rows,
+    },
+  }
+}
