@@ -52,7 +52,8 @@ export const drift: Detector<DriftConfig, DriftState> = {
   },
   step(config, state, { tMs, z }) {
     if (z === null || !Number.isFinite(z)) return { state, verdict: state.verdict }
-    const open = join(state.open, { tMs, z, count: 1 })
+    // z + 0: −0 would not survive JSON.
+    const open = join(state.open, { tMs, z: z + 0, count: 1 })
     if (open.count < state.per) return { state: { ...state, open }, verdict: state.verdict }
     const fromMs = tMs - config.windowHours * 3_600_000
     let means = [...state.means.filter((m) => m.tMs >= fromMs), open]
