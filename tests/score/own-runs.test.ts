@@ -5,7 +5,6 @@ import { analyseLog } from '../../server/analyse.ts'
 import { createCollector } from '../../server/core/pipeline/collect.ts'
 import { createPipeline } from '../../server/core/pipeline/pipeline.ts'
 import type { Report } from '../../server/core/report.ts'
-import { simulatedBlocks } from '../helpers/simulated-blocks.ts'
 import { logText } from '../../server/core/sim/log-text.ts'
 import { randomScenario, type ScenarioKind } from '../../server/core/sim/random-scenario.ts'
 import type { Scenario } from '../../server/core/sim/scenario.ts'
@@ -14,6 +13,7 @@ import type { Skid } from '../../server/core/skid.ts'
 import { scoreCase } from '../../server/score/score.ts'
 import { summarise } from '../../server/score/summary.ts'
 import { heron } from '../core/sim/skids.ts'
+import { simulatedBlocks } from '../helpers/simulated-blocks.ts'
 
 function analysed(skid: Skid, scenario: Scenario): Report {
   const pipeline = createPipeline(skid)

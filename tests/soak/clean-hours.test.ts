@@ -1,12 +1,12 @@
 import { expect, it } from 'vitest'
 import { createCollector } from '../../server/core/pipeline/collect.ts'
 import { createPipeline } from '../../server/core/pipeline/pipeline.ts'
-import { simulatedBlocks } from '../helpers/simulated-blocks.ts'
 import { randomScenario } from '../../server/core/sim/random-scenario.ts'
 import { truthOf } from '../../server/core/sim/truth-of.ts'
 import { type CaseScore, scoreCase } from '../../server/score/score.ts'
 import { summarise } from '../../server/score/summary.ts'
 import { heron } from '../core/sim/skids.ts'
+import { simulatedBlocks } from '../helpers/simulated-blocks.ts'
 
 it('keeps false fouling alarms to 1.5 per 1000 h, within chance, over 200 h of clean running with confounders', () => {
   const cases: CaseScore[] = []

@@ -33,6 +33,8 @@ const reference: Readonly<
 /** The magnetic hump of type K above 0 °C, a0 exp(a1 (t − a2)²) [mV]. */
 const hump = [0.1185976, -0.0001183432, 126.9686] as const
 const lowC = -270
+/** Rounding of the sums at the ends of the tables, mV. */
+const roundingMv = 1e-12
 
 function refuse(type: ThermocoupleType, tempC: number): void {
   const { highC } = reference[type]
@@ -56,7 +58,7 @@ export function emfMv(type: ThermocoupleType, tempC: number): number {
 export function tempOfEmf(type: ThermocoupleType, mV: number): number {
   const { highC } = reference[type]
   const low = -200
-  if (!(mV >= emfMv(type, low) && mV <= emfMv(type, highC)))
+  if (!(mV >= emfMv(type, low) - roundingMv && mV <= emfMv(type, highC) + roundingMv))
     throw new MonitorError('CONFIG_RANGE', `${mV} mV is no EMF of type ${type} from ${low} to ${highC} °C`)
   return risingRoot((t) => emfMv(type, t) - mV, low, highC)
 }

@@ -21,11 +21,11 @@ describe('thermocouples', () => {
   ] as const)('type %s gives at %d °C the %d mV of the table', (type, tempC, mV) => {
     expect(Math.abs(emfMv(type, tempC) - mV)).toBeLessThan(6e-4)
   })
-  it('are read back from their EMF to 1e-9 K, −200 °C to the end', () => {
+  it('are read back from their EMF to 1e-7 K, −200 °C to the end (the two published pieces of type K meet at 0 °C within 5e-8 K)', () => {
     fc.assert(
       fc.property(fc.constantFrom('K' as const, 'T' as const), fc.double({ min: 0, max: 1, noNaN: true }), (type, u) => {
         const tempC = -200 + u * (type === 'K' ? 1570 : 600)
-        expect(Math.abs(tempOfEmf(type, emfMv(type, tempC)) - tempC)).toBeLessThan(1e-9)
+        expect(Math.abs(tempOfEmf(type, emfMv(type, tempC)) - tempC)).toBeLessThan(1e-7)
       }),
       { numRuns: 200 },
     )
