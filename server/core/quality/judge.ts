@@ -173,10 +173,15 @@ function jump(state: JudgeState, rules: RuleColumns, t: number, values: ArrayLik
   const value = rules.offset[t]! + rules.factor[t]! * values[at + t]!
   const step = Math.abs(value - state.last[t]!)
   const wiggle = state.wiggle[t]!
-  const impossible = step > rules.mostStep[t]!
+  // A spike comes back; a rise that goes on the same way, each time by a believable step, is no jump however far it gets: a runaway must be seen.
+  const away = state.jumpTo[t]! - state.last[t]!
+  const goesOn =
+    state.jumps[t]! > 0 && away * (value - state.jumpTo[t]!) > 0 && Math.abs(value - state.jumpTo[t]!) <= rules.mostStep[t]!
+  const impossible = step > rules.mostStep[t]! && !goesOn
   if (tMs - state.lastMs[t]! >= (impossible ? spike.impossibleMs : spike.forgetMs)) return good
   if (impossible) return impossibleRate
-  const agrees = state.jumps[t]! > 0 && Math.abs(value - state.jumpTo[t]!) < Math.max(0.25 * step, spike.wiggles * wiggle)
+  const agrees =
+    goesOn || (state.jumps[t]! > 0 && Math.abs(value - state.jumpTo[t]!) < Math.max(0.25 * step, spike.wiggles * wiggle))
   state.jumps[t] = agrees ? state.jumps[t]! + 1 : 1
   state.jumpTo[t] = value
   if (state.jumps[t]! >= spike.agree) return good

@@ -12,6 +12,8 @@ export interface InstrumentState {
   lastReason: number[]
   /** Share of recent scans in which a reading was rejected as a spike. */
   spiky: number[]
+  /** Scans in which the tag was judged, until they are enough to know its spikes. */
+  judged: number[]
   lastRowMs: number
   /** Smoothed time between scans with rows, ms. */
   rowGapMs: number
@@ -45,6 +47,7 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     frozenMs: fill(),
     lastReason: fill(),
     spiky: new Array<number>(n).fill(0),
+    judged: new Array<number>(n).fill(0),
     lastRowMs: -1,
     rowGapMs: 0,
     badTime: 0,
@@ -149,7 +152,12 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
     const fails = over(s.failingMs[t]!, delay.failing, tMs)
     const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
-    if (scan.used[t]! > 0 || flaw !== 0) s.spiky[t] = s.spiky[t]! + ((flaw === why.spike && alone ? 1 : 0) - s.spiky[t]!) / spikyScans
+    if (scan.used[t]! > 0 || flaw !== 0) {
+      // Until a reading's usual wiggle is known, much looks like a spike.
+      s.judged[t] = Math.min(s.judged[t]! + 1, spikyScans)
+      const bad = flaw === why.spike && alone && s.judged[t] === spikyScans
+      s.spiky[t] = s.spiky[t]! + ((bad ? 1 : 0) - s.spiky[t]!) / spikyScans
+    }
     const spiky = s.spiky[t]! > (s.sensorOver[t] === 1 ? spikyShare.clear : spikyShare.raise)
     if (spiky) s.lastReason[t] = why.spike
     const gone = over(s.missingMs[t]!, delay.missing, tMs)

@@ -62,6 +62,25 @@ describe('readings that jump', () => {
   })
 })
 
+describe('a coarse or a violent reading', () => {
+  it('a tap in steps of 0.33 bar about its value from the first row on is no faulty instrument', () => {
+    expect(sensors(600, (k) => ({ p3: 3 + 0.33 * (((k * 7919) % 5) - 2) }))).toEqual([])
+  })
+
+  it('a temperature that runs away by 8 K/s, more than a spike at each row, is believed: high limit within 10 s of 40 °C, and no instrument is blamed', () => {
+    const all = hear(skid, 700, (k) => ({ t1: k < 600 ? 20 : Math.min(140, 20 + 8 * (k - 600)) }))
+    expect(all.filter((a) => a.kind === 'sensor')).toEqual([])
+    const limit = all.find((a) => a.kind === 'temperature-limit')!
+    expect(limit.raisedS - 603).toBeLessThanOrEqual(10)
+    expect(all.map((a) => a.kind)).toContain('exotherm')
+  })
+
+  it('one that leaps by 100 K at once and stays is still refused, however many readings agree', () => {
+    const all = hear(skid, 700, (k) => ({ t1: k < 600 ? 20 : 120 }))
+    expect(all.map((a) => a.kind)).toEqual(['sensor'])
+  })
+})
+
 describe('the log itself', () => {
   it('a pause of 60 s is no-data after 10 s, once, for the whole log and no single tag', () => {
     const alarms = sensors(900, (k) => (k >= 600 && k < 660 ? { none: true } : {}))
