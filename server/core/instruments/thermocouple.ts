@@ -33,8 +33,8 @@ const reference: Readonly<
 /** The magnetic hump of type K above 0 °C, a0 exp(a1 (t − a2)²) [mV]. */
 const hump = [0.1185976, -0.0001183432, 126.9686] as const
 const lowC = -270
-/** Rounding of the sums at the ends of the tables, mV. */
-const roundingMv = 1e-12
+/** Rounding of the sums at the ends of the tables, mV; terms of the polynomial for T at −200 °C cancel to this. */
+const roundingMv = 1e-9
 
 function refuse(type: ThermocoupleType, tempC: number): void {
   const { highC } = reference[type]
