@@ -51,6 +51,21 @@ export interface BaselineReport {
   readonly provisional: boolean
   readonly flowMlMin: number | null
   readonly tempC: number | null
+  /** An accepted step test vouched for its zero or exponent. */
+  readonly commissioned: boolean
+}
+
+/** What is known of a segment besides its level: exponents of ΔP in flow and viscosity, and the zero of ΔP with the pumps at rest. */
+export interface LearnedReport {
+  readonly flowExponent: LearnedExponentReport
+  readonly viscosityExponent: LearnedExponentReport
+  readonly zeroMbar: number | null
+}
+export interface LearnedExponentReport {
+  readonly value: number
+  readonly sd: number
+  /** The readings have halved the doubt it began with, or a step test measured it; else it is that of the hydraulics. */
+  readonly told: boolean
 }
 
 export interface OnsetReport {
@@ -75,6 +90,8 @@ export interface ChartReport {
   readonly h: number
   readonly sigma: number
   readonly cusum: number
+  /** The same of the lower side, which no deposit drives. */
+  readonly cusumLow: number
   /** Hours between false alarms of all charts of the skid together, as designed; and of this chart as observed, null while it has not signalled. */
   readonly designedHours: number
   readonly observedHours: number | null
@@ -96,6 +113,8 @@ export interface SegmentReport {
   /** Additions: what would explain the ratio, null without a deposit; heat transfer from the readings, null where they do not carry it. */
   readonly deposit: DepositReport | null
   readonly heat: HeatReport | null
+  /** Addition: null before the segment's first reading in production. */
+  readonly learned: LearnedReport | null
 }
 
 /** A ratio with its interval (± 2 sd) and everything that one pressure drop at one flow leaves open about it. */

@@ -1,6 +1,8 @@
 import type { Layout } from '../derive/layout.ts'
-import { createFilter, wanderVar } from './filter.ts'
+import { createFilter, type KnownSegment, nothingKnown, wanderVar } from './filter.ts'
 import {
+  type Believable,
+  believable,
   births,
   type Column,
   type ColumnState,
@@ -8,12 +10,13 @@ import {
   explanations,
   giveBirth,
   isKept,
+  type Kind,
   likelihood,
   loadColumn,
   observe,
   saveColumn,
 } from './hypotheses.ts'
-import { disturbances as d, rowOf, type SegmentObservation, stateMap } from './model.ts'
+import { type Disturbances, disturbances, rowOf, type SegmentObservation, stateMap } from './model.ts'
 import {
   type Court,
   depositVerdict,
@@ -63,11 +66,16 @@ interface SegmentTrack {
   z2: number
   /** Level at the first clean baseline: what ratios are taken against. */
   cRef: number | null
+  /** Sd of the exponents of flow and viscosity before the first reading, and the hydraulics' exponents they stand on. */
+  prior?: { readonly a: number; readonly k: number; readonly n0: number; readonly k0: number }
   /** Steps since production began, with an observation. */
   seen: number
   lastDpPa: number | null
   /** Mean of y over the last few steps. */
   yMean: number | null
+  /** ln flow and ln viscosity as they stand between moves: what exponents are learnt from. */
+  flowHeld?: number
+  viscHeld?: number
 }
 
 export interface BankState {
@@ -85,6 +93,27 @@ export interface BankState {
   sinceMove: number
   moves: number[]
   started: boolean
+  /** What step tests taught, by segment; missing where there were none. */
+  known?: readonly KnownSegment[]
+}
+
+/** What the bank takes for granted: sizes of disturbances and explanations, and which kinds of explanation there are. */
+export interface BankSettings {
+  readonly disturbances: Disturbances
+  readonly believable: Believable
+  readonly kinds: readonly Kind[]
+}
+export const bankSettings: BankSettings = {
+  disturbances,
+  believable,
+  kinds: ['deposit', 'step', 'settling', 'tap-ramp', 'tap-step', 'stream'],
+}
+
+/** An exponent as the bank holds it: hydraulics plus what was learnt; `told` once readings have halved the doubt it began with, or a step test measured it. */
+export interface LearnedExponent {
+  readonly value: number
+  readonly sd: number
+  readonly told: boolean
 }
 
 /** Share of a step in the mean of the last few. */
@@ -103,10 +132,17 @@ export interface BankSegment {
  * called when its likelihood is high and beats the best other explanation, never because a level was passed. Model, priors and rules:
  * method paper of this project; state plain JSON through `save`.
  */
-export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
+export function createBank(
+  layout: Layout,
+  stepMs: number,
+  saved?: BankState,
+  settings: BankSettings = bankSettings,
+  known?: readonly KnownSegment[],
+) {
+  const d = settings.disturbances
   const map = stateMap(layout)
-  const filter = createFilter(layout, map)
-  const list = explanations(layout)
+  const filter = createFilter(layout, map, d)
+  const list = explanations(layout).filter((e) => settings.kinds.includes(e.kind))
   const wanders = layout.segments.map((_, i) => map.wander(i))
   /** Finer grids live faster: their hours are counted as if a step were 30 s. */
   const stepH = Math.max(stepMs, 30_000) / 3.6e6
@@ -143,9 +179,11 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     sinceMove: 1e6,
     moves: [],
     started: false,
+    ...(known === undefined ? {} : { known }),
   }
   let columns: Column[] = saved ? saved.columns.map(loadColumn) : []
 
+  const sdOf = (i: number): number => Math.sqrt(Math.max(0, f.p[i * map.size + i]!))
   const watched = (seg: number): boolean => s.tracks[seg]!.started && !s.tracks[seg]!.fouled
   const isWatched = (e: Explanation): boolean => touches(layout, e).some(watched)
 
@@ -204,16 +242,24 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
   function measure(seg: number, o: SegmentObservation): void {
     const t = s.tracks[seg]!
     if (!t.started) {
-      filter.startSegment(f, seg, o, false)
+      filter.startSegment(f, seg, o, s.known?.[seg] ?? nothingKnown)
+      t.prior = { a: sdOf(map.flowExp(seg)), k: sdOf(map.viscExp(seg)), n0: o.n0, k0: o.k0 }
       t.started = true
       t.noisePa2 = Math.max(o.stepVar, 1e-6) * o.dpPa ** 2
     }
     learnNoise(seg, o)
-    // What multiplies the states rests on the steps before: this step's own noise is in y too, and would teach zeros and gains for ever.
-    const before: SegmentObservation = { ...o, tapPa: s.tapMeanPa, dpPa: o.dpPa * Math.exp((t.yMean ?? o.y) - o.y) }
+    // What multiplies the states rests on the steps before: this step's own noise is in y too, and would teach zeros, gains and
+    // exponents for ever.
+    const before: SegmentObservation = {
+      ...o,
+      tapPa: s.tapMeanPa,
+      dpPa: o.dpPa * Math.exp((t.yMean ?? o.y) - o.y),
+      lnFlow: held(t, 'flowHeld', o.lnFlow),
+      lnVisc: held(t, 'viscHeld', o.lnVisc),
+    }
     t.yMean = t.yMean === null ? o.y : t.yMean + recentShare * (o.y - t.yMean)
     const row = rowOf(layout, map, seg, before, s.tapStartPa)
-    let noise = measurementNoise(seg, before)
+    let noise = measurementNoise(seg, { ...before, lnFlow: o.lnFlow, lnVisc: o.lnVisc })
     const { mean, variance } = filter.predict(f, row)
     const z = (o.y - mean) / Math.sqrt(variance + noise)
     const third =
@@ -358,7 +404,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       if (columns.length > 0) decayColumns(1 + gapSteps)
       columns = columns.filter((c) => isKept(s.steps - c.born, c.born))
       if (s.tracks.some((t) => t.seen >= births.after) && s.steps % births.every === 0)
-        giveBirth(layout, columns, list, s.steps, map, isWatched)
+        giveBirth(layout, columns, list, s.steps, map, isWatched, settings.believable)
       const moved = s.sinceMove
       observations.forEach((o, seg) => {
         const t = s.tracks[seg]!
@@ -382,7 +428,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       }
       const segments = observations.map((o, seg): BankSegment => {
         const t = s.tracks[seg]!
-        const sd = { whiteSd: Math.sqrt(whiteVar(t, t.lastDpPa)), wanderSd: Math.sqrt(wanderVar(t.lastDpPa)) }
+        const sd = { whiteSd: Math.sqrt(whiteVar(t, t.lastDpPa)), wanderSd: Math.sqrt(wanderVar(t.lastDpPa, d)) }
         if (o === null || !t.started) return { lnRatio: null, ...sd }
         const shift = t.cRef === null ? 0 : (t.clean === null ? f.x[map.level(seg)]! : t.clean.c) - t.cRef
         return { lnRatio: o.y - meanWithoutWander(seg, o) + shift, ...sd }
@@ -403,7 +449,28 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
       if (t.cRef === null && t.started) t.cRef = f.x[map.level(seg)]!
     },
     level: (seg: number): number => f.x[map.level(seg)]!,
-    levelSd: (seg: number): number => Math.sqrt(Math.max(0, f.p[map.level(seg) * map.size + map.level(seg)]!)),
+    levelSd: (seg: number): number => sdOf(map.level(seg)),
+    /** Whether a step test vouched for anything of this segment. */
+    isCommissioned: (seg: number): boolean => {
+      const k = s.known?.[seg]
+      return k !== undefined && (k.zeroChecked || k.flowExponent !== null)
+    },
+    /** Exponents of flow and viscosity as they stand (frozen under a deposit); null before the segment's first reading. */
+    exponents(seg: number): { flow: LearnedExponent; viscosity: LearnedExponent } | null {
+      const t = s.tracks[seg]!
+      if (t.prior === undefined) return null
+      const measured = (s.known?.[seg]?.flowExponent ?? null) !== null
+      const one = (i: number, base: number, over: number, before: number): LearnedExponent => ({
+        value: base + over,
+        sd: sdOf(i),
+        told: sdOf(i) < before / 2 || (measured && i === map.flowExp(seg)),
+      })
+      const [a, k] = [map.flowExp(seg), map.viscExp(seg)]
+      return {
+        flow: one(a, t.prior.n0, t.clean?.a ?? f.x[a]!, t.prior.a),
+        viscosity: one(k, t.prior.k0, t.clean?.k ?? f.x[k]!, t.prior.k),
+      }
+    },
 
     /** Production stopped: levels may have moved. A cleaned deposit's segment is taken back in. */
     restart(): void {
@@ -448,7 +515,7 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     seen: (seg: number): number => s.tracks[seg]!.seen,
     noise: (seg: number): { whiteSd: number; wanderSd: number } => ({
       whiteSd: Math.sqrt(whiteVar(s.tracks[seg]!, s.tracks[seg]!.lastDpPa)),
-      wanderSd: Math.sqrt(wanderVar(s.tracks[seg]!.lastDpPa)),
+      wanderSd: Math.sqrt(wanderVar(s.tracks[seg]!.lastDpPa, d)),
     }),
 
     /** Likelihood of a growing deposit in a segment now, for the screen. */
@@ -472,6 +539,17 @@ export function createBank(layout: Layout, stepMs: number, saved?: BankState) {
     }
   }
 }
+/** Less than this is a reading's noise, not a move, ln. */
+const leastMove = 0.01
+
+/** What stood before this step, or this step's own where it moved away. */
+function held(t: SegmentTrack, of: 'flowHeld' | 'viscHeld', now: number): number {
+  const was = t[of]
+  const moved = was === undefined || Math.abs(now - was) > leastMove
+  t[of] = moved ? now : was + recentShare * (now - was)
+  return moved ? now : was
+}
+
 /** White noise of ln ΔP at a ΔP; never better than 0.03 %. */
 const whiteVar = (t: { readonly noisePa2: number }, dpPa: number | null): number =>
   Math.max(1e-7, dpPa === null ? 1e-5 : t.noisePa2 / dpPa ** 2)

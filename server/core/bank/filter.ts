@@ -1,5 +1,5 @@
 import type { Layout } from '../derive/layout.ts'
-import { disturbances as d, type Row, type SegmentObservation, type StateMap } from './model.ts'
+import { type Disturbances, disturbances, type Row, type SegmentObservation, type StateMap } from './model.ts'
 
 /**
  * One Kalman filter over all segments: x and P as flat arrays (P row-major), updated by one scalar measurement at a time, which for
@@ -18,7 +18,14 @@ export interface Update {
   readonly gain: Float64Array
 }
 
-export function createFilter(layout: Layout, map: StateMap) {
+/** What a step test taught of a segment before it ran: its zero was read at standstill; how far its flow exponent lies above the hydraulics'. */
+export interface KnownSegment {
+  readonly zeroChecked: boolean
+  readonly flowExponent: { readonly over: number; readonly sd: number } | null
+}
+export const nothingKnown: KnownSegment = { zeroChecked: false, flowExponent: null }
+
+export function createFilter(layout: Layout, map: StateMap, d: Disturbances = disturbances) {
   const n = map.size
   const gain = new Float64Array(n)
   const tapIsDrifting = new Uint8Array(layout.taps.length)
@@ -34,8 +41,11 @@ export function createFilter(layout: Layout, map: StateMap) {
       return f
     },
 
-    /** Sets a segment's own states to their prior at its first observation: level at y, exponents by three independent causes. */
-    startSegment(f: FilterState, s: number, o: SegmentObservation, zeroChecked: boolean): void {
+    /**
+     * Sets a segment's own states to their prior at its first observation: level at y, exponents by three independent causes. An exponent of flow
+     * that a step test measured is then taken as one more reading of that state, which moves the viscosity's along by their covariance.
+     */
+    startSegment(f: FilterState, s: number, o: SegmentObservation, known: KnownSegment = nothingKnown): void {
       const c = map.level(s)
       const a = map.flowExp(s)
       const k = map.viscExp(s)
@@ -44,7 +54,7 @@ export function createFilter(layout: Layout, map: StateMap) {
       const seg = layout.segments[s]!.spec
       const slope = seg.temperatures.length === 1 && seg.kind === 'precooler' ? d.viscositySlopeOneThermocouple : d.viscositySlope
       // On a ΔP of the size of its own zero error the exponents stay near the hydraulics: noise must not teach them.
-      const zero = Math.min(d.zeroShareAtMost, (zeroChecked ? d.zeroOffsetCheckedPa : d.zeroOffsetPa) / o.dpPa)
+      const zero = Math.min(d.zeroShareAtMost, (known.zeroChecked ? d.zeroOffsetCheckedPa : d.zeroOffsetPa) / o.dpPa)
       const fit = d.coilAndFittings
       f.x[c] = o.y
       f.x[a] = f.x[k] = f.x[w] = 0
@@ -52,7 +62,9 @@ export function createFilter(layout: Layout, map: StateMap) {
       f.p[a * n + a] = fit ** 2 + (o.n0 * zero) ** 2
       f.p[k * n + k] = fit ** 2 + (o.k0 * zero) ** 2 + (o.k0 * slope) ** 2
       f.p[a * n + k] = f.p[k * n + a] = -(fit ** 2) + o.n0 * o.k0 * zero ** 2
-      f.p[w * n + w] = wanderVar(o.dpPa)
+      f.p[w * n + w] = wanderVar(o.dpPa, d)
+      const { flowExponent } = known
+      if (flowExponent !== null) this.update(f, { index: [a], value: [1] }, flowExponent.over, flowExponent.sd ** 2)
     },
 
     /** New doubt about one level after a stop; the level itself and the exponents stay. */
@@ -78,7 +90,7 @@ export function createFilter(layout: Layout, map: StateMap) {
       }
       for (let s = 0; s < layout.segments.length; s++) {
         p[map.level(s) * n + map.level(s)]! += d.levelWalk ** 2 * hours
-        decay(map.wander(s), d.wanderTauH, wanderVar(dpPa[s] ?? null))
+        decay(map.wander(s), d.wanderTauH, wanderVar(dpPa[s] ?? null, d))
       }
       map.tapZero.forEach((i, t) => {
         if (i >= 0) p[i * n + i]! += (tapIsDrifting[t] === 1 ? d.tapDriftingWalkPa : d.tapWalkPa) ** 2 * hours
@@ -134,6 +146,6 @@ export function createFilter(layout: Layout, map: StateMap) {
 export type Filter = ReturnType<typeof createFilter>
 
 /** Variance of the slow wander of ln ΔP: a share of ΔP and a few mbar that weigh on a small one. */
-export function wanderVar(dpPa: number | null): number {
+export function wanderVar(dpPa: number | null, d: Disturbances = disturbances): number {
   return d.wander ** 2 + (dpPa === null ? 0 : (d.wanderPa / dpPa) ** 2)
 }

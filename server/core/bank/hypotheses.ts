@@ -41,19 +41,20 @@ export function likelihood(c: Column, now: number): number {
 export const sizeOf = (c: Column): number => (c.j > 0 ? c.d / c.j : 0)
 
 /** Believable sizes: share of a tap's span, ln viscosity of a stream, lone step of ln ΔP. A deposit may grow at any rate. Starting values. */
-const believable = { tapShare: 0.005, assumedSpanPa: 2.5e6, stream: 0.08, step: 0.1 }
+export const believable = { tapShare: 0.005, assumedSpanPa: 2.5e6, stream: 0.08, step: 0.1 }
+export type Believable = typeof believable
 
-function scaleOf(layout: Layout, e: Explanation): number {
+function scaleOf(layout: Layout, e: Explanation, sizes: Believable): number {
   switch (e.kind) {
     case 'deposit':
       return Number.MAX_VALUE
     case 'step':
     case 'settling':
-      return believable.step
+      return sizes.step
     case 'stream':
-      return believable.stream
+      return sizes.stream
     default:
-      return (believable.tapShare * (layout.taps[e.of]!.spanPa ?? believable.assumedSpanPa)) / 1000
+      return (sizes.tapShare * (layout.taps[e.of]!.spanPa ?? sizes.assumedSpanPa)) / 1000
   }
 }
 
@@ -121,13 +122,14 @@ export function giveBirth(
   now: number,
   map: StateMap,
   isWatched: (e: Explanation) => boolean,
+  sizes: Believable = believable,
 ): void {
   for (const e of list)
     if (isWatched(e))
       columns.push({
         kind: e.kind,
         of: e.of,
-        scale: scaleOf(layout, e),
+        scale: scaleOf(layout, e, sizes),
         born: now,
         response: new Float64Array(map.size),
         d: 0,

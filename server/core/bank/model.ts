@@ -1,10 +1,35 @@
 import type { Layout } from '../derive/layout.ts'
 
+export interface Disturbances {
+  readonly levelStart: number
+  readonly levelWalk: number
+  readonly coilAndFittings: number
+  readonly zeroOffsetPa: number
+  readonly zeroOffsetCheckedPa: number
+  readonly zeroShareAtMost: number
+  readonly viscositySlope: number
+  readonly viscositySlopeOneThermocouple: number
+  readonly wander: number
+  readonly wanderPa: number
+  readonly wanderTauH: number
+  readonly tapWalkPa: number
+  readonly tapDriftingWalkPa: number
+  readonly tapGain: number
+  readonly meter: number
+  readonly meterTauH: number
+  readonly viscosityWalk: number
+  readonly thermalLag: number
+  readonly flowMove: number
+  readonly profileSpread: number
+  readonly restartFouled: number
+  readonly restartClean: number
+}
+
 /**
  * Sizes of everything known to disturb a clean segment, as standard deviations. They are defaults under change control: start
  * values from a study of simulated skids, to be replaced by what a skid's own clean runs show. Per root hour where they walk.
  */
-export const disturbances = {
+export const disturbances: Disturbances = {
   levelStart: 1,
   levelWalk: 0.0005,
   coilAndFittings: 0.05,
@@ -29,7 +54,7 @@ export const disturbances = {
   /** Level's doubt after a stop: with a deposit before, without. */
   restartFouled: 0.2,
   restartClean: 0.006,
-} as const
+}
 
 /** Where each state sits in the vector. Segment s owns c, a, k, w at 4s … 4s+3. */
 export interface StateMap {

@@ -41,6 +41,8 @@ const assumed = { viscPaS: 1e-3, rhoKgM3: 1000, tempK: 293.15, massFlowKgS: 1e-3
 const significant = 1.5
 /** A ΔP at rest beyond this is no zero error, Pa. */
 const restAtMostPa = 30_000
+/** Steps that the zero remembers. */
+const restSteps = 40
 
 const G = 9.80665
 
@@ -60,7 +62,7 @@ export interface SegmentStep {
  * p95 0.0085 either way), since the profile of the clean baseline is in the level; only a change of its shape is not, and that is given as
  * noise (`profileSpreadK`). A lost thermocouple is filled by its learnt difference, so it does not move the mean.
  */
-export function createObserver(layout: Layout, saved?: ObserveState) {
+export function createObserver(layout: Layout, saved?: ObserveState, zeroPa?: readonly (number | null)[]) {
   const { skid, segments, streams } = layout
   const fluids: (PropertyTable | null)[] = skid.streams.map((s) => (s.fluid === null ? null : propertyTable(fluidOf(s.fluid))))
   const channels = segments.map((g): ChannelGeometry | null => {
@@ -76,8 +78,8 @@ export function createObserver(layout: Layout, saved?: ObserveState) {
     offsetSteps: segments.map(() => 0),
     overCoolantK: segments.map(() => 0),
     profileK: segments.map(() => null),
-    zeroPa: segments.map(() => 0),
-    zeroSteps: segments.map(() => 0),
+    zeroPa: segments.map((_, i) => zeroPa?.[i] ?? 0),
+    zeroSteps: segments.map((_, i) => (zeroPa?.[i] == null ? 0 : restSteps)),
   }
 
   /** Mean temperature of a segment; a lost thermocouple is filled from the others (or the coolant) and its own learnt difference. */
@@ -103,6 +105,16 @@ export function createObserver(layout: Layout, saved?: ObserveState) {
       if (coolant !== null) s.overCoolantK[i]! += (mean - coolant - s.overCoolantK[i]!) / taught
     }
     return { mean, profile }
+  }
+
+  function headAtRest(i: number, step: Step): number {
+    const seg = segments[i]!
+    const heightM = seg.spec.channel?.heightM ?? 0
+    if (heightM === 0 || seg.streams.length === 0) return 0
+    const read = seg.temperatures.map((t) => step.tempK[t] ?? null).filter((t): t is number => t !== null)
+    const tempK = read.length === 0 ? assumed.tempK : read.reduce((a, t) => a + t, 0) / read.length
+    const volume = seg.streams.reduce((sum, st) => sum + 1 / (fluids[st]?.rhoKgM3(tempK) ?? assumed.rhoKgM3), 0)
+    return (seg.streams.length / volume) * G * heightM
   }
 
   function modelPa(i: number, massFlow: number, rho: number, visc: number, lossK: number): number {
@@ -132,14 +144,16 @@ export function createObserver(layout: Layout, saved?: ObserveState) {
   return {
     state: s,
     channels,
+    /** Head of the liquid that stands in a segment, Pa; its streams in equal parts, as nothing flows to weigh them by. */
+    headAtRest,
 
-    /** Learns the zero of each ΔP while every pump stands still (zero check at standstill). */
+    /** Learns the zero of each ΔP, less the head of the liquid, while every pump stands still (zero check at standstill). */
     rest(step: Step): void {
       for (let i = 0; i < segments.length; i++) {
         const dp = step.dpPa[i] ?? null
-        if (dp === null || Math.abs(dp) > restAtMostPa) continue
-        const n = Math.min(s.zeroSteps[i]! + 1, 40)
-        s.zeroPa[i]! += (dp - s.zeroPa[i]!) / n
+        if (dp === null || Math.abs(dp - headAtRest(i, step)) > restAtMostPa) continue
+        const n = Math.min(s.zeroSteps[i]! + 1, restSteps)
+        s.zeroPa[i]! += (dp - headAtRest(i, step) - s.zeroPa[i]!) / n
         s.zeroSteps[i] = n
       }
     },

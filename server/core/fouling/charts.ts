@@ -10,8 +10,9 @@ const stepsPerPoint = 10
 const modelSd = 0.004
 /** The drift chart looks back a month: creeping growth is a matter of days. */
 const driftConfig = { windowHours: 720, leastPerHour: 0, level: 0.99 }
-/** Share of the rise to be found that the last half hour must stand at before the charts alone raise an alarm. */
+/** Share of the rise to be found that the last half hour must stand at before the charts alone raise an alarm; below clean all of it, as a word on it is no alarm. */
 const riseShare = 0.6
+const fallShare = 1
 const recentPoints = 6
 
 /** The charts a plant engineer can follow by hand, one pair for each segment, from a final baseline on. Plain JSON. */
@@ -37,6 +38,8 @@ export interface ChartState {
   seen: number
   signals: number
   over: boolean
+  /** The sum of the lower side exceeds the interval. */
+  under?: boolean
 }
 
 export interface ChartReading {
@@ -48,6 +51,8 @@ export interface ChartReading {
   readonly drift: { readonly perHour: number; readonly low: number; readonly high: number } | null
   /** Both signal and the last half hour stands high: the charts alone would raise an alarm. */
   readonly alarms: boolean
+  /** The lower side signals and the last half hour stands as far below clean as the rise to be found: nothing that a deposit does. */
+  readonly below: boolean
 }
 
 /**
@@ -108,6 +113,7 @@ export function stepCharts(c: ChartState, tMs: number, lnRatio: number | null): 
   const over = out.verdict.kind === 'shift' && out.verdict.side === 'high'
   if (over && !c.over) c.signals++
   c.over = over
+  c.under = out.state.low.sum > c.design.h
   c.seen++
   c.recent = [...c.recent, x].slice(-recentPoints)
   c.drift = drift.step(driftConfig, c.drift, { tMs: at, z: x / c.sigma }).state
@@ -124,6 +130,7 @@ export function chartReport(c: ChartState, riseToFindPct: number, stepS: number)
     h: c.design.h,
     sigma: c.design.chartSigma,
     cusum: now.cusum,
+    cusumLow: c.cusum.low.sum,
     designedHours: c.design.falseAlarmHours,
     observedHours: c.signals === 0 ? null : hours / c.signals,
     hours,
@@ -139,6 +146,15 @@ export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {
   const rising =
     v.kind === 'rising' ? { perHour: v.perHour * c.sigma, low: v.lowPerHour * c.sigma, high: v.highPerHour * c.sigma } : null
   const mean = standing(c)
-  const stands = c.recent.length === recentPoints && mean > riseShare * Math.log1p(riseToFindPct / 100)
-  return { cusum: c.cusum.high.sum, h: c.design.h, cusumOver: c.over, drift: rising, alarms: c.over && rising !== null && stands }
+  const rise = Math.log1p(riseToFindPct / 100)
+  const full = c.recent.length === recentPoints
+  const stands = full && mean > riseShare * rise
+  return {
+    cusum: c.cusum.high.sum,
+    h: c.design.h,
+    cusumOver: c.over,
+    drift: rising,
+    alarms: c.over && rising !== null && stands,
+    below: c.under === true && full && mean < -fallShare * rise,
+  }
 }

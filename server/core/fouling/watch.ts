@@ -1,5 +1,14 @@
-import { type Bank, type BankEvent, type BankState, createBank } from '../bank/bank.ts'
-import { disturbances, type SegmentObservation } from '../bank/model.ts'
+import {
+  type Bank,
+  type BankEvent,
+  type BankSettings,
+  type BankState,
+  bankSettings,
+  createBank,
+  type LearnedExponent,
+} from '../bank/bank.ts'
+import type { SegmentObservation } from '../bank/model.ts'
+import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import type { Layout } from '../derive/layout.ts'
 import { createObserver, type ObserveState, type SegmentStep } from '../derive/observe.ts'
 import type { Step } from '../derive/step.ts'
@@ -18,6 +27,16 @@ export interface BaselineRecord {
   provisional: boolean
   flowM3S: number | null
   tempK: number | null
+  /** A step test vouched for zero or exponent beneath it. */
+  commissioned?: boolean
+}
+
+/** What the readings (or a step test) taught of a segment besides its level. */
+export interface Learned {
+  readonly flow: LearnedExponent
+  readonly viscosity: LearnedExponent
+  /** Zero offset of ΔP as read with the pumps at rest, Pa; null where they never stood still. */
+  readonly zeroPa: number | null
 }
 
 export interface ForecastRecord extends Interval {
@@ -71,6 +90,8 @@ export type WatchEvent =
       readonly reading: ChartReading
       readonly shared: boolean
     }
+  /** The lower side of the chart: a slow fall below clean by this share, told once. */
+  | { readonly kind: 'below'; readonly segment: number; readonly ratio: number; readonly share: number }
   | { readonly kind: 'onset'; readonly segment: number; readonly onset: Interval }
   | { readonly kind: 'forecast'; readonly segment: number; readonly forecast: ForecastRecord | null }
   | { readonly kind: 'cleared'; readonly segment: number; readonly why: 'stopped' | 'fell back' }
@@ -99,15 +120,36 @@ const alikeShare = 0.5
 /** Share of a growth's age after which its forecast is made anew. */
 const renewShare = 0.03
 
+export interface WatchOptions {
+  readonly bank?: BankSettings
+  /** Whether the charts of the promise may call growth by themselves. */
+  readonly charts?: boolean
+  /** From an accepted step test; a saved state has it already. */
+  readonly known?: readonly StartingKnowledge[]
+}
+
 /**
  * Fouling of every segment: production or not, resistance over clean, deposits with their onset and forecast, baselines. One call a
  * detector step. `limits` says how high ΔP may go now, Pa; null where no limit is set.
  */
-export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) {
+export function createWatch(layout: Layout, stepMs: number, saved?: WatchState, options: WatchOptions = {}) {
+  const settings = options.bank ?? bankSettings
+  const known =
+    options.known === undefined ? undefined : layout.segments.map((g) => options.known!.find((k) => k.segment === g.spec.id))
   const promise = layout.skid.detection
   const mode = createMode(layout, saved?.mode)
-  const observer = createObserver(layout, saved?.observer)
-  const bank: Bank = createBank(layout, stepMs, saved?.bank ?? undefined)
+  const observer = createObserver(
+    layout,
+    saved?.observer,
+    known?.map((k) => k?.zeroPa ?? null),
+  )
+  const bank: Bank = createBank(
+    layout,
+    stepMs,
+    saved?.bank ?? undefined,
+    settings,
+    known?.map((k) => ({ zeroChecked: (k?.zeroPa ?? null) !== null, flowExponent: k?.flowExponent ?? null })),
+  )
   const seg = (): SegmentWatch => ({
     recent: [],
     last: null,
@@ -126,7 +168,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
     const n = bank.noise(i)
     return {
       wanderSd: n.wanderSd,
-      wanderTauS: disturbances.wanderTauH * 3600 * Math.min(1, stepMs / 30_000),
+      wanderTauS: settings.disturbances.wanderTauH * 3600 * Math.min(1, stepMs / 30_000),
       whiteSd: n.whiteSd,
       stepS: stepMs / 1000,
     }
@@ -232,6 +274,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         provisional,
         flowM3S: w.window.flow.length === 0 ? null : median(w.window.flow),
         tempK: w.window.tempK.length === 0 ? null : median(w.window.tempK),
+        ...(bank.isCommissioned(i) ? { commissioned: true } : {}),
       },
     })
   }
@@ -241,6 +284,10 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
     segment: (i: number): Readonly<SegmentWatch> => watch[i]!,
     suspicion: bank.suspicion,
     noise: bank.noise,
+    learned(i: number): Learned | null {
+      const e = bank.exponents(i)
+      return e === null ? null : { ...e, zeroPa: observer.state.zeroSteps[i]! > 0 ? observer.state.zeroPa[i]! : null }
+    },
     charts: (i: number): ChartReading | null =>
       watch[i]!.charts === null ? null : readCharts(watch[i]!.charts!, promise.riseToFindPct),
 
@@ -312,7 +359,7 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
         }
         return { ratio, step: segs[i]!, lnRatio: ln, whiteSd: b.whiteSd, wanderSd: b.wanderSd }
       })
-      if (m.armed) creep(endMs, events)
+      if (m.armed && options.charts !== false) creep(endMs, events)
       return { mode: m, now, events }
     },
 
@@ -345,6 +392,13 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState) 
       const w = watch[i]!
       if (w.charts === null || w.growth !== null || w.recent.length === 0) return
       const reading = readCharts(w.charts, promise.riseToFindPct)
+      if (reading.below) {
+        const low = Math.exp(w.recent.reduce((a, x) => a + x, 0) / w.recent.length)
+        const share = 1 - low / Math.exp(w.charts.zeroLn)
+        w.charts = startCharts(promise, layout.segments.length, noiseOf(i), Math.log(low))
+        events.push({ kind: 'below', segment: i, ratio: low, share })
+        return
+      }
       if (!reading.alarms) return
       const level = (x: SegmentWatch): number => Math.exp(x.recent.reduce((a, y) => a + y, 0) / x.recent.length)
       const ratio = level(w)

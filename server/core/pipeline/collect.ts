@@ -2,7 +2,7 @@ import type { AlarmRecord } from '../alarms/alarm-state.ts'
 import { alarmReport, type Occurrence } from '../alarms/occurrence.ts'
 import { stepScans } from '../derive/step.ts'
 import { chartReport } from '../fouling/charts.ts'
-import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
+import type { BaselineRecord, ForecastRecord, Learned } from '../fouling/watch.ts'
 import { alarmPerformance } from '../insight/alarm-system.ts'
 import { insightOf } from '../insight/insight.ts'
 import { createOutletFlow } from '../insight/outlet-flow.ts'
@@ -13,6 +13,7 @@ import type {
   AlarmKind,
   BaselineReport,
   ForecastReport,
+  LearnedReport,
   Report,
   SegmentReport,
   TagReport,
@@ -36,7 +37,17 @@ const baselineReport = (b: BaselineRecord): BaselineReport => ({
   provisional: b.provisional,
   flowMlMin: b.flowM3S === null ? null : mlMinFromM3s(b.flowM3S),
   tempC: b.tempK === null ? null : cFromK(b.tempK),
+  commissioned: b.commissioned ?? false,
 })
+
+const learnedReport = (l: Learned | null): LearnedReport | null =>
+  l === null
+    ? null
+    : {
+        flowExponent: l.flow,
+        viscosityExponent: l.viscosity,
+        zeroMbar: l.zeroPa === null ? null : 1000 * barFromPa(l.zeroPa),
+      }
 
 /** Alarms whose material is off-specification for as long as they stand, and so has a window at the outlet. */
 const disturbs: ReadonlySet<AlarmKind> = new Set<AlarmKind>(['fouling', 'exotherm', 'feed-ratio'])
@@ -115,9 +126,13 @@ export function createCollector(skid: Skid) {
           onset: onset === null ? null : onsetReport(onset),
           growthPerHour: w.growth?.growthPerHour ?? null,
           forecast: forecastReport(w.growth?.forecast ?? null),
-          chart: w.charts === null ? null : chartReport(w.charts, skid.detection.riseToFindPct, stepScans(skid.scanSeconds) * skid.scanSeconds),
+          chart:
+            w.charts === null
+              ? null
+              : chartReport(w.charts, skid.detection.riseToFindPct, stepScans(skid.scanSeconds) * skid.scanSeconds),
           deposit: insight.deposits[i] ?? null,
           heat: insight.heat[i] ?? null,
+          learned: learnedReport(view.learned(i)),
         }
       })
       return {

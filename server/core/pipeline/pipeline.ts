@@ -1,7 +1,8 @@
 import { type AdviserState, createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
 import { type BookState, createBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
-import type { BankEvent } from '../bank/bank.ts'
+import type { BankEvent, BankSettings } from '../bank/bank.ts'
+import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import { layoutOf } from '../derive/layout.ts'
 import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'
 import { MonitorError } from '../errors.ts'
@@ -49,11 +50,17 @@ export interface PipelineOptions {
   /** Each closed scan, for live screens; the object is reused. */
   readonly onScan?: (scan: Scan, tMs: number) => void
   readonly configVersion?: string
+  /** From an accepted step test; a saved state has it already. */
+  readonly known?: readonly StartingKnowledge[]
+  /** Other sizes and explanations than the defaults, to see what each is worth. */
+  readonly bank?: BankSettings
+  readonly charts?: boolean
 }
 
 const timelineMs = 600_000
 /** A shift of a stream's viscosity or of a tap is taken into the model; its alarm stands so long, then returns to normal by itself. */
 const standsMs = 30 * 60_000
+const belowClean = 'slough-off of what the baseline held, a leak or bypass, or an instrument'
 const noEvidence = { for: [], against: [], notExcluded: [] }
 
 /**
@@ -73,7 +80,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   const site = siteRules(skid)
   const book = createBook({ configVersion: options.configVersion ?? skid.skid, policyOf: site.policyOf }, saved?.book)
-  const watch = createWatch(layout, stepMs, saved?.watch)
+  const watch = createWatch(layout, stepMs, saved?.watch, options)
   const instruments = createInstruments(layout, saved?.instruments)
   const present = createPresent(layout, saved?.present)
   const adviser = createAdviser(saved?.adviser, (segment, ratios) =>
@@ -187,6 +194,12 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       case 'onset':
         events.push({ kind: 'onset', segment: layout.segments[e.segment]!.spec.id, onset: e.onset })
         return
+      case 'below': {
+        const id = layout.segments[e.segment]!.spec.id
+        const text = `${id}: resistance below clean by ${(100 * e.share).toFixed(1)} % (ratio ${e.ratio.toFixed(3)}): ${belowClean}; its charts begin anew from there`
+        events.push({ kind: 'note', tMs, text })
+        return
+      }
       case 'cleared':
         end(`fouling:${layout.segments[e.segment]!.spec.id}`, tMs)
         return
@@ -423,6 +436,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       ratio: s.ratio,
       limits,
       segment: watch.segment,
+      learned: watch.learned,
       present,
       alarms: book.rows(),
     }),

@@ -55,8 +55,8 @@ const observation = (over: Partial<SegmentObservation> = {}): SegmentObservation
 })
 const started = (): FilterState => {
   const f = filter.fresh()
-  filter.startSegment(f, 0, observation(), false)
-  filter.startSegment(f, 1, observation({ y: -0.01, dpPa: 1.5e5 }), false)
+  filter.startSegment(f, 0, observation())
+  filter.startSegment(f, 1, observation({ y: -0.01, dpPa: 1.5e5 }))
   return f
 }
 const matrixOf = (f: FilterState): Matrix => Array.from({ length: n }, (_, i) => Array.from(f.p.slice(i * n, (i + 1) * n)))

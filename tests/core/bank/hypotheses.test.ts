@@ -34,7 +34,7 @@ function through(
   const hours = 1 / 120
   y.forEach((ys, k) => {
     const o = at(k)
-    if (k === 0) for (const s of [0, 1]) filter.startSegment(f, s, { ...o[s]!, y: 0 }, false)
+    if (k === 0) for (const s of [0, 1]) filter.startSegment(f, s, { ...o[s]!, y: 0 })
     filter.advance(
       f,
       hours,

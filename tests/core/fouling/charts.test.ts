@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest'
-import { type ChartState, readCharts, startCharts, stepCharts } from '../../../server/core/fouling/charts.ts'
+import { type ChartState, chartReport, readCharts, startCharts, stepCharts } from '../../../server/core/fouling/charts.ts'
 import { randomOf } from '../../../server/core/sim/random.ts'
 
 const promise = { falseAlarmDays: 30, riseToFindPct: 5 }
@@ -99,5 +99,58 @@ describe('the charts by the promise', () => {
     const c = startCharts(promise, 6, noise, 0)
     feed(c, 30 * perDay, 7, () => 0)
     expect(JSON.stringify(c).length).toBeLessThan(60_000)
+  })
+})
+
+describe('the lower side of the charts', () => {
+  it('speaks of a slow fall: 1 % a day below clean is told once it stands 5 % below, within 9 days, and no alarm is raised', () => {
+    for (const seed of [11, 12, 13]) {
+      const c = startCharts(promise, 6, noise, 0)
+      let below: number | null = null
+      let alarmed = false
+      feed(c, 10 * perDay, seed, (k) => {
+        const now = readCharts(c, promise.riseToFindPct)
+        if (now.below) below ??= k
+        alarmed ||= now.alarms
+        return (-0.01 * k) / perDay
+      })
+      expect(alarmed).toBe(false)
+      expect(below).not.toBeNull()
+      expect((0.01 * below!) / perDay).toBeGreaterThan(0.045)
+      expect((0.01 * below!) / perDay).toBeLessThan(0.09)
+    }
+  })
+
+  it('is silent on 120 days of clean noise and while resistance rises', () => {
+    for (const [seed, slope] of [
+      [21, 0],
+      [22, 0],
+      [23, 0],
+      [24, 0],
+      [25, 0.01],
+    ] as const) {
+      // biome-ignore format: a table
+      const c = startCharts(promise, 6, noise, 0)
+      let below = false
+      feed(c, (slope === 0 ? 30 : 8) * perDay, seed, (k) => {
+        below ||= readCharts(c, promise.riseToFindPct).below
+        return (slope * k) / perDay
+      })
+      expect(below).toBe(false)
+    }
+  })
+
+  it('mirrors the upper one in the report: the low sum on −x is the high sum on x', () => {
+    const [up, down] = [startCharts(promise, 6, noise, 0), startCharts(promise, 6, noise, 0)]
+    const r = randomOf(31, 'mirror')
+    for (let k = 0; k < 600; k++) {
+      const x = 0.01 + 0.004 * r.normal()
+      stepCharts(up, 30_000 * k, x)
+      stepCharts(down, 30_000 * k, -x)
+    }
+    const [a, b] = [chartReport(up, 5, 30), chartReport(down, 5, 30)]
+    expect(a.cusum).toBeGreaterThan(1)
+    expect(b.cusumLow).toBe(a.cusum)
+    expect(b.cusum).toBe(a.cusumLow)
   })
 })
