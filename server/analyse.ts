@@ -1,5 +1,6 @@
 import { createReadStream } from 'node:fs'
 import { basename } from 'node:path'
+import type { StartingKnowledge } from './core/baseline/starting-knowledge.ts'
 import { MonitorError } from './core/errors.ts'
 import { createCollector } from './core/pipeline/collect.ts'
 import { createPipeline, type PipelineState } from './core/pipeline/pipeline.ts'
@@ -21,6 +22,8 @@ export interface AnalyseOptions {
   readonly onProgress?: (bytes: number) => void
   readonly signal?: AbortSignal
   readonly resume?: PipelineState
+  /** From an accepted step test; not with `resume`, whose state has it. */
+  readonly known?: readonly StartingKnowledge[]
 }
 
 export interface Analysis {
@@ -31,7 +34,7 @@ export interface Analysis {
 /** One logged run through the very pipeline that runs live. Errors: those of the reader; nothing is written. */
 export async function analyseLog(options: AnalyseOptions): Promise<Analysis> {
   const { skid } = options
-  const pipeline = createPipeline(skid, options.resume)
+  const pipeline = createPipeline(skid, options.resume, options.known === undefined ? {} : { known: options.known })
   const collector = createCollector(skid)
   const words: string[] = [...phases]
   const { blocks, tallies } = readLogs([...options.sources], {

@@ -2,6 +2,7 @@ import { readFile, stat } from 'node:fs/promises'
 import { basename } from 'node:path'
 import { parseArgs } from 'node:util'
 import { analyseLog, fileSource } from '../analyse.ts'
+import { loadCommissioning } from '../commissioning-file.ts'
 import { MonitorError } from '../core/errors.ts'
 import { reportText } from '../core/pipeline/collect.ts'
 import { cannotRead } from '../file-trouble.ts'
@@ -14,7 +15,7 @@ import { progressLine } from './progress-line.ts'
 import { withSettings } from './settings-file.ts'
 import { summaryText } from './summary-text.ts'
 
-const help = `Usage: clearbore analyse LOG.csv… --skid FILE [--json OUT|-] [--from T] [--to T] [--start T] [--settings FILE] [--events FILE]
+const help = `Usage: clearbore analyse LOG.csv… --skid FILE [--json OUT|-] [--from T] [--to T] [--start T] [--settings FILE] [--events FILE] [--baseline FILE]
 
 Takes one logged run, in one file or several, through the very pipeline that runs live, and prints what it found.
 
@@ -27,6 +28,7 @@ Takes one logged run, in one file or several, through the very pipeline that run
                      detection: { falseAlarmDays: 30, riseToFindPct: 5 }
                      limits: { R1: { dpHighBar: 5.5 } }
   --events FILE    CSV with time,kind,value,unit,person,note
+  --baseline FILE  the record of a step test (commission --json): its accepted zeros and exponents are what the run begins with
 
 Exit code 0; 1 when an input is wrong (the place and the mend on stderr); 2 for a wrong command line; 3 when the machine fails.
 `
@@ -37,7 +39,7 @@ function options(args: readonly string[]) {
     const { values, positionals } = parseArgs({
       args: [...args],
       allowPositionals: true,
-      options: { skid: text, json: text, from: text, to: text, start: text, settings: text, events: text },
+      options: { skid: text, json: text, from: text, to: text, start: text, settings: text, events: text, baseline: text },
     })
     return { ...values, logs: positionals }
   } catch (cause) {
@@ -71,6 +73,7 @@ export const analyseCommand: Command = {
       text === undefined ? null : instantOf(text, skid.timeZone, option)
     const span = { startMs: at(o.start, '--start'), fromMs: at(o.from, '--from'), toMs: at(o.to, '--to') }
     const acts = o.events === undefined ? [] : readEvents(basename(o.events), await readText(o.events), skid.timeZone)
+    const known = o.baseline === undefined ? undefined : await loadCommissioning(o.baseline, skid)
     let total = 0
     for (const log of o.logs)
       if (log !== '-') {
@@ -85,6 +88,7 @@ export const analyseCommand: Command = {
       skid,
       ...span,
       acts,
+      ...(known === undefined ? {} : { known }),
       signal: io.signal,
       sources: o.logs.map((log) => (log === '-' ? { name: 'stdin', chunks: stdin() } : fileSource(log))),
       onProgress: (bytes) => {

@@ -5,6 +5,7 @@ import { meant } from '../skid/nearest.ts'
 import { analyseCommand } from './analyse.ts'
 import { checkSkidCommand } from './check-skid.ts'
 import type { Command, Io } from './command.ts'
+import { commissionCommand } from './commission.ts'
 import { exportCommand } from './export.ts'
 import { flushPlanCommand } from './flush-plan.ts'
 import { importCommand } from './import.ts'
@@ -27,6 +28,7 @@ export const commands: readonly Command[] = [
   exportCommand,
   analyseCommand,
   checkSkidCommand,
+  commissionCommand,
   simulateCommand,
   score,
   flushPlanCommand,

@@ -1,5 +1,6 @@
 /** Codes are for programs; a new kind of mistake gets a new code. */
 export type ErrorCode =
+  | 'BASELINE_FILE'
   | 'CONFIG_RANGE'
   | 'CSV_EMPTY'
   | 'CSV_BINARY'
