@@ -1,5 +1,5 @@
 import { MonitorError } from './core/errors.ts'
-import { phases, type RowBlock } from './core/reading.ts'
+import { phases, type RowBlock, rowBlock } from './core/reading.ts'
 import type { Act, Entry } from './core/sequence.ts'
 import type { Skid } from './core/skid.ts'
 import { type LogSource, type LogTally, readLogs } from './ingest/csv/read-log.ts'
@@ -20,10 +20,9 @@ export interface ImportOptions {
   readonly signal?: AbortSignal
   /** Lets other work of the process in; called between commits. */
   readonly breathe?: () => Promise<void>
+  /** Rows in one commit; whole segments of the store are written once instead of twice, small ones keep nobody else waiting. */
+  readonly rowsPerCommit?: number
 }
-
-/** Rows in one commit: a commit costs a flush of the disk, and in a server others wait while one is worked on. */
-const rowsPerCommit = 2048
 
 /**
  * Reads logs into a run: the recorded sequence as `analyse` would take it, then its journal and its final report, so that the stored run
@@ -40,6 +39,22 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
   let rows = 0
   let waiting: Entry[] = []
   let waitingRows = 0
+  const rowsPerCommit = o.rowsPerCommit ?? 8192
+  const spare: RowBlock[] = []
+
+  /** The reader fills its block anew, so what waits is a copy; its memory is used again after the commit. */
+  function wait(block: RowBlock, from: number, to: number): void {
+    const { width } = block
+    const rows = to - from
+    const kept = spare.pop() ?? rowBlock(Math.max(rows, 1024), width)
+    const into = kept.tMs.length < rows ? rowBlock(rows, width) : kept
+    into.rows = rows
+    into.tMs.set(block.tMs.subarray(from, to))
+    into.values.set(block.values.subarray(from * width, to * width))
+    into.codes.set(block.codes.subarray(from * width, to * width))
+    waiting.push({ kind: 'rows', block: into })
+    waitingRows += rows
+  }
 
   async function commit(): Promise<void> {
     if (o.signal?.aborted) throw new MonitorError('USAGE', 'stopped before the end')
@@ -51,6 +66,7 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
       store.together(() => engine.journal())
       engine.news()
     }
+    for (const entry of waiting) if (entry.kind === 'rows') spare.push(entry.block)
     waiting = []
     waitingRows = 0
     await o.breathe?.()
@@ -66,13 +82,12 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
     let from = 0
     for (let i = 0; i < block.rows && nextAct < acts.length; i++)
       while (nextAct < acts.length && acts[nextAct]!.tMs <= block.tMs[i]!) {
-        if (i > from) waiting.push({ kind: 'rows', block: copy(block, from, i) })
+        if (i > from) wait(block, from, i)
         from = i
         waiting.push({ kind: 'act', act: acts[nextAct++]! })
       }
-    waiting.push({ kind: 'rows', block: copy(block, from, block.rows) })
+    wait(block, from, block.rows)
     rows += block.rows
-    waitingRows += block.rows
     if (waitingRows >= rowsPerCommit) await commit()
   }
   while (nextAct < acts.length) waiting.push({ kind: 'act', act: acts[nextAct++]! })
@@ -87,11 +102,3 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
   })
   return { rows, tallies }
 }
-
-const copy = (b: RowBlock, from: number, to: number): RowBlock => ({
-  rows: to - from,
-  width: b.width,
-  tMs: b.tMs.slice(from, to),
-  values: b.values.slice(from * b.width, to * b.width),
-  codes: b.codes.slice(from * b.width, to * b.width),
-})

@@ -63,6 +63,7 @@ export function createImports(o: ImportsOptions) {
         },
         signal: abort.signal,
         breathe: () => new Promise((done) => setTimeout(done, 5)),
+        rowsPerCommit: 2048,
       })
       work.delete(id)
     } catch (error) {

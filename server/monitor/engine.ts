@@ -118,17 +118,9 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     }
   }
 
-  const one: { rows: number; width: number; tMs: Float64Array; values: Float64Array; codes: Uint8Array } = {
-    rows: 1, width: 0, tMs: new Float64Array(1), values: new Float64Array(0), codes: new Uint8Array(0),
-  } // biome-ignore format: a list
   function pushRows(block: RowBlock): void {
-    const { width } = block
-    one.width = width
     for (let r = 0; r < block.rows; r++) {
-      one.tMs = block.tMs.subarray(r, r + 1)
-      one.values = block.values.subarray(r * width, (r + 1) * width)
-      one.codes = block.codes.subarray(r * width, (r + 1) * width)
-      heard(pipeline.push({ kind: 'rows', block: one }), counts.seq)
+      heard(pipeline.pushRow(block, r), counts.seq)
       counts.seq++
     }
   }

@@ -21,6 +21,9 @@ export interface ScanViewState {
   held: boolean[]
 }
 
+/** A way to SI and back leaves dust in the last digits. */
+const clean = (value: number): number => round9(value) ?? 0
+
 interface Gather {
   readonly min: number[]
   readonly max: number[]
@@ -67,8 +70,7 @@ export function createScanView(skid: Skid, saved?: ScanViewState) {
         s.flaw[t] = scan.flaw[t]!
         s.held[t] = scan.held[t] === 1
         if (!used || isText[t]) continue
-        // A way to SI and back leaves dust in the last digits.
-        const value = round9(fromSi(scan.si[t]!, unit[t]!)) ?? 0
+        const value = fromSi(scan.si[t]!, unit[t]!)
         s.value[t] = value
         s.atMs[t] = endMs
         if (value < gather.min[t]!) gather.min[t] = value
@@ -85,7 +87,9 @@ export function createScanView(skid: Skid, saved?: ScanViewState) {
       const frame = {
         fromMs,
         toMs: s.endMs,
-        tags: skid.tags.map((_, t) => (g.n[t] === 0 ? null : { min: g.min[t]!, max: g.max[t]!, mean: g.sum[t]! / g.n[t]! })),
+        tags: skid.tags.map((_, t) =>
+          g.n[t] === 0 ? null : { min: clean(g.min[t]!), max: clean(g.max[t]!), mean: clean(g.sum[t]! / g.n[t]!) },
+        ),
       }
       gather = fresh()
       fromMs = null
@@ -97,22 +101,23 @@ export function createScanView(skid: Skid, saved?: ScanViewState) {
     tags: (): TagState[] =>
       skid.tags.map((tag, t) => {
         const reason = reasons[s.flaw[t]!]!
-        const clean = s.flaw[t] === 0
+        const value = s.value[t]!
+        const isClean = s.flaw[t] === 0
         return {
           tag: tag.tag,
-          value: s.value[t]!,
+          value: value === null ? null : clean(value),
           unit: unit[t]!,
           atMs: s.atMs[t]!,
           quality: s.used[t]
-            ? clean
+            ? isClean
               ? 'good'
               : 'uncertain'
-            : clean
+            : isClean
               ? 'none'
               : gradeOf[reason] === 'uncertain'
                 ? 'uncertain'
                 : 'bad',
-          reason: clean ? null : reason,
+          reason: isClean ? null : reason,
           held: s.held[t]!,
         }
       }),

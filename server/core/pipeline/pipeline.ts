@@ -11,6 +11,7 @@ import { findingOf } from '../fouling/evidence.ts'
 import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } from '../fouling/watch.ts'
 import type { Interval } from '../growth/points.ts'
 import { createPresent, type PresentState } from '../insight/present.ts'
+import type { RowBlock } from '../reading.ts'
 import type { OnsetReport } from '../report.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
 import type { Act, Entry, LimitName } from '../sequence.ts'
@@ -58,6 +59,7 @@ export interface PipelineOptions {
 }
 
 const timelineMs = 600_000
+const nothing: readonly PipelineEvent[] = []
 /** A shift of a stream's viscosity or of a tap is taken into the model; its alarm stands so long, then returns to normal by itself. */
 const standsMs = 30 * 60_000
 const belowClean = 'slough-off of what the baseline held, a leak or bypass, or an instrument'
@@ -409,7 +411,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     drainBook()
   }
 
-  const take = (): PipelineEvent[] => {
+  const take = (): readonly PipelineEvent[] => {
+    if (events.length === 0) return nothing
     const out = events
     events = []
     return out
@@ -417,14 +420,19 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   return {
     layout,
-    push(entry: Entry): PipelineEvent[] {
+    push(entry: Entry): readonly PipelineEvent[] {
       if (entry.kind === 'rows') grid.rows(entry.block)
       else if (entry.kind === 'tick') grid.tick(entry.tMs)
       else onAct(entry.act)
       return take()
     },
+    /** One row of a block, for who must know which row brought what about. A block is gone through from its first row to its last. */
+    pushRow(block: RowBlock, row: number): readonly PipelineEvent[] {
+      grid.rows(block, row, row + 1)
+      return take()
+    },
     /** End of a finished log: the last scans close. */
-    finish(): PipelineEvent[] {
+    finish(): readonly PipelineEvent[] {
       grid.finish()
       return take()
     },

@@ -168,8 +168,9 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
     setFlowing(value: boolean): void {
       flowing = value
     },
-    rows(block: RowBlock): void {
-      for (let i = 0; i < block.rows; i++) {
+    /** Rows `from` to before `to` of a block, by default all; a block in pieces is taken in order, from its first row to its last. */
+    rows(block: RowBlock, from = 0, to = block.rows): void {
+      for (let i = from; i < to; i++) {
         const tMs = block.tMs[i]!
         const at = i * block.width
         s.rows++
@@ -198,7 +199,7 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
         }
         take(tMs, block.values, block.codes, at)
       }
-      keepLast(block)
+      if (to === block.rows) keepLast(block)
     },
     /** The monitor's clock: scans close even when no rows come. */
     tick(tMs: number): void {
