@@ -12,8 +12,8 @@ const newline = 10
 const comma = 44
 
 /**
- * The bound for reading numbers from a log: bytes to doubles in one pass, times taken apart by place, no quotes, no units, no check of
- * anything. No reader that checks its input can be faster in this language; it is no reader.
+ * The bound for reading numbers from a log: bytes to doubles in one pass into one array a channel, times taken apart by place, no quotes, no
+ * units, no check of anything. No reader that checks its input can be faster in this language; it is no reader.
  */
 export function boundParse(file: string): Sums {
   const fd = openSync(file, 'r')
@@ -21,13 +21,25 @@ export function boundParse(file: string): Sums {
   const bytes = new Uint8Array(2 * size)
   const powers = Float64Array.from({ length: 20 }, (_, i) => 10 ** i)
   const sums = new Float64Array(channels)
+  const most = 8192
+  const tMs = new Float64Array(most)
+  const columns = Array.from({ length: channels }, () => new Float64Array(most))
+  let n = 0
+  const use = (): void => {
+    for (let c = 0; c < channels; c++) {
+      const column = columns[c]!
+      let sum = sums[c]!
+      for (let i = 0; i < n; i++) sum += column[i]!
+      sums[c] = sum
+    }
+    n = 0
+  }
   const digit = (p: number) => bytes[p]! - 48
   let rows = 0
   let kept = 0
   let isHead = true
   let day = -1
   let dayMs = 0
-  let lastMs = 0
   for (;;) {
     const got = readSync(fd, bytes, kept, size, null)
     if (got === 0) break
@@ -49,7 +61,7 @@ export function boundParse(file: string): Sums {
       }
       const seconds =
         (digit(p + 11) * 10 + digit(p + 12)) * 3600 + (digit(p + 14) * 10 + digit(p + 15)) * 60 + digit(p + 17) * 10 + digit(p + 18)
-      lastMs = dayMs + seconds * 1000 + digit(p + 20) * 100 + digit(p + 21) * 10 + digit(p + 22)
+      tMs[n] = dayMs + seconds * 1000 + digit(p + 20) * 100 + digit(p + 21) * 10 + digit(p + 22)
       p += 25
       for (let c = 0; c < channels; c++) {
         let b = bytes[p]!
@@ -68,15 +80,17 @@ export function boundParse(file: string): Sums {
         }
         p++
         const x = whole / powers[after]!
-        sums[c]! += minus ? -x : x
+        columns[c]![n] = minus ? -x : x
       }
       rows++
+      if (++n === most) use()
     }
     bytes.copyWithin(0, end, have)
     kept = have - end
   }
+  use()
   closeSync(fd)
-  if (lastMs === 0 && rows > 0) throw new Error('no time read')
+  if (rows > 0 && !(tMs[0]! > 0)) throw new Error('no time read')
   return { rows, sums }
 }
 
