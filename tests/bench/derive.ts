@@ -2,8 +2,8 @@ import { layoutOf } from '../../server/core/derive/layout.ts'
 import { createObserver } from '../../server/core/derive/observe.ts'
 import { createStepper, type Step } from '../../server/core/derive/step.ts'
 import { freshScan } from '../../server/core/scan/grid-state.ts'
+import type { Measured } from './common.ts'
 import { channels, course, skid, startMs } from './input.ts'
-import type { Measured } from './measures.ts'
 
 const scans = 60_000
 const median = (xs: readonly number[]): number => [...xs].sort((a, b) => a - b)[xs.length >> 1]!

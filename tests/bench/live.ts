@@ -3,11 +3,10 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { monitorEventLoopDelay } from 'node:perf_hooks'
 import { cell, type RowBlock, rowBlock } from '../../server/core/reading.ts'
-import { createPair } from '../../server/monitor/catalogue.ts'
 import { createEngine } from '../../server/monitor/engine.ts'
 import { openStore } from '../../server/store/open.ts'
-import { channels, course, skid, skidText, startMs } from './input.ts'
-import type { Measured } from './measures.ts'
+import { type Measured, pairIn } from './common.ts'
+import { channels, course, skid, startMs } from './input.ts'
 
 /**
  * Skids of 24 tags at 10 Hz in one process in real time: each second their rows go into one commit, through each one's pipeline, and what that said
@@ -16,12 +15,7 @@ import type { Measured } from './measures.ts'
 export async function live(skids: number, seconds: number): Promise<Measured> {
   const dir = mkdtempSync(join(tmpdir(), 'clearbore-bench-'))
   const store = openStore(dir)
-  const engines = Array.from({ length: skids }, () => {
-    const pair = createPair(store, {
-      kind: 'simulated', about: 'bench', skidId: 'bench', title: 'bench', skidFile: 'bench.json', skidText, startedMs: 0, toolVersion: 'bench', state: 'live',
-    }) // biome-ignore format: a list
-    return createEngine({ skid: skid(), store, ...pair })
-  })
+  const engines = Array.from({ length: skids }, () => createEngine({ skid: skid(), store, ...pairIn(store) }))
   const row = course(36_000, 'normal')
   const second = (k: number): RowBlock => {
     const block = rowBlock(10, channels)

@@ -3,8 +3,8 @@ import { existsSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { dirname, join } from 'node:path'
 import { fileURLToPath } from 'node:url'
+import type { Measured } from './common.ts'
 import { writeLog } from './input.ts'
-import type { Measured } from './measures.ts'
 
 /** A line of the table: what was reached, what is to be reached, and whether it is. */
 interface Row {
