@@ -542,12 +542,15 @@ export function createBank(
 /** Less than this is a reading's noise, not a move, ln. */
 const leastMove = 0.01
 
-/** What stood before this step, or this step's own where it moved away. */
+/**
+ * Flow or viscosity since its last move: constant in between. A mean that follows would not do: knowing the noise of past readings helps to
+ * foretell the wander, and so would still teach an exponent.
+ */
 function held(t: SegmentTrack, of: 'flowHeld' | 'viscHeld', now: number): number {
   const was = t[of]
-  const moved = was === undefined || Math.abs(now - was) > leastMove
-  t[of] = moved ? now : was + recentShare * (now - was)
-  return moved ? now : was
+  if (was !== undefined && Math.abs(now - was) <= leastMove) return was
+  t[of] = now
+  return now
 }
 
 /** White noise of ln ΔP at a ΔP; never better than 0.03 %. */
