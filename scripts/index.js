@@ -24,6 +24,10 @@ const tasks = {
   soak: async () => (await import('./test.js')).soak(rest),
   bench: async () => (await import('./test.js')).bench(rest),
   fixtures: async () => (await import('./fixtures.js')).fixtures(),
+  ablate: async () => {
+    ensureInstalled()
+    await (await import('./ablate.js')).ablate(rest)
+  },
   unused: async () => (await import('./unused.js')).unused(),
 }
 

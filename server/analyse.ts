@@ -1,9 +1,8 @@
 import { createReadStream } from 'node:fs'
 import { basename } from 'node:path'
-import type { StartingKnowledge } from './core/baseline/starting-knowledge.ts'
 import { MonitorError } from './core/errors.ts'
 import { createCollector } from './core/pipeline/collect.ts'
-import { createPipeline, type PipelineState } from './core/pipeline/pipeline.ts'
+import { createPipeline, type PipelineOptions, type PipelineState } from './core/pipeline/pipeline.ts'
 import { phases } from './core/reading.ts'
 import type { Report } from './core/report.ts'
 import type { Act } from './core/sequence.ts'
@@ -22,8 +21,8 @@ export interface AnalyseOptions {
   readonly onProgress?: (bytes: number) => void
   readonly signal?: AbortSignal
   readonly resume?: PipelineState
-  /** From an accepted step test; not with `resume`, whose state has it. */
-  readonly known?: readonly StartingKnowledge[]
+  /** What the pipeline starts from; a step test's knowledge not with `resume`, whose state has it. */
+  readonly pipeline?: PipelineOptions
 }
 
 export interface Analysis {
@@ -34,7 +33,7 @@ export interface Analysis {
 /** One logged run through the very pipeline that runs live. Errors: those of the reader; nothing is written. */
 export async function analyseLog(options: AnalyseOptions): Promise<Analysis> {
   const { skid } = options
-  const pipeline = createPipeline(skid, options.resume, options.known === undefined ? {} : { known: options.known })
+  const pipeline = createPipeline(skid, options.resume, options.pipeline)
   const collector = createCollector(skid)
   const words: string[] = [...phases]
   const { blocks, tallies } = readLogs([...options.sources], {

@@ -88,7 +88,7 @@ export const analyseCommand: Command = {
       skid,
       ...span,
       acts,
-      ...(known === undefined ? {} : { known }),
+      pipeline: known === undefined ? {} : { known },
       signal: io.signal,
       sources: o.logs.map((log) => (log === '-' ? { name: 'stdin', chunks: stdin() } : fileSource(log))),
       onProgress: (bytes) => {
