@@ -3,7 +3,7 @@ import { type Column, type Explanation, type Kind, likelihood, sizeOf } from './
 
 /** Likelihood margins and ages (steps) at which an explanation is accepted; log likelihood ratios are in nats. Starting values. */
 export const verdictRules = {
-  deposit: { likelihood: 14, size: 0.012, age: 3, sinceGap: 4, margin: 4, driftingTap: 6 },
+  deposit: { likelihood: 14, size: 0.012, age: 3, sinceGap: 4, margin: 3, driftingTap: 6 },
   other: { likelihood: 16, age: 10, ramp: 20, overDeposit: 4, overOther: 3, waivedAfter: 60, nearMove: 10 },
   tapLess: 1,
   tapAloneLess: 6,
