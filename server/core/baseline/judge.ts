@@ -7,7 +7,7 @@ import { type Found, stretchRules } from './stretches.ts'
  * over 1 % that stands 3 standard errors out, and a level visited again within 1 %. exponent: within 1 to 2 by its 95 % interval, residual at most 2 %, its
  * sd below 0.05, which is what a run without a test begins with. hydraulics: within a factor of 1.5 of the file's. Project's choice but for the first (common practice).
  */
-export const acceptance = {
+const acceptance = {
   zeroU: 3,
   levels: 3,
   apart: 0.05,

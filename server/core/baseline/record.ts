@@ -2,10 +2,8 @@ import type { Skid } from '../skid.ts'
 import { paFromBar } from '../units.ts'
 import type { StartingKnowledge } from './starting-knowledge.ts'
 
-export const verdicts = ['accepted', 'not accepted', 'not enough data'] as const
-export type Verdict = (typeof verdicts)[number]
-export const criteria = ['zero', 'levels', 'steady', 'exponent', 'hydraulics'] as const
-export type CriterionId = (typeof criteria)[number]
+export type Verdict = 'accepted' | 'not accepted' | 'not enough data'
+export type CriterionId = 'zero' | 'levels' | 'steady' | 'exponent' | 'hydraulics'
 
 export interface Criterion {
   readonly id: CriterionId
