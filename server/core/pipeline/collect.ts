@@ -22,7 +22,8 @@ import type {
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, m3sFromMlMin, mlMinFromM3s } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
-import { onsetReport, type Pipeline } from './pipeline.ts'
+import { onsetReport } from './onset-report.ts'
+import type { Pipeline } from './pipeline.ts'
 
 const iso = (ms: number): string => new Date(ms).toISOString()
 

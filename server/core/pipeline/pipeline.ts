@@ -1,18 +1,15 @@
 import { type AdviserState, createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
 import { type BookState, createBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
-import type { BankEvent, BankSettings } from '../bank/bank.ts'
+import type { BankSettings } from '../bank/bank.ts'
 import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import { layoutOf } from '../derive/layout.ts'
 import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'
 import { MonitorError } from '../errors.ts'
 import { planFlush } from '../flush/plan.ts'
-import { findingOf } from '../fouling/evidence.ts'
 import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } from '../fouling/watch.ts'
-import type { Interval } from '../growth/points.ts'
 import { createPresent, type PresentState } from '../insight/present.ts'
 import type { RowBlock } from '../reading.ts'
-import type { OnsetReport } from '../report.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
 import type { Act, Entry, LimitName } from '../sequence.ts'
 import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
@@ -22,6 +19,7 @@ import { siteRules } from '../signals/site-rules.ts'
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, mlMinFromM3s, paFromBar } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
+import { creepSaid, type Said, verdictSaid } from './verdict-said.ts'
 
 /** Everything the pipeline knows, as plain JSON: stop anywhere, resume, and what follows is the same to the byte. */
 export interface PipelineState {
@@ -60,8 +58,6 @@ export interface PipelineOptions {
 
 const timelineMs = 600_000
 const nothing: readonly PipelineEvent[] = []
-/** A shift of a stream's viscosity or of a tap is taken into the model; its alarm stands so long, then returns to normal by itself. */
-const standsMs = 30 * 60_000
 const belowClean = 'slough-off of what the baseline held, a leak or bypass, or an instrument'
 const noEvidence = { for: [], against: [], notExcluded: [] }
 
@@ -184,10 +180,10 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function onWatch(e: WatchEvent, tMs: number): void {
     switch (e.kind) {
       case 'bank':
-        onBank(e.event, e.onset, e.ratio, tMs)
+        tell(verdictSaid(layout, e.event, e.onset, e.ratio, tMs, watch.charts), tMs)
         return
       case 'creep':
-        onCreep(e, tMs)
+        tell(creepSaid(layout, e, tMs), tMs)
         return
       case 'baseline':
         present.baselined(e.segment)
@@ -210,148 +206,12 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     }
   }
 
-  function onBank(e: BankEvent, onset: Interval | null, ratio: number | null, tMs: number): void {
-    const finding = findingOf(layout, e)
-    const charts = e.kind === 'deposit' || e.kind === 'blockage' ? chartsSay(e.segment) : []
-    const evidence = { for: [...finding.for, ...charts], against: finding.against, notExcluded: finding.notExcluded }
-    const base = {
-      tMs,
-      over: true,
-      value: null,
-      limit: null,
-      unit: null,
-      cause: finding.cause,
-      onset: null,
-      evidence,
-      onDelayS: 0,
-      offDelayS: 0,
-    }
-    switch (e.kind) {
-      case 'deposit':
-      case 'blockage': {
-        const seg = layout.segments[e.segment]!.spec
-        const began = onset === null ? '' : `, began about ${new Date(onset.atMs).toISOString()}`
-        const what =
-          seg.kind === 'filter'
-            ? 'filter is loading'
-            : e.kind === 'blockage'
-              ? 'resistance rose at once: bridging or a plug'
-              : 'deposit is growing'
-        signal({
-          ...base,
-          key: `fouling:${seg.id}`,
-          kind: 'fouling',
-          segment: seg.id,
-          tag: null,
-          priority: e.kind === 'blockage' ? 'high' : 'medium',
-          value: ratio,
-          limit: 1,
-          unit: 'ratio',
-          message: `${seg.title}: ${what}, resistance ${ratio === null ? '' : ratio.toFixed(3)} times clean${began}`,
-          onset: onset === null ? null : onsetReport(onset),
-          detector: e.kind === 'blockage' ? 'step likelihood' : 'growth likelihood',
-        })
-        return
-      }
-      case 'instrument': {
-        const key = `sensor:${e.tag}:zero`
-        signal({
-          ...base,
-          key,
-          kind: 'sensor',
-          segment: layout.segments[e.segment]!.spec.id,
-          tag: e.tag,
-          priority: 'low',
-          value: barFromPa(e.sizePa),
-          limit: 0,
-          unit: 'bar',
-          message: `${e.tag}: its zero ${e.ramp ? 'drifts' : 'shifted'}, by about ${(e.sizePa / 100).toFixed(0)} mbar so far; verdicts allow for it`,
-          detector: e.neighbours ? 'tap likelihood' : 'step likelihood',
-        })
-        s.timed.push({ key, untilMs: tMs + 4 * standsMs })
-        return
-      }
-      case 'stream': {
-        if (e.nearMove) {
-          events.push({
-            kind: 'note',
-            tMs,
-            text: `after a step of flow or temperature the viscosity of stream ${layout.streams[e.stream]!.id} was corrected by ${(100 * Math.expm1(e.size)).toFixed(1)} %`,
-          })
-          return
-        }
-        const first = layout.segments.find((g) => g.streams.includes(e.stream))
-        signal({
-          ...base,
-          key: `fouling:stream:${layout.streams[e.stream]!.id}`,
-          kind: 'fouling',
-          segment: first?.spec.id ?? null,
-          tag: layout.skid.tags[layout.streams[e.stream]!.tag]?.tag ?? null,
-          priority: 'low',
-          value: Math.exp(e.size),
-          limit: 1,
-          unit: 'ratio',
-          message: `Stream ${layout.streams[e.stream]!.id}: resistance of all its segments changed together by ${(100 * Math.expm1(e.size)).toFixed(1)} %: verify lot and flow reading`,
-          detector: 'stream likelihood',
-        })
-        s.timed.push({ key: `fouling:stream:${layout.streams[e.stream]!.id}`, untilMs: tMs + standsMs })
-        return
-      }
-      case 'step':
-        events.push({
-          kind: 'note',
-          tMs,
-          text: `${layout.segments[e.segment]!.spec.id}: resistance stepped by ${(100 * Math.expm1(e.size)).toFixed(1)} %${e.nearMove ? ', with a step of flow or temperature' : ''}; taken into the level`,
-        })
-    }
-  }
-
-  /** Creeping growth found by the charts of the promise; what neighbours on one stream share is noted, not alarmed. */
-  function onCreep(e: Extract<WatchEvent, { kind: 'creep' }>, tMs: number): void {
-    const g = layout.segments[e.segment]!.spec
-    const d = e.reading.drift!
-    if (e.shared) {
-      events.push({
-        kind: 'note',
-        tMs,
-        text: `${g.id}: resistance crept to ${e.ratio.toFixed(3)} times clean together with its neighbours: lot, feed or flow reading; its charts begin anew from there`,
-      })
-      return
-    }
-    signal({
-      key: `fouling:${g.id}`,
-      tMs,
-      over: true,
-      kind: 'fouling',
-      segment: g.id,
-      tag: null,
-      priority: 'low',
-      value: e.ratio,
-      limit: 1,
-      unit: 'ratio',
-      message: `${g.title}: resistance creeps up, ${e.ratio.toFixed(3)} times clean`,
-      cause: g.kind === 'filter' ? 'filter' : 'fouling',
-      onset: e.onset === null ? null : onsetReport(e.onset),
-      detector: 'cusum and drift',
-      evidence: {
-        for: [
-          `CUSUM ${e.reading.cusum.toFixed(1)} over its interval ${e.reading.h.toFixed(1)}`,
-          `rises by ${(100 * d.perHour).toFixed(2)} % an hour (99 %: ${(100 * d.low).toFixed(2)} to ${(100 * d.high).toFixed(2)})`,
-        ],
-        against: [],
-        notExcluded: ['slow drift of an instrument', 'slow change of composition'],
-      },
-      onDelayS: 0,
-      offDelayS: 0,
-    })
-  }
-
-  /** What the charts of a segment say beside the verdict. */
-  function chartsSay(segment: number): string[] {
-    const c = watch.charts(segment)
-    if (c === null) return ['charts by the promise: not yet, they need a final baseline']
-    const slope = c.drift === null ? 'no drift told apart from none' : `drift ${(100 * c.drift.perHour).toFixed(1)} % an hour`
-    return [`CUSUM ${c.cusum.toFixed(1)} of ${c.h.toFixed(1)} σ, ${c.cusumOver ? 'agrees' : 'silent so far'}; ${slope}`]
+  /** Passes on what a verdict of the watch says: an alarm, a note, and how long the alarm stands by itself. */
+  function tell(said: Said, tMs: number): void {
+    if (said.note !== null) events.push({ kind: 'note', tMs, text: said.note })
+    if (said.signal === null) return
+    signal(said.signal)
+    if (said.standsMs !== null) s.timed.push({ key: said.signal.key, untilMs: tMs + said.standsMs })
   }
 
   /** The condition of an alarm without a value of its own is over. */
@@ -465,14 +325,6 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   }
 }
 export type Pipeline = ReturnType<typeof createPipeline>
-
-export const onsetReport = (i: Interval): OnsetReport => ({
-  at: iso(i.atMs),
-  low: iso(i.lowMs),
-  high: iso(i.highMs),
-  level: i.level,
-})
-const iso = (ms: number): string => new Date(ms).toISOString()
 
 function highestDp(limits: LimitTable, i: number): { name: LimitName; pa: number } | null {
   const high = limits[i]!.dpHighBar
