@@ -14,7 +14,13 @@ const row = (s: number, flow: number | null, phase = 'production'): Row => [t0 +
 function run(rows: readonly Row[], ticksS: readonly number[] = [], finish = true) {
   const scans: { s: number; flow: number | null; rows: number; held: boolean; skipped: number }[] = []
   const grid = createGrid(skid, (x) =>
-    scans.push({ s: (x.tMs - t0) / 1000, flow: x.used[0]! > 0 ? x.si[0]! * 3600 : null, rows: x.rows, held: x.held[0] === 1, skipped: x.skipped }),
+    scans.push({
+      s: (x.tMs - t0) / 1000,
+      flow: x.used[0]! > 0 ? x.si[0]! * 3600 : null,
+      rows: x.rows,
+      held: x.held[0] === 1,
+      skipped: x.skipped,
+    }),
   )
   grid.rows(block(rows, width))
   for (const s of ticksS) grid.tick(t0 + 1000 * s)
@@ -39,7 +45,12 @@ describe('scan grid', () => {
 
   it('closes by the clock alone when rows stop, and leaves the gap empty', () => {
     const { scans } = run([row(0, 6)], [6], false)
-    expect(scans.map((x) => [x.s, x.flow])).toEqual([[0, expect.closeTo(6, 9)], [1, null], [2, null], [3, null]])
+    expect(scans.map((x) => [x.s, x.flow])).toEqual([
+      [0, expect.closeTo(6, 9)],
+      [1, null],
+      [2, null],
+      [3, null],
+    ])
   })
 
   it('uses a row out of order while its scan is open, keeps it and marks it late when it is not', () => {
@@ -88,7 +99,11 @@ describe('scan grid', () => {
     const scans: number[] = []
     const first = createGrid(skid, (x) => scans.push(x.used[0]! > 0 ? x.si[0]! * 3600 : Number.NaN))
     first.rows(block(rows.slice(0, 17), width))
-    const second = createGrid(skid, (x) => scans.push(x.used[0]! > 0 ? x.si[0]! * 3600 : Number.NaN), JSON.parse(JSON.stringify(first.state)) as GridState)
+    const second = createGrid(
+      skid,
+      (x) => scans.push(x.used[0]! > 0 ? x.si[0]! * 3600 : Number.NaN),
+      JSON.parse(JSON.stringify(first.state)) as GridState,
+    )
     second.rows(block(rows.slice(17), width))
     second.finish()
     expect(scans).toEqual(whole.map((x) => x.flow))
