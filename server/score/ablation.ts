@@ -1,5 +1,5 @@
 import { analyseLog, fileSource } from '../analyse.ts'
-import { bankSettings } from '../core/bank/bank.ts'
+import { bankSettings } from '../core/bank/bank-state.ts'
 import type { Kind } from '../core/bank/hypotheses.ts'
 import type { PipelineOptions } from '../core/pipeline/pipeline.ts'
 import { loadSkid } from '../skid/check.ts'

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest'
-import { bankSettings } from '../../server/core/bank/bank.ts'
+import { bankSettings } from '../../server/core/bank/bank-state.ts'
 import { createPipeline, type PipelineOptions } from '../../server/core/pipeline/pipeline.ts'
 import { randomScenario } from '../../server/core/sim/random-scenario.ts'
 import { columns, parts } from '../../server/score/ablation.ts'

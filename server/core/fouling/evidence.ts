@@ -1,4 +1,4 @@
-import type { BankEvent } from '../bank/bank.ts'
+import type { BankEvent } from '../bank/bank-state.ts'
 import type { Rival } from '../bank/verdicts.ts'
 import type { Layout } from '../derive/layout.ts'
 import type { Cause } from '../report.ts'

@@ -1,12 +1,5 @@
-import {
-  type Bank,
-  type BankEvent,
-  type BankSettings,
-  type BankState,
-  bankSettings,
-  createBank,
-  type LearnedExponent,
-} from '../bank/bank.ts'
+import { type Bank, createBank } from '../bank/bank.ts'
+import { type BankEvent, type BankSettings, type BankState, bankSettings, type LearnedExponent } from '../bank/bank-state.ts'
 import type { SegmentObservation } from '../bank/model.ts'
 import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import type { Layout } from '../derive/layout.ts'

@@ -1,7 +1,7 @@
 import { type AdviserState, createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
 import { type BookState, createBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
-import type { BankSettings } from '../bank/bank.ts'
+import type { BankSettings } from '../bank/bank-state.ts'
 import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import { layoutOf } from '../derive/layout.ts'
 import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'

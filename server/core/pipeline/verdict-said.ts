@@ -1,5 +1,5 @@
 import type { Signal } from '../alarms/occurrence.ts'
-import type { BankEvent } from '../bank/bank.ts'
+import type { BankEvent } from '../bank/bank-state.ts'
 import type { Layout } from '../derive/layout.ts'
 import type { ChartReading } from '../fouling/charts.ts'
 import { findingOf } from '../fouling/evidence.ts'

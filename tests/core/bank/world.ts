@@ -1,4 +1,5 @@
-import { type BankEvent, createBank } from '../../../server/core/bank/bank.ts'
+import { createBank } from '../../../server/core/bank/bank.ts'
+import type { BankEvent } from '../../../server/core/bank/bank-state.ts'
 import type { Explanation } from '../../../server/core/bank/hypotheses.ts'
 import type { SegmentObservation } from '../../../server/core/bank/model.ts'
 import { type Layout, layoutOf } from '../../../server/core/derive/layout.ts'
