@@ -7,6 +7,7 @@ const tasks = {
   start: async () => {
     ensureInstalled()
     await ensureBuilt()
+    stopWithShell()
     process.argv.splice(2, process.argv.length, 'serve', ...rest)
     await import('../dist/server/main.js')
   },
@@ -29,6 +30,21 @@ const tasks = {
     await (await import('./ablate.js')).ablate(rest)
   },
   unused: async () => (await import('./unused.js')).unused(),
+}
+
+/**
+ * npm runs a script through a shell and passes SIGTERM to that shell alone, which dies of it and leaves the server behind. So the server
+ * watches for its shell and, once it is gone, stops as if the signal had come to it.
+ */
+function stopWithShell() {
+  if (process.platform === 'win32' || process.env.npm_lifecycle_event !== 'start') return
+  const shell = process.ppid
+  const watch = setInterval(() => {
+    if (process.ppid === shell) return
+    clearInterval(watch)
+    process.kill(process.pid, 'SIGTERM')
+  }, 500)
+  watch.unref()
 }
 
 /** Runs a development tool of node_modules and ends with its code when it fails. */
