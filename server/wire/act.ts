@@ -1,28 +1,10 @@
-import type { Act, LimitName } from '../core/sequence.ts'
+import type { Act } from '../core/sequence.ts'
 import type { TransitionRow } from './alarm.ts'
 
-/** Body of `POST /api/runs/:run/acts`. The server gives the time, by the run's clock. Every act names a person. */
-export type ActBody = { readonly person: string } & (
-  | { readonly kind: 'acknowledge'; readonly alarm: number }
-  | { readonly kind: 'reset'; readonly alarm: number }
-  | { readonly kind: 'shelve'; readonly alarm: number; readonly minutes: number; readonly reason: string }
-  | { readonly kind: 'unshelve'; readonly alarm: number; readonly reason: string }
-  | { readonly kind: 'comment'; readonly alarm: number | null; readonly text: string }
-  | {
-      readonly kind: 'limit'
-      readonly segment: string
-      readonly limit: LimitName
-      readonly value: number | null
-      readonly reason: string
-    }
-  | {
-      readonly kind: 'flush-step'
-      readonly segment: string
-      readonly step: string
-      readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended'
-      readonly reason: string
-    }
-)
+type Untimed<A> = A extends Act ? Omit<A, 'tMs'> : never
+
+/** Body of `POST /api/runs/:run/acts`: an act without its time, which the server gives by the run's clock. Every act names a person. */
+export type ActBody = Exclude<Untimed<Act>, { readonly kind: 'event' }>
 
 /** Reply: on disk before it is sent. `transitions` holds what it did to the alarm, a refusal (outcome 'refused') with its reason. */
 export interface ActReply {
