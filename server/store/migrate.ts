@@ -1,5 +1,8 @@
 import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
+import { sql as people } from './steps/people.ts'
+import { sql as settings } from './steps/settings.ts'
+import { sql as trail } from './steps/trail.ts'
 
 /**
  * Appended to, never changed: `user_version` counts the steps a store has seen.
@@ -50,6 +53,9 @@ export const steps: readonly string[] = [
   ALTER TABLE head ADD COLUMN packed INTEGER NOT NULL DEFAULT 0;
   UPDATE head SET packed = coalesce((SELECT max(end_seq) FROM tier WHERE tier.run = head.run AND level = 0), 0);
   `,
+  trail,
+  people,
+  settings,
 ]
 
 /** Steps a store has seen. Errors: STORE_SCHEMA_NEWER when a newer build wrote it. */

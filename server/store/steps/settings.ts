@@ -1,0 +1,2 @@
+/** Step of the database for settings; never changed once released. */
+export const sql = ''

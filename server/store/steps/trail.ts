@@ -1,0 +1,2 @@
+/** Step of the database for trail; never changed once released. */
+export const sql = ''
