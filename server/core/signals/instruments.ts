@@ -10,8 +10,12 @@ export interface InstrumentState {
   missingMs: number[]
   frozenMs: number[]
   lastReason: number[]
-  /** Share of recent scans in which a reading was rejected as a spike. */
+  /** Share of recent scans with a jump that counts, and whether that is too many. */
   spiky: number[]
+  isSpiky: number[]
+  /** Scans since a reading was last rejected for its value, and since its last jump that counted; up to `jumpy.apart`. */
+  sinceAway: number[]
+  sinceJump: number[]
   /** Scans in which the tag was judged, until they are enough to know its spikes. */
   judged: number[]
   lastRowMs: number
@@ -28,8 +32,11 @@ export interface InstrumentState {
 /** How long before a diagnostic alarm, s: failing or missing; standing still, by whether it is a flow. Default values, common practice. */
 const after = { failing: 30, missing: 60, frozen: 420, frozenFlow: 90, noData: 10, lateRows: 20 }
 
-/** Share of scans with a rejected spike, over two minutes' worth or 120 scans, at which an instrument is called faulty, and well again. */
-const spikyShare = { raise: 0.05, clear: 0.01 }
+/**
+ * A reading that is rejected for its value and comes back has jumped. Jumps are counted when no other reading was rejected within `near` scans and when they lie `apart`, since
+ * gas shakes a tap for a minute; over the last 300 scans or minute, at a share of `raise` (four of them) an instrument is called faulty. Common practice.
+ */
+const jumpy = { near: 10, apart: 20, raise: 0.0098, clear: 0.001 }
 const none = { for: [], against: [], notExcluded: [] }
 
 /**
@@ -47,6 +54,9 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     frozenMs: fill(),
     lastReason: fill(),
     spiky: new Array<number>(n).fill(0),
+    isSpiky: new Array<number>(n).fill(0),
+    sinceAway: new Array<number>(n).fill(jumpy.apart),
+    sinceJump: new Array<number>(n).fill(jumpy.apart),
     judged: new Array<number>(n).fill(0),
     lastRowMs: -1,
     rowGapMs: 0,
@@ -67,7 +77,11 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     frozenFlow: after.frozenFlow * finer,
     off: 30 * finer,
   }
-  const spikyScans = Math.max(120, Math.round(60 / skid.scanSeconds))
+  const spikyScans = Math.max(300, Math.round(60 / skid.scanSeconds))
+  const judgedScans = Math.max(120, Math.round(60 / skid.scanSeconds))
+  /** What a reading is rejected for that leaves its place and comes back. */
+  const leaves = new Set([why.spike, why['impossible-rate'], why['out-of-range'], why['loop-failure'], why['open-circuit']])
+  const begins = new Uint8Array(n)
   const failing = new Set([
     why['out-of-range'],
     why['loop-failure'],
@@ -133,9 +147,15 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
         onDelayS: 0,
         offDelayS: 0,
       })
-      // Several readings that jump at once are gas or a pump, not instruments.
+      // Several readings that jump at about the same time are gas or a pump, not instruments.
       let jumping = 0
-      for (let t = 0; t < n; t++) if (scan.flaw[t] === why.spike) jumping++
+      for (let t = 0; t < n; t++) {
+        const away = leaves.has(scan.flaw[t]!)
+        begins[t] = away && s.sinceAway[t]! > 1 ? 1 : 0
+        s.sinceAway[t] = away ? 0 : Math.min(s.sinceAway[t]! + 1, jumpy.apart)
+        s.sinceJump[t] = Math.min(s.sinceJump[t]! + 1, jumpy.apart)
+        if (s.sinceAway[t]! < jumpy.near) jumping++
+      }
       for (let t = 0; t < n; t++) if (used[t]!) tag(t, scan, tMs, silent, jumping === 1, emit)
       monitorClock(tMs, counts, emit)
       return silent
@@ -152,13 +172,15 @@ export function createInstruments(layout: Layout, saved?: InstrumentState) {
     mark(s.missingMs, t, !silent && flaw === why.missing && !fresh, fresh || silent, tMs)
     const fails = over(s.failingMs[t]!, delay.failing, tMs)
     const frozen = over(s.frozenMs[t]!, flow[t]! ? delay.frozenFlow : delay.frozen, tMs)
-    if (scan.used[t]! > 0 || flaw !== 0) {
+    if (fresh || flaw !== 0) {
       // Until a reading's usual wiggle is known, much looks like a spike.
-      s.judged[t] = Math.min(s.judged[t]! + 1, spikyScans)
-      const bad = flaw === why.spike && alone && s.judged[t] === spikyScans
-      s.spiky[t] = s.spiky[t]! + ((bad ? 1 : 0) - s.spiky[t]!) / spikyScans
+      s.judged[t] = Math.min(s.judged[t]! + 1, judgedScans)
+      const jumped = begins[t] === 1 && alone && s.sinceJump[t] === jumpy.apart && s.judged[t] === judgedScans
+      s.spiky[t] = s.spiky[t]! + ((jumped ? 1 : 0) - s.spiky[t]!) / spikyScans
+      if (jumped) s.sinceJump[t] = 0
+      s.isSpiky[t] = s.spiky[t]! > (s.isSpiky[t] === 1 ? jumpy.clear : jumpy.raise) ? 1 : 0
     }
-    const spiky = s.spiky[t]! > (s.sensorOver[t] === 1 ? spikyShare.clear : spikyShare.raise)
+    const spiky = s.isSpiky[t] === 1
     if (spiky) s.lastReason[t] = why.spike
     const gone = over(s.missingMs[t]!, delay.missing, tMs)
     const spec = skid.tags[t]!
