@@ -18,7 +18,18 @@ export type Act = { readonly tMs: number; readonly person: string } & (
       readonly kind: 'flush-step'
       readonly segment: string
       readonly step: string
-      readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended'
+      readonly state: 'started' | 'accepted' | 'refused' | 'skipped' | 'ended' | 'aborted'
+      readonly reason: string
+    }
+  /** What a person read or saw of one point of a flush step; `criterion` as the plan names it, with `:part` where it has parts. */
+  | {
+      readonly kind: 'flush-check'
+      readonly segment: string
+      readonly step: string
+      readonly criterion: string
+      readonly verdict: 'met' | 'failed' | 'skipped'
+      readonly value: number | string | null
+      readonly source: string
       readonly reason: string
     }
   /** A row of the events file: Karl Fischer result, drum change, filter change ... */

@@ -174,7 +174,12 @@ const actBodies = [
   closed({ person, kind: kind('limit'), segment: text, limit: limitName, value: numOrNull, reason: words }),
   closed({
     person, kind: kind('flush-step'), segment: text, step: Type.String({ maxLength: 20 }),
-    state: oneOf(['started', 'accepted', 'refused', 'skipped', 'ended']), reason: words,
+    state: oneOf(['started', 'accepted', 'refused', 'skipped', 'ended', 'aborted']), reason: words,
+  }),
+  closed({
+    person, kind: kind('flush-check'), segment: text, step: Type.String({ maxLength: 20 }), criterion: Type.String({ maxLength: 80 }),
+    verdict: oneOf(['met', 'failed', 'skipped']), value: Type.Union([num, Type.String({ maxLength: 200 }), Type.Null()]),
+    source: Type.String({ maxLength: 200 }), reason: words,
   }),
 ] as const // biome-ignore format: a list
 /** One branch by `kind`, so that a mistake is told of the act that was meant. */

@@ -7,7 +7,10 @@ import type { ActBody } from '../wire/act.ts'
 export function actOf(body: ActBody, skid: Skid, tMs: number): Act {
   const person = body.person.trim()
   if (person === '') throw new MonitorError('ACT_REFUSED', 'every act names the person who does it', { hint: 'give a name' })
-  if ((body.kind === 'limit' || body.kind === 'flush-step') && !skid.segments.some((s) => s.id === body.segment))
+  if (
+    (body.kind === 'limit' || body.kind === 'flush-step' || body.kind === 'flush-check') &&
+    !skid.segments.some((s) => s.id === body.segment)
+  )
     throw new MonitorError('TAG_UNKNOWN', `skid ${skid.skid} has no segment '${body.segment}'`, {
       hint: `one of ${skid.segments.map((s) => s.id).join(', ')}`,
     })
