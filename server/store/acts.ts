@@ -1,7 +1,9 @@
 import type Database from 'better-sqlite3'
 import type { Act } from '../core/sequence.ts'
+import { rowHash } from '../trail/chain.ts'
 import { checksum, damaged } from './checksum.ts'
 import { endOf, keyOf, type RunId, seqOf } from './keys.ts'
+import type { Ledger } from './ledger.ts'
 
 export interface NumberedAct {
   readonly seq: number
@@ -9,7 +11,7 @@ export interface NumberedAct {
 }
 
 /** Acts of people at their numbers in the sequence, kept beside rows and ticks. Callers bring the transaction. */
-export function actTable(db: Database.Database) {
+export function actTable(db: Database.Database, ledger: Pick<Ledger, 'run'>) {
   const insert = db.prepare('INSERT INTO act (id, sum, json) VALUES (?, ?, ?)')
   const between = db.prepare<[number, number], { id: number; sum: number; json: string }>(
     'SELECT id, sum, json FROM act WHERE id >= ? AND id < ? ORDER BY id',
@@ -18,7 +20,9 @@ export function actTable(db: Database.Database) {
     add(run: RunId, seq: number, act: Act): void {
       const id = keyOf(run, seq)
       const json = JSON.stringify(act)
-      insert.run(id, checksum([id], json), json)
+      const sum = checksum([id], json)
+      insert.run(id, sum, json)
+      ledger.run(run, { kind: 'act', seq, act, row: rowHash([id, sum, json]) })
     },
     /** Acts with from ≤ number < to. Errors: STORE_CORRUPT. */
     between: (run: RunId, from: number, to = endOf): NumberedAct[] =>

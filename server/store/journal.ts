@@ -1,5 +1,8 @@
 import type Database from 'better-sqlite3'
+import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
+import { rowHash } from '../trail/chain.ts'
 import type { Json, RunId } from './keys.ts'
+import type { Ledger } from './ledger.ts'
 
 /** One output of the pipeline. */
 export interface StoredEvent {
@@ -39,8 +42,8 @@ type TransitionRow = Omit<AlarmTransition, 'more'> & { readonly more: string }
  * What the pipeline said, numbered by the pipeline itself within a run. A restart that replays what followed its last snapshot
  * says some of it again: what has its number already is left as first written and only compared.
  */
-export function journalStore(db: Database.Database) {
-  const insert = db.prepare('INSERT INTO event (run, idx, seq, t_ms, kind, json) VALUES (?, ?, ?, ?, ?, ?) ON CONFLICT DO NOTHING')
+export function journalStore(db: Database.Database, ledger: Pick<Ledger, 'run'>) {
+  const insert = db.prepare('INSERT INTO event (run, idx, seq, t_ms, kind, json) VALUES (?, ?, ?, ?, ?, ?)')
   const columns = 'seq, t_ms AS tMs, kind, json'
   const one = db.prepare<[RunId, number], EventRow>(`SELECT ${columns} FROM event WHERE run = ? AND idx = ?`)
   const page = db.prepare<[RunId, number, number], EventRow & { idx: number }>(
@@ -50,7 +53,7 @@ export function journalStore(db: Database.Database) {
 
   const insertTransition = db.prepare(
     `INSERT INTO alarm_transition (run, idx, alarm, t_ms, from_state, to_state, input, person, reason, value, more)
-     VALUES (@run, @idx, @alarm, @tMs, @from, @to, @input, @person, @reason, @value, @more) ON CONFLICT DO NOTHING`,
+     VALUES (@run, @idx, @alarm, @tMs, @from, @to, @input, @person, @reason, @value, @more)`,
   )
   const transition = 'alarm, t_ms AS tMs, from_state AS "from", to_state AS "to", input, person, reason, value, more'
   const oneTransition = db.prepare<[RunId, number], TransitionRow>(
@@ -67,18 +70,23 @@ export function journalStore(db: Database.Database) {
     events: {
       /** Numbers `from` on of a run. One transaction. */
       append: db.transaction((run: RunId, from: number, events: readonly StoredEvent[]): Appended => {
-        let added = 0
+        const added: unknown[][] = []
         let differing = 0
+        const known = count.get(run) ?? 0
         events.forEach(({ seq, tMs, kind, body }, i) => {
           const json = JSON.stringify(body)
-          if (insert.run(run, from + i, seq, tMs, kind, json).changes === 1) added++
-          else {
-            const old = one.get(run, from + i)
-            if (old === undefined || old.seq !== seq || old.tMs !== tMs || old.kind !== kind || old.json !== json) differing++
+          if (from + i >= known) {
+            insert.run(run, from + i, seq, tMs, kind, json)
+            added.push([from + i, seq, tMs, kind, json])
+            return
           }
+          const old = one.get(run, from + i)
+          if (old === undefined || old.seq !== seq || old.tMs !== tMs || old.kind !== kind || old.json !== json) differing++
         })
-        return { added, differing }
-      }),
+        if (added.length > 0)
+          ledger.run(run, { kind: 'events', from: Math.max(from, known), count: added.length, row: rowHash(added) })
+        return { added: added.length, differing }
+      }).immediate,
       /** At most `most` events from number `from` on, each with its number. */
       list: (run: RunId, from = 0, most = 1e9): (StoredEvent & { idx: number })[] =>
         page.all(run, from, most).map(({ json, ...row }) => ({ ...row, body: JSON.parse(json) as Json })),
@@ -90,6 +98,7 @@ export function journalStore(db: Database.Database) {
       append: db.transaction((run: RunId, from: number, batch: readonly AlarmTransition[]): Appended => {
         let added = 0
         let differing = 0
+        const known = countTransitions.get(run) ?? 0
         batch.forEach((t, i) => {
           const row = {
             alarm: t.alarm,
@@ -102,11 +111,17 @@ export function journalStore(db: Database.Database) {
             value: t.value,
             more: JSON.stringify(t.more),
           }
-          if (insertTransition.run({ run, idx: from + i, ...row }).changes === 1) added++
-          else if (JSON.stringify(oneTransition.get(run, from + i)) !== JSON.stringify(row)) differing++
+          const idx = from + i
+          if (idx >= known) {
+            insertTransition.run({ run, idx, ...row })
+            ledger.run(run, {
+              kind: 'transition', idx, transition: t.more as unknown as AlarmRecord, row: rowHash([idx, ...Object.values(row)]),
+            }) // biome-ignore format: a list
+            added++
+          } else if (JSON.stringify(oneTransition.get(run, idx)) !== JSON.stringify(row)) differing++
         })
         return { added, differing }
-      }),
+      }).immediate,
       list: (run: RunId, from = 0): AlarmTransition[] =>
         transitions.all(run, from).map((row) => ({ ...row, more: JSON.parse(row.more) as Json })),
       count: (run: RunId): number => countTransitions.get(run) ?? 0,

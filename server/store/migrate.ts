@@ -1,5 +1,6 @@
 import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
+import { adopt } from './adopt.ts'
 import { sql as people } from './steps/people.ts'
 import { sql as settings } from './steps/settings.ts'
 import { sql as trail } from './steps/trail.ts'
@@ -68,12 +69,13 @@ export function seen(db: Database.Database): number {
   return done
 }
 
-/** Brings a store to this build's schema, all steps in one transaction. Errors: STORE_SCHEMA_NEWER. */
-export function migrate(db: Database.Database): void {
+/** Brings a store to this build's schema and begins its chains where it has none, all in one transaction. Errors: STORE_SCHEMA_NEWER. */
+export function migrate(db: Database.Database, wallMs: () => number, toolVersion: string): void {
   const done = seen(db)
   if (done === steps.length) return
   db.transaction(() => {
     for (const step of steps.slice(done)) db.exec(step)
+    adopt(db, wallMs, toolVersion)
     db.pragma(`user_version = ${steps.length}`)
   }).immediate()
 }

@@ -7,16 +7,19 @@ import { auditStore } from './audit.ts'
 import { asStoreError, guarded, guardedAll } from './fault.ts'
 import { headTable } from './heads.ts'
 import { journalStore } from './journal.ts'
+import { ledger as ledgerOf } from './ledger.ts'
 import { checkSchema, migrate, seen } from './migrate.ts'
 import { readingStore } from './readings.ts'
 import { reclaimer } from './reclaim.ts'
 import { runStore } from './runs.ts'
+import { seals as sealsOf } from './seals.ts'
 import { segmentTable } from './segments.ts'
 import { type Append, sequenceWriter } from './sequence.ts'
 import { sequenceReader } from './sequence-read.ts'
 import { settingsStore } from './settings.ts'
 import { snapshotStore } from './snapshots.ts'
 import { stageTable } from './stage-table.ts'
+import { trailStore } from './trail-store.ts'
 
 export interface StoreOptions {
   /** FULL (default): a commit is on the disk when it returns. NORMAL: it survives a crash of the process, not of the machine. */
@@ -27,6 +30,12 @@ export interface StoreOptions {
   readonly joined?: boolean
   /** Largest size of the database [pages of 4096 bytes]; past it writes fail as on a full disk. */
   readonly maxPages?: number
+  /** Folder outside the data where the keys of stores lie; without it heads are not signed. */
+  readonly keys?: string
+  /** Named in the first record of the store. */
+  readonly toolVersion?: string
+  /** Clock of the process, ms since 1970 UTC. */
+  readonly wallMs?: () => number
 }
 
 const fileName = 'clearbore.db'
@@ -63,6 +72,7 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
   const place = `the store in ${dir}`
   return guarded(place, () => {
     const readonly = options.readonly === true
+    const wallMs = options.wallMs ?? Date.now
     folder(dir, readonly)
     const held = readonly || options.joined === true ? null : lock(dir)
     let db: Database.Database | null = null
@@ -82,8 +92,10 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
       db.pragma('foreign_keys = ON')
       db.pragma('cache_size = -16384')
       if (readonly) checkSchema(db)
-      else migrate(db)
-      return assemble(db, held, place)
+      else migrate(db, wallMs, options.toolVersion ?? 'unknown')
+      const store = assemble(db, held, place, wallMs)
+      if (options.keys !== undefined && options.joined !== true) store.trail.unlock(options.keys, dir, readonly)
+      return store
     } catch (error) {
       db?.close()
       held?.close()
@@ -92,13 +104,16 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
   })()
 }
 
-function assemble(db: Database.Database, held: Database.Database | null, place: string) {
-  const segments = segmentTable(db)
-  const tables = { heads: headTable(db), acts: actTable(db), stages: stageTable(db), segments }
-  const runs = runStore(db)
+function assemble(db: Database.Database, held: Database.Database | null, place: string, wallMs: () => number) {
+  const ledger = ledgerOf(db, wallMs)
+  const seals = sealsOf(db, ledger, wallMs)
+  const segments = segmentTable(db, ledger)
+  const tables = { heads: headTable(db), acts: actTable(db, ledger), stages: stageTable(db), segments }
+  const audit = auditStore(db, ledger, wallMs)
+  const runs = runStore(db, ledger, audit, seals.soon)
   const sequence = sequenceWriter(tables)
   const readEntries = sequenceReader(db, tables)
-  const journal = journalStore(db)
+  const journal = journalStore(db, ledger)
   const reclaim = reclaimer(db)
   const packNext = db.transaction(() => sequence.packNext()).immediate
   const purgeNext = db.transaction(() => reclaim.purgeNext()).immediate
@@ -138,8 +153,9 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
     events: all(journal.events),
     transitions: all(journal.transitions),
     snapshots: all(snapshotStore(db)),
-    settings: all(settingsStore(db)),
-    audit: all(auditStore(db)),
+    settings: all(settingsStore(db, ledger)),
+    audit: all(audit),
+    trail: all(trailStore(db, ledger, seals)),
     /** Runs `act` as one transaction: all its writes share one commit, or none happens when it throws. */
     together: <R>(act: () => R): R => g(() => db.transaction(act).immediate())(),
     /**
@@ -148,6 +164,7 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
      * stays in the file: staging takes and frees pages all the time.
      */
     upkeep: g(({ maxMs = Infinity, spareMb = 16, now = () => performance.now() }: Upkeep = {}): { pending: boolean } => {
+      seals.seal()
       const end = now() + maxMs
       for (const step of [packNext, purgeNext, () => reclaim.shrink((spareMb * 2 ** 20) / pageBytes)]) {
         while (step()) if (now() >= end) return { pending: true }
@@ -173,7 +190,13 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
       }
       return found
     }),
+    /** Signs the heads once more. */
     close(): void {
+      try {
+        seals.seal(true)
+      } catch {
+        // A full disk leaves the last minute unsigned; the next start signs it.
+      }
       db.close()
       held?.close()
     },

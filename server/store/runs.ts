@@ -1,6 +1,9 @@
 import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
+import { rowHash, sha256 } from '../trail/chain.ts'
+import type { AuditStore } from './audit.ts'
 import type { RunId } from './keys.ts'
+import type { Ledger } from './ledger.ts'
 
 /** A run ends once; a deleted one is gone for every reader while its space is given back piece by piece. */
 export type RunState = 'live' | 'importing' | 'ended'
@@ -34,8 +37,21 @@ const columns =
 export const noRun = (run: number) =>
   new MonitorError('STORE_DATA', `there is no run ${run} in the store`, { hint: 'list the runs and choose one of them' })
 
+/** The row of a run as its genesis holds it; its state moves and is told by records. */
+export const runRow = (id: number, r: NewRun) =>
+  [id, r.skidId, r.title, r.skidFile, r.skidText, r.source, r.startedMs, r.toolVersion] as const
+
+/** The first record of a run's chain, and the run's in the site's. */
+export function beginChain(ledger: Ledger, run: RunId, r: NewRun): void {
+  ledger.run(run, {
+    kind: 'genesis', chain: 'run', store: ledger.store(), run, toolVersion: r.toolVersion, skid: r.skidId, title: r.title, source: r.source,
+    tMs: r.startedMs, configuration: sha256(r.skidText), row: rowHash(runRow(run, r)),
+  }) // biome-ignore format: a list
+  ledger.site({ kind: 'run.begun', ...ledger.headOf(run) })
+}
+
 /** Runs and the words of their text tags. */
-export function runStore(db: Database.Database) {
+export function runStore(db: Database.Database, ledger: Ledger, audit: Pick<AuditStore, 'append'>, ended: () => void) {
   const insert = db.prepare(
     `INSERT INTO run (skid_id, title, skid_file, skid_text, source, started_ms, tool_version, state)
      VALUES (@skidId, @title, @skidFile, @skidText, @source, @startedMs, @toolVersion, @state)`,
@@ -44,7 +60,6 @@ export function runStore(db: Database.Database) {
   const all = db.prepare<[], RunSummary>(`SELECT ${columns} FROM run WHERE state <> 'deleted' ORDER BY id`)
   const one = db.prepare<[RunId], Run>(`SELECT ${columns}, skid_text AS skidText FROM run WHERE id = ? AND state <> 'deleted'`)
   const state = db.prepare("UPDATE run SET state = ? WHERE id = ? AND state <> 'deleted'")
-  const audit = db.prepare('INSERT INTO audit (t_ms, person, act, reason, json) VALUES (?, ?, ?, ?, ?)')
   const countRows = db.prepare<[RunId], { entries: number; rows: number }>(
     'SELECT next_seq AS entries, rows FROM head WHERE run = ?',
   )
@@ -59,20 +74,29 @@ export function runStore(db: Database.Database) {
     create: db.transaction((run: NewRun): RunId => {
       const id = insert.run({ state: 'live', ...run }).lastInsertRowid as RunId
       insertHead.run(id)
+      beginChain(ledger, id, run)
       return id
-    }),
+    }).immediate,
     list: (): RunSummary[] => all.all(),
     /** Errors: STORE_DATA when there is none such. */
     get: need,
     /** Errors: STORE_DATA when there is none such. */
-    setState(run: RunId, to: RunState): void {
-      if (state.run(to, run).changes === 0) throw noRun(run)
-    },
-    /** An audited act: the run is gone for every reader at once, the entry in the audit trail stays, `upkeep` gives the space back. */
+    setState: db.transaction((run: RunId, to: RunState): void => {
+      const was = need(run).state
+      state.run(to, run)
+      if (was === to) return
+      ledger.run(run, { kind: 'run.state', state: to })
+      if (to !== 'ended') return
+      ledger.site({ kind: 'run.ended', ...ledger.headOf(run) })
+      ended()
+    }).immediate,
+    /** An audited act: the run is gone for every reader at once, the entry in the audit trail and its chain stay, `upkeep` gives the space back. */
     delete: db.transaction((run: RunId, { tMs, person, reason }: Deletion): void => {
       const { skidText: _, ...kept } = need(run)
-      audit.run(tMs, person, 'delete-run', reason, JSON.stringify({ ...kept, ...countRows.get(run) }))
+      audit.append({ tMs, person, act: 'run.delete', reason, body: { ...kept, ...countRows.get(run) }, run })
       state.run('deleted', run)
+      ledger.run(run, { kind: 'run.deleted', tMs, person, reason })
+      ledger.site({ kind: 'run.deleted', tMs, person, reason, ...ledger.headOf(run) })
     }).immediate,
     words: (run: RunId): string[] => words.all(run),
     /** Adds words from index `from` on; those already there must be the same (idempotent). Errors: STORE_DATA. */
@@ -80,6 +104,8 @@ export function runStore(db: Database.Database) {
       const known = words.all(run)
       if (from > known.length)
         throw new MonitorError('STORE_DATA', `words of run ${run} start at ${from}, but only ${known.length} are known`)
+      if (from + fresh.length > known.length)
+        ledger.run(run, { kind: 'words', from: known.length, words: fresh.slice(known.length - from) })
       fresh.forEach((word, i) => {
         const old = known[from + i]
         if (old === undefined) insertWord.run(run, from + i, word)

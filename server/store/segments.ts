@@ -1,6 +1,9 @@
 import type Database from 'better-sqlite3'
+import { partsHash } from '../trail/chain.ts'
+import { readingHash } from '../trail/reading-hash.ts'
 import { checksum, damaged } from './checksum.ts'
 import { keyOf, type RunId, seqOf } from './keys.ts'
+import type { Ledger } from './ledger.ts'
 import { type Columns, decodeOrder, encodeOrder, encodeStrips, type Order } from './segment.ts'
 import { encodePage, openPage } from './tier-page.ts'
 import { cells, fan, merge, type Page, summarise } from './tiers.ts'
@@ -19,7 +22,7 @@ export interface Node {
 const node = 'id, level, seq, end_seq AS endSeq, t_min AS tMin, t_max AS tMax, cell_ms AS cellMs, sum'
 
 /** Packed segments with their strips, and the tree of summary pages above them. Callers bring the transaction. */
-export function segmentTable(db: Database.Database) {
+export function segmentTable(db: Database.Database, ledger: Pick<Ledger, 'run'>) {
   const insert = db.prepare('INSERT INTO segment (id, body) VALUES (?, ?)')
   const insertStrip = db.prepare('INSERT INTO strip (segment, strip, body) VALUES (?, ?, ?)')
   const insertPage = db.prepare(
@@ -76,10 +79,17 @@ export function segmentTable(db: Database.Database) {
     add(run: RunId, seq: number, endSeq: number, columns: Columns): void {
       const key = keyOf(run, seq)
       const { strips, places } = encodeStrips(columns)
-      insert.run(key, encodeOrder(columns, seq, endSeq))
+      const order = encodeOrder(columns, seq, endSeq)
+      insert.run(key, order)
       strips.forEach((bytes, i) => {
         insertStrip.run(key, i, bytes)
       })
+      const parts = [order, ...strips]
+      const { rows, ticks } = columns
+      const sha256 = partsHash(parts)
+      ledger.run(run, {
+        kind: 'readings', from: seq, to: endSeq, rows, ticks, parts: parts.length, sha256, content: readingHash(columns),
+      }) // biome-ignore format: a list
       let tMin = Infinity
       let tMax = -Infinity
       for (let i = 0; i < columns.rows; i++) {

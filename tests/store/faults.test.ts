@@ -139,6 +139,7 @@ it('tells a lost record of any table from a gap in the readings', () => {
     writeFileSync(file, sound)
     const db = new Database(file)
     db.pragma('foreign_keys = OFF')
+    db.exec(`DROP TRIGGER IF EXISTS ${table}_kept`)
     const rowids = db.prepare(`SELECT rowid FROM ${table} WHERE ${condition} ORDER BY rowid`).pluck().all()
     db.prepare(`DELETE FROM ${table} WHERE rowid = ?`).run(rowids[Math.floor((rowids.length - 1) / 2)])
     db.close()

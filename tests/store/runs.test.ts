@@ -17,7 +17,7 @@ it('lists runs with what they were made from and lets one end', () => {
   expect(() => store.runs.setState((run + 1) as typeof run, 'ended')).toThrow(`there is no run ${run + 1}`)
 })
 
-it('deletes a run for every reader at once, keeps the act with person and reason, gives the space back, and never reuses its number', () => {
+it('deletes a run for every reader at once, keeps the act with person and reason and its chain, gives the other space back, and never reuses its number', () => {
   const dir = newFolder()
   const store = newStore(dir)
   const kept = store.runs.create(aRun)
@@ -54,7 +54,7 @@ it('deletes a run for every reader at once, keeps the act with person and reason
   expect(entry).toMatchObject({
     tMs: 5,
     person: 'demo engineer',
-    act: 'delete-run',
+    act: 'run.delete',
     reason: 'imported twice',
     body: { id: doomed, title: 'a mistake', entries: 300_050 },
   })
@@ -64,12 +64,16 @@ it('deletes a run for every reader at once, keeps the act with person and reason
   expect(before).toBeGreaterThan(400)
   store.runs.setState(kept, 'ended')
   store.upkeep({ spareMb: 0 })
-  expect(pages()).toBeLessThan(40)
+  // The chain of a deleted run stays: 27,275 comments here, each a record.
+  const chain = store.trail.ofRun(doomed)
+  expect(chain.length).toBeGreaterThan(27_275)
+  const chainPages = chain.reduce((sum, { text }) => sum + text.length + 45, 0) / 4096
+  expect(pages()).toBeLessThan(60 + 1.15 * chainPages)
   expect(store.check()).toEqual([])
   expect(readLines(store, kept)).toEqual(linesOf(entries(300)))
   expect(store.runs.create(aRun)).toBe(doomed + 1)
   close(store)
-  expect(statSync(join(dir, 'clearbore.db')).size).toBeLessThan(40 * 4096 + 1)
+  expect(statSync(join(dir, 'clearbore.db')).size).toBeLessThan((60 + 1.15 * chainPages) * 4096)
 })
 
 // REC-02
