@@ -35,6 +35,15 @@ export type ErrorCode =
   | 'RUN_UNKNOWN'
   | 'RUN_ENDED'
   | 'ACT_REFUSED'
+  | 'SIGN_IN_NEEDED'
+  | 'SIGN_IN_REFUSED'
+  | 'SIGN_IN_WAIT'
+  | 'NOT_ALLOWED'
+  | 'PERSON_REFUSED'
+  | 'PERSON_UNKNOWN'
+  | 'LINK_SPENT'
+  | 'BUSY'
+  | 'ALARM_UNKNOWN'
 
 /** Where in a file a mistake stands; line and column count from 1. */
 export interface Place {

@@ -9,6 +9,7 @@ import { headTable } from './heads.ts'
 import { journalStore } from './journal.ts'
 import { ledger as ledgerOf } from './ledger.ts'
 import { checkSchema, migrate, seen } from './migrate.ts'
+import { peopleStore } from './people.ts'
 import { readingStore } from './readings.ts'
 import { reclaimer } from './reclaim.ts'
 import { runStore } from './runs.ts'
@@ -155,6 +156,7 @@ function assemble(db: Database.Database, held: Database.Database | null, place: 
     snapshots: all(snapshotStore(db)),
     settings: all(settingsStore(db, ledger)),
     audit: all(audit),
+    people: all(peopleStore(db)),
     trail: all(trailStore(db, ledger, seals)),
     /** Runs `act` as one transaction: all its writes share one commit, or none happens when it throws. */
     together: <R>(act: () => R): R => g(() => db.transaction(act).immediate())(),
