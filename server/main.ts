@@ -18,5 +18,6 @@ process.exitCode = await runCli(process.argv.slice(2), {
   errIsTerminal: process.stderr.isTTY === true,
   outIsTerminal: process.stdout.isTTY === true,
   nowMs: () => performance.now(),
+  env: process.env,
   signal: abort.signal,
 })

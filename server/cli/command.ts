@@ -8,6 +8,8 @@ export interface Io {
   readonly outIsTerminal: boolean
   /** Milliseconds of a steady clock, for progress only. */
   nowMs(): number
+  /** Environment of the process; left out, nothing is taken from it. */
+  readonly env?: Readonly<Record<string, string | undefined>>
   /** Aborted on SIGINT or SIGTERM. */
   readonly signal: AbortSignal
 }

@@ -6,6 +6,7 @@ import { openStore } from '../store/open.ts'
 import { openAtomic, writeAtomic } from './atomic-file.ts'
 import type { Command } from './command.ts'
 import { toolVersion } from './install.ts'
+import { storeOptions } from './key-folder.ts'
 import { readOptions, usage, wholeIn } from './options.ts'
 
 const help = `Usage: clearbore export RUN --data DIR --what ${exportKinds.join('|')} --format csv|json --out FILE
@@ -19,6 +20,7 @@ Writes a stored run, by its number in the list, into a file. May run beside a se
                    version, period, filter, time zone, number of rows, cautions
   --from T --to T --kind K --segment S --priority P    alarms only: leave out the rest
   --data DIR       the store's folder (default .clearbore)
+  --keys DIR       where the key that signs records lies (default CLEARBORE_KEYS, else this user's state folder)
 
 Exit code 0; 1 when there is no such run; 2 for a wrong command line; 3 when the machine fails.
 `
@@ -33,7 +35,18 @@ export const exportCommand: Command = {
     const { values: v, positionals } = readOptions(
       'export',
       args,
-      { data: text, what: text, format: text, out: text, from: text, to: text, kind: text, segment: text, priority: text },
+      {
+        data: text,
+        what: text,
+        format: text,
+        out: text,
+        from: text,
+        to: text,
+        kind: text,
+        segment: text,
+        priority: text,
+        keys: text,
+      },
       true,
     )
     if (positionals.length !== 1) throw usage('export', `export needs one RUN, got ${positionals.length}`)
@@ -46,7 +59,7 @@ export const exportCommand: Command = {
     const isFiltered = [v.from, v.to, v.kind, v.segment, v.priority].some((f) => f !== undefined)
     if (isFiltered && what !== 'alarms') throw usage('export', 'only alarms can be filtered')
 
-    const store = openStore(v.data ?? '.clearbore', { readonly: true })
+    const store = openStore(v.data ?? '.clearbore', { readonly: true, ...storeOptions(io, v.keys) })
     try {
       const idle = {
         engine: () => null,

@@ -13,6 +13,7 @@ import { readSkidText } from '../skid/skid-path.ts'
 import { openStore } from '../store/open.ts'
 import type { Command } from './command.ts'
 import { toolVersion } from './install.ts'
+import { storeOptions, tellSigning } from './key-folder.ts'
 import { readOptions, usage } from './options.ts'
 import { progressLine } from './progress-line.ts'
 
@@ -24,6 +25,7 @@ Puts one logged run, in one file or several, into the store; the pages show it f
   --skid FILE    the skid file (YAML or JSON)
   --data DIR     the store's folder (default .clearbore); a server that uses it must be stopped, or upload on its page
   --title TEXT   how the run is listed (default: the first log's name)
+  --keys DIR     where the key that signs the store's chains lies (default CLEARBORE_KEYS, else this user's state folder)
   --start T      when a log with elapsed seconds or bare times of day began
   --events FILE  CSV with time,kind,value,unit,person,note
 
@@ -48,7 +50,7 @@ export const importCommand: Command = {
     const { values: v, positionals: logs } = readOptions(
       'import',
       args,
-      { skid: text, data: text, title: text, start: text, events: text },
+      { skid: text, data: text, title: text, start: text, events: text, keys: text },
       true,
     )
     if (logs.length === 0) throw usage('import', 'import needs at least one LOG.csv')
@@ -59,7 +61,7 @@ export const importCommand: Command = {
     let total = 0
     for (const log of logs) total += await sizeOf(log)
     const acts = v.events === undefined ? [] : readEvents(v.events, await readEventsFile(v.events), skid.timeZone)
-    const store = openStore(v.data ?? '.clearbore')
+    const store = openStore(v.data ?? '.clearbore', storeOptions(io, v.keys))
     const line = progressLine(io, 'import', total / 1e6, 'MB')
     try {
       const pair = createPair(store, {
@@ -86,6 +88,7 @@ export const importCommand: Command = {
         })
         line.end()
         store.upkeep()
+        await tellSigning(io, store.trail.signing())
         const report = createEngine({ store, ...pair, skid }).report()
         const broken = tallies.reduce((n, t) => n + t.broken, 0)
         await io.out(

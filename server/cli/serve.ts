@@ -6,12 +6,13 @@ import { readSkidText } from '../skid/skid-path.ts'
 import { openStore } from '../store/open.ts'
 import type { Command, Io } from './command.ts'
 import { demoSkidFile, toolVersion, webRoot } from './install.ts'
+import { storeOptions, tellSigning } from './key-folder.ts'
 import { readOptions, usage, wholeIn } from './options.ts'
 import { startServing, type Watched } from './serving.ts'
 
 const defaultPort = 8460
 
-const help = `Usage: clearbore serve [--skid FILE]… [--follow LOG.csv]… [--data DIR] [--port N] [--host H] [--speed N] [--start T]
+const help = `Usage: clearbore serve [--skid FILE]… [--follow LOG.csv]… [--data DIR] [--keys DIR] [--port N] [--host H] [--speed N] [--start T]
 
 Watches skids and serves the pages. Without --skid: the demo, the skid "heron" from the simulator, faster than time.
 
@@ -19,6 +20,8 @@ Watches skids and serves the pages. Without --skid: the demo, the skid "heron" f
   --follow LOG.csv  a log that a data logger is still appending to: the first for the first --skid, and so on;
                     a skid without one runs from the simulator, and the pages say so
   --data DIR        where everything is kept (default .clearbore); runs go on there after a restart
+  --keys DIR        where the key lies that signs the record, never in the data folder (default CLEARBORE_KEYS, else
+                    this user's state folder)
   --port N          default ${defaultPort}, or the next free one; with --port exactly that one
   --host H          address to listen on (default 127.0.0.1, this machine only); H is then a name it answers to as well
   --speed N         simulated seconds in a second (default 60)
@@ -60,7 +63,7 @@ export const serveCommand: Command = {
     const { values: v } = readOptions(
       'serve',
       args,
-      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text },
+      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text, keys: text },
       false,
     )
     const follows = v.follow ?? []
@@ -77,7 +80,7 @@ export const serveCommand: Command = {
     const twice = ids.find((id, i) => ids.indexOf(id) !== i)
     if (twice !== undefined) throw usage('serve', `skid '${twice}' is given twice`)
 
-    const store = openStore(v.data ?? '.clearbore')
+    const store = openStore(v.data ?? '.clearbore', storeOptions(io, v.keys))
     try {
       let fail: (error: unknown) => void = () => undefined
       const fatal = new Promise<never>((_, reject) => {
@@ -98,6 +101,7 @@ export const serveCommand: Command = {
         onFatal: fail,
       })
       try {
+        await tellSigning(io, store.trail.signing())
         await io.out(greeting(serving.url, watched, serving.port === port || port === 0 ? null : port, webRoot() !== null))
         await Promise.race([aborted(io), fatal])
       } finally {

@@ -9,8 +9,10 @@ export interface Signing {
   /** The public key in hex and its fingerprint; null where heads are not signed. */
   readonly key: string | null
   readonly fingerprint: string | null
-  /** Why heads are not signed, or that the key is new; null on an ordinary day. */
-  readonly notice: string | null
+  /** Where a key was made at this opening. */
+  readonly madeIn: string | null
+  /** Why heads are not signed, or what is wrong with them; null on an ordinary day. */
+  readonly trouble: string | null
 }
 
 const sealMs = 60_000
@@ -33,7 +35,8 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
     .pluck()
   let folder: KeyFolder | null = null
   let signer: Signer | null = null
-  let notice: string | null = 'heads are not signed: no folder for keys was given'
+  let madeIn: string | null = null
+  let trouble: string | null = 'heads are not signed: no folder for keys was given'
   let sealedAt = Number.NEGATIVE_INFINITY
 
   /** What the folder remembers must be in the store; where it is not, that becomes part of the record. */
@@ -43,7 +46,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
     const found = hashAt.get(anchor.count - 1)?.toString('hex') ?? 'none'
     if (found === anchor.head) return
     ledger.site({ kind: 'break', signed: { count: anchor.count, head: anchor.head }, found })
-    notice = `this store is not the one that was signed last: record ${anchor.count - 1} of the site's chain ${found === 'none' ? 'is missing' : 'is another'}`
+    trouble = `this store is not the one that was signed last: record ${anchor.count - 1} of the site's chain ${found === 'none' ? 'is missing' : 'is another'}`
   }
 
   return {
@@ -56,11 +59,13 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
         const before = lastKey.get()
         if (signer === null && !isReader) {
           signer = folder.make()
-          notice = `new key: public key ${signer.key}, fingerprint ${signer.fingerprint}, kept in ${dir}${before === undefined ? '' : '; the key that signed before was not there'}`
-        } else notice = signer === null ? `heads are not signed: the key of this store is not in ${dir}` : null
+          madeIn = dir
+          trouble =
+            before === undefined ? null : `the key that signed this store before is not in ${dir}; a new one signs from here on`
+        } else trouble = signer === null ? `heads are not signed: the key of this store is not in ${dir}` : null
       } catch (error) {
         signer = null
-        notice = `heads are not signed: ${(error as Error).message}`
+        trouble = `heads are not signed: ${(error as Error).message}`
         return
       }
       if (isReader || signer === null) return
@@ -94,7 +99,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
       try {
         folder.remember(anchor)
       } catch (error) {
-        notice = `the last signed head cannot be kept beside the key: ${(error as Error).message}`
+        trouble = `the last signed head cannot be kept beside the key: ${(error as Error).message}`
       }
     },
     /** The next call of `seal` signs, however short ago the last was. */
@@ -103,7 +108,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
     },
     signer: (): Signer | null => signer,
     signing: (): Signing => ({
-      store: ledger.store(), key: signer?.key ?? null, fingerprint: signer?.fingerprint ?? null, notice,
+      store: ledger.store(), key: signer?.key ?? null, fingerprint: signer?.fingerprint ?? null, madeIn, trouble,
     }), // biome-ignore format: a list
   }
 }
