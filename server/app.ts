@@ -8,6 +8,7 @@ import Fastify from 'fastify'
 import { problemReplies } from './http/error-reply.ts'
 import { exportRoutes } from './http/exports.ts'
 import { createGuard, guardRequests } from './http/guard.ts'
+import { performanceRoutes } from './http/performance.ts'
 import { runRoutes } from './http/runs.ts'
 import { serviceRoutes } from './http/service.ts'
 import type { Services } from './http/services.ts'
@@ -79,6 +80,7 @@ export async function buildApp(o: AppOptions) {
       await scope.register(serviceRoutes, api)
       await scope.register(runRoutes, api)
       await scope.register(exportRoutes, api)
+      await scope.register(performanceRoutes, api)
       await scope.register(uploadRoutes, api)
       scope.get('/openapi.json', { schema: { hide: true } }, async () => app.swagger())
     },

@@ -10,6 +10,7 @@ const statuses: Partial<Record<ErrorCode, number>> = {
   FLUSH_REFUSED: 422,
   TAG_UNKNOWN: 404,
   RUN_UNKNOWN: 404,
+  ALARM_UNKNOWN: 404,
   RUN_ENDED: 409,
   UPLOAD: 400,
   SKID_FILE: 422,

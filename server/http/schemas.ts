@@ -89,7 +89,8 @@ export const runDetailSchema = closed({
 const onsetReport = closed({ at: text, low: text, high: text, level: num })
 export const alarmRowSchema = closed({
   id: num, key: text, kind: oneOf(alarmKinds), priority, segment: textOrNull, tag: textOrNull, state: oneOf(alarmStates), active: flag, needsAck: flag,
-  badInput: flag, raisedMs: num, clearedMs: numOrNull, acknowledgedMs: numOrNull, acknowledgedBy: textOrNull, shelvedUntilMs: numOrNull, value: numOrNull,
+  badInput: flag, raisedMs: num, clearedMs: numOrNull, acknowledgedMs: numOrNull, acknowledgedBy: textOrNull, shelvedUntilMs: numOrNull,
+  aside: maybe(closed({ sinceMs: num, person: textOrNull, logic: textOrNull, reason: textOrNull })), shelveMaxMin: num, value: numOrNull,
   limit: numOrNull, unit: textOrNull, message: text, cause: maybe(oneOf(causes)), onset: maybe(onsetReport), detector: text,
   evidence: closed({ for: texts, against: texts, notExcluded: texts }),
   help: maybe(closed({ title: text, causes: text, consequence: text, check: text, action: text, timeToRespondS: num, review: text })),
@@ -138,6 +139,7 @@ export const liveStateSchema = closed({
     }),
   ),
   alarms: list(alarmRowSchema),
+  flood: maybe(closed({ sinceMs: num, count: num, first: alarmRowSchema })),
   advice: list(closed({ at: text, atMs: num, action: oneOf(actions), segments: texts, reason: text, plan: maybe(flushPlanSchema) })),
 }) // biome-ignore format: a list
 

@@ -1,14 +1,20 @@
 import type { AlarmRecord, AlarmStateName } from '../core/alarms/alarm-state.ts'
+import { defaultPolicy } from '../core/alarms/book.ts'
+import { createFloodWatch, type FloodNow } from '../core/alarms/flood.ts'
 import type { Occurrence } from '../core/alarms/occurrence.ts'
 import type { PipelineEvent } from '../core/pipeline/events.ts'
-import type { AlarmHelp, AlarmRow, TransitionRow } from '../wire/alarm.ts'
+import type { AlarmHelp, AlarmRow, Aside, TransitionRow } from '../wire/alarm.ts'
 
 interface OfKey {
   state: AlarmStateName
   badInput: boolean
-  shelvedUntilMs: number | null
+  /** What puts it aside, by state: more than one may at a time, and the one shown is that of `state`. */
+  aside: Partial<Record<AlarmStateName, Aside & { readonly untilMs: number | null }>>
   latest: number
 }
+/** Inputs that put an alarm aside, and those that end it. */
+const begins: Partial<Record<AlarmRecord['input'], AlarmStateName>> = { shv: 'SHELVED', 'sbd+': 'SBD', 'oos+': 'OOS' }
+const ends: Partial<Record<AlarmRecord['input'], AlarmStateName>> = { uns: 'SHELVED', 'sbd-': 'SBD', 'oos-': 'OOS' }
 
 const owed: ReadonlySet<AlarmStateName> = new Set(['UNACK', 'RTNUN', 'LUNACK'])
 const rank = { high: 0, medium: 1, low: 2 } as const
@@ -21,9 +27,10 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
   const occurrences = new Map<number, Occurrence>()
   const acks = new Map<number, { tMs: number; person: string | null }>()
   const keys = new Map<string, OfKey>()
+  const flood = createFloodWatch()
   let changed = new Set<number>()
   const keyOf = (key: string): OfKey => {
-    const found = keys.get(key) ?? { state: 'NORM', badInput: false, shelvedUntilMs: null, latest: 0 }
+    const found = keys.get(key) ?? { state: 'NORM', badInput: false, aside: {}, latest: 0 }
     keys.set(key, found)
     return found
   }
@@ -32,6 +39,7 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
     const k = keyOf(o.key)
     const isLatest = k.latest === o.id
     const ack = acks.get(o.id)
+    const aside = isLatest ? (k.aside[k.state] ?? null) : null
     return {
       id: o.id,
       key: o.key,
@@ -47,7 +55,9 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
       clearedMs: o.clearedMs,
       acknowledgedMs: ack?.tMs ?? null,
       acknowledgedBy: ack?.person ?? null,
-      shelvedUntilMs: isLatest ? k.shelvedUntilMs : null,
+      shelvedUntilMs: aside?.untilMs ?? null,
+      aside: aside === null ? null : { sinceMs: aside.sinceMs, person: aside.person, logic: aside.logic, reason: aside.reason },
+      shelveMaxMin: defaultPolicy(o.priority).shelveMaxS / 60,
       value: o.value,
       limit: o.limit,
       unit: o.unit,
@@ -73,8 +83,22 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
         const k = keyOf(r.key)
         k.state = r.to
         k.badInput = r.quality === 'bad'
-        if (r.to !== 'SHELVED') k.shelvedUntilMs = null
-        else if (r.input === 'shv' && r.outcome !== 'refused' && r.durationS !== null) k.shelvedUntilMs = r.tMs + r.durationS * 1000
+        if (r.outcome !== 'refused') {
+          const begun = begins[r.input]
+          const ended = ends[r.input] ?? (r.input === 'clr' && r.from === 'SHELVED' && r.to !== 'SHELVED' ? 'SHELVED' : undefined)
+          if (begun !== undefined) {
+            const untilMs = r.durationS === null ? null : r.tMs + r.durationS * 1000
+            k.aside[begun] = {
+              sinceMs: k.aside[begun]?.sinceMs ?? r.tMs,
+              person: r.person,
+              logic: r.logic,
+              reason: r.reason,
+              untilMs,
+            }
+          }
+          if (ended !== undefined) delete k.aside[ended]
+        }
+        if (r.sound && r.alarm !== null) flood.take(r.tMs, r.alarm)
         if (r.input === 'ack' && r.outcome === 'moved' && r.alarm !== null) acks.set(r.alarm, { tMs: r.tMs, person: r.person })
         if (r.alarm !== null) changed.add(r.alarm)
       }
@@ -87,6 +111,12 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
         .filter((o) => keyOf(o.key).latest === o.id && keyOf(o.key).state !== 'NORM')
         .sort((a, b) => a.id - b.id)
         .map(row),
+    /** The flood at a moment with its first alarm as it stands now; null where there is none. */
+    flood(atMs: number): (FloodNow & { readonly first: AlarmRow }) | null {
+      const now = flood.now(atMs)
+      const first = now === null ? undefined : occurrences.get(now.firstAlarm)
+      return now === null || first === undefined ? null : { ...now, first: row(first) }
+    },
     /** Occurrences that changed since the last call. */
     changes(): AlarmRow[] {
       const out = [...changed].sort((a, b) => a - b).flatMap((id) => (occurrences.has(id) ? [row(occurrences.get(id)!)] : []))

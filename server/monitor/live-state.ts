@@ -6,7 +6,7 @@ import type { AlarmRow } from '../wire/alarm.ts'
 import type { AdviceState, DataState, LiveState, RunMode, ScanComb, SegmentState, TagState } from '../wire/live.ts'
 import type { RunClock } from '../wire/service.ts'
 import type { Marks } from '../wire/trend.ts'
-import { mostUrgent } from './alarm-log.ts'
+import { type AlarmLog, mostUrgent } from './alarm-log.ts'
 import type { Engine } from './engine.ts'
 import type { StepRow } from './step-log.ts'
 
@@ -24,6 +24,7 @@ export interface StateParts {
   readonly limits: readonly Readonly<Record<LimitName, number | null>>[]
   readonly baselines: readonly (Omit<Marks['baselines'][number], 'segment'> | null)[]
   readonly alarms: readonly AlarmRow[]
+  readonly flood: ReturnType<AlarmLog['flood']>
   readonly advice: readonly AdviceState[]
 }
 
@@ -40,6 +41,7 @@ export function stateOf(p: StateParts): LiveState {
     segments: p.skid.segments.map((_, i) => segmentState(p, i)),
     tags: p.tags,
     alarms: p.alarms,
+    flood: p.flood === null ? null : { sinceMs: p.flood.sinceMs, count: p.flood.count, first: p.flood.first },
     advice: p.advice,
   }
 }
@@ -146,6 +148,7 @@ export function engineState(e: Engine, clock: RunClock, source: DataState['sourc
     limits: view.limits,
     baselines: e.baselines(),
     alarms: e.alarms.standing(),
+    flood: e.alarms.flood(clock.nowMs),
     advice: adviceInForce(e.advice, clock.nowMs),
   })
 }

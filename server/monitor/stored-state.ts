@@ -52,6 +52,7 @@ export function storedState(p: RunParts, atMs: number): LiveState {
           2,
         )
   const seen = lastReadings(p, atMs, scanMs)
+  const alarms = alarmsAt(p, atMs)
   const lastRowMs = seen.lastRowMs
   return stateOf({
     run,
@@ -79,7 +80,8 @@ export function storedState(p: RunParts, atMs: number): LiveState {
     }),
     limits,
     baselines: skid.segments.map((s) => baselines.get(s.id) ?? null),
-    alarms: alarmsAt(p, atMs).standing(),
+    alarms: alarms.standing(),
+    flood: alarms.flood(atMs),
     advice: adviceInForce(advice, atMs),
   })
 }

@@ -56,7 +56,7 @@ export const alarmsJson = (facts: ExportFacts, records: readonly AlarmRecord[], 
       ...facts,
       alarms: rows
         .filter((r) => records.some((t) => t.alarm === r.id))
-        .map(({ help: _, raisedMs, clearedMs, acknowledgedMs, shelvedUntilMs, ...r }) => ({
+        .map(({ help: _, aside: _aside, shelveMaxMin: _max, raisedMs, clearedMs, acknowledgedMs, shelvedUntilMs, ...r }) => ({
           ...r,
           raised: iso(raisedMs),
           cleared: isoOrNull(clearedMs),

@@ -22,6 +22,10 @@ export interface AlarmRow {
   readonly acknowledgedMs: number | null
   readonly acknowledgedBy: string | null
   readonly shelvedUntilMs: number | null
+  /** Why nobody is called though the alarm may be active; null while it is not put aside. */
+  readonly aside: Aside | null
+  /** Longest shelving at once, min; 0: an alarm of this class may not be shelved. */
+  readonly shelveMaxMin: number
   readonly value: number | null
   readonly limit: number | null
   readonly unit: string | null
@@ -36,6 +40,14 @@ export interface AlarmRow {
   }
   /** What the operator may do and should know (ALM-02); null where the tool has no text. */
   readonly help: AlarmHelp | null
+}
+
+/** Shelved or out of service by a person with a reason, or suppressed by a logic with a name. */
+export interface Aside {
+  readonly sinceMs: number
+  readonly person: string | null
+  readonly logic: string | null
+  readonly reason: string | null
 }
 
 export interface AlarmHelp {

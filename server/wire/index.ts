@@ -11,6 +11,9 @@
  *   GET  /api/runs/:run/trends?fromMs&toMs&buckets&tags      Trends
  *   GET  /api/runs/:run/marks                                Marks
  *   GET  /api/runs/:run/alarms                               AlarmRow[]
+ *   GET  /api/runs/:run/alarms/:alarm/before                 AlarmStory: first-out, onset and the 30 min before
+ *   GET  /api/runs/:run/alarm-performance?fromMs&toMs        AlarmPerformance
+ *   GET  /api/runs/:run/hand-over?fromMs&toMs                HandOver
  *   GET  /api/runs/:run/transitions                          TransitionRow[]
  *   GET  /api/runs/:run/acts    POST (ActBody → ActReply)    ActRow[]
  *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
@@ -22,7 +25,9 @@
  */
 export type * from './act.ts'
 export type * from './alarm.ts'
+export type * from './alarm-story.ts'
 export type * from './live.ts'
+export type * from './performance.ts'
 export type * from './run.ts'
 export type * from './service.ts'
 export type * from './skid.ts'

@@ -15,6 +15,8 @@ export interface LiveState {
   readonly tags: readonly TagState[]
   /** Every alarm that is not plainly normal, first raised first. */
   readonly alarms: readonly AlarmRow[]
+  /** More than 10 annunciations in 10 min, until fewer than 5; `first` is the alarm it began with, also when that is over. */
+  readonly flood: { readonly sinceMs: number; readonly count: number; readonly first: AlarmRow } | null
   /** The latest recommendation in force and those beside it, latest first; empty when there is none. */
   readonly advice: readonly AdviceState[]
 }

@@ -183,6 +183,7 @@ export function sceneOf(o: SceneOptions = {}) {
       segments: facts.segments.map((s, i) => segmentAt(s, i, t)),
       tags,
       alarms: o.alarms ?? [],
+      flood: floodOf(o.alarms ?? [], t),
       advice: (o.alarms ?? []).some((a) => a.kind === 'fouling' && a.active)
         ? [
             {
@@ -285,6 +286,14 @@ export function sceneOf(o: SceneOptions = {}) {
   }
   return { facts, detail, row, state: stateAt(endMs), stateAt, trends, marks, service, endMs, hot }
 }
+
+/** The flood that a server would tell of: more than ten of the ten minutes before, with the oldest of them. */
+function floodOf(alarms: readonly AlarmRow[], t: number): LiveState['flood'] {
+  const recent = alarms
+    .filter((a) => a.raisedMs <= t && t - a.raisedMs < 600_000)
+    .sort((a, b) => a.raisedMs - b.raisedMs || a.id - b.id)
+  return recent.length > 10 ? { sinceMs: recent[10]!.raisedMs, count: recent.length, first: recent[0]! } : null
+}
 export type Scene = ReturnType<typeof sceneOf>
 
 export function alarmOf(id: number, more: Partial<AlarmRow> = {}): AlarmRow {
@@ -305,6 +314,8 @@ export function alarmOf(id: number, more: Partial<AlarmRow> = {}): AlarmRow {
     acknowledgedMs: null,
     acknowledgedBy: null,
     shelvedUntilMs: null,
+    aside: null,
+    shelveMaxMin: more.priority === 'high' ? 0 : 30,
     value: 1.08,
     limit: 1,
     unit: 'ratio',

@@ -39,3 +39,41 @@ export function flood(timesMs: readonly number[], toMs: number, { startOver, end
   }
   return floods
 }
+
+/** A flood under way: since when, and the annunciation that it began with. */
+export interface FloodNow {
+  readonly sinceMs: number
+  /** Annunciations from its beginning to now, the ones that began it included. */
+  readonly count: number
+  readonly firstAlarm: number
+}
+
+/**
+ * The same rule as `flood`, one annunciation after the other in rising order, for a screen. The first alarm is the oldest one of the window that
+ * made the flood, and it stays that until the flood ends, also when it has left the window or is over.
+ */
+export function createFloodWatch({ startOver, endUnder, windowMs } = floodDefaults) {
+  let recent: { readonly tMs: number; readonly alarm: number }[] = []
+  let on: FloodNow | null = null
+  function pass(tMs: number): void {
+    if (on !== null) {
+      // Below the end by the moment before this one: one that comes as another leaves is in the window.
+      const left = recent.filter((r) => r.tMs + windowMs > tMs).length + (recent.some((r) => r.tMs + windowMs === tMs) ? 1 : 0)
+      if (left < endUnder) on = null
+    }
+    recent = recent.filter((r) => r.tMs + windowMs > tMs)
+  }
+  return {
+    /** An annunciation of an alarm. */
+    take(tMs: number, alarm: number): void {
+      pass(tMs)
+      recent.push({ tMs, alarm })
+      if (on !== null) on = { ...on, count: on.count + 1 }
+      else if (recent.length > startOver) on = { sinceMs: tMs, count: recent.length, firstAlarm: recent[0]!.alarm }
+    },
+    /** The flood at a moment, null where there is none. */
+    now(tMs: number): FloodNow | null {
+      return on !== null && recent.filter((r) => r.tMs + windowMs > tMs).length < endUnder ? null : on
+    },
+  }
+}
