@@ -1,3 +1,5 @@
+import type { SettingValue } from './settings/flat.ts'
+
 /** The report of `analyse --json`. Times RFC 3339 UTC with milliseconds; null is absent knowledge; additions to the contract are marked. */
 export interface Report {
   readonly report: 1
@@ -30,6 +32,26 @@ export interface RunReport {
   }
   /** Addition: true where the log names no phases and production was inferred. */
   readonly phaseInferred: boolean
+  /** Addition: the settings that were in force, in the order they took effect. */
+  readonly configuration: readonly ConfigurationReport[]
+}
+
+/** A version of the settings, or (version null) a result entered by hand that the calculation uses from then on. */
+export interface ConfigurationReport {
+  /** 0: the skid file of a run without versions of its own. */
+  readonly version: number | null
+  /** When it took effect; null: what the run began with. */
+  readonly from: string | null
+  readonly person: string
+  readonly reason: string
+  readonly changes: readonly SettingReport[]
+}
+export interface SettingReport {
+  readonly path: string
+  readonly unit: string | null
+  /** null is not set. */
+  readonly old: SettingValue
+  readonly new: SettingValue
 }
 
 export interface TagReport {
@@ -258,6 +280,8 @@ export interface AlarmReport {
     readonly against: readonly string[]
     readonly notExcluded: readonly string[]
   }
+  /** Addition: version of the settings in force when it was raised. */
+  readonly configuration: number
 }
 
 export const actions = [

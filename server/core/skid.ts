@@ -15,6 +15,16 @@ export interface Skid {
   readonly segments: readonly SegmentSpec[]
   /** Rationalisation fields by alarm kind or `kind:segment`, merged over the defaults of core/alarms. */
   readonly alarms: Readonly<Record<string, Readonly<Record<string, string | number | boolean>>>>
+  /** Suppression by design (ALM-09), by the name of its logic: these alarms are suppressed while the log's phase is one of these. */
+  readonly suppression?: Readonly<Record<string, SuppressionSpec>>
+  /** Sizes of disturbances over the tool's defaults, by name; core/bank/model.ts says what each is. */
+  readonly disturbances?: Readonly<Record<string, number>>
+}
+
+export interface SuppressionSpec {
+  /** Alarm kinds, or `kind:SEGMENT`. */
+  readonly alarms: readonly string[]
+  readonly phases: readonly string[]
 }
 
 /** How one logger writes. `files` is a glob on the file's name; null fits every file. `time` names one or two columns. */
@@ -116,4 +126,6 @@ export interface SegmentSpec {
   readonly warmUpKPerMin: number | null
   readonly limits: LimitsSpec
   readonly reaction: { readonly limitingStream: string; readonly concentrationMolL: number; readonly enthalpyKJMol: number } | null
+  /** The version of the settings that had its baseline learnt anew; missing where none did. */
+  readonly baselineVersion?: number
 }

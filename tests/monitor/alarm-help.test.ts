@@ -24,6 +24,7 @@ const alarm = (more: Partial<Occurrence>): Occurrence => ({
   onset: null,
   detector: '',
   evidence: { for: [], against: [], notExcluded: [] },
+  configuration: 0,
   annunciated: true,
   ...more,
 })

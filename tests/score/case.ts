@@ -130,6 +130,7 @@ export const alarm = (kind: AlarmReport['kind'], minutes: number, over: Partial<
   onset: null,
   detector: 'test',
   evidence: { for: [], against: [], notExcluded: [] },
+  configuration: 0,
   ...over,
 })
 
@@ -173,6 +174,7 @@ export function reportWith(
       tags: [],
       rows: { total: 0, late: 0, repeated: 0, outOfOrder: 0, badTime: 0 },
       phaseInferred: false,
+      configuration: [],
     },
     segments: [
       {

@@ -33,6 +33,8 @@ export interface BookState {
 
 export interface BookConfig {
   readonly configVersion: string
+  /** The same as a number, for occurrences. */
+  readonly version?: number
   /** What the class of an alarm allows; `defaultPolicy` unless the rationalisation says otherwise. */
   readonly policyOf?: (key: string, priority: Priority) => Policy
   /** Re-annunciate an acknowledged alarm still active after so long, s; off by default. */
@@ -138,7 +140,7 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
           // Priority and class are those of the occurrence: a later, more urgent one may outrank an earlier one.
           entry.priority = s.priority
           entry.policy = policyOf(s.key, s.priority)
-          change(entry, 'raised', s.tMs, raise(s, state.nextId++, !isSuppressed(entry.machine)))
+          change(entry, 'raised', s.tMs, raise(s, state.nextId++, !isSuppressed(entry.machine), config.version ?? 0))
         }
         put(s.key, entry, { kind }, s.tMs, s)
         if (kind === 'clr' && entry.occurrence !== null) change(entry, 'cleared', s.tMs, { ...entry.occurrence, clearedMs: s.tMs })
@@ -156,6 +158,11 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
 
     /** What a person asks of an alarm, by its id. Returns the records it left, a refusal with its reason included. Other acts leave none. */
     act(act: Act): AlarmRecord[] {
+      if (act.kind === 'out-of-service' || act.kind === 'in-service') {
+        const kind = act.kind === 'out-of-service' ? 'oos+' : 'oos-'
+        // Out of service before it ever alarmed: its priority is that of its first signal.
+        return put(act.key, entryOf(act.key, 'medium'), { kind, person: act.person, reason: act.reason }, act.tMs, none)
+      }
       if (act.kind === 'comment' ? act.alarm === null : !('alarm' in act)) return []
       const id = (act as { alarm: number }).alarm
       const found = [...entries].find(([, e]) => e.occurrence?.id === id)
@@ -166,6 +173,17 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
         return [made]
       }
       const [key, entry] = found
+      if (act.kind === 'reset' && act.reason !== undefined && act.reason.trim().length < entry.policy.reasonMin) {
+        const made = note(
+          config.configVersion,
+          act,
+          id,
+          found,
+          `a reason of at least ${entry.policy.reasonMin} characters is required`,
+        )
+        records.push(made)
+        return [made]
+      }
       const input = inputOf(act)
       return input === null ? [] : put(key, entry, input, act.tMs, none)
     },
@@ -178,9 +196,15 @@ export function createBook(config: BookConfig, from: BookState = { nextId: 1, en
       }
     },
 
-    /** Out of service for maintenance and back, by an authorised person with a reason. */
-    outOfService(key: string, priority: Priority, on: boolean, person: string, reason: string, tMs: number): AlarmRecord[] {
-      return put(key, entryOf(key, priority), { kind: on ? 'oos+' : 'oos-', person, reason }, tMs, none)
+    /** Suppression by design of every alarm the book holds: `by` names the logic that holds for one now, null for none. */
+    design(by: (kind: string, segment: string | null) => string | null, tMs: number): void {
+      for (const [key, entry] of entries) {
+        const [kind = '', segment = null] = key.split(':')
+        const logic = by(entry.occurrence?.kind ?? kind, entry.occurrence === null ? segment : entry.occurrence.segment)
+        const { sbd } = entry.machine
+        if (logic !== null && sbd === null) put(key, entry, { kind: 'sbd+', logic }, tMs, none)
+        if (logic === null && sbd !== null) put(key, entry, { kind: 'sbd-', logic: sbd }, tMs, none)
+      }
     },
 
     /** The clock: shelves that have run out, re-alarms that are due. Delays wait for readings. */
@@ -255,7 +279,7 @@ function inputOf(act: Act): Input | null {
     case 'acknowledge':
       return { kind: 'ack', person: act.person }
     case 'reset':
-      return { kind: 'rst', person: act.person }
+      return { kind: 'rst', person: act.person, ...(act.reason === undefined ? {} : { reason: act.reason }) }
     case 'shelve':
       return { kind: 'shv', person: act.person, reason: act.reason, durationS: act.minutes * 60 }
     case 'unshelve':

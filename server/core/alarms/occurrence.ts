@@ -42,8 +42,8 @@ export interface AlarmChange {
   readonly occurrence: Occurrence
 }
 
-/** The occurrence that a signal begins. */
-export function raise(s: Signal, id: number, annunciated: boolean): Occurrence {
+/** The occurrence that a signal begins, with the version of the settings in force. */
+export function raise(s: Signal, id: number, annunciated: boolean, configuration: number): Occurrence {
   const { key, kind, priority, segment, tag, value, limit, unit, cause, onset, detector, evidence } = s
   const message = typeof s.message === 'string' ? s.message : s.message()
   return {
@@ -63,6 +63,7 @@ export function raise(s: Signal, id: number, annunciated: boolean): Occurrence {
     onset,
     detector,
     evidence,
+    configuration,
     annunciated,
   }
 }

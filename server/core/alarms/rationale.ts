@@ -85,7 +85,7 @@ export function rationale(
   const names = alarm === base.kind ? [base.kind] : [base.kind, alarm]
   for (const key of segment === null ? names : [...names, ...names.map((n) => `${n}:${segment}`)]) {
     const over = Object.hasOwn(overrides, key) ? overrides[key] : undefined
-    for (const [field, value] of Object.entries(over ?? {})) given[field] = checked(key, field, value)
+    for (const [field, value] of Object.entries(over ?? {})) given[field] = checkAlarmField(key, field, value)
   }
   const timeToRespondSeconds = (given['timeToRespondSeconds'] ?? base.timeToRespondS) as number
   const severity = (given['severity'] ?? base.severity) as Severity
@@ -121,7 +121,8 @@ export function rationale(
   }
 }
 
-function checked(key: string, field: string, value: string | number | boolean): string | number | boolean {
+/** One field of an alarm's rationalisation as given. Errors: CONFIG_RANGE for an unknown field, a wrong type, a value out of range or empty. */
+export function checkAlarmField(key: string, field: string, value: string | number | boolean): string | number | boolean {
   const at = `alarms.${key}.${field}`
   if (!Object.hasOwn(rationaleFields, field)) {
     throw new MonitorError('CONFIG_RANGE', `${at} is not a field of an alarm`, {

@@ -284,6 +284,25 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState, 
     charts: (i: number): ChartReading | null =>
       watch[i]!.charts === null ? null : readCharts(watch[i]!.charts!, promise.riseToFindPct),
 
+    /** A person has it that a segment is clean and unlike before (a new filter, a baseline to be learnt anew): its level only begins anew. */
+    anew(i: number): WatchEvent[] {
+      const events: WatchEvent[] = []
+      clear(i, 'fell back', events)
+      bank.readmit(i, true)
+      const w = watch[i]!
+      w.recent = []
+      w.baselined = false
+      w.charts = null
+      w.window = { dpPa: [], flow: [], tempK: [], fromMs: 0 }
+      return events
+    },
+    /** The promise has changed: the charts begin anew by it, from where they stood. */
+    redesign(): void {
+      watch.forEach((w, i) => {
+        if (w.charts !== null) w.charts = startCharts(promise, layout.segments.length, noiseOf(i), w.charts.zeroLn)
+      })
+    },
+
     step(step: Step, limits: readonly ({ name: LimitName; pa: number } | null)[]): WatchStep {
       const m = mode.step(step)
       const events: WatchEvent[] = []

@@ -19,6 +19,7 @@ import type {
   TagReport,
   TimelinePoint,
 } from '../report.ts'
+import { settingUnit } from '../settings/words.ts'
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, m3sFromMlMin, mlMinFromM3s } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
@@ -93,7 +94,7 @@ export function createCollector(skid: Skid) {
 
     report(pipeline: Pipeline, extraNotes: readonly string[] = []): Report {
       const view = pipeline.view()
-      const g = view.grid
+      const { grid: g, skid } = view
       const tags = skid.tags.map((t, i): TagReport => {
         const count = { good: 0, uncertain: 0, bad: 0 }
         const why: Record<string, number> = {}
@@ -146,6 +147,13 @@ export function createCollector(skid: Skid) {
           tags,
           rows: { total: g.rows, late: g.lateRows, repeated: g.repeated, outOfOrder: g.outOfOrder, badTime: g.badTime },
           phaseInferred: view.inferred,
+          configuration: view.configuration.applied.map(({ version, fromMs, person, reason, changes }) => ({
+            version,
+            from: fromMs < 0 ? null : iso(fromMs),
+            person,
+            reason,
+            changes: changes.map((c) => ({ path: c.path, unit: settingUnit(skid, c.path), old: c.old, new: c.new })),
+          })),
         },
         segments,
         alarms: [...alarms.values()].sort((a, b) => a.id - b.id).map(alarmReport),

@@ -4,6 +4,7 @@ import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
 import type { Interval } from '../growth/points.ts'
 import type { AdviceReport } from '../report.ts'
 import type { Act } from '../sequence.ts'
+import type { Applied } from '../settings/configuration.ts'
 
 /** What the pipeline says while the sequence goes through it, in order. Shells store, publish and fold these; they add nothing. */
 export type PipelineEvent =
@@ -15,6 +16,10 @@ export type PipelineEvent =
   | { readonly kind: 'timeline'; readonly tMs: number; readonly points: readonly TimelineEntry[] }
   | { readonly kind: 'note'; readonly tMs: number; readonly text: string }
   | { readonly kind: 'act'; readonly act: Act }
+  /** A version of the settings, or a result entered by hand, has taken effect. */
+  | { readonly kind: 'configuration'; readonly tMs: number; readonly applied: Applied }
+  /** Logic that suppresses alarms by design began or ended to hold. */
+  | { readonly kind: 'suppression'; readonly tMs: number; readonly logic: string; readonly on: boolean }
   | {
       readonly kind: 'step'
       readonly tMs: number

@@ -1,7 +1,8 @@
 import { type AdviserState, createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
 import { type BookState, createBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
-import type { BankSettings } from '../bank/bank-state.ts'
+import { createSuppression, type SuppressionState } from '../alarms/suppression.ts'
+import { type BankSettings, bankSettings } from '../bank/bank-state.ts'
 import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import { layoutOf } from '../derive/layout.ts'
 import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'
@@ -11,7 +12,9 @@ import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } fr
 import { createPresent, type PresentState } from '../insight/present.ts'
 import type { RowBlock } from '../reading.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
-import type { Act, Entry, LimitName } from '../sequence.ts'
+import { type Act, type Entry, type LimitName, limitNames } from '../sequence.ts'
+import { type ConfigurationState, createConfiguration, type Took } from '../settings/configuration.ts'
+import { filterChanged, waterResult } from '../settings/hand-events.ts'
 import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
 import { createInstruments, type InstrumentState } from '../signals/instruments.ts'
 import { createLimits, type LimitTable, limitsOf } from '../signals/limits.ts'
@@ -33,7 +36,11 @@ export interface PipelineState {
   adviser: AdviserState
   /** Missing in a state of an older build: learnt anew. */
   present?: PresentState
-  limits: LimitTable
+  /** Missing in a state of an older build, which had the limits alone. */
+  configuration?: ConfigurationState
+  suppression?: SuppressionState
+  /** Of an older build: the limits as people had changed them. */
+  limits?: LimitTable
   /** Alarms that clear by themselves at a time. */
   timed: { key: string; untilMs: number }[]
   timelineN: number
@@ -48,7 +55,6 @@ export interface PipelineState {
 export interface PipelineOptions {
   /** Each closed scan, for live screens; the object is reused. */
   readonly onScan?: (scan: Scan, tMs: number) => void
-  readonly configVersion?: string
   /** From an accepted step test; a saved state has it already. */
   readonly known?: readonly StartingKnowledge[]
   /** Other sizes and explanations than the defaults, to see what each is worth. */
@@ -76,27 +82,45 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   const stepMs = stepScans(skid.scanSeconds) * scanMs
   let events: PipelineEvent[] = []
 
-  const site = siteRules(skid)
-  const book = createBook({ configVersion: options.configVersion ?? skid.skid, policyOf: site.policyOf }, saved?.book)
-  const watch = createWatch(layout, stepMs, saved?.watch, options)
+  const configuration = createConfiguration(
+    skid,
+    saved === undefined ? undefined : (saved.configuration ?? withLimits(skid, saved.limits)),
+  )
   const instruments = createInstruments(layout, saved?.instruments)
   const present = createPresent(layout, saved?.present)
   const adviser = createAdviser(saved?.adviser, (segment, ratios) =>
     planFlush({
-      // Limits as they stand now, a person may have changed them.
-      skid: {
-        ...skid,
-        segments: skid.segments.map((g, i) => ({ ...g, limits: { ...g.limits, dpHighBar: limits[i]!.dpHighBar } })),
-      },
+      skid: configuration.skid(),
       segments: [segment],
       ratios,
       given: present.forFlush(layout.segments.findIndex((g) => g.spec.id === segment)),
     }),
   )
-  const limits: LimitTable = saved?.limits ?? limitsOf(layout)
-  const excursions = createExcursions(layout, limits, book.hears, saved?.excursions)
-  const limitChecks = createLimits(layout, limits, book.hears, site)
-  const fouled = (i: number): boolean => watch.segment(i).growth !== null
+
+  /** The stages that settings reach, by the configuration in force; a change has them go on from their state as after a restart. */
+  function stages(of: Partial<Pick<PipelineState, 'book' | 'watch' | 'excursions' | 'suppression'>>) {
+    const inForce = configuration.skid()
+    const laid = layoutOf(inForce)
+    const site = siteRules(inForce)
+    const version = configuration.version()
+    const book = createBook({ configVersion: `${skid.skid}/${version}`, version, policyOf: site.policyOf }, of.book)
+    const limits: LimitTable = limitsOf(laid)
+    const sizes = options.bank ?? bankSettings
+    const bank =
+      inForce.disturbances === undefined ? sizes : { ...sizes, disturbances: { ...sizes.disturbances, ...inForce.disturbances } }
+    return {
+      layout: laid,
+      site,
+      book,
+      limits,
+      watch: createWatch(laid, stepMs, of.watch, { ...options, bank }),
+      excursions: createExcursions(laid, limits, book.hears, of.excursions),
+      limitChecks: createLimits(laid, limits, book.hears, site),
+      suppression: createSuppression(inForce, of.suppression),
+    }
+  }
+  let on = stages(saved ?? {})
+  const fouled = (i: number): boolean => on.watch.segment(i).growth !== null
   const s = {
     timed: saved?.timed ?? [],
     timelineN: saved?.timelineN ?? 0,
@@ -115,12 +139,17 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       id: g.spec.id,
       kind: g.spec.kind,
       ratio: s.ratio[i] ?? null,
-      growth: watch.segment(i).growth,
+      growth: on.watch.segment(i).growth,
     }))
-  const signal = (x: Signal) => book.signal(site.apply(x))
+  const signal = (x: Signal) => {
+    const logic = x.over === true ? on.suppression.by(x.kind, x.segment) : null
+    const signalled = on.site.apply(x)
+    if (logic !== null) on.book.suppress(x.key, signalled.priority, logic, true, x.tMs)
+    on.book.signal(signalled)
+  }
 
   function drainBook(): void {
-    const { changes, records } = book.drain()
+    const { changes, records } = on.book.drain()
     for (const change of changes) {
       events.push({ kind: 'alarm', change })
       for (const advice of adviser.raised(change, forAdvice())) events.push({ kind: 'advice', tMs: change.tMs, advice })
@@ -130,13 +159,15 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   function onScan(scan: Scan): void {
     const endMs = scan.tMs + scanMs
+    tookEffect(configuration.due(scan.tMs), scan.tMs)
+    suppress(scan, endMs)
     stepper.scan(scan)
     const silent = instruments.scan(scan, endMs, grid.state, signal)
-    limitChecks.scan(scan, endMs, { production: s.production, silent, fouled }, signal)
-    excursions.scan(scan, endMs, { production: s.production, armed: s.armed }, signal)
+    on.limitChecks.scan(scan, endMs, { production: s.production, silent, fouled }, signal)
+    on.excursions.scan(scan, endMs, { production: s.production, armed: s.armed }, signal)
     for (const t of s.timed) if (endMs >= t.untilMs) end(t.key, endMs)
     if (s.timed.length > 0) s.timed = s.timed.filter((t) => endMs < t.untilMs)
-    book.tick(endMs)
+    on.book.tick(endMs)
     drainBook()
     timeline(endMs)
     options.onScan?.(scan, endMs)
@@ -144,9 +175,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   function onStep(step: Step): void {
     const endMs = step.tMs + stepMs / 2
-    const out = watch.step(
+    const out = on.watch.step(
       step,
-      layout.segments.map((_, i) => highestDp(limits, i)),
+      layout.segments.map((_, i) => highestDp(on.limits, i)),
     )
     if (out.mode.production !== s.production) {
       s.production = out.mode.production
@@ -180,7 +211,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function onWatch(e: WatchEvent, tMs: number): void {
     switch (e.kind) {
       case 'bank':
-        tell(verdictSaid(layout, e.event, e.onset, e.ratio, tMs, watch.charts), tMs)
+        tell(verdictSaid(layout, e.event, e.onset, e.ratio, tMs, on.watch.charts), tMs)
         return
       case 'creep':
         tell(creepSaid(layout, e, tMs), tMs)
@@ -216,7 +247,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   /** The condition of an alarm without a value of its own is over. */
   function end(key: string, tMs: number): void {
-    if (!book.isActive(key)) return
+    if (!on.book.isActive(key)) return
     signal({
       key,
       tMs,
@@ -255,19 +286,62 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         points: layout.segments.map((g, i) => ({
           segment: g.spec.id,
           ratio: fresh ? (s.ratio[i] ?? null) : null,
-          forecast: fresh ? (watch.segment(i).growth?.forecast ?? null) : null,
+          forecast: fresh ? (on.watch.segment(i).growth?.forecast ?? null) : null,
         })),
       })
       s.timelineN++
     }
   }
 
+  function suppress(scan: Scan, tMs: number): void {
+    const changed = on.suppression.scan(scan)
+    for (const { logic, on } of changed) events.push({ kind: 'suppression', tMs, logic, on })
+    if (changed.length > 0) on.book.design(on.suppression.by, tMs)
+  }
+
+  /** Settings have taken effect: the stages go on with them. */
+  function tookEffect(took: readonly Took[], tMs: number): void {
+    if (took.length === 0) return
+    on = stages({
+      book: on.book.state(),
+      watch: on.watch.save(),
+      excursions: on.excursions.state(),
+      suppression: on.suppression.state,
+    })
+    const paths = took.flatMap(({ applied }) => applied.changes.map((c) => c.path))
+    if (paths.some((p) => p.startsWith('detection.'))) on.watch.redesign()
+    for (const { applied, left } of took) {
+      events.push({ kind: 'configuration', tMs, applied })
+      for (const text of left) events.push({ kind: 'note', tMs, text: `not changed: ${text}` })
+    }
+    layout.segments.forEach((g, i) => {
+      if (paths.includes(`segments.${g.spec.id}.baselineVersion`)) anew(i, tMs)
+    })
+    on.book.design(on.suppression.by, tMs)
+  }
+
+  function anew(segment: number, tMs: number): void {
+    for (const e of on.watch.anew(segment)) onWatch(e, tMs)
+  }
+
   function onAct(act: Act): void {
     events.push({ kind: 'act', act })
-    if (act.kind === 'limit') {
-      const i = layout.segments.findIndex((g) => g.spec.id === act.segment)
-      if (i >= 0) limits[i]![act.limit] = act.value
-    } else book.act(act)
+    const atMs = grid.state.firstMs < 0 ? -1 : act.tMs
+    if (act.kind === 'settings' || act.kind === 'limit') tookEffect(configuration.take(act, atMs), act.tMs)
+    else if (act.kind === 'event') {
+      const water = waterResult(configuration.skid(), act)
+      const old = configuration.skid().streams.find((x) => x.id === water?.stream)?.waterPpm ?? null
+      if (water !== null) {
+        const change = { path: `streams.${water.stream}.waterPpm`, old, new: water.ppm }
+        tookEffect([configuration.enter(change, act.person, act.event, atMs)], act.tMs)
+      }
+      const filter = filterChanged(configuration.skid(), act)
+      if (filter !== null)
+        anew(
+          layout.segments.findIndex((g) => g.spec.id === filter),
+          act.tMs,
+        )
+    } else on.book.act(act)
     drainBook()
   }
 
@@ -302,24 +376,28 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       production: s.production,
       inferred: s.inferred,
       ratio: s.ratio,
-      limits,
-      segment: watch.segment,
-      learned: watch.learned,
+      /** The configuration in force, and how it came about. */
+      skid: configuration.skid(),
+      configuration: configuration.state,
+      limits: on.limits,
+      segment: on.watch.segment,
+      learned: on.watch.learned,
       present,
-      alarms: book.rows(),
+      alarms: on.book.rows(),
     }),
     save: (): PipelineState =>
       structuredClone({
         version: 1 as const,
         grid: grid.state,
         stepper: stepper.state,
-        watch: watch.save(),
-        book: book.state(),
+        watch: on.watch.save(),
+        book: on.book.state(),
         instruments: instruments.state,
-        excursions: excursions.state(),
+        excursions: on.excursions.state(),
         adviser: adviser.state,
         present: present.state,
-        limits,
+        configuration: configuration.state,
+        suppression: on.suppression.state,
         ...s,
       }),
   }
@@ -331,6 +409,26 @@ function highestDp(limits: LimitTable, i: number): { name: LimitName; pa: number
   if (high !== null) return { name: 'dpHighBar', pa: paFromBar(high) }
   const highHigh = limits[i]!.dpHighHighBar
   return highHigh === null ? null : { name: 'dpHighHighBar', pa: paFromBar(highHigh) }
+}
+
+/** What people had changed in a state that kept the limits alone. */
+function withLimits(skid: Skid, limits: LimitTable | undefined): ConfigurationState | undefined {
+  if (limits === undefined) return undefined
+  const changes = skid.segments.flatMap((g, i) =>
+    limitNames.flatMap((name) => {
+      const [old, now] = [g.limits[name], limits[i]?.[name] ?? null]
+      return old === now ? [] : [{ path: `segments.${g.id}.limits.${name}`, old, new: now }]
+    }),
+  )
+  const file = { version: 0, fromMs: -1, person: 'file', reason: 'the skid file as given', changes: [] }
+  const changed = {
+    version: 1,
+    fromMs: 0,
+    person: 'not known',
+    reason: 'limits changed with an earlier version of the tool',
+    changes,
+  }
+  return { applied: changes.length === 0 ? [file] : [file, changed], planned: [] }
 }
 
 export type { ForecastRecord }

@@ -51,6 +51,7 @@ const raised = (over: Partial<Occurrence>): AlarmChange => ({
     onset: null,
     detector: 'growth likelihood',
     evidence: { for: [], against: [], notExcluded: [] },
+    configuration: 0,
     annunciated: true,
     ...over,
   },

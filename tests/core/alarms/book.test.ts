@@ -70,6 +70,7 @@ describe('the alarm book of a run', () => {
       onset: null,
       detector: 'limit',
       evidence: { for: [], against: [], notExcluded: [] },
+      configuration: 0,
     })
     expect(book.drain()).toEqual({ changes: [], records: [] })
   })

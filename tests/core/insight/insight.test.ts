@@ -164,6 +164,7 @@ describe('the whole picture', () => {
     onset: null,
     detector: '',
     evidence: { for: [], against: [], notExcluded: [] },
+    configuration: 0,
     annunciated: true,
   }
   const draw = (over: Partial<Parameters<typeof insightOf>[0]> = {}) =>
