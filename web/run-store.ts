@@ -26,8 +26,14 @@ export async function loadRun(run: number, signal?: AbortSignal): Promise<RunDat
 /** Tags that trends draw: all with a unit. */
 const trendTags = (data: RunData): string[] => data.detail.skidFacts.tags.filter((t) => t.unit !== null).map((t) => t.tag)
 
-/** Fetches a window of every trend and puts it in place of what was there; live points after its end stay. */
-export async function fetchWindow(data: RunData, fromMs: number, toMs: number, signal?: AbortSignal): Promise<void> {
+/** Fetches a window of every trend and puts it in place of what was there; live points after its end stay unless told otherwise. */
+export async function fetchWindow(
+  data: RunData,
+  fromMs: number,
+  toMs: number,
+  signal?: AbortSignal,
+  keepLater = true,
+): Promise<void> {
   const span = Math.max(1000, Math.ceil(toMs) - Math.floor(fromMs))
   const n = Math.max(1, Math.min(buckets, Math.floor(span / (1000 * data.detail.skidFacts.scanSeconds))))
   const query = new URLSearchParams({
@@ -37,7 +43,7 @@ export async function fetchWindow(data: RunData, fromMs: number, toMs: number, s
     tags: trendTags(data).join(','),
   })
   const t = await getJson<Trends>(`/api/runs/${data.detail.run}/trends?${query}`, signal)
-  putTrends(data, t)
+  putTrends(data, t, keepLater)
   data.window.fromMs = fromMs
   data.window.toMs = toMs
 }

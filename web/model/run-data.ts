@@ -45,13 +45,13 @@ export function emptyRun(detail: RunDetail, marks: Marks): RunData {
   }
 }
 
-/** Puts a fetched window in place of what the series held; live points after its end stay. */
-export function putTrends(data: RunData, t: Trends): void {
+/** Puts a fetched window in place of what the series held; live points after its end stay, unless the window lies in the past and they would grow unseen. */
+export function putTrends(data: RunData, t: Trends, keepLater = true): void {
   const end = t.fromMs + t.buckets * t.bucketMs
   const put = (series: GrowingSeries | undefined, band: Band) => {
     if (series === undefined) return
     series.spacing(t.bucketMs)
-    const later = series.points().filter((p) => p.x >= end)
+    const later = keepLater ? series.points().filter((p) => p.x >= end) : []
     const points: Point[] = band.mean.map((y, i) => ({
       x: t.fromMs + (i + 0.5) * t.bucketMs,
       y,

@@ -3,11 +3,13 @@ import { getJson, said } from '../api.ts'
 import { asAt } from '../model/alarm-list.ts'
 import { answersOf } from '../model/answers.ts'
 import { duration, fixed } from '../model/format.ts'
+import { type Look, panned, within, zoomed } from '../model/look.ts'
 import type { RunData } from '../model/run-data.ts'
 import { fetchWindow } from '../run-store.ts'
 import { alarmsView } from './alarms.ts'
 import { el, say } from './dom.ts'
 import { clamp } from './pen.ts'
+import { trendHands } from './trend-hands.ts'
 import { trendsView } from './trends.ts'
 import type { Shell } from './watch.ts'
 
@@ -19,7 +21,7 @@ export function replayView(data: RunData, shell: Shell) {
   const facts = detail.skidFacts
   const first = detail.fromMs ?? 0
   const last = Math.max(detail.toMs ?? first, first + leastSpanMs)
-  let window = { fromMs: first, toMs: last }
+  let window: Look = { fromMs: first, toMs: last }
   let atMs = last
   let state: LiveState | null = null
   let all: readonly AlarmRow[] = []
@@ -93,63 +95,34 @@ export function replayView(data: RunData, shell: Shell) {
   node.dataset['page'] = 'replay'
 
   slider.addEventListener('input', () => seek(first + ((last - first) * Number(slider.value)) / 1000))
-  trends.canvas.addEventListener('keydown', (event) => {
-    const keys: Record<string, () => void> = {
-      ArrowLeft: () => pan(-0.15),
-      ArrowRight: () => pan(0.15),
-      '+': () => zoom(0.5),
-      '=': () => zoom(0.5),
-      '-': () => zoom(2),
+  trendHands(trends.canvas, {
+    now: () => window,
+    look: (l) => look(l.fromMs, l.toMs),
+    timeAt: trends.chart.timeAt,
+    about: () => centre(),
+    press: (tMs) => seek(tMs),
+    keys: {
       '0': () => look(first, last),
       Home: () => seek(first),
       End: () => seek(last),
       ',': () => seek(atMs - (window.toMs - window.fromMs) / 100),
       '.': () => seek(atMs + (window.toMs - window.fromMs) / 100),
-    }
-    const run = keys[event.key]
-    if (run === undefined || event.ctrlKey || event.metaKey || event.altKey) return
-    event.preventDefault()
-    run()
-  })
-  trends.canvas.addEventListener(
-    'wheel',
-    (event) => {
-      event.preventDefault()
-      zoom(event.deltaY > 0 ? 1.25 : 0.8, trends.chart.timeAt(event.clientX))
     },
-    { passive: false },
-  )
-  let drag: { x: number; fromMs: number; toMs: number; moved: boolean } | null = null
-  trends.canvas.addEventListener('pointerdown', (event) => {
-    drag = { x: event.clientX, ...window, moved: false }
-    trends.canvas.setPointerCapture(event.pointerId)
-  })
-  trends.canvas.addEventListener('pointermove', (event) => {
-    if (drag === null || Math.abs(event.clientX - drag.x) < 4) return
-    drag.moved = true
-    const perPx = (drag.toMs - drag.fromMs) / Math.max(1, trends.canvas.clientWidth)
-    const by = (drag.x - event.clientX) * perPx
-    look(drag.fromMs + by, drag.toMs + by)
-  })
-  trends.canvas.addEventListener('pointerup', (event) => {
-    if (drag !== null && !drag.moved) seek(trends.chart.timeAt(event.clientX))
-    drag = null
   })
 
+  const centre = (): number => (atMs >= window.fromMs && atMs <= window.toMs ? atMs : (window.fromMs + window.toMs) / 2)
   const pan = (share: number): void => {
-    const by = (window.toMs - window.fromMs) * share
-    look(window.fromMs + by, window.toMs + by)
+    const l = panned(window, share)
+    look(l.fromMs, l.toMs)
   }
-  const zoom = (
-    factor: number,
-    about = atMs >= window.fromMs && atMs <= window.toMs ? atMs : (window.fromMs + window.toMs) / 2,
-  ): void => look(about - (about - window.fromMs) * factor, about + (window.toMs - about) * factor)
+  const zoom = (factor: number): void => {
+    const l = zoomed(window, factor, centre())
+    look(l.fromMs, l.toMs)
+  }
 
   /** Shows a part of the run; never less than a minute, never beyond its ends. */
   function look(fromMs: number, toMs: number): void {
-    const span = clamp(toMs - fromMs, leastSpanMs, last - first)
-    const from = clamp(fromMs, first, last - span)
-    window = { fromMs: from, toMs: from + span }
+    window = within({ fromMs, toMs }, { fromMs: first, toMs: last }, leastSpanMs)
     draw()
     clearTimeout(windowTimer)
     windowTimer = setTimeout(() => void fetchNow(), 120)

@@ -3,6 +3,7 @@ import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { answersOf } from '../model/answers.ts'
 import { adviceInForce } from '../model/in-force.ts'
+import { type Look, within } from '../model/look.ts'
 import { longest, type RunData } from '../model/run-data.ts'
 import { fetchWindow, follow } from '../run-store.ts'
 import { adviceView } from './advice.ts'
@@ -14,6 +15,7 @@ import { lineView } from './line.ts'
 import { liveStrip } from './live-strip.ts'
 import { planView } from './plan.ts'
 import type { cutView, StripState } from './strip.ts'
+import { trendHands } from './trend-hands.ts'
 import { trendsView } from './trends.ts'
 
 export interface Shell {
@@ -27,7 +29,9 @@ export interface Shell {
   needPerson(): boolean
 }
 
+const leastMs = 600_000
 const spans = [
+  { id: '10m', text: '10 min', ms: leastMs },
   { id: '30m', text: '30 min', ms: 1_800_000 },
   { id: '2h', text: '2 h', ms: 7_200_000 },
   { id: '12h', text: '12 h', ms: 43_200_000 },
@@ -39,7 +43,10 @@ const mostPoints = 4000
 export function watchView(data: RunData, feed: Feed, shell: Shell) {
   const facts = data.detail.skidFacts
   const run = data.detail.run
-  let span: (typeof spans)[number] = spans[2]
+  let span: (typeof spans)[number] = spans[3]
+  /** A part of the run that was chosen by hand; null while the page goes along with now. */
+  let chosen: Look | null = null
+  let chosenTimer: ReturnType<typeof setTimeout> | undefined
   let received = 0
   let link: Link = { up: false, heardAt: null, retryInMs: null }
   let planOpen = false
@@ -48,6 +55,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   let fetching = false
   let firstMs = data.detail.fromMs
   let spoken = ''
+  let shownLook: Look = { fromMs: 0, toMs: leastMs }
 
   const answers = answersView()
   const now = nowView()
@@ -110,12 +118,52 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     s,
     b: el('button', { type: 'button', class: 'tab', text: s.text, on: { click: () => choose(s) } }),
   }))
-  fill(tools, ...spanButtons.map((x) => x.b))
+  const back = el('button', {
+    type: 'button',
+    class: 'small',
+    text: 'Back to now',
+    hidden: true,
+    on: {
+      click: () => {
+        choose(span)
+        trends.canvas.focus()
+      },
+    },
+  })
+  fill(tools, back, ...spanButtons.map((x) => x.b))
   function choose(s: (typeof spans)[number]): void {
     span = s
-    for (const x of spanButtons) x.b.setAttribute('aria-pressed', String(x.s === s))
+    chosen = null
+    pressed()
     void refetch()
   }
+  function pressed(): void {
+    back.hidden = chosen === null
+    for (const x of spanButtons) x.b.setAttribute('aria-pressed', String(chosen === null && x.s === span))
+    node.dataset['follows'] = String(chosen === null)
+  }
+  /** A part of the run by hand; the page stays there until it is sent back to now. */
+  function look(next: Look): void {
+    const state = followed.state()
+    if (state === null) return
+    const nowMs = runNow(state)
+    chosen = within(next, { fromMs: Math.min(firstMs ?? nowMs, nowMs - leastMs), toMs: nowMs + 0.4 * leastMs }, leastMs)
+    pressed()
+    charts(state, node.dataset['lead'] || null)
+    clearTimeout(chosenTimer)
+    chosenTimer = setTimeout(() => void refetch(), 150)
+  }
+  trendHands(trends.canvas, {
+    now: () => shownLook,
+    look,
+    timeAt: trends.chart.timeAt,
+    about: () => (shownLook.fromMs + shownLook.toMs) / 2,
+    keys: {
+      '0': () => choose(spans.at(-1)!),
+      End: () => choose(span),
+      Home: () => look({ fromMs: 0, toMs: shownLook.toMs - shownLook.fromMs }),
+    },
+  })
 
   const followed = follow(data, feed, (what) => {
     if (what.state) received = performance.now()
@@ -131,6 +179,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     return state.clock.nowMs + Math.max(0, since)
   }
   const windowOf = (nowMs: number): [number, number] => {
+    if (chosen !== null) return [chosen.fromMs, chosen.toMs]
     // A run opened before its first reading begins where the page first heard of one.
     firstMs ??= followed.state()?.comb.endMs ?? null
     const first = firstMs ?? nowMs
@@ -144,8 +193,9 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     fetching = true
     try {
       const nowMs = runNow(state)
-      const [from] = windowOf(nowMs)
-      await fetchWindow(data, from, state.data.lastRowMs === null ? nowMs : Math.max(state.data.lastRowMs + 1, from + 1000))
+      const [from, to] = windowOf(nowMs)
+      const last = state.data.lastRowMs === null ? nowMs : state.data.lastRowMs + 1
+      await fetchWindow(data, from, Math.max(Math.min(to, last), from + 1000), undefined, to >= last)
       chartDue = performance.now()
       ask()
     } catch {
@@ -202,6 +252,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     const fresh = lastRowMs !== null && state.clock.nowMs - lastRowMs < 10_000 * state.clock.speed
     const atMs = fresh ? lastRowMs : state.clock.nowMs
     const [fromMs, toMs] = windowOf(atMs)
+    shownLook = { fromMs, toMs }
     trends.show({ state, marks: followed.marks(), alarms: state.alarms, fromMs, toMs, atMs, lead })
   }
 
@@ -233,6 +284,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     stop(): void {
       followed.stop()
       clearInterval(tick)
+      clearTimeout(chosenTimer)
       cancelAnimationFrame(frame)
       trends.destroy()
       shell.cut.show(null)
