@@ -37,9 +37,9 @@ export interface NextStep {
 }
 
 /** Steps whose criteria cannot be skipped with a reason: water waits for F1 and F2, cold waits for F4. */
-const hard = new Set(['F1', 'F2', 'F4'])
+export const hardSteps: ReadonlySet<string> = new Set(['F1', 'F2', 'F4'])
 /** A reason of useful length. */
-const reasonLength = 10
+export const reasonLength = 5
 
 const usable = (a: Acceptance): boolean => a.person.trim() !== '' && a.source.trim() !== '' && Number.isFinite(a.tMs)
 
@@ -51,7 +51,7 @@ function open(step: string, criterion: string, accepted: readonly Acceptance[]):
   if (!usable(latest)) return 'record without person, source or time'
   if (latest.verdict === 'failed') return `failed: ${latest.reason ?? 'no reason given'}`
   if (latest.verdict === 'skipped') {
-    if (hard.has(step)) return 'cannot be skipped'
+    if (hardSteps.has(step)) return 'cannot be skipped'
     return (latest.reason ?? '').trim().length >= reasonLength ? null : 'skipped without a reason'
   }
   if (latest.value === null) return 'value missing'
@@ -78,7 +78,7 @@ export function nextStep(plan: FlushPlan, accepted: readonly Acceptance[]): Next
   const index = openBy.findIndex((o) => o.points.length > 0)
   const at = openBy[index] ?? null
   const refused: { step: string; reason: string }[] = []
-  const before = openBy.filter((o) => hard.has(o.step.id) && o.step.id !== 'F4' && o.points.length > 0)
+  const before = openBy.filter((o) => hardSteps.has(o.step.id) && o.step.id !== 'F4' && o.points.length > 0)
   const hasBoth = ['F1', 'F2'].every((id) => plan.steps.some((s) => s.id === id))
   if (!hasBoth) refused.push({ step: 'F3', reason: 'the plan has no displacement or no warm-up: no water' })
   else if (before.length > 0) {
