@@ -7,8 +7,8 @@ import type { ExothermVerdict, ReactorConfig } from '../exotherm/types.ts'
 import { createExothermWatch } from '../exotherm/watch.ts'
 import type { WatchState } from '../exotherm/watch-state.ts'
 import { fluidOf } from '../fluids/fluid.ts'
+import { feedTempK, molPerKg } from '../fluids/reagent.ts'
 import type { Scan } from '../scan/grid.ts'
-import type { StreamSpec } from '../skid.ts'
 import { cFromK } from '../units.ts'
 import type { LimitTable } from './limits.ts'
 
@@ -34,8 +34,6 @@ interface Readings {
   armed: boolean
 }
 
-/** Feeds are metered near room temperature; their density is taken there, K. */
-const feedTempK = 293.15
 const watchedKinds = new Set(['mixer', 'reactor', 'quench'])
 
 /**
@@ -233,8 +231,6 @@ export type Excursions = ReturnType<typeof createExcursions>
 function feedPairs(layout: Layout): Pair[] {
   const { skid } = layout
   const pairs: Pair[] = []
-  const molPerKg = (s: StreamSpec): number | null =>
-    s.reagent === null || s.fluid === null ? null : (1000 * s.reagent.concentrationMolL) / fluidOf(s.fluid).at(feedTempK).rhoKgM3
   const add = (of: readonly [string, string], segment: string, limits: Pair['limits']): void => {
     if (pairs.some((p) => p.of.includes(of[0]) && p.of.includes(of[1]))) return
     const streams = [skid.streams.findIndex((s) => s.id === of[0]), skid.streams.findIndex((s) => s.id === of[1])] as const
