@@ -119,9 +119,11 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
   }
 
   function pushRows(block: RowBlock): void {
-    for (let r = 0; r < block.rows; r++) {
-      heard(pipeline.pushRow(block, r), counts.seq)
-      counts.seq++
+    for (let r = 0; r < block.rows; ) {
+      const { next, events } = pipeline.pushSome(block, r)
+      heard(events, counts.seq)
+      counts.seq += next - r
+      r = next
     }
   }
 

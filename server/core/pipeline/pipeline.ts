@@ -360,10 +360,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       else onAct(entry.act)
       return take()
     },
-    /** One row of a block, for who must know which row brought what about. A block is gone through from its first row to its last. */
-    pushRow(block: RowBlock, row: number): readonly PipelineEvent[] {
-      grid.rows(block, row, row + 1)
-      return take()
+    /** Rows of a block from `row` on that bring nothing about, or what that row brings about; `next` is the first not taken in. For who must know which row did. */
+    pushSome(block: RowBlock, row: number): { next: number; events: readonly PipelineEvent[] } {
+      return { next: grid.some(block, row), events: take() }
     },
     /** End of a finished log: the last scans close. */
     finish(): readonly PipelineEvent[] {
@@ -388,7 +387,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     save: (): PipelineState =>
       structuredClone({
         version: 1 as const,
-        grid: grid.state,
+        grid: grid.save(),
         stepper: stepper.state,
         watch: on.watch.save(),
         book: on.book.state(),

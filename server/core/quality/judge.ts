@@ -1,4 +1,4 @@
-import { cell } from '../reading.ts'
+import { cell, type RowBlock } from '../reading.ts'
 import { type Reason, reasons, type TagRule } from './tag-rules.ts'
 
 /** Index of each reason in `reasons`; the hot path works on these numbers. */
@@ -14,10 +14,7 @@ const overRange = why['over-range']
 const impossibleRate = why['impossible-rate']
 const isFrozen = why.frozen
 
-/**
- * What quality remembers of every tag, one array a field, index = tag. Mutated in place: a day of 24 channels at 10 Hz is twenty
- * million calls, and a fresh state each would cost more than the judgement. Numbers only, all finite, so it survives JSON.
- */
+/** What quality remembers of every tag, one array a field, index = tag. Numbers only, all finite, so it survives JSON. */
 export interface JudgeState {
   /** Last accepted value and when; `seen` says whether there is one. */
   last: number[]
@@ -54,6 +51,42 @@ export const judgeStart = (tags: number): JudgeState => {
   }
 }
 
+const fields = ['last', 'lastMs', 'seen', 'same', 'sameMs', 'longest', 'changes', 'wiggle', 'jumps', 'jumpTo'] as const
+const [atLast, atLastMs, atSeen, atSame, atSameMs, atLongest, atChanges, atWiggle, atJumps, atJumpTo] = fields.map((_, i) => i) as [
+  number, number, number, number, number, number, number, number, number, number,
+] // biome-ignore format: a list
+const stride = 16
+
+/** A `JudgeState` at work: all of a tag lies side by side, as it is taken up and put down with every scan. */
+export interface JudgeMemory {
+  readonly tags: Float64Array
+  readonly counts: Float64Array
+}
+
+export function judgeMemory(state: JudgeState): JudgeMemory {
+  const tags = new Float64Array(state.last.length * stride)
+  fields.forEach((field, f) => {
+    state[field].forEach((value, t) => {
+      tags[t * stride + f] = value
+    })
+  })
+  return { tags, counts: Float64Array.from(state.counts) }
+}
+
+export function judgeState({ tags, counts }: JudgeMemory): JudgeState {
+  const state = judgeStart(tags.length / stride)
+  fields.forEach((field, f) => {
+    for (let t = 0; t < state[field].length; t++) state[field][t] = tags[t * stride + f]!
+  })
+  state.counts = Array.from(counts)
+  return state
+}
+
+/** Reasons whose readings count into a cell's mean: good and uncertain ones, never bad, frozen or late ones. */
+const usable = Uint8Array.from(reasons, (r) =>
+  Number(r === 'good' || r === 'over-range' || r === 'source-uncertain' || r === 'loop-undefined'),
+)
+
 /** A healthy quiet sensor may repeat itself; it is frozen after three times its own longest run, never before these. */
 const frozen = { samples: 30, timesLongest: 3, fewChanges: 20, fewChangesS: 600 }
 /** Readings that must agree on a new level before a jump is taken for a step; a pause this long ends all suspicion, ms. */
@@ -87,112 +120,160 @@ export function ruleColumns(rules: readonly TagRule[]): RuleColumns {
   }
 }
 
+/** What the readings of a cell come to, by tag. */
+export interface Gathered {
+  /** Sum and number of the readings that count into the mean: good and uncertain ones, never bad or frozen ones. */
+  readonly sum: Float64Array
+  readonly used: Float64Array
+  /** Last reason a reading was not good. */
+  readonly flaw: Float64Array
+}
+
 /**
- * Judges the readings of one row and writes each one's reason index (`why`) into `out`, by tag; what the row says nothing of is skipped.
+ * Judges readings of some rows, tag by tag, counts each one's reason and adds up those that may be used; what a row says nothing of is skipped.
  * Order: what the source says, the loop and range, open circuit, a jump that the next readings do not confirm (rejected, shown, counted; the
  * third in a row that agrees is a real step), a value that stands still while liquid flows. Rules SIG-01, -04, -05, -06; figures: common practice.
- * A whole row at once, since a call a reading would box its numbers, twenty million times a day.
+ * A tag's readings of a cell together, its memory in local numbers: twenty million calls a day would box theirs.
  *
- * codes, values  the row begins at `at`; values in the unit of the log (mA for a raw loop)
- * flowing        true while pumps run: a tag may well stand still at rest
+ * block     values in the unit of the log (mA for a raw loop); rows from `from` to before `to` are judged
+ * flowing   true while pumps run: a tag may well stand still at rest
  */
-export function judgeRow(
-  state: JudgeState,
+export function judgeRows(
+  { tags: m, counts }: JudgeMemory,
   rules: RuleColumns,
-  codes: ArrayLike<number>,
-  values: ArrayLike<number>,
-  at: number,
-  tMs: number,
+  { width, tMs, values, codes }: Pick<RowBlock, 'width' | 'tMs' | 'values' | 'codes'>,
+  from: number,
+  to: number,
   flowing: boolean,
-  out: Uint8Array,
+  into: Gathered,
 ): void {
-  const { last, lastMs, same, longest, wiggle, jumps } = state
-  const { factor, offset, spikeStep, plainLow, plainHigh } = rules
-  for (let t = 0; t < out.length; t++) {
-    const code = codes[at + t]!
-    if (code === cell.absent) continue
-    if (code !== cell.value && code !== cell.uncertain) {
-      out[t] = code === cell.missing ? missing : code === cell.unreadable ? unreadable : sourceBad
-      continue
-    }
-    out[t] = code === cell.uncertain ? sourceUncertain : good
-    if (rules.text[t] === 1) continue
-    const value = offset[t]! + factor[t]! * values[at + t]!
-    const plain = value > plainLow[t]! && value < plainHigh[t]!
-    if (!plain) {
-      if (value >= rules.openHigh[t]! || value <= rules.openLow[t]!) {
-        out[t] = openCircuit
-        continue
+  const tags = rules.text.length
+  for (let t = 0, own = 0; t < tags; t++, own += stride) {
+    const text = rules.text[t] === 1
+    const factor = rules.factor[t]!
+    const offset = rules.offset[t]!
+    const most = rules.spikeStep[t]!
+    const plainLow = rules.plainLow[t]!
+    const plainHigh = rules.plainHigh[t]!
+    let seen = m[own + atSeen]!
+    let last = m[own + atLast]!
+    let lastMs = m[own + atLastMs]!
+    let same = m[own + atSame]!
+    let sameMs = m[own + atSameMs]!
+    let longest = m[own + atLongest]!
+    let changes = m[own + atChanges]!
+    let wiggle = m[own + atWiggle]!
+    let jumps = m[own + atJumps]!
+    let sum = into.sum[t]!
+    let used = 0
+    let goods = 0
+    for (let i = from, at = from * width + t; i < to; i++, at += width) {
+      const code = codes[at]!
+      const raw = values[at]!
+      let reason = good
+      if (code !== cell.value) {
+        if (code === cell.absent) continue
+        reason =
+          code === cell.uncertain
+            ? sourceUncertain
+            : code === cell.missing
+              ? missing
+              : code === cell.unreadable
+                ? unreadable
+                : sourceBad
       }
-      if (value < rules.badLow[t]! || value > rules.badHigh[t]!) {
-        out[t] = rules.loop[t] === 1 ? loopFailure : outOfRange
-        continue
-      }
-    }
-    if (state.seen[t] === 0) {
-      state.seen[t] = 1
-      last[t] = value
-      lastMs[t] = tMs
-      same[t] = 1
-      state.sameMs[t] = tMs
-    } else {
-      const step = Math.abs(value - last[t]!)
-      const usual = wiggle[t]!
-      const most = spikeStep[t]!
-      if (step > most && step > spike.wiggles * usual) {
-        const refused = jump(state, rules, t, values, at, tMs)
-        if (refused !== good) {
-          out[t] = refused
-          continue
+      if (!text && (reason === good || reason === sourceUncertain)) {
+        const value = offset + factor * raw
+        const nowMs = tMs[i]!
+        const plain = value > plainLow && value < plainHigh
+        let refused = good
+        if (!plain) {
+          if (value >= rules.openHigh[t]! || value <= rules.openLow[t]!) refused = openCircuit
+          else if (value < rules.badLow[t]! || value > rules.badHigh[t]!) refused = rules.loop[t] === 1 ? loopFailure : outOfRange
+        }
+        const step = Math.abs(value - last)
+        if (seen === 1 && refused === good && step > most && step > spike.wiggles * wiggle) {
+          m[own + atJumps] = jumps
+          refused = jump(m, own, rules.mostStep[t]!, value, last, nowMs - lastMs, wiggle)
+          jumps = m[own + atJumps]!
+          // A pump that pulsates by more than this is learnt, not rejected for ever.
+          if (refused === why.spike) wiggle = wiggle + (Math.min(step, 6 * wiggle + most) - wiggle) / 64
+        }
+        if (refused !== good) reason = refused
+        else {
+          if (seen === 0) {
+            seen = 1
+            last = value
+            same = 1
+            sameMs = nowMs
+          } else {
+            jumps = 0
+            if (step === 0) same++
+            else {
+              if (same > longest) longest = same
+              same = 1
+              sameMs = nowMs
+              changes++
+              last = value
+            }
+            const cap = 6 * wiggle + most
+            wiggle = wiggle + (Math.min(step, cap) - wiggle) / 64
+          }
+          lastMs = nowMs
+          if (flowing && same >= frozen.samples && standsStill((nowMs - sameMs) / 1000, rules.frozenS[t]!, same, longest, changes))
+            reason = isFrozen
+          else if (!plain && (value < rules.sureLow[t]! || value > rules.sureHigh[t]!))
+            reason = rules.loop[t] === 1 ? loopUndefined : overRange
         }
       }
-      jumps[t] = 0
-      if (step === 0) {
-        same[t] = same[t]! + 1
-      } else {
-        if (same[t]! > longest[t]!) longest[t] = same[t]!
-        same[t] = 1
-        state.sameMs[t] = tMs
-        state.changes[t] = state.changes[t]! + 1
-        last[t] = value
-      }
-      wiggle[t] = usual + (Math.min(step, 6 * usual + most) - usual) / 64
-      lastMs[t] = tMs
-      if (flowing && same[t]! >= frozen.samples && standsStill(state, rules, t, tMs)) {
-        out[t] = isFrozen
+      if (reason === good) {
+        sum += raw
+        goods++
         continue
       }
+      counts[t * reasons.length + reason]!++
+      into.flaw[t] = reason
+      if (usable[reason] === 1) {
+        sum += raw
+        used++
+      }
     }
-    if (!plain && (value < rules.sureLow[t]! || value > rules.sureHigh[t]!))
-      out[t] = rules.loop[t] === 1 ? loopUndefined : overRange
+    counts[t * reasons.length + good]! += goods
+    into.sum[t] = sum
+    into.used[t]! += goods + used
+    m[own + atSeen] = seen
+    m[own + atLast] = last
+    m[own + atLastMs] = lastMs
+    m[own + atSame] = same
+    m[own + atSameMs] = sameMs
+    m[own + atLongest] = longest
+    m[own + atChanges] = changes
+    m[own + atWiggle] = wiggle
+    m[own + atJumps] = jumps
   }
 }
 
-/** A reading that jumped away from its neighbours: why it is refused, or `good` once the jump is a step or the last reading too old to tell. */
-function jump(state: JudgeState, rules: RuleColumns, t: number, values: ArrayLike<number>, at: number, tMs: number): number {
-  const value = rules.offset[t]! + rules.factor[t]! * values[at + t]!
-  const step = Math.abs(value - state.last[t]!)
-  const wiggle = state.wiggle[t]!
+/**
+ * A reading that jumped away from its neighbours: why it is refused, or `good` once the jump is a step or the last reading, `ageMs` old, too old to tell.
+ */
+function jump(m: Float64Array, own: number, mostStep: number, value: number, last: number, ageMs: number, wiggle: number): number {
+  const step = Math.abs(value - last)
+  const jumps = m[own + atJumps]!
+  const to = m[own + atJumpTo]!
   // A spike comes back; a rise that goes on the same way, each time by a believable step, is no jump however far it gets: a runaway must be seen.
-  const away = state.jumpTo[t]! - state.last[t]!
-  const goesOn =
-    state.jumps[t]! > 0 && away * (value - state.jumpTo[t]!) > 0 && Math.abs(value - state.jumpTo[t]!) <= rules.mostStep[t]!
-  const impossible = step > rules.mostStep[t]! && !goesOn
-  if (tMs - state.lastMs[t]! >= (impossible ? spike.impossibleMs : spike.forgetMs)) return good
+  const goesOn = jumps > 0 && (to - last) * (value - to) > 0 && Math.abs(value - to) <= mostStep
+  const impossible = step > mostStep && !goesOn
+  if (ageMs >= (impossible ? spike.impossibleMs : spike.forgetMs)) return good
   if (impossible) return impossibleRate
-  const agrees =
-    goesOn || (state.jumps[t]! > 0 && Math.abs(value - state.jumpTo[t]!) < Math.max(0.25 * step, spike.wiggles * wiggle))
-  state.jumps[t] = agrees ? state.jumps[t]! + 1 : 1
-  state.jumpTo[t] = value
-  if (state.jumps[t]! >= spike.agree) return good
-  // A pump that pulsates by more than this is learnt, not rejected for ever.
-  state.wiggle[t] = wiggle + (Math.min(step, 6 * wiggle + rules.spikeStep[t]!) - wiggle) / 64
-  return why.spike
+  const agrees = goesOn || (jumps > 0 && Math.abs(value - to) < Math.max(0.25 * step, spike.wiggles * wiggle))
+  const now = agrees ? jumps + 1 : 1
+  m[own + atJumps] = now
+  m[own + atJumpTo] = value
+  return now >= spike.agree ? good : why.spike
 }
 
-function standsStill(state: JudgeState, rules: RuleColumns, t: number, tMs: number): boolean {
-  const standing = (tMs - state.sameMs[t]!) / 1000
-  const least = rules.frozenS[t]!
-  const enough = state.changes[t]! < frozen.fewChanges ? Math.max(least, frozen.fewChangesS) : least
-  return standing >= enough && state.same[t]! > frozen.timesLongest * state.longest[t]!
+/** Whether a value that stood still for so many seconds and `same` readings stands longer than is its way. */
+function standsStill(standingS: number, leastS: number, same: number, longest: number, changes: number): boolean {
+  const enough = changes < frozen.fewChanges ? Math.max(leastS, frozen.fewChangesS) : leastS
+  return standingS >= enough && same > frozen.timesLongest * longest
 }

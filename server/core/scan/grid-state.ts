@@ -1,4 +1,4 @@
-import { type JudgeState, judgeStart } from '../quality/judge.ts'
+import { type JudgeMemory, type JudgeState, judgeMemory, judgeStart, judgeState } from '../quality/judge.ts'
 
 /** One closed cell of the analysis grid. The object and its arrays are reused: copy what must outlive the call. */
 export interface Scan {
@@ -78,6 +78,45 @@ export function freshGrid(tags: number, width: number, slots: number): GridState
     scans: 0,
   }
 }
+
+/** A `GridState` at work: numbers by tag packed, as every reading touches them. */
+type Packed = 'sum' | 'used' | 'flaw' | 'lastCell' | 'lastSi' | 'spacing'
+type Rest = Omit<GridState, 'judge' | Packed>
+export type GridMemory = Rest & {
+  readonly judge: JudgeMemory
+  readonly sum: readonly Float64Array[]
+  readonly used: readonly Float64Array[]
+  readonly flaw: readonly Float64Array[]
+  readonly lastCell: Float64Array
+  readonly lastSi: Float64Array
+  readonly spacing: Float64Array
+}
+
+const packed = (table: readonly number[][]) => table.map((row) => Float64Array.from(row))
+const plain = (table: readonly Float64Array[]) => table.map((row) => Array.from(row))
+
+export const gridMemory = (s: GridState): GridMemory => ({
+  ...s,
+  judge: judgeMemory(s.judge),
+  sum: packed(s.sum),
+  used: packed(s.used),
+  flaw: packed(s.flaw),
+  lastCell: Float64Array.from(s.lastCell),
+  lastSi: Float64Array.from(s.lastSi),
+  spacing: Float64Array.from(s.spacing),
+})
+
+/** Plain JSON again; a copy only of what is packed. */
+export const gridState = (m: GridMemory): GridState => ({
+  ...m,
+  judge: judgeState(m.judge),
+  sum: plain(m.sum),
+  used: plain(m.used),
+  flaw: plain(m.flaw),
+  lastCell: Array.from(m.lastCell),
+  lastSi: Array.from(m.lastSi),
+  spacing: Array.from(m.spacing),
+})
 
 export function freshScan(tags: number): Scan {
   return {

@@ -1,16 +1,12 @@
-import { judgeRow, ruleColumns, why } from '../quality/judge.ts'
+import { judgeRows, ruleColumns, why } from '../quality/judge.ts'
 import { reasons, rulesOf, type TagRule } from '../quality/tag-rules.ts'
 import { cell, type RowBlock } from '../reading.ts'
 import type { Skid } from '../skid.ts'
 import { units, valueUnit } from '../units.ts'
-import { freshGrid, freshScan, type GridState, type Scan } from './grid-state.ts'
+import { freshGrid, freshScan, type GridMemory, type GridState, gridMemory, gridState, type Scan } from './grid-state.ts'
 
 export type { GridState, Scan } from './grid-state.ts'
 
-/** Reasons whose readings count into a cell's mean: good and uncertain ones, never bad, frozen or late ones. */
-const usable = Uint8Array.from(reasons, (r) =>
-  Number(r === 'good' || r === 'over-range' || r === 'source-uncertain' || r === 'loop-undefined'),
-)
 /** A row this far ahead of all before it must be confirmed by the next one, or its time is bad, ms. */
 const farAheadMs = 3_600_000
 /** A slow tag is held at most so long, s, or three cells. */
@@ -26,17 +22,18 @@ const emptyOneByOne = 1200
 export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: GridState) {
   const tags = skid.tags.length
   const width = tags + (skid.phaseColumn === null ? 0 : 1)
+  const hasPhase = width > tags
   const scanMs = skid.scanSeconds * 1000
   const lateMs = skid.lateSeconds * 1000
   const slots = Math.ceil(lateMs / scanMs) + 2
   const rules: TagRule[] = rulesOf(skid)
   const columns = ruleColumns(rules)
-  const reasonOf = new Uint8Array(tags)
   const siUnit = skid.tags.map(valueUnit)
   const toSiFactor = siUnit.map((u) => (u === null ? 1 : units[u].factor))
   const toSiOffset = siUnit.map((u) => (u === null ? 0 : units[u].offset))
   const holdCells = Math.max(3, Math.floor(holdAtMostS / skid.scanSeconds))
-  const s: GridState = saved ?? freshGrid(tags, width, slots)
+  const s: GridMemory = gridMemory(saved ?? freshGrid(tags, width, slots))
+  const slotted = s.sum.map((sum, i) => ({ sum, used: s.used[i]!, flaw: s.flaw[i]! }))
   const scan: Scan = freshScan(tags)
   let flowing = false
 
@@ -96,42 +93,53 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
     }
   }
 
-  function take(tMs: number, values: ArrayLike<number>, codes: ArrayLike<number>, at: number): void {
+  /**
+   * Takes in row `i` and those after it, before `to`, that fall into the same open cell in order and close none; gives the row after the last
+   * taken. A row that closes cells is not taken in yet: what that brings about belongs to it alone.
+   */
+  function take(block: Pick<RowBlock, 'width' | 'tMs' | 'values' | 'codes'>, i: number, to: number): number {
+    const tMs = block.tMs[i]!
     if (s.next < 0) {
       s.next = Math.floor(tMs / scanMs)
       s.firstMs = tMs
     }
-    if (tMs < s.nowMs) {
-      if (tMs < s.lastRowMs) s.outOfOrder++
-    } else {
-      closeUpTo(tMs)
+    const inOrder = tMs >= s.nowMs
+    if (inOrder) {
       s.nowMs = tMs
-    }
+      const before = s.next
+      closeUpTo(tMs)
+      if (s.next !== before) return i
+    } else if (tMs < s.lastRowMs) s.outOfOrder++
     if (tMs > s.lastRowMs) s.lastRowMs = tMs
     const k = Math.floor(tMs / scanMs)
     if (k < s.next) {
       s.lateRows++
-      countAll(codes, at, why.late)
-      return
+      countAll(block.codes, i * block.width, why.late)
+      return i + 1
     }
-    const slot = k % slots
-    const counts = s.judge.counts
-    const sum = s.sum[slot]!
-    const used = s.used[slot]!
-    const flaw = s.flaw[slot]!
-    judgeRow(s.judge, columns, codes, values, at, tMs, flowing, reasonOf)
-    for (let t = 0; t < tags; t++) {
-      if (codes[at + t] === cell.absent) continue
-      const reason = reasonOf[t]!
-      counts[t * reasons.length + reason]!++
-      if (usable[reason] === 1) {
-        sum[t]! += values[at + t]!
-        used[t]!++
-      }
-      if (reason !== why.good) flaw[t] = reason
+    let end = i + 1
+    if (inOrder) {
+      while (end < to && joins(block.tMs[end]!, s.nowMs, k)) s.nowMs = block.tMs[end++]!
+      if (s.nowMs > s.lastRowMs) s.lastRowMs = s.nowMs
     }
-    s.cellRows[slot]!++
-    if (width > tags && codes[at + tags] === cell.value) s.phase[slot] = values[at + tags]!
+    addUp(block, i, end, k % slots)
+    return end
+  }
+
+  /** Whether a row at `tMs` after one at `beforeMs` goes into cell `k` without closing another, no repeat, none far ahead. */
+  const joins = (tMs: number, beforeMs: number, k: number): boolean =>
+    tMs > beforeMs &&
+    tMs <= beforeMs + farAheadMs &&
+    Math.floor(tMs / scanMs) === k &&
+    Math.floor((tMs - lateMs) / scanMs) - 1 < s.next
+
+  /** Judges rows and adds them to the cell of a slot. */
+  function addUp(block: Pick<RowBlock, 'width' | 'tMs' | 'values' | 'codes'>, from: number, to: number, slot: number): void {
+    judgeRows(s.judge, columns, block, from, to, flowing, slotted[slot]!)
+    const { width, values, codes } = block
+    s.cellRows[slot]! += to - from
+    if (hasPhase)
+      for (let i = from; i < to; i++) if (codes[i * width + tags] === cell.value) s.phase[slot] = values[i * width + tags]!
   }
 
   /** Whether the row at `at` says what the row before it in the sequence said, at the same time. */
@@ -162,45 +170,60 @@ export function createGrid(skid: Skid, onScan: (scan: Scan) => void, saved?: Gri
     for (let t = 0; t < tags; t++) if (codes[at + t] !== cell.absent) s.judge.counts[t * reasons.length + reason]!++
   }
 
+  function some(block: RowBlock, i: number): number {
+    const tMs = block.tMs[i]!
+    const at = i * block.width
+    let next = i + 1
+    if (repeats(block, i)) {
+      s.repeated++
+      countAll(block.codes, at, why.duplicate)
+    } else {
+      if (s.farMs >= 0) {
+        const far = s.farRow!
+        if (Math.abs(tMs - s.farMs) < farAheadMs) {
+          const row = farBlock(s.farMs, far)
+          while (take(row, 0, 1) === 0);
+        } else {
+          s.badTime++
+          countAll(far.codes, 0, why['bad-time'])
+        }
+        s.farMs = -1
+        s.farRow = null
+      }
+      if (s.nowMs >= 0 && tMs > s.nowMs + farAheadMs) {
+        s.farMs = tMs
+        s.farRow = {
+          values: Array.from(block.values.subarray(at, at + width)),
+          codes: Array.from(block.codes.subarray(at, at + width)),
+        }
+      } else next = take(block, i, block.rows)
+    }
+    s.rows += next - i
+    if (next === block.rows) keepLast(block)
+    return next
+  }
+
+  const farBlock = (tMs: number, { values, codes }: { values: number[]; codes: number[] }) => ({
+    width,
+    tMs: Float64Array.of(tMs),
+    values: Float64Array.from(values),
+    codes: Uint8Array.from(codes),
+  })
+
   return {
+    /** Read only. */
     state: s,
+    save: (): GridState => gridState(s),
     /** Whether pumps run; a tag that stands still is suspect only then. */
     setFlowing(value: boolean): void {
       flowing = value
     },
-    /** Rows `from` to before `to` of a block, by default all; a block in pieces is taken in order, from its first row to its last. */
-    rows(block: RowBlock, from = 0, to = block.rows): void {
-      for (let i = from; i < to; i++) {
-        const tMs = block.tMs[i]!
-        const at = i * block.width
-        s.rows++
-        if (repeats(block, i)) {
-          s.repeated++
-          countAll(block.codes, at, why.duplicate)
-          continue
-        }
-        if (s.farMs >= 0) {
-          const far = s.farRow!
-          if (Math.abs(tMs - s.farMs) < farAheadMs) take(s.farMs, far.values, far.codes, 0)
-          else {
-            s.badTime++
-            countAll(far.codes, 0, why['bad-time'])
-          }
-          s.farMs = -1
-          s.farRow = null
-        }
-        if (s.nowMs >= 0 && tMs > s.nowMs + farAheadMs) {
-          s.farMs = tMs
-          s.farRow = {
-            values: Array.from(block.values.subarray(at, at + width)),
-            codes: Array.from(block.codes.subarray(at, at + width)),
-          }
-          continue
-        }
-        take(tMs, block.values, block.codes, at)
-      }
-      if (to === block.rows) keepLast(block)
+    /** All rows of a block. */
+    rows(block: RowBlock): void {
+      for (let i = 0; i < block.rows; ) i = some(block, i)
     },
+    /** The rows of a block from `i` on that bring nothing about, or what row `i` brings about. Gives the first row not taken in; a block is gone through to its last row. */
+    some,
     /** The monitor's clock: scans close even when no rows come. */
     tick(tMs: number): void {
       if (s.next < 0 || tMs <= s.nowMs) return

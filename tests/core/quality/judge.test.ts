@@ -1,24 +1,26 @@
 import { describe, expect, it } from 'vitest'
-import { type JudgeState, judgeRow, judgeStart, ruleColumns } from '../../../server/core/quality/judge.ts'
+import { type JudgeMemory, judgeMemory, judgeRows, judgeStart, ruleColumns } from '../../../server/core/quality/judge.ts'
 import { reasons, ruleOf } from '../../../server/core/quality/tag-rules.ts'
 import { cell } from '../../../server/core/reading.ts'
 import type { TagSpec } from '../../../server/core/skid.ts'
 
-const out = new Uint8Array(1)
-function judge(state: JudgeState, spec: TagSpec, code: number, value: number, tMs: number, flowing: boolean): string {
-  judgeRow(state, ruleColumns([ruleOf(spec)]), [code], [value], 0, tMs, flowing, out)
-  return reasons[out[0]!]!
+function judge(state: JudgeMemory, spec: TagSpec, code: number, value: number, tMs: number, flowing: boolean): string {
+  const block = { width: 1, tMs: Float64Array.of(tMs), values: Float64Array.of(value), codes: Uint8Array.of(code) }
+  const into = { sum: new Float64Array(1), used: new Float64Array(1), flaw: new Float64Array(1) }
+  judgeRows(state, ruleColumns([ruleOf(spec)]), block, 0, 1, flowing, into)
+  return reasons[into.flaw[0]!]!
 }
 
 const tag = (more: Partial<TagSpec>): TagSpec => ({
   tag: 'X-1', column: 'X-1', quantity: 'pressure', unit: 'bar', range: [0, 25], accuracyPct: 0.25, accuracyAssumed: true, signal: null, sensor: null,
   burnout: null, setpointFor: null, ...more,
 }) // biome-ignore format: a list
-const one = (spec: TagSpec, value: number, code: number = cell.value): string => judge(judgeStart(1), spec, code, value, 0, true)
+const one = (spec: TagSpec, value: number, code: number = cell.value): string =>
+  judge(judgeMemory(judgeStart(1)), spec, code, value, 0, true)
 
 /** Reasons of readings `dtMs` apart. */
 function series(spec: TagSpec, values: readonly number[], dtMs = 1000, flowing = true): string[] {
-  const state = judgeStart(1)
+  const state = judgeMemory(judgeStart(1))
   return values.map((v, i) => judge(state, spec, cell.value, v, i * dtMs, flowing))
 }
 

@@ -102,7 +102,7 @@ describe('scan grid', () => {
     const second = createGrid(
       skid,
       (x) => scans.push(x.used[0]! > 0 ? x.si[0]! * 3600 : Number.NaN),
-      JSON.parse(JSON.stringify(first.state)) as GridState,
+      JSON.parse(JSON.stringify(first.save())) as GridState,
     )
     second.rows(block(rows.slice(17), width))
     second.finish()
