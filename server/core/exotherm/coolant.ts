@@ -109,8 +109,8 @@ export function coolantBlock(s: Coolant): number | null {
   return mean
 }
 
-/** Weighs the lags by one thermocouple's block means; squared differences are cut at 1 K² so that an excursion decides nothing. */
-export function weighLags(s: Coolant, temps: Ring): void {
+/** Weighs the lags by one thermocouple's block means, of which `share` of a move of the coolant does not arrive; squared differences are cut at 1 K² so that an excursion decides nothing. */
+export function weighLags(s: Coolant, temps: Ring, share: number): void {
   const now = ago(temps, 0)
   const then = ago(temps, pastBlocks - 1)
   if (now === null || then === null) return
@@ -118,7 +118,7 @@ export function weighLags(s: Coolant, temps: Ring): void {
     const a = ago(s.past[k] as Ring, 0)
     const b = ago(s.past[k] as Ring, pastBlocks - 1)
     if (a === null || b === null) return
-    const d = now - then - (a - b)
+    const d = now - then - (1 - share) * (a - b)
     s.cost[k] = (s.cost[k] as number) + Math.min(1, d * d)
   }
   s.weighed++

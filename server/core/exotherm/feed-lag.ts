@@ -15,6 +15,10 @@ function feedOf(rc: ReactorConfig, s: ReactorScan): number | null {
   return s.flowsKgS.length === 0 ? null : sum
 }
 
+/** How far a feed that is not read may have moved: a pump takes some ten seconds over a step of a quarter, and a reading that leaps is at first not believed. */
+const missingHPerS = 0.025
+const missingMostH = 0.25
+
 /** A feed ten times its reference says no more than that. */
 const mostH = 10
 
@@ -24,6 +28,7 @@ const mostH = 10
  */
 export function feedScan(r: Reactor, rc: ReactorConfig, s: ReactorScan, tMs: number, gapS: number): void {
   const flow = feedOf(rc, s)
+  r.missingH = flow === null && r.flowMs > 0 ? Math.min(missingMostH, (missingHPerS * (tMs - r.flowMs)) / 1000) : 0
   if (flow === null || !s.production) return
   r.flowSum += flow
   r.flowN++

@@ -13,6 +13,8 @@ export const exothermDefaults = {
   flowShare: 0.9,
   offsetSds: 2,
   ratioHighShare: 2 / 3,
+  /** Noise is what it is, whatever the feeds do. */
+  ratioHighSds: 4.5,
   coldShare: 2,
   coldS: 30,
 } as const
@@ -96,8 +98,9 @@ export function test(
   of: 'thermocouple' | 'reactor' | 'all',
 ): void {
   const share = ratioHigh ? d.ratioHighShare : 1
-  const level = share * Math.max(leastK, d.sds * series.sdK) + allow
-  const rise = share * Math.max(d.riseK, Math.SQRT2 * d.sds * series.sdK) + allow
+  const noiseK = (ratioHigh ? d.ratioHighSds : d.sds) * series.sdK
+  const level = Math.max(share * leastK, noiseK) + allow
+  const rise = Math.max(share * d.riseK, Math.SQRT2 * noiseK) + allow
   const risen = riseK(series, p, x)
   // The latest reading itself must be half way there: one wild reading lives on in the mean for 4 s and is no excursion.
   const high = x > level && raw > 0.5 * level

@@ -7,6 +7,8 @@ export interface ReactorConfig {
   /** How many feeds flow through, and which of them limits the heat; by default the first. */
   readonly streams: number
   readonly limiting?: number
+  /** Feeds that come in without having passed this coolant before, so at a temperature of their own; by default none. */
+  readonly foreign?: readonly boolean[]
 }
 
 export interface WatchConfig {

@@ -10,8 +10,12 @@ export interface Thermo {
   /** Level in use, 30 to 60 s old, so that an excursion does not teach its own threshold; and the one to follow. */
   c: number
   o: number
+  b: number
+  varB: number
   nextC: number
   nextO: number
+  nextB: number
+  nextVarB: number
   sum: number
   n: number
   readonly blocks: Ring
@@ -34,8 +38,17 @@ export interface Reactor {
   hN: number
   flowSum: number
   flowN: number
+  /** Lagged coolant when the reference was taken, °C, and the mean of the last half hour; null before. */
+  refCoolantC: number | null
+  slowCoolantC: number
+  /** When coolant or feed last moved, ms; 0 for never. */
+  movedMs: number
+  /** How long an excess has stood unchanged, s. */
+  standS: number
   /** Feed moved unseen in a gap, not yet forgotten. */
   unseenH: number
+  /** How far the feed may have moved since it was last read. */
+  missingH: number
   /** Time of the latest flow reading, ms; 0 for none. */
   flowMs: number
   outS: number
@@ -76,8 +89,12 @@ export function freshWatch(config: WatchConfig): WatchState {
     level: freshLevel(),
     c: 0,
     o: 0,
+    b: 0,
+    varB: 0,
     nextC: 0,
     nextO: 0,
+    nextB: 0,
+    nextVarB: 0,
     sum: 0,
     n: 0,
     blocks: ring(lagBlocks),
@@ -99,7 +116,12 @@ export function freshWatch(config: WatchConfig): WatchState {
       hN: 0,
       flowSum: 0,
       flowN: 0,
+      refCoolantC: null,
+      slowCoolantC: 0,
+      movedMs: 0,
+      standS: 0,
       unseenH: 0,
+      missingH: 0,
       flowMs: 0,
       outS: 0,
       wasArmed: false,

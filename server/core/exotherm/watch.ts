@@ -14,9 +14,9 @@ import { freshWatch, hubJonesConfig, type Reactor, type Thermo, type WatchState 
 /**
  * Watches the reactors of a skid for excursions in seconds. Per thermocouple the excess is
  *
- *   r = T − lag(T_coolant) − c − (c − o)(h − 1)
+ *   r = T − lag(T_coolant) − c − (c − o)(h − 1) + b v
  *
- * (symbols: `level.ts`, `coolant.ts`; h the limiting feed over its reference through 35 s). It speaks when the 4-s mean of one thermocouple, of
+ * (symbols: `level.ts`, `coolant.ts`; h the limiting feed over its reference through 35 s, v how far the coolant is off its own). It speaks when the 4-s mean of one thermocouple, of
  * a reactor or of all, two scans in a row, passes its threshold: the least one or 5.5 robust sd, plus what the model may err by at the moment;
  * or has risen by as much within 12 or 25 s; or when the criterion of Hub and Jones holds. It looks back only: the level is 30 to 60 s
  * old. Without a coolant reading the level is the temperature's own (`inlet.ts`).
@@ -110,8 +110,9 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
     const base = coolant === null ? 0 : (coolant.f[coolant.best] as number)
     const usable = s.production && (coolant === null || coolant.on)
     const bare = coolant === null
+    const v = r.refCoolantC === null ? 0 : base - r.refCoolantC
     const h = bare ? 1 : r.h
-    let common = Math.abs(r.hFast - r.hSlow) + r.unseenH
+    let common = Math.abs(r.hFast - r.hSlow) + r.unseenH + r.missingH
     if (bare) common += Math.abs(r.hSlow - r.hLong)
     let doubt = 0
     if (coolant !== null) {
@@ -144,13 +145,14 @@ export function createExothermWatch(config: WatchConfig, state: WatchState = fre
         forget(th.temps)
       }
       push(th.temps, t)
-      push(th.excess, t === null || !usable ? null : t - base - explained(th, h))
+      push(th.excess, t === null || !usable ? null : t - base - explained(th, h, v))
       const x = meanOf(th.excess, p.smooth)
       const ready = x !== null && s.armed && usable && th.level.n >= 4 && !(bare && j === 0 && r.thermos.length > 1)
       if (ready) {
         const gain = bare ? Math.max(2, highest - coldest, inlet === null ? 0 : Math.abs(highest - inlet)) : Math.abs(th.c - th.o)
         const offset = bare ? 0 : d.offsetSds * Math.sqrt(th.level.poo) * Math.abs(r.h - 1)
-        const allow = doubt + d.flowShare * gain * common + offset
+        const share = d.offsetSds * Math.sqrt(th.varB) * Math.abs(v)
+        const allow = doubt + d.flowShare * gain * common + offset + share
         const raw = ago(th.excess, 0) ?? x
         test(f, th.series, x, raw, d.oneK, allow, s.ratioHigh === true, p, 'thermocouple')
         f.sum += x

@@ -52,6 +52,9 @@ export function createExcursions(layout: Layout, limits: LimitTable, hears: Alar
         coolant: g.spec.coolantTemperature,
         streams: g.streams.length,
         limiting: Math.max(0, g.spec.streams.indexOf(g.spec.reaction?.limitingStream ?? '')),
+        foreign: g.streams.map(
+          (k) => !layout.segments.some((e) => isBefore(layout, e, g) && e.coolant === g.coolant && e.streams.includes(k)),
+        ),
       }),
     ),
   }
@@ -251,3 +254,7 @@ function feedPairs(layout: Layout): Pair[] {
     if (watchedKinds.has(g.kind)) for (const s of g.streams.slice(1)) add([s, g.streams[0]!], g.id, null)
   return pairs
 }
+
+/** Whether a segment stands before another in flow order, which is the order of the skid file. */
+const isBefore = (layout: Layout, a: SegmentLayout, b: SegmentLayout): boolean =>
+  layout.segments.indexOf(a) < layout.segments.indexOf(b)

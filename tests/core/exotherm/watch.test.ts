@@ -118,6 +118,14 @@ describe('what is missing', () => {
       }
     }
   })
+  it('a flow step of 25 % whose first three readings, 5 s apart, are not believed raises nothing, nor does a feed that is not read for 5 min', () => {
+    const unread = (from: number, n: number) => (k: number, s: [ReactorScan, ReactorScan]) =>
+      k <= from || k > from + n ? s : s.map((r) => ({ ...r, flowsKgS: [null, null] }))
+    for (const seed of [24, 25, 26, 27]) {
+      expect(spells({ scanS: 5, hours: 1.5, seed, flowSteps: [[3600, 1.25]], quickS: 8 }, unread(720, 3)).all).toEqual([])
+      expect(spells({ scanS: 5, hours: 1.5, seed }, unread(720, 60)).all).toEqual([])
+    }
+  })
   it('goes on with the thermocouples that are left, and says nothing when none is', () => {
     const lost = (n: number) => (k: number, s: [ReactorScan, ReactorScan]) =>
       k < 1500 ? s : [{ ...s[0], tempsC: s[0].tempsC.map((t, j) => (j < n ? null : t)) }, s[1]]

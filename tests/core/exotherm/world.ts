@@ -20,6 +20,8 @@ export interface WorldOptions {
   readonly coolantSteps?: readonly [tS: number, byK: number][]
   /** Extra heat: K at the hot spot as a function of time; the neighbours feel a share. */
   readonly extraK?: (tS: number) => number
+  /** How soon the heat follows the feed, s; 25 by default. */
+  readonly quickS?: number
   /** Factor on feed B alone. */
   readonly feedB?: (tS: number) => number
 }
@@ -63,7 +65,7 @@ export function world(o: WorldOptions): { tMs: number; scans: [ReactorScan, Reac
       for (const [at, factor] of o.flowSteps ?? []) if (tS >= at) target *= factor
       wander += -wander * (dt / 1800) + 0.01 * Math.sqrt((2 * dt) / 1800) * gauss(u)
       feed += ((target * (1 + wander) - feed) * dt) / 6
-      h += ((feed - h) * dt) / 25
+      h += ((feed - h) * dt) / (o.quickS ?? 25)
       h2 += ((h - h2) * dt) / 6
     }
     const extra = o.extraK?.(tS) ?? 0
