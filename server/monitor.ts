@@ -1,12 +1,14 @@
 import { MonitorError } from './core/errors.ts'
-import type { Entry } from './core/sequence.ts'
+import type { Act, Entry } from './core/sequence.ts'
+import { askedBy } from './core/sim/operator.ts'
 import type { Skid } from './core/skid.ts'
 import type { Polled, Source } from './ingest/source.ts'
 import { actOf } from './monitor/act.ts'
+import { type ChangeBody, decideChange, isChange } from './monitor/change.ts'
 import { createEngine, type Engine, type News } from './monitor/engine.ts'
 import { engineState } from './monitor/live-state.ts'
 import type { MonitorStore } from './monitor/needs.ts'
-import type { RunId } from './store/keys.ts'
+import type { Json, RunId } from './store/keys.ts'
 import type { ActBody, ActReply } from './wire/act.ts'
 import type { LiveState } from './wire/live.ts'
 
@@ -172,6 +174,24 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     return beating
   }
 
+  /** Judges an act and puts it on disk, with the version that a change of settings makes. What is refused is kept in the audit trail. */
+  function recorded(live: Live, body: ActBody | ChangeBody): { act: Act; seq: number } {
+    const { nowMs } = live.source.clock()
+    try {
+      return store.together(() => {
+        const act = isChange(body) ? decideChange(store, live.engine, body, nowMs) : actOf(body, live.skid, nowMs)
+        const seq = store.sequence.append([{ run: live.run, entries: [{ kind: 'act', act }] }])[0]! - 1
+        return { act, seq }
+      })
+    } catch (error) {
+      if (error instanceof MonitorError && (error.code === 'ACT_REFUSED' || error.code === 'TAG_UNKNOWN')) {
+        const asked = JSON.parse(JSON.stringify(body)) as Json
+        store.audit.append({ tMs: nowMs, person: body.person, act: `${body.kind}.refused`, reason: error.message, body: asked, run: live.run })
+      }
+      throw error
+    }
+  }
+
   const need = (run: number): Live => {
     const live = lives.get(run as RunId)
     if (live === undefined)
@@ -183,6 +203,7 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     /** A run that lives from now on: a new one, or one that a process before this one left; it goes on where it stood. */
     add(live: LiveRun): void {
       const engine = createEngine({ skid: live.skid, store, run: live.run, stepsRun: live.stepsRun })
+      followFlush(live.source, engine)
       lives.set(live.run, { ...live, engine, waiting: null, untold: true, sourceState: '', broken: null })
       for (const p of publishers) p.runs()
     },
@@ -231,12 +252,11 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     state: (run: number): LiveState => stateOfLive(need(run)),
     clock: (run: number) => need(run).source.clock(),
     /** What a person does: on disk, in the pipeline, journalled and told before it returns. Errors: RUN_ENDED, ACT_REFUSED, TAG_UNKNOWN, DISK_FULL. */
-    act(run: number, body: ActBody): ActReply {
+    act(run: number, body: ActBody | ChangeBody): ActReply {
       const live = need(run)
-      const act = actOf(body, live.skid, live.source.clock().nowMs)
-      const entries: Entry[] = [{ kind: 'act', act }]
-      const seq = store.sequence.append([{ run: live.run, entries }])[0]! - 1
-      take(live, entries)
+      const { act, seq } = recorded(live, body)
+      take(live, [{ kind: 'act', act }])
+      if (act.kind === 'flush-step' || act.kind === 'flush-check') followFlush(live.source, live.engine)
       store.together(() => live.engine.journal())
       const news = live.engine.news()
       live.untold = false
@@ -245,4 +265,10 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     },
   }
 }
+/** A simulated skid does what has been confirmed; told again at a restart, for what was not on disk with its rows. */
+function followFlush(source: Source, engine: Engine): void {
+  const flush = engine.pipeline.view().flush
+  if (flush !== null && source.follow !== undefined) source.follow(askedBy(flush.course))
+}
+
 export type Monitor = ReturnType<typeof createMonitor>

@@ -1,5 +1,6 @@
 import { cell, phases, rowBlock } from '../core/reading.ts'
 import { decimalsOf } from '../core/sim/instruments.ts'
+import type { Order } from '../core/sim/operator.ts'
 import type { Scenario } from '../core/sim/scenario.ts'
 import { createSimulator, rowsOf } from '../core/sim/simulator.ts'
 import type { Skid } from '../core/skid.ts'
@@ -19,6 +20,8 @@ export interface SimulatedOptions {
 /** `night` and whatever else the run was begun with stays as it is. */
 interface State {
   readonly rows: number
+  /** Steps of a flush that the simulated operator has been told, each from the row of its time on. */
+  readonly orders?: Json
   readonly [kept: string]: Json
 }
 
@@ -29,10 +32,11 @@ const mostRows = 512
 
 /**
  * The simulated skid as a source, `speed` times faster than time. Its clock is the simulator's; it stands still while the process is
- * down. A restart takes the rows up to where it stood again (the same scenario gives the same rows) and goes on.
+ * down. It has an operator who does the steps of a flush as people confirm them. A restart takes the rows up to where it stood again (the same scenario and orders give the same rows) and goes on.
  */
 export function simulatedSource({ skid, scenario, speed, steadyMs, state }: SimulatedOptions): Source {
-  const simulator = createSimulator(skid, scenario)
+  const orders = [...(((state as State | null)?.orders ?? []) as unknown as readonly Order[])]
+  const simulator = createSimulator(skid, scenario, orders)
   const total = rowsOf(scenario)
   const logMs = Math.round(scenario.logSeconds * 1000)
   const width = skid.tags.length + (skid.phaseColumn === null ? 0 : 1)
@@ -83,7 +87,7 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
       return {
         ...words,
         entries: due > 0 ? [{ kind: 'rows', block }] : [],
-        state: { ...(state as State | null), rows: taken },
+        state: { ...(state as State | null), rows: taken, ...(orders.length === 0 ? {} : { orders: orders as unknown as Json }) },
         more: waiting > due,
         ended: taken >= total,
       }
@@ -97,6 +101,14 @@ export function simulatedSource({ skid, scenario, speed, steadyMs, state }: Simu
       return { kind: 'simulated', nowMs: Math.round(nowMs), speed }
     },
     usualGapS: () => scenario.logSeconds,
+    follow(told) {
+      for (const order of told) {
+        if (orders.some((o) => o.flush === order.flush && o.does === order.does && o.askedMs === order.askedMs)) continue
+        // Rows that are out already stay as they are.
+        const atMs = Math.max(order.askedMs, scenario.fromMs + taken * logMs, orders.at(-1)?.atMs ?? 0)
+        orders.push({ ...order, atMs })
+      }
+    },
     async close() {},
   }
 }

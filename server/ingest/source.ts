@@ -1,4 +1,5 @@
 import type { Entry } from '../core/sequence.ts'
+import type { Asked } from '../core/sim/operator.ts'
 import type { Json } from '../store/keys.ts'
 import type { RunKind } from '../wire/run.ts'
 import type { RunClock } from '../wire/service.ts'
@@ -35,5 +36,7 @@ export interface Source {
   clock(): RunClock
   /** Longest pause between rows that is usual for this source, s. */
   usualGapS(): number
+  /** Only a simulated skid has somebody who does what a person has confirmed; orders it knows already are passed over. A real source is read, never told. */
+  follow?(asked: readonly Asked[]): void
   close(): Promise<void>
 }

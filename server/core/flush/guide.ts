@@ -178,20 +178,18 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
   return {
     state: s,
     course: (): Course | null => s.course,
-    /** Reasons against an act as things stand; empty when the course would take it. */
-    against: (act: FlushAct): string[] => against(s, act),
-
-    act(act: FlushAct): void {
+    /** Takes an act, or notes why not. True when water is admitted by it. */
+    act(act: FlushAct): boolean {
       let reasons = against(s, act)
       const opens = act.kind === 'flush-step' && act.state === 'started' && act.step === 'F0'
       if (reasons.length === 0 && opens) reasons = open(act)
       const c = s.course
       if (reasons.length > 0) {
-        if (c === null) return
+        if (c === null) return false
         const asked = act.kind === 'flush-check' ? `check ${act.criterion}` : act.state
         c.refusals.push({ tMs: act.tMs, person: act.person, step: act.step, asked, reasons })
         if (c.refusals.length > kept.refusals) c.refusals.shift()
-      } else if (c === null) return
+      } else if (c === null) return false
       else if (act.kind === 'flush-check') record(c, s.rules, act)
       else if (act.state === 'started') start(c, act)
       else if (act.state === 'accepted' || act.state === 'skipped')
@@ -208,8 +206,9 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
         c.endedMs = act.tMs
         c.endedBy = act.person
         c.reason = act.reason === '' ? null : act.reason
-      } else return
+      } else return false
       tell(act.tMs)
+      return reasons.length === 0 && act.kind === 'flush-step' && act.state === 'started' && act.step === 'F3'
     },
 
     scan(scan: Scan, endMs: number): void {

@@ -1,5 +1,6 @@
 import type { AlarmRecord } from '../alarms/alarm-state.ts'
 import type { AlarmChange } from '../alarms/occurrence.ts'
+import type { Course } from '../flush/course-state.ts'
 import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
 import type { Interval } from '../growth/points.ts'
 import type { AdviceReport } from '../report.ts'
@@ -16,6 +17,8 @@ export type PipelineEvent =
   | { readonly kind: 'timeline'; readonly tMs: number; readonly points: readonly TimelineEntry[] }
   | { readonly kind: 'note'; readonly tMs: number; readonly text: string }
   | { readonly kind: 'act'; readonly act: Act }
+  /** A flush as it stands, told when something of it is new. */
+  | { readonly kind: 'flush'; readonly tMs: number; readonly course: Course }
   /** A version of the settings, or a result entered by hand, has taken effect. */
   | { readonly kind: 'configuration'; readonly tMs: number; readonly applied: Applied }
   /** Logic that suppresses alarms by design began or ended to hold. */

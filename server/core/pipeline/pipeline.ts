@@ -7,7 +7,11 @@ import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import { layoutOf } from '../derive/layout.ts'
 import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'
 import { MonitorError } from '../errors.ts'
+import type { GuideState } from '../flush/course-state.ts'
+import { createGuide } from '../flush/guide.ts'
+import type { FlushInput } from '../flush/input.ts'
 import { planFlush } from '../flush/plan.ts'
+import type { BaselinePoint } from '../flush/reference.ts'
 import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } from '../fouling/watch.ts'
 import { createPresent, type PresentState } from '../insight/present.ts'
 import type { RowBlock } from '../reading.ts'
@@ -36,6 +40,8 @@ export interface PipelineState {
   adviser: AdviserState
   /** Missing in a state of an older build: learnt anew. */
   present?: PresentState
+  /** Missing in a state of an older build: no flush under way. */
+  flush?: GuideState
   /** Missing in a state of an older build, which had the limits alone. */
   configuration?: ConfigurationState
   suppression?: SuppressionState
@@ -50,6 +56,9 @@ export interface PipelineState {
   /** By segment: ratio at the last step and when. */
   ratio: (number | null)[]
   ratioMs: number
+  /** By segment: the last ratio known, and the clean baseline in force, final or not. Missing in a state of an older build. */
+  lastRatio?: (number | null)[]
+  baseline?: (BaselinePoint | null)[]
 }
 
 export interface PipelineOptions {
@@ -88,14 +97,14 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   )
   const instruments = createInstruments(layout, saved?.instruments)
   const present = createPresent(layout, saved?.present)
-  const adviser = createAdviser(saved?.adviser, (segment, ratios) =>
-    planFlush({
-      skid: configuration.skid(),
-      segments: [segment],
-      ratios,
-      given: present.forFlush(layout.segments.findIndex((g) => g.spec.id === segment)),
-    }),
-  )
+  const flushInput = (segments: readonly string[], ratios: Readonly<Record<string, number | null>>): FlushInput => ({
+    // The configuration as it stands now, a person may have changed it.
+    skid: configuration.skid(),
+    segments,
+    ratios,
+    given: present.forFlush(layout.segments.findIndex((g) => g.spec.id === segments[0])),
+  })
+  const adviser = createAdviser(saved?.adviser, (segment, ratios) => planFlush(flushInput([segment], ratios)))
 
   /** The stages that settings reach, by the configuration in force; a change has them go on from their state as after a restart. */
   function stages(of: Partial<Pick<PipelineState, 'book' | 'watch' | 'excursions' | 'suppression'>>) {
@@ -129,7 +138,19 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     inferred: saved?.inferred ?? false,
     ratio: saved?.ratio ?? layout.segments.map((): number | null => null),
     ratioMs: saved?.ratioMs ?? -1,
+    lastRatio: saved?.lastRatio ?? layout.segments.map((): number | null => null),
+    baseline: saved?.baseline ?? layout.segments.map((): BaselinePoint | null => null),
   }
+  const guide = createGuide(
+    layout,
+    {
+      input: (segments) => flushInput(segments, Object.fromEntries(layout.segments.map((g, i) => [g.spec.id, s.lastRatio[i]!]))),
+      baseline: (i) => s.baseline[i] ?? null,
+      alarms: () =>
+        on.book.rows().flatMap(({ occurrence: o, active }) => (o === null ? [] : [{ kind: o.kind, segment: o.segment, active }])),
+    },
+    saved?.flush,
+  )
   const grid = createGrid(skid, onScan, saved?.grid)
   const stepper = createStepper(layout, onStep, saved?.stepper)
   grid.setFlowing(s.production)
@@ -157,6 +178,10 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     for (const record of records) events.push({ kind: 'transition', record })
   }
 
+  function drainGuide(tMs: number): void {
+    for (const course of guide.drain()) events.push({ kind: 'flush', tMs, course })
+  }
+
   function onScan(scan: Scan): void {
     const endMs = scan.tMs + scanMs
     tookEffect(configuration.due(scan.tMs), scan.tMs)
@@ -169,6 +194,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     if (s.timed.length > 0) s.timed = s.timed.filter((t) => endMs < t.untilMs)
     on.book.tick(endMs)
     drainBook()
+    guide.scan(scan, endMs)
+    drainGuide(endMs)
     timeline(endMs)
     options.onScan?.(scan, endMs)
   }
@@ -188,6 +215,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     s.armed = out.mode.armed
     out.now.forEach((n, i) => {
       s.ratio[i] = n.ratio
+      if (n.ratio !== null) s.lastRatio[i] = n.ratio
     })
     s.ratioMs = endMs
     for (const e of out.events) onWatch(e, endMs)
@@ -218,6 +246,14 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         return
       case 'baseline':
         present.baselined(e.segment)
+        s.baseline[e.segment] =
+          e.baseline.flowM3S === null || e.baseline.tempK === null
+            ? null
+            : { dpPa: e.baseline.dpPa, flowM3S: e.baseline.flowM3S, tempK: e.baseline.tempK }
+        if (!e.baseline.provisional) {
+          guide.baselined(e.segment, s.baseline[e.segment]!, tMs)
+          drainGuide(tMs)
+        }
         events.push({ kind: 'baseline', segment: layout.segments[e.segment]!.spec.id, baseline: e.baseline })
         return
       case 'onset':
@@ -328,7 +364,11 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     events.push({ kind: 'act', act })
     const atMs = grid.state.firstMs < 0 ? -1 : act.tMs
     if (act.kind === 'settings' || act.kind === 'limit') tookEffect(configuration.take(act, atMs), act.tMs)
-    else if (act.kind === 'event') {
+    else if (act.kind === 'flush-step' || act.kind === 'flush-check') {
+      // Once water is in, the last ratio of production says nothing of the deposit any more.
+      if (guide.act(act)) s.lastRatio.fill(null)
+      drainGuide(act.tMs)
+    } else if (act.kind === 'event') {
       const water = waterResult(configuration.skid(), act)
       const old = configuration.skid().streams.find((x) => x.id === water?.stream)?.waterPpm ?? null
       if (water !== null) {
@@ -383,6 +423,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       learned: on.watch.learned,
       present,
       alarms: on.book.rows(),
+      /** The flush under way or the last one, with its plan; null before any. */
+      flush: guide.state.course === null ? null : { course: guide.state.course, plan: guide.state.plan },
     }),
     save: (): PipelineState =>
       structuredClone({
@@ -395,6 +437,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         excursions: on.excursions.state(),
         adviser: adviser.state,
         present: present.state,
+        flush: guide.state,
         configuration: configuration.state,
         suppression: on.suppression.state,
         ...s,

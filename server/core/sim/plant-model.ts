@@ -93,6 +93,51 @@ export function cleanPressure(
   }
 }
 
+/** The same with something else than feeds in it: ln μ and ρ by the volume shares of what fills it, feeds in their usual proportion. */
+export function filledPressure(
+  plant: Plant,
+  s: PlantSegment,
+  massKgS: ArrayLike<number>,
+  factors: ArrayLike<number>,
+  cellsK: ArrayLike<number>,
+  shares: { readonly feeds: number; readonly solvent: number; readonly water: number },
+  solvent: PropertyTable,
+  water: PropertyTable,
+): { flowPa: number; staticPa: number } {
+  const usual = s.streams.reduce((sum, i) => sum + plant.streams[i]!.nominalKgS, 0)
+  let visc = 0
+  let rho = 0
+  let total = 0
+  for (const i of s.streams) total += massKgS[i]!
+  if (total <= 0) return { flowPa: 0, staticPa: 0 }
+  for (let c = 0; c < cellsK.length; c++) {
+    const t = cellsK[c]!
+    let lnFeeds = 0
+    let volume = 0
+    for (const i of s.streams) {
+      const stream = plant.streams[i]!
+      const w = stream.nominalKgS / usual
+      const mu = stream.fluid.viscPaS(t) * stream.viscosityFactor * factors[i]!
+      lnFeeds += w * (Math.log(mu) + stream.viscositySlopeK * (1 / t - 1 / FEED_K))
+      volume += w / stream.fluid.rhoKgM3(t)
+    }
+    visc += Math.exp(shares.feeds * lnFeeds + shares.solvent * solvent.lnVisc(t) + shares.water * water.lnVisc(t))
+    rho += shares.feeds / volume + shares.solvent * solvent.rhoKgM3(t) + shares.water * water.rhoKgM3(t)
+  }
+  visc /= cellsK.length
+  rho /= cellsK.length
+  if (s.geometry !== null) {
+    const dp = cleanDp(s.geometry, total, rho, visc, { lossK: s.lossK })
+    return { flowPa: s.dpFactor * (dp.dpPa - dp.staticPa), staticPa: dp.staticPa }
+  }
+  if (s.assumed === null) return { flowPa: 0, staticPa: 0 }
+  const q = (total / s.assumed.kgS) * (s.assumed.rhoKgM3 / rho)
+  return {
+    flowPa: s.assumed.dpPa * (0.75 * (visc / s.assumed.viscPaS) * q + 0.25 * (rho / s.assumed.rhoKgM3) * q * q),
+    staticPa: 0,
+  }
+}
+
 /** True where an event loads a filter. */
 export const isFilter = (plant: Plant, id: string): boolean =>
   plant.segments.some((s) => s.spec.id === id && s.spec.kind === 'filter')

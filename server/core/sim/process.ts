@@ -1,10 +1,12 @@
+import type { Phase } from '../reading.ts'
 import { paFromBar } from '../units.ts'
 import { type Growth, growthsOf, ratioAt } from './deposit.ts'
 import type { Disturbances } from './disturbances.ts'
 import { type Exotherm, excessAt, exothermsOf } from './exotherm.ts'
 import { meterFaultsOf } from './faults.ts'
 import { limitRatio } from './nominal.ts'
-import { CELLS, cleanPressure, FEED_K, isFilter, type Plant } from './plant-model.ts'
+import type { Operator } from './operator.ts'
+import { CELLS, cleanPressure, FEED_K, filledPressure, isFilter, type Plant } from './plant-model.ts'
 import { randomOf } from './random.ts'
 import { eventsOf, type Scenario, timeOf } from './scenario.ts'
 import { coolantShiftK, flowShare, type Span, scheduleOf, spanAt } from './schedule.ts'
@@ -12,8 +14,11 @@ import { coolantShiftK, flowShare, type Span, scheduleOf, spanAt } from './sched
 /** The plant as it truly is at one instant; arrays are reused from step to step. */
 export interface Process {
   readonly growths: readonly Growth[]
-  readonly exotherms: readonly Exotherm[]
+  /** Those that can show now: none while no feed reacts. */
+  exotherms: readonly Exotherm[]
   readonly schedule: readonly Span[]
+  /** What the log names as phase now. */
+  phase: Phase
   readonly massKgS: Float64Array
   /** Fluid along each segment, K. */
   readonly cellsK: readonly Float64Array[]
@@ -40,7 +45,7 @@ const ramp = (tMs: number, fromMs: number, overS: number): number =>
  * exotherms, but no noise. Pressures go from the outlet backwards: p_in = p_out + ΔP. Temperatures go along the flow: each of five cells
  * tends to Tc + (T_in − Tc) e^(−NTU x) plus the heat of reaction, with the lag of the fluid and its wall.
  */
-export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances | null): Process {
+export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances | null, operator: Operator | null = null): Process {
   const schedule = scheduleOf(scenario)
   const growths = growthsOf(
     scenario,
@@ -90,6 +95,7 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
     growths,
     exotherms,
     schedule,
+    phase: 'hold',
     massKgS: new Float64Array(nS),
     cellsK: plant.segments.map((s) => new Float64Array(CELLS).fill(plant.coolants[s.coolant]!.nominalK)),
     ratio: new Float64Array(plant.segments.length).fill(1),
@@ -98,7 +104,12 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
     coolantK: jacket,
     tapPa,
     outletPa: plant.outletPa,
-    ratioOf: (n, tMs) => ratioAt(growths, plant.segments[n]!.spec.id, tMs, flushMs),
+    ratioOf(n, tMs) {
+      const { id } = plant.segments[n]!.spec
+      const course = (at: number): number => ratioAt(growths, id, at, flushMs)
+      const first = growths.find((g) => g.segment === id)
+      return operator === null || first === undefined ? course(tMs) : operator.ratio(tMs, course, first.onsetMs)
+    },
     step,
   }
 
@@ -111,6 +122,7 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
       for (const e of stepsOne) if (e.i === i && tMs >= e.tMs) want *= e.factor
       for (const e of slips) if (e.i === i) want *= 1 + (e.factor - 1) * ramp(tMs, e.tMs, e.overS)
       for (const x of exotherms) if (x.feed === i && tMs >= x.startMs && tMs < x.feedEndMs) want *= x.factor
+      want = operator?.wantKgS(i, tMs) ?? want
       for (const f of meters) if (f.stream === i && tMs >= f.fromMs && tMs < f.toMs) want = Math.max(0, want - f.errorKgS(tMs))
       const a = 1 - Math.exp(-dtS / stream.tauS)
       const b = 1 - Math.exp(-dtS / (3 * stream.tauS))
@@ -129,7 +141,8 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
     let shift = coolantShiftK(span, tMs)
     for (const e of coolings) if (tMs >= e.tMs) shift += e.degC
     for (let c = 0; c < jacket.length; c++) {
-      bath[c] = bath[c]! + (1 - Math.exp(-dtS / 150)) * (plant.coolants[c]!.nominalK + shift - bath[c]!)
+      bath[c] =
+        bath[c]! + (1 - Math.exp(-dtS / 150)) * (plant.coolants[c]!.nominalK + shift + (operator?.shiftK(c) ?? 0) - bath[c]!)
       const target = bath[c]! + (noise === null ? 0 : noise.coolantK[c]!)
       jacket[c] = jacket[c]! + (1 - Math.exp(-dtS / 60)) * (target - jacket[c]!)
     }
@@ -153,7 +166,7 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
       const ntu = s.ntu / Math.max(0.2, share) ** 0.7
       const restS = share > 0.02 ? s.volumeM3 / (mass / 850) / CELLS : 300
       const a = 1 - Math.exp(-dtS / (4 + restS + 1.5 * CELLS))
-      const reacting = span.phase === 'production' || span.phase === 'startup' ? s.reactionK * heat * Math.min(1.6, share) : 0
+      const reacting = p.phase === 'production' || p.phase === 'startup' ? s.reactionK * heat * Math.min(1.6, share) : 0
       for (let c = 0; c < CELLS; c++) {
         const x = (c + 0.5) / CELLS
         const y = x / s.hotSpot
@@ -180,7 +193,11 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
     let later = 0
     for (let n = plant.segments.length - 1; n >= 0; n--) {
       const s = plant.segments[n]!
-      const { flowPa, staticPa } = cleanPressure(plant, s, p.massKgS, factors, shownCells(n, tMs))
+      const cells = shownCells(n, tMs)
+      const { flowPa, staticPa } =
+        operator?.filled() === true
+          ? filledPressure(plant, s, p.massKgS, factors, cells, operator.filling(n), operator.solvent(), operator.water)
+          : cleanPressure(plant, s, p.massKgS, factors, cells)
       const wander = noise === null ? 0 : noise.segment[n]!
       p.cleanPa[n] = flowPa
       p.ratio[n] = p.ratioOf(n, tMs)
@@ -200,14 +217,18 @@ export function processOf(plant: Plant, scenario: Scenario, noise: Disturbances 
   /** Cells with what an exotherm adds to them. */
   function shownCells(n: number, tMs: number): Float64Array {
     const cells = p.cellsK[n]!
-    for (let c = 0; c < CELLS; c++) scratch[c] = cells[c]! + excessAt(exotherms, n, (c + 0.5) / CELLS, tMs)
+    for (let c = 0; c < CELLS; c++) scratch[c] = cells[c]! + excessAt(p.exotherms, n, (c + 0.5) / CELLS, tMs)
     return scratch
   }
 
   function step(tMs: number, dtS: number): void {
     noise?.step(dtS, tMs)
     const span = spanAt(schedule, tMs)
+    operator?.step(tMs, dtS)
+    p.phase = operator?.phase() ?? span.phase
+    p.exotherms = operator === null || operator.feeding() ? exotherms : []
     flows(tMs, dtS, span)
+    operator?.pass(p.massKgS, dtS)
     temperatures(tMs, dtS, span)
     pressures(tMs)
   }
