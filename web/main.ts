@@ -138,10 +138,6 @@ async function go(): Promise<void> {
   try {
     service ??= await getJson<Service>('/api/service')
     if (!here()) return
-    if (person === '' && service.person !== null) {
-      person = service.person
-      document.querySelector<HTMLInputElement>('#person')!.value = person
-    }
     if (page === 'replay' && run === null) {
       idle('replay', 'Clearbore')
       list = runsView(service, shell)

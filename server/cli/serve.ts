@@ -4,6 +4,7 @@ import { cautions } from '../record/facts.ts'
 import { loadSkid } from '../skid/check.ts'
 import { readSkidText } from '../skid/skid-path.ts'
 import { openStore } from '../store/open.ts'
+import { accessOptions, readAccess } from './access-options.ts'
 import type { Command, Io } from './command.ts'
 import { demoSkidFile, toolVersion, webRoot } from './install.ts'
 import { storeOptions, tellSigning } from './key-folder.ts'
@@ -24,8 +25,20 @@ Watches skids and serves the pages. Without --skid: the demo, the skid "heron" f
                     this user's state folder)
   --port N          default ${defaultPort}, or the next free one; with --port exactly that one
   --host H          address to listen on (default 127.0.0.1, this machine only); H is then a name it answers to as well
+  --tls-cert FILE, --tls-key FILE
+                    a certificate and its key (PEM): the pages come over https
+  --trust-proxy A,… proxies in front whose word on the caller's address is taken; with --public-url
+  --public-url URL  the address that a proxy in front is known by
+  --idle MINUTES    a session nobody uses for so long only reads until the next sign-in (default 30)
+  --session HOURS   a session ends after so long (default 12)
+  --new-administrator-link
+                    writes a one-time link that makes an administrator, also where there is one; it is in the audit trail
   --speed N         simulated seconds in a second (default 60)
   --start T         when a followed log with elapsed seconds or bare times of day began
+
+Without --skid everybody at this machine is the demo operator. With --skid the first start writes a link by which the
+first administrator is made; until then, and for whoever sits at this machine, pages can be read without signing in.
+Beyond this machine it listens only when there is somebody who can sign in.
 
 Ctrl-C or SIGTERM ends it cleanly. Exit code 0; 2 for a wrong command line; 3 when the machine fails (port taken, disk full …).
 `
@@ -63,7 +76,7 @@ export const serveCommand: Command = {
     const { values: v } = readOptions(
       'serve',
       args,
-      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text, keys: text },
+      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text, keys: text, ...accessOptions },
       false,
     )
     const follows = v.follow ?? []
@@ -75,6 +88,7 @@ export const serveCommand: Command = {
     const isDemo = v.skid === undefined
     const speed = wholeIn('serve', '--speed', v.speed ?? '60', 1, 3600)
     const port = v.port === undefined ? defaultPort : wholeIn('serve', '--port', v.port, 0, 65_535)
+    const access = await readAccess(v)
     const watched = await watchedOf(v.skid ?? [demoSkidFile()], follows, speed, v.start ?? null)
     const ids = watched.map((w) => w.skid.skid)
     const twice = ids.find((id, i) => ids.indexOf(id) !== i)
@@ -91,7 +105,6 @@ export const serveCommand: Command = {
         store,
         watched,
         isDemo,
-        person: isDemo ? 'demo operator' : null,
         host: v.host ?? '127.0.0.1',
         port,
         tryPorts: v.port === undefined ? 20 : 0,
@@ -99,10 +112,12 @@ export const serveCommand: Command = {
         toolVersion: toolVersion(),
         log: (line) => io.err(`${line}\n`),
         onFatal: fail,
+        ...access,
       })
       try {
         await tellSigning(io, store.trail.signing())
-        await io.out(greeting(serving.url, watched, serving.port === port || port === 0 ? null : port, webRoot() !== null))
+        const taken = serving.port === port || port === 0 ? null : port
+        await io.out(greeting(serving, watched, taken, access.tls === null && v.host !== undefined))
         await Promise.race([aborted(io), fatal])
       } finally {
         await serving.stop()
@@ -114,7 +129,13 @@ export const serveCommand: Command = {
   },
 }
 
-function greeting(url: string, watched: readonly Watched[], taken: number | null, hasPages: boolean): string {
+type Greeted = Pick<Awaited<ReturnType<typeof startServing>>, 'url' | 'administratorLink'>
+function greeting(
+  { url, administratorLink }: Greeted,
+  watched: readonly Watched[],
+  taken: number | null,
+  isPlain: boolean,
+): string {
   const lines = watched.map(({ skid, source: s }) =>
     s.kind === 'simulated'
       ? `  ${skid.skid}: simulated, ${s.speed} times faster than time (an invented run, not a plant)`
@@ -123,8 +144,14 @@ function greeting(url: string, watched: readonly Watched[], taken: number | null
   return [
     `Clearbore ${toolVersion()}: ${url}`,
     ...(taken === null ? [] : [`  port ${taken} is taken, so this is the next free one`]),
-    ...(hasPages ? [] : ['  the pages have not been built; the API answers under /api (npm run build makes the pages)']),
+    ...(webRoot() !== null ? [] : ['  the pages have not been built; the API answers under /api (npm run build makes the pages)']),
     ...lines,
+    ...(administratorLink === null
+      ? []
+      : ['  to make an administrator, open this once, within 48 hours:', `  ${administratorLink}`]),
+    ...(isPlain && !/^https:|\/\/(127\.|localhost|\[::1\])/.test(url)
+      ? ['  passwords cross the network readable: give --tls-cert and --tls-key, or a proxy that speaks https']
+      : []),
     ...cautions,
     '',
   ].join('\n')

@@ -4,12 +4,14 @@ import { MonitorError } from '../core/errors.ts'
 import { demoScenario } from '../core/sim/demo.ts'
 import type { Skid } from '../core/skid.ts'
 import { exportRun } from '../export-run.ts'
+import { linkPath } from '../http/people.ts'
 import { createImports } from '../imports.ts'
 import { followSource } from '../ingest/follow.ts'
 import { simulatedSource } from '../ingest/simulated.ts'
 import type { Source } from '../ingest/source.ts'
 import { createCatalogue, createPair, kindOf } from '../monitor/catalogue.ts'
 import { createMonitor } from '../monitor.ts'
+import { createPeople, type PeopleOptions } from '../people/people.ts'
 import { loadSkid } from '../skid/check.ts'
 import type { RunId } from '../store/keys.ts'
 import type { Store } from '../store/open.ts'
@@ -28,7 +30,6 @@ export interface ServingOptions {
   readonly store: Store
   readonly watched: readonly Watched[]
   readonly isDemo: boolean
-  readonly person: string | null
   readonly host: string
   readonly port: number
   /** Further ports to try where the first is taken. */
@@ -37,6 +38,13 @@ export interface ServingOptions {
   readonly toolVersion: string
   readonly log: (line: string) => void
   readonly onFatal: (error: unknown) => void
+  readonly tls?: { readonly cert: string; readonly key: string } | null
+  /** Proxies in front, and the address they are known by. */
+  readonly trustProxy?: readonly string[]
+  readonly publicUrl?: string | null
+  /** Writes a link for an administrator also where there is one, and in the demo. */
+  readonly newAdministrator?: boolean
+  readonly people?: Pick<PeopleOptions, 'hasher' | 'idleMs' | 'sessionMs'>
   readonly beatMs?: number
   readonly snapshotMs?: number
   readonly giveUpMs?: number
@@ -44,11 +52,22 @@ export interface ServingOptions {
 
 const nightMs = 24 * 3_600_000
 
-/** Everything of a running server put together: store, monitor, imports, pages. Resolves once it listens. Errors: PORT_TAKEN, those of the sources' skids. */
+/** Everything of a running server put together: store, monitor, imports, pages. Resolves once it listens. Errors: USAGE (would be reached from outside with nobody to sign in), PORT_TAKEN, those of the sources' skids. */
 export async function startServing(o: ServingOptions) {
   const { store } = o
   const steadyMs = () => performance.now()
   const wallMs = () => Date.now()
+  const people = createPeople({ store, wallMs, ...o.people })
+  const { publicUrl = null, trustProxy = [] } = o
+  const isLoopback = ['127.0.0.1', 'localhost', '::1'].includes(o.host)
+  const isOutside = !isLoopback || publicUrl !== null || trustProxy.length > 0
+  if (isOutside && !people.any())
+    throw new MonitorError('USAGE', 'others would reach this server, and there is nobody yet who could sign in', {
+      hint: 'start it once for this machine only (without --host, --public-url, --trust-proxy) with --new-administrator-link and the same --data, open the link it writes, then start it as you wish',
+    })
+  const strangers = people.strangers()
+  if (strangers.length > 0)
+    o.log(`people in the store are not as the audit trail tells: ${strangers.join(', ')}; look into it before you trust them`)
   const monitor = createMonitor({
     store,
     steadyMs,
@@ -136,14 +155,17 @@ export async function startServing(o: ServingOptions) {
     }
   }
 
-  const isLoopback = ['127.0.0.1', 'localhost', '::1'].includes(o.host)
   const { app, hub, publisher } = await buildApp({
     store,
     monitor,
     catalogue,
     toolVersion: o.toolVersion,
-    person: o.person,
-    isDemo: () => o.isDemo,
+    people,
+    isDemo: () => o.isDemo && !isOutside,
+    openReading: !isOutside,
+    tls: o.tls ?? null,
+    trustProxy,
+    publicUrl,
     wallMs,
     uploadMaxBytes: 512 * 2 ** 20,
     exportRun,
@@ -162,10 +184,16 @@ export async function startServing(o: ServingOptions) {
     throw error
   })
   monitor.start(o.beatMs)
+  const mayMake = o.newAdministrator === true || (!o.isDemo && !people.any())
+  const link = mayMake ? linkPath(people.administratorLink()) : null
   const shown = isLoopback ? o.host : o.host === '0.0.0.0' || o.host === '::' ? (ownAddress() ?? o.host) : o.host
+  const scheme = o.tls == null ? 'http' : 'https'
+  const url = publicUrl ?? `${scheme}://${shown.includes(':') ? `[${shown}]` : shown}:${port}/`
   return {
     port,
-    url: `http://${shown.includes(':') ? `[${shown}]` : shown}:${port}/`,
+    url,
+    /** Makes an administrator, once; for the console and nowhere else. */
+    administratorLink: link === null ? null : new URL(link, url).href,
     monitor,
     imports,
     counts: hub.counts,

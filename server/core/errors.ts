@@ -34,6 +34,7 @@ export type ErrorCode =
   | 'UPLOAD'
   | 'RUN_UNKNOWN'
   | 'RUN_ENDED'
+  | 'SETTINGS_UNKNOWN'
   | 'ACT_REFUSED'
   | 'SIGN_IN_NEEDED'
   | 'SIGN_IN_REFUSED'
@@ -43,6 +44,7 @@ export type ErrorCode =
   | 'PERSON_UNKNOWN'
   | 'LINK_SPENT'
   | 'BUSY'
+  | 'TOO_MANY'
   | 'ALARM_UNKNOWN'
 
 /** Where in a file a mistake stands; line and column count from 1. */

@@ -23,6 +23,15 @@ const statuses: Partial<Record<ErrorCode, number>> = {
   CSV_LINE: 422,
   DISK_FULL: 507,
   STORE_LOCKED: 503,
+  SIGN_IN_NEEDED: 401,
+  SIGN_IN_REFUSED: 401,
+  SIGN_IN_WAIT: 429,
+  NOT_ALLOWED: 403,
+  PERSON_REFUSED: 422,
+  PERSON_UNKNOWN: 404,
+  LINK_SPENT: 410,
+  BUSY: 503,
+  TOO_MANY: 429,
 }
 
 export const problemOf = (e: MonitorError): Problem => ({

@@ -26,6 +26,7 @@ export const exportRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
     app.get(
       `/runs/:run/export/${file}`,
       {
+        config: { needs: 'read' },
         schema: {
           summary: `${what} of a run as ${format}, a download`,
           params: Type.Object({ run: Type.Integer({ minimum: 1 }) }),

@@ -12,20 +12,25 @@ function nameOf(host: string): string | null {
 /**
  * Whether a request may be answered: its Host must be a name that this server goes by, and its Origin, if it has one, this very server.
  * A foreign page whose own name was pointed at this machine (DNS rebinding) has neither. `hosts` are further names, of --host; bound to
- * an address outside, every literal address is one too, since rebinding needs a name.
+ * an address outside, every literal address is one too, since rebinding needs a name. `publicUrl` is the address that a proxy in front
+ * is known by.
  */
-export function createGuard(hosts: readonly string[]) {
+export function createGuard(
+  hosts: readonly string[],
+  { isTls = false, publicUrl = null }: { readonly isTls?: boolean; readonly publicUrl?: string | null } = {},
+) {
+  const outside = publicUrl === null ? null : new URL(publicUrl)
   const names = new Set(hosts.map((h) => (isIP(h) === 6 ? `[${h}]` : h).toLowerCase()))
   const isOutside = hosts.some((h) => !loopback.has(h) && h !== '::1')
   const isOurs = (name: string): boolean =>
-    loopback.has(name) || names.has(name) || (isOutside && isIP(name.replace(/^\[|\]$/g, '')) !== 0)
+    loopback.has(name) || names.has(name) || name === outside?.hostname || (isOutside && isIP(name.replace(/^\[|\]$/g, '')) !== 0)
   return {
     /** The fault in words, null where there is none. */
     fault(host: string | undefined, origin: string | undefined): 'host' | 'origin' | null {
       const name = host === undefined ? null : nameOf(host)
       if (name === null || !isOurs(name)) return 'host'
       if (origin === undefined) return null
-      return origin === `http://${host}` || origin === `https://${host}` ? null : 'origin'
+      return origin === `${isTls ? 'https' : 'http'}://${host}` || origin === outside?.origin ? null : 'origin'
     },
   }
 }
@@ -41,7 +46,7 @@ export function guardRequests(app: FastifyInstance, guard: Guard): void {
         ? {
             code: 'HTTP_421',
             message: 'this server does not go by that name',
-            hint: 'use 127.0.0.1 or localhost, or start it with --host NAME',
+            hint: 'use 127.0.0.1 or localhost, or start it with --host NAME; behind a proxy with --public-url URL',
           }
         : {
             code: 'HTTP_403',

@@ -35,6 +35,7 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
   app.get(
     '/runs/:run/alarm-performance',
     {
+      config: { needs: 'read' },
       schema: {
         summary: 'every performance figure of the alarm system over a period, with its target and what it rests on',
         params,
@@ -65,6 +66,7 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
   app.get(
     '/runs/:run/alarms/:alarm/before',
     {
+      config: { needs: 'read' },
       schema: {
         summary: 'what led to an alarm: the first of its group, its onset, and all that happened in the 30 min before',
         params: Type.Object({ run: Type.Integer({ minimum: 1 }), alarm: Type.Integer({ minimum: 1 }) }),
@@ -81,6 +83,7 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
   app.get(
     '/runs/:run/hand-over',
     {
+      config: { needs: 'read' },
       schema: {
         summary: 'the note at a change of shift: what stands at toMs and what happened since fromMs',
         params,

@@ -7,7 +7,10 @@ import { createEngine } from '../monitor/engine.ts'
 import { skidFacts } from '../monitor/skid-facts.ts'
 import { alarmsAt, storedState } from '../monitor/stored-state.ts'
 import { marksOf, trendsOf } from '../monitor/trends.ts'
+import type { Need } from '../people/roles.ts'
 import { cautions } from '../record/facts.ts'
+import type { ActSent } from '../wire/act.ts'
+import { signedIn } from './access.ts'
 import {
   actBodySchema,
   actReplySchema,
@@ -26,16 +29,23 @@ import type { Services } from './services.ts'
 
 const params = Type.Object({ run: Type.Integer({ minimum: 1 }) })
 const time = Type.Number({ minimum: -8.64e15, maximum: 8.64e15 })
+const config = { needs: 'read' } as const
+/** Acts that change what the pipeline watches for. */
+const needOf: { readonly [kind in ActSent['kind']]?: Need } = {
+  limit: 'engineer',
+}
 
 /** Runs, live and stored: list, facts, state at a moment, report, trends, marks, alarms, journal, acts. */
 export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => {
-  app.get('/runs', { schema: { summary: 'all runs, newest first', response: replies(Type.Array(runRowSchema)) } }, async () =>
-    s.catalogue.rows(),
+  app.get(
+    '/runs',
+    { config, schema: { summary: 'all runs, newest first', response: replies(Type.Array(runRowSchema)) } },
+    async () => s.catalogue.rows(),
   )
 
   app.get(
     '/runs/:run',
-    { schema: { summary: 'a run with the facts of its skid', params, response: replies(runDetailSchema) } },
+    { config, schema: { summary: 'a run with the facts of its skid', params, response: replies(runDetailSchema) } },
     async ({ params: { run } }) => {
       const { skid } = s.catalogue.parts(run)
       return { ...s.catalogue.row(run), skidFacts: skidFacts(skid), toolVersion: s.catalogue.summary(run).toolVersion, cautions }
@@ -45,6 +55,7 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
   app.get(
     '/runs/:run/state',
     {
+      config,
       schema: {
         summary: 'the whole state: of a live run now, of any run as it was known at atMs (a stored run: its end by default)',
         params,
@@ -61,7 +72,7 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
 
   app.get(
     '/runs/:run/report',
-    { schema: { summary: 'the report, as analyse writes it', params, response: replies(reportSchema) } },
+    { config, schema: { summary: 'the report, as analyse writes it', params, response: replies(reportSchema) } },
     async ({ params: { run } }) => {
       const live = s.monitor.engine(run)
       if (live !== null) return live.report()
@@ -73,6 +84,7 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
   app.get(
     '/runs/:run/trends',
     {
+      config,
       schema: {
         summary: 'ratios of every segment and readings of the tags asked for, as buckets with lowest, highest and mean',
         params,
@@ -107,6 +119,7 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
   app.get(
     '/runs/:run/marks',
     {
+      config,
       schema: { summary: 'baselines, onsets, limits and their changes, forecasts, notes', params, response: replies(marksSchema) },
     },
     async ({ params: { run } }) => marksOf(s.catalogue.parts(run)),
@@ -114,36 +127,39 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
 
   app.get(
     '/runs/:run/alarms',
-    { schema: { summary: 'every alarm, first raised first', params, response: replies(Type.Array(alarmRowSchema)) } },
+    { config, schema: { summary: 'every alarm, first raised first', params, response: replies(Type.Array(alarmRowSchema)) } },
     async ({ params: { run } }) => s.monitor.engine(run)?.alarms.all() ?? alarmsAt(s.catalogue.parts(run), Infinity).all(),
   )
 
   app.get(
     '/runs/:run/transitions',
-    { schema: { summary: 'the alarm journal, oldest first', params, response: replies(Type.Array(transitionRowSchema)) } },
+    { config, schema: { summary: 'the alarm journal, oldest first', params, response: replies(Type.Array(transitionRowSchema)) } },
     async ({ params: { run } }) =>
       s.store.transitions.list(s.catalogue.parts(run).run).map((t) => transitionRow(t.more as unknown as AlarmRecord)),
   )
 
   app.get(
     '/runs/:run/acts',
-    { schema: { summary: 'what people did, oldest first', params, response: replies(Type.Array(actRowSchema)) } },
+    { config, schema: { summary: 'what people did, oldest first', params, response: replies(Type.Array(actRowSchema)) } },
     async ({ params: { run } }) => s.store.sequence.acts(s.catalogue.parts(run).run),
   )
 
   app.post(
     '/runs/:run/acts',
     {
+      config: { needs: 'operate' },
       schema: {
-        summary: 'acknowledge, comment, shelve, change a limit …; every act names a person and is on disk when this returns',
+        summary:
+          'acknowledge, comment, shelve, change a limit …; the act is that of who is signed in, and on disk when this returns',
         params,
         body: actBodySchema,
         response: replies(actReplySchema),
       },
     },
-    async ({ params: { run }, body }) => {
+    async ({ params: { run }, body, person }) => {
+      s.access.demand(person, needOf[body.kind] ?? 'operate')
       s.catalogue.summary(run)
-      return s.monitor.act(run, body)
+      return s.monitor.act(run, { ...body, person: signedIn(person).name })
     },
   )
 }

@@ -37,7 +37,6 @@ export const serviceSchema = closed({
   tool: closed({ name: Type.Literal('clearbore'), version: text }),
   cautions: texts,
   demo: flag,
-  person: textOrNull,
   uploadMaxBytes: num,
   wallMs: num,
 })
@@ -79,7 +78,9 @@ export const runDetailSchema = closed({
     stepSeconds: num,
     detection: closed({ falseAlarmDays: num, riseToFindPct: num }),
     tags: list(closed({ tag: text, quantity: text, unit: textOrNull, range: maybe(Type.Tuple([num, num])) })),
-    streams: list(closed({ id: text, title: text, flowTag: text, reagent: textOrNull, waterPpm: numOrNull })),
+    streams: list(
+      closed({ id: text, title: text, flowTag: text, reagent: textOrNull, waterPpm: numOrNull, molHPerFlowUnit: numOrNull }),
+    ),
     segments: list(segmentFacts),
   }),
   toolVersion: text,
@@ -150,7 +151,12 @@ export const trendsSchema = closed({
   fromMs: num,
   bucketMs: num,
   buckets: num,
-  segments: list(closed({ segment: text, ratio: closed(band), dpBar: closed(band), flowMlMin: closed(band), tempC: closed(band) })),
+  segments: list(
+    closed({
+      segment: text, ratio: closed(band), dpBar: closed(band), flowMlMin: closed(band), tempC: closed(band), cusum: maybe(closed(band)),
+      cusumLow: maybe(closed(band)),
+    }), // biome-ignore format: a list
+  ),
   tags: list(closed({ tag: text, unit: textOrNull, ...band })),
   production: list(maybe(flag)),
 })
@@ -163,23 +169,27 @@ export const marksSchema = closed({
   notes: list(closed({ tMs: num, text })),
 })
 
-const person = Type.String({ minLength: 1, maxLength: 100 })
 const words = Type.String({ maxLength: 2000 })
 const id = Type.Integer({ minimum: 1 })
 const kind = <const T extends string>(name: T) => Type.Literal(name)
 const actBodies = [
-  closed({ person, kind: kind('acknowledge'), alarm: id }),
-  closed({ person, kind: kind('reset'), alarm: id }),
-  closed({ person, kind: kind('shelve'), alarm: id, minutes: Type.Number({ exclusiveMinimum: 0, maximum: 480 }), reason: words }),
-  closed({ person, kind: kind('unshelve'), alarm: id, reason: words }),
-  closed({ person, kind: kind('comment'), alarm: maybe(id), text: words }),
-  closed({ person, kind: kind('limit'), segment: text, limit: limitName, value: numOrNull, reason: words }),
+  closed({ kind: kind('acknowledge'), alarm: id }),
+  closed({ kind: kind('reset'), alarm: id, reason: words }),
+  closed({ kind: kind('shelve'), alarm: id, minutes: Type.Number({ exclusiveMinimum: 0, maximum: 480 }), reason: words }),
+  closed({ kind: kind('unshelve'), alarm: id, reason: words }),
+  closed({ kind: kind('comment'), alarm: maybe(id), text: words }),
+  closed({ kind: Type.Union([kind('out-of-service'), kind('in-service')]), key: Type.String({ minLength: 1, maxLength: 200 }), reason: words }),
   closed({
-    person, kind: kind('flush-step'), segment: text, step: Type.String({ maxLength: 20 }),
+    kind: kind('event'), event: Type.String({ minLength: 1, maxLength: 60 }), value: numOrNull, unit: maybe(Type.String({ maxLength: 20 })),
+    note: words, of: Type.Optional(maybe(Type.String({ maxLength: 64 }))), atMs: Type.Optional(numOrNull),
+  }),
+  closed({ kind: kind('limit'), segment: text, limit: limitName, value: numOrNull, reason: words }),
+  closed({
+    kind: kind('flush-step'), segment: text, step: Type.String({ maxLength: 20 }),
     state: oneOf(['started', 'accepted', 'refused', 'skipped', 'ended', 'aborted']), reason: words,
   }),
   closed({
-    person, kind: kind('flush-check'), segment: text, step: Type.String({ maxLength: 20 }), criterion: Type.String({ maxLength: 80 }),
+    kind: kind('flush-check'), segment: text, step: Type.String({ maxLength: 20 }), criterion: Type.String({ maxLength: 80 }),
     verdict: oneOf(['met', 'failed', 'skipped']), value: Type.Union([num, Type.String({ maxLength: 200 }), Type.Null()]),
     source: Type.String({ maxLength: 200 }), reason: words,
   }),
@@ -201,7 +211,6 @@ export const actReplySchema = closed({
 const fileText = closed({ name: Type.String({ minLength: 1, maxLength: 200 }), text: Type.String({ maxLength: 2 ** 20 }) })
 export const uploadBodySchema = closed({
   title: Type.String({ minLength: 1, maxLength: 200 }),
-  person,
   skid: Type.Union([fileText, closed({ ofRun: id })]),
   events: maybe(fileText),
   start: maybe(Type.String({ maxLength: 40 })),
@@ -218,7 +227,7 @@ export type Checked = [
   Fits<Static<typeof trendsSchema>, wire.Trends>,
   Fits<Static<typeof marksSchema>, wire.Marks>,
   Fits<Static<typeof problemSchema>, wire.Problem>,
-  Fits<Static<typeof actBodySchema>, wire.ActBody>,
+  Fits<Static<typeof actBodySchema>, wire.ActSent>,
   Fits<Static<typeof uploadBodySchema>, wire.UploadBody>,
   Fits<Static<typeof uploadSchema>, wire.Upload>,
 ]

@@ -10,13 +10,12 @@ import type { Services } from './services.ts'
 export const serviceRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => {
   app.get(
     '/service',
-    { schema: { summary: 'this server, its cautions and limits', response: replies(serviceSchema) } },
+    { config: { needs: 'public' }, schema: { summary: 'this server, its cautions and limits', response: replies(serviceSchema) } },
     async () => ({
       api: 1 as const,
       tool: { name: 'clearbore' as const, version: s.toolVersion },
       cautions: [...cautions],
       demo: s.isDemo(),
-      person: s.person,
       uploadMaxBytes: s.uploadMaxBytes,
       wallMs: s.wallMs(),
     }),
@@ -25,6 +24,7 @@ export const serviceRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s)
   app.get(
     '/runs/:run/flush-plan',
     {
+      config: { needs: 'read' },
       schema: {
         summary:
           'the flush plan of a segment at a resistance ratio (of the run now by default); advisory, under the site procedure',

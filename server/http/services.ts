@@ -4,15 +4,15 @@ import type { Catalogue } from '../monitor/catalogue.ts'
 import type { MonitorStore } from '../monitor/needs.ts'
 import type { Monitor } from '../monitor.ts'
 import type { RunRow } from '../wire/run.ts'
+import type { Access } from './access.ts'
 
 /** What the routes call; `app.ts` hands it to them. */
 export interface Services {
   readonly store: MonitorStore
   readonly monitor: Pick<Monitor, 'engine' | 'state' | 'act' | 'lives'>
   readonly catalogue: Catalogue
+  readonly access: Pick<Access, 'demand'>
   readonly toolVersion: string
-  /** Name to fill in for the person of an act; null where each gives their own. */
-  readonly person: string | null
   readonly isDemo: () => boolean
   readonly wallMs: () => number
   readonly uploadMaxBytes: number

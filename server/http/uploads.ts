@@ -9,10 +9,12 @@ import type { FastifyPluginAsyncTypebox } from '@fastify/type-provider-typebox'
 import { Type } from 'typebox'
 import { MonitorError } from '../core/errors.ts'
 import type { Upload, UploadBody } from '../wire/upload.ts'
+import { type Caller, signedIn } from './access.ts'
 import { replies, runRowSchema, uploadBodySchema, uploadSchema } from './schemas.ts'
 import type { Services } from './services.ts'
 
 interface Pending {
+  readonly person: string
   readonly dir: string
   readonly body: UploadBody
   readonly skidFile: string
@@ -21,6 +23,7 @@ interface Pending {
   readonly bornMs: number
 }
 
+const config = { needs: 'operate' } as const
 const mostPending = 8
 const mostLogs = 32
 /** An upload nobody finished is thrown away after so long. */
@@ -34,9 +37,11 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
   app.addContentTypeParser(['application/octet-stream', 'text/csv'], (_request, payload, done) => done(null, payload))
 
   const view = (upload: string, p: Pending): Upload => ({ upload, logs: p.logs.map(({ name, bytes }) => ({ name, bytes })) })
-  const need = (upload: string): Pending => {
+  /** An upload is the person's who began it. */
+  const need = (upload: string, caller: Caller | null): Pending => {
     const found = pending.get(upload)
-    if (found === undefined) throw new MonitorError('UPLOAD', 'there is no such upload', { hint: 'begin it again' })
+    if (found === undefined || found.person !== caller?.name)
+      throw new MonitorError('UPLOAD', 'there is no such upload', { hint: 'begin it again' })
     return found
   }
   const drop = (upload: string): void => {
@@ -47,8 +52,11 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
 
   app.post(
     '/uploads',
-    { schema: { summary: 'begin an upload: skid file and events', body: uploadBodySchema, response: replies(uploadSchema) } },
-    async ({ body }) => {
+    {
+      config,
+      schema: { summary: 'begin an upload: skid file and events', body: uploadBodySchema, response: replies(uploadSchema) },
+    },
+    async ({ body, person }) => {
       for (const [id, p] of pending) if (s.wallMs() - p.bornMs > keptMs) drop(id)
       if (pending.size >= mostPending)
         throw new MonitorError('UPLOAD', `${mostPending} uploads are under way already`, { hint: 'finish one of them or wait' })
@@ -60,7 +68,7 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
       const id = randomUUID()
       const dir = join(root, id)
       await mkdir(dir)
-      const made: Pending = { dir, body, skidFile, skidText, logs: [], bornMs: s.wallMs() }
+      const made: Pending = { person: signedIn(person).name, dir, body, skidFile, skidText, logs: [], bornMs: s.wallMs() }
       pending.set(id, made)
       return view(id, made)
     },
@@ -69,6 +77,7 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
   app.put(
     '/uploads/:upload/logs/:name',
     {
+      config,
       bodyLimit: s.uploadMaxBytes,
       schema: {
         summary: 'one log file, its bytes as the body (application/octet-stream or text/csv)',
@@ -77,8 +86,8 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
         response: replies(uploadSchema),
       },
     },
-    async ({ params: { upload, name }, body, headers }, reply) => {
-      const p = need(upload)
+    async ({ params: { upload, name }, body, headers, person }, reply) => {
+      const p = need(upload, person)
       if (p.logs.length >= mostLogs) throw new MonitorError('UPLOAD', `at most ${mostLogs} logs make one run`)
       if (p.logs.some((l) => l.name === name)) throw new MonitorError('UPLOAD', `'${name}' was uploaded already`)
       if (Number(headers['content-length'] ?? 0) > s.uploadMaxBytes) return reply.code(413).send(tooLarge(s.uploadMaxBytes))
@@ -105,22 +114,23 @@ export const uploadRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
   app.post(
     '/uploads/:upload/import',
     {
+      config,
       schema: {
         summary: 'the uploaded logs become a run',
         params: Type.Object({ upload: Type.String({ maxLength: 36 }) }),
         response: replies(runRowSchema),
       },
     },
-    async ({ params: { upload } }) => {
-      const p = need(upload)
+    async ({ params: { upload }, person }) => {
+      const p = need(upload, person)
       if (p.logs.length === 0) throw new MonitorError('UPLOAD', 'no log has been uploaded yet', { hint: 'send at least one' })
-      const { title, person, events, start } = p.body
+      const { title, events, start } = p.body
       const { skidFile, skidText, logs } = p
       pending.delete(upload)
       try {
         return s.importLogs({
           title,
-          person,
+          person: p.person,
           skidFile,
           skidText,
           logs,

@@ -134,8 +134,8 @@ export function createConnection(socket: WebSocket, source: HubSource) {
       if (socket.bufferedAmount > free || waited > patience) return
       for (const [run, s] of subscriptions) if (s.isBehind) snapshot(run, s)
     },
-    close(): void {
-      socket.close(1001, 'the server is closing')
+    close(code = 1001, why = 'the server is closing'): void {
+      socket.close(code, why)
       setTimeout(() => socket.terminate(), 500).unref()
     },
   }

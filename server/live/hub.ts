@@ -1,4 +1,4 @@
-import type { Server } from 'node:http'
+import type { IncomingMessage, Server } from 'node:http'
 import type { Duplex } from 'node:stream'
 import { type WebSocket, WebSocketServer } from 'ws'
 import type { LiveState } from '../wire/live.ts'
@@ -25,37 +25,46 @@ export interface HubOptions {
   readonly source: HubSource
   readonly version: string
   readonly wallMs: () => number
-  /** False refuses the upgrade: a foreign Host or Origin. */
-  readonly admits: (host: string | undefined, origin: string | undefined) => boolean
+  /** Refuses the upgrade (a foreign Host or Origin, nobody signed in), or says until when the page may stay. */
+  readonly admit: (request: IncomingMessage) => { readonly refused: string } | { readonly holds: () => boolean }
   readonly maxConnections?: number
   readonly heartbeatMs?: number
 }
+
+/** Close code of a socket whose session ended. */
+const signedOut = 4401
 
 /**
  * The websockets: who is subscribed to what, a heartbeat each second, and deltas. A page that does not take its messages is not waited
  * for: its deltas are dropped and it gets one snapshot when it has caught up (see connection.ts).
  */
-export function createHub({ source, version, wallMs, admits, maxConnections = 64, heartbeatMs = 1000 }: HubOptions) {
+export function createHub({ source, version, wallMs, admit, maxConnections = 64, heartbeatMs = 1000 }: HubOptions) {
   const sockets = new WebSocketServer({ noServer: true, maxPayload: 16_384, perMessageDeflate: false })
-  const connections = new Set<Connection>()
+  const connections = new Map<Connection, () => boolean>()
   let messages = 0
   const all = (message: ServerMessage): void => {
     const text = JSON.stringify(message)
-    for (const c of connections) {
+    for (const c of connections.keys()) {
       c.send(text)
       messages++
     }
   }
   const beat = setInterval(() => {
+    review()
     if (connections.size === 0) return
     all({ type: 'heartbeat', wallMs: wallMs(), runs: source.beats() })
-    for (const c of connections) c.catchUp()
+    for (const c of connections.keys()) c.catchUp()
   }, heartbeatMs)
   beat.unref()
 
-  function join(socket: WebSocket): void {
+  /** Pages whose session is over are let go. */
+  function review(): void {
+    for (const [c, holds] of connections) if (!holds()) c.close(signedOut, 'signed out')
+  }
+
+  function join(socket: WebSocket, holds: () => boolean): void {
     const connection = createConnection(socket, source)
-    connections.add(connection)
+    connections.set(connection, holds)
     socket.on('close', () => connections.delete(connection))
     connection.send(JSON.stringify({ type: 'hello', api: 1, version, runs: source.runs() } satisfies ServerMessage))
   }
@@ -70,22 +79,24 @@ export function createHub({ source, version, wallMs, admits, maxConnections = 64
       server.on('upgrade', (request, socket, head) => {
         socket.on('error', () => socket.destroy())
         if (new URL(request.url ?? '/', 'http://x').pathname !== '/ws') return refuse(socket, '404 Not Found')
-        if (!admits(request.headers.host, request.headers.origin)) return refuse(socket, '403 Forbidden')
+        const admission = admit(request)
+        if ('refused' in admission) return refuse(socket, admission.refused)
         if (connections.size >= maxConnections) return refuse(socket, '503 Service Unavailable')
-        sockets.handleUpgrade(request, socket, head, join)
+        sockets.handleUpgrade(request, socket, head, (joined) => join(joined, admission.holds))
       })
     },
     news(run: number, fresh: Fresh): void {
-      for (const c of connections) if (c.news(run, fresh)) messages++
+      for (const c of connections.keys()) if (c.news(run, fresh)) messages++
     },
     runs(): void {
       if (connections.size > 0) all({ type: 'runs', runs: source.runs() })
     },
+    review,
     /** Connections, and messages sent since the start. */
     counts: () => ({ connections: connections.size, messages }),
     close(): void {
       clearInterval(beat)
-      for (const c of connections) c.close()
+      for (const c of connections.keys()) c.close()
       sockets.close()
     },
   }

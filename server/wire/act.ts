@@ -3,8 +3,15 @@ import type { TransitionRow } from './alarm.ts'
 
 type Untimed<A> = A extends Act ? Omit<A, 'tMs'> : never
 
-/** Body of `POST /api/runs/:run/acts`: an act without its time, which the server gives by the run's clock. Every act names a person. */
-export type ActBody = Exclude<Untimed<Act>, { readonly kind: 'event' }>
+/** An act without its time, which the server gives by the run's clock. Every act names a person. */
+export type ActBody =
+  | Exclude<Untimed<Act>, { readonly kind: 'settings' | 'reset' | 'limit' }>
+  | Omit<Required<Extract<Act, { readonly kind: 'reset' }>>, 'tMs'>
+  | Omit<Extract<Act, { readonly kind: 'limit' }>, 'tMs' | 'version'>
+
+type Unnamed<A> = A extends ActBody ? Omit<A, 'person'> : never
+/** Body of `POST /api/runs/:run/acts`. The person is who is signed in. */
+export type ActSent = Unnamed<ActBody>
 
 /** Reply: on disk before it is sent. `transitions` holds what it did to the alarm, a refusal (outcome 'refused') with its reason. */
 export interface ActReply {

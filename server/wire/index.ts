@@ -3,6 +3,13 @@
  * null is what is not known.
  *
  *   GET  /api/openapi.json                                   the description of all below
+ *   GET  /api/session    POST, DELETE                       Session: who is signed in; sign in with name and password, sign out
+ *   POST /api/session/seen                                   Session; somebody is at the page
+ *   POST /api/session/password                               Session; the own password
+ *   POST /api/links/look ({ token } → LinkFacts)             what a one-time link is for
+ *   POST /api/links/use ({ token, name, password } → Session)
+ *   GET  /api/people    POST ({ name, role, reason } → OneTimeLink)    PersonFacts[]
+ *   POST /api/people/:person/role|disable|enable|reset       a reason each; reset gives a OneTimeLink
  *   GET  /api/service                                        Service
  *   GET  /api/runs                                           RunRow[]
  *   GET  /api/runs/:run                                      RunDetail
@@ -15,7 +22,7 @@
  *   GET  /api/runs/:run/alarm-performance?fromMs&toMs        AlarmPerformance
  *   GET  /api/runs/:run/hand-over?fromMs&toMs                HandOver
  *   GET  /api/runs/:run/transitions                          TransitionRow[]
- *   GET  /api/runs/:run/acts    POST (ActBody → ActReply)    ActRow[]
+ *   GET  /api/runs/:run/acts    POST (ActSent → ActReply)    ActRow[]
  *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
  *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|record.json    downloads
  *   POST /api/uploads (UploadBody → Upload)                  begins an upload: the skid file and the events as text
@@ -27,9 +34,11 @@ export type * from './act.ts'
 export type * from './alarm.ts'
 export type * from './alarm-story.ts'
 export type * from './live.ts'
+export type * from './people.ts'
 export type * from './performance.ts'
 export type * from './run.ts'
 export type * from './service.ts'
+export type * from './settings.ts'
 export type * from './skid.ts'
 export type * from './socket.ts'
 export type * from './trend.ts'

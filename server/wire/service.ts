@@ -6,8 +6,6 @@ export interface Service {
   readonly cautions: readonly string[]
   /** True while a simulated skid runs: the page must say so. */
   readonly demo: boolean
-  /** Name to fill in for the person of an act; null where each person gives their own. */
-  readonly person: string | null
   readonly uploadMaxBytes: number
   /** Wall clock of the server, ms UTC. */
   readonly wallMs: number

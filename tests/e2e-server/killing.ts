@@ -36,7 +36,7 @@ async function use(port: number, told: Told): Promise<void> {
       const reply = await fetch(`${base}/acts`, {
         method: 'POST',
         headers: { 'content-type': 'application/json' },
-        body: JSON.stringify({ kind: 'comment', person: 'demo operator', alarm: null, text }),
+        body: JSON.stringify({ kind: 'comment', alarm: null, text }),
       })
       if (reply.ok) told.acts.push({ seq: ((await reply.json()) as { seq: number }).seq, text })
       const row = (await (await fetch(base)).json()) as { toMs: number | null }

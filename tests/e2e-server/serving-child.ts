@@ -18,7 +18,6 @@ const serving = await startServing({
   store,
   watched: [watched],
   isDemo: followed === undefined,
-  person: null,
   host: '127.0.0.1',
   port: 0,
   tryPorts: 0,

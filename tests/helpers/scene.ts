@@ -280,7 +280,6 @@ export function sceneOf(o: SceneOptions = {}) {
     tool: { name: 'clearbore', version: '0.0.0' },
     cautions: ['Advisory only.'],
     demo: true,
-    person: 'demo operator',
     uploadMaxBytes: 50_000_000,
     wallMs: endMs,
   }

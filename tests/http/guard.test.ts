@@ -38,7 +38,7 @@ describe('every reply', () => {
       expect((await s.get(path, { host: 'rebound.example' })).status).toBe(421)
       expect((await s.get(path, { origin: 'http://rebound.example' })).status).toBe(403)
     }
-    const act = { kind: 'comment', person: 'A', alarm: null, text: 'from elsewhere' }
+    const act = { kind: 'comment', alarm: null, text: 'from elsewhere' }
     expect((await s.post(`/api/runs/${s.run}/acts`, act, { origin: 'http://rebound.example' })).status).toBe(403)
     expect(s.store.sequence.acts(s.run)).toEqual([])
   })

@@ -12,8 +12,8 @@ describe('alarm performance, what led to an alarm, hand-over', () => {
     await s.live(150)
     const alarms = (await s.get(`/api/runs/${s.run}/alarms`)).json() as AlarmRow[]
     const alarm = alarms.find((a) => a.kind === 'fouling')!
-    const person = 'night lead'
-    const act = async (body: object) => (await s.post(`/api/runs/${s.run}/acts`, { person, ...body })).status
+    const person = 'demo operator'
+    const act = async (body: object) => (await s.post(`/api/runs/${s.run}/acts`, body)).status
     expect(await act({ kind: 'acknowledge', alarm: alarm.id })).toBe(200)
     expect(await act({ kind: 'comment', alarm: null, text: 'Hand-over: drum A-31 is nearly empty' })).toBe(200)
     expect(await act({ kind: 'limit', segment: 'R1', limit: 'dpHighBar', value: 5, reason: 'agreed at hand-over' })).toBe(200)

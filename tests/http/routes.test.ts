@@ -97,7 +97,7 @@ describe('acts over HTTP', () => {
     await s.live(35)
     const alarm = ((await s.get(`/api/runs/${s.run}/alarms`)).json() as AlarmRow[])[0]!
     const url = `/api/runs/${s.run}/acts`
-    const body = { kind: 'acknowledge', person: 'demo operator', alarm: alarm.id }
+    const body = { kind: 'acknowledge', alarm: alarm.id }
     const reply = await s.post(url, body)
     expect(reply.status).toBe(200)
     holds(schemas.actReplySchema, reply.json())
@@ -106,7 +106,7 @@ describe('acts over HTTP', () => {
     ])
     const after = ((await s.get(`/api/runs/${s.run}/alarms`)).json() as AlarmRow[])[0]!
     expect(after).toMatchObject({ state: 'ACKED', acknowledgedBy: 'demo operator', needsAck: false, active: true })
-    expect(s.store.sequence.acts(s.run).map((a) => a.act)).toMatchObject([body])
+    expect(s.store.sequence.acts(s.run).map((a) => a.act)).toMatchObject([{ ...body, person: 'demo operator' }])
     expect((await s.post(url, body)).json().transitions.filter((t: { outcome: string }) => t.outcome === 'moved')).toEqual([])
     expect((await s.get(`/api/runs/${s.run}`)).json().alarms.unacknowledged).toBe(0)
   })
@@ -116,7 +116,6 @@ describe('acts over HTTP', () => {
     await s.live(3)
     const act = {
       kind: 'limit',
-      person: 'engineer on duty',
       segment: 'R1',
       limit: 'dpHighBar',
       value: 5.5,
@@ -130,19 +129,18 @@ describe('acts over HTTP', () => {
       segment: 'R1',
       limit: 'dpHighBar',
       value: 5.5,
-      person: 'engineer on duty',
+      person: 'demo operator',
       reason: 'weaker gasket',
     })
   })
 
   it.each([
-    ['no person', { kind: 'comment', alarm: null, text: 'seen' }, 'person'],
-    ['an empty name', { kind: 'comment', alarm: null, text: 'seen', person: '  ' }, 'person'],
-    ['a number as text', { kind: 'acknowledge', person: 'A', alarm: '1' }, 'alarm must be integer'],
-    ['an unknown field', { kind: 'acknowledge', person: 'A', alarm: 1, force: true }, 'additional properties'],
-    ['an unknown act', { kind: 'open-valve', person: 'A' }, 'kind'],
-    ['a limit without a reason', { kind: 'limit', person: 'A', segment: 'R1', limit: 'dpHighBar', value: 5, reason: '' }, 'reason'],
-    ['an unknown limit', { kind: 'limit', person: 'A', segment: 'R1', limit: 'dpHigh', value: 5, reason: 'because' }, 'limit'],
+    ['a person of the sender’s choice', { kind: 'comment', alarm: null, text: 'seen', person: 'A' }, 'additional properties'],
+    ['a number as text', { kind: 'acknowledge', alarm: '1' }, 'alarm must be integer'],
+    ['an unknown field', { kind: 'acknowledge', alarm: 1, force: true }, 'additional properties'],
+    ['an unknown act', { kind: 'open-valve' }, 'kind'],
+    ['a limit without a reason', { kind: 'limit', segment: 'R1', limit: 'dpHighBar', value: 5, reason: '' }, 'reason'],
+    ['an unknown limit', { kind: 'limit', segment: 'R1', limit: 'dpHigh', value: 5, reason: 'because' }, 'limit'],
   ])('answers %s with 400 and what is wrong, and does nothing', async (_, body, says) => {
     const s = await served()
     await s.live(1)
@@ -157,7 +155,7 @@ describe('acts over HTTP', () => {
     const s = await served()
     await s.live(1)
     await s.monitor.end(s.run)
-    const body = { kind: 'comment', person: 'A', alarm: null, text: 'seen' }
+    const body = { kind: 'comment', alarm: null, text: 'seen' }
     const ended = await s.post(`/api/runs/${s.run}/acts`, body)
     expect([ended.status, ended.json().code]).toEqual([409, 'RUN_ENDED'])
     const never = await s.post('/api/runs/99/acts', body)

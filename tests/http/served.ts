@@ -4,21 +4,41 @@ import type { Scenario } from '../../server/core/sim/scenario.ts'
 import { exportRun } from '../../server/export-run.ts'
 import { createImports } from '../../server/imports.ts'
 import { createCatalogue } from '../../server/monitor/catalogue.ts'
+import { createPeople } from '../../server/people/people.ts'
+import { createHasher, type ScryptCost } from '../../server/people/scrypt.ts'
 import { loadSkid } from '../../server/skid/check.ts'
-import { shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
+import { handClock, shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
 
 export const local = { host: '127.0.0.1:8460' }
+/** Passwords in tests cost a thousandth. */
+export const cheap: ScryptCost = { logN: 6, r: 8, p: 1 }
 
 /** The whole app over a simulated run whose time the test passes by hand; closed when the test ends. */
 export async function served(
-  more: { scenario?: Scenario; hosts?: string[]; uploadMaxBytes?: number; heartbeatMs?: number; webRoot?: string } = {},
+  more: {
+    scenario?: Scenario
+    hosts?: string[]
+    uploadMaxBytes?: number
+    heartbeatMs?: number
+    webRoot?: string
+    /** False: acts need somebody who has signed in. */
+    demo?: boolean
+    openReading?: boolean
+    publicUrl?: string
+    trustProxy?: string[]
+    mostPerMinute?: number
+    cost?: ScryptCost
+  } = {},
 ) {
   const bench = simulatedBench(tempDir(), more.scenario ?? shortNight(3))
   const { store, monitor } = bench
   const lines: string[] = []
   const log = (line: string) => lines.push(line)
   let told = (): void => undefined
-  const wallMs = () => Date.UTC(2031, 0, 1)
+  const wall = handClock(Date.UTC(2031, 0, 1))
+  const wallMs = wall.now
+  const hasher = createHasher({ cost: more.cost ?? cheap })
+  const people = createPeople({ store, wallMs, hasher })
   const imports = createImports({ store, skidOf: loadSkid, toolVersion: '9.9.9', wallMs, log, changed: () => told() })
   const catalogue = createCatalogue(store, loadSkid, {
     engine: monitor.engine,
@@ -31,8 +51,12 @@ export async function served(
     monitor,
     catalogue,
     toolVersion: '9.9.9',
-    person: 'demo operator',
-    isDemo: () => true,
+    people,
+    isDemo: () => more.demo ?? true,
+    openReading: more.openReading ?? true,
+    publicUrl: more.publicUrl ?? null,
+    trustProxy: more.trustProxy ?? [],
+    ...(more.mostPerMinute === undefined ? {} : { mostPerMinute: more.mostPerMinute }),
     wallMs,
     uploadMaxBytes: more.uploadMaxBytes ?? 2 ** 22,
     exportRun,
@@ -66,6 +90,6 @@ export async function served(
     const reply = await app.inject({ method: 'POST', url, headers: { ...local, ...headers }, payload: payload as object })
     return { status: reply.statusCode, json: () => reply.json() }
   }
-  return { ...bench, app, hub, imports, catalogue, log: lines, live, get, post }
+  return { ...bench, app, people, hasher, wall, hub, imports, catalogue, log: lines, live, get, post }
 }
 export type Served = Awaited<ReturnType<typeof served>>

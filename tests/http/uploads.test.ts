@@ -7,7 +7,6 @@ import { local, type Served, served } from './served.ts'
 
 const begin = {
   title: 'last night',
-  person: 'demo operator',
   skid: { name: 'heron.yaml', text: heronText },
   events: null,
   start: null,

@@ -72,7 +72,6 @@ export function uploadView(service: Service, shell: Shell) {
     const eventsFile = events.files?.[0]
     const body: UploadBody = {
       title: title.value.trim() === '' ? (logs[0]?.name ?? 'uploaded run') : title.value.trim(),
-      person: shell.person(),
       skid:
         stored.value === '' && skidFile !== undefined
           ? { name: skidFile.name, text: await skidFile.text() }

@@ -1,16 +1,19 @@
 import type { ActReply, LiveState, ServerMessage } from '../../server/wire/index.ts'
 import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
+import { refusalText } from '../model/alarm-refusal.ts'
 import { answersOf } from '../model/answers.ts'
 import { adviceInForce } from '../model/in-force.ts'
 import { type Look, within } from '../model/look.ts'
 import { longest, type RunData } from '../model/run-data.ts'
+import { spanOf, trendOf } from '../model/trend-of.ts'
 import { fetchWindow, follow } from '../run-store.ts'
 import { adviceView } from './advice.ts'
+import { openBefore } from './alarm-before.ts'
+import { titleOf } from './alarm-row.ts'
 import { type ActBodyOf, alarmsView } from './alarms.ts'
 import { answersView, nowView } from './answers.ts'
 import { el, fill, say } from './dom.ts'
-import type { footView } from './foot.ts'
 import { lineView } from './line.ts'
 import { liveStrip } from './live-strip.ts'
 import { planView } from './plan.ts'
@@ -20,7 +23,6 @@ import { trendsView } from './trends.ts'
 
 export interface Shell {
   readonly strip: { show(s: StripState): void }
-  readonly foot: ReturnType<typeof footView>
   readonly cut: ReturnType<typeof cutView>
   /** Said to assistive technology, politely. */
   announce(text: string): void
@@ -57,6 +59,9 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   let spoken = ''
   let shownLook: Look = { fromMs: 0, toMs: leastMs }
 
+  /** Part of the run that is looked at instead of now. */
+  let held: { readonly span: readonly [number, number]; readonly name: string; readonly id: number } | null = null
+
   const answers = answersView()
   const now = nowView()
   const tools = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Time shown' })
@@ -73,25 +78,29 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   const alarms = alarmsView(data.clock, {
     act: async (body: ActBodyOf) => {
       if (!shell.needPerson()) return 'say who you are first: your name is asked for in the top strip'
-      const reply = await postJson<ActReply>(`/api/runs/${run}/acts`, { ...body, person: shell.person() })
+      const reply = await postJson<ActReply>(`/api/runs/${run}/acts`, body)
       const refused = reply.transitions.find((t) => t.outcome === 'refused')
       if (refused === undefined)
         shell.announce(body.kind === 'acknowledge' ? `alarm ${body.alarm} acknowledged by ${shell.person()}` : 'kept in the record')
-      return refused === undefined ? '' : `refused: ${refused.reason ?? 'not in this state'}`
+      return refused === undefined ? '' : refusalText(refused.reason ?? 'not in this state')
     },
     trend: (a) => {
-      if (a.segment === null) return
-      trends.pick(
-        a.kind === 'exotherm' || a.kind === 'temperature-limit'
-          ? 'temperature'
-          : a.kind === 'feed-ratio' || a.kind === 'flow'
-            ? 'flow'
-            : 'ratio',
-        a.segment,
-      )
+      const place = trendOf(a, facts)
+      if (place !== null) trends.pick(place.kind, place.segment)
+      held = { span: spanOf(a), name: titleOf(a), id: a.id }
+      planOpen = false
+      toNow.hidden = false
+      say(toNow, `Raised ${data.clock.hm(a.raisedMs)} is shown: back to now`)
+      void refetch().then(() => trends.canvas.scrollIntoView({ block: 'nearest' }))
       trends.canvas.focus()
     },
+    before: (a) => openBefore(run, a, data.clock),
   })
+  fill(
+    alarms.more,
+    el('a', { href: `#/alarms/${run}`, text: 'How the alarms do' }),
+    el('a', { href: `#/handover/${run}`, text: 'Hand-over note' }),
+  )
   const waiting = el('p', { class: 'hush', text: 'Waiting for the first state of the run.' })
   const plant = el(
     'section',
@@ -179,6 +188,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     return state.clock.nowMs + Math.max(0, since)
   }
   const windowOf = (nowMs: number): [number, number] => {
+    if (held !== null) return [held.span[0], held.span[1]]
     if (chosen !== null) return [chosen.fromMs, chosen.toMs]
     // A run opened before its first reading begins where the page first heard of one.
     firstMs ??= followed.state()?.comb.endMs ?? null
@@ -232,8 +242,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     if (planned === null) planOpen = false
     plan.show(planned, planOpen)
     trends.node.hidden = planOpen
-    alarms.show(state.alarms, state.clock.nowMs, quietText(state))
-    shell.foot.show(state.alarms)
+    alarms.show(state.alarms, state.clock.nowMs, state.flood, quietText(state))
     const text = `${a.where.far}, ${a.whatNow.far}, ${state.alarms.filter((x) => x.needsAck).length} not acknowledged`
     if (text !== spoken) {
       spoken = text
@@ -243,6 +252,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     node.dataset['ready'] = 'true'
     node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
     node.dataset['lead'] = a.segment ?? ''
+    node.dataset['held'] = held === null ? '' : String(held.id)
     strip.show(state, runNow(state), link)
   }
 
@@ -286,6 +296,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
       clearInterval(tick)
       clearTimeout(chosenTimer)
       cancelAnimationFrame(frame)
+      alarms.stop()
       trends.destroy()
       shell.cut.show(null)
     },
