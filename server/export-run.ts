@@ -59,25 +59,35 @@ export function exportRun(r: ExportRequest): Exported {
     toolVersion: r.toolVersion,
     nowMs: r.nowMs,
   }
-  const end = store.sequence.count(run)
+  // Counts, transitions and chain as of one moment, whoever writes beside us.
+  const {
+    end,
+    history: all,
+    links,
+  } = store.trail.atOnce(() => ({
+    end: store.sequence.count(run),
+    history: store.transitions.list(run).map((t) => t.more as unknown as AlarmRecord),
+    links: store.trail.ofRun(run),
+  }))
+  const trail = { store: store.trail.signing().store, count: links.length, head: links.at(-1)?.hash ?? '' }
   const entries = () => upTo(store.sequence.read(run), end.entries)
-  const records = (): AlarmRecord[] => store.transitions.list(run).map((t) => t.more as unknown as AlarmRecord)
 
   if (r.what === 'samples') {
     const csv = samplesCsv(skid, store.runs.words(run), entries)
-    const facts = exportFacts({ ...base, fromMs: null, toMs: null, rows: end.rows, filter: { layout: csv.layout } })
+    const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: end.rows, filter: { layout: csv.layout } })
     return { facts, name, contentType, pieces: gathered(csv.lines()) }
   }
   if (r.what === 'record') {
     const report: Report = r.live === null ? createEngine(r.parts).report() : r.live.report()
-    const facts = exportFacts({ ...base, fromMs: null, toMs: null, rows: end.rows })
+    const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: end.rows })
     const head = { record: 1 as const, ...facts, skidFile: { name: skidFile, text: skidText }, words: store.runs.words(run) }
-    return { facts, name, contentType, pieces: gathered(recordText({ head, entries: entries(), transitions: records(), report })) }
+    const parts = { head, entries: entries(), transitions: all, report, trail: links.map((l) => l.text), sign: store.trail.sign }
+    return { facts, name, contentType, pieces: gathered(recordText(parts)) }
   }
   const rows = r.live?.alarms.all() ?? alarmsAt(r.parts, Infinity).all()
-  const history = filteredHistory(records(), rows, r.filter)
+  const history = filteredHistory(all, rows, r.filter)
   const { fromMs, toMs, kind, segment, priority } = r.filter
-  const facts = exportFacts({ ...base, fromMs, toMs, rows: history.length, filter: { kind, segment, priority } })
+  const facts = exportFacts({ ...base, trail, fromMs, toMs, rows: history.length, filter: { kind, segment, priority } })
   const pieces = r.format === 'csv' ? gathered(alarmsCsv(facts, history, rows)) : [alarmsJson(facts, history, rows)]
   return { facts, name, contentType, pieces }
 }

@@ -88,12 +88,12 @@ export const importCommand: Command = {
         })
         line.end()
         store.upkeep()
-        await tellSigning(io, store.trail.signing())
         const report = createEngine({ store, ...pair, skid }).report()
         const broken = tallies.reduce((n, t) => n + t.broken, 0)
         await io.out(
           `run ${pair.run}: ${rows} rows${broken > 0 ? ` (${broken} broken ones left out)` : ''}, ${report.alarms.length} ${report.alarms.length === 1 ? 'alarm' : 'alarms'}, ${report.run.from ?? 'no time'} to ${report.run.to ?? 'no time'}\n${cautions.join('\n')}\n`,
         )
+        await tellSigning(io, store.trail.signing())
         return 0
       } catch (error) {
         const gone = { tMs: Date.now(), person: 'clearbore import', reason: 'the import did not reach its end' }

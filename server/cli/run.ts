@@ -13,6 +13,7 @@ import { scoreCommandWith } from './score.ts'
 import { selfCheckCommand } from './self-check.ts'
 import { serveCommand } from './serve.ts'
 import { simulateCommand } from './simulate.ts'
+import { verifyCommand } from './verify.ts'
 
 export const caution =
   'Advisory only: Clearbore reads and recommends, it moves nothing and is no safety function. It can be wrong.\nFollow approved site procedures, local codes and licensed, competent people.\n'
@@ -26,6 +27,7 @@ export const commands: readonly Command[] = [
   serveCommand,
   importCommand,
   exportCommand,
+  verifyCommand,
   analyseCommand,
   checkSkidCommand,
   commissionCommand,

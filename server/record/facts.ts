@@ -28,6 +28,8 @@ export interface ExportFacts {
   /** Rows of the export. */
   readonly rows: number
   readonly exportedAt: string
+  /** Where the chain of this run stood: to be printed with a report, since a chain cannot tell by itself that its end was cut off. */
+  readonly trail: { readonly store: string; readonly count: number; readonly head: string }
   readonly cautions: readonly string[]
 }
 
@@ -47,6 +49,7 @@ export interface FactsInput {
   readonly filter?: Readonly<Record<string, string | null>>
   readonly rows: number
   readonly nowMs: number
+  readonly trail: ExportFacts['trail']
 }
 
 export const exportFacts = (i: FactsInput): ExportFacts => ({
@@ -64,5 +67,6 @@ export const exportFacts = (i: FactsInput): ExportFacts => ({
   filter: i.filter ?? {},
   rows: i.rows,
   exportedAt: iso(i.nowMs),
+  trail: i.trail,
   cautions,
 })

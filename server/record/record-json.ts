@@ -5,6 +5,7 @@ import { MonitorError } from '../core/errors.ts'
 import { cell, type RowBlock, rowBlock } from '../core/reading.ts'
 import type { Report } from '../core/report.ts'
 import type { Act, Entry } from '../core/sequence.ts'
+import { type Sign, withProof } from '../trail/proof.ts'
 import type { ExportFacts } from './facts.ts'
 
 /** The head of a record: all that is needed to run its sequence again. */
@@ -27,6 +28,9 @@ export interface RecordParts {
   readonly entries: Iterable<{ readonly seq: number; readonly entry: Entry }>
   readonly transitions: readonly AlarmRecord[]
   readonly report: Report
+  /** Canonical texts of the run's chain, in order. */
+  readonly trail: readonly string[]
+  readonly sign: Sign
 }
 
 const number = (v: number): string => (Object.is(v, -0) ? '-0' : String(v))
@@ -48,15 +52,21 @@ function entryLine(seq: number, entry: Entry): string {
   return `{"seq":${seq},"rows":[${lines.join(',\n')}]}`
 }
 
-/** A whole run as JSON text in pieces: head, the recorded sequence in its exact order, every transition, the report. */
-export function* recordText(p: RecordParts): Generator<string> {
+/**
+ * A whole run as JSON text in pieces: head, the recorded sequence in its exact order, every transition, the report, the chain a record a line, and
+ * the line that proves all bytes before it.
+ */
+export const recordText = (p: RecordParts): Generator<string> => withProof(provable(p), p.sign)
+
+function* provable(p: RecordParts): Generator<string> {
   yield `${JSON.stringify(p.head).slice(0, -1)},\n"sequence":[\n`
   let first = true
   for (const { seq, entry } of p.entries) {
     yield `${first ? '' : ',\n'}${entryLine(seq, entry)}`
     first = false
   }
-  yield `\n],\n"transitions":${JSON.stringify(p.transitions)},\n"report":${JSON.stringify(p.report)}}\n`
+  yield `\n],\n"transitions":${JSON.stringify(p.transitions)},\n"report":${JSON.stringify(p.report)},\n"trail":[\n`
+  yield `${p.trail.join(',\n')}\n],\n`
 }
 
 function entryOf(text: EntryText): Entry {
@@ -76,7 +86,9 @@ function entryOf(text: EntryText): Entry {
 }
 
 /** Reads a record as it was written, a line at a time. Errors: FILE_READ, RECORD_FILE with its line. */
-export async function readRecord(file: string): Promise<{ head: RecordHead; entries: AsyncGenerator<Entry> }> {
+export async function readRecord(
+  file: string,
+): Promise<{ head: RecordHead; entries: AsyncGenerator<Entry>; rest: () => AsyncGenerator<string> }> {
   const lines = createInterface({ input: createReadStream(file, { encoding: 'utf8' }), crlfDelay: Number.POSITIVE_INFINITY })[
     Symbol.asyncIterator
   ]()
@@ -105,12 +117,16 @@ export async function readRecord(file: string): Promise<{ head: RecordHead; entr
   const head = parse<RecordHead>(`${first.slice(0, -1)}}`)
   if (head.record !== 1) throw bad(`found a record of version ${String(head.record)}, expected 1`)
   if ((await next()) !== '"sequence":[') throw bad('found no sequence below the head of the record')
+  let isRead = false
   async function* entries(): AsyncGenerator<Entry> {
     let text = ''
     for (;;) {
       const more = await next()
       if (more === null) throw bad('the record ends in the middle of its sequence')
-      if (more === '],' && text === '') return
+      if (more === '],' && text === '') {
+        isRead = true
+        return
+      }
       if (more === '') continue
       text += more
       // An entry of several rows goes over several lines; its last one closes the object.
@@ -119,5 +135,14 @@ export async function readRecord(file: string): Promise<{ head: RecordHead; entr
       text = ''
     }
   }
-  return { head, entries: entries() }
+  /** Lines behind the sequence, which is skipped where it was not read. */
+  async function* rest(): AsyncGenerator<string> {
+    for (let inside = !isRead; ; ) {
+      const text = await next()
+      if (text === null) return
+      if (!inside) yield text
+      else if (text === '],') inside = false
+    }
+  }
+  return { head, entries: entries(), rest }
 }

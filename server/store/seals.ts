@@ -1,5 +1,5 @@
 import type Database from 'better-sqlite3'
-import { checkApart, headStatement, type KeyFolder, keyFolder, type Signer } from '../trail/keys.ts'
+import { type Anchor, checkApart, headStatement, type KeyFolder, keyFolder, type Signer } from '../trail/keys.ts'
 import type { Ledger } from './ledger.ts'
 import { site } from './ledger.ts'
 
@@ -106,6 +106,8 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
     soon(): void {
       sealedAt = Number.NEGATIVE_INFINITY
     },
+    /** What the folder of the key remembers of this store. */
+    anchor: (): Anchor | null => folder?.anchor() ?? null,
     signer: (): Signer | null => signer,
     signing: (): Signing => ({
       store: ledger.store(), key: signer?.key ?? null, fingerprint: signer?.fingerprint ?? null, madeIn, trouble,

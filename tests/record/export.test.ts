@@ -117,10 +117,14 @@ describe('a record', () => {
                 ? { kind: 'act', act: { kind: 'comment', tMs: 5, person: 'A', alarm: null, text: p } }
                 : { kind: 'rows', block: p },
         }))
-        writeFileSync(file, [...recordText({ head, entries, transitions: [], report: {} as never })].join(''))
-        expect(JSON.parse([...recordText({ head, entries, transitions: [], report: {} as never })].join('')).sequence.length).toBe(
-          entries.length,
+        writeFileSync(
+          file,
+          [...recordText({ head, entries, transitions: [], report: {} as never, trail: [], sign: () => null })].join(''),
         )
+        expect(
+          JSON.parse([...recordText({ head, entries, transitions: [], report: {} as never, trail: [], sign: () => null })].join(''))
+            .sequence.length,
+        ).toBe(entries.length)
         const back = await readRecord(file)
         const got: Entry[] = []
         for await (const e of back.entries) got.push(e)
