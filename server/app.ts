@@ -14,6 +14,7 @@ import { exportRoutes } from './http/exports.ts'
 import { createGuard, guardRequests } from './http/guard.ts'
 import { peopleRoutes } from './http/people.ts'
 import { performanceRoutes } from './http/performance.ts'
+import { flushRoutes } from './http/flush.ts'
 import { runRoutes } from './http/runs.ts'
 import { serviceRoutes } from './http/service.ts'
 import type { Services } from './http/services.ts'
@@ -125,6 +126,7 @@ export async function buildApp(o: AppOptions) {
       await scope.register(serviceRoutes, api)
       await scope.register(runRoutes, api)
       await scope.register(exportRoutes, api)
+      await scope.register(flushRoutes, api)
       await scope.register(performanceRoutes, api)
       await scope.register(uploadRoutes, api)
       await scope.register(sessionRoutes, { people: o.people, access, cookie: cookieName, isSecure, openReading: o.openReading })

@@ -14,6 +14,8 @@ export interface Report {
   readonly streams: readonly StreamReport[]
   readonly outlet: readonly OutletReport[]
   readonly alarmMetrics: AlarmMetricsReport | null
+  /** Addition: every flush that was followed, step by step. */
+  readonly flushes: readonly FlushReport[]
 }
 
 export interface RunReport {
@@ -358,6 +360,70 @@ export interface FlushPlan {
   readonly assumptions: readonly string[]
   /** What could not be computed, and what is needed for it. */
   readonly missing: readonly string[]
+}
+
+/** A flush as people confirmed it. Its steps with every check; what was refused; what came of it against the clean baseline. */
+export interface FlushReport {
+  readonly flush: number
+  readonly segments: readonly string[]
+  readonly path: readonly string[]
+  readonly state: 'running' | 'complete' | 'aborted'
+  readonly opened: string
+  readonly openedBy: string
+  readonly ended: string | null
+  readonly endedBy: string | null
+  readonly reason: string | null
+  readonly steps: readonly FlushStepReport[]
+  readonly refusals: readonly {
+    readonly at: string
+    readonly person: string
+    readonly step: string
+    readonly asked: string
+    readonly reasons: readonly string[]
+  }[]
+  readonly calls: readonly { readonly at: string; readonly kind: string; readonly segment: string; readonly text: string }[]
+  readonly recovery: readonly FlushRecovery[]
+  /** Checks that failed or were skipped, hand readings, steps taken back. */
+  readonly exceptions: readonly { readonly at: string; readonly person: string; readonly step: string; readonly text: string }[]
+}
+export interface FlushStepReport {
+  readonly step: string
+  readonly title: string
+  readonly state: 'open' | 'running' | 'accepted' | 'skipped' | 'aborted'
+  readonly started: string | null
+  readonly startedBy: string | null
+  readonly ended: string | null
+  readonly endedBy: string | null
+  readonly reason: string | null
+  readonly plannedMl: number | null
+  readonly passedMl: number
+  /** Seconds without a usable flow reading, in which nothing was counted. */
+  readonly withoutFlowSeconds: number
+  readonly checks: readonly FlushCheckReport[]
+}
+export interface FlushCheckReport {
+  readonly criterion: string
+  readonly part: string | null
+  readonly needs: string
+  readonly by: 'readings' | 'person'
+  readonly state: 'met' | 'not-yet' | 'unknown' | 'failed' | 'skipped'
+  readonly value: number | string | null
+  readonly unit: string | null
+  readonly source: string
+  readonly why: string
+  readonly person: string | null
+  readonly at: string | null
+  readonly reason: string | null
+}
+/** Ratio against the clean baseline before, and after with water, solvent and feeds, each against its own reference; then that of the next baseline. */
+export interface FlushRecovery {
+  readonly segment: string
+  readonly before: number | null
+  readonly water: number | null
+  readonly solvent: number | null
+  readonly feeds: number | null
+  readonly baseline: number | null
+  readonly verdict: 'open' | 'restored' | 'not-fully-restored'
 }
 
 export interface AdviceReport {

@@ -142,6 +142,7 @@ export const liveStateSchema = closed({
   alarms: list(alarmRowSchema),
   flood: maybe(closed({ sinceMs: num, count: num, first: alarmRowSchema })),
   advice: list(closed({ at: text, atMs: num, action: oneOf(actions), segments: texts, reason: text, plan: maybe(flushPlanSchema) })),
+  flush: maybe(Type.Object({ flush: num, state: text, steps: list(Type.Object({ step: text, state: text, passedMl: num })) })),
 }) // biome-ignore format: a list
 
 const points = list(numOrNull)

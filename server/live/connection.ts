@@ -26,6 +26,7 @@ interface Subscription {
   isBehind: boolean
   sentAlarms: string
   sentAdvice: string
+  sentFlush: string
 }
 
 /** Bytes not yet taken by the network: above the first deltas are dropped, below the second a snapshot may go. */
@@ -60,6 +61,7 @@ export function createConnection(socket: WebSocket, source: HubSource) {
     s.isBehind = false
     s.sentAlarms = JSON.stringify(state.alarms)
     s.sentAdvice = JSON.stringify(state.advice)
+    s.sentFlush = JSON.stringify(state.flush)
     s.sinceMs = state.comb.endMs ?? s.sinceMs
     const message: Snapshot = {
       type: 'snapshot',
@@ -74,16 +76,19 @@ export function createConnection(socket: WebSocket, source: HubSource) {
   }
 
   /** The state without its large parts that the page has already. */
-  function update(s: Subscription, { alarms, advice, ...rest }: LiveState): LiveUpdate {
+  function update(s: Subscription, { alarms, advice, flush, ...rest }: LiveState): LiveUpdate {
     const alarmText = JSON.stringify(alarms)
     const adviceText = JSON.stringify(advice)
+    const flushText = JSON.stringify(flush)
     const out = {
       ...rest,
       ...(alarmText === s.sentAlarms ? {} : { alarms }),
       ...(adviceText === s.sentAdvice ? {} : { advice }),
+      ...(flushText === s.sentFlush ? {} : { flush }),
     }
     s.sentAlarms = alarmText
     s.sentAdvice = adviceText
+    s.sentFlush = flushText
     return out
   }
 
@@ -95,7 +100,15 @@ export function createConnection(socket: WebSocket, source: HubSource) {
       complain(`at most ${mostSubscriptions} runs at once`)
     else {
       const { run, topics, sinceMs } = message
-      const s: Subscription = { topics: new Set(topics), seq: 0, sinceMs, isBehind: false, sentAlarms: '', sentAdvice: '' }
+      const s: Subscription = {
+        topics: new Set(topics),
+        seq: 0,
+        sinceMs,
+        isBehind: false,
+        sentAlarms: '',
+        sentAdvice: '',
+        sentFlush: '',
+      }
       subscriptions.set(run, s)
       snapshot(run, s)
     }

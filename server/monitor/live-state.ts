@@ -1,5 +1,6 @@
 import { round9 } from '../core/pipeline/collect.ts'
 import { type LimitName, limitNames } from '../core/sequence.ts'
+import type { SettingChange } from '../core/settings/flat.ts'
 import type { Skid } from '../core/skid.ts'
 import { barFromPa, toSi, valueUnit } from '../core/units.ts'
 import type { AlarmRow } from '../wire/alarm.ts'
@@ -26,6 +27,7 @@ export interface StateParts {
   readonly alarms: readonly AlarmRow[]
   readonly flood: ReturnType<AlarmLog['flood']>
   readonly advice: readonly AdviceState[]
+  readonly flush: LiveState['flush']
 }
 
 /** Advice older than this is history, h; within it the latest of each action and place stands beside the latest of all. */
@@ -43,6 +45,7 @@ export function stateOf(p: StateParts): LiveState {
     alarms: p.alarms,
     flood: p.flood === null ? null : { sinceMs: p.flood.sinceMs, count: p.flood.count, first: p.flood.first },
     advice: p.advice,
+    flush: p.flush,
   }
 }
 
@@ -116,6 +119,15 @@ export function adviceInForce(all: Engine['advice'], nowMs: number): AdviceState
 export const limitsOfSkid = (skid: Skid): Record<LimitName, number | null>[] =>
   skid.segments.map((s) => Object.fromEntries(limitNames.map((n) => [n, s.limits[n]])) as Record<LimitName, number | null>)
 
+/** The limits among changed settings. */
+export const limitChanges = (changes: readonly SettingChange[]) =>
+  changes.flatMap(({ path, new: now }) => {
+    const [top, segment = '', group, name] = path.split('.')
+    const limit = limitNames.find((n) => n === name)
+    const isLimit = top === 'segments' && group === 'limits' && limit !== undefined && (now === null || typeof now === 'number')
+    return isLimit ? [{ segment, limit, value: now }] : []
+  })
+
 /** The state of a live run as it stands. */
 export function engineState(e: Engine, clock: RunClock, source: DataState['source'], usualGapS: number): LiveState {
   const view = e.pipeline.view()
@@ -150,5 +162,6 @@ export function engineState(e: Engine, clock: RunClock, source: DataState['sourc
     alarms: e.alarms.standing(),
     flood: e.alarms.flood(clock.nowMs),
     advice: adviceInForce(e.advice, clock.nowMs),
+    flush: view.flush?.course ?? null,
   })
 }

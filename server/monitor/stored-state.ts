@@ -1,12 +1,13 @@
 import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
 import type { PipelineEvent } from '../core/pipeline/events.ts'
 import { cell, type Phase, phases } from '../core/reading.ts'
+import type { LimitName } from '../core/sequence.ts'
 import { valueUnit } from '../core/units.ts'
 import type { LiveState, ScanComb, TagState } from '../wire/live.ts'
 import { alarmHelpOf } from './alarm-help.ts'
 import { type AlarmLog, createAlarmLog } from './alarm-log.ts'
 import type { Engine } from './engine.ts'
-import { adviceInForce, limitsOfSkid, stateOf } from './live-state.ts'
+import { adviceInForce, limitChanges, limitsOfSkid, stateOf } from './live-state.ts'
 import { combTeeth } from './scan-view.ts'
 import { stepMsOf } from './skid-facts.ts'
 import { stepTag } from './step-log.ts'
@@ -29,14 +30,20 @@ export function storedState(p: RunParts, atMs: number): LiveState {
   const limits = limitsOfSkid(skid)
   const baselines = new Map<string, ReturnType<typeof baselineOf>>()
   const advice: Engine['advice'] = []
+  let flush: LiveState['flush'] = null
   for (const { tMs, body } of store.events.list(run)) {
     if (tMs > atMs) break
     const e = body as unknown as PipelineEvent
     if (e.kind === 'baseline') baselines.set(e.segment, baselineOf(e.baseline))
+    else if (e.kind === 'flush') flush = e.course
     else if (e.kind === 'advice') advice.push({ atMs: tMs, advice: e.advice })
-    else if (e.kind === 'act' && e.act.kind === 'limit') {
-      const i = skid.segments.findIndex((s) => s.id === (e.act as { segment: string }).segment)
-      if (i >= 0) limits[i]![e.act.limit] = e.act.value
+    else if (e.kind === 'configuration' || (e.kind === 'act' && e.act.kind === 'limit')) {
+      const changed =
+        e.kind === 'act' ? [e.act as { segment: string; limit: LimitName; value: number | null }] : limitChanges(e.applied.changes)
+      for (const { segment, limit, value } of changed) {
+        const i = skid.segments.findIndex((s) => s.id === segment)
+        if (i >= 0) limits[i]![limit] = value
+      }
     }
   }
   const step = stepsBetween(p, atMs - 4 * stepMsOf(skid), atMs).at(-1) ?? null
@@ -83,6 +90,7 @@ export function storedState(p: RunParts, atMs: number): LiveState {
     alarms: alarms.standing(),
     flood: alarms.flood(atMs),
     advice: adviceInForce(advice, atMs),
+    flush,
   })
 }
 

@@ -1,3 +1,4 @@
+import type { Course } from '../core/flush/course-state.ts'
 import type { Phase } from '../core/reading.ts'
 import type { AdviceReport, Priority } from '../core/report.ts'
 import type { LimitName } from '../core/sequence.ts'
@@ -19,6 +20,8 @@ export interface LiveState {
   readonly flood: { readonly sinceMs: number; readonly count: number; readonly first: AlarmRow } | null
   /** The latest recommendation in force and those beside it, latest first; empty when there is none. */
   readonly advice: readonly AdviceState[]
+  /** The guided flush under way, or the last one of the run; null before any. */
+  readonly flush: Course | null
 }
 
 export interface RunMode {
@@ -103,4 +106,4 @@ export interface AdviceState extends AdviceReport {
 }
 
 /** A LiveState without the large parts that are as they were: `{ ...last, ...update }` is the state now. */
-export type LiveUpdate = Omit<LiveState, 'alarms' | 'advice'> & Partial<Pick<LiveState, 'alarms' | 'advice'>>
+export type LiveUpdate = Omit<LiveState, 'alarms' | 'advice' | 'flush'> & Partial<Pick<LiveState, 'alarms' | 'advice' | 'flush'>>

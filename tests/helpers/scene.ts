@@ -184,6 +184,7 @@ export function sceneOf(o: SceneOptions = {}) {
       tags,
       alarms: o.alarms ?? [],
       flood: floodOf(o.alarms ?? [], t),
+      flush: null,
       advice: (o.alarms ?? []).some((a) => a.kind === 'fouling' && a.active)
         ? [
             {

@@ -198,5 +198,6 @@ export function reportWith(
     streams: [],
     outlet: [],
     alarmMetrics: null,
+    flushes: [],
   }
 }

@@ -1,6 +1,8 @@
 import type { AlarmRecord } from '../alarms/alarm-state.ts'
 import { alarmReport, type Occurrence } from '../alarms/occurrence.ts'
 import { stepScans } from '../derive/step.ts'
+import type { Course } from '../flush/course-state.ts'
+import { flushReport } from '../flush/flush-report.ts'
 import { chartReport } from '../fouling/charts.ts'
 import type { BaselineRecord, ForecastRecord, Learned } from '../fouling/watch.ts'
 import { alarmPerformance } from '../insight/alarm-system.ts'
@@ -65,6 +67,7 @@ export function createCollector(skid: Skid) {
   const timeline: TimelinePoint[] = []
   const notes: string[] = []
   const records: AlarmRecord[] = []
+  const flushes = new Map<number, Course>()
   const stepMs = stepScans(skid.scanSeconds) * skid.scanSeconds * 1000
   const outlets = new Map(skid.segments.map((_, i) => [outletOf(skid, i), createOutletFlow()]))
   return {
@@ -73,6 +76,7 @@ export function createCollector(skid: Skid) {
         if (e.kind === 'alarm') alarms.set(e.change.occurrence.id, e.change.occurrence)
         else if (e.kind === 'advice') advice.push(e.advice)
         else if (e.kind === 'transition') records.push(e.record)
+        else if (e.kind === 'flush') flushes.set(e.course.flush, e.course)
         else if (e.kind === 'step')
           for (const [i, flow] of outlets) {
             const mlMin = e.segments[i]?.flowMlMin ?? null
@@ -162,6 +166,7 @@ export function createCollector(skid: Skid) {
         notes: [...extraNotes, ...notes],
         streams: insight.streams,
         outlet: insight.outlet,
+        flushes: [...flushes.values()].map((c) => flushReport(c.flush === view.flush?.course.flush ? view.flush.course : c)),
         alarmMetrics: g.firstMs < 0 ? null : alarmPerformance(records, g.firstMs, g.lastRowMs + skid.scanSeconds * 1000),
       }
     },
