@@ -66,7 +66,7 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
   const collector = createCollector(skid)
   const alarms = createAlarmLog(alarmHelpOf(skid))
   const advice: { atMs: number; advice: AdviceReport }[] = []
-  const stepsOnDisk = store.sequence.count(stepsRun).rows
+  const { rows: stepsOnDisk, width: stepsWidth } = store.sequence.count(stepsRun)
   const counts = {
     seq: saved?.seq ?? 0,
     events: saved?.events ?? 0,
@@ -91,7 +91,10 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     return skid.segments.map((_, i) => {
       const w = view.segment(i)
       const forecast = w.growth?.forecast ?? null
+      const c = w.charts
       return {
+        cusum: c === null ? null : c.cusum.high.sum / c.design.h,
+        cusumLow: c === null ? null : c.cusum.low.sum / c.design.h,
         growthPerHour: w.growth?.growthPerHour ?? null,
         onset: toInterval(w.growth?.onset ?? w.hindsight),
         forecast: forecast === null ? null : { ...toInterval(forecast)!, limit: forecast.limit },
@@ -144,7 +147,9 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     if (pending.transitions.length > 0)
       differing += store.transitions.append(run, counts.transitions, pending.transitions.map(storedTransition)).differing
     if (pending.steps.length > 0)
-      store.sequence.append([{ run: stepsRun, entries: [{ kind: 'rows', block: stepBlock(pending.steps, skid.segments.length) }] }])
+      store.sequence.append([
+        { run: stepsRun, entries: [{ kind: 'rows', block: stepBlock(pending.steps, skid.segments.length, stepsWidth) }] },
+      ])
   }
 
   /** The steps that the report still needs; those beyond the snapshot come again by themselves. */

@@ -1,6 +1,7 @@
 import { stepScans } from '../core/derive/step.ts'
-import type { SegmentSpec, Skid } from '../core/skid.ts'
-import { valueUnit } from '../core/units.ts'
+import { molPerKg } from '../core/fluids/reagent.ts'
+import type { SegmentSpec, Skid, StreamSpec } from '../core/skid.ts'
+import { toSi, valueUnit } from '../core/units.ts'
 import type { SegmentFacts, SkidFacts } from '../wire/skid.ts'
 
 export const stepMsOf = (skid: Skid): number => stepScans(skid.scanSeconds) * skid.scanSeconds * 1000
@@ -56,9 +57,20 @@ export function skidFacts(skid: Skid): SkidFacts {
       flowTag: s.flowTag,
       reagent: s.reagent?.name ?? null,
       waterPpm: s.waterPpm,
+      molHPerFlowUnit: molHPerFlowUnit(skid, s),
     })),
     segments,
   }
+}
+
+/** Moles of a feed's reagent in an hour at a reading of 1, from mass by the feed's density and from volume by its concentration. */
+function molHPerFlowUnit(skid: Skid, s: StreamSpec): number | null {
+  const tag = skid.tags.find((t) => t.tag === s.flowTag)
+  if (tag === undefined || s.reagent === null) return null
+  const si = toSi(1, valueUnit(tag)) - toSi(0, valueUnit(tag))
+  if (tag.quantity === 'volumeFlow') return 3600 * si * 1000 * s.reagent.concentrationMolL
+  const perKg = molPerKg(s)
+  return tag.quantity === 'massFlow' && perKg !== null ? 3600 * si * perKg : null
 }
 
 /** Index of the segment that begins at the tap where this one ends; with no tap in common, the next that carries all its streams; −1: none. */

@@ -8,6 +8,9 @@ import type { MonitorStore } from './needs.ts'
 
 /** What a segment's growth looked like at the end of a step. */
 export interface GrowthNow {
+  /** The charts of the promise: CUSUM of either side over its decision interval, 1 is where it signals; null before the final baseline. */
+  readonly cusum: number | null
+  readonly cusumLow: number | null
   readonly growthPerHour: number | null
   readonly onset: Interval | null
   readonly forecast: (Interval & { readonly limit: LimitName }) | null
@@ -42,14 +45,25 @@ const channels = [
 ] as const
 export type StepChannel = (typeof channels)[number]
 
-const stepWidth = (segments: number): number => 1 + segments * channels.length
+/** After those of all segments, in runs of today's build. */
+const chartChannels = ['cusum', 'cusumLow'] as const
+export type ChartChannel = (typeof chartChannels)[number]
+
+const oldWidth = (segments: number): number => 1 + segments * channels.length
 export const stepTag = (segment: number, channel: StepChannel): number => 1 + segment * channels.length + channels.indexOf(channel)
+export const chartTag = (segments: number, segment: number, channel: ChartChannel): number =>
+  oldWidth(segments) + segment * chartChannels.length + chartChannels.indexOf(channel)
+/** Channels of a row of steps; a run that an older build began keeps the width it began with. */
+const stepWidth = (segments: number, begunWith: number | null): number =>
+  begunWith ?? oldWidth(segments) + segments * chartChannels.length
+/** Whether a run's steps hold the statistics of the charts. */
+export const hasCharts = (segments: number, width: number | null): boolean => width !== null && width > oldWidth(segments)
 export const stepsTitle = (run: number): string => `steps of run ${run}`
 export const isSteps = (source: string): boolean => source.startsWith('steps of run ')
 
-/** The steps as rows to be stored; what is null is missing. */
-export function stepBlock(rows: readonly StepRow[], segments: number): RowBlock {
-  const width = stepWidth(segments)
+/** The steps as rows to be stored, as wide as the run has them; what is null is missing. */
+export function stepBlock(rows: readonly StepRow[], segments: number, begunWith: number | null): RowBlock {
+  const width = stepWidth(segments, begunWith)
   const block = rowBlock(rows.length, width)
   block.rows = rows.length
   block.codes.fill(cell.missing)
@@ -69,6 +83,9 @@ export function stepBlock(rows: readonly StepRow[], segments: number): RowBlock 
         f === null ? null : limitNames.indexOf(f.limit), f?.atMs, f?.lowMs, f?.highMs, f?.level,
       ] // biome-ignore format: a list in the order of the channels
       for (const [c, value] of values.entries()) put(1 + i * channels.length + c, value)
+      if (!hasCharts(segments, width)) return
+      put(chartTag(segments, i, 'cusum'), g?.cusum)
+      put(chartTag(segments, i, 'cusumLow'), g?.cusumLow)
     })
   })
   return block
@@ -96,6 +113,8 @@ function stepOf(tMs: number, segments: number, at: (channel: number) => number |
       const limit = limitNames[at(stepTag(i, 'limit')) ?? -1]
       const interval = intervalOf(i, 'limit')
       return {
+        cusum: at(chartTag(segments, i, 'cusum')),
+        cusumLow: at(chartTag(segments, i, 'cusumLow')),
         growthPerHour: at(stepTag(i, 'growthPerHour')),
         onset: intervalOf(i, 'onset'),
         forecast: limit === undefined || interval === null ? null : { ...interval, limit },
@@ -106,13 +125,13 @@ function stepOf(tMs: number, segments: number, at: (channel: number) => number |
 
 /** Stored steps whose end lies in [fromMs, toMs), oldest first. */
 export function readSteps(
-  store: Pick<MonitorStore, 'readings'>,
+  store: Pick<MonitorStore, 'readings' | 'sequence'>,
   stepsRun: RunId,
   segments: number,
   fromMs: number,
   toMs: number,
 ): StepRow[] {
-  const width = stepWidth(segments)
+  const width = stepWidth(segments, store.sequence.count(stepsRun).width)
   const columns = store.readings.samples(
     stepsRun,
     Array.from({ length: width }, (_, i) => i),
@@ -120,8 +139,12 @@ export function readSteps(
     toMs,
   )
   return Array.from(columns[0]?.tMs ?? [], (tMs, r) =>
-    stepOf(tMs, segments, (c) => (columns[c]!.codes[r] === cell.value ? columns[c]!.values[r]! : null)),
+    stepOf(tMs, segments, (c) => (columns[c]?.codes[r] === cell.value ? columns[c]!.values[r]! : null)),
   )
 }
 
-export const stepPoint = ({ tMs, production, segments }: StepRow): StepPoint => ({ tMs, production, segments })
+export const stepPoint = ({ tMs, production, segments, growth }: StepRow): StepPoint => ({
+  tMs,
+  production,
+  segments: segments.map((s, i) => ({ ...s, cusum: growth[i]?.cusum ?? null, cusumLow: growth[i]?.cusumLow ?? null })),
+})

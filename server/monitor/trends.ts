@@ -5,9 +5,9 @@ import { valueUnit } from '../core/units.ts'
 import type { RunId } from '../store/keys.ts'
 import type { EnvelopeOfTag } from '../store/readings.ts'
 import type { Band, Marks, ReadingFrame, StepPoint, Trends } from '../wire/trend.ts'
-import { limitsOfSkid } from './live-state.ts'
+import { limitChanges, limitsOfSkid } from './live-state.ts'
 import type { MonitorStore } from './needs.ts'
-import { readSteps, type StepRow, stepPoint, stepTag } from './step-log.ts'
+import { chartTag, hasCharts, readSteps, type StepRow, stepPoint, stepTag } from './step-log.ts'
 import { baselineOf } from './stored-rows.ts'
 
 export interface RunParts {
@@ -25,10 +25,13 @@ const band = (e: EnvelopeOfTag): Band => {
 /** Trends over a span in at most so many buckets; ratios and what goes with them of all segments, readings of the tags asked for. */
 export function trendsOf(p: RunParts, fromMs: number, toMs: number, buckets: number, tags: readonly string[]): Trends {
   const index = tags.map((tag) => p.skid.tags.findIndex((t) => t.tag === tag))
+  const n = p.skid.segments.length
   const stepTags = [
     0,
     ...p.skid.segments.flatMap((_, i) => (['ratio', 'dpBar', 'flowMlMin', 'tempC'] as const).map((c) => stepTag(i, c))),
   ]
+  if (hasCharts(n, p.store.sequence.count(p.stepsRun).width))
+    stepTags.push(...p.skid.segments.flatMap((_, i) => (['cusum', 'cusumLow'] as const).map((c) => chartTag(n, i, c))))
   const steps = p.store.readings.envelope(p.stepsRun, stepTags, fromMs, toMs, buckets)
   const readings = p.store.readings.envelope(p.run, index, fromMs, toMs, buckets)
   return {
@@ -38,7 +41,8 @@ export function trendsOf(p: RunParts, fromMs: number, toMs: number, buckets: num
     buckets: steps.buckets,
     segments: p.skid.segments.map((s, i) => {
       const [ratio, dpBar, flowMlMin, tempC] = steps.tags.slice(1 + 4 * i, 5 + 4 * i).map(band) as [Band, Band, Band, Band]
-      return { segment: s.id, ratio, dpBar, flowMlMin, tempC }
+      const [cusum, cusumLow] = steps.tags.slice(1 + 4 * n + 2 * i, 3 + 4 * n + 2 * i).map(band)
+      return { segment: s.id, ratio, dpBar, flowMlMin, tempC, cusum: cusum ?? null, cusumLow: cusumLow ?? null }
     }),
     tags: readings.tags.map((e, i) => ({ tag: tags[i]!, unit: valueUnit(p.skid.tags[index[i]!]!), ...band(e) })),
     production: Array.from(steps.tags[0]!.mean, (v, i) => (steps.tags[0]!.count[i] === 0 ? null : v >= 0.5)),
@@ -92,7 +96,10 @@ export function marksOf({ store, skid, run }: RunParts): Marks {
   const onsets: Marks['onsets'][number][] = []
   const forecasts: Marks['forecasts'][number][] = []
   const notes: Marks['notes'][number][] = []
-  for (const { tMs, body } of store.events.list(run)) {
+  // Of a run recorded before there were versions the acts tell of changed limits.
+  const told = store.events.list(run)
+  const hasVersions = told.some((e) => e.kind === 'configuration')
+  for (const { tMs, body } of told) {
     const e = body as unknown as PipelineEvent
     if (e.kind === 'baseline') baselines.push({ segment: e.segment, ...baselineOf(e.baseline) })
     else if (e.kind === 'onset') {
@@ -111,7 +118,11 @@ export function marksOf({ store, skid, run }: RunParts): Marks {
             highMs: f.highMs,
             level: f.level,
           })
-    } else if (e.kind === 'act' && e.act.kind === 'limit') {
+    } else if (e.kind === 'configuration') {
+      const { person, reason } = e.applied
+      for (const { segment, limit, value } of limitChanges(e.applied.changes))
+        limits.push({ segment, limit, fromMs: Math.max(e.tMs, fromMs), value, person, reason })
+    } else if (!hasVersions && e.kind === 'act' && e.act.kind === 'limit') {
       const { segment, limit, value, person, reason } = e.act
       limits.push({ segment, limit, fromMs: e.act.tMs, value, person, reason })
     }

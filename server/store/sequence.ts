@@ -164,10 +164,10 @@ export function sequenceWriter({ heads, acts, stages, segments }: Tables) {
       )
       return true
     },
-    /** Entries (rows, ticks and acts each count one) and rows of a run. Errors: STORE_DATA. */
-    count(run: RunId): { entries: number; rows: number } {
-      const { next, rows } = heads.get(run)
-      return { entries: next, rows }
+    /** Entries (rows, ticks and acts each count one) and rows of a run, and the tags of a row, null before the first. Errors: STORE_DATA. */
+    count(run: RunId): { entries: number; rows: number; width: number | null } {
+      const { next, rows, width } = heads.get(run)
+      return { entries: next, rows, width }
     },
     /** Source time of the earliest and the latest row; null without a row. Errors: STORE_DATA. */
     span(run: RunId): { fromMs: number; toMs: number } | null {

@@ -28,6 +28,8 @@ export interface StreamFacts {
   readonly flowTag: string
   readonly reagent: string | null
   readonly waterPpm: number | null
+  /** Moles of its reagent in an hour at a reading of 1 of its flow tag; null where reagent, fluid or unit is not known. */
+  readonly molHPerFlowUnit: number | null
 }
 
 export interface SegmentFacts {

@@ -28,6 +28,9 @@ export interface SegmentTrend {
   readonly dpBar: Band
   readonly flowMlMin: Band
   readonly tempC: Band
+  /** CUSUM of the promise's chart over its decision interval, upper and lower side: 1 is where it signals. Null in runs of an older build. */
+  readonly cusum: Band | null
+  readonly cusumLow: Band | null
 }
 
 export interface TagTrend extends Band {
@@ -44,6 +47,8 @@ export interface StepPoint {
     readonly dpBar: number | null
     readonly flowMlMin: number | null
     readonly tempC: number | null
+    readonly cusum: number | null
+    readonly cusumLow: number | null
   }[]
 }
 

@@ -92,9 +92,9 @@ export function factsOf(o: SceneOptions): SkidFacts {
       tag('FT-3', 'massFlow', 'kg/h', [0, 10]),
     ],
     streams: [
-      { id: 'A', title: 'substrate', flowTag: 'FT-1', reagent: 'thiophene', waterPpm: 85 },
-      { id: 'B', title: 'organolithium', flowTag: 'FT-2', reagent: 'n-hexyllithium', waterPpm: 5 },
-      { id: 'C', title: 'electrophile', flowTag: 'FT-3', reagent: null, waterPpm: null },
+      { id: 'A', title: 'substrate', flowTag: 'FT-1', reagent: 'thiophene', waterPpm: 85, molHPerFlowUnit: 1.1 },
+      { id: 'B', title: 'organolithium', flowTag: 'FT-2', reagent: 'n-hexyllithium', waterPpm: 5, molHPerFlowUnit: 3.3 },
+      { id: 'C', title: 'electrophile', flowTag: 'FT-3', reagent: null, waterPpm: null, molHPerFlowUnit: null },
     ],
     segments,
   }
@@ -248,6 +248,8 @@ export function sceneOf(o: SceneOptions = {}) {
         }),
         flowMlMin: band(() => 150),
         tempC: band(() => -18),
+        cusum: band((t) => (ratioAt(s.id, i, t) === null ? null : 0.2)),
+        cusumLow: band((t) => (ratioAt(s.id, i, t) === null ? null : 0.1)),
       })),
       tags: facts.tags.map((x) => ({ tag: x.tag, unit: x.unit, ...band((t) => tagAt(x.tag, x.unit, t)) })),
       production: times.map((t) => (t >= t0 && t <= endMs ? t > t0 + 300_000 : null)),

@@ -4,7 +4,7 @@ import { depositShare, drawnShare, exaggerationFor, openPct } from '../../web/mo
 import { fanEdge } from '../../web/model/fan.ts'
 import { layoutLine } from '../../web/model/line-layout.ts'
 import { emptyRun, putTrends } from '../../web/model/run-data.ts'
-import { trendKinds, trendSpec } from '../../web/model/trend-spec.ts'
+import { trendKinds, trendSpec, valuesAt } from '../../web/model/trend-spec.ts'
 import { alarmOf, factsOf, sceneOf, t0 } from '../helpers/scene.ts'
 
 const hour = 3_600_000
@@ -77,9 +77,35 @@ describe('a trend', () => {
     trendSpec(data, scene.state, scene.marks, { ...view, ...more, kind })
 
   it.each(trendKinds)('of %s names its quantity and unit on the axis', (kind) => {
-    expect(of(kind).yTitle).toMatch(/^[\wΔ]+ \[(–|bar|°C|kg\/h|mL\/min)\]$/)
+    expect(of(kind).yTitle).toMatch(/^[\wΔ]+ \[(–|bar|°C|kg\/h|mL\/min|mol\/mol)\]$/)
     expect(of(kind).zone).toBe('Europe/Amsterdam')
     expect(of(kind).lines.length).toBeGreaterThan(0)
+  })
+  it('of the feed ratio turns readings into mol/mol: 4 kg/h over 2 kg/h at 3 and 1.5 mol per kg/h is 4, within the extremes of either', () => {
+    const data = emptyRun(
+      {
+        ...scene.detail,
+        skidFacts: {
+          ...scene.facts,
+          streams: scene.facts.streams.map((s, i) => ({ ...s, molHPerFlowUnit: i === 0 ? 1.5 : 3 })),
+        },
+      },
+      scene.marks,
+    )
+    data.tags.get('FT-1')!.push({ x: scene.endMs - 1000, y: 2, low: 1.6, high: 2.5 })
+    data.tags.get('FT-3')!.push({ x: scene.endMs - 1000, y: 4, low: 3.2, high: 5 })
+    const spec = trendSpec(data, scene.state, scene.marks, {
+      kind: 'feed-ratio', segment: 'S3', fromMs: scene.endMs - 3_600_000, toMs: scene.endMs, atMs: scene.endMs, alarms: [],
+    }) // biome-ignore format: a list
+    expect(spec.yTitle).toBe('ratio [mol/mol]')
+    expect(spec.lines[0]!.points.at(-1)).toEqual({ x: scene.endMs - 1000, y: 4, low: (2 * 3.2) / 2.5, high: (2 * 5) / 1.6 })
+    expect(valuesAt(spec, scene.endMs)).toEqual([{ name: 'C : A', value: 4 }])
+  })
+  it('of ΔP shows beside it what a clean bore would show: ΔP over the ratio', () => {
+    const [raw, clean] = of('dp').lines
+    const at = raw!.points.findLastIndex((p) => p.y !== null)
+    expect(clean!.points[at]!.y).toBeCloseTo(2.1, 9)
+    expect(raw!.points[at]!.y!).toBeGreaterThan(2.2)
   })
   it('of the ratio carries baseline, limit with its change as a step, onset with interval, forecast and the gap', () => {
     const o = of('ratio').overlay

@@ -94,7 +94,7 @@ describe('what a page knows of a run', () => {
     const data = emptyRun(scene.detail, scene.marks)
     putTrends(data, scene.trends(t0, scene.endMs, 720))
     const before = data.segments.get('S2')!.ratio.points().length
-    const segments = scene.facts.segments.map(() => ({ ratio: 1.2, dpBar: 2, flowMlMin: 150, tempC: -18 }))
+    const segments = scene.facts.segments.map(() => ({ ratio: 1.2, dpBar: 2, flowMlMin: 150, tempC: -18, cusum: 0.2, cusumLow: 0 }))
     grow(
       data,
       [{ tMs: scene.endMs + 15_000, production: true, segments }],

@@ -32,6 +32,8 @@ export interface Overlay {
   } | null
   readonly onset: { readonly lowMs: number; readonly atMs: number; readonly highMs: number; readonly label: string } | null
   readonly alarms: readonly { readonly tMs: number; readonly priority: Priority }[]
+  /** Where the reader points, in all charts of a page at once; null where nowhere. */
+  readonly cursorMs: number | null
   /** A dashed upright with words: a change, a moment of notice. */
   readonly notes: readonly { readonly tMs: number; readonly label: string }[]
 }
@@ -45,6 +47,7 @@ export const emptyOverlay = (nowMs: number): Overlay => ({
   fan: null,
   onset: null,
   alarms: [],
+  cursorMs: null,
   notes: [],
 })
 

@@ -6,7 +6,12 @@ export interface SegmentSeries {
   readonly ratio: GrowingSeries
   readonly dpBar: GrowingSeries
   readonly flowMlMin: GrowingSeries
+  /** CUSUM of the promise's chart over its decision interval, upper and lower side. */
+  readonly cusum: GrowingSeries
+  readonly cusumLow: GrowingSeries
 }
+
+const segmentSeries = ['ratio', 'dpBar', 'flowMlMin', 'cusum', 'cusumLow'] as const
 
 /** What the pages know of one run. Series are those of the window last fetched, and of what came live since. */
 export interface RunData {
@@ -22,6 +27,9 @@ export interface RunData {
   readonly window: { fromMs: number; toMs: number }
 }
 
+/** Of what a run of an older build does not hold. */
+const unknownBand: Band = { min: [], max: [], mean: [] }
+
 /** Longest silence of a tag that is not yet a gap (DSP-11). */
 const quietMs = 15_000
 
@@ -35,7 +43,7 @@ export function emptyRun(detail: RunDetail, marks: Marks): RunData {
     segments: new Map(
       f.segments.map((s) => [
         s.id,
-        { ratio: growingSeries(stepGap), dpBar: growingSeries(stepGap), flowMlMin: growingSeries(stepGap) },
+        Object.fromEntries(segmentSeries.map((name) => [name, growingSeries(stepGap)])) as unknown as SegmentSeries,
       ]),
     ),
     tags: new Map(f.tags.map((t) => [t.tag, growingSeries(quietMs)])),
@@ -63,9 +71,7 @@ export function putTrends(data: RunData, t: Trends, keepLater = true): void {
   }
   for (const s of t.segments) {
     const own = data.segments.get(s.segment)
-    put(own?.ratio, s.ratio)
-    put(own?.dpBar, s.dpBar)
-    put(own?.flowMlMin, s.flowMlMin)
+    for (const name of segmentSeries) put(own?.[name], s[name] ?? unknownBand)
   }
   for (const s of t.tags) put(data.tags.get(s.tag), s)
   const any = Array.from({ length: t.buckets }, (_, i) => (t.tags.some((s) => s.mean[i] != null) ? 1 : null))
@@ -89,9 +95,7 @@ export function grow(
   for (const s of steps) {
     s.segments.forEach((v, i) => {
       const own = data.segments.get(ids[i] ?? '')
-      own?.ratio.push({ x: s.tMs, y: v.ratio })
-      own?.dpBar.push({ x: s.tMs, y: v.dpBar })
-      own?.flowMlMin.push({ x: s.tMs, y: v.flowMlMin })
+      for (const name of segmentSeries) own?.[name].push({ x: s.tMs, y: v[name] })
     })
     data.production.push({ x: s.tMs, y: s.production ? 1 : 0 })
   }

@@ -8,7 +8,7 @@ import type { Point } from './series.ts'
 import { gaps } from './trend-gaps.ts'
 import { limitWords } from './words.ts'
 
-export const trendKinds = ['ratio', 'dp', 'temperature', 'pressure', 'flow'] as const
+export const trendKinds = ['ratio', 'dp', 'temperature', 'pressure', 'flow', 'feed-ratio', 'charts'] as const
 export type TrendKind = (typeof trendKinds)[number]
 export const trendWords: Record<TrendKind, { readonly tab: string; readonly title: string }> = {
   ratio: { tab: 'Ratio', title: 'flow resistance over clean [–]' },
@@ -16,6 +16,8 @@ export const trendWords: Record<TrendKind, { readonly tab: string; readonly titl
   temperature: { tab: 'Temperatures', title: 'temperatures [°C]' },
   pressure: { tab: 'Pressures', title: 'pressures at its ends' },
   flow: { tab: 'Feeds', title: 'flows of its feeds' },
+  'feed-ratio': { tab: 'Feed ratio', title: 'ratio of its feeds' },
+  charts: { tab: 'Charts', title: 'chart of the promise, CUSUM over its decision interval [–]' },
 }
 
 export interface TrendView {
@@ -27,6 +29,9 @@ export interface TrendView {
   readonly atMs: number
   readonly alarms: readonly AlarmRow[]
 }
+
+/** Trends of detector steps; the others are of readings. */
+const ofSteps: ReadonlySet<TrendKind> = new Set(['ratio', 'dp', 'charts'])
 
 /** What a trend shows of a segment at a moment: pure, from what the page knows. */
 export function trendSpec(data: RunData, state: LiveState, marks: Marks, view: TrendView): TrendSpec {
@@ -51,12 +56,13 @@ export function trendSpec(data: RunData, state: LiveState, marks: Marks, view: T
       nowLabel: picture.nowLabel,
       bands: picture.bands,
       limits: picture.limits,
-      gaps: gaps(data, view, rhythmMs(state.clock.speed), view.kind === 'ratio' || view.kind === 'dp' ? spec.id : null),
+      gaps: gaps(data, view, rhythmMs(state.clock.speed), ofSteps.has(view.kind) ? spec.id : null),
       fan: picture.fan,
       onset: onsetOf(data, marks, view, spec.id, now),
       alarms: view.alarms
         .filter((a) => a.raisedMs <= view.atMs && (a.segment === spec.id || a.segment === null))
         .map((a) => ({ tMs: a.raisedMs, priority: a.priority })),
+      cursorMs: null,
       notes: noticed(data, view, spec.id),
     },
   }
@@ -104,7 +110,10 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
     case 'dp':
       return {
         ...none,
-        lines: [{ name: spec.id, look: 'main', points: own?.dpBar.points() ?? [] }],
+        lines: [
+          { name: spec.id, look: 'main', points: own?.dpBar.points() ?? [] },
+          { name: 'clean bore', look: 'other', points: own === undefined ? [] : quotient(own.dpBar.points(), own.ratio.points()) },
+        ],
         yTitle: 'ΔP [bar]',
         limits: [...limit('dpHighBar', 1), ...limit('dpHighHighBar', 1)],
         nowLabel: now?.dpBar == null ? null : figure(now.dpBar, 'bar'),
@@ -148,7 +157,67 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
         nowLabel: null,
       }
     }
+    case 'feed-ratio': {
+      const pair = feedPair(facts, spec)
+      const flows = (pair?.tags ?? []).map((tag) => data.tags.get(tag)?.points() ?? [])
+      const factor = pair?.molMol ?? 1
+      const between = spec.feedRatio === null || pair?.molMol == null ? [] : [spec.feedRatio.low, spec.feedRatio.high]
+      return {
+        ...none,
+        lines: [
+          {
+            name: pair === null ? '' : `${pair.of[0]} : ${pair.of[1]}`,
+            look: 'main',
+            points: quotient(flows[0] ?? [], flows[1] ?? [], factor),
+          },
+        ],
+        yTitle: pair?.molMol == null ? 'ratio [–]' : 'ratio [mol/mol]',
+        limits: between.map((value, i) => ({
+          side: i === 0 ? -1 : 1,
+          label: `${i === 0 ? 'lowest' : 'highest'} ${fixed(value, 2)} mol/mol`,
+          steps: [{ fromMs: view.fromMs, value }],
+        })),
+        nowLabel: null,
+      }
+    }
+    case 'charts':
+      return {
+        ...none,
+        lines: [
+          { name: 'rise', look: 'main', points: own?.cusum.points() ?? [] },
+          { name: 'fall', look: 'other', points: own?.cusumLow.points() ?? [] },
+        ],
+        yTitle: 'CUSUM [–]',
+        limits: [{ side: 1, label: 'decision interval h', steps: [{ fromMs: view.fromMs, value: 1 }] }],
+        nowLabel: null,
+      }
   }
+}
+
+/** One series over another, point by point where both are known; a bucket's extremes are the widest that its readings allow. */
+function quotient(over: readonly Point[], under: readonly Point[], factor = 1): Point[] {
+  const at = new Map(under.map((p) => [p.x, p]))
+  return over.map(({ x, y, low, high }) => {
+    const q = at.get(x)
+    if (y === null || q?.y == null || !(q.y > 0)) return { x, y: null }
+    const bounds =
+      low == null || high == null || !((q.low ?? q.y) > 0)
+        ? {}
+        : { low: (factor * low) / (q.high ?? q.y), high: (factor * high) / (q.low ?? q.y) }
+    return { x, y: (factor * y) / q.y, ...bounds }
+  })
+}
+
+/** The two feeds whose ratio a segment shows: those of its limit, else its second over its first; `molMol` turns the quotient of their readings into mol/mol. */
+export function feedPair(
+  facts: RunData['detail']['skidFacts'],
+  spec: SegmentFacts,
+): { readonly of: readonly [string, string]; readonly tags: readonly [string, string]; readonly molMol: number | null } | null {
+  const [a, b] = spec.feedRatio?.of ?? [spec.streams[1], spec.streams[0]]
+  const [x, y] = [a, b].map((id) => facts.streams.find((s) => s.id === id))
+  if (x === undefined || y === undefined) return null
+  const molMol = x.molHPerFlowUnit === null || y.molHPerFlowUnit === null ? null : x.molHPerFlowUnit / y.molHPerFlowUnit
+  return { of: [x.id, y.id], tags: [x.flowTag, y.flowTag], molMol }
 }
 
 const hottest = (spec: SegmentFacts, now: SegmentState | undefined): number => {
@@ -211,7 +280,7 @@ function fanOf(data: RunData, view: TrendView, now: SegmentState | undefined, cl
 
 function onsetOf(data: RunData, marks: Marks, view: TrendView, segment: string, now: SegmentState | undefined): Overlay['onset'] {
   const o = now?.onset ?? [...marks.onsets].reverse().find((x) => x.segment === segment && x.foundMs <= view.atMs) ?? null
-  if (o === null || view.kind === 'flow' || view.kind === 'pressure') return null
+  if (o === null || view.kind === 'flow' || view.kind === 'pressure' || view.kind === 'feed-ratio') return null
   const { hm } = data.clock
   return {
     lowMs: o.lowMs,
@@ -253,5 +322,15 @@ function extent(kind: TrendKind, points: readonly Point[], limits: readonly numb
   // A forecast towards a limit outside the range gets room to be seen in.
   if (kind === 'ratio' && fan && !limits.some((l) => l <= high)) high += 0.8 * (high - 1)
   const room = Math.max(high - low, span) * 0.1
-  return [kind === 'dp' || kind === 'flow' ? Math.max(0, low - room) : low - room, high + room]
+  return [kind === 'dp' || kind === 'flow' || kind === 'charts' ? Math.max(0, low - room) : low - room, high + room]
+}
+
+/** What a chart shows at a moment, a line each: the value of the nearest point, null where none is near. */
+export function valuesAt(spec: TrendSpec, tMs: number): { readonly name: string; readonly value: number | null }[] {
+  const near = (spec.toMs - spec.fromMs) / 100
+  return spec.lines.map((l) => {
+    let best: Point | null = null
+    for (const p of l.points) if (Math.abs(p.x - tMs) <= (best === null ? near : Math.abs(best.x - tMs))) best = p
+    return { name: l.name, value: best?.y ?? null }
+  })
 }

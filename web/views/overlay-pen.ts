@@ -72,6 +72,16 @@ export function drawOver(f: Frame, o: Overlay, last: Point | null): void {
   const em = look.rootPx
   pen.save()
   clip(f)
+  if (o.cursorMs !== null)
+    line(
+      f,
+      [
+        [f.x(o.cursorMs), box.top],
+        [f.x(o.cursorMs), box.bottom],
+      ],
+      'ink-2',
+      1,
+    )
   if (o.onset !== null) {
     const y = box.bottom - 0.6 * em
     const [l, at, r] = [f.x(o.onset.lowMs), f.x(o.onset.atMs), f.x(o.onset.highMs)]

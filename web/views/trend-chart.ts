@@ -17,6 +17,7 @@ const dashes: readonly number[][] = [[], [7, 4], [2, 4], [9, 3, 2, 3], [1, 3]]
 /** A trend over time with limits, bands, forecast and gaps. Draws at most once a frame; knows nothing of sockets or alarms. */
 export function trendChart(canvas: HTMLCanvasElement) {
   let spec: TrendSpec | null = null
+  let cursorMs: number | null = null
   let frame = 0
   const ask = (): void => {
     frame ||= requestAnimationFrame(() => draw())
@@ -34,7 +35,7 @@ export function trendChart(canvas: HTMLCanvasElement) {
       const main = spec.lines.find((l) => l.look === 'main')
       const last =
         main === undefined ? null : ([...main.points].reverse().find((p) => p.y !== null && p.x <= spec!.overlay.nowMs) ?? null)
-      drawOver(f, spec.overlay, spec.overlay.nowLabel === null ? null : last)
+      drawOver(f, { ...spec.overlay, cursorMs }, spec.overlay.nowLabel === null ? null : last)
       if (spec.lines.length > 1) for (const l of spec.lines) nameOf(f, l)
     },
   }
@@ -142,6 +143,12 @@ export function trendChart(canvas: HTMLCanvasElement) {
   return {
     show(next: TrendSpec): void {
       spec = next
+      ask()
+    },
+    /** Marks a moment, or none. */
+    point(tMs: number | null): void {
+      if (tMs === cursorMs) return
+      cursorMs = tMs
       ask()
     },
     /** Time under a place on the canvas, by client x. */

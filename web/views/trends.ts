@@ -1,8 +1,8 @@
-import type { AlarmRow, LiveState, Marks, SegmentFacts } from '../../server/wire/index.ts'
+import type { AlarmRow, LiveState, Marks, SegmentFacts, SkidFacts } from '../../server/wire/index.ts'
 import { timesOf } from '../model/bore.ts'
 import { short } from '../model/format.ts'
 import { type RunData, rhythmMs } from '../model/run-data.ts'
-import { type TrendKind, trendKinds, trendSpec, trendWords } from '../model/trend-spec.ts'
+import { feedPair, type TrendKind, trendKinds, trendSpec, trendWords, valuesAt } from '../model/trend-spec.ts'
 import { boresView } from './bores.ts'
 import { el, fill, say } from './dom.ts'
 import { trendChart } from './trend-chart.ts'
@@ -70,14 +70,7 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
   function read(tMs: number): void {
     if (shown === null) return
     const spec = trendSpec(data, shown.state, shown.marks, { ...shown, kind, segment: segmentNow() })
-    const span = (shown.toMs - shown.fromMs) / 100
-    const parts = spec.lines.map((l) => {
-      const near = l.points.reduce<{ d: number; y: number | null }>(
-        (b, p) => (Math.abs(p.x - tMs) < b.d ? { d: Math.abs(p.x - tMs), y: p.y } : b),
-        { d: span, y: null },
-      )
-      return `${l.name} ${near.y === null ? 'not known' : near.y.toFixed(2)}`
-    })
+    const parts = valuesAt(spec, tMs).map((v) => `${v.name} ${v.value === null ? 'not known' : v.value.toFixed(2)}`)
     say(
       readout,
       tMs > shown.atMs
@@ -99,6 +92,7 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
       b.hidden =
         k !== kind &&
         !hasKind(
+          facts,
           facts.segments.find((x) => x.id === segment),
           k,
         )
@@ -142,7 +136,8 @@ export function trendsView(data: RunData, tools: HTMLElement, withPlaces: boolea
 export type TrendsView = ReturnType<typeof trendsView>
 
 /** Whether a segment has anything to show of a kind. */
-function hasKind(spec: SegmentFacts | undefined, kind: TrendKind): boolean {
+export function hasKind(facts: SkidFacts, spec: SegmentFacts | undefined, kind: TrendKind): boolean {
+  if (kind === 'feed-ratio') return spec !== undefined && feedPair(facts, spec) !== null
   if (kind === 'temperature') return spec !== undefined && (spec.temperatures.length > 0 || spec.coolantTemperature !== null)
   return kind !== 'pressure' || spec?.pressureIn != null || spec?.dpTag != null
 }
