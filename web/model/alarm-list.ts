@@ -1,36 +1,32 @@
-import type { AlarmRow } from '../../server/wire/index.ts'
+import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
 
-/** More than so many annunciations in ten minutes is a flood; fewer than the second number ends it (ISA-18.2 cl. 16, from memory). */
-export const floodOver = 10
-export const floodUnder = 5
-export const floodWindowMs = 600_000
+const weight = { high: 3, medium: 2, low: 1 } as const
 
-/** Whether a flood is on, given whether it was: a band between both numbers so that the screen does not flicker. */
-export function inFlood(alarms: readonly AlarmRow[], nowMs: number, was: boolean): boolean {
-  const recent = alarms.filter((a) => nowMs - a.raisedMs < floodWindowMs).length
-  return recent > floodOver || (was && recent >= floodUnder)
+/** In a flood two alarms are pinned and labelled (ALM-14): the one it began with, and the most urgent that nobody has acknowledged, the oldest of them. */
+export function pinnedOf(
+  alarms: readonly AlarmRow[],
+  flood: LiveState['flood'],
+): { readonly first: number; readonly top: number | null } | null {
+  if (flood === null) return null
+  const owed = alarms.filter((a) => a.state === 'UNACK')
+  owed.sort((a, b) => weight[b.priority] - weight[a.priority] || a.raisedMs - b.raisedMs || a.id - b.id)
+  return { first: flood.first.id, top: owed[0]?.id ?? null }
 }
-
-/** The first alarm of the flood: the oldest one of its window. */
-export const firstOut = (alarms: readonly AlarmRow[], nowMs: number): AlarmRow | null =>
-  alarms.reduce<AlarmRow | null>(
-    (first, a) =>
-      nowMs - a.raisedMs < floodWindowMs &&
-      (first === null || a.raisedMs < first.raisedMs || (a.raisedMs === first.raisedMs && a.id < first.id))
-        ? a
-        : first,
-    null,
-  )
 
 const newestFirst = (a: AlarmRow, b: AlarmRow): number => b.raisedMs - a.raisedMs || b.id - a.id
 
 /**
- * Ids in the order shown: newest on top. While `held` (somebody points at the list or is inside it) rows already there keep their place and
- * new ones go below, so that nothing moves under the hand; gone ones leave their place only when let go.
+ * Ids in the order shown: pinned ones first, then newest on top. While `held` (somebody points at the list or is inside it) rows already there
+ * keep their place and new ones go below, so that nothing moves under the hand; pins are set and gone ones leave only when let go.
  */
-export function orderOf(alarms: readonly AlarmRow[], shown: readonly number[], held: boolean): number[] {
+export function orderOf(
+  alarms: readonly AlarmRow[],
+  shown: readonly number[],
+  held: boolean,
+  pinned: readonly number[] = [],
+): number[] {
   const sorted = [...alarms].sort(newestFirst).map((a) => a.id)
-  if (!held) return sorted
+  if (!held) return [...pinned, ...sorted.filter((id) => !pinned.includes(id))]
   const kept = new Set(shown)
   return [...shown, ...sorted.filter((id) => !kept.has(id))]
 }
@@ -43,9 +39,11 @@ export function countsOf(alarms: readonly AlarmRow[]) {
     low: { n: 0, unack: 0, active: 0 },
   }
   let shelved = 0
+  let suppressed = 0
   let outOfService = 0
   for (const a of alarms) {
-    if (a.state === 'SHELVED' || a.state === 'SBD') shelved++
+    if (a.state === 'SHELVED') shelved++
+    else if (a.state === 'SBD') suppressed++
     else if (a.state === 'OOS') outOfService++
     else if (a.active || a.needsAck || a.state === 'LACKED') {
       by[a.priority].n++
@@ -53,7 +51,7 @@ export function countsOf(alarms: readonly AlarmRow[]) {
       if (a.active) by[a.priority].active++
     }
   }
-  return { ...by, shelved, outOfService }
+  return { ...by, shelved, suppressed, outOfService }
 }
 
 /** An alarm as it stood at a moment of a stored run: what came later is not known yet. */
@@ -70,5 +68,6 @@ export function asAt(a: AlarmRow, tMs: number): AlarmRow {
     acknowledgedMs: owned ? a.acknowledgedMs : null,
     acknowledgedBy: owned ? a.acknowledgedBy : null,
     shelvedUntilMs: null,
+    aside: null,
   }
 }

@@ -5,7 +5,9 @@ import { answersOf } from '../model/answers.ts'
 import { duration, fixed } from '../model/format.ts'
 import { type Look, panned, within, zoomed } from '../model/look.ts'
 import type { RunData } from '../model/run-data.ts'
+import { spanOf, trendOf } from '../model/trend-of.ts'
 import { fetchWindow } from '../run-store.ts'
+import { openBefore } from './alarm-before.ts'
 import { alarmsView } from './alarms.ts'
 import { el, say } from './dom.ts'
 import { clamp } from './pen.ts'
@@ -16,7 +18,7 @@ import type { Shell } from './watch.ts'
 const leastSpanMs = 60_000
 
 /** A stored run. A moment is shown; right of it nothing is known, and nothing here can be acknowledged. */
-export function replayView(data: RunData, shell: Shell) {
+export function replayView(data: RunData, shell: Shell, openAtMs: number | null = null) {
   const { detail, clock } = data
   const facts = detail.skidFacts
   const first = detail.fromMs ?? 0
@@ -60,7 +62,7 @@ export function replayView(data: RunData, shell: Shell) {
     button('end', 'end: to the end of the run', () => seek(last)),
     sliderText,
   )
-  const alarms = alarmsView(clock, { act: null, trend: (a) => jump(a) })
+  const alarms = alarmsView(clock, { act: null, trend: (a) => jump(a), before: (a) => openBefore(detail.run, a, clock) })
   const links = el(
     'section',
     { class: 'exports' },
@@ -163,17 +165,9 @@ export function replayView(data: RunData, shell: Shell) {
 
   /** From an alarm to its trend: its segment, the hour around it, and the moment that it was raised. */
   function jump(a: AlarmRow): void {
-    if (a.segment !== null)
-      trends.pick(
-        a.kind === 'exotherm' || a.kind === 'temperature-limit'
-          ? 'temperature'
-          : a.kind === 'feed-ratio' || a.kind === 'flow'
-            ? 'flow'
-            : 'ratio',
-        a.segment,
-      )
-    const from = a.onset === null ? a.raisedMs - 1_800_000 : Math.min(Date.parse(a.onset.low), a.raisedMs) - 1_200_000
-    look(from, a.raisedMs + 1_800_000)
+    const place = trendOf(a, facts)
+    if (place !== null) trends.pick(place.kind, place.segment)
+    look(...spanOf(a))
     if (atMs < a.raisedMs) seek(a.raisedMs + 1000 * facts.stepSeconds)
     node.dataset['jumped'] = String(a.id)
     trends.canvas.focus()
@@ -182,7 +176,7 @@ export function replayView(data: RunData, shell: Shell) {
   function draw(): void {
     const known = all.filter((a) => a.raisedMs <= atMs).map((a) => asAt(a, atMs))
     say(sliderText, `${clock.full(atMs)} ${clock.offset(atMs)}`)
-    alarms.show(known, atMs, 'No alarm up to this moment.')
+    alarms.show(known, atMs, state?.flood ?? null, 'No alarm up to this moment.')
     strip()
     if (state === null) return
     const a = answersOf(facts, state, clock)
@@ -242,13 +236,18 @@ export function replayView(data: RunData, shell: Shell) {
     },
     (error: unknown) => say(says, said(error)),
   )
-  seek(last)
+  if (openAtMs === null) seek(last)
+  else {
+    look(openAtMs - 3_600_000, openAtMs + 1_800_000)
+    seek(openAtMs)
+  }
   return {
     node,
     stop(): void {
       stateAsked?.abort()
       windowAsked?.abort()
       clearTimeout(windowTimer)
+      alarms.stop()
       trends.destroy()
     },
   }
