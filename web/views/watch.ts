@@ -10,7 +10,6 @@ import { spanOf, trendOf } from '../model/trend-of.ts'
 import { fetchWindow, follow } from '../run-store.ts'
 import { adviceView } from './advice.ts'
 import { openBefore } from './alarm-before.ts'
-import { titleOf } from './alarm-row.ts'
 import { type ActBodyOf, alarmsView } from './alarms.ts'
 import { answersView, nowView } from './answers.ts'
 import { el, fill, say } from './dom.ts'
@@ -27,7 +26,7 @@ export interface Shell {
   /** Said to assistive technology, politely. */
   announce(text: string): void
   person(): string
-  /** Asks for a name where none is set; true when there is one. */
+  /** True when acts would be taken; else leads to signing in. */
   needPerson(): boolean
 }
 
@@ -59,9 +58,6 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   let spoken = ''
   let shownLook: Look = { fromMs: 0, toMs: leastMs }
 
-  /** Part of the run that is looked at instead of now. */
-  let held: { readonly span: readonly [number, number]; readonly name: string; readonly id: number } | null = null
-
   const answers = answersView()
   const now = nowView()
   const tools = el('div', { class: 'tabs', role: 'group', 'aria-label': 'Time shown' })
@@ -77,7 +73,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   const advice = adviceView(data.clock, openPlan)
   const alarms = alarmsView(data.clock, {
     act: async (body: ActBodyOf) => {
-      if (!shell.needPerson()) return 'say who you are first: your name is asked for in the top strip'
+      if (!shell.needPerson()) return 'sign in first: the way is in the top strip'
       const reply = await postJson<ActReply>(`/api/runs/${run}/acts`, body)
       const refused = reply.transitions.find((t) => t.outcome === 'refused')
       if (refused === undefined)
@@ -87,12 +83,13 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     trend: (a) => {
       const place = trendOf(a, facts)
       if (place !== null) trends.pick(place.kind, place.segment)
-      held = { span: spanOf(a), name: titleOf(a), id: a.id }
       planOpen = false
-      toNow.hidden = false
-      say(toNow, `Raised ${data.clock.hm(a.raisedMs)} is shown: back to now`)
-      void refetch().then(() => trends.canvas.scrollIntoView({ block: 'nearest' }))
+      const [fromMs, toMs] = spanOf(a)
+      look({ fromMs, toMs })
+      node.dataset['looked'] = String(a.id)
+      show()
       trends.canvas.focus()
+      trends.canvas.scrollIntoView({ block: 'nearest' })
     },
     before: (a) => openBefore(run, a, data.clock),
   })
@@ -188,7 +185,6 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     return state.clock.nowMs + Math.max(0, since)
   }
   const windowOf = (nowMs: number): [number, number] => {
-    if (held !== null) return [held.span[0], held.span[1]]
     if (chosen !== null) return [chosen.fromMs, chosen.toMs]
     // A run opened before its first reading begins where the page first heard of one.
     firstMs ??= followed.state()?.comb.endMs ?? null
@@ -252,7 +248,6 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     node.dataset['ready'] = 'true'
     node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
     node.dataset['lead'] = a.segment ?? ''
-    node.dataset['held'] = held === null ? '' : String(held.id)
     strip.show(state, runNow(state), link)
   }
 
