@@ -43,5 +43,6 @@ export const postJson = <T>(path: string, body: unknown): Promise<T> =>
       ? { method: 'POST' }
       : { method: 'POST', headers: { 'content-type': 'application/json' }, body: JSON.stringify(body) },
   )
+export const deleteJson = <T>(path: string): Promise<T> => call<T>(path, { method: 'DELETE' })
 export const putFile = <T>(path: string, file: File): Promise<T> =>
   call<T>(path, { method: 'PUT', headers: { 'content-type': 'application/octet-stream' }, body: file })

@@ -17,16 +17,21 @@ interface Hooks {
   message(message: ServerMessage): void
   /** The link came up: subscribe again. */
   open(): void
+  /** The server let this page go, or does not let it in: its session may be over. */
+  refused(): void
   link(link: Link): void
 }
 
-/** The socket that keeps itself up: tries again with growing waits, tells when nothing comes. */
+/** Close code by which the server lets a page go whose session is over. */
+const signedOut = 4401
+
+/** The socket that keeps itself up once it may: tries again with growing waits, tells when nothing comes. */
 export function openFeed(url: string, hooks: Hooks) {
   let socket: WebSocket | null = null
   let heardAt: number | null = null
   let attempt = 0
   let retryAt: number | null = null
-  let stopped = false
+  let wanted = false
   let told = ''
 
   const up = (): boolean => socket?.readyState === WebSocket.OPEN && heardAt !== null && performance.now() - heardAt < silentMs
@@ -54,15 +59,17 @@ export function openFeed(url: string, hooks: Hooks) {
       hooks.message(JSON.parse(event.data) as ServerMessage)
       tell()
     })
-    next.addEventListener('close', () => {
-      if (stopped || socket !== next) return
+    next.addEventListener('close', (event) => {
+      if (!wanted || socket !== next) return
       socket = null
+      if (event.code === signedOut) hooks.refused()
       retryAt = performance.now() + backoffMs(attempt++, Math.random())
       tell()
     })
   }
 
   const timer = setInterval(() => {
+    if (!wanted) return
     if (retryAt !== null && performance.now() >= retryAt) connect()
     // A half-dead link (laptop woke, cable pulled) never says that it closed: start again after six silent seconds.
     else if (socket !== null && heardAt !== null && performance.now() - heardAt > 3 * silentMs) {
@@ -73,14 +80,23 @@ export function openFeed(url: string, hooks: Hooks) {
     }
     tell()
   }, 250)
-  connect()
 
   return {
     send(message: ClientMessage): void {
       if (socket?.readyState === WebSocket.OPEN) socket.send(JSON.stringify(message))
     },
+    /** Connects, or lets go: nothing may be seen without a person. */
+    want(on: boolean): void {
+      if (on === wanted) return
+      wanted = on
+      const was = socket
+      socket = null
+      retryAt = null
+      if (on) connect()
+      else was?.close()
+    },
     close(): void {
-      stopped = true
+      wanted = false
       clearInterval(timer)
       socket?.close()
     },

@@ -1,13 +1,20 @@
-import type { RunRow, ServerMessage, Service } from '../server/wire/index.ts'
+import type { RunDetail, RunRow, ServerMessage, Service } from '../server/wire/index.ts'
 import { getJson, said } from './api.ts'
+import { openEars } from './ears.ts'
 import { type Link, openFeed } from './feed.ts'
+import { callsOf } from './model/alarm-sound.ts'
 import { zoneClock } from './model/clock.ts'
 import { loadRun } from './run-store.ts'
+import { openSession } from './session.ts'
+import { publicPages, sitePages } from './site-pages.ts'
 import { el, fill, say } from './views/dom.ts'
 import { footView } from './views/foot.ts'
+import { handOverView } from './views/handover.ts'
 import { refreshPalette } from './views/palette.ts'
+import { performanceView } from './views/performance.ts'
 import { type ReplayView, replayView } from './views/replay.ts'
 import { runsView } from './views/runs.ts'
+import { soundView } from './views/sound.ts'
 import { cutView, stripView } from './views/strip.ts'
 import { type Shell, type WatchView, watchView } from './views/watch.ts'
 
@@ -38,15 +45,9 @@ function setTheme(t: 'day' | 'night'): void {
 setTheme((kept.get('theme') as 'day' | 'night' | null) ?? (matchMedia('(prefers-color-scheme: dark)').matches ? 'night' : 'day'))
 window.addEventListener('resize', refreshPalette)
 
-let person = kept.get('person') ?? ''
 const says = document.getElementById('says')!
 const app = document.getElementById('app')!
 const strip = stripView({
-  person: () => person,
-  setPerson(name) {
-    person = name
-    kept.set('person', name)
-  },
   theme,
   toggleTheme() {
     setTheme(theme() === 'day' ? 'night' : 'day')
@@ -54,16 +55,21 @@ const strip = stripView({
     redraw()
   },
 })
-const foot = footView()
+const session = openSession((now) => {
+  strip.person(now)
+  feed.want(now.mayRead)
+  if (!now.mayRead && !publicPages.has(route().page)) void go()
+})
+const sound = soundView((text) => say(says, text))
+const foot = footView(sound.node)
 const cut = cutView()
 const shell: Shell = {
   strip,
-  foot,
   cut,
   announce: (text) => say(says, text),
-  person: () => person,
+  person: session.person,
   needPerson() {
-    if (person !== '') return true
+    if (session.mayAct()) return true
     document.getElementById('person')?.focus()
     return false
   },
@@ -77,6 +83,7 @@ let link: Link = { up: false, heardAt: null, retryInMs: null }
 let watch: { run: number; view: WatchView } | null = null
 let replay: ReplayView | null = null
 let list: ReturnType<typeof runsView> | null = null
+let desk: { stop(): void } | null = null
 let turn = 0
 
 const socketUrl = new URL('/ws', location.href)
@@ -91,27 +98,58 @@ const feed = openFeed(socketUrl.href, {
       if (route().page === 'watch' && (watch === null || over)) void go()
     } else if (m.type === 'error') say(says, m.problem.message)
     watch?.view.take(m)
+    ears.take(m)
   },
-  open: () => watch?.view.open(),
+  open() {
+    watch?.view.open()
+    ears.open()
+  },
+  refused: () => void session.load().catch(() => undefined),
   link(l) {
     link = l
     watch?.view.link(l)
     if (watch === null) root.dataset['link'] = l.up ? 'up' : 'down'
+    heard()
   },
 })
+const ears = openEars(feed, () => heard())
 
-/** Where the address leads: #/watch, #/watch/RUN, #/replay, #/replay/RUN. */
-function route(): { page: 'watch' | 'replay'; run: number | null } {
-  const [, page, run] = location.hash.split('/')
-  const n = Number(run)
-  return { page: page === 'replay' ? 'replay' : 'watch', run: run !== undefined && run !== '' && Number.isInteger(n) ? n : null }
+/** What stands on every live run, in the foot and to be heard. A server that has gone silent calls too: nobody watches then. */
+function heard(): void {
+  const all = ears.all()
+  foot.show(
+    all.flatMap(([run, alarms]) => (watch === null || watch.run === run ? alarms : [])),
+    watch !== null,
+  )
+  const blind = !link.up && link.heardAt !== null && all.length > 0
+  sound.calls([
+    ...all.flatMap(([run, alarms]) => callsOf(run, alarms)),
+    ...(blind ? [{ key: 'link', priority: 'medium' as const }] : []),
+  ])
 }
 
-function idle(page: 'watch' | 'replay', skid: string): void {
+const pages = ['watch', 'replay', 'alarms', 'handover', ...Object.keys(sitePages)]
+/** Where the address leads: #/PAGE, #/PAGE/RUN, #/replay/RUN/MOMENT, or a page of the site. */
+function route(): { page: string; run: number | null; atMs: number | null; rest: string } {
+  const [, page, rest = '', at] = location.hash.split('/')
+  const whole = (text: string | undefined) => (text !== undefined && /^\d+$/.test(text) ? Number(text) : null)
+  return { page: pages.find((p) => p === page) ?? 'watch', run: whole(rest), atMs: whole(at), rest }
+}
+
+/** Where a person was before signing in. */
+let cameFrom = '#/watch'
+function back(): void {
+  const there = session.now()?.mayRead === true ? cameFrom : '#/sign-in'
+  if (location.hash === there) void go()
+  else location.hash = there
+}
+
+function idle(page: string, skid: string): void {
+  const modes: Readonly<Record<string, 'LIVE' | 'RUNS' | 'SITE'>> = { watch: 'LIVE', replay: 'RUNS' }
   strip.show({
     page,
     skid,
-    mode: page === 'watch' ? 'LIVE' : 'RUNS',
+    mode: modes[page] ?? (page in sitePages ? 'SITE' : 'NOTES'),
     facts: [],
     comb: null,
     nowMs: null,
@@ -123,6 +161,8 @@ function idle(page: 'watch' | 'replay', skid: string): void {
 function leave(): void {
   watch?.view.stop()
   replay?.stop()
+  desk?.stop()
+  desk = null
   watch = null
   replay = null
   list = null
@@ -133,9 +173,24 @@ function leave(): void {
 async function go(): Promise<void> {
   const mine = ++turn
   const here = () => mine === turn
-  const { page, run } = route()
+  const { page, run, atMs, rest } = route()
   leave()
   try {
+    const { mayRead } = session.now() ?? (await session.load())
+    if (!here()) return
+    const isSite = page in sitePages
+    if (page !== 'link' && page !== 'sign-in') cameFrom = location.hash === '' ? '#/watch' : location.hash
+    if (!mayRead && !publicPages.has(page)) {
+      location.hash = '#/sign-in'
+      return
+    }
+    if (isSite) {
+      idle(page, 'Clearbore')
+      const { title, node } = sitePages[page]!(rest, session, back)
+      fill(place, node)
+      document.title = `${title} · Clearbore`
+      return
+    }
     service ??= await getJson<Service>('/api/service')
     if (!here()) return
     if (page === 'replay' && run === null) {
@@ -150,13 +205,26 @@ async function go(): Promise<void> {
       note(`Opening run ${run}.`)
       const data = await loadRun(run)
       if (!here()) return
-      replay = replayView(data, shell)
+      replay = replayView(data, shell, atMs)
       fill(place, replay.node)
       document.title = `Replay ${data.detail.skid} · Clearbore`
       return
     }
     if (runs.length === 0) runs = await getJson<RunRow[]>('/api/runs')
     if (!here()) return
+    if (page === 'alarms' || page === 'handover') {
+      const of = run ?? runs.find((r) => r.state === 'live')?.run ?? runs[0]?.run
+      idle(page, 'Clearbore')
+      if (of === undefined) return note('No run yet.')
+      const detail = await getJson<RunDetail>(`/api/runs/${of}`)
+      if (!here()) return
+      idle(page, detail.skid)
+      const view = page === 'alarms' ? performanceView(detail) : handOverView(detail, shell)
+      desk = view
+      fill(place, view.node)
+      document.title = `${view.title} · Clearbore`
+      return
+    }
     const live = run === null ? runs.find((r) => r.state === 'live') : runs.find((r) => r.run === run)
     if (live === undefined) {
       idle('watch', 'Clearbore')
@@ -216,13 +284,16 @@ function redraw(): void {
 /** The list of runs is new: the pages that show some of it. */
 function tell(): void {
   list?.show(runs)
-  if (watch === null) foot.live(runs)
+  ears.follow(
+    runs.filter((r) => r.state === 'live').map((r) => r.run),
+    watch?.run ?? null,
+  )
   strip.skids(runs, watch?.run ?? null)
 }
 
 // Away from a live page, and with more than one skid, what stands elsewhere is still told.
 setInterval(() => {
-  if (!link.up || (watch !== null && runs.filter((r) => r.state === 'live').length < 2)) return
+  if (!link.up || session.now()?.mayRead !== true || (watch !== null && runs.filter((r) => r.state === 'live').length < 2)) return
   getJson<RunRow[]>('/api/runs').then(
     (rows) => {
       runs = rows

@@ -46,7 +46,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     await until(page, `${data}.ready === "true"`)
     expect(await page.textContent('.strip .mode')).toBe('LIVE')
     expect(await page.textContent('.strip .facts')).toContain(`clock runs ${speed} times faster than time`)
-    expect(await page.inputValue('#person')).toBe('demo operator')
+    expect(await page.textContent('.strip .who')).toBe('demo operatorengineerDEMO, no sign-in')
     await until(page, `document.querySelector('.alarms li[data-kind="fouling"][data-state="UNACK"]') !== null`)
     await until(page, `document.querySelector('.answers').dataset.segment === 'R1'`)
     await until(page, `document.querySelector('#trend').dataset.onset !== ''`)
@@ -64,7 +64,6 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
       method: 'POST',
       headers: { 'content-type': 'application/json' },
       body: JSON.stringify({
-        person: 'shift lead',
         kind: 'limit',
         segment: 'R1',
         limit: 'dpHighBar',

@@ -84,7 +84,7 @@ describe.runIf(chromium !== null)('a log that a data logger is still appending t
     const other = (await runs()).find((r) => r.run !== heron)!
     await page.click(`nav[aria-label="Live skids"] a:has-text("${other.skid}")`)
     await until(page, `${data}.ready === 'true' && document.querySelector('.strip .skid').textContent === '${other.skid}'`)
-    expect(await page.inputValue('#person')).toBe('')
+    expect(await page.textContent('#person')).toBe('Sign in to act')
     expect(faults).toEqual([])
     await page.context().close()
   })

@@ -1,7 +1,7 @@
 import type { Browser, Page } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { chromiumPath, launch, open, violations } from '../helpers/browser.ts'
-import { type PageServer, servePages } from '../helpers/page-server.ts'
+import { demoSession, type PageServer, servePages } from '../helpers/page-server.ts'
 import { alarmOf, type Scene, sceneOf, t0 } from '../helpers/scene.ts'
 
 const chromium = chromiumPath()
@@ -101,7 +101,7 @@ describe.runIf(chromium !== null)('the pages in their rare states', () => {
     expect(await page.getAttribute('.alarms > li:first-child', 'data-alarm')).toBe('1')
     expect(await page.locator('.alarms > li:first-child .tag').textContent()).toBe('FIRST')
     await page.locator('.alarms > li:nth-child(2) .ack').click()
-    await expect.poll(() => server.posted.at(-1)).toEqual({ kind: 'acknowledge', alarm: 12, person: 'demo operator' })
+    await expect.poll(() => server.posted.at(-1)).toEqual({ kind: 'acknowledge', alarm: 12 })
     expect(server.posted.length).toBe(1)
     expect(faults).toEqual([])
     await page.context().close()
@@ -151,20 +151,18 @@ describe.runIf(chromium !== null)('the pages in their rare states', () => {
     await page.context().close()
   })
 
-  it('remembers the theme and the person, and asks for a name before it lets anybody act', async () => {
+  it('remembers the theme, says who is at the screen, and sends nothing for whom nobody knows', async () => {
     const { page, faults } = await at(sceneOf({ alarms: [alarmOf(1)] }))
     expect(await page.getAttribute('html', 'data-theme')).toBe('day')
+    expect(await page.textContent('.strip .who')).toBe('demo operatorengineerDEMO, no sign-in')
     await page.click('#theme')
-    await page.fill('#person', 'night shift lead')
-    await page.keyboard.press('Tab')
+    server.signed({ ...demoSession, person: null, how: 'none', hasPeople: true })
     await page.reload()
     await until(page, `${data}.ready === 'true'`)
-    expect([await page.getAttribute('html', 'data-theme'), await page.inputValue('#person')]).toEqual(['night', 'night shift lead'])
-    await page.fill('#person', '')
-    await page.keyboard.press('Tab')
+    expect([await page.getAttribute('html', 'data-theme'), await page.textContent('#person')]).toEqual(['night', 'Sign in to act'])
     const before = server.posted.length
     await page.click('.ack')
-    await until(page, `document.querySelector('.refused').textContent.includes('say who you are')`)
+    await until(page, `document.querySelector('.refused').textContent.includes('sign in first')`)
     expect(server.posted.length).toBe(before)
     expect(await page.evaluate(`document.activeElement.id`)).toBe('person')
     expect(faults).toEqual([])

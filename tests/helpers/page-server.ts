@@ -3,7 +3,7 @@ import { createServer } from 'node:http'
 import { extname, join, normalize } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import { type WebSocket, WebSocketServer } from 'ws'
-import type { ClientMessage, ServerMessage } from '../../server/wire/index.ts'
+import type { ClientMessage, ServerMessage, Session } from '../../server/wire/index.ts'
 import type { Scene } from './scene.ts'
 
 const pages = fileURLToPath(new URL('../../dist/web', import.meta.url))
@@ -17,16 +17,29 @@ const types: Record<string, string> = {
 const policy =
   "default-src 'self'; style-src 'self'; script-src 'self'; img-src 'self'; connect-src 'self'; object-src 'none'; base-uri 'none'; frame-ancestors 'none'"
 
+export const demoSession: Session = {
+  person: { name: 'demo operator', role: 'engineer' },
+  how: 'demo',
+  resting: false,
+  endsMs: null,
+  mayRead: true,
+  hasPeople: false,
+  idleMs: 1_800_000,
+}
+
 /**
  * The built pages over a scripted scene: states that a real skid shows once a year (a flood, twelve segments, a bad sensor) can be set at will.
  * The wire is the real one; only what is said on it is invented.
  */
 export async function servePages(first: Scene, port = 0) {
   let scene = first
+  let session = demoSession
   let beating = true
   let live = true
   let seq = 0
   const posted: unknown[] = []
+  let refusal: ((body: { kind: string }) => string | null) | null = null
+  const extra = new Map<string, unknown>()
   const sockets = new Set<WebSocket>()
   const http = createServer((request, reply) => {
     const url = new URL(request.url ?? '/', 'http://localhost')
@@ -44,11 +57,14 @@ export async function servePages(first: Scene, port = 0) {
           text += chunk.toString()
         })
         request.on('end', () => {
-          posted.push(JSON.parse(text))
-          json({ seq: 1, act: { ...JSON.parse(text), tMs: scene.endMs }, transitions: [] })
+          const body = JSON.parse(text) as { kind: string }
+          posted.push(body)
+          const reason = refusal?.(body) ?? null
+          json({ seq: 1, act: { ...body, tMs: scene.endMs }, transitions: reason === null ? [] : [{ outcome: 'refused', reason }] })
         })
         return
       }
+      if (path === '/session' || path === '/session/seen') return json(session)
       if (path === '/service') return json(scene.service)
       if (path === '/runs') return json(live ? [scene.row] : [])
       if (path === '/runs/1') return json(scene.detail)
@@ -56,6 +72,8 @@ export async function servePages(first: Scene, port = 0) {
       if (path === '/runs/1/alarms') return json(scene.state.alarms)
       if (path === '/runs/1/state') return json(scene.stateAt(url.searchParams.has('atMs') ? n('atMs') : scene.endMs))
       if (path === '/runs/1/trends') return json(scene.trends(n('fromMs'), n('toMs'), n('buckets')))
+      const more = [...extra].find(([key]) => path === key)
+      if (more !== undefined) return json(more[1])
       return json({ code: 'HTTP_404', message: `nothing at ${url.pathname}`, hint: null, place: null }, 404)
     }
     const file = join(pages, normalize(url.pathname === '/' ? '/index.html' : url.pathname))
@@ -93,6 +111,18 @@ export async function servePages(first: Scene, port = 0) {
       scene = next
       seq++
       for (const s of sockets) send(s, { type: 'delta', run: 1, seq, state: scene.state, alarms: scene.state.alarms })
+    },
+    /** Who is signed in from now on; pages see it when they ask next. */
+    signed(next: Session): void {
+      session = next
+    },
+    /** What the server refuses an act for, by its body; null: nothing. */
+    refuse(by: ((body: { kind: string }) => string | null) | null): void {
+      refusal = by
+    },
+    /** Answers `GET /api` + path with a body. */
+    answer: (path: string, body: unknown): void => {
+      extra.set(path, body)
     },
     runs(on: boolean): void {
       live = on

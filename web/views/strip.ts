@@ -1,12 +1,13 @@
-import type { RunRow } from '../../server/wire/index.ts'
+import type { RunRow, Session } from '../../server/wire/index.ts'
 import type { ZoneClock } from '../model/clock.ts'
 import { duration } from '../model/format.ts'
 import { el, fill, say, svg } from './dom.ts'
 
 export interface StripState {
-  readonly page: 'watch' | 'replay'
+  /** First word of the address. */
+  readonly page: string
   readonly skid: string
-  readonly mode: 'LIVE' | 'REPLAY' | 'RUNS'
+  readonly mode: 'LIVE' | 'REPLAY' | 'RUNS' | 'NOTES' | 'SITE'
   /** Short facts in the middle: run state, speed. */
   readonly facts: readonly { readonly text: string; readonly bold?: string }[]
   readonly comb: { readonly received: readonly boolean[]; readonly text: readonly [string, string] | null } | null
@@ -16,8 +17,6 @@ export interface StripState {
 }
 
 export interface StripHooks {
-  person(): string
-  setPerson(name: string): void
   theme(): 'day' | 'night'
   toggleTheme(): void
 }
@@ -29,8 +28,14 @@ const teeth = 30
 export function stripView(hooks: StripHooks) {
   const skid = el('p', { class: 'skid' })
   const mode = el('p', { class: 'mode' })
-  const watch = el('a', { href: '#/watch', text: 'Watch' })
-  const replay = el('a', { href: '#/replay', text: 'Replay' })
+  const links = [
+    ['watch', el('a', { href: '#/watch', text: 'Watch' })],
+    ['replay', el('a', { href: '#/replay', text: 'Replay' })],
+    ['alarms', el('a', { href: '#/alarms', text: 'Alarms' })],
+    ['handover', el('a', { href: '#/handover', text: 'Hand-over' })],
+    ['people', el('a', { href: '#/people', text: 'People' })],
+  ] as const
+  const items = links.map(([page, link]) => el('li', { 'data-page': page, hidden: page === 'people' }, link))
   const skids = el('nav', { 'aria-label': 'Live skids', hidden: true })
   const facts = el('div', { class: 'facts' })
   const teethPath = svg('path')
@@ -45,19 +50,20 @@ export function stripView(hooks: StripHooks) {
   const time = el('time')
   const zone = el('small')
   const clockText = el('p', { class: 'clock' }, time, ' ', zone)
+  const who = whoView()
   const theme = el('button', { class: 'small', type: 'button', id: 'theme', on: { click: () => hooks.toggleTheme() } })
   const node = el(
     'header',
     { class: 'strip' },
     skid,
     mode,
-    el('nav', { 'aria-label': 'Pages' }, el('ul', {}, el('li', {}, watch), el('li', {}, replay))),
+    el('nav', { 'aria-label': 'Pages' }, el('ul', {}, ...items)),
     skids,
     el('span', { class: 'grow' }),
     facts,
     alive,
     clockText,
-    personView(hooks),
+    who.node,
     theme,
   )
   let factsKey = ''
@@ -65,6 +71,11 @@ export function stripView(hooks: StripHooks) {
 
   return {
     node,
+    /** Who is at the screen, and what that opens. */
+    person(session: Session): void {
+      items.find((i) => i.dataset['page'] === 'people')!.hidden = session.person?.role !== 'administrator'
+      who.show(session)
+    },
     /** Where more than one skid is live: a way to each, with what is not acknowledged there. */
     skids(runs: readonly RunRow[], here: number | null): void {
       const live = runs.filter((r) => r.state === 'live').sort((a, b) => a.run - b.run)
@@ -88,10 +99,7 @@ export function stripView(hooks: StripHooks) {
       mode.classList.toggle('replay', s.mode === 'REPLAY')
       node.classList.toggle('past', s.mode === 'REPLAY')
       node.dataset['mode'] = s.mode
-      for (const [link, page] of [
-        [watch, 'watch'],
-        [replay, 'replay'],
-      ] as const)
+      for (const [page, link] of links)
         if (s.page === page) link.setAttribute('aria-current', 'page')
         else link.removeAttribute('aria-current')
       const key = JSON.stringify(s.facts)
@@ -121,12 +129,26 @@ export function stripView(hooks: StripHooks) {
   }
 }
 
-/** Who acts. Shown always; changed in place. */
-function personView(hooks: StripHooks): HTMLElement {
-  const name = el('input', { type: 'text', id: 'person', maxlength: 60, autocomplete: 'name', placeholder: 'your name', size: 14 })
-  name.value = hooks.person()
-  name.addEventListener('change', () => hooks.setPerson(name.value.trim()))
-  return el('label', { class: 'person-name' }, el('span', { class: 'soft', text: 'You' }), name)
+/** Who acts, with the role; leads to the account or to signing in. Always there. */
+function whoView() {
+  const node = el('p', { class: 'who' })
+  const link = (href: string, text: string) => el('a', { href, id: 'person', text })
+  return {
+    node,
+    show({ person, how, resting }: Session): void {
+      if (person === null) fill(node, link('#/sign-in', 'Sign in to act'))
+      else if (resting) fill(node, el('b', { text: person.name }), link('#/sign-in', 'Sign in again to act'))
+      else
+        fill(
+          node,
+          link('#/account', person.name),
+          el('span', { class: 'role', text: person.role }),
+          how === 'demo'
+            ? el('span', { class: 'tag', title: 'Whoever is at this machine acts as this person', text: 'DEMO, no sign-in' })
+            : null,
+        )
+    },
+  }
 }
 
 /** The board that covers nothing but cannot be missed: the values on this screen are old. */

@@ -43,7 +43,7 @@ export function uploadView(service: Service, shell: Shell) {
     event.preventDefault()
     if (send.getAttribute('aria-disabled') === 'true') return
     const missing = !shell.needPerson()
-      ? 'Say who you are first: your name is asked for in the top strip.'
+      ? 'Sign in first: the way is in the top strip.'
       : stored.value === '' && skid.files?.length !== 1
         ? 'Choose the skid file that says what the columns of the log are.'
         : log.files === null || log.files.length === 0
