@@ -9,6 +9,7 @@ import { Ajv } from 'ajv'
 import Fastify, { type FastifyInstance } from 'fastify'
 import { MonitorError } from './core/errors.ts'
 import { createAccess, guardRoutes } from './http/access.ts'
+import { comparisonRoutes } from './http/comparison.ts'
 import { problemReplies } from './http/error-reply.ts'
 import { exportRoutes } from './http/exports.ts'
 import { createGuard, guardRequests } from './http/guard.ts'
@@ -125,6 +126,7 @@ export async function buildApp(o: AppOptions) {
       })
       await scope.register(serviceRoutes, api)
       await scope.register(runRoutes, api)
+      await scope.register(comparisonRoutes, api)
       await scope.register(exportRoutes, api)
       await scope.register(flushRoutes, api)
       await scope.register(performanceRoutes, api)

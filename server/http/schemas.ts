@@ -3,6 +3,7 @@ import { alarmStates, inputKinds } from '../core/alarms/alarm-state.ts'
 import { phases } from '../core/reading.ts'
 import { actions, alarmKinds, causes } from '../core/report.ts'
 import { limitNames } from '../core/sequence.ts'
+import { comparedBy } from '../wire/comparison.ts'
 import type * as wire from '../wire/index.ts'
 
 // The schemas of what crosses the network: they check requests, make the OpenAPI text, and tests hold every reply to them.
@@ -160,6 +161,17 @@ export const trendsSchema = closed({
   ),
   tags: list(closed({ tag: text, unit: textOrNull, ...band })),
   production: list(maybe(flag)),
+})
+export const comparisonSchema = closed({
+  segment: text,
+  by: oneOf(comparedBy),
+  unit: oneOf(['h', 'L']),
+  runs: list(
+    closed({
+      run: num, title: text, skid: text, toolVersion: text, zeroMs: num, x: list(num), ratio: closed(band), dpBar: closed(band),
+      baseline: maybe(closed({ fromMs: num, toMs: num, dpBar: num, sigma: num, provisional: flag })),
+    }), // biome-ignore format: a list
+  ),
 })
 export const marksSchema = closed({
   run: num,

@@ -17,7 +17,7 @@ export interface RunParts {
   readonly stepsRun: RunId
 }
 
-const band = (e: EnvelopeOfTag): Band => {
+export const bandOf = (e: EnvelopeOfTag): Band => {
   const list = (of: Float64Array) => Array.from(of, (v, i) => (e.count[i] === 0 ? null : v))
   return { min: list(e.min), max: list(e.max), mean: list(e.mean) }
 }
@@ -40,11 +40,11 @@ export function trendsOf(p: RunParts, fromMs: number, toMs: number, buckets: num
     bucketMs: steps.bucketMs,
     buckets: steps.buckets,
     segments: p.skid.segments.map((s, i) => {
-      const [ratio, dpBar, flowMlMin, tempC] = steps.tags.slice(1 + 4 * i, 5 + 4 * i).map(band) as [Band, Band, Band, Band]
-      const [cusum, cusumLow] = steps.tags.slice(1 + 4 * n + 2 * i, 3 + 4 * n + 2 * i).map(band)
+      const [ratio, dpBar, flowMlMin, tempC] = steps.tags.slice(1 + 4 * i, 5 + 4 * i).map(bandOf) as [Band, Band, Band, Band]
+      const [cusum, cusumLow] = steps.tags.slice(1 + 4 * n + 2 * i, 3 + 4 * n + 2 * i).map(bandOf)
       return { segment: s.id, ratio, dpBar, flowMlMin, tempC, cusum: cusum ?? null, cusumLow: cusumLow ?? null }
     }),
-    tags: readings.tags.map((e, i) => ({ tag: tags[i]!, unit: valueUnit(p.skid.tags[index[i]!]!), ...band(e) })),
+    tags: readings.tags.map((e, i) => ({ tag: tags[i]!, unit: valueUnit(p.skid.tags[index[i]!]!), ...bandOf(e) })),
     production: Array.from(steps.tags[0]!.mean, (v, i) => (steps.tags[0]!.count[i] === 0 ? null : v >= 0.5)),
   }
 }

@@ -32,6 +32,7 @@
  */
 export type * from './act.ts'
 export type * from './alarm.ts'
+export type * from './comparison.ts'
 export type * from './alarm-story.ts'
 export type * from './live.ts'
 export type * from './people.ts'
