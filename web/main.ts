@@ -8,6 +8,7 @@ import { loadRun } from './run-store.ts'
 import { openSession } from './session.ts'
 import { publicPages, sitePages } from './site-pages.ts'
 import { el, fill, say } from './views/dom.ts'
+import { flushView } from './views/flush.ts'
 import { footView } from './views/foot.ts'
 import { handOverView } from './views/handover.ts'
 import { refreshPalette } from './views/palette.ts'
@@ -55,8 +56,12 @@ const strip = stripView({
     redraw()
   },
 })
+let who = ''
 const session = openSession((now) => {
   strip.person(now)
+  // A socket belongs to who opened it.
+  if (who !== now.person?.name) feed.want(false)
+  who = now.person?.name ?? ''
   feed.want(now.mayRead)
   if (!now.mayRead && !publicPages.has(route().page)) void go()
 })
@@ -95,7 +100,7 @@ const feed = openFeed(socketUrl.href, {
       tell()
       // A run begins, or the one watched has ended and the address does not insist on it: the page goes where the life is.
       const over = watch !== null && route().run === null && !runs.some((r) => r.run === watch?.run && r.state === 'live')
-      if (route().page === 'watch' && (watch === null || over)) void go()
+      if ((route().page === 'watch' || route().page === 'flush') && (watch === null || over)) void go()
     } else if (m.type === 'error') say(says, m.problem.message)
     watch?.view.take(m)
     ears.take(m)
@@ -145,7 +150,7 @@ function back(): void {
 }
 
 function idle(page: string, skid: string): void {
-  const modes: Readonly<Record<string, 'LIVE' | 'RUNS' | 'SITE'>> = { watch: 'LIVE', replay: 'RUNS' }
+  const modes: Readonly<Record<string, 'LIVE' | 'RUNS' | 'SITE'>> = { watch: 'LIVE', flush: 'LIVE', replay: 'RUNS' }
   strip.show({
     page,
     skid,
@@ -244,13 +249,13 @@ async function go(): Promise<void> {
     }
     const data = await loadRun(live.run)
     if (!here()) return
-    const view = watchView(data, feed, shell)
+    const view = page === 'flush' ? flushView(data, feed, shell) : watchView(data, feed, shell)
     watch = { run: live.run, view }
     tell()
     fill(place, view.node)
     view.link(link)
     view.open()
-    document.title = `Watch ${data.detail.skid} · Clearbore`
+    document.title = `${page === 'flush' ? 'Flush' : 'Watch'} ${data.detail.skid} · Clearbore`
   } catch (error) {
     if (!here()) return
     idle(page, 'Clearbore')

@@ -1,14 +1,12 @@
 import { said } from '../api.ts'
 import { el, say } from './dom.ts'
 
-/** A labelled field. */
-export const fieldOf = (label: string, input: HTMLElement, hint: string | null = null): HTMLElement =>
-  el(
-    'p',
-    { class: 'field' },
-    el('label', { for: input.id, text: label }),
-    el('span', {}, input, hint === null ? null : el('small', { class: 'soft hint', id: `${input.id}-hint`, text: hint })),
-  )
+/** A labelled field; `node` is what is shown where that is more than the input. */
+export function fieldOf(label: string, input: HTMLElement, hint: string | null = null, node: HTMLElement = input): HTMLElement {
+  const text = hint === null ? null : el('small', { class: 'soft hint', id: `${input.id}-hint`, text: hint })
+  if (text !== null) input.setAttribute('aria-describedby', text.id)
+  return el('p', { class: 'field' }, el('label', { for: input.id, text: label }), el('span', {}, node, text))
+}
 
 /** A password field; what is typed can be looked at. */
 export function passwordOf(id: string, autocomplete: 'current-password' | 'new-password') {

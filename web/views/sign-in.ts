@@ -31,7 +31,7 @@ export function signInView(session: SessionKeeper, done: () => void): HTMLElemen
       return ''
     },
     fieldOf('Name', name),
-    fieldOf('Password', password.node),
+    fieldOf('Password', password.input, null, password.node),
   )
   const hint =
     now?.hasPeople === false
@@ -50,7 +50,6 @@ export function linkView(token: string, session: SessionKeeper, done: () => void
     (facts) => {
       const name = nameInput('name')
       const password = passwordOf('password', 'new-password')
-      password.input.setAttribute('aria-describedby', 'password-hint')
       const form = formOf(
         {
           id: 'welcome',
@@ -65,12 +64,7 @@ export function linkView(token: string, session: SessionKeeper, done: () => void
           return ''
         },
         facts.name === null ? fieldOf('Your name', name, 'As it shall stand in the record. It cannot be changed later.') : null,
-        el(
-          'p',
-          { class: 'field' },
-          el('label', { for: 'password', text: 'Password' }),
-          el('span', {}, password.node, el('small', { class: 'soft hint', id: 'password-hint', text: passwordHint })),
-        ),
+        fieldOf('Password', password.input, passwordHint, password.node),
       )
       const about =
         facts.name === null
@@ -115,8 +109,8 @@ export function accountView(session: SessionKeeper, done: () => void): HTMLEleme
       fresh.input.value = ''
       return 'Changed. Wherever else you were signed in, that is over.'
     },
-    fieldOf('Password of now', old.node),
-    fieldOf('New password', fresh.node, passwordHint),
+    fieldOf('Password of now', old.input, null, old.node),
+    fieldOf('New password', fresh.input, passwordHint, fresh.node),
   )
   const out = formOf({ id: 'sign-out', title: 'Leave', send: 'Sign out' }, async () => {
     session.take(await deleteJson<Session>('/api/session'))
