@@ -12,14 +12,15 @@ import { createAccess, guardRoutes } from './http/access.ts'
 import { comparisonRoutes } from './http/comparison.ts'
 import { problemReplies } from './http/error-reply.ts'
 import { exportRoutes } from './http/exports.ts'
+import { flushRoutes } from './http/flush.ts'
 import { createGuard, guardRequests } from './http/guard.ts'
 import { peopleRoutes } from './http/people.ts'
 import { performanceRoutes } from './http/performance.ts'
-import { flushRoutes } from './http/flush.ts'
 import { runRoutes } from './http/runs.ts'
 import { serviceRoutes } from './http/service.ts'
 import type { Services } from './http/services.ts'
 import { sessionRoutes } from './http/session.ts'
+import { settingsRoutes } from './http/settings.ts'
 import { uploadRoutes } from './http/uploads.ts'
 import { createHub, type HubSource } from './live/hub.ts'
 import { missedSince } from './monitor/trends.ts'
@@ -126,10 +127,11 @@ export async function buildApp(o: AppOptions) {
       })
       await scope.register(serviceRoutes, api)
       await scope.register(runRoutes, api)
+      await scope.register(flushRoutes, api)
       await scope.register(comparisonRoutes, api)
       await scope.register(exportRoutes, api)
-      await scope.register(flushRoutes, api)
       await scope.register(performanceRoutes, api)
+      await scope.register(settingsRoutes, api)
       await scope.register(uploadRoutes, api)
       await scope.register(sessionRoutes, { people: o.people, access, cookie: cookieName, isSecure, openReading: o.openReading })
       await scope.register(peopleRoutes, { people: o.people })

@@ -12,6 +12,7 @@ import type { Source } from '../ingest/source.ts'
 import { createCatalogue, createPair, kindOf } from '../monitor/catalogue.ts'
 import { createMonitor } from '../monitor.ts'
 import { createPeople, type PeopleOptions } from '../people/people.ts'
+import { createVersions } from '../settings/versions.ts'
 import { loadSkid } from '../skid/check.ts'
 import type { RunId } from '../store/keys.ts'
 import type { Store } from '../store/open.ts'
@@ -132,17 +133,23 @@ export async function startServing(o: ServingOptions) {
     return same.findLast((r) => store.runs.get(r.id).skidText === w.text)?.id ?? null
   }
 
+  const versions = createVersions(store, loadSkid)
   const watchedOf = new Map<RunId, Watched>()
   function watch(w: Watched, run: RunId): void {
     const { stepsRun } = catalogue.parts(run)
     watchedOf.set(run, w)
-    monitor.add({ run, stepsRun, skid: w.skid, source: sourceOf(w, run) })
+    const source = sourceOf(w, run)
+    // A new run begins with the settings in force: the version of its file and what was changed since.
+    const opening = store.sequence.count(run).entries > 0 ? [] : versions.opening(w.skid.skid, source.clock().nowMs)
+    if (opening.length > 0) store.sequence.append([{ run, entries: opening.map((act) => ({ kind: 'act', act })) }])
+    monitor.add({ run, stepsRun, skid: w.skid, source })
   }
   monitor.onEnded(({ run }) => {
     const w = watchedOf.get(run)
     if (w?.source.kind === 'simulated') watch(w, begin(w))
   })
   for (const w of o.watched) {
+    versions.loaded(w.skid, { name: w.file, text: w.text }, wallMs())
     const run = left(w)
     try {
       watch(w, run ?? begin(w))

@@ -33,6 +33,8 @@ const config = { needs: 'read' } as const
 /** Acts that change what the pipeline watches for. */
 const needOf: { readonly [kind in ActSent['kind']]?: Need } = {
   limit: 'engineer',
+  'out-of-service': 'engineer',
+  'in-service': 'engineer',
 }
 
 /** Runs, live and stored: list, facts, state at a moment, report, trends, marks, alarms, journal, acts. */

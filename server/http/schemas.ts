@@ -191,7 +191,7 @@ const actBodies = [
   closed({ kind: kind('shelve'), alarm: id, minutes: Type.Number({ exclusiveMinimum: 0, maximum: 480 }), reason: words }),
   closed({ kind: kind('unshelve'), alarm: id, reason: words }),
   closed({ kind: kind('comment'), alarm: maybe(id), text: words }),
-  closed({ kind: Type.Union([kind('out-of-service'), kind('in-service')]), key: Type.String({ minLength: 1, maxLength: 200 }), reason: words }),
+  closed({ kind: oneOf(['out-of-service', 'in-service']), key: Type.String({ minLength: 1, maxLength: 200 }), reason: words }),
   closed({
     kind: kind('event'), event: Type.String({ minLength: 1, maxLength: 60 }), value: numOrNull, unit: maybe(Type.String({ maxLength: 20 })),
     note: words, of: Type.Optional(maybe(Type.String({ maxLength: 64 }))), atMs: Type.Optional(numOrNull),

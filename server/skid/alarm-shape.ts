@@ -1,6 +1,8 @@
+import { disturbances } from '../core/bank/model.ts'
+import { phases } from '../core/reading.ts'
 import { alarmKinds } from '../core/report.ts'
 import { meant } from './nearest.ts'
-import { choice, dictionary, flag, group, number, text } from './readers.ts'
+import { choice, dictionary, flag, group, list, number, type Reader, text } from './readers.ts'
 
 const seconds = number({ min: 0, max: 86_400, unit: 'seconds' })
 const date = text('a date yyyy-MM-dd', (value) => {
@@ -43,3 +45,26 @@ export const alarmsShape = dictionary(`an alarm (${alarmKinds.join(', ')}) or al
   const kind = key.split(':')[0] ?? ''
   return (alarmKinds as readonly string[]).includes(kind) ? null : { hint: meant(kind, alarmKinds) }
 })
+
+const logic = group(
+  {
+    alarms: list(text('an alarm or alarm:SEGMENT'), { min: 1, name: 'alarms' }),
+    phases: list(choice(phases), { min: 1, name: 'phases' }),
+  },
+  { required: ['alarms', 'phases'] },
+)
+
+/** `suppression`, a key beyond the contract's: by the name of its logic, these alarms while the log's phase is one of these (ALM-09). */
+export const suppressionShape = dictionary("a name of letters, digits and '-'", logic, (key) =>
+  /^[A-Za-z0-9-]{1,64}$/.test(key) ? null : { hint: `for example '${key.replace(/[^A-Za-z0-9]+/g, '-').slice(0, 64)}'` },
+)
+
+/** `disturbances`, a key beyond the contract's: sizes over the tool's defaults, in the units of core/bank/model.ts. */
+export const disturbancesShape = group(
+  Object.fromEntries(
+    Object.keys(disturbances).map((name) => [
+      name,
+      name.endsWith('TauH') ? number({ above: 0, max: 1e6, unit: 'hours' }) : number({ min: 0, max: 1e9 }),
+    ]),
+  ) as Record<keyof typeof disturbances, Reader<number>>,
+)

@@ -1,3 +1,4 @@
+import { alarmKinds } from '../core/report.ts'
 import type { Quantity } from '../core/units.ts'
 import { meant } from './nearest.ts'
 import { keyText, type Path, quote } from './problem.ts'
@@ -26,6 +27,7 @@ export function checkReferences(file: SkidFile, walk: Walk): void {
     'segment',
   )
   checkColumns(file, walk)
+  checkSuppression(file, walk)
 
   const toTag = (name: string | undefined, path: Path, fitting: readonly Quantity[]) => {
     if (name === undefined || file.tags === undefined) return
@@ -178,6 +180,40 @@ function checkPressures(segment: SegmentFile, at: Path, walk: Walk): void {
   const out = segment.pressureOut
   if (typeof out === 'object' && 'tag' in out && out.tag === segment.pressureIn)
     walk.say([...at, 'pressureOut'], `pressureIn and pressureOut are both ${quote(out.tag)}`, 'two taps')
+}
+
+/** Suppression: its alarms exist, none is named by two, and the log says phases. */
+function checkSuppression(file: SkidFile, walk: Walk): void {
+  const ids = (file.segments ?? []).flatMap((s) => s?.id ?? [])
+  const named: { readonly kind: string; readonly segment: string | null; readonly logic: string }[] = []
+  for (const [name, logic] of file.suppression ?? []) {
+    const at = ['suppression', name]
+    if (file.phaseColumn === undefined)
+      walk.say(
+        at,
+        `${quote(name)} suppresses by the phase`,
+        'phaseColumn',
+        'name the column of the log that holds the phase, or remove it',
+      )
+    for (const [i, key] of (logic?.alarms ?? []).entries()) {
+      if (key === undefined) continue
+      const [kind = '', segment = null] = key.split(':')
+      const here = [...at, 'alarms', i]
+      if (!(alarmKinds as readonly string[]).includes(kind))
+        walk.say(here, `${quote(key)} is no alarm`, `one of ${alarmKinds.join(', ')}, or alarm:SEGMENT`, meant(kind, alarmKinds))
+      else if (segment !== null && !ids.includes(segment))
+        walk.say(here, `${quote(key)} names a segment that is not there`, `one of ${ids.join(', ')}`, meant(segment, ids))
+      const before = named.find((n) => n.kind === kind && (n.segment === null || segment === null || n.segment === segment))
+      if (before !== undefined)
+        walk.say(
+          here,
+          `${quote(key)} is suppressed by ${quote(before.logic)} already`,
+          'one logic for an alarm',
+          'put all its phases into one',
+        )
+      named.push({ kind, segment, logic: name })
+    }
+  }
 }
 
 function checkAlarmSegments(file: SkidFile, walk: Walk): void {

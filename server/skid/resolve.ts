@@ -26,6 +26,14 @@ export function resolveSkid(file: SkidFile): Skid {
     streams: all(file.streams).map(streamSpec),
     segments: all(file.segments).map(segmentSpec),
     alarms: Object.fromEntries([...(file.alarms ?? [])].map(([key, fields]) => [key, given(sure(fields))])),
+    ...(file.suppression === undefined || file.suppression.size === 0
+      ? {}
+      : {
+          suppression: Object.fromEntries(
+            [...file.suppression].map(([name, logic]) => [name, { alarms: all(logic?.alarms), phases: all(logic?.phases) }]),
+          ),
+        }),
+    ...(file.disturbances === undefined ? {} : { disturbances: given(file.disturbances) }),
   }
 }
 

@@ -1,6 +1,6 @@
 import { segmentKinds } from '../core/skid.ts'
 import { quantities, type Unit, units } from '../core/units.ts'
-import { alarmsShape } from './alarm-shape.ts'
+import { alarmsShape, disturbancesShape, suppressionShape } from './alarm-shape.ts'
 import { fluidShape } from './fluid-shape.ts'
 import { logShape } from './log-shape.ts'
 import { meant } from './nearest.ts'
@@ -168,6 +168,8 @@ export const skidShape = group(
     streams: list(stream, { min: 0, name: 'streams' }),
     segments: list(segment, { min: 0, name: 'segments' }),
     alarms: alarmsShape,
+    suppression: suppressionShape,
+    disturbances: disturbancesShape,
   },
   { required: ['skid', 'tags', 'streams', 'segments'] },
 )

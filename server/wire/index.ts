@@ -25,6 +25,9 @@
  *   GET  /api/runs/:run/acts    POST (ActSent → ActReply)    ActRow[]
  *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
  *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|record.json    downloads
+ *   GET  /api/skids/:skid/settings                           SettingsPage
+ *   GET  /api/skids/:skid/settings/compare?from&to           SettingsComparison
+ *   POST /api/skids/:skid/settings (SettingsSent → ActReply) a change of settings on the live run
  *   POST /api/uploads (UploadBody → Upload)                  begins an upload: the skid file and the events as text
  *   PUT  /api/uploads/:upload/logs/:name (the file's bytes as application/octet-stream → Upload)   one for each log file
  *   POST /api/uploads/:upload/import (→ RunRow, state importing)   what was uploaded becomes a run; it appears in GET /api/runs
