@@ -6,6 +6,7 @@ import { type LogSource, type LogTally, readLogs } from './ingest/csv/read-log.t
 import { createEngine } from './monitor/engine.ts'
 import type { MonitorStore } from './monitor/needs.ts'
 import type { RunId } from './store/keys.ts'
+import { segmentRows } from './store/segment.ts'
 
 export interface ImportOptions {
   readonly store: MonitorStore
@@ -20,7 +21,7 @@ export interface ImportOptions {
   readonly signal?: AbortSignal
   /** Lets other work of the process in; called between commits. */
   readonly breathe?: () => Promise<void>
-  /** Rows in one commit; whole segments of the store are written once instead of twice, small ones keep nobody else waiting. */
+  /** Rows in one commit: of whole segments of the store none is written twice; few keep nobody else waiting. */
   readonly rowsPerCommit?: number
 }
 
@@ -31,6 +32,7 @@ export interface ImportOptions {
  */
 export async function importRun(o: ImportOptions): Promise<{ rows: number; tallies: readonly LogTally[] }> {
   const { store, run, skid } = o
+  const rowsPerCommit = o.rowsPerCommit ?? 4 * segmentRows
   const words: string[] = [...phases]
   let wordsKnown = 0
   const engine = createEngine({ skid, store, run, stepsRun: o.stepsRun })
@@ -38,37 +40,43 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
   let nextAct = 0
   let rows = 0
   let waiting: Entry[] = []
-  let waitingRows = 0
-  const rowsPerCommit = o.rowsPerCommit ?? 8192
+  let room = rowsPerCommit
   const spare: RowBlock[] = []
 
   /** The reader fills its block anew, so what waits is a copy; its memory is used again after the commit. */
   function wait(block: RowBlock, from: number, to: number): void {
-    const { width } = block
-    const rows = to - from
-    const kept = spare.pop() ?? rowBlock(Math.max(rows, 1024), width)
-    const into = kept.tMs.length < rows ? rowBlock(rows, width) : kept
-    into.rows = rows
-    into.tMs.set(block.tMs.subarray(from, to))
-    into.values.set(block.values.subarray(from * width, to * width))
-    into.codes.set(block.codes.subarray(from * width, to * width))
-    waiting.push({ kind: 'rows', block: into })
-    waitingRows += rows
+    const last = waiting.at(-1)
+    const into = last?.kind === 'rows' ? last.block : (spare.pop() ?? rowBlock(rowsPerCommit, block.width))
+    const { width, rows } = into
+    if (last?.kind !== 'rows') waiting.push({ kind: 'rows', block: into })
+    into.tMs.set(block.tMs.subarray(from, to), rows)
+    into.values.set(block.values.subarray(from * width, to * width), rows * width)
+    into.codes.set(block.codes.subarray(from * width, to * width), rows * width)
+    into.rows = rows + to - from
+    room -= to - from
   }
 
+  /** Writes the rows that wait, and in the same transaction what those before them brought about; then takes these through the pipeline. */
   async function commit(): Promise<void> {
     if (o.signal?.aborted) throw new MonitorError('USAGE', 'stopped before the end')
-    if (waiting.length > 0) {
-      const fresh = words.slice(wordsKnown)
-      store.sequence.append([{ run, entries: waiting, ...(fresh.length > 0 ? { words: { from: wordsKnown, words: fresh } } : {}) }])
-      wordsKnown = words.length
-      engine.push(waiting)
-      store.together(() => engine.journal())
-      engine.news()
-    }
-    for (const entry of waiting) if (entry.kind === 'rows') spare.push(entry.block)
+    const fresh = words.slice(wordsKnown)
+    store.together(() => {
+      if (waiting.length > 0)
+        store.sequence.append([
+          { run, entries: waiting, ...(fresh.length > 0 ? { words: { from: wordsKnown, words: fresh } } : {}) },
+        ])
+      engine.journal()
+    })
+    engine.news()
+    wordsKnown = words.length
+    engine.push(waiting)
+    for (const entry of waiting)
+      if (entry.kind === 'rows') {
+        entry.block.rows = 0
+        spare.push(entry.block)
+      }
     waiting = []
-    waitingRows = 0
+    room = rowsPerCommit
     await o.breathe?.()
   }
 
@@ -79,19 +87,25 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
     ...(o.onProgress ? { onProgress: o.onProgress } : {}),
   })
   for await (const block of blocks) {
-    let from = 0
-    for (let i = 0; i < block.rows && nextAct < acts.length; i++)
-      while (nextAct < acts.length && acts[nextAct]!.tMs <= block.tMs[i]!) {
-        if (i > from) wait(block, from, i)
-        from = i
-        waiting.push({ kind: 'act', act: acts[nextAct++]! })
-      }
-    wait(block, from, block.rows)
+    for (let from = 0; from < block.rows; ) {
+      while (nextAct < acts.length && acts[nextAct]!.tMs <= block.tMs[from]!) waiting.push({ kind: 'act', act: acts[nextAct++]! })
+      let to = Math.min(block.rows, from + room)
+      if (nextAct < acts.length)
+        for (let i = from + 1; i < to; i++)
+          if (acts[nextAct]!.tMs <= block.tMs[i]!) {
+            to = i
+            break
+          }
+      wait(block, from, to)
+      from = to
+      if (room === 0) await commit()
+    }
     rows += block.rows
-    if (waitingRows >= rowsPerCommit) await commit()
   }
   while (nextAct < acts.length) waiting.push({ kind: 'act', act: acts[nextAct++]! })
   await commit()
+  store.together(() => engine.journal())
+  engine.news()
   engine.finish()
   store.together(() => engine.journal())
   engine.news()

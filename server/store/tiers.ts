@@ -44,20 +44,21 @@ export const cells = (n: number): Cells => ({
 export const isDrawn = (code: number, value: number): boolean =>
   (code === cell.value || code === cell.uncertain) && Number.isFinite(value)
 
-function distinct(numbers: Iterable<number>, most: number): Float64Array | null {
-  const seen = new Set<number>()
+/** The numbers floor(times/width), each once, rising; null when there are more than `most`. Times in order cost no search. */
+function distinct(times: Float64Array, widthMs: number, most: number): Float64Array | null {
+  const found: number[] = []
   let last = Number.NaN
-  for (const n of numbers) {
+  let inOrder = true
+  for (let i = 0; i < times.length; i++) {
+    const n = Math.floor(times[i]! / widthMs)
     if (n === last) continue
+    if (n < last) inOrder = false
     last = n
-    seen.add(n)
-    if (seen.size > most) return null
+    if (found.length === most && inOrder) return null
+    found.push(n)
   }
-  return Float64Array.from(seen).sort()
-}
-
-function* cellNumbers(tMs: Float64Array, n: number, widthMs: number): Generator<number> {
-  for (let i = 0; i < n; i++) yield Math.floor(tMs[i]! / widthMs)
+  const once = inOrder ? Float64Array.from(found) : Float64Array.from(new Set(found)).sort()
+  return once.length > most ? null : once
 }
 
 /**
@@ -82,16 +83,16 @@ function countDrawn(codes: Uint8Array, values: Float64Array, rows: number): numb
   return count
 }
 
-/** Narrowest cells, at least `least` wide, of which at most `most` hold the times that `numbers` gives; the widest when none are so few. */
+/** Narrowest cells, at least `least` wide, of which at most `most` hold the times; the widest when none are so few. */
 function chooseCells(
-  numbers: (widthMs: number) => Iterable<number>,
+  times: Float64Array,
   most: number,
   least: number,
 ): { cellMs: number; at: Float64Array; slotOf: Map<number, number> } {
   const widest = cellWidthsMs.at(-1)!
   for (const cellMs of cellWidthsMs) {
     if (cellMs < least) continue
-    const at = distinct(numbers(cellMs), cellMs === widest ? Infinity : Math.max(1, most))
+    const at = distinct(times, cellMs, cellMs === widest ? Infinity : Math.max(1, most))
     if (at !== null) return { cellMs, at, slotOf: new Map(Array.from(at, (n, i) => [n, i] as const)) }
   }
   throw new MonitorError('STORE_CORRUPT', `summary cells of ${least} ms are wider than this build knows`)
@@ -104,7 +105,7 @@ export function summarise(columns: Columns, places: readonly number[]): Page {
   const readings = columns.codes.map((codes, c) => (plain[c] ? rows : countDrawn(codes, columns.values[c]!, rows)))
   const used = Math.max(1, readings.filter((n) => n > 0).length)
   const most = readings.reduce((a, b) => a + b, 0) / (used * readingsPerCell)
-  const { cellMs, at, slotOf } = chooseCells((widthMs) => cellNumbers(tMs, rows, widthMs), most, 0)
+  const { cellMs, at, slotOf } = chooseCells(tMs.subarray(0, rows), most, 0)
   const slots = new Uint32Array(rows)
   let last = Number.NaN
   let slot = 0
@@ -172,10 +173,10 @@ export function merge(pages: readonly Page[], level: number): Page {
   }
   const most = readings / (Math.max(1, used) * readingsPerCell * growth ** level)
   const least = Math.max(...pages.map((page) => page.cellMs))
-  const numbersAt = function* (widthMs: number) {
-    for (const page of pages) for (const n of page.at) yield Math.floor((n * page.cellMs) / widthMs)
-  }
-  const { cellMs, at, slotOf } = chooseCells(numbersAt, most, least)
+  const times = new Float64Array(pages.reduce((n, page) => n + page.at.length, 0))
+  let filled = 0
+  for (const page of pages) for (const n of page.at) times[filled++] = n * page.cellMs
+  const { cellMs, at, slotOf } = chooseCells(times, most, least)
   const tags: Cells[] = []
   for (let c = 0; c < width; c++) {
     const whole = cells(at.length)

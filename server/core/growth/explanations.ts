@@ -48,7 +48,8 @@ export function explanations(task: Task): Explained[] {
     { ms: onset.highMs, weight: 0.185 },
   ]
   const raw: { log: number; left: number; sd: number; growth: number }[] = []
-  const node: Followed = { log: 0, left: 0, sd: 0, growth: 0 }
+  const seen = seenOf(task)
+  const node = new Float64Array(4)
   let top = -Infinity
   const sloughed = task.falls.some((fall) => fall > 0)
   for (const { ms, weight: wOnset } of onsets) {
@@ -66,13 +67,14 @@ export function explanations(task: Task): Explained[] {
             for (let i = 0; i < settings.gridNodes; i++) {
               const lifeMs = Math.exp(lnLifeMs - settings.gridReach * sd + i * spacing)
               hypothesis.keepsPace = keepsPace
-              follow(task, hypothesis, lifeMs, node)
+              follow(seen, hypothesis, lifeMs, node)
+              const left = node[atLeft]!
               // the question may come at any time of a life alike: a life of twice the length has half the chance to be at this age
-              const age = Math.log(grownMs / (grownMs + node.left))
-              const log = prior + Math.log(spacing) + age + settings.forecastPower * node.log
+              const age = Math.log(grownMs / (grownMs + left))
+              const log = prior + Math.log(spacing) + age + settings.forecastPower * node[atLog]!
               if (!(log > top - 30)) continue
               top = Math.max(top, log)
-              raw.push({ log, left: node.left, sd: node.sd, growth: node.growth })
+              raw.push({ log, left, sd: node[atSd]!, growth: node[atGrowth]! })
             }
           }
         }
@@ -105,21 +107,39 @@ function lifeNear(task: Task, { onsetMs, k, fraction, filmLimit, cv }: Hypothesi
 }
 
 /** What became of a hypothesis: ln likelihood, time left to the limit with its sd, ms, growth of the ratio now, 1/ms. */
-interface Followed {
-  log: number
-  left: number
-  sd: number
-  growth: number
+const [atLog, atLeft, atSd, atGrowth] = [0, 1, 2, 3] as const
+
+/** The growth so far, packed: a row of `seenWidth` numbers for each bin, then the belief from before. */
+interface Seen {
+  readonly count: number
+  readonly data: Float64Array
+  readonly nowMs: number
+  readonly lastSd: number
+}
+const seenWidth = 6
+
+function seenOf({ bins, steps, falls, base: b, nowMs, lastSd }: Task): Seen {
+  const rows = bins.flatMap((bin, i) => [bin.tMs, bin.lnRatio, falls[i]!, steps[i]!.rho, steps[i]!.size, steps[i]!.white])
+  const data = Float64Array.from([...rows, b.z, b.w, b.c, b.zz, b.zw, b.zc, b.ww, b.wc, b.cc])
+  return { count: bins.length, data, nowMs, lastSd }
 }
 
 /**
  * One hypothesis followed through the data; times in lives T. Thousands are followed a forecast: `out` takes the result, and the step of
  * `growth-filter.ts` is written out here in local numbers, in the same order.
  */
-function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followed): void {
+function follow({ count, data, nowMs, lastSd }: Seen, hypothesis: Hypothesis, lifeMs: number, out: Float64Array): void {
   const { onsetMs, k, fraction, filmLimit, cv, keepsPace } = hypothesis
-  const { bins, steps, falls, nowMs, lastSd } = task
-  let { z, w, c, zz, zw, zc, ww, wc, cc } = task.base
+  const from = count * seenWidth
+  let z = data[from]!
+  let w = data[from + 1]!
+  let c = data[from + 2]!
+  let zz = data[from + 3]!
+  let zw = data[from + 4]!
+  let zc = data[from + 5]!
+  let ww = data[from + 6]!
+  let wc = data[from + 7]!
+  let cc = data[from + 8]!
   const cv2 = cv * cv
   const linear = Math.abs(k) < 1e-6
   const unit = linear ? 1 : 1 / Math.expm1(k)
@@ -128,9 +148,9 @@ function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followe
   let before = 0
   let slopeNow = 0
   let ratioNow = 1
-  for (let i = 0; i < bins.length; i++) {
-    const bin = bins[i]!
-    const t = (bin.tMs - onsetMs) / lifeMs
+  for (let at = 0; at < from; at += seenWidth) {
+    const lnRatio = data[at + 1]!
+    const t = (data[at]! - onsetMs) / lifeMs
     if (t > before) {
       ww += cv2 * (t - before)
       before = t
@@ -142,16 +162,18 @@ function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followe
     const power = fraction / (gap * gap * gap * gap)
     const ratio = 1 - fraction + power
     const slope = t <= 0 ? 0 : (4 * power * filmLimit * (linear ? 1 : k * grow * unit)) / (gap * ratio)
-    const fall = falls[i]!
+    const fall = data[at + 2]!
     if (fall > 0 && keepsPace) {
-      const rest = filmOfRatio(Math.max(1, Math.exp(bin.lnRatio - c)), fraction)
+      const rest = filmOfRatio(Math.max(1, Math.exp(lnRatio - c)), fraction)
       lost += Math.max(0, film - rest)
       ww += lastSd ** 2 / Math.max(slope * slope, 1e-6)
       log -= Math.log(2 * fall)
       continue
     }
     if (fall > 0) ww += (2 * fall) ** 2 / Math.max(slope * slope, 1e-6)
-    const { rho, size, white } = steps[i]!
+    const rho = data[at + 3]!
+    const size = data[at + 4]!
+    const white = data[at + 5]!
     z *= rho
     zz = rho * rho * zz + 1 - rho * rho
     zw *= rho
@@ -160,7 +182,7 @@ function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followe
     const hw = size * zw + slope * ww + wc
     const hc = size * zc + slope * wc + cc
     let s = size * hz + slope * hw + hc + white
-    const e = bin.lnRatio - size * z - Math.log(ratio) - c
+    const e = lnRatio - size * z - Math.log(ratio) - c
     if (e * e > 25 * s) s = (e * e) / 25
     const kz = hz / s
     const kw = hw / s
@@ -183,8 +205,8 @@ function follow(task: Task, hypothesis: Hypothesis, lifeMs: number, out: Followe
   const uEnd = linear ? end : Math.min(4, Math.log1p(Math.max(-0.99, end * Math.expm1(k))) / k)
   const left = Math.max(0, uEnd - now - w)
   const sd = Math.sqrt(Math.max(0, ww) + cv2 * (left + Math.max(0, now - before)))
-  out.log = log
-  out.left = left * lifeMs
-  out.sd = sd * lifeMs
-  out.growth = (slopeNow * ratioNow) / lifeMs
+  out[atLog] = log
+  out[atLeft] = left * lifeMs
+  out[atSd] = sd * lifeMs
+  out[atGrowth] = (slopeNow * ratioNow) / lifeMs
 }

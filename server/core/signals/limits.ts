@@ -6,7 +6,7 @@ import { segmentDp } from '../derive/step.ts'
 import type { Priority } from '../report.ts'
 import type { Scan } from '../scan/grid.ts'
 import { type LimitName, limitNames } from '../sequence.ts'
-import { barFromPa, fromSi, type Unit, valueUnit } from '../units.ts'
+import { barFromPa, fromSi, type Unit, units, valueUnit } from '../units.ts'
 import type { SiteRules } from './site-rules.ts'
 
 /** Limits in force, by segment; people may change them during a run. */
@@ -112,6 +112,10 @@ interface Check {
   readonly tags: readonly number[]
   readonly deadband: number
   readonly unit: Unit | null
+  /** Whether the value is one tag's reading as it stands, (si − offset)/factor. */
+  readonly direct: boolean
+  readonly offset: number
+  readonly factor: number
 }
 
 /**
@@ -139,37 +143,50 @@ export function createLimits(layout: Layout, limits: LimitTable, hears: AlarmBoo
         const limit = limits[c.segment]![c.rule.limit]
         if (limit === null && !hears(c.key, false)) continue
         const idle = limit === null || (c.rule.productionOnly && !on.production)
+        if ((idle || isBelow(c, limit, scan)) && !hears(c.key, false)) continue
         const tag = worst(c, scan)
         const value = c.rule.kind === 'dp-limit' ? dpBar(c, scan) : tag < 0 ? null : fromSi(scan.si[tag]!, c.unit)
         if (value === null && !idle && !on.silent && !c.tags.some((t) => scan.flaw[t] !== 0)) continue
         const now = idle ? 'under' : level(value, limit, c.deadband, c.rule.side)
         const over = now === 'bad' ? null : now === 'over'
-        if (!hears(c.key, over)) continue
-        const seg = layout.segments[c.segment]!.spec
-        const delay = delayOnGrid(c.rule.delayS, scanS)
-        emit({
-          key: c.key,
-          tMs,
-          over,
-          under: now === 'under',
-          kind: c.rule.kind,
-          segment: seg.id,
-          tag: value === null || tag < 0 ? null : layout.skid.tags[tag]!.tag,
-          priority: c.rule.priority,
-          value,
-          limit,
-          unit: c.unit,
-          message: () => `${seg.title}: ${c.rule.word} of ${String(limit)} ${c.unit ?? ''}`.trim(),
-          cause:
-            c.rule.kind !== 'dp-limit' ? null : !on.fouled(c.segment) ? 'unknown' : seg.kind === 'filter' ? 'filter' : 'fouling',
-          onset: null,
-          detector: 'limit',
-          evidence: none,
-          onDelayS: delay,
-          offDelayS: delay,
-        })
+        if (hears(c.key, over)) emit(signalOf(c, limit, value, tag, over, now === 'under', tMs, on.fouled))
       }
     },
+  }
+
+  /** Apart from the loop: what its message closes over would be set up anew for every check. */
+  function signalOf(
+    c: Check,
+    limit: number | null,
+    value: number | null,
+    tag: number,
+    over: boolean | null,
+    under: boolean,
+    tMs: number,
+    fouled: (i: number) => boolean,
+  ): Signal {
+    const seg = layout.segments[c.segment]!.spec
+    const delay = delayOnGrid(c.rule.delayS, scanS)
+    return {
+      key: c.key,
+      tMs,
+      over,
+      under,
+      kind: c.rule.kind,
+      segment: seg.id,
+      tag: value === null || tag < 0 ? null : layout.skid.tags[tag]!.tag,
+      priority: c.rule.priority,
+      value,
+      limit,
+      unit: c.unit,
+      message: () => `${seg.title}: ${c.rule.word} of ${String(limit)} ${c.unit ?? ''}`.trim(),
+      cause: c.rule.kind !== 'dp-limit' ? null : !fouled(c.segment) ? 'unknown' : seg.kind === 'filter' ? 'filter' : 'fouling',
+      onset: null,
+      detector: 'limit',
+      evidence: none,
+      onDelayS: delay,
+      offDelayS: delay,
+    }
   }
 }
 const none = { for: [], against: [], notExcluded: [] }
@@ -188,6 +205,9 @@ function checkOf(layout: Layout, i: number, rule: LimitRule, site: SiteRules): C
     tags: list,
     deadband: site.deadband(rule.kind, seg.spec.id) ?? rule.deadband * span,
     unit,
+    direct: rule.kind !== 'dp-limit' || seg.dpTag !== null,
+    offset: unit === null ? 0 : units[unit].offset,
+    factor: unit === null ? 1 : units[unit].factor,
   })
   switch (rule.kind) {
     case 'dp-limit': {
@@ -208,6 +228,14 @@ function checkOf(layout: Layout, i: number, rule: LimitRule, site: SiteRules): C
       return make(t < 0 ? [] : [t], spanOf(t), t < 0 ? null : valueUnit(tags[t]!))
     }
   }
+}
+
+/** Whether a reading is there and not beyond its limit: what nearly every scan says, told without a number that has to be boxed. */
+function isBelow(c: Check, limit: number, scan: Scan): boolean {
+  const tag = c.direct ? worst(c, scan) : -1
+  if (tag < 0 || scan.used[tag] === 0) return false
+  const value = (scan.si[tag]! - c.offset) / c.factor
+  return c.rule.side === 'high' ? value <= limit : value >= limit
 }
 
 /** The tag a limit is read from: of several the one nearest the limit, of ΔP the cell where there is one; −1 where none is. */
