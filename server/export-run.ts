@@ -81,7 +81,7 @@ export function exportRun(r: ExportRequest): Exported {
     const report: Report = r.live === null ? createEngine(r.parts).report() : r.live.report()
     const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: end.rows })
     const head = { record: 1 as const, ...facts, skidFile: { name: skidFile, text: skidText }, words: store.runs.words(run) }
-    const parts = { head, entries: entries(), transitions: all, report, trail: links.map((l) => l.text), sign: store.trail.sign }
+    const parts = { head, entries: entries(), transitions: all, report, chain: links.map((l) => l.text), sign: store.trail.sign }
     return { facts, name, contentType, pieces: gathered(recordText(parts)) }
   }
   const rows = r.live?.alarms.all() ?? alarmsAt(r.parts, Infinity).all()

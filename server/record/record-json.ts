@@ -29,7 +29,7 @@ export interface RecordParts {
   readonly transitions: readonly AlarmRecord[]
   readonly report: Report
   /** Canonical texts of the run's chain, in order. */
-  readonly trail: readonly string[]
+  readonly chain: readonly string[]
   readonly sign: Sign
 }
 
@@ -65,8 +65,8 @@ function* provable(p: RecordParts): Generator<string> {
     yield `${first ? '' : ',\n'}${entryLine(seq, entry)}`
     first = false
   }
-  yield `\n],\n"transitions":${JSON.stringify(p.transitions)},\n"report":${JSON.stringify(p.report)},\n"trail":[\n`
-  yield `${p.trail.join(',\n')}\n],\n`
+  yield `\n],\n"transitions":${JSON.stringify(p.transitions)},\n"report":${JSON.stringify(p.report)},\n"chain":[\n`
+  yield `${p.chain.join(',\n')}\n],\n`
 }
 
 function entryOf(text: EntryText): Entry {

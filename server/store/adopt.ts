@@ -19,7 +19,7 @@ export function adopt(db: Database.Database, wallMs: () => number, toolVersion: 
   ledger.site({ kind: 'genesis', chain: 'site', store: ledger.store(), toolVersion })
   const all = <T>(sql: string, ...args: unknown[]): T[] => db.prepare<unknown[], T>(sql).all(...args)
   const runs = all<NewRun & { id: RunId }>(
-    `SELECT id, skid_id AS skidId, title, skid_file AS skidFile, skid_text AS skidText, source, started_ms AS startedMs, tool_version AS toolVersion
+    `SELECT id, skid_id AS skidId, title, skid_file AS skidFile, skid_text AS skidText, source, started_ms AS startedMs, tool_version AS toolVersion, state
      FROM run WHERE state <> 'deleted' ORDER BY id`,
   )
   type Audit = { id: number; tMs: number; person: string; act: string; reason: string; json: string }
@@ -77,10 +77,6 @@ export function adopt(db: Database.Database, wallMs: () => number, toolVersion: 
       const some = events.slice(i, i + atOnce)
       ledger.run(id, { kind: 'events', from: some[0]![0] as number, count: some.length, row: rowHash(some) })
     }
-    const state = all<{ state: string }>('SELECT state FROM run WHERE id = ?', id)[0]!.state
-    if (state === 'ended') {
-      ledger.run(id, { kind: 'run.state', state })
-      ledger.site({ kind: 'run.ended', ...ledger.headOf(id) })
-    }
+    if (facts.state === 'ended') ledger.site({ kind: 'run.ended', ...ledger.headOf(id) })
   }
 }

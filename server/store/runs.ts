@@ -45,7 +45,7 @@ export const runRow = (id: number, r: NewRun) =>
 export function beginChain(ledger: Ledger, run: RunId, r: NewRun): void {
   ledger.run(run, {
     kind: 'genesis', chain: 'run', store: ledger.store(), run, toolVersion: r.toolVersion, skid: r.skidId, title: r.title, source: r.source,
-    tMs: r.startedMs, configuration: sha256(r.skidText), row: rowHash(runRow(run, r)),
+    tMs: r.startedMs, state: r.state ?? 'live', configuration: sha256(r.skidText), row: rowHash(runRow(run, r)),
   }) // biome-ignore format: a list
   ledger.site({ kind: 'run.begun', ...ledger.headOf(run) })
 }

@@ -1,4 +1,5 @@
 import type Database from 'better-sqlite3'
+import { canonical, wellFormed } from '../trail/canonical.ts'
 import { partsHash, rowHash, sha256 } from '../trail/chain.ts'
 import type { Chained, RunRecord, SiteRecord } from '../trail/records.ts'
 import { endOf, keyOf, type RunId } from './keys.ts'
@@ -9,6 +10,17 @@ export type RowCheck = (record: Chained<RunRecord | SiteRecord>) => string | nul
 
 const gone = 'what it stands for is gone from the store'
 const differs = 'what it stands for was changed in the store'
+
+/** A row against its hash, and what the record itself says against the row's JSON. */
+function judge(row: readonly unknown[] | undefined, hash: string, json: unknown, says: unknown): string | null {
+  if (row === undefined) return gone
+  if (rowHash(row) !== hash) return differs
+  return canonical(wellFormed(JSON.parse(json as string))) === canonical(says)
+    ? null
+    : 'it says something else than what it stands for'
+}
+const told = (says: readonly unknown[], row: readonly unknown[] | undefined): string | null =>
+  canonical(says) === canonical(row) ? null : 'it says something else than what it stands for'
 
 /** Rows of the site's records. */
 export function siteRows(db: Database.Database) {
@@ -21,8 +33,12 @@ export function siteRows(db: Database.Database) {
   const check: RowCheck = (r) => {
     if (r.kind !== 'audit' && r.kind !== 'settings') return null
     seen[r.kind]++
-    const row = r.kind === 'audit' ? audit.get(r.id) : settings.get(r.version)
-    return row === undefined ? gone : rowHash(row) === r.row ? null : differs
+    if (r.kind === 'settings') {
+      const row = settings.get(r.version)
+      return judge(row, r.row, row?.[5], r.settings) ?? told([r.scope, r.tMs, r.person, r.reason], row?.slice(1, 5))
+    }
+    const row = audit.get(r.id)
+    return judge(row, r.row, row?.[5], r.body) ?? told([r.tMs, r.person, r.act, r.reason], row?.slice(1, 5))
   }
   return {
     check,
@@ -40,6 +56,7 @@ export function runRows(db: Database.Database) {
     `SELECT skid_id AS skidId, title, skid_file AS skidFile, skid_text AS skidText, source, started_ms AS startedMs, tool_version AS toolVersion
      FROM run WHERE id = ?`,
   )
+  const state = db.prepare<[number], string>('SELECT state FROM run WHERE id = ?').pluck()
   const act = db.prepare<[number], unknown[]>('SELECT id, sum, json FROM act WHERE id = ?').raw()
   const words = db
     .prepare<[number, number, number], string>('SELECT word FROM word WHERE run = ? AND idx >= ? AND idx < ? ORDER BY idx')
@@ -55,7 +72,9 @@ export function runRows(db: Database.Database) {
     )
     .raw()
   const segment = db.prepare<[number], Buffer>('SELECT body FROM segment WHERE id = ?').pluck()
-  const strips = db.prepare<[number], Buffer>('SELECT body FROM strip WHERE segment = ? ORDER BY strip').pluck()
+  const strips = db.prepare<[number], { strip: number; body: Buffer }>(
+    'SELECT strip, body FROM strip WHERE segment = ? ORDER BY strip',
+  )
   const head = db.prepare<[number], { next: number; rows: number; acts: number; packed: number; staged: number }>(
     'SELECT next_seq AS next, rows, acts, packed, staged_rows AS staged FROM head WHERE run = ?',
   )
@@ -74,12 +93,15 @@ export function runRows(db: Database.Database) {
     const seen = { acts: 0, segments: 0, strips: 0, transitions: 0, events: 0, words: 0 }
     let packed = 0
     let rows = 0
+    let said = ''
     const check: RowCheck = (r) => {
       if (r.kind === 'genesis' && r.chain === 'run') {
+        said = r.state
         const row = run.get(id)
         if (row === undefined) return gone
         return rowHash(runRow(id, row)) === r.row && sha256(row.skidText) === r.configuration ? null : differs
       }
+      if (r.kind === 'run.state') said = r.state
       if (r.kind === 'words') {
         seen.words += r.words.length
         const found = words.all(id, r.from, r.from + r.words.length)
@@ -88,12 +110,12 @@ export function runRows(db: Database.Database) {
       if (r.kind === 'act') {
         seen.acts++
         const row = act.get(keyOf(id as RunId, r.seq))
-        return row === undefined ? gone : rowHash(row) === r.row ? null : differs
+        return judge(row, r.row, row?.[2], r.act)
       }
       if (r.kind === 'transition') {
         seen.transitions++
         const row = transition.get(id, r.idx)
-        return row === undefined ? gone : rowHash(row) === r.row ? null : differs
+        return judge(row, r.row, row?.[9], r.transition)
       }
       if (r.kind === 'events') {
         seen.events += r.count
@@ -108,7 +130,9 @@ export function runRows(db: Database.Database) {
         seen.strips += r.parts - 1
         const body = segment.get(keyOf(id as RunId, r.from))
         if (body === undefined) return gone
-        return partsHash([body, ...strips.all(keyOf(id as RunId, r.from))]) === r.sha256 ? null : differs
+        const found = strips.all(keyOf(id as RunId, r.from))
+        const isWhole = found.every(({ strip }, i) => strip === i)
+        return isWhole && partsHash([body, ...found.map((s) => s.body)]) === r.sha256 ? null : differs
       }
       return null
     }
@@ -120,6 +144,8 @@ export function runRows(db: Database.Database) {
       /** What stands in the store and in no record, and counts that do not agree. */
       rest(): string[] {
         const out: string[] = []
+        const is = state.get(id)
+        if (is !== said) out.push(`its state is '${is}', by its records '${said}'`)
         for (const [name, count] of Object.entries(counts) as [keyof typeof seen, (typeof counts)['acts']][]) {
           const byKey = name === 'acts' || name === 'segments' || name === 'strips'
           const found = (byKey ? count.get(id * endOf, (id + 1) * endOf) : count.get(id, id + 1)) ?? 0

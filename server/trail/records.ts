@@ -24,6 +24,8 @@ export interface RunGenesis {
   readonly title: string
   readonly source: string
   readonly tMs: number
+  /** live, importing or ended, as it began. */
+  readonly state: string
   /** SHA-256 of the skid file's text. */
   readonly configuration: string
   readonly row: string

@@ -142,12 +142,12 @@ export async function verifyRecord(file: string, publicKeys: readonly string[] =
     const run = head.run
     const links: { n: number; text: string; hash: null }[] = []
     let transitions = ''
-    let inTrail = false
+    let isChain = false
     for await (const line of rest()) {
       if (line.startsWith('"transitions":')) transitions = line.slice('"transitions":'.length).replace(/,$/, '')
-      else if (line === '"trail":[') inTrail = true
-      else if (line === '],') inTrail = false
-      else if (inTrail && line !== '') links.push({ n: links.length, text: line.replace(/,$/, ''), hash: null })
+      else if (line === '"chain":[') isChain = true
+      else if (line === '],') isChain = false
+      else if (isChain && line !== '') links.push({ n: links.length, text: line.replace(/,$/, ''), hash: null })
     }
     const chain: Chained<RunRecord>[] = []
     const hashes: string[] = []

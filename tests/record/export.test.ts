@@ -119,10 +119,10 @@ describe('a record', () => {
         }))
         writeFileSync(
           file,
-          [...recordText({ head, entries, transitions: [], report: {} as never, trail: [], sign: () => null })].join(''),
+          [...recordText({ head, entries, transitions: [], report: {} as never, chain: [], sign: () => null })].join(''),
         )
         expect(
-          JSON.parse([...recordText({ head, entries, transitions: [], report: {} as never, trail: [], sign: () => null })].join(''))
+          JSON.parse([...recordText({ head, entries, transitions: [], report: {} as never, chain: [], sign: () => null })].join(''))
             .sequence.length,
         ).toBe(entries.length)
         const back = await readRecord(file)
