@@ -20,7 +20,8 @@ export function actOf(body: Exclude<ActBody, { readonly kind: 'limit' }>, skid: 
     case 'flush-step':
     case 'flush-check':
       if (!skid.segments.some((s) => s.id === body.segment)) throw noSegment(skid, body.segment)
-      if (body.kind === 'flush-step' && (body.state === 'skipped' || body.state === 'refused' || body.state === 'accepted'))
+      // A step is accepted on its checks alone; a reading by hand carries its own reason.
+      if (body.kind === 'flush-step' && (body.state === 'skipped' || body.state === 'refused'))
         needReason(body.reason, `a step ${body.state} by hand`)
       if (body.kind === 'flush-check' && body.verdict === 'skipped') needReason(body.reason, 'a point skipped')
       break
