@@ -2,6 +2,7 @@ import type { FastifyPluginAsyncTypebox } from '@fastify/type-provider-typebox'
 import { Type } from 'typebox'
 import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
 import { MonitorError } from '../core/errors.ts'
+import { enterLate, isLate, lateActs } from '../monitor/after-end.ts'
 import { transitionRow } from '../monitor/alarm-log.ts'
 import { createEngine } from '../monitor/engine.ts'
 import { skidFacts } from '../monitor/skid-facts.ts'
@@ -9,7 +10,7 @@ import { alarmsAt, storedState } from '../monitor/stored-state.ts'
 import { marksOf, trendsOf } from '../monitor/trends.ts'
 import type { Need } from '../people/roles.ts'
 import { cautions } from '../record/facts.ts'
-import type { ActSent } from '../wire/act.ts'
+import type { ActBody, ActSent } from '../wire/act.ts'
 import { signedIn } from './access.ts'
 import {
   actBodySchema,
@@ -143,7 +144,10 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
   app.get(
     '/runs/:run/acts',
     { config, schema: { summary: 'what people did, oldest first', params, response: replies(Type.Array(actRowSchema)) } },
-    async ({ params: { run } }) => s.store.sequence.acts(s.catalogue.parts(run).run),
+    async ({ params: { run } }) => {
+      const parts = s.catalogue.parts(run)
+      return [...s.store.sequence.acts(parts.run), ...lateActs(s.store, run)]
+    },
   )
 
   app.post(
@@ -160,8 +164,12 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
     },
     async ({ params: { run }, body, person }) => {
       s.access.demand(person, needOf[body.kind] ?? 'operate')
-      s.catalogue.summary(run)
-      return s.monitor.act(run, { ...body, person: signedIn(person).name })
+      const summary = s.catalogue.summary(run)
+      const act: ActBody = { ...body, person: signedIn(person).name }
+      const { skid } = s.catalogue.parts(run)
+      if (summary.state === 'ended' && isLate(act))
+        return { seq: null, act: enterLate(s.store, skid, run, act, s.wallMs()), transitions: [] }
+      return s.monitor.act(run, act)
     },
   )
 }

@@ -214,9 +214,9 @@ export const actBodySchema = Type.Unsafe<Static<(typeof actBodies)[number]>>({
   required: ['kind'],
   oneOf: actBodies,
 })
-export const actRowSchema = closed({ seq: num, act: Type.Object({ kind: text, tMs: num, person: text }) })
+export const actRowSchema = closed({ seq: numOrNull, act: Type.Object({ kind: text, tMs: num, person: text }) })
 export const actReplySchema = closed({
-  seq: num,
+  seq: numOrNull,
   act: Type.Object({ kind: text, tMs: num, person: text }),
   transitions: list(transitionRowSchema),
 })

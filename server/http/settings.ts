@@ -1,6 +1,7 @@
 import type { FastifyPluginAsyncTypebox } from '@fastify/type-provider-typebox'
 import { Type } from 'typebox'
 import { MonitorError } from '../core/errors.ts'
+import { isSteps } from '../monitor/step-log.ts'
 import { comparison, settingsPage } from '../settings/page.ts'
 import { createVersions } from '../settings/versions.ts'
 import { signedIn } from './access.ts'
@@ -29,7 +30,7 @@ export const settingsRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s
     },
     async ({ params: { skid } }) => {
       const live = liveOf(skid)
-      const run = s.store.runs.list().findLast((r) => r.skidId === skid)
+      const run = s.store.runs.list().findLast((r) => r.skidId === skid && !isSteps(r.source))
       if (run === undefined)
         throw new MonitorError('SETTINGS_UNKNOWN', `there is no skid '${skid}'`, { hint: 'it appears with its first run' })
       const { skidText, skidFile } = s.store.runs.get(run.id)

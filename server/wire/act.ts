@@ -15,13 +15,14 @@ export type ActSent = Unnamed<ActBody>
 
 /** Reply: on disk before it is sent. `transitions` holds what it did to the alarm, a refusal (outcome 'refused') with its reason. */
 export interface ActReply {
-  readonly seq: number
+  readonly seq: number | null
   readonly act: Act
   readonly transitions: readonly TransitionRow[]
 }
 
 /** `GET /api/runs/:run/acts`, oldest first. */
 export interface ActRow {
-  readonly seq: number
+  /** Its place in the sequence; null: entered after the run had ended and kept beside it. */
+  readonly seq: number | null
   readonly act: Act
 }

@@ -1,16 +1,9 @@
-import { Ajv } from 'ajv'
-import type { TSchema } from 'typebox'
 import { Type } from 'typebox'
 import { describe, expect, it } from 'vitest'
 import * as schemas from '../../server/http/schemas.ts'
 import type { AlarmRow, LiveState, Trends } from '../../server/wire/index.ts'
+import { holds } from './holds.ts'
 import { served } from './served.ts'
-
-const ajv = new Ajv({ strict: false, allErrors: true })
-function holds(schema: TSchema, value: unknown): void {
-  const check = ajv.compile(schema)
-  expect({ ok: check(value), errors: check.errors }).toEqual({ ok: true, errors: null })
-}
 
 describe('a live run over HTTP', () => {
   it('tells after 40 min of the demo of a deposit in R1 that began at 25 min, each reply as its schema has it, and of the past only what was known then', async () => {
@@ -155,7 +148,7 @@ describe('acts over HTTP', () => {
     const s = await served()
     await s.live(1)
     await s.monitor.end(s.run)
-    const body = { kind: 'comment', alarm: null, text: 'seen' }
+    const body = { kind: 'acknowledge', alarm: 1 }
     const ended = await s.post(`/api/runs/${s.run}/acts`, body)
     expect([ended.status, ended.json().code]).toEqual([409, 'RUN_ENDED'])
     const never = await s.post('/api/runs/99/acts', body)
