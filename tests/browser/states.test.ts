@@ -154,7 +154,7 @@ describe.runIf(chromium !== null)('the pages in their rare states', () => {
   it('remembers the theme, says who is at the screen, and sends nothing for whom nobody knows', async () => {
     const { page, faults } = await at(sceneOf({ alarms: [alarmOf(1)] }))
     expect(await page.getAttribute('html', 'data-theme')).toBe('day')
-    expect(await page.textContent('.strip .who')).toBe('demo operatorengineerDEMO, no sign-in')
+    expect(await page.textContent('.strip .who')).toBe('demo operatorengineerDEMO')
     await page.click('#theme')
     server.signed({ ...demoSession, person: null, how: 'none', hasPeople: true })
     await page.reload()

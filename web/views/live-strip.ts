@@ -5,7 +5,7 @@ import type { RunData } from '../model/run-data.ts'
 import type { Shell } from './watch.ts'
 
 /** What the strip says of a live run, and the board that comes up when nothing is heard: of the server, or of the source of data. */
-export function liveStrip(data: RunData, shell: Pick<Shell, 'strip' | 'cut'>, node: HTMLElement) {
+export function liveStrip(data: RunData, shell: Pick<Shell, 'strip' | 'cut'>, node: HTMLElement, page = 'watch') {
   const facts = data.detail.skidFacts
   let cutSince: { text: string; at: number } | null = null
 
@@ -50,9 +50,9 @@ export function liveStrip(data: RunData, shell: Pick<Shell, 'strip' | 'cut'>, no
       // By the wall: an age in a simulated clock's seconds would look sixty times older than it is.
       const ageMs = state.data.ageS === null ? null : (1000 * state.data.ageS + (nowMs - state.clock.nowMs)) / state.clock.speed
       const speed = Math.round(state.clock.speed)
-      const demo = { bold: 'DEMO', text: speed === 1 ? 'simulated skid' : `clock runs ${speed} times faster than time` }
+      const demo = { bold: 'DEMO', text: speed === 1 ? 'simulated skid' : `time × ${speed}` }
       shell.strip.show({
-        page: 'watch',
+        page,
         skid: facts.skid,
         mode: 'LIVE',
         facts: [

@@ -7,10 +7,10 @@ import { fieldOf, formOf } from './form.ts'
 const clock = zoneClock('UTC')
 const roles: readonly (readonly [RoleName, string])[] = [
   ['viewer', 'looks'],
-  ['operator', 'looks, acknowledges, comments, shelves, flushes, reads logs in'],
-  ['engineer', 'all an operator may; limits and settings'],
-  ['reviewer', 'looks, reviews the audit trail'],
-  ['administrator', 'looks, manages people'],
+  ['operator', 'works with a run'],
+  ['engineer', 'also limits and settings'],
+  ['reviewer', 'reviews the audit trail'],
+  ['administrator', 'manages people'],
 ]
 const roleSelect = (id: string) =>
   el('select', { id, name: id }, ...roles.map(([role, does]) => el('option', { value: role, text: `${role}: ${does}` })))

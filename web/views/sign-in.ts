@@ -7,7 +7,7 @@ import { fieldOf, formOf, passwordHint, passwordOf } from './form.ts'
 
 const clock = zoneClock('UTC')
 const pageOf = (page: string, title: string, ...parts: readonly Node[]): HTMLElement => {
-  const node = el('main', { id: 'main', class: 'list', tabindex: -1 }, el('h1', { text: title }), ...parts)
+  const node = el('main', { id: 'main', class: 'list', tabindex: -1 }, el('h1', { class: 'vh', text: title }), ...parts)
   node.dataset['page'] = page
   return node
 }
@@ -72,7 +72,7 @@ export function linkView(token: string, session: SessionKeeper, done: () => void
           : 'You are signed in as soon as it is set; the link is then used up.'
       fill(
         node,
-        el('h1', { text: 'Welcome' }),
+        el('h1', { class: 'vh', text: 'Welcome' }),
         form,
         el('p', { class: 'soft', text: `${about} The link is good until ${clock.full(facts.endsMs)} UTC.` }),
       )

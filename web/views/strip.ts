@@ -30,7 +30,9 @@ export function stripView(hooks: StripHooks) {
   const mode = el('p', { class: 'mode' })
   const links = [
     ['watch', el('a', { href: '#/watch', text: 'Watch' })],
+    ['flush', el('a', { href: '#/flush', text: 'Flush' })],
     ['replay', el('a', { href: '#/replay', text: 'Replay' })],
+    ['trends', el('a', { href: '#/trends', text: 'Trends' })],
     ['alarms', el('a', { href: '#/alarms', text: 'Alarms' })],
     ['handover', el('a', { href: '#/handover', text: 'Hand-over' })],
     ['people', el('a', { href: '#/people', text: 'People' })],
@@ -144,7 +146,11 @@ function whoView() {
           link('#/account', person.name),
           el('span', { class: 'role', text: person.role }),
           how === 'demo'
-            ? el('span', { class: 'tag', title: 'Whoever is at this machine acts as this person', text: 'DEMO, no sign-in' })
+            ? el('span', {
+                class: 'tag',
+                title: 'Whoever is at this machine acts as this person, without signing in',
+                text: 'DEMO',
+              })
             : null,
         )
     },

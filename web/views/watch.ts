@@ -213,7 +213,9 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   }
 
   let frame = 0
+  let isOver = false
   const ask = (): void => {
+    if (isOver) return
     frame ||= requestAnimationFrame(() => {
       frame = 0
       show()
@@ -287,6 +289,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
       else say(waiting, l.up ? 'Waiting for the first state of the run.' : 'The server does not answer; trying again.')
     },
     stop(): void {
+      isOver = true
       followed.stop()
       clearInterval(tick)
       clearTimeout(chosenTimer)
