@@ -17,6 +17,7 @@ import { type ReplayView, replayView } from './views/replay.ts'
 import { runsView } from './views/runs.ts'
 import { soundView } from './views/sound.ts'
 import { cutView, stripView } from './views/strip.ts'
+import { trendBoard } from './views/trend-board.ts'
 import { type Shell, type WatchView, watchView } from './views/watch.ts'
 
 /** Kept in this browser only; a browser that refuses storage forgets at reload. */
@@ -133,7 +134,7 @@ function heard(): void {
   ])
 }
 
-const pages = ['watch', 'replay', 'alarms', 'handover', ...Object.keys(sitePages)]
+const pages = ['watch', 'replay', 'alarms', 'handover', 'trends', ...Object.keys(sitePages)]
 /** Where the address leads: #/PAGE, #/PAGE/RUN, #/replay/RUN/MOMENT, or a page of the site. */
 function route(): { page: string; run: number | null; atMs: number | null; rest: string } {
   const [, page, rest = '', at] = location.hash.split('/')
@@ -217,10 +218,18 @@ async function go(): Promise<void> {
     }
     if (runs.length === 0) runs = await getJson<RunRow[]>('/api/runs')
     if (!here()) return
-    if (page === 'alarms' || page === 'handover') {
+    if (page === 'alarms' || page === 'handover' || page === 'trends') {
       const of = run ?? runs.find((r) => r.state === 'live')?.run ?? runs[0]?.run
       idle(page, 'Clearbore')
       if (of === undefined) return note('No run yet.')
+      if (page === 'trends') {
+        const data = await loadRun(of)
+        if (!here()) return
+        desk = trendBoard(data, shell, runs)
+        fill(place, (desk as ReturnType<typeof trendBoard>).node)
+        document.title = `Trends ${data.detail.skid} · Clearbore`
+        return
+      }
       const detail = await getJson<RunDetail>(`/api/runs/${of}`)
       if (!here()) return
       idle(page, detail.skid)

@@ -28,6 +28,8 @@ export interface TrendView {
   /** Now, or the moment shown; nothing later is known. */
   readonly atMs: number
   readonly alarms: readonly AlarmRow[]
+  /** Another run in the same segment, laid over this one's time. */
+  readonly other?: { readonly name: string; readonly ratio: readonly Point[]; readonly dpBar: readonly Point[] } | null
 }
 
 /** Trends of detector steps; the others are of readings. */
@@ -99,7 +101,7 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
               },
             ]
       return {
-        lines: [{ name: spec.id, look: 'main', points: own?.ratio.points() ?? [] }],
+        lines: [{ name: spec.id, look: 'main', points: own?.ratio.points() ?? [] }, ...otherLine(view, 'ratio')],
         yTitle: 'ratio [–]',
         bands: band,
         limits,
@@ -113,6 +115,7 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
         lines: [
           { name: spec.id, look: 'main', points: own?.dpBar.points() ?? [] },
           { name: 'clean bore', look: 'other', points: own === undefined ? [] : quotient(own.dpBar.points(), own.ratio.points()) },
+          ...otherLine(view, 'dpBar'),
         ],
         yTitle: 'ΔP [bar]',
         limits: [...limit('dpHighBar', 1), ...limit('dpHighHighBar', 1)],
@@ -193,6 +196,9 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
       }
   }
 }
+
+const otherLine = ({ other }: TrendView, of: 'ratio' | 'dpBar'): Line[] =>
+  other == null ? [] : [{ name: other.name, look: 'other', points: other[of] }]
 
 /** One series over another, point by point where both are known; a bucket's extremes are the widest that its readings allow. */
 function quotient(over: readonly Point[], under: readonly Point[], factor = 1): Point[] {
@@ -309,6 +315,10 @@ function extent(kind: TrendKind, points: readonly Point[], limits: readonly numb
   if (kind === 'ratio') {
     low = Math.min(low, 0.9)
     high = Math.max(high, 1.2)
+  }
+  if (kind === 'charts') {
+    low = Math.min(low, 0)
+    high = Math.max(high, 1.1)
   }
   if (low === Infinity) [low, high] = limits.length > 0 ? [Math.min(...limits), Math.max(...limits)] : [0, 1]
   const span = Math.max(high - low, kind === 'temperature' ? 4 : 0.05 * Math.abs(high), 1e-6)
