@@ -134,7 +134,7 @@ function heard(): void {
   ])
 }
 
-const pages = ['watch', 'replay', 'alarms', 'handover', 'trends', ...Object.keys(sitePages)]
+const pages = ['watch', 'flush', 'replay', 'alarms', 'handover', 'trends', ...Object.keys(sitePages)]
 /** Where the address leads: #/PAGE, #/PAGE/RUN, #/replay/RUN/MOMENT, or a page of the site. */
 function route(): { page: string; run: number | null; atMs: number | null; rest: string } {
   const [, page, rest = '', at] = location.hash.split('/')

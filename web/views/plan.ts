@@ -4,7 +4,7 @@ import { el, fill } from './dom.ts'
 
 /** The computed flush, step by step, with what must be true before each, what ends it and what can hurt. Read only: nothing is moved from here. */
 export function planView(close: () => void) {
-  const body = el('div', { class: 'plan-body' })
+  const body = el('div')
   const shut = el('button', { type: 'button', text: 'Close the plan', on: { click: close } })
   const title = el('h2', { tabindex: -1 })
   const node = el(
@@ -29,35 +29,45 @@ export function planView(close: () => void) {
       title.textContent = `Flush of ${plan.segments.join(', ')}: ${plan.totalMinutes === null ? 'whole time not computed' : `${fixed(plan.totalMinutes, 0)} min in all`}`
       fill(
         body,
-        el('p', { class: 'note', text: plan.cautions.join(' ') }),
-        ...plan.steps.map((s) =>
-          el(
-            'article',
-            { class: 'step', 'data-step': s.id },
-            el('h3', { text: `${s.id} ${s.title}` }),
-            el('p', { class: 'quant' }, ...quantities(s).map((t) => el('span', { text: t }))),
-            lines(
-              'Before it',
-              s.holdPoints.map((t) => t.replace(/^Before this step: /, '')),
-            ),
-            lines('Ends when', s.endsWhen),
-            lines('Can hurt', s.hazards, 'hurt'),
-            plan.refused.some((r) => r.step === s.id)
-              ? lines(
-                  'Not advised now',
-                  plan.refused.filter((r) => r.step === s.id).map((r) => r.reason),
-                  'hurt',
-                )
-              : null,
-          ),
-        ),
-        el('h3', { text: 'What the line holds before F0, as if nothing had reacted' }),
-        inventory(plan),
-        lines('Assumed', plan.assumptions),
-        lines('Not computed', plan.missing),
+        el('p', {}, el('a', { class: 'button', id: 'go-flush', href: '#/flush', text: 'Go through it step by step' })),
+        planBody(plan),
       )
     },
   }
+}
+
+/** The plan itself: cautions, steps, inventory, what was assumed and what could not be computed. */
+export function planBody(plan: FlushPlan): HTMLElement {
+  return el(
+    'div',
+    { class: 'plan-body' },
+    el('p', { class: 'note', text: plan.cautions.join(' ') }),
+    ...plan.steps.map((s) =>
+      el(
+        'article',
+        { class: 'step', 'data-step': s.id },
+        el('h3', { text: `${s.id} ${s.title}` }),
+        el('p', { class: 'quant' }, ...quantities(s).map((t) => el('span', { text: t }))),
+        lines(
+          'Before it',
+          s.holdPoints.map((t) => t.replace(/^Before this step: /, '')),
+        ),
+        lines('Ends when', s.endsWhen),
+        lines('Can hurt', s.hazards, 'hurt'),
+        plan.refused.some((r) => r.step === s.id)
+          ? lines(
+              'Not advised now',
+              plan.refused.filter((r) => r.step === s.id).map((r) => r.reason),
+              'hurt',
+            )
+          : null,
+      ),
+    ),
+    el('h3', { text: 'What the line holds before F0, as if nothing had reacted' }),
+    inventory(plan),
+    lines('Assumed', plan.assumptions),
+    lines('Not computed', plan.missing),
+  )
 }
 
 /** Flow, volume and time of a step; a step without a liquid has only its time. */

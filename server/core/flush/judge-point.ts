@@ -95,7 +95,7 @@ function ask(rule: Exclude<Rule, null>, m: Memory, step: CourseStep, r: Readings
       const { values, lost } = readAll(rule.tags, r)
       if (lost !== null) return bad(null, `${lost} is not good; bad data is not warm`)
       const coldest = Math.min(...values)
-      return said(coldest > rule.aboveK, cFromK(coldest), 'coldest reading', rule.holdS)
+      return said(coldest > rule.aboveK, cFromK(coldest), coldest > rule.aboveK ? 'warm' : 'too cold', rule.holdS)
     }
     case 'pressure-steady': {
       const { values, lost } = readAll(rule.tags, r)
