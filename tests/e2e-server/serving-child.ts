@@ -13,7 +13,7 @@ const watched: Watched = {
   source:
     followed === undefined ? { kind: 'simulated', speed: Number(speed) } : { kind: 'followed', path: followed, startMs: null },
 }
-const store = openStore(data)
+const store = openStore(data, { keys: process.env['CLEARBORE_KEYS'] ?? '' })
 const serving = await startServing({
   store,
   watched: [watched],

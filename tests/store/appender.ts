@@ -28,7 +28,7 @@ export const entriesOf = (run: number, from: number, to: number): Entry[] =>
   Array.from({ length: to - from }, (_, i) => entryAt(run, from + i))
 
 export function work(dir: string, runs: readonly RunId[], say: (line: string) => void): void {
-  const store = openStore(dir)
+  const store = openStore(dir, { keys: process.env['CLEARBORE_KEYS'] ?? '' })
   for (let round = 0; ; round++) {
     const batch = runs.map((run, i) => {
       const from = store.sequence.count(run).entries

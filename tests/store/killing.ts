@@ -5,7 +5,7 @@ import { fileURLToPath } from 'node:url'
 import { buildSync } from 'esbuild'
 import { expect } from 'vitest'
 import type { RunId } from '../../server/store/keys.ts'
-import { entryAt } from './appender.ts'
+import { entriesOf, entryAt } from './appender.ts'
 import { aRun, close, linesOf, newFolder, newStore, noise, readLines } from './helpers.ts'
 
 const root = fileURLToPath(new URL('../..', import.meta.url))
@@ -51,7 +51,8 @@ async function killed(
 
 /**
  * Kills an appending process `times` times at seeded moments on one store. After each: nothing acknowledged is gone, nothing is doubled,
- * what belongs to one commit (entries, source state, event, snapshot) stands at the same number. Gives what was stored in the end.
+ * what belongs to one commit (entries, source state, event, snapshot, chain) stands at the same number, and the chains verify with every
+ * acknowledged act in them. Gives what was stored in the end.
  */
 export async function killRounds(times: number, seed: number): Promise<{ entries: number; unacknowledged: number }> {
   const next = noise(seed)
@@ -65,7 +66,7 @@ export async function killRounds(times: number, seed: number): Promise<{ entries
   for (let round = 0; round < times; round++) {
     const { said, signal } = await killed(startAppender(folder, dir, runs), 1 + Math.floor(next() * 25), next() * 30)
     expect(signal).toBe('SIGKILL')
-    const store = newStore(dir)
+    const store = newStore(dir, { synchronous: 'NORMAL', keys: process.env['CLEARBORE_KEYS'] ?? '' })
     runs.forEach((run, i) => {
       const { entries: stored } = store.sequence.count(run)
       expect(stored).toBeGreaterThanOrEqual(said[i]!)
@@ -82,6 +83,16 @@ export async function killRounds(times: number, seed: number): Promise<{ entries
       entries = Math.max(entries, stored)
     })
     expect(store.check()).toEqual([])
+    const { faults, signed } = store.trail.verify()
+    expect(faults).toEqual([])
+    expect(signed).not.toBeNull()
+    runs.forEach((run, i) => {
+      const chained = store.trail.ofRun(run).flatMap(({ record }) => (record.kind === 'act' ? [record.seq] : []))
+      expect(chained).toEqual(store.sequence.acts(run).map(({ seq }) => seq))
+      expect(chained.filter((seq) => seq < said[i]!).length).toBe(
+        entriesOf(run, 0, said[i]!).filter((e) => e.kind === 'act').length,
+      )
+    })
     close(store)
   }
   return { entries, unacknowledged }

@@ -38,11 +38,32 @@ it('reads a store of the first schema with everything in it, and goes on in it',
     store.events.count(id),
     store.settings.at('heron', 2)?.version,
   ]).toEqual([{ byte: 6400 }, 6400, 1, 1])
+  // What it held unchained is in its chains now, as it lies there, behind a record that says so.
+  const chain = store.trail.ofRun(id).map(({ record }) => record)
+  expect(chain.slice(0, 3).map((r) => r.kind)).toEqual(['genesis', 'adopted', 'words'])
+  const kinds = (kind: string) => chain.filter((r) => r.kind === kind).length
+  expect([kinds('act'), kinds('readings'), kinds('events')]).toEqual([store.sequence.acts(id).length, 1, 1])
+  expect(store.trail.ofSite().map(({ record }) => record.kind)).toEqual(['genesis', 'adopted', 'settings', 'run.begun'])
+  expect(store.trail.verify()).toMatchObject({ faults: [], signed: null })
   store.sequence.append([{ run: id, entries: [{ kind: 'tick', tMs: 1.7e12 }] }])
   store.runs.setState(id, 'ended')
   store.upkeep()
   expect(store.sequence.count(id).entries).toBe(6501)
   expect(store.check()).toEqual([])
+  const { faults, chains } = store.trail.verify()
+  expect([faults, chains[1]]).toMatchObject([[], { stagedRows: 0, sealedRows: truth.length / 2 }])
+})
+
+it('begins the chains of an old store once, in the commit of its migration: a second opening adds nothing', () => {
+  const dir = newFolder()
+  writeFileSync(join(dir, 'clearbore.db'), gunzipSync(readFileSync(new URL('fixtures/schema-1.db.gz', import.meta.url))))
+  const heads = [0, 1].map(() => {
+    const store = newStore(dir)
+    const found = [store.trail.signing().store, store.trail.head(0), store.trail.head(store.runs.list()[0]!.id)]
+    close(store)
+    return found
+  })
+  expect(heads[1]).toEqual(heads[0])
 })
 
 it('makes strict tables only, counts its steps, and writes nothing when it opens a store that is up to date', () => {
