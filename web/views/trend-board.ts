@@ -1,8 +1,7 @@
-import type { AlarmRow, Comparison, LiveState, Marks, RunRow } from '../../server/wire/index.ts'
+import type { AlarmRow, LiveState, Marks, RunRow } from '../../server/wire/index.ts'
 import { getJson, said } from '../api.ts'
 import { asAt } from '../model/alarm-list.ts'
 import { timesOf } from '../model/bore.ts'
-import { laidOver, standsOn } from '../model/compared.ts'
 import { short } from '../model/format.ts'
 import { type Look, within } from '../model/look.ts'
 import { type RunData, rhythmMs } from '../model/run-data.ts'
@@ -10,6 +9,7 @@ import { type TrendKind, trendKinds, trendSpec, trendWords, valuesAt } from '../
 import { fetchWindow } from '../run-store.ts'
 import { boresView } from './bores.ts'
 import { el, fill, say } from './dom.ts'
+import { overPicker } from './over-picker.ts'
 import { type TrendChart, trendChart } from './trend-chart.ts'
 import { trendHands } from './trend-hands.ts'
 import { hasKind } from './trends.ts'
@@ -48,7 +48,6 @@ export function trendBoard(data: RunData, shell: Shell, runs: readonly RunRow[])
   let state: LiveState | null = null
   let marks: Marks = data.marks
   let alarms: readonly AlarmRow[] = []
-  let other: ReturnType<typeof laidOver> | null = null
   let fetchTimer: ReturnType<typeof setTimeout> | undefined
   let asked: AbortController | null = null
 
@@ -71,22 +70,7 @@ export function trendBoard(data: RunData, shell: Shell, runs: readonly RunRow[])
       .slice(0, 200)
       .map((r) => el('option', { value: r.run, selected: r.run === detail.run, text: `run ${r.run}, ${short(r.title, 30)}` })),
   )
-  const beside = el(
-    'select',
-    { id: 'board-other', 'aria-label': 'Run laid over it', on: { change: () => void compare() } },
-    el('option', { value: '', text: 'no other run' }),
-    ...runs
-      .filter((r) => r.run !== detail.run)
-      .slice(0, 200)
-      .map((r) => el('option', { value: r.run, text: `over it: run ${r.run}, ${short(r.title, 30)}` })),
-  )
-  const by = el(
-    'select',
-    { id: 'board-by', 'aria-label': 'Laid over each other by', on: { change: () => void compare() } },
-    el('option', { value: 'feed-on', text: 'from feed-on' }),
-    el('option', { value: 'baseline', text: 'from its last baseline' }),
-  )
-  const stands = el('p', { class: 'soft' })
+  const over = overPicker(detail, runs, () => void compare())
   const placeButtons = facts.segments.map((s) => ({
     id: s.id,
     b: el('button', {
@@ -133,8 +117,8 @@ export function trendBoard(data: RunData, shell: Shell, runs: readonly RunRow[])
     'main',
     { id: 'main', class: 'board', tabindex: -1 },
     el('h1', { class: 'vh', text: `Trends of run ${detail.run}, skid ${facts.skid}` }),
-    el('div', { class: 'head' }, el('div', { class: 'row' }, which, beside, by), places, moment, times),
-    stands,
+    el('div', { class: 'head' }, el('div', { class: 'row' }, which, ...over.choices), places, moment, times),
+    over.stands,
     el('div', { class: 'panels' }, ...panels.map((p) => p.node), boresPanel),
     says,
   )
@@ -187,24 +171,8 @@ export function trendBoard(data: RunData, shell: Shell, runs: readonly RunRow[])
     void compare()
   }
 
-  /** Lays the chosen run over this one in the segment shown; without one takes it away. */
   async function compare(): Promise<void> {
-    other = null
-    say(stands, '')
-    if (beside.value !== '') {
-      const query = new URLSearchParams({ runs: `${detail.run},${beside.value}`, segment, by: by.value, buckets: '1000' })
-      try {
-        const c = await getJson<Comparison>(`/api/comparison?${query}`)
-        const [here, there] = c.runs
-        if (here !== undefined && there !== undefined) {
-          other = laidOver(here, there)
-          say(stands, `${standsOn(here)}; ${standsOn(there)}`)
-        }
-        say(says, '')
-      } catch (error) {
-        say(says, said(error))
-      }
-    }
+    say(says, await over.choose(segment))
     draw()
   }
   function toNow(s: (typeof spans)[number]): void {
@@ -262,7 +230,7 @@ export function trendBoard(data: RunData, shell: Shell, runs: readonly RunRow[])
     for (const p of panels) {
       p.node.hidden = !hasKind(facts, spec, p.kind)
       if (p.node.hidden) continue
-      p.spec = trendSpec(data, state, marks, { kind: p.kind, segment, ...shown, atMs: atMs(), alarms: known, other })
+      p.spec = trendSpec(data, state, marks, { kind: p.kind, segment, ...shown, atMs: atMs(), alarms: known, other: over.other() })
       p.chart.show(p.spec)
       p.canvas.setAttribute(
         'aria-label',
