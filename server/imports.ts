@@ -1,8 +1,7 @@
-import { createReadStream } from 'node:fs'
 import { MonitorError } from './core/errors.ts'
 import type { Act } from './core/sequence.ts'
 import type { Skid } from './core/skid.ts'
-import { importRun } from './import-run.ts'
+import { type ImportWork, importInto } from './import-task.ts'
 import { readEvents } from './ingest/events-file.ts'
 import { instantOf } from './ingest/instant.ts'
 import { type Busy, createPair } from './monitor/catalogue.ts'
@@ -28,43 +27,35 @@ export interface ImportsOptions {
   readonly log: (line: string) => void
   /** A run appeared, moved on or ended. */
   readonly changed: () => void
+  /** Does the imports; left out, they share the thread of the caller. */
+  readonly work?: ImportWork
 }
 
-/** Imports asked for by pages, one after the other beside the live runs; live work goes first between commits. */
+/** Imports asked for by pages, one after the other beside the live runs. */
 export function createImports(o: ImportsOptions) {
+  const importing = o.work ?? importInto(o.store, 5)
   const work = new Map<number, { progress: number; fault: string | null }>()
   const abort = new AbortController()
   let queue: Promise<void> = Promise.resolve()
 
-  async function run(
-    id: RunId,
-    stepsRun: RunId,
-    skid: Skid,
-    acts: readonly Act[],
-    startMs: number | null,
-    job: UploadJob,
-  ): Promise<void> {
+  async function run(id: RunId, stepsRun: RunId, acts: readonly Act[], startMs: number | null, job: UploadJob): Promise<void> {
     const at = work.get(id)!
     const total = Math.max(
       1,
       job.logs.reduce((sum, l) => sum + (l.bytes ?? 0), 0),
     )
     try {
-      await importRun({
-        store: o.store,
-        run: id,
-        stepsRun,
-        skid,
-        sources: job.logs.map(({ name, path }) => ({ name, chunks: createReadStream(path, { highWaterMark: 1 << 16 }) })),
-        startMs,
-        acts,
-        onProgress: (bytes) => {
-          at.progress = Math.min(1, bytes / total)
+      const { skidFile, skidText } = job
+      const logs = job.logs.map(({ name, path }) => ({ name, path }))
+      await importing(
+        { run: id, stepsRun, skidFile, skidText, logs, acts, startMs },
+        {
+          progress: (bytes) => {
+            at.progress = Math.min(1, bytes / total)
+          },
+          signal: abort.signal,
         },
-        signal: abort.signal,
-        breathe: () => new Promise((done) => setTimeout(done, 5)),
-        rowsPerCommit: 2048,
-      })
+      )
       work.delete(id)
     } catch (error) {
       if (abort.signal.aborted) return
@@ -94,7 +85,7 @@ export function createImports(o: ImportsOptions) {
         state: 'importing',
       })
       work.set(pair.run, { progress: 0, fault: null })
-      queue = queue.then(() => (abort.signal.aborted ? undefined : run(pair.run, pair.stepsRun, skid, acts, startMs, job)))
+      queue = queue.then(() => (abort.signal.aborted ? undefined : run(pair.run, pair.stepsRun, acts, startMs, job)))
       o.changed()
       return pair.run
     },

@@ -12,6 +12,8 @@ export interface Io {
   readonly env?: Readonly<Record<string, string | undefined>>
   /** Aborted on SIGINT or SIGTERM. */
   readonly signal: AbortSignal
+  /** The program itself, to be started again as a thread; left out, there is only this thread. */
+  readonly program?: URL
 }
 
 /** One command of the command line. `run` resolves to the exit code; a MonitorError it throws is printed as one line by the caller. */

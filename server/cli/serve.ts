@@ -1,4 +1,5 @@
 import { resolve } from 'node:path'
+import { importInThread } from '../import-thread.ts'
 import { instantOf } from '../ingest/instant.ts'
 import { cautions } from '../record/facts.ts'
 import { loadSkid } from '../skid/check.ts'
@@ -112,6 +113,9 @@ export const serveCommand: Command = {
         toolVersion: toolVersion(),
         log: (line) => io.err(`${line}\n`),
         onFatal: fail,
+        ...(io.program === undefined
+          ? {}
+          : { importWork: importInThread({ entry: io.program, data: v.data ?? '.clearbore', toolVersion: toolVersion() }) }),
         ...access,
       })
       try {

@@ -5,6 +5,7 @@ import { demoScenario } from '../core/sim/demo.ts'
 import type { Skid } from '../core/skid.ts'
 import { exportRun } from '../export-run.ts'
 import { linkPath } from '../http/people.ts'
+import type { ImportWork } from '../import-task.ts'
 import { createImports } from '../imports.ts'
 import { followSource } from '../ingest/follow.ts'
 import { simulatedSource } from '../ingest/simulated.ts'
@@ -39,6 +40,8 @@ export interface ServingOptions {
   readonly toolVersion: string
   readonly log: (line: string) => void
   readonly onFatal: (error: unknown) => void
+  /** Does imports of pages; left out, they share this thread. */
+  readonly importWork?: ImportWork
   readonly tls?: { readonly cert: string; readonly key: string } | null
   /** Proxies in front, and the address they are known by. */
   readonly trustProxy?: readonly string[]
@@ -85,6 +88,7 @@ export async function startServing(o: ServingOptions) {
     wallMs,
     log: o.log,
     changed: () => changed(),
+    ...(o.importWork === undefined ? {} : { work: o.importWork }),
   })
   const catalogue = createCatalogue(store, loadSkid, {
     engine: monitor.engine,

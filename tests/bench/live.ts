@@ -3,16 +3,24 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { monitorEventLoopDelay } from 'node:perf_hooks'
 import { cell, type RowBlock, rowBlock } from '../../server/core/reading.ts'
+import { importInThread } from '../../server/import-thread.ts'
 import { createEngine } from '../../server/monitor/engine.ts'
 import { openStore } from '../../server/store/open.ts'
 import { type Measured, pairIn } from './common.ts'
-import { channels, course, skid, startMs } from './input.ts'
+import { channels, course, skid, skidText, startMs } from './input.ts'
+
+const importBeside = (data: string, pair: ReturnType<typeof pairIn>, log: string): Promise<void> =>
+  importInThread({ entry: new URL(import.meta.url), data, toolVersion: 'bench' })(
+    { ...pair, skidFile: 'bench.json', skidText, logs: [{ name: 'beside.csv', path: log }], acts: [], startMs: null },
+    { progress: () => undefined, signal: new AbortController().signal },
+  )
 
 /**
  * Skids of 24 tags at 10 Hz in one process in real time: each second their rows go into one commit, through each one's pipeline, and what that said
- * into the journal. `late` counts ticks that began more than half a second after they were due. No page is attached.
+ * into the journal. `late` counts ticks that began more than half a second after they were due. No page is attached. With a `log`, that is imported
+ * beside them as the server does it, and the ticks go on to its end.
  */
-export async function live(skids: number, seconds: number): Promise<Measured> {
+export async function live(skids: number, seconds: number, log?: string): Promise<Measured> {
   const dir = mkdtempSync(join(tmpdir(), 'clearbore-bench-'))
   const store = openStore(dir)
   const engines = Array.from({ length: skids }, () => createEngine({ skid: skid(), store, ...pairIn(store) }))
@@ -46,7 +54,13 @@ export async function live(skids: number, seconds: number): Promise<Measured> {
   const cpu = process.cpuUsage()
   let late = 0
   let slowestMs = 0
-  for (let k = 0; k < seconds; k++) {
+  let importing = log !== undefined
+  const imported = log === undefined ? Promise.resolve() : importBeside(dir, pairIn(store), log)
+  void imported.finally(() => {
+    importing = false
+  })
+  let k = 0
+  for (; k < seconds || importing; k++) {
     const due = from + 1000 * (k + 1)
     await new Promise((resolve) => setTimeout(resolve, Math.max(0, due - performance.now())))
     const at = performance.now()
@@ -54,6 +68,7 @@ export async function live(skids: number, seconds: number): Promise<Measured> {
     tick(before + k)
     slowestMs = Math.max(slowestMs, performance.now() - at)
   }
+  await imported
   const spent = process.cpuUsage(cpu)
   delay.disable()
   const wallS = (performance.now() - from) / 1000
@@ -69,7 +84,8 @@ export async function live(skids: number, seconds: number): Promise<Measured> {
       late,
       slowestMs,
       loopP99Ms: delay.percentile(99) / 1e6,
-      missing: 10 * (before + seconds) - rows,
+      seconds: k,
+      missing: 10 * (before + k) - rows,
     },
   }
 }

@@ -175,6 +175,15 @@ function all(dir: string): void {
     const smooth = skids === 1 || (f['late'] === 0 && f['loopP99Ms']! < 100)
     row(`live, ${skids} ${skids === 1 ? 'skid' : 'skids'}, no page`, 100 * f['share']!, '% of a core', `at most ${100 * share}${skids === 1 ? '' : ', no tick late, loop p99 under 100 ms'}`, f['share']! <= share && smooth && f['missing'] === 0, `${f['late']} late, slowest tick ${short(f['slowestMs']!)} ms, loop p99 ${short(f['loopP99Ms']!)} ms`)
   } // biome-ignore format: long lines of figures
+  const b = measure('live-import', clean).figures!
+  row(
+    'live scan beside an import of a day',
+    b['loopP99Ms']!,
+    'ms of event-loop delay, p99',
+    'no tick late, under 100',
+    b['late'] === 0 && b['loopP99Ms']! < 100 && b['missing'] === 0,
+    `${b['late']} of ${b['seconds']} ticks late, slowest tick ${short(b['slowestMs']!)} ms`,
+  )
   const d = measure('derive').figures!
   row(
     'derive, a segment and scan',

@@ -1,6 +1,8 @@
+import { isMainThread } from 'node:worker_threads'
 import { fileSource } from '../../server/analyse.ts'
 import { cell, phases } from '../../server/core/reading.ts'
 import { importRun } from '../../server/import-run.ts'
+import { importThread } from '../../server/import-thread.ts'
 import { type LogSource, readLogs } from '../../server/ingest/csv/read-log.ts'
 import { openStore } from '../../server/store/open.ts'
 import { cpuS, inFolder, type Measured, pairIn } from './common.ts'
@@ -79,8 +81,10 @@ const measures: Readonly<Record<string, (...args: string[]) => Promise<Measured>
   hour: (days) => hour(Number(days)),
   commits: (count) => commits(Number(count)),
   live: (skids, seconds) => live(Number(skids), Number(seconds)),
+  'live-import': (file) => live(1, 5, file!),
   derive: () => derive(),
 }
 
 const [name = '', ...args] = process.argv.slice(2)
-process.stdout.write(`${JSON.stringify(await measures[name]!(...args))}\n`)
+if (isMainThread) process.stdout.write(`${JSON.stringify(await measures[name]!(...args))}\n`)
+else await importThread()
