@@ -35,8 +35,11 @@ export interface Mode {
   readonly rests: boolean
 }
 
-/** Below this share of its usual flow a stream is out of production; below the second it stands still. */
-const least = { production: 0.4, rest: 0.03 }
+/**
+ * Below this share of its usual flow a stream is out of production; below the second, and below that share of its meter's span, it stands still. Water of a
+ * flush begins at a tenth of the usual flow, which is 3 % of a wide meter's span: counted as rest, it would teach a false zero.
+ */
+const least = { production: 0.4, rest: 0.03, restOfSpan: 0.005 }
 /** Steps: before detectors are armed at first and after a stop; out of production before it counts as a stop; settled window. */
 const modeSteps = { arm: 10, armAgain: 24, stop: 16, settled: 4 }
 const settled = { flow: 0.03, tempK: 0.8 }
@@ -73,7 +76,7 @@ export function createMode(layout: Layout, saved?: ModeState) {
       known = true
       const usual = s.usual[i]!
       if (usual > 0 && q < least.production * usual) enough = false
-      if (q > least.rest * Math.max(usual, streams[i]!.spanSi)) rests = false
+      if (q > Math.max(least.rest * usual, least.restOfSpan * streams[i]!.spanSi)) rests = false
       if (q > least.rest * streams[i]!.spanSi && q > least.production * usual)
         s.usual[i] = usual === 0 ? q : usual + (q - usual) / (q > usual ? 4 : 120)
     })
