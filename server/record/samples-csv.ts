@@ -1,7 +1,7 @@
 import { cell, type RowBlock } from '../core/reading.ts'
 import type { Entry } from '../core/sequence.ts'
 import type { Skid } from '../core/skid.ts'
-import { quoted } from './csv-cell.ts'
+import { csvCell } from './csv-cell.ts'
 
 type Entries = () => Iterable<{ readonly entry: Entry }>
 
@@ -21,7 +21,8 @@ const time = (tMs: number): string => new Date(tMs).toISOString()
 /**
  * The readings of a run as a log in arrival order, times in UTC: wide where that says all, else long (`time,tag,value,quality`), one line a
  * sample. Read back with the run's skid file (its `log` left out or with `timeFormat: iso`) every sample has the same time to the ms, the
- * same bits and the same quality. Numbers are the shortest decimals that are the same double.
+ * same bits and the same quality. Numbers are the shortest decimals that are the same double. Text that
+ * a spreadsheet would take for a formula has an apostrophe in front, which the reader takes off again.
  */
 export function samplesCsv(
   skid: Skid,
@@ -35,10 +36,10 @@ export function samplesCsv(
     const code = b.codes[at]!
     if (code === cell.missing || code === cell.absent) return ''
     if (code === cell.unreadable) return 'unreadable'
-    return isText[c] ? quoted(words[b.values[at]!] ?? '') : number(b.values[at]!)
+    return isText[c] ? csvCell(words[b.values[at]!] ?? '') : number(b.values[at]!)
   }
   function* wide(): Generator<string> {
-    yield `time,${names.map(quoted).join(',')}\n`
+    yield `time,${names.map(csvCell).join(',')}\n`
     for (const { entry } of entries()) {
       if (entry.kind !== 'rows') continue
       const b = entry.block
@@ -60,7 +61,7 @@ export function samplesCsv(
           const code = b.codes[at]!
           if (code === cell.absent) continue
           const quality = code === cell.uncertain ? 'uncertain' : code === cell.bad ? 'bad' : ''
-          yield `${time(b.tMs[r]!)},${quoted(names[c]!)},${valueAt(b, at, c)},${quality}\n`
+          yield `${time(b.tMs[r]!)},${csvCell(names[c]!)},${valueAt(b, at, c)},${quality}\n`
         }
     }
   }

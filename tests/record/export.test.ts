@@ -13,8 +13,8 @@ import { samplesCsv } from '../../server/record/samples-csv.ts'
 import { skidOf, tag } from '../ingest/csv/helpers.ts'
 import { tempDir } from '../monitor/bench.ts'
 
-const skid: Skid = skidOf(['PT-1', 'PT-2', tag('XV', { quantity: 'state', unit: null })], { timeZone: 'UTC' })
-const words = [...phases, 'open', 'half, "shut"', ' padded']
+const skid: Skid = skidOf(['PT-1', 'PT-2', tag('XV', { quantity: 'state', unit: null, column: '=XV' })], { timeZone: 'UTC' })
+const words = [...phases, 'open', 'half, "shut"', ' padded', '=HYPERLINK("http://x")', '-1+1']
 
 /** Any double that a reading may hold, the awkward ones often. */
 const anyValue = fc.oneof(
@@ -22,7 +22,7 @@ const anyValue = fc.oneof(
   fc.constantFrom(0, -0, 0.1 + 0.2, 5e-324, 1.7976931348623157e308, 2 ** 53 + 2, -1e-7, 1e21, 123.456),
 )
 const codesOf = (full: boolean) => (full ? fc.constantFrom(0, 1, 1, 1, 2, 3, 4, 5) : fc.constantFrom(1, 1, 1, 2, 3))
-const wordIndex = fc.constantFrom(5, 6)
+const wordIndex = fc.constantFrom(5, 6, words.length - 2, words.length - 1)
 
 const blocks = (full: boolean) =>
   fc
@@ -94,6 +94,8 @@ describe('readings as CSV', () => {
         const csv = samplesCsv(skid, words, () => entries)
         seen.add(csv.layout)
         const text = [...csv.lines()].join('')
+        // Nor can a cell of text be a formula in a spreadsheet.
+        expect(text).not.toMatch(/(^|,)"?[=@]|(^|,)"?[+-](?![\d.])|-1\+1(?<!'-1\+1)/m)
         expect(await readBack(text)).toEqual(samplesOf(block, words))
       }),
       { numRuns: 200, seed: 3 },

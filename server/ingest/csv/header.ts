@@ -1,6 +1,7 @@
 import { MonitorError } from '../../core/errors.ts'
 import type { Skid } from '../../core/skid.ts'
 import { unitInHeader, unitOfText, withoutUnit } from './units-row.ts'
+import { unguarded } from './words.ts'
 
 /** Trimmed, lower case, inner blanks single: how names are compared when they are not equal as they stand. */
 export const fold = (text: string): string => text.trim().replace(/\s+/g, ' ').toLowerCase()
@@ -29,7 +30,7 @@ export function wantedColumns(skid: Skid): Wanted[] {
 
 /** The ways a header may name a tag, strictest first. A column taken by a stricter way is not open to a looser one. */
 const ways: readonly ((header: string, w: Wanted) => boolean)[] = [
-  (h, w) => h.trim() === w.column.trim(),
+  (h, w) => unguarded(h.trim()) === w.column.trim(),
   (h, w) => fold(h) === fold(w.column),
   (h, w) => fold(h) === fold(w.name),
   (h, w) => fold(withoutUnit(h)) === fold(w.column) || fold(withoutUnit(h)) === fold(w.name),

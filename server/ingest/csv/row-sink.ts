@@ -7,6 +7,7 @@ import type { Span } from './rows.ts'
 import { keptBroken, type LogTally } from './tally.ts'
 import { formatsOf } from './time-detect.ts'
 import { withoutUnit } from './units-row.ts'
+import { unguarded } from './words.ts'
 
 /** Rows at the start that may fail to show a time, and rows that must not all run backwards. */
 const firstTimes = 20
@@ -202,7 +203,7 @@ export class RowSink {
     const known = this.bySpelling.get(spelling)
     if (known !== undefined) return known
     const { wanted, tally } = this.o
-    const text = spelling.trim()
+    const text = unguarded(spelling.trim())
     const bare = fold(withoutUnit(text))
     let slot = wanted.findIndex((w) => w.column.trim() === text)
     if (slot < 0) slot = wanted.findIndex((w) => fold(w.column) === fold(text) || fold(w.name) === fold(text))

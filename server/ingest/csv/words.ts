@@ -19,6 +19,9 @@ export const missingWords: ReadonlySet<string> = new Set([
 /** Missing in a column of text, where `none`, `open` or `bad` may be a state of its own. */
 export const missingTexts: ReadonlySet<string> = new Set(['', 'nan', 'n/a', '#n/a', 'null'])
 
+/** Text without the apostrophe that keeps a spreadsheet from taking it for a formula; exports put one in front (record/csv-cell.ts). */
+export const unguarded = (text: string): string => (/^'[=+\-@]/.test(text) ? text.slice(1) : text)
+
 /** Distinct texts a run may hold; a column of free text past it counts as unreadable instead of filling the memory. */
 export const maxWords = 65_536
 
@@ -29,7 +32,8 @@ export function wordList(words: string[]): { index(text: string, isPhase: boolea
   if (words.length === 0) words.push(...phases)
   return {
     /** Index of the text, added if new; −1 where the list is full. Phases match in any case. */
-    index(text, isPhase) {
+    index(written, isPhase) {
+      const text = unguarded(written)
       for (; seen < words.length; seen++) byText.set(words[seen]!, seen)
       const key = isPhase && (phases as readonly string[]).includes(text.toLowerCase()) ? text.toLowerCase() : text
       const known = byText.get(key)
