@@ -423,6 +423,7 @@ export interface FlushRecovery {
   readonly solvent: number | null
   readonly feeds: number | null
   readonly baseline: number | null
+  readonly provisional: boolean
   readonly verdict: 'open' | 'restored' | 'not-fully-restored'
 }
 

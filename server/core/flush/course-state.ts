@@ -72,8 +72,9 @@ export interface Recovery {
   water: number | null
   solvent: number | null
   feeds: number | null
-  /** The next clean baseline over the last one, both at their own flow and temperature. */
+  /** The next clean baseline over the last one, both at their own flow and temperature; while that is provisional it may still move. */
   baseline: number | null
+  provisional: boolean
   verdict: 'open' | 'restored' | 'not-fully-restored'
 }
 

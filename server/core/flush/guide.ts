@@ -240,8 +240,8 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
       if (urgent || (endMs - s.toldMs >= kept.tellMs && keyOf(c) !== s.told)) tell(endMs)
     },
 
-    /** A segment has its final clean baseline again: the last flush of it is scored against the one before. */
-    baselined(segment: number, at: BaselinePoint | null, tMs: number): void {
+    /** A segment has a clean baseline again: the last flush of it is scored against the one before, until a final one has been. */
+    baselined(segment: number, at: BaselinePoint | null, provisional: boolean, tMs: number): void {
       const c = s.course
       const leg = s.legs.find((l) => l.segment === segment)
       const r = c?.recovery.find((x) => x.segment === leg?.id)
@@ -250,13 +250,14 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
         c.state !== 'complete' ||
         leg === undefined ||
         r === undefined ||
-        r.baseline !== null ||
+        (r.baseline !== null && !r.provisional) ||
         leg.feedFactor === null
       )
         return
       const factor = reference?.factorAt(segment, at) ?? null
       if (factor === null) return
       r.baseline = factor / leg.feedFactor
+      r.provisional = provisional
       verdict(c, tMs)
       tell(tMs)
     },

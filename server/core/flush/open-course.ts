@@ -103,7 +103,16 @@ export function openCourse(s: GuideState, o: Opening): void {
     calls: [],
     recovery: s.legs
       .filter((l) => l.asked)
-      .map((l) => ({ segment: l.id, before: l.before, water: null, solvent: null, feeds: null, baseline: null, verdict: 'open' })),
+      .map((l) => ({
+        segment: l.id,
+        before: l.before,
+        water: null,
+        solvent: null,
+        feeds: null,
+        baseline: null,
+        provisional: false,
+        verdict: 'open',
+      })),
     exceptions: [],
   }
 }

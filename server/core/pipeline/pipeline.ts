@@ -250,10 +250,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
           e.baseline.flowM3S === null || e.baseline.tempK === null
             ? null
             : { dpPa: e.baseline.dpPa, flowM3S: e.baseline.flowM3S, tempK: e.baseline.tempK }
-        if (!e.baseline.provisional) {
-          guide.baselined(e.segment, s.baseline[e.segment]!, tMs)
-          drainGuide(tMs)
-        }
+        guide.baselined(e.segment, s.baseline[e.segment]!, e.baseline.provisional, tMs)
+        drainGuide(tMs)
         events.push({ kind: 'baseline', segment: layout.segments[e.segment]!.spec.id, baseline: e.baseline })
         return
       case 'onset':
