@@ -97,9 +97,9 @@ describe.runIf(chromium !== null)('the pages in their rare states', () => {
   it('a flood is named and counted, its first alarm pinned on top; one press acknowledges one alarm', async () => {
     const { page, faults } = await at(sceneOf({ alarms: many }))
     await until(page, `document.querySelector('.al').dataset.flood === 'true'`)
-    expect(await page.textContent('.al h2')).toBe('Flood: 12 alarms in 10 min')
+    expect(await page.textContent('.al h2')).toBe('Flood: 12 alarms since 02:54')
     expect(await page.getAttribute('.alarms > li:first-child', 'data-alarm')).toBe('1')
-    expect(await page.locator('.alarms > li:first-child .tag').textContent()).toBe('FIRST')
+    expect(await page.locator('.alarms > li:first-child .tag:visible').allTextContents()).toEqual(['FIRST', 'MOST URGENT'])
     await page.locator('.alarms > li:nth-child(2) .ack').click()
     await expect.poll(() => server.posted.at(-1)).toEqual({ kind: 'acknowledge', alarm: 12 })
     expect(server.posted.length).toBe(1)

@@ -45,7 +45,7 @@ export interface Opened {
 export async function open(
   browser: Browser,
   url: string,
-  o: { width?: number; height?: number; night?: boolean; downloads?: boolean; allow?: RegExp } = {},
+  o: { width?: number; height?: number; night?: boolean; downloads?: boolean; allow?: RegExp; init?: () => void } = {},
 ): Promise<Opened> {
   const context = await browser.newContext({
     viewport: { width: o.width ?? 1920, height: o.height ?? 1080 },
@@ -55,6 +55,7 @@ export async function open(
     acceptDownloads: o.downloads === true,
   })
   const page = await context.newPage()
+  if (o.init !== undefined) await page.addInitScript(o.init)
   const faults: string[] = []
   const note = (text: string) => {
     if (o.allow?.test(text) !== true) faults.push(text)

@@ -72,8 +72,7 @@ export async function servePages(first: Scene, port = 0) {
       if (path === '/runs/1/alarms') return json(scene.state.alarms)
       if (path === '/runs/1/state') return json(scene.stateAt(url.searchParams.has('atMs') ? n('atMs') : scene.endMs))
       if (path === '/runs/1/trends') return json(scene.trends(n('fromMs'), n('toMs'), n('buckets')))
-      const more = [...extra].find(([key]) => path === key)
-      if (more !== undefined) return json(more[1])
+      if (extra.has(path)) return json(extra.get(path))
       return json({ code: 'HTTP_404', message: `nothing at ${url.pathname}`, hint: null, place: null }, 404)
     }
     const file = join(pages, normalize(url.pathname === '/' ? '/index.html' : url.pathname))

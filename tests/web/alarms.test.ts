@@ -1,7 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import type { AlarmRow } from '../../server/wire/index.ts'
-import { asAt, countsOf, firstOut, inFlood, orderOf } from '../../web/model/alarm-list.ts'
+import { asAt, countsOf, orderOf, pinnedOf } from '../../web/model/alarm-list.ts'
 import { alarmOf, t0 } from '../helpers/scene.ts'
 
 const minute = 60_000
@@ -37,14 +37,27 @@ describe('order of the list', () => {
 })
 
 describe('flood', () => {
-  it('begins with the eleventh alarm in ten minutes, holds at five and ends at four', () => {
-    const eleven = Array.from({ length: 11 }, (_, i) => raised(i + 1, i * 0.5))
-    const now = t0 + 6 * minute
-    expect(inFlood(eleven.slice(1), now, false)).toBe(false)
-    expect(inFlood(eleven, now, false)).toBe(true)
-    expect(inFlood(eleven.slice(0, 5), now, true)).toBe(true)
-    expect(inFlood(eleven.slice(0, 4), now, true)).toBe(false)
-    expect(firstOut(eleven, now)?.id).toBe(1)
+  const flood = (first: AlarmRow) => ({ sinceMs: first.raisedMs, count: 12, first })
+
+  // ALM-14
+  it('pins the first alarm, also when it is over, and the oldest of the most urgent that nobody has acknowledged', () => {
+    const over = raised(1, 0, { state: 'NORM', active: false, needsAck: false })
+    const rows = [
+      over,
+      raised(2, 1, { priority: 'low' }),
+      raised(3, 2, { priority: 'high', state: 'ACKED', needsAck: false }),
+      raised(4, 3, { priority: 'high' }),
+      raised(5, 4, { priority: 'high' }),
+    ]
+    expect(pinnedOf(rows, flood(over))).toEqual({ first: 1, top: 4 })
+    expect(pinnedOf([over, rows[2]!], flood(over))).toEqual({ first: 1, top: null })
+    expect(pinnedOf(rows, null)).toBeNull()
+  })
+  // ALM-14
+  it('pins stand on top in their order, and never move a row while somebody is at the list', () => {
+    const rows = [raised(1, 0), raised(2, 1), raised(3, 2)]
+    expect(orderOf(rows, [], false, [1, 2])).toEqual([1, 2, 3])
+    expect(orderOf(rows, [3, 2, 1], true, [1])).toEqual([3, 2, 1])
   })
 })
 
@@ -54,11 +67,13 @@ it('counts what stands, what is not acknowledged and what is put aside, by prior
     raised(2, 0, { state: 'ACKED', needsAck: false }),
     raised(3, 0, { priority: 'high', state: 'RTNUN', active: false }),
     raised(4, 0, { priority: 'low', state: 'SHELVED' }),
+    raised(5, 0, { state: 'SBD' }),
+    raised(6, 0, { state: 'OOS' }),
   ])
   expect(c.medium).toEqual({ n: 2, unack: 1, active: 2 })
   expect(c.high).toEqual({ n: 1, unack: 1, active: 0 })
   expect(c.low.n).toBe(0)
-  expect(c.shelved).toBe(1)
+  expect([c.shelved, c.suppressed, c.outOfService]).toEqual([1, 1, 1])
 })
 
 it('shows an alarm of a stored run as it stood: before its acknowledgement UNACK, after it ACK, after both NORM', () => {

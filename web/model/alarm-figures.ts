@@ -29,11 +29,12 @@ export const periods = [
 ] as const
 
 /**
- * A local time as a `datetime-local` field gives it (`2031-01-14T03:12`) to ms since 1970 in a zone of which only the distance to UTC is known; of an hour that
+ * A local time as people write it (`2031-01-14 03:12`) to ms since 1970 in a zone of which only the distance to UTC is known; of an hour that
  * comes twice the first. Null where the text is no time.
  */
 export function fromLocal(text: string, offsetMs: (tMs: number) => number): number | null {
-  const wall = Date.parse(`${text}Z`)
+  const parts = /^\s*(\d{4}-\d\d-\d\d)[ T](\d\d:\d\d)\s*$/.exec(text)
+  const wall = parts === null ? Number.NaN : Date.parse(`${parts[1]}T${parts[2]}Z`)
   if (Number.isNaN(wall)) return null
   // The distance is asked for at the time itself: once for a guess, once for the guess made right.
   const early = wall - offsetMs(wall - offsetMs(wall) - hour)
@@ -42,4 +43,4 @@ export function fromLocal(text: string, offsetMs: (tMs: number) => number): numb
 }
 /** The other way round, to the minute. */
 export const toLocal = (tMs: number, offsetMs: (tMs: number) => number): string =>
-  new Date(tMs + offsetMs(tMs)).toISOString().slice(0, 16)
+  new Date(tMs + offsetMs(tMs)).toISOString().slice(0, 16).replace('T', ' ')

@@ -6,6 +6,7 @@ import { onScreen } from '../model/on-screen.ts'
 import { causeWords, kindWords } from '../model/words.ts'
 import { asideForm, backForm, resetForm } from './alarm-forms.ts'
 import { alarmHelp } from './alarm-help.ts'
+import { uncovered } from './covered.ts'
 import { el, fill, say } from './dom.ts'
 import { lookOf, markView, stateWord } from './mark.ts'
 
@@ -19,11 +20,8 @@ export interface AlarmHooks {
 /** An act without its person, who is added where it is sent. */
 export type ActBodyOf = ActBody extends infer A ? (A extends unknown ? Omit<A, 'person'> : never) : never
 
-/** Room that the strip and the foot cover, by their height now. */
-const covered = (selector: string): number => document.querySelector(selector)?.getBoundingClientRect().height ?? 0
 /** Whether a row can be read as a whole right now: only then may it be acknowledged (ALM-07). */
-export const isSeen = (node: Element): boolean =>
-  onScreen(node.getBoundingClientRect(), covered('.strip'), window.innerHeight - covered('.foot'))
+const isSeen = (node: Element): boolean => onScreen(node.getBoundingClientRect(), ...uncovered(node))
 
 /** One alarm: mark, state, what and when, one button for what it waits for, and below it the ways on from it. */
 export function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
@@ -31,7 +29,7 @@ export function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
   const mark = el('div', { class: 'm' })
   const state = el('p', { class: 'st' })
   const title = el('p', { class: 't' })
-  const when = el('p', { class: 'w' })
+  const when = el('span')
   const firstTag = el('span', { class: 'tag inv', text: 'FIRST', hidden: true })
   const topTag = el('span', { class: 'tag inv', text: 'MOST URGENT', hidden: true })
   const refused = el('p', { class: 'refused', role: 'alert', hidden: true })
@@ -80,8 +78,9 @@ export function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
     el('div', { class: 'mk' }, mark, state),
     el('div', { class: 'tx' }, title, el('p', { class: 'w' }, firstTag, ' ', topTag, ' ', when)),
     el('div', { class: 'bt' }, ...(hooks.act === null ? [] : [ack, reset, back])),
+    ways,
   )
-  const node = el('li', {}, head, ways, refused, details)
+  const node = el('li', {}, head, refused, details)
   const keys: Record<string, () => void> = {
     a: () => void acknowledge(),
     h: () => help.click(),

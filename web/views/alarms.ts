@@ -2,6 +2,7 @@ import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
 import { orderOf, pinnedOf } from '../model/alarm-list.ts'
 import type { ZoneClock } from '../model/clock.ts'
 import { type AlarmHooks, rowView } from './alarm-row.ts'
+import { watchCovered } from './covered.ts'
 import { count, el, say } from './dom.ts'
 
 export type { ActBodyOf } from './alarm-row.ts'
@@ -14,6 +15,7 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
   const list = el('ul', { class: 'alarms' })
   const empty = el('p', { class: 'hush' })
   const more = el('p', { class: 'row to-pages' })
+  watchCovered()
   const node = el(
     'section',
     { class: 'al', 'aria-labelledby': 'alarms-title' },
@@ -94,7 +96,7 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
           }
         shown = order
       }
-      let top = 0
+      let top = document.querySelector<HTMLElement>('.person > .answer')?.offsetHeight ?? 0
       for (const [i, id] of order.entries()) {
         const li = rows.get(id)!.node
         const isPinned = i < pinned.length && pinned.includes(id)

@@ -17,7 +17,7 @@ export function periodView(
   chosen: (p: Period) => void,
 ) {
   const field = (id: string, text: string) => {
-    const input = el('input', { type: 'datetime-local', id })
+    const input = el('input', { type: 'text', id, size: 16, placeholder: '2031-01-14 03:12', autocomplete: 'off' })
     return { input, node: el('label', { class: 'when' }, el('span', { text }), input) }
   }
   const from = field('period-from', 'From')
@@ -51,9 +51,15 @@ export function periodView(
     event.preventDefault()
     const fromMs = fromLocal(from.input.value, clock.offsetMs)
     const toMs = fromLocal(to.input.value, clock.offsetMs)
-    if (fromMs === null || toMs === null || !(toMs > fromMs)) {
+    const wrong =
+      fromMs === null || toMs === null
+        ? 'no time of the kind 2031-01-14 03:12 – write year, month, day, hour and minute'
+        : toMs > fromMs
+          ? null
+          : 'the period ends before it begins – put the earlier time into From'
+    if (wrong !== null || fromMs === null || toMs === null) {
       says.hidden = false
-      says.textContent = 'refused: the period ends before it begins – put the earlier time into From'
+      says.textContent = `refused: ${wrong}`
       return
     }
     take({ fromMs, toMs }, null)

@@ -82,7 +82,7 @@ export function soundView(announce: (text: string) => void) {
       : audio === null
         ? 'This browser makes no sound: alarms are seen, not heard'
         : 'This browser keeps the page silent: press a key or click once in it'
-    if (sounding === null) silence.setAttribute('aria-disabled', 'true')
+    if (sounding === null || !available()) silence.setAttribute('aria-disabled', 'true')
     else silence.removeAttribute('aria-disabled')
   }
 
