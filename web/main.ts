@@ -8,6 +8,7 @@ import { loadRun } from './run-store.ts'
 import { openSession } from './session.ts'
 import { publicPages, sitePages } from './site-pages.ts'
 import { el, fill, say } from './views/dom.ts'
+import { entriesView } from './views/entries.ts'
 import { flushView } from './views/flush.ts'
 import { footView } from './views/foot.ts'
 import { handOverView } from './views/handover.ts'
@@ -15,6 +16,7 @@ import { refreshPalette } from './views/palette.ts'
 import { performanceView } from './views/performance.ts'
 import { type ReplayView, replayView } from './views/replay.ts'
 import { runsView } from './views/runs.ts'
+import { settingsView } from './views/settings.ts'
 import { soundView } from './views/sound.ts'
 import { cutView, stripView } from './views/strip.ts'
 import { trendBoard } from './views/trend-board.ts'
@@ -74,6 +76,7 @@ const shell: Shell = {
   cut,
   announce: (text) => say(says, text),
   person: session.person,
+  role: () => session.now()?.person?.role ?? null,
   needPerson() {
     if (session.mayAct()) return true
     document.getElementById('person')?.focus()
@@ -134,7 +137,15 @@ function heard(): void {
   ])
 }
 
-const pages = ['watch', 'flush', 'replay', 'alarms', 'handover', 'trends', ...Object.keys(sitePages)]
+const pages = ['watch', 'flush', 'replay', 'alarms', 'handover', 'trends', 'entries', 'settings', ...Object.keys(sitePages)]
+/** Pages about one run or its skid. */
+const deskPages: Readonly<Record<string, (detail: RunDetail, shell: Shell) => { node: HTMLElement; title: string; stop(): void }>> =
+  {
+    alarms: (detail) => performanceView(detail),
+    handover: handOverView,
+    entries: entriesView,
+    settings: settingsView,
+  }
 /** Where the address leads: #/PAGE, #/PAGE/RUN, #/replay/RUN/MOMENT, or a page of the site. */
 function route(): { page: string; run: number | null; atMs: number | null; rest: string } {
   const [, page, rest = '', at] = location.hash.split('/')
@@ -218,7 +229,7 @@ async function go(): Promise<void> {
     }
     if (runs.length === 0) runs = await getJson<RunRow[]>('/api/runs')
     if (!here()) return
-    if (page === 'alarms' || page === 'handover' || page === 'trends') {
+    if (page in deskPages || page === 'trends') {
       const of = run ?? runs.find((r) => r.state === 'live')?.run ?? runs[0]?.run
       idle(page, 'Clearbore')
       if (of === undefined) return note('No run yet.')
@@ -233,7 +244,7 @@ async function go(): Promise<void> {
       const detail = await getJson<RunDetail>(`/api/runs/${of}`)
       if (!here()) return
       idle(page, detail.skid)
-      const view = page === 'alarms' ? performanceView(detail) : handOverView(detail, shell)
+      const view = deskPages[page]!(detail, shell)
       desk = view
       fill(place, view.node)
       document.title = `${view.title} · Clearbore`

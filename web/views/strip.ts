@@ -35,6 +35,8 @@ export function stripView(hooks: StripHooks) {
     ['trends', el('a', { href: '#/trends', text: 'Trends' })],
     ['alarms', el('a', { href: '#/alarms', text: 'Alarms' })],
     ['handover', el('a', { href: '#/handover', text: 'Hand-over' })],
+    ['entries', el('a', { href: '#/entries', text: 'Entries' })],
+    ['settings', el('a', { href: '#/settings', text: 'Settings' })],
     ['people', el('a', { href: '#/people', text: 'People' })],
   ] as const
   const items = links.map(([page, link]) => el('li', { 'data-page': page, hidden: page === 'people' }, link))

@@ -1,4 +1,4 @@
-import type { ActReply, LiveState, ServerMessage } from '../../server/wire/index.ts'
+import type { ActReply, LiveState, RoleName, ServerMessage } from '../../server/wire/index.ts'
 import { postJson } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { refusalText } from '../model/alarm-refusal.ts'
@@ -26,6 +26,8 @@ export interface Shell {
   /** Said to assistive technology, politely. */
   announce(text: string): void
   person(): string
+  /** What that person may; null: nobody is signed in. */
+  role(): RoleName | null
   /** True when acts would be taken; else leads to signing in. */
   needPerson(): boolean
 }
