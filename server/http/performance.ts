@@ -22,8 +22,9 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
   /** The period asked for within the run; the whole run by default. */
   function periodOf(p: RunParts, q: { fromMs?: number; toMs?: number }): [number, number] {
     const span = s.store.sequence.span(p.run)
-    const now =
-      s.monitor.engine(p.run) === null ? (span?.toMs ?? 0) + 1 : Math.max(s.monitor.state(p.run).clock.nowMs, (span?.toMs ?? 0) + 1)
+    const clockMs = s.monitor.engine(p.run) === null ? 0 : s.monitor.state(p.run).clock.nowMs
+    // The end is not part of a period: what was done a moment ago is.
+    const now = Math.max(clockMs, span?.toMs ?? 0) + 1
     const [fromMs, toMs] = [q.fromMs ?? span?.fromMs ?? 0, Math.min(q.toMs ?? now, now)]
     if (toMs < fromMs)
       throw new MonitorError('USAGE', `the period ends before it begins: ${fromMs} to ${toMs}`, {

@@ -3,6 +3,7 @@ import { defaultPolicy } from '../core/alarms/book.ts'
 import { createFloodWatch, type FloodNow } from '../core/alarms/flood.ts'
 import type { Occurrence } from '../core/alarms/occurrence.ts'
 import type { PipelineEvent } from '../core/pipeline/events.ts'
+import { alarmKinds } from '../core/report.ts'
 import type { AlarmHelp, AlarmRow, Aside, TransitionRow } from '../wire/alarm.ts'
 
 interface OfKey {
@@ -11,6 +12,7 @@ interface OfKey {
   /** What puts it aside, by state: more than one may at a time, and the one shown is that of `state`. */
   aside: Partial<Record<AlarmStateName, Aside & { readonly untilMs: number | null }>>
   latest: number
+  priority: AlarmRecord['priority']
 }
 /** Inputs that put an alarm aside, and those that end it. */
 const begins: Partial<Record<AlarmRecord['input'], AlarmStateName>> = { shv: 'SHELVED', 'sbd+': 'SBD', 'oos+': 'OOS' }
@@ -30,7 +32,7 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
   const flood = createFloodWatch()
   let changed = new Set<number>()
   const keyOf = (key: string): OfKey => {
-    const found = keys.get(key) ?? { state: 'NORM', badInput: false, aside: {}, latest: 0 }
+    const found = keys.get(key) ?? { state: 'NORM', badInput: false, aside: {}, latest: 0, priority: 'medium' }
     keys.set(key, found)
     return found
   }
@@ -70,6 +72,20 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
     }
   }
 
+  /** An alarm taken out of service before it was ever raised has no occurrence; it is listed all the same, under a number below 0. */
+  function neverRaised(key: string, k: OfKey, id: number): AlarmRow {
+    const [kind = '', place = null] = key.split(':')
+    const sinceMs = k.aside.OOS?.sinceMs ?? 0
+    k.latest = id
+    const out = row({
+      id, key, kind: alarmKinds.find((n) => n === kind) ?? 'monitor', priority: k.priority, segment: place, tag: null, raisedMs: sinceMs, clearedMs: sinceMs,
+      value: null, limit: null, unit: null, message: 'out of service, never raised', cause: null, onset: null, detector: 'none',
+      evidence: { for: [], against: [], notExcluded: [] }, annunciated: false, configuration: 0,
+    }) // biome-ignore format: a list
+    k.latest = 0
+    return out
+  }
+
   return {
     take(e: PipelineEvent): void {
       if (e.kind === 'alarm') {
@@ -83,6 +99,7 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
         const k = keyOf(r.key)
         k.state = r.to
         k.badInput = r.quality === 'bad'
+        k.priority = r.priority
         if (r.outcome !== 'refused') {
           const begun = begins[r.input]
           const ended = ends[r.input] ?? (r.input === 'clr' && r.from === 'SHELVED' && r.to !== 'SHELVED' ? 'SHELVED' : undefined)
@@ -105,12 +122,14 @@ export function createAlarmLog(help: (o: Occurrence) => AlarmHelp | null) {
     },
     /** Every occurrence, first raised first. */
     all: (): AlarmRow[] => [...occurrences.values()].sort((a, b) => a.id - b.id).map(row),
-    /** The latest occurrence of each alarm that is not plainly normal, first raised first. */
-    standing: (): AlarmRow[] =>
-      [...occurrences.values()]
+    /** The latest occurrence of each alarm that is not plainly normal, first raised first; before them what is out of service and was never raised. */
+    standing: (): AlarmRow[] => [
+      ...[...keys].filter(([, k]) => k.latest === 0 && k.state === 'OOS').map(([key, k], i) => neverRaised(key, k, -1 - i)),
+      ...[...occurrences.values()]
         .filter((o) => keyOf(o.key).latest === o.id && keyOf(o.key).state !== 'NORM')
         .sort((a, b) => a.id - b.id)
         .map(row),
+    ],
     /** The flood at a moment with its first alarm as it stands now; null where there is none. */
     flood(atMs: number): (FloodNow & { readonly first: AlarmRow }) | null {
       const now = flood.now(atMs)

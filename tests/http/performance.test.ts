@@ -55,6 +55,34 @@ describe('alarm performance, what led to an alarm, hand-over', () => {
     expect([early.comments, early.changes]).toEqual([[], []])
   }, 60_000)
 
+  // ALM-08, USR-05
+  it('an alarm shelved through the API is shelved on the page, in the note and in the figures; what may not be is refused with its reason', async () => {
+    const s = await served()
+    await s.live(150)
+    const state = async () => ((await s.get(`/api/runs/${s.run}/state`)).json() as { alarms: AlarmRow[] }).alarms
+    const alarm = (await state()).find((a) => a.kind === 'fouling')!
+    const act = async (body: object) =>
+      (await s.post(`/api/runs/${s.run}/acts`, body)).json() as { transitions?: { outcome: string; reason: string }[] }
+    const long = await act({ kind: 'shelve', alarm: alarm.id, minutes: alarm.shelveMaxMin + 1, reason: 'known, flush is planned' })
+    expect(long.transitions).toMatchObject([{ outcome: 'refused' }])
+    await act({ kind: 'shelve', alarm: alarm.id, minutes: 20, reason: 'known, flush is planned' })
+    const shelved = (await state()).find((a) => a.id === alarm.id)!
+    expect(shelved).toMatchObject({
+      state: 'SHELVED',
+      needsAck: false,
+      aside: { person: 'demo operator', reason: 'known, flush is planned' },
+    })
+    const note = (await s.get(`/api/runs/${s.run}/hand-over`)).json() as HandOver
+    expect(note.shelved.map((a) => [a.id, a.shelvedUntilMs])).toEqual([[alarm.id, shelved.shelvedUntilMs]])
+    const figures = (await s.get(`/api/runs/${s.run}/alarm-performance`)).json() as AlarmPerformance
+    expect([figures.outsideProcedure, figures.refused]).toEqual([0, 1])
+    // Twenty minutes later it calls again by itself.
+    await s.live(21)
+    expect((await state()).find((a) => a.id === alarm.id)).toMatchObject({ state: 'UNACK', aside: null })
+    await act({ kind: 'out-of-service', key: alarm.key, reason: 'pressure tap is being changed' })
+    expect(((await s.get(`/api/runs/${s.run}/hand-over`)).json() as HandOver).outOfService.map((a) => a.id)).toEqual([alarm.id])
+  }, 60_000)
+
   it('refuses an alarm that is not there and a period that ends before it begins, with the mend', async () => {
     const s = await served()
     await s.live(2)

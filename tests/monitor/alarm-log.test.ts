@@ -65,6 +65,28 @@ it('an alarm suppressed by design says the name of the logic', () => {
   expect(log.standing()[0]).toMatchObject({ state: 'SBD', aside: { logic: 'low flow while the pump is stopped', person: null } })
 })
 
+// ALM-08
+it('an alarm taken out of service before it was ever raised is listed and counted, and gone from the list when it is back', () => {
+  const { book, log, fold } = logged()
+  book.act({ kind: 'out-of-service', key: 'flow:R1', person: 'a', reason: 'meter not fitted yet', tMs: 5000 })
+  fold()
+  expect(log.standing()).toMatchObject([
+    {
+      id: -1,
+      key: 'flow:R1',
+      kind: 'flow',
+      segment: 'R1',
+      state: 'OOS',
+      active: false,
+      needsAck: false,
+      aside: { sinceMs: 5000, reason: 'meter not fitted yet' },
+    },
+  ])
+  book.act({ kind: 'in-service', key: 'flow:R1', person: 'a', reason: 'meter fitted', tMs: 9000 })
+  fold()
+  expect([log.standing(), log.all()]).toEqual([[], []])
+})
+
 // ALM-14
 it('eleven alarms in ten minutes are told as a flood with the first of them, which stays although it is over and acknowledged', () => {
   const { book, log, fold } = logged()

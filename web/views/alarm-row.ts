@@ -141,6 +141,8 @@ export function rowView(first: AlarmRow, clock: ZoneClock, hooks: AlarmHooks) {
         back.hidden = a.state !== 'SHELVED' && a.state !== 'OOS'
         say(back, a.state === 'OOS' ? 'Into service' : 'Unshelve')
         aside.hidden = a.state === 'NORM' || a.state === 'OOS'
+        // Put out of service before it was ever raised: nothing led to it.
+        before.hidden = a.id < 0
         say(aside, a.state === 'SHELVED' ? 'Extend' : 'Put aside')
         node.dataset['state'] = a.state
         node.dataset['alarm'] = String(a.id)

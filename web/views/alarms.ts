@@ -53,10 +53,16 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
     for (const row of seen()) await row.acknowledge()
     drawSeen()
   })
+  let asked = 0
+  /** Measuring rows costs a layout: once a frame, and only where more than one waits. */
   function drawSeen(): void {
-    const n = seen().length
-    ackSeen.hidden = n < 2
-    say(ackSeen, `Acknowledge the ${n} on screen`)
+    asked ||= requestAnimationFrame(() => {
+      asked = 0
+      const waits = [...rows.values()].filter((r) => r.needsAck()).length
+      const n = waits < 2 ? 0 : seen().length
+      ackSeen.hidden = n < 2
+      say(ackSeen, `Acknowledge the ${n} on screen`)
+    })
   }
   window.addEventListener('scroll', drawSeen, { passive: true })
 
@@ -96,7 +102,7 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
           }
         shown = order
       }
-      let top = document.querySelector<HTMLElement>('.person > .answer')?.offsetHeight ?? 0
+      let top = pinned.length === 0 ? 0 : (document.querySelector<HTMLElement>('.person > .answer')?.offsetHeight ?? 0)
       for (const [i, id] of order.entries()) {
         const li = rows.get(id)!.node
         const isPinned = i < pinned.length && pinned.includes(id)
@@ -126,6 +132,9 @@ export function alarmsView(clock: ZoneClock, hooks: AlarmHooks) {
       node.dataset['unack'] = String(unack)
       node.dataset['flood'] = String(flood !== null)
     },
-    stop: (): void => window.removeEventListener('scroll', drawSeen),
+    stop(): void {
+      window.removeEventListener('scroll', drawSeen)
+      cancelAnimationFrame(asked)
+    },
   }
 }
