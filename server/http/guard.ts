@@ -30,7 +30,8 @@ export function createGuard(
       const name = host === undefined ? null : nameOf(host)
       if (name === null || !isOurs(name)) return 'host'
       if (origin === undefined) return null
-      return origin === `${isTls ? 'https' : 'http'}://${host}` || origin === outside?.origin ? null : 'origin'
+      const own = name === outside?.hostname ? outside.origin : `${isTls ? 'https' : 'http'}://${host}`
+      return origin === own || origin === outside?.origin ? null : 'origin'
     },
   }
 }

@@ -5,11 +5,13 @@ import { exportRun } from '../../server/export-run.ts'
 import { createImports } from '../../server/imports.ts'
 import { createCatalogue } from '../../server/monitor/catalogue.ts'
 import { createPeople } from '../../server/people/people.ts'
+import type { Role } from '../../server/people/roles.ts'
 import { createHasher, type ScryptCost } from '../../server/people/scrypt.ts'
 import { loadSkid } from '../../server/skid/check.ts'
 import { handClock, shortNight, simulatedBench, tempDir } from '../monitor/bench.ts'
 
 export const local = { host: '127.0.0.1:8460' }
+export const secret = 'a kettle under the blue staircase'
 /** Passwords in tests cost a thousandth. */
 export const cheap: ScryptCost = { logN: 6, r: 8, p: 1 }
 
@@ -82,6 +84,14 @@ export async function served(
       await monitor.beat()
     }
   }
+  /** Headers of a browser in which a person of a role has signed in. The first administrator is made beside. */
+  const as = async (role: Role): Promise<{ cookie: string; origin: string }> => {
+    if (!people.any()) await people.links.use(people.administratorLink(), { name: 'Odo Fenn', password: secret })
+    const name = `Person ${'abcdefghijklmnopqrstuvwxyz'[people.accounts.list().length]}`
+    const { token } = people.accounts.add(name, role, { id: 1, name: 'Odo Fenn', reason: 'a test' })
+    const session = await people.links.use(token, { name: null, password: secret })
+    return { cookie: `clearbore=${session}`, origin: `http://${local.host}` }
+  }
   const get = async (url: string, headers: Record<string, string> = {}) => {
     const reply = await app.inject({ url, headers: { ...local, ...headers } })
     return { status: reply.statusCode, headers: reply.headers, text: reply.body, json: () => reply.json() }
@@ -90,6 +100,6 @@ export async function served(
     const reply = await app.inject({ method: 'POST', url, headers: { ...local, ...headers }, payload: payload as object })
     return { status: reply.statusCode, json: () => reply.json() }
   }
-  return { ...bench, app, people, hasher, wall, hub, imports, catalogue, log: lines, live, get, post }
+  return { ...bench, app, people, as, hasher, wall, hub, imports, catalogue, log: lines, live, get, post }
 }
 export type Served = Awaited<ReturnType<typeof served>>
