@@ -2,16 +2,18 @@ import type { AlarmRecord } from './core/alarms/alarm-state.ts'
 import { MonitorError } from './core/errors.ts'
 import type { Report } from './core/report.ts'
 import type { Entry } from './core/sequence.ts'
+import { lateActs } from './monitor/after-end.ts'
 import { createEngine, type Engine } from './monitor/engine.ts'
 import { alarmsAt } from './monitor/stored-state.ts'
 import type { RunParts } from './monitor/trends.ts'
 import { type AlarmFilter, alarmsCsv, alarmsJson, filteredHistory } from './record/alarm-history.ts'
+import { eventsCsv } from './record/events-csv.ts'
 import { type ExportFacts, exportFacts } from './record/facts.ts'
 import { recordText } from './record/record-json.ts'
 import { samplesCsv } from './record/samples-csv.ts'
 import type { RunRow } from './wire/run.ts'
 
-export const exportKinds = ['alarms', 'samples', 'record'] as const
+export const exportKinds = ['alarms', 'samples', 'events', 'record'] as const
 export type ExportKind = (typeof exportKinds)[number]
 
 export interface ExportRequest {
@@ -39,6 +41,7 @@ export const noFilter: AlarmFilter = { fromMs: null, toMs: null, kind: null, seg
 export const formatsOf: Readonly<Record<ExportKind, readonly ('csv' | 'json')[]>> = {
   alarms: ['csv', 'json'],
   samples: ['csv'],
+  events: ['csv'],
   record: ['json'],
 }
 
@@ -72,6 +75,12 @@ export function exportRun(r: ExportRequest): Exported {
   const trail = { store: store.trail.signing().store, count: links.length, head: links.at(-1)?.hash ?? '' }
   const entries = () => upTo(store.sequence.read(run), end.entries)
 
+  if (r.what === 'events') {
+    const acts = [...store.sequence.acts(run), ...lateActs(store, run)]
+    const lines = [...eventsCsv(acts)]
+    const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: lines.length - 1 })
+    return { facts, name, contentType, pieces: gathered(lines) }
+  }
   if (r.what === 'samples') {
     const csv = samplesCsv(skid, store.runs.words(run), entries)
     const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: end.rows, filter: { layout: csv.layout } })

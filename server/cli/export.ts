@@ -15,6 +15,7 @@ Writes a stored run, by its number in the list, into a file. May run beside a se
 
   --what alarms    every transition with time, person and reason (csv), with the occurrences beside it (json)
   --what samples   the readings as a log in order of arrival, times in UTC (csv); reads back to the same values
+  --what events    what people entered: results, changes of drum and filter, comments (csv); reads back with --events
   --what record    the whole recorded sequence, its journal and report (json); clearbore can analyse it again
   --out FILE       '-' writes to stdout. Beside a csv file, FILE.facts.json says what it is: run, tool and configuration
                    version, period, filter, time zone, number of rows, cautions

@@ -1,16 +1,17 @@
 import { Readable } from 'node:stream'
 import type { FastifyPluginAsyncTypebox } from '@fastify/type-provider-typebox'
 import { Type } from 'typebox'
+import type { ExportKind } from '../export-run.ts'
 import { problemSchema } from './schemas.ts'
 import type { Services } from './services.ts'
 
-const files = ['alarms.csv', 'alarms.json', 'samples.csv', 'record.json'] as const
+const files = ['alarms.csv', 'alarms.json', 'samples.csv', 'events.csv', 'record.json'] as const
 const textOrAll = Type.Optional(Type.String({ maxLength: 100 }))
 
 /** Downloads of a run: alarm history, readings, record. */
 export const exportRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => {
   for (const file of files) {
-    const [what, format] = file.split('.') as ['alarms' | 'samples' | 'record', 'csv' | 'json']
+    const [what, format] = file.split('.') as [ExportKind, 'csv' | 'json']
     const querystring = Type.Object(
       what === 'alarms'
         ? {

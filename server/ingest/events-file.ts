@@ -8,11 +8,12 @@ import { type SplitRow, splitRows } from './csv/split.ts'
 
 export type EventAct = Extract<Act, { kind: 'event' }>
 
-const columns = ['time', 'kind', 'value', 'unit', 'person', 'note'] as const
+const columns = ['time', 'kind', 'value', 'unit', 'person', 'note', 'of', 'taken'] as const
 
 /**
- * The events file, CSV `time,kind,value,unit,person,note` (comma, semicolon or tab; any order; all but time and kind may be left out): acts of
- * kind `event`, sorted by time, those of one time in the order of the file. Times are ISO 8601, in `timeZone` where they carry no zone. An
+ * The events file, CSV `time,kind,value,unit,person,note` (comma, semicolon or tab; any order; all but time and kind may be left out; beyond the
+ * contract `of`, the stream or segment it belongs to, and `taken`, the time of the sample): acts of kind `event`, sorted by time, those of one
+ * time in the order of the file. Times are ISO 8601, in `timeZone` where they carry no zone. An
  * empty value is null, an empty person an empty name. Errors: EVENTS_FILE with line and column (of the table), for the first mistake met.
  */
 export function readEvents(name: string, bytes: Uint8Array, timeZone: string): EventAct[] {
@@ -45,8 +46,9 @@ export function readEvents(name: string, bytes: Uint8Array, timeZone: string): E
       'add at least time and kind',
       { line: header.line },
     )
-  const clock = new FileClock(['iso'], timeZone, null, 0, freshClock())
-  const acts = rows.slice(1).map((row) => readEvent(name, row, header.cells.length, at, clock))
+  const clockOf = () => new FileClock(['iso'], timeZone, null, 0, freshClock())
+  const clocks = { entry: clockOf(), sample: clockOf() }
+  const acts = rows.slice(1).map((row) => readEvent(name, row, header.cells.length, at, clocks))
   return acts.sort((a, b) => a.tMs - b.tMs)
 }
 
@@ -55,7 +57,7 @@ function readEvent(
   row: SplitRow,
   width: number,
   at: Record<(typeof columns)[number], number>,
-  clock: FileClock,
+  clocks: { readonly entry: FileClock; readonly sample: FileClock },
 ): EventAct {
   const cell = (c: (typeof columns)[number]): string => row.cells[at[c]]?.trim() ?? ''
   const fail = (c: (typeof columns)[number], message: string, mend: string): MonitorError =>
@@ -66,13 +68,17 @@ function readEvent(
       column: width + 1,
     })
   const stamp = new TextEncoder().encode(cell('time'))
-  const tMs = clock.read(stamp, 0, stamp.length)
+  const tMs = clocks.entry.read(stamp, 0, stamp.length)
   if (Number.isNaN(tMs))
     throw fail(
       'time',
       `found the time "${cell('time').slice(0, 40)}", expected ISO 8601 such as 2031-05-04T13:20:00Z`,
       'correct the time',
     )
+  const sample = new TextEncoder().encode(cell('taken'))
+  const atMs = sample.length === 0 ? null : clocks.sample.read(sample, 0, sample.length)
+  if (Number.isNaN(atMs))
+    throw fail('taken', `found the time "${cell('taken').slice(0, 40)}", expected ISO 8601 or nothing`, 'correct the time')
   const event = cell('kind')
   if (event === '') throw fail('kind', 'found no kind of event, expected one such as "drum change"', 'say what happened')
   return {
@@ -83,6 +89,8 @@ function readEvent(
     value: readValue(cell('value'), fail),
     unit: cell('unit') || null,
     note: cell('note'),
+    ...(cell('of') === '' ? {} : { of: cell('of') }),
+    ...(atMs === null ? {} : { atMs }),
   }
 }
 

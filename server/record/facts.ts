@@ -10,7 +10,7 @@ export const cautions: readonly string[] = [
 
 /** What an export says of itself. */
 export interface ExportFacts {
-  readonly export: 'alarms' | 'samples' | 'record'
+  readonly export: 'alarms' | 'samples' | 'events' | 'record'
   readonly tool: { readonly name: 'clearbore'; readonly version: string }
   /** Version of the tool that recorded the run; the alarms are that version's. */
   readonly recordedWith: string

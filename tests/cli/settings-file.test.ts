@@ -1,11 +1,11 @@
 import { describe, expect, it } from 'vitest'
-import { withSettings } from '../../server/cli/settings-file.ts'
+import { readSettings } from '../../server/cli/settings-file.ts'
 import { heron } from '../helpers/skids.ts'
 
 const skid = heron()
 const line = (text: string): string => {
   try {
-    withSettings(skid, text, 's.yaml')
+    readSettings(skid, text, 's.yaml')
   } catch (error) {
     return (error as { line(): string }).line()
   }
@@ -14,7 +14,7 @@ const line = (text: string): string => {
 
 describe('settings laid over a skid', () => {
   it('change the limits and the promise they name and leave every other as it was', () => {
-    const s = withSettings(
+    const { skid: s } = readSettings(
       skid,
       'detection: { riseToFindPct: 8 }\nlimits: { R1: { dpHighBar: 5.5, dpHighHighBar: null } }\n',
       's.yaml',
@@ -26,11 +26,32 @@ describe('settings laid over a skid', () => {
   })
 
   it('may be JSON, and may change nothing', () => {
-    expect(withSettings(skid, '{"limits": {"Q1": {"flowLow": 3}}}', 's.json').segments.at(-1)!.limits.flowLow).toBe(3)
-    expect(withSettings(skid, '{}', 's.json')).toEqual(skid)
+    expect(readSettings(skid, '{"limits": {"Q1": {"flowLow": 3}}}', 's.json').skid.segments.at(-1)!.limits.flowLow).toBe(3)
+    expect(readSettings(skid, '{}', 's.json')).toEqual({ skid, acts: [] })
+  })
+
+  // REC-06
+  it('may change any setting from a time of the log on; each such version becomes an act, soonest first, with what it changes', () => {
+    const text = `versions:
+  - { from: 2031-05-05T21:00:00Z, reason: back again, changes: { segments.R1.limits.dpHighBar: 6 } }
+  - from: 2031-05-05 22:30
+    reason: weaker gasket
+    person: R. Tamsin
+    changes: { segments.R1.limits.dpHighBar: 5, alarms.dp-limit.priority: high, suppression.rest.alarms: [flow], suppression.rest.phases: [hold] }
+`
+    const { acts } = readSettings(skid, text, 's.yaml')
+    const at = (iso: string) => Date.parse(iso)
+    expect(acts.map((a) => a.kind === 'settings' && [a.version, a.effectiveMs, a.person, a.changes.map((c) => [c.old, c.new])])).toEqual([
+      [1, at('2031-05-05T20:30:00Z'), 'R. Tamsin', [[6, 5], [null, 'high'], [null, ['flow']], [null, ['hold']]]],
+      [2, at('2031-05-05T21:00:00Z'), '', [[5, 6]]],
+    ]) // biome-ignore format: a list
   })
 
   it.each([
+    ['a version at no time', 'versions:\n  - { from: noon, reason: why, changes: { detection.riseToFindPct: 4 } }\n', /^s\.yaml:2:13: from is 'noon'; expected a time/],
+    ['a version without a reason', 'versions:\n  - { from: 2031-05-05T21:00:00Z, changes: { detection.riseToFindPct: 4 } }\n', /'reason'/],
+    ['a version of a tag', 'versions:\n  - { from: 2031-05-05T21:00:00Z, reason: why, changes: { tags.PT-101.column: x } }\n', /^s\.yaml:2:\d+: tags\.PT-101\.column: cannot change within a run/],
+    ['a version of a group', 'versions:\n  - { from: 2031-05-05T21:00:00Z, reason: why, changes: { detection: {} } }\n', /a setting that is no value/],
     ['nothing', '', /^s\.yaml:1:1: the file is empty; expected /],
     ['a list', '- 1\n', /^s\.yaml:1:1: the file is a list; expected a group with keys detection, limits/],
     ['an unknown key', 'limit: {}\n', /^s\.yaml:1:1: unknown key 'limit'; .*did you mean 'limits'\?/],

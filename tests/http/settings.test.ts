@@ -5,9 +5,11 @@ import { reportText } from '../../server/core/pipeline/collect.ts'
 import type { Report } from '../../server/core/report.ts'
 import * as schemas from '../../server/http/schemas.ts'
 import { settingsComparisonSchema, settingsPageSchema } from '../../server/http/settings-schemas.ts'
+import { readEvents } from '../../server/ingest/events-file.ts'
 import { analyseRecord } from '../../server/record/analyse-record.ts'
 import { loadSkid } from '../../server/skid/check.ts'
 import type { ActRow, LiveState, Marks, SettingsComparison, SettingsPage, TransitionRow } from '../../server/wire/index.ts'
+import { cli } from '../helpers/cli.ts'
 import { shortNight, tempDir } from '../monitor/bench.ts'
 import { holds } from './holds.ts'
 import { type Served, served } from './served.ts'
@@ -83,6 +85,9 @@ describe('settings of a skid over HTTP', () => {
     writeFileSync(file, (await s.get(`/api/runs/${s.run}/export/record.json`)).text)
     const again = await analyseRecord(file, loadSkid)
     expect(reportText(again.report)).toBe(reportText(live))
+    expect(await cli(['analyse', file, '--json', '-'])).toEqual({ code: 0, out: reportText(live), err: '' })
+    const wrong = await cli(['analyse', file, '--skid', 'heron.yaml'])
+    expect([wrong.code, wrong.err]).toEqual([2, expect.stringContaining('--skid does not go with a record')])
     const oos = ((await s.get(`/api/runs/${s.run}/transitions`)).json() as TransitionRow[]).filter((t) => t.input === 'oos+')
     expect(oos.map((t) => [t.key, t.to, t.person, t.reason])).toEqual([
       ['sensor:TT-111', 'OOS', 'demo operator', 'thermocouple is replaced'],
@@ -130,7 +135,15 @@ describe('settings of a skid over HTTP', () => {
     await s.live(14)
     expect(s.monitor.engine(s.run)).toBeNull()
     const before = reportText(await report(s))
-    const kf = { kind: 'event', event: 'Karl Fischer', value: 240, unit: 'ppm', note: 'from the laboratory', of: 'A' }
+    const kf = {
+      kind: 'event',
+      event: 'Karl Fischer',
+      value: 240,
+      unit: 'ppm',
+      note: 'from the laboratory',
+      of: 'A',
+      atMs: Date.UTC(2030, 11, 31, 20),
+    }
     const reply = await s.post(`/api/runs/${s.run}/acts`, kf)
     expect(reply.status).toBe(200)
     holds(schemas.actReplySchema, reply.json())
@@ -141,6 +154,24 @@ describe('settings of a skid over HTTP', () => {
       [null, 'comment', Date.UTC(2031, 0, 1), 'demo operator'],
     ])
     expect(reportText(await report(s))).toBe(before)
+    const csv = (await s.get(`/api/runs/${s.run}/export/events.csv`)).text
+    expect(csv.split('\r\n').slice(0, 2)).toEqual([
+      'time,kind,value,unit,person,note,of,taken,recorded',
+      '2031-01-01T00:00:00.000Z,Karl Fischer,240,ppm,demo operator,from the laboratory,A,2030-12-31T20:00:00.000Z,after the end',
+    ])
+    const { atMs } = kf
+    expect(readEvents('events.csv', new TextEncoder().encode(csv), 'UTC')).toEqual([
+      { ...kf, atMs, person: 'demo operator', tMs: Date.UTC(2031, 0, 1) },
+      {
+        kind: 'event',
+        event: 'comment',
+        value: null,
+        unit: null,
+        note: 'lot released',
+        person: 'demo operator',
+        tMs: Date.UTC(2031, 0, 1),
+      },
+    ])
     const refused = await change(s, { changes: [{ path: limit, new: 5 }] })
     expect([refused.status, refused.json().code]).toEqual([409, 'RUN_ENDED'])
     expect((await page(s)).run).toBeNull()

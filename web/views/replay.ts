@@ -74,6 +74,7 @@ export function replayView(data: RunData, shell: Shell, openAtMs: number | null 
         ['alarms.csv', 'Alarm history, CSV'],
         ['alarms.json', 'Alarm history, JSON'],
         ['samples.csv', 'Readings, CSV'],
+        ['events.csv', 'Entries, CSV'],
         ['record.json', 'Record, JSON'],
       ].map(([file, text]) =>
         el('a', {
