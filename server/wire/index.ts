@@ -24,7 +24,7 @@
  *   GET  /api/runs/:run/transitions                          TransitionRow[]
  *   GET  /api/runs/:run/acts    POST (ActSent → ActReply)    ActRow[]
  *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
- *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|record.json    downloads
+ *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|events.csv|record.json    downloads
  *   GET  /api/skids/:skid/settings                           SettingsPage
  *   GET  /api/skids/:skid/settings/compare?from&to           SettingsComparison
  *   POST /api/skids/:skid/settings (SettingsSent → ActReply) a change of settings on the live run
