@@ -21,6 +21,7 @@ import { serviceRoutes } from './http/service.ts'
 import type { Services } from './http/services.ts'
 import { sessionRoutes } from './http/session.ts'
 import { settingsRoutes } from './http/settings.ts'
+import { trailRoutes } from './http/trail.ts'
 import { uploadRoutes } from './http/uploads.ts'
 import { createHub, type HubSource } from './live/hub.ts'
 import { missedSince } from './monitor/trends.ts'
@@ -132,6 +133,7 @@ export async function buildApp(o: AppOptions) {
       await scope.register(exportRoutes, api)
       await scope.register(performanceRoutes, api)
       await scope.register(settingsRoutes, api)
+      await scope.register(trailRoutes, api)
       await scope.register(uploadRoutes, api)
       await scope.register(sessionRoutes, { people: o.people, access, cookie: cookieName, isSecure, openReading: o.openReading })
       await scope.register(peopleRoutes, { people: o.people })

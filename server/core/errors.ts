@@ -36,6 +36,7 @@ export type ErrorCode =
   | 'RUN_ENDED'
   | 'SETTINGS_UNKNOWN'
   | 'ACT_REFUSED'
+  | 'TRAIL_REVIEW'
   | 'SIGN_IN_NEEDED'
   | 'SIGN_IN_REFUSED'
   | 'SIGN_IN_WAIT'

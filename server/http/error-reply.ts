@@ -12,6 +12,7 @@ const statuses: Partial<Record<ErrorCode, number>> = {
   RUN_UNKNOWN: 404,
   ALARM_UNKNOWN: 404,
   RUN_ENDED: 409,
+  TRAIL_REVIEW: 409,
   SETTINGS_UNKNOWN: 404,
   UPLOAD: 400,
   SKID_FILE: 422,

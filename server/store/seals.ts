@@ -1,5 +1,6 @@
 import type Database from 'better-sqlite3'
 import { type Anchor, checkApart, headStatement, type KeyFolder, keyFolder, type Signer } from '../trail/keys.ts'
+import type { SiteRecord } from '../trail/records.ts'
 import type { Ledger } from './ledger.ts'
 import { site } from './ledger.ts'
 
@@ -27,12 +28,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
   )
   const insert = db.prepare('INSERT INTO seal (count, t_ms, key, signature) VALUES (?, ?, ?, ?)')
   const mark = db.prepare('UPDATE chain SET sealed = count WHERE count > sealed')
-  const hashAt = db.prepare<[number], Buffer>(`SELECT hash FROM link WHERE chain = ${site} AND n = ?`).pluck()
-  const lastKey = db
-    .prepare<[], string>(
-      `SELECT json_extract(json, '$.key') FROM link WHERE chain = ${site} AND json_extract(json, '$.kind') = 'key' ORDER BY n DESC LIMIT 1`,
-    )
-    .pluck()
+  const lastKey = (): string | undefined => ledger.told<SiteRecord>(site).findLast((r) => r.kind === 'key')?.key
   let folder: KeyFolder | null = null
   let signer: Signer | null = null
   let madeIn: string | null = null
@@ -43,7 +39,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
   function compare(): void {
     const anchor = folder?.anchor() ?? null
     if (anchor === null) return
-    const found = hashAt.get(anchor.count - 1)?.toString('hex') ?? 'none'
+    const found = ledger.hashAt(site, anchor.count - 1) ?? 'none'
     if (found === anchor.head) return
     ledger.site({ kind: 'break', signed: { count: anchor.count, head: anchor.head }, found })
     trouble = `this store is not the one that was signed last: record ${anchor.count - 1} of the site's chain ${found === 'none' ? 'is missing' : 'is another'}`
@@ -56,7 +52,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
       try {
         folder = keyFolder(dir, ledger.store())
         signer = folder.find()
-        const before = lastKey.get()
+        const before = lastKey()
         if (signer === null && !isReader) {
           signer = folder.make()
           madeIn = dir
@@ -72,7 +68,7 @@ export function seals(db: Database.Database, ledger: Ledger, wallMs: () => numbe
       const { key } = signer
       db.transaction(() => {
         compare()
-        const before = lastKey.get()
+        const before = lastKey()
         if (before !== key)
           ledger.site({ kind: 'key', key, why: before === undefined ? 'first use' : 'the key before it was not there' })
       }).immediate()

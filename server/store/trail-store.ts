@@ -22,6 +22,8 @@ export function trailStore(
     head: ledger.head,
     /** The chain of a run, also of a deleted one. */
     ofRun: (run: number, from = 0) => ledger.list<RunRecord>(run, from),
+    told: ledger.told,
+    hashAt: ledger.hashAt,
     ofSite: (from = 0) => ledger.list<SiteRecord>(0, from),
     /** Whether the store is as it was written; `anchor` of the key's folder is asked where it was unlocked. */
     verify: (o: Omit<VerifyOptions, 'anchor'> = {}) => db.transaction(() => verifyStore(db, { ...o, anchor: anchor() })).deferred(),

@@ -55,8 +55,8 @@ const seenAs = (count: number): string => `record ${count - 1}`
 export function verifyStore(db: Database.Database, o: VerifyOptions = {}): StoreProof {
   const faults: Fault[] = []
   const hashes = db.prepare<[number, number], Buffer>('SELECT hash FROM link WHERE chain = ? AND n = ?').pluck()
-  const links = db.prepare<[number], { n: number; text: string; hash: Buffer }>(
-    'SELECT n, json AS text, hash FROM link WHERE chain = ? ORDER BY n',
+  const links = db.prepare<[number], { n: number; text: string; hash: Buffer; kind: string }>(
+    'SELECT n, json AS text, hash, kind FROM link WHERE chain = ? ORDER BY n',
   )
   const stands = db.prepare<[number], { count: number; head: Buffer }>('SELECT count, head FROM chain WHERE id = ?')
   const store = db.prepare<[], string>('SELECT id FROM store').pluck().get() ?? ''

@@ -47,7 +47,7 @@ export interface Walked {
  */
 export function walk(
   chain: number,
-  links: Iterable<{ readonly n: number; readonly text: string; readonly hash: Uint8Array | null }>,
+  links: Iterable<{ readonly n: number; readonly text: string; readonly hash: Uint8Array | null; readonly kind?: string }>,
   visit: (record: AnyRecord, hash: string) => void,
 ): Walked {
   let head: Uint8Array = nothing
@@ -63,7 +63,7 @@ export function walk(
     const fault = { chain, n, atMs: typeof record?.recordedMs === 'number' ? record.recordedMs : lastMs, what, found }
     return { count, head: Buffer.from(head).toString('hex'), lastMs, fault }
   }
-  for (const { n, text, hash } of links) {
+  for (const { n, text, hash, kind } of links) {
     if (n !== count) return broken(count, n > count ? 'the record is gone' : `a record with number ${n} stands in its place`, null)
     let record: AnyRecord
     try {
@@ -76,6 +76,8 @@ export function walk(
     const own = hashOf(head, text)
     if (hash !== null && !own.equals(hash))
       return broken(n, 'it was changed, or one before it was: its hash does not follow', record)
+    if (kind !== undefined && kind !== record.kind)
+      return broken(n, `it is kept as '${kind}', so that a page would not show it`, record)
     if ((n === 0) !== (record.kind === 'genesis')) return broken(n, 'the chain does not begin with its first record', record)
     head = own
     count++

@@ -28,6 +28,9 @@
  *   GET  /api/skids/:skid/settings                           SettingsPage
  *   GET  /api/skids/:skid/settings/compare?from&to           SettingsComparison
  *   POST /api/skids/:skid/settings (SettingsSent → ActReply) a change of settings on the live run
+ *   GET  /api/runs/:run/trail?from&limit&person&groups&fromMs&toMs&onlyNew    Trail of a run
+ *   GET  /api/trail?from&limit&person&groups&fromMs&toMs&onlyNew             Trail of the site
+ *   POST /api/trail/reviews (TrailReviewSent → Trail)        looked through as far as the counts say
  *   POST /api/uploads (UploadBody → Upload)                  begins an upload: the skid file and the events as text
  *   PUT  /api/uploads/:upload/logs/:name (the file's bytes as application/octet-stream → Upload)   one for each log file
  *   POST /api/uploads/:upload/import (→ RunRow, state importing)   what was uploaded becomes a run; it appears in GET /api/runs
@@ -35,8 +38,8 @@
  */
 export type * from './act.ts'
 export type * from './alarm.ts'
-export type * from './comparison.ts'
 export type * from './alarm-story.ts'
+export type * from './comparison.ts'
 export type * from './live.ts'
 export type * from './people.ts'
 export type * from './performance.ts'
@@ -45,5 +48,6 @@ export type * from './service.ts'
 export type * from './settings.ts'
 export type * from './skid.ts'
 export type * from './socket.ts'
+export type * from './trail.ts'
 export type * from './trend.ts'
 export type * from './upload.ts'

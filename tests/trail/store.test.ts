@@ -9,6 +9,11 @@ import { aRun, close, newFolder, newStore } from '../store/helpers.ts'
 import { sampleStore, tampered } from './sample-store.ts'
 
 type Db = Database.Database
+interface Link {
+  readonly hash: Buffer
+  readonly kind: string
+  readonly json: string
+}
 let sample: ReturnType<typeof sampleStore>
 /** Kept for the whole file; the folders of helpers go after each test. */
 const root = join(process.env['CLEARBORE_KEYS'] ?? '', 'sample')
@@ -55,7 +60,7 @@ describe('a store', () => {
 
   /** What a record stands for, and how a byte of it is changed. */
   const chained = {
-    link: ['chain', 'n', 'hash', 'json'],
+    link: ['chain', 'n', 'hash', 'kind', 'json'],
     chain: ['count', 'head'],
     seal: ['count', 't_ms', 'key', 'signature'],
     store: ['id'],
@@ -126,9 +131,9 @@ describe('a store', () => {
           const n = pick % (counts[chain]! - 2)
           const data = tampered(sample.data, (db) => {
             const row = (at: number) =>
-              db.prepare('SELECT hash, json FROM link WHERE chain = ? AND n = ?').get(chain, at) as { hash: Buffer; json: string }
-            const set = (at: number, { hash, json }: { hash: Buffer; json: string }) =>
-              db.prepare('UPDATE link SET hash = ?, json = ? WHERE chain = ? AND n = ?').run(hash, json, chain, at)
+              db.prepare('SELECT hash, kind, json FROM link WHERE chain = ? AND n = ?').get(chain, at) as Link
+            const set = (at: number, { hash, kind, json }: Link) =>
+              db.prepare('UPDATE link SET hash = ?, kind = ?, json = ? WHERE chain = ? AND n = ?').run(hash, kind, json, chain, at)
             const shift = (from: number, by: number) => {
               db.prepare('UPDATE link SET n = -n - 1 WHERE chain = ? AND n >= ?').run(chain, from)
               db.prepare('UPDATE link SET n = -n - 1 + ? WHERE chain = ? AND n < 0').run(by, chain)
@@ -142,7 +147,13 @@ describe('a store', () => {
             if (way === 'doubled') {
               const twice = row(n)
               shift(n + 1, 1)
-              db.prepare('INSERT INTO link (chain, n, hash, json) VALUES (?, ?, ?, ?)').run(chain, n + 1, twice.hash, twice.json)
+              db.prepare('INSERT INTO link (chain, n, hash, kind, json) VALUES (?, ?, ?, ?, ?)').run(
+                chain,
+                n + 1,
+                twice.hash,
+                twice.kind,
+                twice.json,
+              )
             }
             if (way === 'swapped') {
               const [a, b] = [row(n), row(n + 1)]
@@ -231,7 +242,7 @@ describe('a store', () => {
       let head: Uint8Array = nothing
       texts.forEach((text, n) => {
         head = hashOf(head, text)
-        db.prepare('INSERT INTO link VALUES (0, ?, ?, ?)').run(n, head, text)
+        db.prepare('INSERT INTO link VALUES (0, ?, ?, ?, ?)').run(n, head, (JSON.parse(text) as { kind: string }).kind, text)
       })
       db.prepare('UPDATE chain SET sealed = 0').run()
       db.prepare('UPDATE chain SET head = ?, count = ? WHERE id = 0').run(head, texts.length)
@@ -291,7 +302,7 @@ describe('append-only', () => {
     ),
     "UPDATE run SET title = 'x'",
     'INSERT OR REPLACE INTO link SELECT * FROM link WHERE n = 0',
-    'INSERT INTO link SELECT chain, n + 2, hash, json FROM link WHERE chain = 0 ORDER BY n DESC LIMIT 1',
+    'INSERT INTO link SELECT chain, n + 2, hash, kind, json FROM link WHERE chain = 0 ORDER BY n DESC LIMIT 1',
     ...['act', 'segment', 'strip', 'word', 'event', 'alarm_transition', 'audit', 'settings', 'seal'].map(
       (table) => `INSERT OR REPLACE INTO ${table} SELECT * FROM ${table} LIMIT 1`,
     ),

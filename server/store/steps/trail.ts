@@ -22,7 +22,8 @@ const byRun = (row: string) => `${row}.run`
 export const sql = `
   CREATE TABLE store (id TEXT NOT NULL) STRICT;
   INSERT INTO store VALUES (lower(hex(randomblob(16))));
-  CREATE TABLE link (chain INTEGER NOT NULL, n INTEGER NOT NULL, hash BLOB NOT NULL, json TEXT NOT NULL, PRIMARY KEY (chain, n)) STRICT, WITHOUT ROWID;
+  CREATE TABLE link (chain INTEGER NOT NULL, n INTEGER NOT NULL, hash BLOB NOT NULL, kind TEXT NOT NULL, json TEXT NOT NULL, PRIMARY KEY (chain, n)) STRICT, WITHOUT ROWID;
+  CREATE INDEX link_told ON link (chain, n) WHERE kind NOT IN ('heads', 'readings', 'events', 'words');
   CREATE TABLE chain (id INTEGER PRIMARY KEY, count INTEGER NOT NULL, head BLOB NOT NULL, sealed INTEGER NOT NULL) STRICT;
   CREATE TABLE seal (count INTEGER PRIMARY KEY, t_ms REAL NOT NULL, key TEXT NOT NULL, signature BLOB NOT NULL) STRICT;
   ALTER TABLE audit ADD COLUMN run INTEGER;
