@@ -96,7 +96,10 @@ export function amount(s: CourseStep): string {
         : `plan ${fixed(s.minutes, 0)} min`
   const time = s.endedMs === null ? '' : duration(s.endedMs - s.startedMs)
   if (s.plannedMl === null || s.plannedMl <= 0) return time
-  return `${fixed(s.passedMl, 0)} of ${fixed(s.plannedMl, 0)} mL`
+  // Beyond the plan, and of a step that is over, only what passed: its chamber may be narrow.
+  return s.endedMs === null && s.passedMl < s.plannedMl
+    ? `${fixed(s.passedMl, 0)} of ${fixed(s.plannedMl, 0)} mL`
+    : `${fixed(s.passedMl, 0)} mL`
 }
 
 /** A value as a point prints it. */
@@ -147,7 +150,11 @@ export function whatNow(c: Course): WhatNow {
   if (isReady(running)) return { far: `${running.step} is met`, below: 'Every hold point is met; a person accepts the step' }
   const n = counts(running)
   if (n.failed > 0) return { far: 'Hold', below: `${n.failed} hold point failed; hold is advised` }
-  const open = running.points.filter((p) => p.by === 'readings' && p.state !== 'met')
+  // The quench flows on until the effluent is inactive: not yet what is waited for.
+  const active = running.points.some((p) => p.criterion === 'effluent-inactive' && p.state !== 'met')
+  const open = running.points.filter(
+    (p) => p.by === 'readings' && p.state !== 'met' && !(active && p.criterion === 'quench-isolated'),
+  )
   if (open.length === 0) return { far: 'Look and record', below: 'Readings are met; what a person must see is open' }
   const first = open.find((p) => p.state === 'unknown') ?? open[0]!
   return { far: 'Wait', below: `${first.needs}: ${pointStates[first.state]}${first.why === '' ? '' : `, ${first.why}`}` }

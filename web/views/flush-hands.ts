@@ -45,15 +45,19 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
     const value = el('input', { id: 'check-value', type: 'text', maxlength: 120, autocomplete: 'off' })
     const source = el('input', { id: 'check-source', type: 'text', maxlength: 120, autocomplete: 'off' })
     const reason = el('input', { id: 'check-reason', type: 'text', maxlength: 300, autocomplete: 'off' })
-    const reasonField = el('div', { class: 'f' }, el('label', { for: 'check-reason', text: 'Reason' }), reason)
+    const reasonField = el('div', { class: 'entry' }, el('label', { for: 'check-reason', text: 'Reason' }), reason)
     const title = el('h2', { text: 'Record what a person sees' })
     const box = el(
       'form',
       { class: 'sheet check' },
       title,
-      el('div', { class: 'f' }, el('label', { for: 'check-point', text: 'Point' }), point),
-      el('div', { class: 'f' }, el('label', { for: 'check-value', text: 'Value or what was seen' }), value),
-      el('div', { class: 'f' }, el('label', { for: 'check-source', text: 'Read where' }), source),
+      el('div', { class: 'entry' }, el('label', { for: 'check-point', text: 'Point' }), point),
+      el(
+        'div',
+        { class: 'pair' },
+        el('div', { class: 'entry' }, el('label', { for: 'check-value', text: 'Value, or what was seen' }), value),
+        el('div', { class: 'entry' }, el('label', { for: 'check-source', text: 'Read where' }), source),
+      ),
       reasonField,
       el(
         'div',
@@ -74,6 +78,12 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
     async function put(verdict: 'met' | 'failed'): Promise<void> {
       const p = chosen()
       if (step === null || p === undefined) return
+      // Where a reason is needed it is asked for; the words of a first press stay.
+      if ((verdict === 'failed' || p.by === 'readings') && reason.value.trim() === '') {
+        reasonField.hidden = false
+        reason.focus()
+        return
+      }
       const text = value.value.trim()
       const number = Number(text.replace(',', '.'))
       const isNumber = text !== '' && Number.isFinite(number)
@@ -89,7 +99,10 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
       })
       // What was taken leaves the field, unless the next is being typed already.
       if (answer.hidden && value.value.trim() === text) value.value = ''
-      if (answer.hidden) reason.value = ''
+      if (answer.hidden) {
+        reason.value = ''
+        dress()
+      }
     }
     box.addEventListener('submit', (event) => {
       event.preventDefault()
@@ -100,7 +113,8 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
       value.inputMode = p?.unit === 'ppm' ? 'decimal' : 'text'
       value.placeholder =
         p?.unit === 'ppm' ? 'result in ppm' : p?.by === 'readings' ? `hand reading${p.unit === null ? '' : ` in ${p.unit}`}` : ''
-      reason.placeholder = p?.by === 'readings' ? 'why by hand' : 'needed where it failed'
+      reason.placeholder = p?.by === 'readings' ? 'why by hand' : 'why it failed'
+      reasonField.hidden = p?.by !== 'readings' && reason.value === ''
     }
     point.addEventListener('change', dress)
     return {
@@ -131,7 +145,7 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
     const sure = el(
       'div',
       { class: 'sure', hidden: true },
-      el('div', { class: 'f' }, label, reason),
+      el('div', { class: 'entry' }, label, reason),
       el('div', { class: 'row' }, go, back),
     )
     const skip = el('button', { type: 'button', id: 'skip', on: { click: () => ask('skipped') } })
@@ -172,7 +186,7 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
         skip.setAttribute('aria-disabled', String(!canSkip))
         say(
           note,
-          `${canSkip ? '' : `${step} cannot be skipped. `}Abort ends the guidance only: what flows now flows on until it is changed at the panel.`,
+          `${canSkip ? '' : `${step} cannot be skipped. `}Abort ends the guidance only: what flows flows on until changed at the panel.`,
         )
       },
     }

@@ -51,7 +51,7 @@ export function pointsView() {
     'quench-isolated': 'quench',
     'all-warm': 'warm',
     'no-blocked-in': 'pressure',
-    'no-heat-no-gas': 'heat, gas',
+    'no-heat-no-gas': 'heat',
     'ratio-flat': 'ratio',
     'effluent-blank': 'effluent',
     'karl-fischer-1': 'water, first',
@@ -60,11 +60,11 @@ export function pointsView() {
     'no-ice': 'no ice',
     'in-control': 'in control',
   }
+  /** Parts that say by themselves what they are. */
+  const speaks = /^(flow|ΔP|ratio|alarms|gas|second sign|[A-Z]+-\d)/
   const label = (p: Point): string => {
     const word = words[p.criterion] ?? p.criterion
-    return p.part === null
-      ? word
-      : `${p.part} ${p.part.startsWith('flow') || p.part.startsWith('ΔP') || p.part.startsWith('ratio') || p.part === 'alarms' ? '' : word}`.trim()
+    return p.part === null ? word : speaks.test(p.part) ? p.part : `${p.part} ${word}`
   }
 
   return {

@@ -117,7 +117,7 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
     const box = el(
       'div',
       { class: 'begin' },
-      el('div', { class: 'f' }, el('label', { for: 'flush-segment', text: 'Segment' }), pick),
+      el('div', { class: 'entry' }, el('label', { for: 'flush-segment', text: 'Segment' }), pick),
       el('div', { class: 'row' }, go),
       answer,
       el('p', {
