@@ -4,7 +4,7 @@ import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
 import { alarmMetrics } from '../core/alarms/metrics.ts'
 import { performanceTable } from '../core/alarms/performance.ts'
 import { MonitorError } from '../core/errors.ts'
-import { alarmName, alarmStory } from '../monitor/alarm-story.ts'
+import { alarmName, alarmStory, isOpening } from '../monitor/alarm-story.ts'
 import { handOverOf } from '../monitor/hand-over.ts'
 import { alarmsAt } from '../monitor/stored-state.ts'
 import type { RunParts } from '../monitor/trends.ts'
@@ -49,10 +49,13 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
       const [fromMs, toMs] = periodOf(p, query)
       const records = s.store.transitions.list(p.run).map((t) => t.more as unknown as AlarmRecord)
       const metrics = alarmMetrics(records, fromMs, toMs)
+      const beginMs = s.store.sequence.span(p.run)?.fromMs ?? fromMs
       const changes = s.store.sequence
         .acts(p.run)
         .flatMap(({ act }) =>
-          (act.kind === 'limit' || act.kind === 'settings') && act.tMs >= fromMs && act.tMs < toMs ? [act] : [],
+          (act.kind === 'limit' || act.kind === 'settings') && !isOpening(act, beginMs) && act.tMs >= fromMs && act.tMs < toMs
+            ? [act]
+            : [],
         )
       const outside = changes.filter((a) => a.person.trim() === '' || a.reason.trim().length < reasonMin).length
       const names = Object.fromEntries(
@@ -95,7 +98,9 @@ export const performanceRoutes: FastifyPluginAsyncTypebox<Services> = async (app
     async ({ params: { run }, query }) => {
       const p = s.catalogue.parts(run)
       const [fromMs, toMs] = periodOf(p, query)
-      return handOverOf(p, fromMs, toMs)
+      // A simulated clock leaps ahead of its readings at each beat: that is no gap. By the wall, what has not come is one.
+      const isAhead = s.monitor.engine(run) !== null && s.monitor.state(run).clock.kind === 'simulated'
+      return handOverOf(p, fromMs, toMs, isAhead ? (s.store.sequence.span(p.run)?.toMs ?? toMs) : toMs)
     },
   )
 }

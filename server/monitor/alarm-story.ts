@@ -16,6 +16,8 @@ export function actText(act: Act): string {
       return act.text
     case 'limit':
       return `${act.segment} ${act.limit} set to ${act.value ?? 'none'}: ${act.reason}`
+    case 'settings':
+      return `settings version ${act.version}: ${act.reason} (${act.changes.map((c) => `${c.path} ${c.old ?? 'none'} → ${c.new ?? 'none'}`).join('; ')})`
     case 'flush-step':
       return `flush of ${act.segment}, step ${act.step} ${act.state}${act.reason === '' ? '' : `: ${act.reason}`}`
     case 'flush-check':
@@ -54,6 +56,10 @@ function recordLine(r: AlarmRecord, name: (alarm: number | null, key: string) =>
   return { tMs: r.tMs, what: 'alarm', alarm: r.alarm, text, person: r.person }
 }
 
+/** Settings that a run begins with: in its acts, but nobody changed them in it. */
+export const isOpening = (act: Act, beginMs: number): boolean =>
+  act.kind === 'settings' && (act.changes.length === 0 || act.tMs <= beginMs)
+
 /** What happened in (fromMs, toMs], in order: the alarm journal, acts of people that are not in it, and notes of the tool. */
 export function storyLines(p: RunParts, rows: readonly AlarmRow[], fromMs: number, toMs: number): StoryLine[] {
   const byId = new Map(rows.map((r) => [r.id, r]))
@@ -62,6 +68,7 @@ export function storyLines(p: RunParts, rows: readonly AlarmRow[], fromMs: numbe
     const row = (alarm === null ? undefined : byId.get(alarm)) ?? byKey.get(key)
     return row === undefined ? key : alarmName(row)
   }
+  const beginMs = p.store.sequence.span(p.run)?.fromMs ?? Number.NEGATIVE_INFINITY
   const lines: StoryLine[] = []
   for (const t of p.store.transitions.list(p.run)) {
     if (t.tMs <= fromMs || t.tMs > toMs) continue
@@ -78,6 +85,8 @@ export function storyLines(p: RunParts, rows: readonly AlarmRow[], fromMs: numbe
     // What people do to an alarm is in its journal already, with what came of it.
     if (['acknowledge', 'reset', 'shelve', 'unshelve', 'out-of-service', 'in-service'].includes(act.kind)) continue
     const alarm = 'alarm' in act ? act.alarm : null
+    // The settings that a run begins with change nothing.
+    if (isOpening(act, beginMs)) continue
     const what = act.kind === 'comment' ? 'comment' : act.kind === 'limit' || act.kind === 'settings' ? 'change' : 'act'
     lines.push({ tMs: act.tMs, what, alarm, text: actText(act), person: act.person })
   }

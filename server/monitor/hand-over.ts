@@ -30,14 +30,17 @@ function flushInCourse(p: RunParts, toMs: number): HandOver['flush'] {
   return [...latest.values()].filter((f) => f.state !== 'aborted' && !(f.step === 'F6' && f.state !== 'started'))
 }
 
-/** What stands at the end of a shift and what happened in it, from the run alone: the same again whenever it is asked for. */
-export function handOverOf(p: RunParts, fromMs: number, toMs: number): HandOver {
+/**
+ * What stands at the end of a shift and what happened in it, from the run alone: the same again whenever it is asked for. Gaps are looked for up to
+ * `heardToMs`, which lies before the end where the run's clock runs ahead of its readings.
+ */
+export function handOverOf(p: RunParts, fromMs: number, toMs: number, heardToMs = toMs): HandOver {
   const state = storedState(p, toMs)
   const rows = alarmsAt(p, toMs).all()
   const lines = storyLines(p, rows, fromMs, toMs)
   const raised = rows.filter((r) => r.raisedMs > fromMs && r.raisedMs <= toMs)
   const count = (priority: string) => raised.filter((r) => r.priority === priority).length
-  const { gaps, stepMs } = gapsOf(p, fromMs, toMs)
+  const { gaps, stepMs } = gapsOf(p, fromMs, Math.max(fromMs + 1, Math.min(toMs, heardToMs)))
   return {
     run: p.run,
     fromMs,

@@ -360,7 +360,7 @@ describe.runIf(chromium !== null)('alarms in the hands of an operator', () => {
       server.answer('/runs/1/alarm-performance', performanceOf())
       const { page, faults } = await at(sceneOf({ alarms: [alarmOf(1)] }), { hash: '#/alarms/1', width, height, night })
       const cells = (await page.evaluate(
-        `[...document.querySelectorAll('.figures')[0].tBodies[0].rows].map((r) => [...r.cells].map((c) => c.textContent))`,
+        `[...document.querySelectorAll('.alarm-table')[0].tBodies[0].rows].map((r) => [...r.cells].map((c) => c.textContent))`,
       )) as string[][]
       expect(cells.length).toBe(15)
       expect(cells.every((r) => r.length === 5 && r.every((c) => c !== ''))).toBe(true)

@@ -104,7 +104,7 @@ export function handOverNote(): HandOver {
       limitFromMs: i === 1 ? t0 + 8 * hour : null,
       limitToMs: i === 1 ? t0 + 9 * hour : null,
     })),
-    open: is('UNACK', 'ACKED', 'RTNUN', 'LUNACK', 'LACKED'),
+    open: [...is('UNACK', 'ACKED', 'RTNUN', 'LUNACK', 'LACKED'), alarmOf(20)],
     shelved: is('SHELVED'),
     suppressed: is('SBD'),
     outOfService: is('OOS'),

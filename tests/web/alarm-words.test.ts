@@ -21,6 +21,11 @@ describe('refusals', () => {
       .filter((r) => !refusalText(r).includes(' – '))
     expect(unmended.filter((r) => !/suppression by design/.test(r))).toEqual([])
   })
+  it('says the reason and the mend, without repeating what was asked for', () => {
+    expect(refusalText('at most 30 min at once (asked: flush is planned)')).toBe(
+      'refused: at most 30 min at once – choose a shorter time; it can be extended before it ends',
+    )
+  })
   // USR-05
   it('a reason is what was picked and what was written, and either alone', () => {
     expect(reasonOf('instrument under repair', ' order 4417 ')).toBe('instrument under repair: order 4417')

@@ -61,6 +61,21 @@ describe('the four answers', () => {
     const { facts, state } = sceneOf({ ratio: 1, alarms: [alarmOf(1, { state: 'SHELVED', needsAck: false })] })
     expect(answersOf(facts, state, clock).segment).toBeNull()
   })
+  // ALM-08
+  it('never say steady while an alarm that is put aside has its condition, nor that nothing grows while something does', () => {
+    const { facts, state } = sceneOf({ alarms: [alarmOf(1, { state: 'SHELVED', needsAck: false })] })
+    const a = answersOf(facts, state, clock)
+    expect([a.where.far, a.where.below]).toEqual(['Put aside', 'S2 flow resistance rising shelved'])
+    expect([a.howLong.far, a.howLong.to, a.howLong.below]).toEqual([
+      '1 h 54',
+      '2 h 48',
+      'S2 to the 4.0 bar ΔP limit, 04:54 to 05:48 (80 %)',
+    ])
+    expect(a.whatNow.far).toBe('See the list')
+    // Gone, though still on the shelf: nothing to say.
+    const over = sceneOf({ ratio: 1, alarms: [alarmOf(1, { state: 'SHELVED', needsAck: false, active: false })] })
+    expect(answersOf(over.facts, over.state, clock).where.far).toBe('All steady')
+  })
 })
 
 describe('advice in force', () => {

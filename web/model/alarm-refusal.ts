@@ -16,8 +16,10 @@ const mends: readonly (readonly [RegExp, string])[] = [
 
 /** A refusal with its mend, as one sentence; the reason alone where there is nothing to do about it. */
 export function refusalText(reason: string): string {
-  const mend = mends.find(([test]) => test.test(reason))?.[1]
-  return `refused: ${reason}${mend === undefined ? '' : ` – ${mend}`}`
+  // What was asked for stands in the form still.
+  const why = reason.replace(/ \(asked: .*\)$/s, '')
+  const mend = mends.find(([test]) => test.test(why))?.[1]
+  return `refused: ${why}${mend === undefined ? '' : ` – ${mend}`}`
 }
 
 /** Reasons to pick from; the words are added to. */

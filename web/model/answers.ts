@@ -51,7 +51,7 @@ export function answersOf(facts: SkidFacts, state: LiveState, clock: ZoneClock):
   const spec = facts.segments.find((s) => s.id === alarm?.segment)
   const now = state.segments.find((s) => s.segment === alarm?.segment)
   const whatNow = nowOf(state, clock, alarm)
-  if (alarm === null) return { segment: null, alarm, ...quiet(state), whatNow }
+  if (alarm === null) return { segment: null, alarm, ...quiet(state, clock), whatNow }
   return {
     segment: alarm.segment,
     alarm,
@@ -73,6 +73,23 @@ function placeOf(alarm: AlarmRow, spec: SegmentFacts | undefined): string | null
   return (
     spec.dpTag ??
     (spec.pressureIn !== null && spec.pressureOut !== null ? `${spec.pressureIn} to ${spec.pressureOut}` : spec.pressureIn)
+  )
+}
+
+/** The time that a forecast leaves, as a range, and what it ends at. */
+function untilLimit(
+  f: NonNullable<SegmentState['forecast']>,
+  nowMs: number,
+  clock: ZoneClock,
+  place: string | null = null,
+): Answer {
+  const { low, high } = range(f.lowMs - nowMs, f.highMs - nowMs)
+  const limit = `${f.limitBar === null ? '' : `${fixed(f.limitBar, 1)} bar `}${limitWords[f.limit].name}`
+  return answer(
+    low,
+    `${place === null ? '' : `${place} `}to the ${limit}, ${clock.hm(f.lowMs)} to ${clock.hm(f.highMs)} (${Math.round(100 * f.level)} %)`,
+    null,
+    high,
   )
 }
 
@@ -118,16 +135,7 @@ function longOf(alarm: AlarmRow, now: SegmentState | undefined, nowMs: number, c
   if (isDeposit && limit !== null && now?.dpNowBar != null && now.dpNowBar >= limit)
     return answer('limit met', `ΔP ${fixed(now.dpNowBar, 2)} bar, limit ${fixed(limit, 1)} bar`)
   // The forecast is the deposit's: it says nothing of heat, flow or a sensor.
-  if (f !== null && isDeposit) {
-    const { low, high } = range(f.lowMs - nowMs, f.highMs - nowMs)
-    const words = limitWords[f.limit]
-    return answer(
-      low,
-      `to the ${f.limitBar === null ? '' : `${fixed(f.limitBar, 1)} bar `}${words.name}, ${clock.hm(f.lowMs)} to ${clock.hm(f.highMs)} (${Math.round(100 * f.level)} %)`,
-      null,
-      high,
-    )
-  }
+  if (f !== null && isDeposit) return untilLimit(f, nowMs, clock)
   if (alarm.help !== null && !isDeposit)
     return answer(duration(alarm.help.timeToRespondS * 1000), 'time to respond by the alarm’s rationalisation; no forecast')
   return answer(
@@ -138,11 +146,26 @@ function longOf(alarm: AlarmRow, now: SegmentState | undefined, nowMs: number, c
   )
 }
 
-function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> {
+const isAside = (a: AlarmRow): boolean => a.active && (a.state === 'SHELVED' || a.state === 'SBD' || a.state === 'OOS')
+const asideWords = (aside: readonly AlarmRow[]): string =>
+  aside
+    .map(
+      (a) =>
+        `${a.segment ?? a.tag ?? 'skid'} ${kindWords[a.kind]} ${a.state === 'SHELVED' ? 'shelved' : a.state === 'SBD' ? 'suppressed' : 'out of service'}`,
+    )
+    .join(', ')
+
+/** No alarm stands. What is put aside while its condition is there is still said: a screen that says steady then would lie. */
+function quiet(state: LiveState, clock: ZoneClock): Pick<Answers, 'where' | 'howBad' | 'howLong'> {
   const known = state.segments.filter((s) => s.ratio !== null)
   const top = known.reduce<SegmentState | null>((t, s) => (t === null || s.ratio! > t.ratio! ? s : t), null)
   const based = state.segments.filter((s) => s.baseline !== null).length
-  const howLong = answer('no limit', 'nothing grows')
+  const soonest = state.segments
+    .flatMap((s) => (s.forecast === null ? [] : [{ segment: s.segment, ...s.forecast }]))
+    .sort((a, b) => a.lowMs - b.lowMs)[0]
+  const howLong =
+    soonest === undefined ? answer('no limit', 'nothing grows') : untilLimit(soonest, state.clock.nowMs, clock, soonest.segment)
+  const aside = state.alarms.filter(isAside)
   if (top === null)
     return {
       where: answer('not yet', based === 0 ? 'no clean baseline yet, so no verdict' : 'no ratio now: not in production'),
@@ -150,7 +173,10 @@ function quiet(state: LiveState): Pick<Answers, 'where' | 'howBad' | 'howLong'> 
       howLong: answer('not known', 'no forecast without a ratio'),
     }
   return {
-    where: answer('All steady', `no alarm stands; ${known.length} of ${state.segments.length} segments judged`),
+    where:
+      aside.length > 0
+        ? answer('Put aside', asideWords(aside))
+        : answer('All steady', `no alarm stands; ${known.length} of ${state.segments.length} segments judged`),
     howBad: answer(fixed(top.ratio, 2)!, `the highest, ${top.segment}`, '× clean'),
     howLong,
   }
@@ -160,7 +186,9 @@ function nowOf(state: LiveState, clock: ZoneClock, alarm: AlarmRow | null): Answ
   const advice = adviceInForce(state)[0]?.advice
   if (advice === undefined)
     return alarm === null
-      ? answer('Carry on', 'nothing advised; keep to the site procedure')
+      ? state.alarms.some(isAside)
+        ? answer('See the list', 'nothing calls, but not all is well: what is put aside is in the list')
+        : answer('Carry on', 'nothing advised; keep to the site procedure')
       : answer('See the alarm', 'no advice beyond the text of the alarm')
   const reason = inPlantTime(advice.reason, clock, state.clock.nowMs)
   return answer(

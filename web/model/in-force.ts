@@ -46,7 +46,9 @@ const answersTo: Readonly<Record<Action, readonly AlarmKind[]>> = {
  * The advice whose cause still stands, most urgent cause first, then latest; a later advice for the same segments takes the place of an
  * earlier one of the same cause. What was advised against a condition that is gone is no longer what now.
  */
-export function adviceInForce(state: LiveState): { readonly advice: AdviceState; readonly cause: AlarmRow }[] {
+export function adviceInForce(
+  state: Pick<LiveState, 'alarms' | 'advice'>,
+): { readonly advice: AdviceState; readonly cause: AlarmRow }[] {
   const rated = state.advice.flatMap((advice) => {
     const causes = state.alarms.filter(
       (a) =>

@@ -1,7 +1,8 @@
-import type { AlarmRow, HandOver, RunDetail, StoryLine } from '../../server/wire/index.ts'
+import type { AdviceState, AlarmRow, HandOver, RunDetail, StoryLine } from '../../server/wire/index.ts'
 import { getJson, postJson, said } from '../api.ts'
 import { zoneClock } from '../model/clock.ts'
 import { duration, figure, fixed } from '../model/format.ts'
+import { adviceInForce } from '../model/in-force.ts'
 import { actionWords, inPlantTime } from '../model/words.ts'
 import { titleOf } from './alarm-row.ts'
 import { count, el, fill } from './dom.ts'
@@ -112,6 +113,15 @@ export function handOverView(detail: RunDetail, shell: Pick<Shell, 'needPerson' 
       `${at(l.tMs)} ${l.person ?? ''}: ${words(l.text.startsWith(noteMark) ? l.text.slice(noteMark.length) : l.text)}`
     const notes = h.comments.filter((c) => c.text.startsWith(noteMark))
     const { raised: r } = h
+    // As on the watch page: what was advised against a condition that is gone stands no more.
+    const alarms = [...h.open, ...h.shelved, ...h.suppressed, ...h.outOfService]
+    const advice = h.advice.map((a) => ({
+      ...a,
+      at: new Date(a.atMs).toISOString(),
+      action: a.action as AdviceState['action'],
+      plan: null,
+    }))
+    const standing = adviceInForce({ alarms, advice }).map((a) => a.advice)
     return [
       el('p', { class: 'shift' }, el('b', { text: `${clock.full(h.fromMs)} to ${clock.full(h.toMs)} ${clock.offset(h.toMs)}` }), `, run ${h.run}, ${detail.title}. ${h.production ? 'In production' : 'Not in production'} at the end.`),
       el('p', { text: `${count(r.high + r.medium + r.low, 'alarm')} in the shift: ${r.high} high, ${r.medium} medium, ${r.low} low; ${r.over} of them over and acknowledged.` }),
@@ -123,7 +133,7 @@ export function handOverView(detail: RunDetail, shell: Pick<Shell, 'needPerson' 
         part('Out of service', 'None.', h.outOfService.map(alarm)),
         part('Flush in course', 'None.', h.flush.map((f) => `${f.segment}: step ${f.step} ${f.state} at ${at(f.atMs)} by ${f.person}`)),
       ),
-      part('Advice standing', 'None.', h.advice.map((a) => `${at(a.atMs)} ${actionWords[a.action as keyof typeof actionWords] ?? a.action}${a.segments.length === 0 ? '' : `, ${a.segments.join(', ')}`}: ${words(a.reason)}`)),
+      part('Advice standing', 'None.', standing.map((a) => `${at(a.atMs)} ${actionWords[a.action]}${a.segments.length === 0 ? '' : `, ${a.segments.join(', ')}`}: ${words(a.reason)}`)),
       part('Resistance', 'No segment.', [h.segments.map((s) => `${s.segment} ${s.ratio === null ? 'not known' : `${fixed(s.ratio, 2)} × clean`}${s.limitFromMs === null || s.limitToMs === null ? '' : ` (limit ${at(s.limitFromMs)} to ${at(s.limitToMs)})`}`).join(' · ')]),
       el('div', { class: 'two' },
         part(`Data gaps, of ${fixed(h.gapStepMs / 1000, 0)} s and more`, 'None.', h.gaps.map((g) => `${at(g.fromMs)} to ${at(g.toMs)}, ${duration(g.toMs - g.fromMs)}`)),

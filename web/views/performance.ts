@@ -17,7 +17,7 @@ const table = (
     { class: 'wide', role: 'region', tabindex: 0, 'aria-label': caption },
     el(
       'table',
-      { class: 'figures' },
+      { class: 'alarm-table' },
       el('caption', { text: caption }),
       el(
         'thead',
@@ -44,7 +44,7 @@ const table = (
 export function performanceView(detail: RunDetail) {
   const clock = zoneClock(detail.skidFacts.timeZone)
   const span: Period = { fromMs: detail.fromMs ?? 0, toMs: Math.max(detail.clock?.nowMs ?? 0, detail.toMs ?? 0) }
-  const body = el('div', { class: 'figures-body' })
+  const body = el('div', { class: 'alarm-figures' })
   const period = periodView(span, clock, detail.skidFacts.timeZone, ['8h', '24h', '7d', '30d', 'all'], 'all', (p) => void load(p))
   const node = el(
     'main',
