@@ -18,7 +18,7 @@ import type { RowBlock } from '../reading.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
 import { type Act, type Entry, type LimitName, limitNames } from '../sequence.ts'
 import { type ConfigurationState, createConfiguration, type Took } from '../settings/configuration.ts'
-import { filterChanged, waterResult } from '../settings/hand-events.ts'
+import { filterChanged, unusedWhy, waterResult } from '../settings/hand-events.ts'
 import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
 import { createInstruments, type InstrumentState } from '../signals/instruments.ts'
 import { createLimits, type LimitTable, limitsOf } from '../signals/limits.ts'
@@ -367,6 +367,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       if (guide.act(act)) s.lastRatio.fill(null)
       drainGuide(act.tMs)
     } else if (act.kind === 'event') {
+      const unused = unusedWhy(configuration.skid(), act)
+      if (unused !== null) events.push({ kind: 'note', tMs: act.tMs, text: `${act.event}: kept, not used: ${unused}` })
       const water = waterResult(configuration.skid(), act)
       const old = configuration.skid().streams.find((x) => x.id === water?.stream)?.waterPpm ?? null
       if (water !== null) {

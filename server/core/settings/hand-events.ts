@@ -114,3 +114,12 @@ export function filterChanged(skid: Skid, e: HandEventInput): string | null {
   const segment = subjectOf(skid, e)
   return skid.segments.some((s) => s.id === segment && s.kind === 'filter') ? segment : null
 }
+
+/** Why an event of a kind that the calculation would use is kept only; null where it is used, or of no such kind. */
+export function unusedWhy(skid: Skid, e: HandEventInput): string | null {
+  const kind = handEventOf(e.event)?.kind
+  const fault = eventFault(skid, e)
+  if (fault !== null) return fault
+  if (kind === 'Karl Fischer' && waterResult(skid, e) === null) return 'it names no feed'
+  return kind === 'filter change' && filterChanged(skid, e) === null ? 'it names no filter' : null
+}

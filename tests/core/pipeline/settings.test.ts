@@ -7,8 +7,10 @@ import type { RowBlock } from '../../../server/core/reading.ts'
 import type { Act, Entry } from '../../../server/core/sequence.ts'
 import { createConfiguration } from '../../../server/core/settings/configuration.ts'
 import { flatten } from '../../../server/core/settings/flat.ts'
+import { randomOf } from '../../../server/core/sim/random.ts'
 import { randomScenario } from '../../../server/core/sim/random-scenario.ts'
 import type { Skid } from '../../../server/core/skid.ts'
+import { loadSkid } from '../../../server/skid/check.ts'
 import { block, cut, type Row } from '../../helpers/rows.ts'
 import { simulatedBlocks } from '../../helpers/simulated-blocks.ts'
 import { heron, twoSegments } from '../../helpers/skids.ts'
@@ -254,5 +256,90 @@ describe('alarms suppressed by stated logic and out of service', () => {
       ['moved', 'NORM', 'plug is gone'],
     ])
     expect(resets([undefined])).toEqual([['moved', 'NORM', null]])
+  })
+})
+
+describe('a clean level learnt anew, and another promise', () => {
+  const skid = loadSkid(
+    `
+skid: duo
+scanSeconds: 1
+phaseColumn: phase
+tags:
+  - { tag: FT-1, quantity: massFlow, unit: kg/h, range: [0, 20] }
+  - { tag: PT-1, quantity: pressure, unit: bar, range: [0, 25] }
+  - { tag: PT-2, quantity: pressure, unit: bar, range: [0, 25] }
+  - { tag: TT-1, quantity: temperature, unit: degC, range: [-100, 200] }
+streams:
+  - { id: A, flowTag: FT-1, fluid: { solvent: THF } }
+segments:
+  - { id: F1, kind: filter, streams: [A], pressureIn: PT-1, pressureOut: PT-2, temperatures: [TT-1], limits: { dpHighBar: 4 } }
+`,
+    'duo.yaml',
+  )
+  const noise = randomOf(5, 'noise')
+  // A reading that never moves would be taken for a stuck instrument.
+  const reads = (value: number, sd: number) => value + sd * noise.normal()
+  const minutes = (from: number, to: number, dp: number): RowBlock => {
+    const rows: Row[] = []
+    for (let s = 60 * from; s < 60 * to; s++)
+      rows.push([at(s), reads(8, 0.01), reads(3 + dp, 0.002), reads(3, 0.002), reads(20, 0.05), 'production'])
+    return block(rows, 5)
+  }
+  const rows = (b: RowBlock): Entry => ({ kind: 'rows', block: b })
+  /** A filter changed at 45 min, entered at 48 min: 1 bar before, 0.8 bar after. */
+  const [before, unsaid, after] = [minutes(0, 45, 1), minutes(45, 48, 0.8), minutes(48, 90, 0.8)].map(rows) as [Entry, Entry, Entry]
+  const F1 = (entries: readonly Entry[]) => play(skid, entries).report.segments[0]!
+  const change: Act = {
+    kind: 'event',
+    event: 'filter change',
+    value: null,
+    unit: null,
+    note: 'cartridge 12',
+    person,
+    tMs: at(48 * 60),
+  }
+  const settings = (path: string, now: number): Act => ({
+    kind: 'settings', version: 2, tMs: at(48 * 60), effectiveMs: at(48 * 60), person, reason: 'filter of another make', changes: [{ path, old: null, new: now }],
+  }) // biome-ignore format: a list
+
+  it.each([
+    ['a filter change', change],
+    ['a version of the settings that asks for it', settings('segments.F1.baselineVersion', 2)],
+  ])(
+    'after %s the level of the filter is learnt anew: a second baseline at 0.8 bar from then on, ratio within 0.5 % of 1',
+    (_, act) => {
+      const f = F1([before, unsaid, { kind: 'act', act }, after])
+      expect(f.baselines).toHaveLength(2)
+      expect(f.baselines[0]!.dpBar).toBeCloseTo(1, 2)
+      expect(f.baselines[1]!.dpBar).toBeCloseTo(0.8, 2)
+      expect(Date.parse(f.baselines[1]!.from)).toBeGreaterThanOrEqual(at(47.5 * 60))
+      expect(Math.abs(f.ratio.last! - 1)).toBeLessThan(0.005)
+    },
+  )
+
+  it('without it the one baseline stays at 1 bar, and the fall is taken for a shifted zero of PT-1', () => {
+    const { report } = play(skid, [before, unsaid, after])
+    expect(report.segments[0]!.baselines.map((b) => b.dpBar.toFixed(2))).toEqual(['1.00'])
+    expect(report.alarms.map((a) => [a.kind, a.tag])).toEqual([['sensor', 'PT-1']])
+    expect(report.alarms[0]!.message).toContain('its zero shifted')
+  })
+
+  it('a false alarm allowed in 300 days in place of 30 has the charts designed anew from then on, with a wider interval; the baseline stays', () => {
+    const steady = rows(minutes(48, 60, 1))
+    const as = F1([before, steady])
+    const then = F1([before, { kind: 'act', act: settings('detection.falseAlarmDays', 300) }, steady])
+    expect(as.chart!.designedHours / 720).toBeCloseTo(1, 1)
+    expect(then.chart!.designedHours / 7200).toBeCloseTo(1, 1)
+    expect(then.chart!.h).toBeGreaterThan(as.chart!.h)
+    expect(then.chart!.hours).toBeLessThan(as.chart!.hours)
+    expect(then.baselines).toEqual(as.baselines)
+  })
+
+  it('an event that cannot be used is kept, and a note says why', () => {
+    const kf: Act = { kind: 'event', event: 'Karl Fischer', value: 180, unit: 'ppm', note: '', person, tMs: at(10) }
+    const { report, events } = play(skid, [act(kf), rows(minutes(0, 2, 1))])
+    expect(report.notes).toEqual([`${new Date(at(10)).toISOString()} Karl Fischer: kept, not used: it names no feed`])
+    expect(events[0]).toEqual({ kind: 'act', act: kf })
   })
 })
