@@ -58,9 +58,13 @@ export const isReady = (s: CourseStep): boolean => s.points.every((p) => p.state
 
 /** How an act names a point. */
 export const keyOf = (p: Point): string => (p.part === null ? p.criterion : `${p.criterion}:${p.part}`)
-/** Points that a person may record now: those of people, and readings that are not known. */
-export const recordable = (s: CourseStep): Point[] =>
-  s.points.filter((p) => (p.by === 'person' ? p.state !== 'met' && p.state !== 'skipped' : p.state === 'unknown'))
+/** Points that a person may record now: those of people first, then readings that are not known although scans have come. */
+export const recordable = (s: CourseStep): Point[] => [
+  ...s.points.filter((p) => p.by === 'person' && p.state !== 'met' && p.state !== 'skipped'),
+  ...s.points.filter((p) => p.by === 'readings' && p.state === 'unknown' && p.why !== noReadingYet),
+]
+/** As the course says it before the first scan of a step. */
+const noReadingYet = 'no reading yet'
 
 /** The refusal that stands: the last one, while the step it was about has not begun since. */
 export function standingRefusal(c: Course): Course['refusals'][number] | null {

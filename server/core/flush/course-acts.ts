@@ -1,6 +1,7 @@
 import type { Act } from '../sequence.ts'
 import { hardSteps, reasonLength } from './course.ts'
 import type { Course, CourseStep, GuideState, Point, Rule } from './course-state.ts'
+import { noReadingYet, notSeenYet } from './points.ts'
 
 export type FlushAct = Extract<Act, { readonly kind: 'flush-step' | 'flush-check' }>
 
@@ -66,6 +67,7 @@ function againstCheck(s: GuideState, act: Extract<FlushAct, { kind: 'flush-check
   if (act.source.trim() === '') return ['say where it was read or seen']
   if (act.value === null || act.value === '') return ['a value or what was seen is missing']
   if (point.by === 'readings') {
+    if (point.why === noReadingYet) return ['no scan of this step has come yet']
     if (point.state !== 'unknown') return ['good readings decide this point; a hand reading counts only while they are missing']
     return isUseful(act.reason) ? [] : [`a hand reading needs a reason of at least ${reasonLength} characters`]
   }
@@ -164,7 +166,7 @@ function takeBack(c: Course, index: number, act: FlushAct): void {
         p.sinceMs = null
         p.person = null
         p.tMs = null
-        p.why = p.by === 'person' ? 'to be seen and recorded by a person' : 'no reading yet'
+        p.why = p.by === 'person' ? notSeenYet : noReadingYet
       }
     }
   })

@@ -28,6 +28,9 @@ const ratioHigh = { water: 1.2, clean: 1.1 } as const
 /** Back in control: flows and temperatures as before the flush within these. */
 const control = { flow: 0.05, tempK: 3 } as const
 const blockedInPa = 50_000
+/** Why a point stands open before anything was read or seen. */
+export const noReadingYet = 'no reading yet'
+export const notSeenYet = 'to be seen and recorded by a person'
 
 const made = (criterion: string, part: string | null, needs: string, rule: Rule, unit: string | null, source: string): Made => ({
   point: {
@@ -39,7 +42,7 @@ const made = (criterion: string, part: string | null, needs: string, rule: Rule,
     value: null,
     unit,
     source,
-    why: rule === null || rule.kind === 'at-most' ? 'to be seen and recorded by a person' : 'no reading yet',
+    why: rule === null || rule.kind === 'at-most' ? notSeenYet : noReadingYet,
     sinceMs: null,
     person: null,
     tMs: null,
