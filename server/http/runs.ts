@@ -5,6 +5,7 @@ import { MonitorError } from '../core/errors.ts'
 import { enterLate, isLate, lateActs } from '../monitor/after-end.ts'
 import { transitionRow } from '../monitor/alarm-log.ts'
 import { createEngine } from '../monitor/engine.ts'
+import { skidAt } from '../monitor/skid-at.ts'
 import { skidFacts } from '../monitor/skid-facts.ts'
 import { alarmsAt, storedState } from '../monitor/stored-state.ts'
 import { marksOf, trendsOf } from '../monitor/trends.ts'
@@ -50,7 +51,8 @@ export const runRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) => 
     '/runs/:run',
     { config, schema: { summary: 'a run with the facts of its skid', params, response: replies(runDetailSchema) } },
     async ({ params: { run } }) => {
-      const { skid } = s.catalogue.parts(run)
+      const parts = s.catalogue.parts(run)
+      const skid = s.monitor.engine(run)?.pipeline.skid() ?? skidAt(parts, Number.POSITIVE_INFINITY)
       return { ...s.catalogue.row(run), skidFacts: skidFacts(skid), toolVersion: s.catalogue.summary(run).toolVersion, cautions }
     },
   )

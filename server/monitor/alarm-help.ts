@@ -26,10 +26,14 @@ function nameOf(skid: Skid, o: Occurrence): Name {
   }
 }
 
-/** Texts of alarms by occurrence, computed once each; null where the skid file's own fields are not usable. */
-export function alarmHelpOf(skid: Skid): (o: Occurrence) => AlarmHelp | null {
+/** Texts of alarms by occurrence and configuration in force, computed once each; null where the skid file's own fields are not usable. */
+export function alarmHelpOf(inForce: () => Skid): (o: Occurrence) => AlarmHelp | null {
   const known = new Map<string, AlarmHelp | null>()
+  let of: Skid | null = null
   return (o) => {
+    const skid = inForce()
+    if (of !== skid) known.clear()
+    of = skid
     const name = nameOf(skid, o)
     const id = `${name}\n${o.segment ?? ''}\n${o.cause ?? ''}`
     const found = known.get(id)

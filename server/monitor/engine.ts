@@ -64,7 +64,7 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
   const scans = createScanView(skid, saved?.scans)
   const pipeline = createPipeline(skid, saved?.pipeline, { onScan: scans.scan })
   const collector = createCollector(skid)
-  const alarms = createAlarmLog(alarmHelpOf(skid))
+  const alarms = createAlarmLog(alarmHelpOf(pipeline.skid))
   const advice: { atMs: number; advice: AdviceReport }[] = []
   const { rows: stepsOnDisk, width: stepsWidth } = store.sequence.count(stepsRun)
   const counts = {

@@ -9,14 +9,17 @@ import { type AlarmLog, createAlarmLog } from './alarm-log.ts'
 import type { Engine } from './engine.ts'
 import { adviceInForce, limitChanges, limitsOfSkid, stateOf } from './live-state.ts'
 import { combTeeth } from './scan-view.ts'
+import { skidAt } from './skid-at.ts'
 import { stepMsOf } from './skid-facts.ts'
 import { stepTag } from './step-log.ts'
 import { baselineOf } from './stored-rows.ts'
 import { type RunParts, stepsBetween } from './trends.ts'
 
 /** The alarms of a run as they stood at a moment, from its journal. */
-export function alarmsAt({ store, skid, run }: RunParts, atMs: number): AlarmLog {
-  const log = createAlarmLog(alarmHelpOf(skid))
+export function alarmsAt(parts: RunParts, atMs: number): AlarmLog {
+  const { store, run } = parts
+  const known = skidAt(parts, atMs)
+  const log = createAlarmLog(alarmHelpOf(() => known))
   for (const e of store.events.list(run)) if (e.kind === 'alarm' && e.tMs <= atMs) log.take(e.body as unknown as PipelineEvent)
   for (const t of store.transitions.list(run))
     if (t.tMs <= atMs) log.take({ kind: 'transition', record: t.more as unknown as AlarmRecord })

@@ -8,7 +8,15 @@ import { settingsComparisonSchema, settingsPageSchema } from '../../server/http/
 import { readEvents } from '../../server/ingest/events-file.ts'
 import { analyseRecord } from '../../server/record/analyse-record.ts'
 import { loadSkid } from '../../server/skid/check.ts'
-import type { ActRow, LiveState, Marks, SettingsComparison, SettingsPage, TransitionRow } from '../../server/wire/index.ts'
+import type {
+  ActRow,
+  LiveState,
+  Marks,
+  SettingsComparison,
+  SettingsPage,
+  SkidFacts,
+  TransitionRow,
+} from '../../server/wire/index.ts'
 import { cli } from '../helpers/cli.ts'
 import { shortNight, tempDir } from '../monitor/bench.ts'
 import { holds } from './holds.ts'
@@ -70,6 +78,9 @@ describe('settings of a skid over HTTP', () => {
     ])
     expect(Math.abs(steps[2]!.fromMs - laterMs)).toBeLessThanOrEqual(1000)
 
+    const facts = (await s.get(`/api/runs/${s.run}`)).json().skidFacts as SkidFacts
+    expect(facts.streams.find((x) => x.id === 'A')!.waterPpm).toBe(210)
+    expect(facts.segments.find((x) => x.id === 'R1')!.limits.dpHighBar).toBe(1.5)
     const live = await report(s)
     expect(live.run.configuration.map((c) => c.version)).toEqual([0, 2, null, 3])
     const alarm = live.alarms.find((a) => a.kind === 'dp-limit' && a.segment === 'R1')!

@@ -31,7 +31,7 @@ const alarm = (more: Partial<Occurrence>): Occurrence => ({
 
 // ALM-02, PRO-08
 it('tells what to check and to do by the cause that was found: composition asks for the lot, a blockage for stopping the feeds', () => {
-  const help = alarmHelpOf(skid)
+  const help = alarmHelpOf(() => skid)
   expect(help(alarm({}))!.action).toBe(defaultRationales.fouling.action)
   expect(help(alarm({ cause: 'composition' }))!.check).toBe(causeGuide.composition.check)
   expect(help(alarm({ cause: 'blockage' }))!.action).toContain('stop the feeds')
@@ -39,7 +39,7 @@ it('tells what to check and to do by the cause that was found: composition asks 
 })
 
 it('never over what the site wrote for that segment, nor for an alarm of another kind', () => {
-  const help = alarmHelpOf(skid)
+  const help = alarmHelpOf(() => skid)
   const own = skid.alarms['fouling:R1']!
   expect(help(alarm({ segment: 'R1', cause: 'composition' }))).toMatchObject({ check: own['check'], action: own['action'] })
   expect(help(alarm({ kind: 'dp-limit', key: 'dp-limit:R2:dpHighBar', cause: 'blockage' }))!.action).toBe(

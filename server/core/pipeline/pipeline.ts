@@ -404,6 +404,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     pushSome(block: RowBlock, row: number): { next: number; events: readonly PipelineEvent[] } {
       return { next: grid.some(block, row), events: take() }
     },
+    /** The configuration in force. */
+    skid: configuration.skid,
     /** End of a finished log: the last scans close. */
     finish(): readonly PipelineEvent[] {
       grid.finish()
