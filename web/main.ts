@@ -19,6 +19,7 @@ import { runsView } from './views/runs.ts'
 import { settingsView } from './views/settings.ts'
 import { soundView } from './views/sound.ts'
 import { cutView, stripView } from './views/strip.ts'
+import { trailView } from './views/trail.ts'
 import { trendBoard } from './views/trend-board.ts'
 import { type Shell, type WatchView, watchView } from './views/watch.ts'
 
@@ -137,7 +138,18 @@ function heard(): void {
   ])
 }
 
-const pages = ['watch', 'flush', 'replay', 'alarms', 'handover', 'trends', 'entries', 'settings', ...Object.keys(sitePages)]
+const pages = [
+  'watch',
+  'flush',
+  'replay',
+  'alarms',
+  'handover',
+  'trends',
+  'entries',
+  'settings',
+  'trail',
+  ...Object.keys(sitePages),
+]
 /** Pages about one run or its skid. */
 const deskPages: Readonly<Record<string, (detail: RunDetail, shell: Shell) => { node: HTMLElement; title: string; stop(): void }>> =
   {
@@ -145,6 +157,7 @@ const deskPages: Readonly<Record<string, (detail: RunDetail, shell: Shell) => { 
     handover: handOverView,
     entries: entriesView,
     settings: settingsView,
+    trail: trailView,
   }
 /** Where the address leads: #/PAGE, #/PAGE/RUN, #/replay/RUN/MOMENT, or a page of the site. */
 function route(): { page: string; run: number | null; atMs: number | null; rest: string } {

@@ -42,7 +42,8 @@ function concerns(rows: readonly SiteRow[], of: TrailOf): PlainRow[] {
   return rows
     .filter((r) => {
       if (r.scope !== null && (r.run !== null || r.scope !== of.scope)) return false
-      if (r.run !== null) return r.run === of.run
+      // A change of settings on a run stands in its own chain as an act, with each value.
+      if (r.run !== null) return r.run === of.run && r.what !== 'settings.change'
       return r.group !== 'review' && r.recordedMs >= begunMs && r.recordedMs <= endedMs
     })
     .map(({ run: _, scope: __, ...row }) => row)

@@ -8,10 +8,14 @@ import type { AuditRecord, Chained, RunRecord, SiteRecord } from './records.ts'
 export type PlainRow = Omit<TrailRow, 'isNew'>
 type Of<R, K> = Extract<R, { readonly kind: K }>
 
-/** A value in one line; text as it is. */
+/** A value in one line; text as it is, an object by its members. */
 export function plain(value: unknown): string | null {
   if (value === null || value === undefined) return null
-  return typeof value === 'string' ? value : JSON.stringify(value)
+  if (typeof value === 'string') return value
+  if (typeof value !== 'object' || Array.isArray(value)) return JSON.stringify(value)
+  return Object.entries(value)
+    .map(([name, v]) => `${name}: ${plain(v) ?? 'none'}`)
+    .join(', ')
 }
 
 const shelving = new Set(['shv', 'uns', 'sbd+', 'sbd-', 'oos+', 'oos-'])

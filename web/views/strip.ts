@@ -37,6 +37,7 @@ export function stripView(hooks: StripHooks) {
     ['handover', el('a', { href: '#/handover', text: 'Hand-over' })],
     ['entries', el('a', { href: '#/entries', text: 'Entries' })],
     ['settings', el('a', { href: '#/settings', text: 'Settings' })],
+    ['trail', el('a', { href: '#/trail', text: 'Trail' })],
     ['people', el('a', { href: '#/people', text: 'People' })],
   ] as const
   const items = links.map(([page, link]) => el('li', { 'data-page': page, hidden: page === 'people' }, link))
