@@ -10,7 +10,7 @@ const stepOf = (c: Course, id: string): CourseStep | undefined => c.steps.find((
 const isUseful = (reason: string): boolean => reason.trim().length >= reasonLength
 
 /** What stands open in a step, one sentence a point. */
-export const openIn = (s: CourseStep): string[] =>
+const openIn = (s: CourseStep): string[] =>
   s.points
     .filter((p) => p.state !== 'met' && p.state !== 'skipped')
     .map(
@@ -46,7 +46,7 @@ function againstStart(s: GuideState, id: string): string[] {
 }
 
 /** The point that a check names, as `criterion` or `criterion:part`. */
-export function pointNamed(step: CourseStep, name: string): number {
+function pointNamed(step: CourseStep, name: string): number {
   return step.points.findIndex((p) => (p.part === null ? p.criterion : `${p.criterion}:${p.part}`) === name)
 }
 
