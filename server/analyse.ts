@@ -1,4 +1,4 @@
-import { createReadStream } from 'node:fs'
+import { open } from 'node:fs/promises'
 import { basename } from 'node:path'
 import { MonitorError } from './core/errors.ts'
 import { createCollector } from './core/pipeline/collect.ts'
@@ -86,11 +86,21 @@ function notesOf(tallies: readonly LogTally[]): string[] {
   return notes
 }
 
-/** A file as a source of the reader. Errors: FILE_READ with the path. */
+/** A file as a source of the reader; a chunk is good until the next is asked for. Errors: FILE_READ with the path. */
 export function fileSource(path: string): LogSource {
   async function* chunks(): AsyncGenerator<Uint8Array> {
     try {
-      for await (const chunk of createReadStream(path, { highWaterMark: 1 << 18 })) yield chunk as Uint8Array
+      const file = await open(path)
+      try {
+        const bytes = new Uint8Array(1 << 18)
+        for (;;) {
+          const { bytesRead } = await file.read(bytes, 0, bytes.length, null)
+          if (bytesRead === 0) return
+          yield bytes.subarray(0, bytesRead)
+        }
+      } finally {
+        await file.close()
+      }
     } catch (cause) {
       if (cause instanceof MonitorError) throw cause
       throw cannotRead(path, cause)

@@ -32,7 +32,7 @@ export interface ImportOptions {
  */
 export async function importRun(o: ImportOptions): Promise<{ rows: number; tallies: readonly LogTally[] }> {
   const { store, run, skid } = o
-  const rowsPerCommit = o.rowsPerCommit ?? 4 * segmentRows
+  const rowsPerCommit = o.rowsPerCommit ?? 2 * segmentRows
   const words: string[] = [...phases]
   let wordsKnown = 0
   const engine = createEngine({ skid, store, run, stepsRun: o.stepsRun })

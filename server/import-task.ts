@@ -1,4 +1,4 @@
-import { createReadStream } from 'node:fs'
+import { fileSource } from './analyse.ts'
 import type { Act } from './core/sequence.ts'
 import { importRun } from './import-run.ts'
 import type { MonitorStore } from './monitor/needs.ts'
@@ -28,7 +28,7 @@ export function importInto(store: MonitorStore, pauseMs: number): ImportWork {
       run: task.run,
       stepsRun: task.stepsRun,
       skid: loadSkid(task.skidText, task.skidFile),
-      sources: task.logs.map(({ name, path }) => ({ name, chunks: createReadStream(path, { highWaterMark: 1 << 16 }) })),
+      sources: task.logs.map(({ name, path }) => ({ name, chunks: fileSource(path).chunks })),
       startMs: task.startMs,
       acts: task.acts,
       onProgress: progress,

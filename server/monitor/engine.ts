@@ -210,7 +210,7 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     /** A snapshot; between `news` and the next entry. */
     save(): void {
       const state: EngineState = {
-        pipeline: pipeline.save(), scans: scans.state, ...counts, lastStep, finished,
+        pipeline: pipeline.save(), scans: scans.state(), ...counts, lastStep, finished,
       } // biome-ignore format: a list
       store.snapshots.put(run, counts.seq, state as unknown as Json)
     },

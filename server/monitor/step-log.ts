@@ -82,7 +82,7 @@ export function stepBlock(rows: readonly StepRow[], segments: number, begunWith:
         s.ratio, s.dpBar, s.flowMlMin, s.tempC, g?.growthPerHour, g?.onset?.atMs, g?.onset?.lowMs, g?.onset?.highMs, g?.onset?.level,
         f === null ? null : limitNames.indexOf(f.limit), f?.atMs, f?.lowMs, f?.highMs, f?.level,
       ] // biome-ignore format: a list in the order of the channels
-      for (const [c, value] of values.entries()) put(1 + i * channels.length + c, value)
+      for (let c = 0; c < values.length; c++) put(1 + i * channels.length + c, values[c])
       if (!hasCharts(segments, width)) return
       put(chartTag(segments, i, 'cusum'), g?.cusum)
       put(chartTag(segments, i, 'cusumLow'), g?.cusumLow)

@@ -22,6 +22,12 @@ function roomFor(n: number): void {
   present = new Uint8Array(n * 2)
 }
 
+/** Whether every row carries a plain value. */
+export function isPlain(codes: Uint8Array, n: number): boolean {
+  for (let i = 0; i < n; i++) if (codes[i] !== cell.value) return false
+  return true
+}
+
 /** Codes, at most 7 each: run lengths, or three bits each where runs are short. The choice is the first byte. */
 function writeCodes(out: ByteWriter, codes: Uint8Array, n: number): void {
   let runs = 1
@@ -68,6 +74,11 @@ function readCodes(from: ByteReader, codes: Uint8Array, n: number): void {
 
 /** Writes one tag's n values and codes. Returns the decimal places that hold all its numbers, −1 when there are none such. */
 export function writeChannel(out: ByteWriter, values: Float64Array, codes: Uint8Array, n: number): number {
+  if (n > 0 && isPlain(codes, n)) {
+    out.u8(everyRow | oneCode)
+    out.u8(cell.value)
+    return writeNumbers(out, values, n)
+  }
   roomFor(n)
   let count = 0
   let form = oneCode

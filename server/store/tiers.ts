@@ -1,5 +1,6 @@
 import { MonitorError } from '../core/errors.ts'
 import { cell } from '../core/reading.ts'
+import { isPlain } from './channel.ts'
 import type { Columns } from './segment.ts'
 
 /*
@@ -70,11 +71,6 @@ function snap(sum: number, additions: number, size: number, places: number): num
   if (places < 0) return sum
   const p = 10 ** places
   return additions * size * p < 2 ** 51 ? Math.round(sum * p) / p : sum
-}
-
-function isPlain(codes: Uint8Array, rows: number): boolean {
-  for (let i = 0; i < rows; i++) if (codes[i] !== cell.value) return false
-  return true
 }
 
 function countDrawn(codes: Uint8Array, values: Float64Array, rows: number): number {
