@@ -24,6 +24,7 @@
  *   GET  /api/runs/:run/transitions                          TransitionRow[]
  *   GET  /api/runs/:run/acts    POST (ActSent → ActReply)    ActRow[]
  *   GET  /api/runs/:run/flush-plan?segment&ratio             FlushPlan of core/report.ts
+ *   GET  /api/runs/:run/flush                               FlushDetail
  *   GET  /api/runs/:run/export/alarms.csv|alarms.json|samples.csv|events.csv|record.json    downloads
  *   GET  /api/skids/:skid/settings                           SettingsPage
  *   GET  /api/skids/:skid/settings/compare?from&to           SettingsComparison
@@ -40,6 +41,7 @@ export type * from './act.ts'
 export type * from './alarm.ts'
 export type * from './alarm-story.ts'
 export type * from './comparison.ts'
+export type * from './flush.ts'
 export type * from './live.ts'
 export type * from './people.ts'
 export type * from './performance.ts'

@@ -1,4 +1,4 @@
-import type { Course, CourseStep, Point } from '../../server/wire/flush.ts'
+import type { Course, CourseStep, Point } from '../../server/wire/index.ts'
 import { duration, fixed } from './format.ts'
 
 /** Short names of the steps, for gates and answers. */

@@ -1,4 +1,4 @@
-import type { Course } from '../../server/wire/flush.ts'
+import type { Course } from '../../server/wire/index.ts'
 import { amount, filledShare, nameOf, standingRefusal, stepWords } from '../model/flush-now.ts'
 import { el, fill, place, say, svg } from './dom.ts'
 

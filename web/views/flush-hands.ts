@@ -1,5 +1,4 @@
-import type { Course, CourseStep } from '../../server/wire/flush.ts'
-import type { ActSent } from '../../server/wire/index.ts'
+import type { ActSent, Course, CourseStep } from '../../server/wire/index.ts'
 import {
   cannotSkip,
   cautionsOf,

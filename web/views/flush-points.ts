@@ -1,4 +1,4 @@
-import type { CourseStep, Point } from '../../server/wire/flush.ts'
+import type { CourseStep, Point } from '../../server/wire/index.ts'
 import { keyOf, pointStates, pointValue } from '../model/flush-now.ts'
 import { el, fill, say, svg } from './dom.ts'
 

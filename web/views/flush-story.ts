@@ -1,5 +1,5 @@
 import type { FlushPlan } from '../../server/core/report.ts'
-import type { Course } from '../../server/wire/flush.ts'
+import type { Course } from '../../server/wire/index.ts'
 import type { ZoneClock } from '../model/clock.ts'
 import { pointValue } from '../model/flush-now.ts'
 import { fixed } from '../model/format.ts'

@@ -1,6 +1,5 @@
 import type { FlushPlan } from '../../server/core/report.ts'
-import type { Course, FlushDetail } from '../../server/wire/flush.ts'
-import type { ActReply, ActSent, LiveState, ServerMessage } from '../../server/wire/index.ts'
+import type { ActReply, ActSent, Course, FlushDetail, LiveState, ServerMessage } from '../../server/wire/index.ts'
 import { getJson, postJson, said } from '../api.ts'
 import { type Feed, type Link, silentMs } from '../feed.ts'
 import { counts, nameOf, nextStep, runningStep, whatNow } from '../model/flush-now.ts'
