@@ -1,5 +1,6 @@
 import { mkdirSync, readFileSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
+import Database from 'better-sqlite3'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import type { Report } from '../../server/core/report.ts'
 import { demoScenario } from '../../server/core/sim/demo.ts'
@@ -85,6 +86,36 @@ describe('import and export', () => {
     expect(only.out.trim().split('\n').length).toBe(1)
     const never = await run('export', '77', '--data', data, '--what', 'alarms', '--format', 'csv', '--out', '-')
     expect([never.code, never.err]).toEqual([1, expect.stringContaining('no run 77')])
+  })
+
+  // REC-11
+  it('verifies the store and its record, and names what a person changed in either', async () => {
+    const { data, run: id, out } = await anImport(0.1)
+    const fingerprint = /fingerprint {2}([0-9a-f]{32})/.exec(out)![1]!
+    const sound = await run('verify', '--data', data)
+    expect([sound.code, sound.err, sound.out]).toEqual([
+      0,
+      '',
+      expect.stringMatching(/360 rows of readings sealed, 0 not yet[\s\S]*UNTOUCHED/),
+    ])
+    expect(sound.out).toContain(fingerprint)
+    const file = join(tempDir(), 'record.json')
+    await run('export', id, '--data', data, '--what', 'record', '--format', 'json', '--out', file)
+    const record = await run('verify', file)
+    expect([record.code, record.out]).toEqual([0, expect.stringContaining('360 rows of readings as they were sealed, 0 covered')])
+    expect(record.out).toContain(fingerprint)
+    expect((await run('verify', '--data', data, '--against', file)).code).toBe(0)
+    writeFileSync(file, readFileSync(file, 'utf8').replace('simulated', 'simulAted').replace('thiophene', 'thiophane'))
+    const touched = await run('verify', file)
+    expect([touched.code, touched.out]).toEqual([1, expect.stringContaining('NOT UNTOUCHED. First bad record')])
+    const db = new Database(join(data, 'clearbore.db'))
+    db.exec("DROP TRIGGER run_stays; UPDATE run SET skid_text = replace(skid_text, 'dpHighBar: 6', 'dpHighBar: 7') WHERE id = 1")
+    db.close()
+    const told = await run('verify', '--data', data)
+    expect(told.code).toBe(1)
+    expect(told.out).toMatch(
+      /NOT UNTOUCHED\. First bad record: run 1, record 0 of 20\d\d-\S+: first record: what it stands for was changed in the store/,
+    )
   })
 
   it('keeps nothing of an import that fails, and tells the line', async () => {
