@@ -1,4 +1,6 @@
 import { describe, expect, it } from 'vitest'
+import { handEventOf } from '../../server/core/settings/hand-events.ts'
+import { entryKinds } from '../../web/model/entry-kinds.ts'
 import { changeText, entryText, kindOf, pathText, readSetting, settingText } from '../../web/model/settings.ts'
 
 describe('settings as a person reads and writes them', () => {
@@ -49,5 +51,13 @@ describe('settings as a person reads and writes them', () => {
     expect(entryText({ ...base, kind: 'event', event: 'sample', value: null, unit: null, note: '' })).toBe('sample')
     expect(entryText({ ...base, kind: 'comment', alarm: null, text: 'seen' })).toBe('seen')
     expect(entryText({ ...base, kind: 'acknowledge', alarm: 1 })).toBeNull()
+  })
+
+  it('the page offers the kinds and units that the server takes', () => {
+    for (const { kind, of, units } of entryKinds.filter((k) => k.kind !== 'comment')) {
+      const known = handEventOf(kind)!
+      expect([known.kind, known.of, Object.keys(known.units).sort()]).toEqual([kind, of, [...units].sort()])
+    }
+    expect(entryKinds).toHaveLength(7)
   })
 })

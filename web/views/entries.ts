@@ -2,21 +2,11 @@ import type { ActRow, ActSent, RunDetail } from '../../server/wire/index.ts'
 import { getJson, postJson, said } from '../api.ts'
 import { fromLocal, toLocal } from '../model/alarm-figures.ts'
 import { zoneClock } from '../model/clock.ts'
+import { entryKinds as kinds } from '../model/entry-kinds.ts'
 import { entryText, readSetting } from '../model/settings.ts'
 import { el, fill, say } from './dom.ts'
 import { fieldOf, formOf } from './form.ts'
 import type { Shell } from './watch.ts'
-
-/** What people enter by hand, of what, and in which units. */
-const kinds = [
-  { kind: 'Karl Fischer', text: 'Karl Fischer result', of: 'stream', units: ['ppm', 'mg/kg', '%'], does: 'It is the water of that feed from now on.' },
-  { kind: 'titre', text: 'Titre', of: 'stream', units: ['mol/L', 'mmol/L'], does: 'An engineer takes it over as the concentration of the feed, under Settings.' },
-  { kind: 'drum change', text: 'Drum change', of: 'stream', units: [], does: '' },
-  { kind: 'filter change', text: 'Filter change', of: 'segment', units: [], does: 'A filter’s clean level is learnt anew from now on.' },
-  { kind: 'effluent test', text: 'Effluent test', of: 'any', units: ['ppm', 'mg/kg', 'mg/L', '%', 'pH', 'mS/cm'], does: '' },
-  { kind: 'sample', text: 'Sample taken', of: 'any', units: [], does: '' },
-  { kind: 'comment', text: 'Comment on the run', of: 'none', units: [], does: '' },
-] as const // biome-ignore format: a table
 
 /** Results and changes entered by hand on a run, and all that was. */
 export function entriesView(detail: RunDetail, shell: Shell) {

@@ -49,21 +49,11 @@ const sorted = <T>(of: Record<string, T>): Record<string, T> =>
 /** Two settings are the same: lists by their elements. */
 export const sameSetting = (a: SettingValue, b: SettingValue): boolean => JSON.stringify(a) === JSON.stringify(b)
 
-/** What must change in `a` to give `b`, in order of path. `patch(a, diff(a, b))` is `b`. */
+/** What must change in `a` to give `b`, in order of path. Laid over `a` it is `b`. */
 export function diff(a: FlatSettings, b: FlatSettings): SettingChange[] {
   const paths = [...new Set([...Object.keys(a), ...Object.keys(b)])].sort()
   return paths.flatMap((path) => {
     const [old, now] = [a[path] ?? null, b[path] ?? null]
     return sameSetting(old, now) ? [] : [{ path, old, new: now }]
   })
-}
-
-/** Settings with changes laid over them. */
-export function patch(of: FlatSettings, changes: readonly Pick<SettingChange, 'path' | 'new'>[]): FlatSettings {
-  const out: Record<string, Exclude<SettingValue, null>> = { ...of }
-  for (const { path, new: now } of changes) {
-    if (now === null) delete out[path]
-    else out[path] = now
-  }
-  return sorted(out)
 }

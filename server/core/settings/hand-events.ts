@@ -18,7 +18,7 @@ export interface HandEvent {
 /** Karl Fischer: mass of water per mass of sample. */
 const massShare = { ppm: 1, 'mg/kg': 1, '%': 1e4 }
 
-export const handEvents: readonly HandEvent[] = [
+const handEvents: readonly HandEvent[] = [
   {
     kind: 'Karl Fischer',
     also: ['karl fischer result', 'kf', 'water', 'water content'],

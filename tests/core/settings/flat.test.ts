@@ -1,7 +1,8 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { diff, type FlatSettings, flatten, patch } from '../../../server/core/settings/flat.ts'
+import { diff, type FlatSettings, flatten } from '../../../server/core/settings/flat.ts'
 import { settingUnit } from '../../../server/core/settings/words.ts'
+import { patch } from '../../helpers/patch.ts'
 import { heron } from '../../helpers/skids.ts'
 
 const skid = heron()
