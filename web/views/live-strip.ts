@@ -1,5 +1,6 @@
 import type { LiveState } from '../../server/wire/index.ts'
 import type { Link } from '../feed.ts'
+import { nameOf, nextStep, runningStep } from '../model/flush-now.ts'
 import { age, duration } from '../model/format.ts'
 import type { RunData } from '../model/run-data.ts'
 import type { Shell } from './watch.ts'
@@ -43,6 +44,14 @@ export function liveStrip(data: RunData, shell: Pick<Shell, 'strip' | 'cut'>, no
     return `${seenWhole ? '' : 'over '}${duration(nowMs - begin)}`
   }
 
+  /** Which flush is followed, and where it is. */
+  function flushing(state: LiveState): string | null {
+    const c = state.flush
+    if (c === null || c.state !== 'running') return null
+    const at = runningStep(c) ?? nextStep(c)
+    return `of ${c.segments.join(', ')}${at === null ? '' : `, ${nameOf(at.step)}${at.state === 'running' ? '' : ' next'}`}`
+  }
+
   return {
     show(state: LiveState, nowMs: number, link: Link): void {
       board(state, nowMs, link)
@@ -59,7 +68,7 @@ export function liveStrip(data: RunData, shell: Pick<Shell, 'strip' | 'cut'>, no
           ...(data.detail.kind === 'simulated' ? [demo] : []),
           {
             bold: `${phase[0]!.toUpperCase()}${phase.slice(1)}${state.mode.inferred ? ', inferred' : ''}`,
-            text: lasted(state, nowMs),
+            text: flushing(state) ?? lasted(state, nowMs),
           },
         ],
         comb: {
