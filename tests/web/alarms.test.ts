@@ -1,7 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import type { AlarmRow } from '../../server/wire/index.ts'
-import { asAt, countsOf, orderOf, pinnedOf } from '../../web/model/alarm-list.ts'
+import { asAt, countsOf, knownAt, orderOf, pinnedOf } from '../../web/model/alarm-list.ts'
 import { alarmOf, t0 } from '../helpers/scene.ts'
 
 const minute = 60_000
@@ -93,4 +93,19 @@ it('shows an alarm of a stored run as it stood: before its acknowledgement UNACK
   ])
   expect(states[0]!.clearedMs).toBeNull()
   expect(asAt({ ...a, acknowledgedMs: null }, t0 + 25 * minute).state).toBe('RTNUN')
+})
+
+// USR-13
+it('in a replay an alarm that was shelved then is shown shelved, one that was over is over, and one not raised yet is not there', () => {
+  const rows = [raised(1, 0), raised(2, 1), raised(3, 30)]
+  const tMs = t0 + 10 * minute
+  const shelved = raised(1, 0, { state: 'SHELVED', needsAck: false })
+  const clock = { kind: 'wall', nowMs: tMs, speed: 1 } as const
+  expect(knownAt(rows, tMs, { alarms: [shelved], clock }).map((a) => [a.id, a.state])).toEqual([
+    [1, 'SHELVED'],
+    [2, 'NORM'],
+  ])
+  // The state of another moment says nothing of this one.
+  const other = { alarms: [shelved], clock: { ...clock, nowMs: tMs - 1000 } }
+  expect(knownAt(rows, tMs, other).map((a) => a.state)).toEqual(['UNACK', 'UNACK'])
 })

@@ -54,6 +54,20 @@ export function countsOf(alarms: readonly AlarmRow[]) {
   return { ...by, shelved, suppressed, outOfService }
 }
 
+/**
+ * The alarms raised up to a moment of a stored run, as they stood then: by the state of that moment where it is known (it knows what was shelved, suppressed or out of
+ * service), else by their times alone.
+ */
+export function knownAt(all: readonly AlarmRow[], tMs: number, state: Pick<LiveState, 'alarms' | 'clock'> | null): AlarmRow[] {
+  const exact = state !== null && state.clock.nowMs === Math.round(tMs) ? new Map(state.alarms.map((a) => [a.id, a])) : null
+  return all
+    .filter((a) => a.raisedMs <= tMs)
+    .map((a) => {
+      const then = asAt(a, tMs)
+      return exact === null ? then : (exact.get(a.id) ?? { ...then, state: 'NORM', needsAck: false })
+    })
+}
+
 /** An alarm as it stood at a moment of a stored run: what came later is not known yet. */
 export function asAt(a: AlarmRow, tMs: number): AlarmRow {
   const clearedMs = a.clearedMs !== null && a.clearedMs <= tMs ? a.clearedMs : null

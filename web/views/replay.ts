@@ -1,6 +1,6 @@
 import type { AlarmRow, LiveState } from '../../server/wire/index.ts'
 import { getJson, said } from '../api.ts'
-import { asAt } from '../model/alarm-list.ts'
+import { knownAt } from '../model/alarm-list.ts'
 import { answersOf } from '../model/answers.ts'
 import { duration, fixed } from '../model/format.ts'
 import { type Look, panned, within, zoomed } from '../model/look.ts'
@@ -175,7 +175,7 @@ export function replayView(data: RunData, shell: Shell, openAtMs: number | null 
   }
 
   function draw(): void {
-    const known = all.filter((a) => a.raisedMs <= atMs).map((a) => asAt(a, atMs))
+    const known = knownAt(all, atMs, state)
     say(sliderText, `${clock.full(atMs)} ${clock.offset(atMs)}`)
     alarms.show(known, atMs, state?.flood ?? null, 'No alarm up to this moment.')
     strip()
