@@ -9,7 +9,7 @@ import type { RunParts } from './monitor/trends.ts'
 import { type AlarmFilter, alarmsCsv, alarmsJson, filteredHistory } from './record/alarm-history.ts'
 import { eventsCsv } from './record/events-csv.ts'
 import { type ExportFacts, exportFacts } from './record/facts.ts'
-import { recordText } from './record/record-json.ts'
+import { howToVerify, recordText } from './record/record-json.ts'
 import { samplesCsv } from './record/samples-csv.ts'
 import type { RunRow } from './wire/run.ts'
 
@@ -89,7 +89,13 @@ export function exportRun(r: ExportRequest): Exported {
   if (r.what === 'record') {
     const report: Report = r.live === null ? createEngine(r.parts).report() : r.live.report()
     const facts = exportFacts({ ...base, trail, fromMs: null, toMs: null, rows: end.rows })
-    const head = { record: 1 as const, ...facts, skidFile: { name: skidFile, text: skidText }, words: store.runs.words(run) }
+    const head = {
+      record: 1 as const,
+      ...facts,
+      verify: howToVerify,
+      skidFile: { name: skidFile, text: skidText },
+      words: store.runs.words(run),
+    }
     const parts = { head, entries: entries(), transitions: all, report, chain: links.map((l) => l.text), sign: store.trail.sign }
     return { facts, name, contentType, pieces: gathered(recordText(parts)) }
   }

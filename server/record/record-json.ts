@@ -11,9 +11,20 @@ import type { ExportFacts } from './facts.ts'
 /** The head of a record: all that is needed to run its sequence again. */
 export interface RecordHead extends ExportFacts {
   readonly record: 1
+  /** How to check it, with and without this tool. */
+  readonly verify: typeof howToVerify
   readonly skidFile: { readonly name: string; readonly text: string }
   readonly words: readonly string[]
 }
+
+/** Printed with every record, so that it can be checked when this tool is gone. */
+export const howToVerify = [
+  'clearbore verify FILE tells whether this record is untouched.',
+  'By hand: "content" in the last line is the SHA-256 of all bytes before that line.',
+  'Its "signature" is Ed25519 by "key" (32 bytes in hex) over the UTF-8 bytes of {"content":"…","statement":"clearbore record 1"} with that content; compare the key with one kept elsewhere.',
+  'Each line of "chain" is a record in canonical JSON (RFC 8785), without the comma behind it. Its hash is the SHA-256 of the 32 bytes of the hash before it (zeros for the first) followed by its own UTF-8 bytes. The last hash is "head" of "trail".',
+  'Times named …Ms are milliseconds since 1970-01-01 UTC. A row of "sequence" is its time, a digit for each tag (0 not given, 1 value, 2 missing, 3 unreadable, 4 uncertain, 5 bad), and the values in the order of the skid file’s tags.',
+] as const
 
 /** Rows of a record: time, one digit of quality a cell (`cell` of core/reading.ts), then the values; 0 where the code says there is none. */
 type RowText = readonly [tMs: number, codes: string, ...values: number[]]

@@ -1,9 +1,9 @@
-import { createHash } from 'node:crypto'
+import { createHash, createPublicKey, verify } from 'node:crypto'
 import { readFileSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import fc from 'fast-check'
 import { beforeEach, describe, expect, it } from 'vitest'
-import { type RecordHead, recordText } from '../../server/record/record-json.ts'
+import { howToVerify, type RecordHead, recordText } from '../../server/record/record-json.ts'
 import { hashOf, nothing } from '../../server/trail/chain.ts'
 import { verifyRecord } from '../../server/trail/verify-record.ts'
 import { cli } from '../helpers/cli.ts'
@@ -71,6 +71,22 @@ describe('an exported record', () => {
     })
     const parsed = JSON.parse(signed.text) as { chain: unknown[]; proof: { key: string } }
     expect([parsed.chain.length, parsed.proof.key]).toEqual([proof.records, signed.key])
+  })
+
+  // REC-17, USR-15
+  it('says in itself how to check it by hand, and that is enough: hash, signature and chain by node:crypto alone', () => {
+    expect(howToVerify.join(' ')).toMatch(/SHA-256 of all bytes before that line.*Ed25519.*RFC 8785.*milliseconds since 1970/)
+    const last = signed.text.slice(signed.text.lastIndexOf('\n"proof":') + 1)
+    const { content, key, signature } = JSON.parse(last.slice('"proof":'.length, -2)) as Record<string, string>
+    expect(createHash('sha256').update(signed.text.slice(0, -last.length)).digest('hex')).toBe(content)
+    const x = Buffer.from(key!, 'hex').toString('base64url')
+    const said = Buffer.from(`{"content":"${content}","statement":"clearbore record 1"}`)
+    const publicKey = createPublicKey({ key: { kty: 'OKP', crv: 'Ed25519', x }, format: 'jwk' })
+    expect(verify(null, said, publicKey, Buffer.from(signature!, 'hex'))).toBe(true)
+    const lines = signed.text.split('"chain":[\n')[1]!.split('\n],')[0]!.split(',\n')
+    const hash = lines.reduce((before, l) => createHash('sha256').update(before).update(l).digest(), Buffer.alloc(32))
+    const { trail } = JSON.parse(signed.text) as { trail: { count: number; head: string } }
+    expect([lines.length, hash.toString('hex')]).toEqual([trail.count, trail.head])
   })
 
   it('shows any change of any one byte: 200 drawn anywhere, every byte of its last line among others', async () => {
