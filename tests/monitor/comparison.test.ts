@@ -15,7 +15,7 @@ function runOf(steps: number, on: number, fromMs: number, of: (k: number) => { r
   const store = openStore(tempDir())
   onTestFinished(() => store.close())
   const pair = createPair(store, {
-    kind: 'imported', about: 'x.csv', skidId: skid.skid, title: 'a run', skidFile: 'x.yaml', skidText: '', startedMs: fromMs, toolVersion: '9.9.9', state: 'ended',
+    kind: 'imported', about: 'x.csv', skidId: skid.skid, title: 'a run', skidFile: 'x.yaml', skidText: '', startedMs: fromMs, toolVersion: '9.9.9', state: 'live',
   }) // biome-ignore format: a list
   const rows = Array.from({ length: steps }, (_, k): StepRow => {
     const { ratio, flowMlMin } = k < on ? { ratio: null, flowMlMin: null } : of(k - on)
