@@ -86,7 +86,10 @@ describe('analyse', () => {
       'time,kind,value,unit,person,note\n2031-05-05T18:03:00Z,Karl Fischer,85,ppm,demo operator,drum 2\n',
     )
     const args = [path('bench.csv'), '--skid', bench]
-    expect(await report([...args, '--events', path('events.csv')])).toEqual(await report(args))
+    const { notes, ...told } = await report([...args, '--events', path('events.csv')])
+    const { notes: none, ...same } = await report(args)
+    expect(told).toEqual(same)
+    expect([none, notes]).toEqual([[], ['2031-05-05T18:03:00.000Z Karl Fischer: kept, not used: it names no feed']])
   })
 
   it('tells progress on stderr when that is a terminal, and nothing when it is not', async () => {

@@ -45,7 +45,7 @@ describe('check-skid', () => {
       err: [
         `${file}:1:7: skid is the text 'a b'; expected letters, digits and '-'; for example 'a-b'`,
         `${file}:2:7: tags has 0 entries; expected a list of tags, at least 1`,
-        `${file}:3:1: unknown key 'stream'; expected one of skid, title, timeZone, scanSeconds, lateSeconds, phaseColumn, log, detection, tags, streams, segments, alarms; did you mean 'streams'?`,
+        `${file}:3:1: unknown key 'stream'; expected one of skid, title, timeZone, scanSeconds, lateSeconds, phaseColumn, log, detection, tags, streams, segments, alarms, suppression, disturbances; did you mean 'streams'?`,
         `${file}:4:11: segments is 5; expected a list of segments; in brackets, even when there is one: [ … ]`,
         `${file}: 4 mistakes`,
         '',
