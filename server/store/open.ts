@@ -91,7 +91,8 @@ export function openStore(dir: string, options: StoreOptions = {}): Store {
         if (options.maxPages !== undefined) db.pragma(`max_page_count = ${options.maxPages}`)
       }
       db.pragma('foreign_keys = ON')
-      db.pragma('cache_size = -16384')
+      // Readings are written once and mostly read once; what is read again the system keeps.
+      db.pragma('cache_size = -4096')
       if (readonly) checkSchema(db)
       else migrate(db, wallMs, options.toolVersion ?? 'unknown')
       const store = assemble(db, held, place, wallMs)

@@ -14,6 +14,14 @@ export const cellWidthsMs = Array.from({ length: 26 }, (_, i) => 1250 * 2 ** i)
 /** Readings a tag a cell at least, at level 0. Of a step up by `fan`, 2.5 goes into wider cells, 1.6 into more cells a page. */
 const readingsPerCell = 96
 const growth = 2.5
+/** Where a segment holds few readings of a tag, as logs of one reading a row do: up to so many cells, of so many readings at least. */
+const sparse = { cells: 16, readingsPerCell: 8 }
+
+/** Most cells of a page of a level with so many readings a tag. */
+function mostCells(readings: number, level: number): number {
+  const q = readings / growth ** level
+  return Math.max(q / readingsPerCell, Math.min(sparse.cells * (fan / growth) ** level, q / sparse.readingsPerCell))
+}
 
 export interface Cells {
   /** Readings of this tag in the cell; 0 leaves the others 0. */
@@ -100,7 +108,7 @@ export function summarise(columns: Columns, places: readonly number[]): Page {
   const plain = columns.codes.map((codes) => isPlain(codes, rows))
   const readings = columns.codes.map((codes, c) => (plain[c] ? rows : countDrawn(codes, columns.values[c]!, rows)))
   const used = Math.max(1, readings.filter((n) => n > 0).length)
-  const most = readings.reduce((a, b) => a + b, 0) / (used * readingsPerCell)
+  const most = mostCells(readings.reduce((a, b) => a + b, 0) / used, 0)
   const { cellMs, at, slotOf } = chooseCells(tMs.subarray(0, rows), most, 0)
   const slots = new Uint32Array(rows)
   let last = Number.NaN
@@ -167,7 +175,7 @@ export function merge(pages: readonly Page[], level: number): Page {
     readings += own
     if (own > 0) used++
   }
-  const most = readings / (Math.max(1, used) * readingsPerCell * growth ** level)
+  const most = mostCells(readings / Math.max(1, used), level)
   const least = Math.max(...pages.map((page) => page.cellMs))
   const times = new Float64Array(pages.reduce((n, page) => n + page.at.length, 0))
   let filled = 0
