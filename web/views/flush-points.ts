@@ -17,6 +17,32 @@ export function stateSign(state: Point['state']): SVGElement {
   return svg('svg', { class: 'hp', viewBox: '0 0 22 22', 'aria-hidden': 'true' }, ...parts[state])
 }
 
+/** Where a value began in this step, where it is, and the line it must come to; the strokes are on the side that does not do. */
+function wayOf(p: Point): SVGElement {
+  const node = svg('svg', { class: 'way', viewBox: '0 0 1000 100', preserveAspectRatio: 'none', 'aria-hidden': 'true' })
+  if (p.state === 'unknown' && p.by === 'readings') {
+    node.append(svg('path', { fill: 'url(#flush-not-known)', d: 'M0 15H1000V85H0Z' }))
+    return node
+  }
+  if (p.limit === null || p.allowed === null || typeof p.value !== 'number') return node
+  const from = p.from ?? p.value
+  const values = [from, p.value, p.limit]
+  const [low, high] = [Math.min(...values), Math.max(...values)]
+  const span = high - low || 1
+  const x = (v: number): number => Math.round(80 + (840 * (v - low)) / span)
+  const limit = x(p.limit)
+  const strokes: string[] = []
+  const [first, last] = p.allowed === 'above' ? [0, limit - 14] : [limit + 24, 1000]
+  for (let at = first; at <= last; at += 38) strokes.push(`M${at} 100l14 -30`)
+  node.append(
+    svg('path', { class: 's-thin', d: strokes.join('') }),
+    svg('path', { class: 's-line', d: `M${limit} 5V100` }),
+    svg('path', { class: 's-line', d: `M${x(from)} 45H${x(p.value)}` }),
+    svg('path', { class: 's-dot', d: `M${x(p.value)} 45h.01` }),
+  )
+  return node
+}
+
 /** What must be true before a step can be accepted, each with what is read now and how it stands. */
 export function pointsView() {
   const title = el('h2', { id: 'points' })
@@ -24,13 +50,25 @@ export function pointsView() {
   const head = el(
     'tr',
     {},
-    ...['Point', 'Needed', 'Now', 'State'].map((t, i) => el('th', { scope: 'col', class: i === 2 ? 'num' : '', text: t })),
+    ...['Point', 'Needed', 'From its start to now', 'Now', 'State'].map((t, i) =>
+      el('th', { scope: 'col', class: i === 3 ? 'num' : i === 2 ? 'draw' : '', text: t }),
+    ),
   )
   const node = el(
     'section',
     { class: 'points', 'aria-labelledby': 'points' },
     el('div', { class: 'head' }, title),
     el('table', { class: 'hold' }, el('thead', {}, head), body),
+    svg(
+      'svg',
+      { class: 'vh', 'aria-hidden': 'true' },
+      svg(
+        'pattern',
+        { id: 'flush-not-known', width: 9, height: 9, patternUnits: 'userSpaceOnUse', patternTransform: 'rotate(45)' },
+        svg('rect', { class: 'k-hatch-bg', width: 9, height: 9 }),
+        svg('rect', { class: 'k-hatch-line', width: 1.6, height: 9 }),
+      ),
+    ),
   )
   let key = ''
   let cells: {
@@ -39,6 +77,8 @@ export function pointsView() {
     readonly sign: HTMLElement
     readonly word: HTMLElement
     readonly why: HTMLElement
+    readonly way: HTMLElement
+    drawn: string
     state: string
   }[] = []
 
@@ -76,7 +116,7 @@ export function pointsView() {
         key = k
         cells = s.points.map(() => {
           const [value, sign, word, why] = [el('td', { class: 'num' }), el('span'), el('b'), el('span')]
-          return { row: el('tr'), value, sign, word, why, state: '' }
+          return { row: el('tr'), value, sign, word, why, state: '', way: el('td', { class: 'draw' }), drawn: '' }
         })
         fill(
           body,
@@ -85,6 +125,7 @@ export function pointsView() {
             c.row.append(
               el('th', { scope: 'row', text: label(p) }),
               el('td', { text: p.needs }),
+              c.way,
               c.value,
               el('td', { class: 'st' }, c.sign, ' ', c.word, c.why),
             )
@@ -102,6 +143,11 @@ export function pointsView() {
           say(c.word, pointStates[p.state])
         }
         say(c.value, pointValue(p))
+        const drawn = `${p.state === 'unknown'} ${p.from} ${p.value}`
+        if (c.drawn !== drawn) {
+          c.drawn = drawn
+          fill(c.way, wayOf(p))
+        }
         c.value.classList.toggle('hatched', p.state === 'unknown' && p.by === 'readings')
         say(
           c.why,

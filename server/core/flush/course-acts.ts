@@ -163,6 +163,7 @@ function takeBack(c: Course, index: number, act: FlushAct): void {
       for (const p of s.points) {
         p.state = p.by === 'person' ? 'not-yet' : 'unknown'
         p.value = null
+        p.from = null
         p.sinceMs = null
         p.person = null
         p.tMs = null

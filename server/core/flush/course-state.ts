@@ -15,6 +15,10 @@ export interface Point {
   state: PointState
   value: number | string | null
   readonly unit: string | null
+  /** First value read in this step; where the line of allowed values lies and on which side of it they are, null for a band or a word. */
+  from: number | null
+  readonly limit: number | null
+  readonly allowed: 'above' | 'below' | null
   /** Tags the value comes from, or where the person read it. */
   source: string
   /** Why it stands as it does. */

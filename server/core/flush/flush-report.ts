@@ -27,7 +27,10 @@ export const flushReport = (c: Course): FlushReport => ({
     plannedMl: s.plannedMl,
     passedMl: s.passedMl,
     withoutFlowSeconds: s.withoutFlowS,
-    checks: s.points.map(({ sinceMs: _, tMs, ...p }) => ({ ...p, at: isoOrNull(tMs) })),
+    checks: s.points.map(({ sinceMs: _since, from: _from, limit: _limit, allowed: _side, tMs, ...p }) => ({
+      ...p,
+      at: isoOrNull(tMs),
+    })),
   })),
   refusals: c.refusals.map(({ tMs, ...r }) => ({ at: iso(tMs), ...r })),
   calls: c.calls.map(({ tMs, ...x }) => ({ at: iso(tMs), ...x })),

@@ -177,6 +177,7 @@ export function judgePoint(point: Point, rule: Rule, m: Memory, step: CourseStep
   point.tMs = null
   point.reason = null
   point.value = s.value
+  if (typeof s.value === 'number') point.from ??= s.value
   if (s.ok === true) point.sinceMs ??= r.endMs
   else point.sinceMs = null
   const lasted = point.sinceMs === null ? 0 : (r.endMs - point.sinceMs) / 1000

@@ -1,7 +1,7 @@
 import type { Layout } from '../derive/layout.ts'
 import type { Given } from '../figures/operation.ts'
 import type { FlushPlan, FlushStep } from '../report.ts'
-import { kFromC, toSi, valueUnit } from '../units.ts'
+import { barFromPa, cFromK, kFromC, toSi, valueUnit } from '../units.ts'
 import type { Point, Rule } from './course-state.ts'
 import type { FlushSettings } from './input.ts'
 import { activeStreams } from './inventory.ts'
@@ -41,6 +41,8 @@ const made = (criterion: string, part: string | null, needs: string, rule: Rule,
     state: rule === null || rule.kind === 'at-most' ? 'not-yet' : 'unknown',
     value: null,
     unit,
+    from: null,
+    ...lineOf(rule),
     source,
     why: rule === null || rule.kind === 'at-most' ? notSeenYet : noReadingYet,
     sinceMs: null,
@@ -50,6 +52,33 @@ const made = (criterion: string, part: string | null, needs: string, rule: Rule,
   },
   rule,
 })
+/** The line that a value must come to, in the unit it is shown in. */
+function lineOf(rule: Rule): Pick<Point, 'limit' | 'allowed'> {
+  switch (rule?.kind) {
+    case 'warm':
+      return { limit: cFromK(rule.aboveK), allowed: 'above' }
+    case 'volume':
+      return { limit: rule.ml, allowed: 'above' }
+    case 'flow-zero':
+      return { limit: 100 * zero.flow, allowed: 'below' }
+    case 'dp-zero':
+      return { limit: barFromPa(rule.belowPa), allowed: 'below' }
+    case 'heat-gone':
+      return { limit: rule.withinK, allowed: 'below' }
+    case 'pressure-steady':
+      return { limit: barFromPa(rule.risePa), allowed: 'below' }
+    case 'no-heat':
+      return { limit: rule.riseK, allowed: 'below' }
+    case 'ratio':
+      return { limit: rule.highest, allowed: 'below' }
+    case 'no-ice':
+      return { limit: cFromK(rule.coldK), allowed: 'below' }
+    case 'at-most':
+      return { limit: rule.limit, allowed: 'below' }
+    default:
+      return { limit: null, allowed: null }
+  }
+}
 const person = (criterion: string, part: string | null, needs: string): Made => made(criterion, part, needs, null, null, '')
 
 /** The points of a step: each criterion of the plan, split where it takes several readings, and the volume where the plan gives one. */
