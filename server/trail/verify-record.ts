@@ -5,7 +5,7 @@ import { MonitorError } from '../core/errors.ts'
 import type { Entry } from '../core/sequence.ts'
 import { type RecordHead, readRecord } from '../record/record-json.ts'
 import { Columns } from '../store/segment.ts'
-import { canonical } from './canonical.ts'
+import { canonical, wellFormed } from './canonical.ts'
 import { sha256 } from './chain.ts'
 import { isSigned } from './keys.ts'
 import { longestProof, type Proof, readProof, recordStatement } from './proof.ts'
@@ -82,7 +82,7 @@ async function checkEntries(
     if (entry.kind === 'act') {
       const r = acts.get(seq)
       if (r === undefined) fault(first, `entry ${seq} is an act of ${entry.act.person} that stands in no record of the chain`)
-      else if (canonical(r.act) !== canonical(entry.act)) fault(r, 'the act in the file is another')
+      else if (canonical(r.act) !== canonical(wellFormed(entry.act))) fault(r, 'the act in the file is another')
       acts.delete(seq)
       seq++
       close()
@@ -170,10 +170,10 @@ export async function verifyRecord(file: string, publicKeys: readonly string[] =
     if (genesis.run !== run || genesis.store !== head.trail.store) fault(genesis, 'the head of the file names another run or store')
     if (genesis.configuration !== sha256(head.skidFile.text)) fault(genesis, 'the skid file in the record is another')
     const words = chain.flatMap((r) => (r.kind === 'words' ? r.words : []))
-    if (canonical(words) !== canonical(head.words)) fault(genesis, 'the words of text tags are others')
+    if (canonical(words) !== canonical(wellFormed(head.words))) fault(genesis, 'the words of text tags are others')
     const journal = chain.filter((r) => r.kind === 'transition')
     const inFile = JSON.parse(transitions === '' ? 'null' : transitions) as unknown[] | null
-    const differs = journal.findIndex((r, i) => canonical(r.transition) !== canonical(inFile?.[i] ?? null))
+    const differs = journal.findIndex((r, i) => canonical(r.transition) !== canonical(wellFormed(inFile?.[i] ?? null)))
     if (differs >= 0) fault(journal[differs]!, 'the alarm journal of the file says something else here')
     else if (inFile === null || inFile.length > journal.length)
       fault(genesis, 'the alarm journal of the file holds more than the chain')

@@ -21,6 +21,11 @@ function sample(isSigned: boolean): { text: string; key: string | null } {
   store.runs.setState(run, 'ended')
   store.upkeep()
   store.sequence.append([{ run, entries: entriesOf(run, 300, 400) }])
+  // Half a character, as a careless paste brings it, and a whole one.
+  const text = 'half \ud83d, whole \ud83d\ude00'
+  store.sequence.append([
+    { run, entries: [{ kind: 'act', act: { kind: 'comment', alarm: null, text, tMs: 6, person: 'demo operator' } }] },
+  ])
   store.events.append(run, 0, [{ seq: 1, tMs: 1, kind: 'note', body: { text: 'a note' } }])
   const trail = store.trail.ofRun(run)
   const head = {
@@ -28,7 +33,7 @@ function sample(isSigned: boolean): { text: string; key: string | null } {
     skidFile: { name: 'heron.yaml', text: aRun.skidText },
     trail: { store: store.trail.signing().store, count: trail.length, head: trail.at(-1)!.hash },
   } as unknown as RecordHead // biome-ignore format: a list
-  const text = [
+  const record = [
     ...recordText({
       head,
       entries: store.sequence.read(run),
@@ -38,7 +43,7 @@ function sample(isSigned: boolean): { text: string; key: string | null } {
       sign: store.trail.sign,
     }),
   ].join('')
-  return { text, key: store.trail.signing().key }
+  return { text: record, key: store.trail.signing().key }
 }
 
 const file = (text: string | Buffer): string => {

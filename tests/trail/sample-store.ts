@@ -14,7 +14,7 @@ export function sampleStore(): { data: string; keys: string; run: RunId } {
   const store = newStore(data, { synchronous: 'NORMAL', keys, toolVersion: '1.2.3', wallMs: () => (now += 1000) })
   const run = store.runs.create(aRun)
   store.settings.put({ scope: 'heron', tMs: 1, person: 'demo engineer', reason: 'first version', settings: { dpHighBar: 6 } })
-  fill(store, run, 0, 3000, 500)
+  fill(store, run, 0, 600, 100)
   store.events.append(
     run,
     0,
@@ -31,7 +31,7 @@ export function sampleStore(): { data: string; keys: string; run: RunId } {
     tMs: 3, person: 'demo engineer', act: 'settings.change', reason: 'trial of a wider limit', body: null, run, old: { dpHighBar: 6 }, new: { dpHighBar: 7 },
   }) // biome-ignore format: a list
   store.runs.delete(gone, { tMs: 4, person: 'demo engineer', reason: 'imported twice' })
-  fill(store, run, 3000, 6500, 500)
+  fill(store, run, 600, 1300, 100)
   transitions(store, run, 4, 6)
   store.runs.setState(run, 'ended')
   store.upkeep()

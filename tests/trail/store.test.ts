@@ -5,6 +5,7 @@ import fc from 'fast-check'
 import { beforeAll, describe, expect, it } from 'vitest'
 import { hashOf, nothing } from '../../server/trail/chain.ts'
 import { fingerprintOf } from '../../server/trail/keys.ts'
+import { entriesOf } from '../store/appender.ts'
 import { aRun, close, newFolder, newStore } from '../store/helpers.ts'
 import { sampleStore, tampered } from './sample-store.ts'
 
@@ -166,7 +167,7 @@ describe('a store', () => {
           rmSync(data, { recursive: true })
         },
       ),
-      { numRuns: 60 },
+      { numRuns: 40 },
     )
   })
 
@@ -319,6 +320,27 @@ describe('append-only', () => {
   })
   const keyOf = (sql: string): string =>
     /UPDATE (store|act|segment|strip|audit|settings)/.test(sql) ? 'id' : /UPDATE seal/.test(sql) ? 'count' : 'run'
+})
+
+describe('two connections of one process', () => {
+  it('append to the same chains in turn, and what each wrote is signed by the one that holds the key', () => {
+    const data = newFolder()
+    const keys = newFolder()
+    const main = newStore(data, { keys })
+    const worker = newStore(data, { joined: true, keys })
+    const run = main.runs.create(aRun)
+    for (let i = 0; i < 40; i++) {
+      const store = i % 2 === 0 ? main : worker
+      store.sequence.append([{ run, entries: entriesOf(run, 20 * i, 20 * i + 20) }])
+      store.audit.append({ tMs: i, person: 'demo engineer', act: 'sign-in', reason: '', body: null })
+    }
+    expect(worker.trail.signing().key).toBeNull()
+    main.trail.seal(true)
+    const proof = main.trail.verify()
+    expect([proof.faults, proof.unsigned, proof.signed!.heads]).toEqual([[], 0, 1])
+    const acts = entriesOf(run, 0, 800).filter((e) => e.kind === 'act').length
+    expect(main.trail.ofRun(run).filter(({ record }) => record.kind === 'act').length).toBe(acts)
+  })
 })
 
 describe('keys', () => {
