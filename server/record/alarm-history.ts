@@ -41,7 +41,7 @@ export function* alarmsCsv(facts: ExportFacts, records: readonly AlarmRecord[], 
   for (const r of records) {
     const o = r.alarm === null ? undefined : byId.get(r.alarm)
     yield csvLine([
-      facts.run, facts.skid, facts.configVersion, facts.recordedWith, iso(r.tMs), localIso(r.tMs, facts.timeZone), r.alarm, r.key, o?.kind ?? null,
+      facts.run, facts.skid, r.configVersion, facts.recordedWith, iso(r.tMs), localIso(r.tMs, facts.timeZone), r.alarm, r.key, o?.kind ?? null,
       r.priority, o?.segment ?? null, o?.tag ?? null, r.from, r.to, r.input, r.outcome, r.value, r.limit, r.unit, r.quality, r.person, r.logic, r.reason,
       o === undefined ? null : iso(o.raisedMs), isoOrNull(o?.clearedMs ?? null), isoOrNull(o?.acknowledgedMs ?? null), o?.acknowledgedBy ?? null,
       o?.cause ?? null, o?.onset?.at ?? null, o?.onset?.low ?? null, o?.onset?.high ?? null, o?.message ?? null,

@@ -2,7 +2,7 @@ import { readFileSync } from 'node:fs'
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { createConfiguration } from '../../server/core/settings/configuration.ts'
-import { flatten } from '../../server/core/settings/flat.ts'
+import { flatten, type SettingValue } from '../../server/core/settings/flat.ts'
 import { applyChanges } from '../../server/core/settings/slots.ts'
 import { decideChanges, type Ground } from '../../server/settings/decide.ts'
 import { checkChanged } from '../../server/settings/effective.ts'
@@ -76,6 +76,29 @@ describe('a change that a person asks for', () => {
     ['of an alarm suppressed by an unknown phase', ask('suppression.rest.phases', ['asleep']), 'phases'],
   ])('%s is refused and says why', (_, asked, says) => {
     expect(asked).toThrow(says)
+  })
+
+  const piece = fc.constantFrom('segments', 'R1', 'limits', 'dpHighBar', 'temperatureLowC', 'feedRatio', 'low', 'alarms', 'flow', 'flow:R1', 'priority', 'onDelaySeconds', 'suppression', 'rest', 'phases', 'detection', 'riseToFindPct', 'streams', 'A', 'waterPpm', 'disturbances', 'wander', '__proto__', 'constructor', '', 'tags', 'PT-101') // biome-ignore format: a list
+  const value = fc.oneof(
+    fc.double(),
+    fc.constantFrom<number | string | boolean | null>(null, 0, -1, 5, 1e308, Number.NaN, true, '', 'high', '__proto__'),
+    fc.array(fc.constantFrom<string | number>('flow', 'hold', 3), { maxLength: 2 }),
+  )
+  it('whatever is asked is refused in words or gives changes that the file could hold; nothing else happens', () => {
+    fc.assert(
+      fc.property(fc.array(fc.tuple(fc.array(piece, { maxLength: 5 }), value), { maxLength: 2 }), (asked) => {
+        const changes = asked.map(([path, now]) => ({ path: path.join('.'), new: now as SettingValue }))
+        try {
+          const out = decideChanges(ground(), 0, { changes, effectiveMs: 0, reason })
+          expect(checkChanged(text, 'heron.yaml', out).problems).toEqual([])
+          expect(applyChanges(skid, out).left).toEqual([])
+        } catch (error) {
+          expect((error as { code?: string }).code).toBe('ACT_REFUSED')
+        }
+      }),
+      { numRuns: 400 },
+    )
+    expect(({} as Record<string, unknown>)['phases']).toBeUndefined()
   })
 
   it('is refused where it would make what is planned later impossible', () => {

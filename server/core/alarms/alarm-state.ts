@@ -96,6 +96,7 @@ export interface AlarmRecord {
   /** The operator is called: flash and sound. */
   readonly sound: boolean
   readonly priority: Priority
+  /** Skid and version of the settings in force: `heron/3`. */
   readonly configVersion: string
   readonly value: number | null
   readonly limit: number | null
