@@ -6,6 +6,8 @@ import { problemSchema } from './schemas.ts'
 import type { Services } from './services.ts'
 
 const files = ['alarms.csv', 'alarms.json', 'samples.csv', 'events.csv', 'record.json'] as const
+/** What a date can be. */
+const time = Type.Number({ minimum: -8.64e15, maximum: 8.64e15 })
 const textOrAll = Type.Optional(Type.String({ maxLength: 100 }))
 
 /** Downloads of a run: alarm history, readings, record. */
@@ -15,8 +17,8 @@ export const exportRoutes: FastifyPluginAsyncTypebox<Services> = async (app, s) 
     const querystring = Type.Object(
       what === 'alarms'
         ? {
-            fromMs: Type.Optional(Type.Number()),
-            toMs: Type.Optional(Type.Number()),
+            fromMs: Type.Optional(time),
+            toMs: Type.Optional(time),
             kind: textOrAll,
             segment: textOrAll,
             priority: textOrAll,

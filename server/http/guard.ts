@@ -40,6 +40,12 @@ export type Guard = ReturnType<typeof createGuard>
 /** Answers every request of a wrong Host with 421 and of a wrong Origin with 403, before anything else looks at it. */
 export function guardRequests(app: FastifyInstance, guard: Guard): void {
   app.addHook('onRequest', async (request, reply) => {
+    // Who has hung up already has no address, and hears nothing.
+    if ((request.ip as string | undefined) === undefined) {
+      reply.hijack()
+      request.raw.destroy()
+      return
+    }
     const fault = guard.fault(request.headers.host, request.headers.origin)
     if (fault === null) return
     const problem =

@@ -78,7 +78,8 @@ export function createHub({ source, version, wallMs, admit, maxConnections = 64,
     attach(server: Server): void {
       server.on('upgrade', (request, socket, head) => {
         socket.on('error', () => socket.destroy())
-        if (new URL(request.url ?? '/', 'http://x').pathname !== '/ws') return refuse(socket, '404 Not Found')
+        // Not by URL: it throws for what a socket may send.
+        if (request.url?.split('?')[0] !== '/ws') return refuse(socket, '404 Not Found')
         const admission = admit(request)
         if ('refused' in admission) return refuse(socket, admission.refused)
         if (connections.size >= maxConnections) return refuse(socket, '503 Service Unavailable')

@@ -3,6 +3,7 @@ import { MonitorError } from '../core/errors.ts'
 import type { PersonRow } from '../store/people.ts'
 import { aboutOf, type Desk, note } from './desk.ts'
 import { nameKey } from './name.ts'
+import { networkOf } from './network.ts'
 import { checkPassword } from './password.ts'
 import type { Sessions } from './sessions.ts'
 import { addressRule, failedAgain, forgottenMs, nameRule, waitMs } from './waiting.ts'
@@ -48,7 +49,7 @@ export function createSignIn(desk: Desk, sessions: Sessions) {
 
   /** Whether a password is a person's. Counted as failed before it is known, so that tries at the same moment see each other. */
   async function proves(person: PersonRow | null, key: string, password: string, address: string): Promise<boolean> {
-    const places = { name: placeOf(key, person), address: `address ${address}` }
+    const places = { name: placeOf(key, person), address: `address ${networkOf(address)}` }
     store.together(() => {
       mustNotWait(places)
       countOne(places)

@@ -1,6 +1,7 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { nameKey, nameOf } from '../../server/people/name.ts'
+import { networkOf } from '../../server/people/network.ts'
 import { checkPassword } from '../../server/people/password.ts'
 import { may, type Need, roles } from '../../server/people/roles.ts'
 import { createHasher } from '../../server/people/scrypt.ts'
@@ -123,6 +124,21 @@ describe('scrypt', () => {
     expect(refused.length).toBe(8)
     expect(String((refused[0] as PromiseRejectedResult).reason)).toContain('too many people are signing in')
     expect(await busy.verify('x', null)).toBe(false)
+  })
+})
+
+describe('an address', () => {
+  it.each([
+    ['192.0.2.7', '192.0.2.7'],
+    ['::ffff:192.0.2.7', '192.0.2.7'],
+    ['2001:db8:1:2:3:4:5:6', '2001:db8:1:2::/64'],
+    ['2001:db8:1:2::9', '2001:db8:1:2::/64'],
+    ['2001:0DB8::1', '2001:db8:0:0::/64'],
+    ['::1', '0:0:0:0::/64'],
+    ['fe80::1%eth0', 'fe80:0:0:0::/64'],
+    ['not one', 'not one'],
+  ])('%s counts as %s', (address, network) => {
+    expect(networkOf(address)).toBe(network)
   })
 })
 
