@@ -178,6 +178,8 @@ export interface GuideState {
   pathMl: number | null
   displacement: string
   drying: string
+  /** Segments whose alarm of ice is up. */
+  ice: string[]
   /** When the course was last told as an event, and which points stood how. */
   toldMs: number
   told: string
@@ -194,6 +196,7 @@ export const freshGuide = (): GuideState => ({
   pathMl: null,
   displacement: '',
   drying: '',
+  ice: [],
   toldMs: 0,
   told: '',
 })

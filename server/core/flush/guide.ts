@@ -1,3 +1,4 @@
+import type { Signal } from '../alarms/occurrence.ts'
 import type { Layout } from '../derive/layout.ts'
 import { segmentDp } from '../derive/step.ts'
 import { MonitorError } from '../errors.ts'
@@ -5,6 +6,7 @@ import type { AlarmKind } from '../report.ts'
 import type { Scan } from '../scan/grid.ts'
 import { against, type FlushAct, record } from './course-acts.ts'
 import { type Course, type CourseStep, freshGuide, type GuideState, type Liquid } from './course-state.ts'
+import { iceSignals } from './ice-alarm.ts'
 import type { FlushInput } from './input.ts'
 import { judgePoint, type Readings } from './judge-point.ts'
 import { openCourse } from './open-course.ts'
@@ -262,8 +264,12 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
       tell(tMs)
     },
 
+    /** What the alarm of ice says anew. */
+    signals: (tMs: number): Signal[] => iceSignals(s, tMs),
+
     /** Courses as they stood when something of them was new, since the last call. */
-    drain(): Course[] {
+    drain(): readonly Course[] {
+      if (news.length === 0) return nothing
       const out = news
       news = []
       return out
@@ -289,6 +295,6 @@ export function createGuide(layout: Layout, needs: GuideNeeds, saved?: GuideStat
     return any
   }
 }
-export type Guide = ReturnType<typeof createGuide>
 
+const nothing: readonly Course[] = []
 const keyOf = (c: Course): string => c.steps.map((x) => x.points.map((p) => p.state[0]).join('')).join('/')

@@ -180,6 +180,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
 
   function drainGuide(tMs: number): void {
     for (const course of guide.drain()) events.push({ kind: 'flush', tMs, course })
+    const said = guide.signals(tMs)
+    for (const x of said) signal(x)
+    if (said.length > 0) drainBook()
   }
 
   function onScan(scan: Scan): void {

@@ -154,7 +154,7 @@ describe('a flush that does not go by the book', () => {
     expect(n.course()!.calls[0]!.text).toContain('escalate')
   })
 
-  it('calls ice when ΔP rises by a third near 0 °C in F5, advises to stop cooling, and counts nothing passed in a gap of 90 s', () => {
+  it('calls ice when ΔP rises by a third near 0 °C in F5 as an alarm of its own, advises to stop cooling, and counts nothing passed in a gap of 90 s', () => {
     let ice = false
     let gap = 0
     const n = night(heron, {}, (_, b) => {
@@ -174,7 +174,12 @@ describe('a flush that does not go by the book', () => {
     expect(doStep(n, 'R1', 'F5', 30)).toBe(false)
     expect(n.course()!.calls.map((c) => c.kind)).toEqual(['ice'])
     expect(stepOf(n, 'F5').points.find((p) => p.part === 'R1' && p.criterion === 'no-ice')).toMatchObject({ state: 'failed' })
+    const alarm = () => n.report().alarms.find((a) => a.cause === 'ice')
+    expect(alarm()).toMatchObject({ kind: 'fouling', segment: 'R1', cleared: null })
+    expect(n.report().advice.at(-1)).toMatchObject({ action: 'stop-cooling', segments: ['R1'] })
     n.act({ kind: 'flush-step', segment: 'R1', step: 'F5', state: 'aborted', reason: '' })
+    n.run(1)
+    expect(alarm()!.cleared).not.toBeNull()
     expect(n.report().flushes[0]).toMatchObject({ state: 'aborted', endedBy: 'operator 1' })
   })
 })
