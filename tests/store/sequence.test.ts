@@ -178,5 +178,5 @@ it('keeps the words of a run in the same commit as the first rows that use them,
   expect(() => store.sequence.append([{ run, entries, words: { from: 2, words: ['hold'] } }])).toThrow(
     "word 2 of run 1 is 'flush', not 'hold'",
   )
-  expect(store.sequence.count(run)).toEqual({ entries: 2, rows: 2 })
+  expect(store.sequence.count(run)).toEqual({ entries: 2, rows: 2, width: 1 })
 })
