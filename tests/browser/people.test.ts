@@ -62,6 +62,7 @@ describe.runIf(chromium !== null)('people in a real browser, on a server that wa
     await until(admin.page, `${data}.ready === 'true'`)
     expect(await admin.page.textContent('.strip .who')).toBe('Odo Fennadministrator')
 
+    await admin.page.click('.strip .more summary')
     await admin.page.click('.strip nav >> text=People')
     await until(admin.page, `document.querySelector('tr[data-person="Odo Fenn"]') !== null`)
     await admin.page.fill('#new-name', 'Ruth Alder')

@@ -2,6 +2,7 @@ import type { RunRow, Session } from '../../server/wire/index.ts'
 import type { ZoneClock } from '../model/clock.ts'
 import { duration } from '../model/format.ts'
 import { el, fill, say, svg } from './dom.ts'
+import { moreView } from './more.ts'
 
 export interface StripState {
   /** First word of the address. */
@@ -41,6 +42,10 @@ export function stripView(hooks: StripHooks) {
     ['people', el('a', { href: '#/people', text: 'People' })],
   ] as const
   const items = links.map(([page, link]) => el('li', { 'data-page': page, hidden: page === 'people' }, link))
+  // Watching comes first; what is done now and then stands behind one word, so that the strip stays one line.
+  const nowAndThen = new Set(['alarms', 'handover', 'entries', 'settings', 'trail', 'people'])
+  const isMore = (i: HTMLElement) => nowAndThen.has(i.dataset['page']!)
+  const more = moreView(items.filter(isMore))
   const skids = el('nav', { 'aria-label': 'Live skids', hidden: true })
   const facts = el('div', { class: 'facts' })
   const teethPath = svg('path')
@@ -62,7 +67,7 @@ export function stripView(hooks: StripHooks) {
     { class: 'strip' },
     skid,
     mode,
-    el('nav', { 'aria-label': 'Pages' }, el('ul', {}, ...items)),
+    el('nav', { 'aria-label': 'Pages' }, el('ul', {}, ...items.filter((i) => !isMore(i)), el('li', {}, more.node))),
     skids,
     el('span', { class: 'grow' }),
     facts,
@@ -104,6 +109,7 @@ export function stripView(hooks: StripHooks) {
       mode.classList.toggle('replay', s.mode === 'REPLAY')
       node.classList.toggle('past', s.mode === 'REPLAY')
       node.dataset['mode'] = s.mode
+      more.show(nowAndThen.has(s.page) ? (links.find(([page]) => page === s.page)?.[1].textContent ?? null) : null)
       for (const [page, link] of links)
         if (s.page === page) link.setAttribute('aria-current', 'page')
         else link.removeAttribute('aria-current')
