@@ -1,5 +1,5 @@
 import type { AlarmRecord } from '../core/alarms/alarm-state.ts'
-import type { BaselineRecord } from '../core/fouling/watch.ts'
+import type { BaselineRecord } from '../core/fouling/watch-state.ts'
 import { barFromPa } from '../core/units.ts'
 import type { AlarmTransition } from '../store/journal.ts'
 import type { Json } from '../store/keys.ts'

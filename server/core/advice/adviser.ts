@@ -1,6 +1,6 @@
 import type { AlarmChange, Occurrence } from '../alarms/occurrence.ts'
 import { MonitorError } from '../errors.ts'
-import type { ForecastRecord } from '../fouling/watch.ts'
+import type { ForecastRecord } from '../fouling/watch-state.ts'
 import type { Interval } from '../growth/points.ts'
 import type { Action, AdviceReport, FlushPlan } from '../report.ts'
 import type { SegmentKind } from '../skid.ts'

@@ -19,6 +19,8 @@ export type BankEvent = {
       readonly neighbours: boolean
       readonly ramp: boolean
       readonly sizePa: number
+      /** All that is known of this tap's shifts lies well within its accuracy: taken into the model, no alarm. */
+      readonly slight?: boolean
     }
   | { readonly kind: 'stream'; readonly stream: number; readonly size: number }
 )
@@ -52,6 +54,9 @@ export interface SegmentTrack {
   /** ln flow and ln viscosity as they stand between moves: what exponents are learnt from. */
   flowHeld?: number
   viscHeld?: number
+  /** Lone falls in a row that began with no move of flow or viscosity: how many, and their sum, ln. */
+  falls?: number
+  fallen?: number
 }
 
 export interface BankState {
@@ -64,6 +69,8 @@ export interface BankState {
   /** Pressure of each tap over the last few steps before this one. */
   tapMeanPa: (number | null)[]
   drifting: boolean[]
+  /** Shifts of shared taps told so far, Pa: taken off their readings; missing where there were none. */
+  tapShiftPa?: number[]
   sinceGap: number
   gapAt: number
   sinceMove: number

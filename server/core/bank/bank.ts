@@ -26,6 +26,8 @@ import {
 import { rowOf, type SegmentObservation, stateMap } from './model.ts'
 import { type Court, depositVerdict, otherVerdict, touches, type Verdict, verdictRules, zeroSuspect } from './verdicts.ts'
 
+/** Below this a shift is as good as its tangent, ln ΔP. */
+const leastBend = 0.03
 /** Share of a step in the mean of the last few. */
 const recentShare = 0.2
 
@@ -70,6 +72,26 @@ export function createBank(
   const sdOf = (i: number): number => Math.sqrt(Math.max(0, f.p[i * map.size + i]!))
   const watched = (seg: number): boolean => s.tracks[seg]!.started && !s.tracks[seg]!.fouled
   const isWatched = (e: Explanation): boolean => touches(layout, e).some(watched)
+
+  /** An observation less what is known of the taps' zeros. Null where nothing would be left. */
+  function corrected(seg: number, o: SegmentObservation): SegmentObservation | null {
+    const shifts = s.tapShiftPa
+    if (shifts === undefined) return o
+    const { tapIn, tapOut } = layout.segments[seg]!
+    const offPa = (tapIn === null ? 0 : shifts[tapIn]!) - (tapOut === null ? 0 : shifts[tapOut]!)
+    if (offPa === 0) return o
+    const dpPa = o.dpPa - offPa
+    return dpPa <= 0 ? null : { ...o, dpPa, y: o.y + Math.log(dpPa / o.dpPa) }
+  }
+
+  /**
+   * ΔP by which a shift of so many Pa shows in ln ΔP: the logarithmic mean of what it was and what it is, Δ ln ΔP = Δ/L, L = ΔP (1 − e^−r)/r with r
+   * how far ln ΔP is off. The tangent, ΔP itself, would take half a small ΔP for a third.
+   */
+  function dpOfShift(seg: number, o: SegmentObservation): number {
+    const r = o.y - meanWithoutWander(seg, o)
+    return Math.abs(r) < leastBend ? o.dpPa : (o.dpPa * -Math.expm1(-r)) / r
+  }
 
   function meanWithoutWander(seg: number, o: SegmentObservation): number {
     const t = s.tracks[seg]!
@@ -134,10 +156,11 @@ export function createBank(
     learnNoise(seg, o)
     // What multiplies the states rests on the steps before: this step's own noise is in y too, and would teach zeros, gains and
     // exponents for ever.
+    const yBefore = t.yMean ?? o.y
     const before: SegmentObservation = {
       ...o,
       tapPa: s.tapMeanPa,
-      dpPa: o.dpPa * Math.exp((t.yMean ?? o.y) - o.y),
+      dpPa: o.dpPa * Math.exp(yBefore - o.y),
       lnFlow: held(t, 'flowHeld', o.lnFlow),
       lnVisc: held(t, 'viscHeld', o.lnVisc),
     }
@@ -152,7 +175,8 @@ export function createBank(
     t.z2 = t.z1
     t.z1 = z
     const u = filter.update(f, row, o.y, noise)
-    observe(columns, layout, seg, s.steps, before, row, u.innovation, u.variance, u.gain)
+    const shown = { ...before, dpPa: dpOfShift(seg, { ...before, y: yBefore }) }
+    observe(columns, layout, seg, s.steps, shown, row, u.innovation, u.variance, u.gain)
     t.seen++
   }
 
@@ -220,17 +244,27 @@ export function createBank(
   function stepEvent(v: Verdict, segment: number, size: number, variance: number): BankEvent {
     const more = common(v)
     const dpPa = s.tracks[segment]!.lastDpPa ?? 0
+    const t = s.tracks[segment]!
+    // A clean bore does not open step by step: three falls in a row, with nothing else moving, are one drift.
+    const falls = size < 0 && !more.nearMove
+    t.falls = falls ? (t.falls ?? 0) + 1 : 0
+    t.fallen = falls ? (t.fallen ?? 0) + size : 0
+    const drifts = t.falls >= verdictRules.falls && t.fallen < -verdictRules.zeroSize
+    const whole = drifts ? t.fallen : size
     const clear = v.likelihood > verdictRules.zeroLikelihood && Math.abs(size) > verdictRules.zeroSize && !more.nearMove
-    const suspect = clear ? zeroSuspect(layout, segment, dpPa * -Math.expm1(-size)) : null
+    const named =
+      (clear || drifts) && v.rivals.every((r) => r.kind !== 'stream' || v.likelihood - r.likelihood >= verdictRules.streamExcluded)
+    const suspect = named ? zeroSuspect(layout, segment, dpPa * -Math.expm1(-whole)) : null
+    if (suspect !== null) t.falls = t.fallen = 0
     if (suspect === null && size > verdictRules.blockage && !more.nearMove) {
       freeze(segment)
       return { kind: 'blockage', segment, size, ...more }
     }
     putInto(map.level(segment), size, variance)
     // What an instrument or the exponents did is no resistance: the clean level moves along, and the ratio stays.
-    if (suspect !== null || more.nearMove) shiftReference(segment, size)
+    if (suspect !== null || more.nearMove) shiftReference(segment, suspect === null ? size : whole)
     if (suspect === null) return { kind: 'step', segment, size, ...more }
-    return { kind: 'instrument', tag: suspect.tag, segment, neighbours: false, ramp: false, sizePa: suspect.sizePa, ...more }
+    return { kind: 'instrument', tag: suspect.tag, segment, neighbours: false, ramp: drifts, sizePa: suspect.sizePa, ...more }
   }
 
   function tapEvent(v: Verdict, variance: number): BankEvent {
@@ -248,19 +282,28 @@ export function createBank(
       if (!ramp) return stepEvent(v, segment, shift, variance * (1000 / dpPa) ** 2)
       putInto(map.level(segment), shift, (variance * (1000 * grown) ** 2) / dpPa ** 2)
       shiftReference(segment, shift)
-    } else putInto(zero, sizePa, variance * (1000 * grown) ** 2)
+    } else {
+      putInto(zero, 0, variance * (1000 * grown) ** 2)
+      s.tapShiftPa ??= layout.taps.map(() => 0)
+      s.tapShiftPa[tap]! += sizePa
+      for (const i of on) s.tracks[i]!.yMean = s.tracks[i]!.lastResidual = null
+    }
     if (ramp) s.drifting[tap] = true
-    return { kind: 'instrument', tag: layout.taps[tap]!.name, segment, neighbours: zero >= 0, ramp, sizePa, ...common(v) }
+    const { name, spanPa } = layout.taps[tap]!
+    const slight = !ramp && zero >= 0 && spanPa !== null && Math.abs(s.tapShiftPa![tap]!) < verdictRules.slightShare * spanPa
+    const event = { kind: 'instrument' as const, tag: name, segment, neighbours: zero >= 0, ramp, sizePa, ...common(v) }
+    return slight ? { ...event, slight } : event
   }
 
   return {
     map,
     /** One step in production. `armed` lets explanations be born; `gapSteps` whole steps without data came before. */
     step(
-      observations: readonly (SegmentObservation | null)[],
+      read: readonly (SegmentObservation | null)[],
       armed: boolean,
       gapSteps: number,
     ): { segments: BankSegment[]; events: BankEvent[] } {
+      const observations = read.map((o, seg) => (o === null ? null : corrected(seg, o)))
       s.steps += 1 + gapSteps
       const anything = observations.some((o) => o !== null)
       if (gapSteps > 0) {
@@ -321,8 +364,9 @@ export function createBank(
     },
 
     /** ln ratio of an earlier observation by what is known now: an alarm's history is read with the clean parameters, not the polluted ones. */
-    reread(seg: number, o: SegmentObservation): number {
+    reread(seg: number, as: SegmentObservation): number {
       const t = s.tracks[seg]!
+      const o = corrected(seg, as) ?? as
       const level = t.clean === null ? f.x[map.level(seg)]! : t.clean.c
       return o.y - meanWithoutWander(seg, o) + (t.cRef === null ? 0 : level - t.cRef)
     },
@@ -405,6 +449,12 @@ export function createBank(
     /** Likelihood of a growing deposit in a segment now, for the screen. */
     suspicion: (seg: number): number =>
       columns.reduce((m, c) => (c.kind === 'deposit' && c.of === seg && c.d > 0 ? Math.max(m, likelihood(c, s.steps)) : m), 0),
+
+    /** Whether an explanation other than a deposit is likely in a segment and not yet decided on. */
+    weighs: (seg: number): boolean =>
+      columns.some(
+        (c) => c.kind !== 'deposit' && likelihood(c, s.steps) > verdictRules.other.likelihood && touches(layout, c).includes(seg),
+      ),
 
     save: (): BankState => ({
       ...structuredClone({ ...s, columns: [] }),

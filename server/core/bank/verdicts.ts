@@ -15,6 +15,12 @@ export const verdictRules = {
   /** Least likelihood and size (ln ΔP) of a lone step before an instrument is named for it. */
   zeroLikelihood: 40,
   zeroSize: 0.03,
+  /** Lone falls in a row that together are the drift of an instrument. */
+  falls: 3,
+  /** A shift of this share of a tap's span is within what its accuracy allows: known, not alarmed. */
+  slightShare: 0.001,
+  /** Nats by which a stream must fall short before a lone step is put down to an instrument. */
+  streamExcluded: 6,
 } as const
 
 /** Another explanation and how well it does, for the evidence shown with an alarm. */

@@ -5,7 +5,7 @@ import type { GrowthPoint } from '../growth/points.ts'
 import type { ChartReport } from '../report.ts'
 
 /** Steps averaged to one point of the charts: five minutes on a one-second grid. */
-const stepsPerPoint = 10
+export const stepsPerPoint = 10
 /** What flow and viscosity corrections leave unexplained for hours, as a share of ΔP; noise alone would promise too much. Starting value. */
 const modelSd = 0.004
 /** The drift chart looks back a month: creeping growth is a matter of days. */
@@ -86,6 +86,18 @@ export function startCharts(
   } // biome-ignore format: a list
 }
 
+/**
+ * Something that is no growth has been told of, and moved the zero by `byLn`: what stood in the sum until then goes. The drift stays, since a few points
+ * among those of a month do not turn a robust slope. Changes the state in place.
+ */
+export function resumeCharts(c: ChartState, byLn: number): void {
+  c.zeroLn += byLn
+  c.sum = c.sumMs = c.n = c.expected = 0
+  c.recent = []
+  c.cusum = cusum.start({ k: c.design.k, h: c.design.h, cap: 2 * c.design.h })
+  c.over = c.under = false
+}
+
 /** Steady gain of the filter of a mean-reverting wander of variance `slow` in white noise, and the variance of its surprises. */
 function steady(memory: number, slow: number, white: number): { gain: number; variance: number } {
   let ahead = slow
@@ -141,6 +153,12 @@ export function chartReport(c: ChartState, riseToFindPct: number, stepS: number)
 /** Where the last half hour stands over the charts' zero, ln ratio. */
 export const standing = (c: ChartState): number => c.recent.reduce((a, b) => a + b, 0) / Math.max(1, c.recent.length)
 
+/** The same less its highest and lowest point: an instrument that jumped is told within one of them. */
+function standingMost(c: ChartState): number {
+  const sorted = [...c.recent].sort((a, b) => a - b).slice(1, -1)
+  return sorted.reduce((a, b) => a + b, 0) / Math.max(1, sorted.length)
+}
+
 export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {
   const v = c.drift.verdict
   const rising =
@@ -155,6 +173,6 @@ export function readCharts(c: ChartState, riseToFindPct: number): ChartReading {
     cusumOver: c.over,
     drift: rising,
     alarms: c.over && rising !== null && stands,
-    below: c.under === true && full && mean < -fallShare * rise,
+    below: c.under === true && full && standingMost(c) < -fallShare * rise,
   }
 }

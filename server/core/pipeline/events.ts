@@ -1,7 +1,7 @@
 import type { AlarmRecord } from '../alarms/alarm-state.ts'
 import type { AlarmChange } from '../alarms/occurrence.ts'
 import type { Course } from '../flush/course-state.ts'
-import type { BaselineRecord, ForecastRecord } from '../fouling/watch.ts'
+import type { BaselineRecord, ForecastRecord } from '../fouling/watch-state.ts'
 import type { Interval } from '../growth/points.ts'
 import type { AdviceReport } from '../report.ts'
 import type { Act } from '../sequence.ts'

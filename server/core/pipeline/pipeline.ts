@@ -12,7 +12,8 @@ import { createGuide } from '../flush/guide.ts'
 import type { FlushInput } from '../flush/input.ts'
 import { planFlush } from '../flush/plan.ts'
 import type { BaselinePoint } from '../flush/reference.ts'
-import { createWatch, type ForecastRecord, type WatchEvent, type WatchState } from '../fouling/watch.ts'
+import { createWatch } from '../fouling/watch.ts'
+import type { ForecastRecord, WatchEvent, WatchState } from '../fouling/watch-state.ts'
 import { createPresent, type PresentState } from '../insight/present.ts'
 import type { RowBlock } from '../reading.ts'
 import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
@@ -179,10 +180,10 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   }
 
   function drainGuide(tMs: number): void {
-    for (const course of guide.drain()) events.push({ kind: 'flush', tMs, course })
     const said = guide.signals(tMs)
     for (const x of said) signal(x)
     if (said.length > 0) drainBook()
+    for (const course of guide.drain()) events.push({ kind: 'flush', tMs, course })
   }
 
   function onScan(scan: Scan): void {
@@ -278,8 +279,11 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function tell(said: Said, tMs: number): void {
     if (said.note !== null) events.push({ kind: 'note', tMs, text: said.note })
     if (said.signal === null) return
+    const { key } = said.signal
+    // Found again while the alarm of the first time still stands: that is news, told anew.
+    if (said.anew) end(key, tMs)
     signal(said.signal)
-    if (said.standsMs !== null) s.timed.push({ key: said.signal.key, untilMs: tMs + said.standsMs })
+    if (said.standsMs !== null) s.timed = [...s.timed.filter((t) => t.key !== key), { key, untilMs: tMs + said.standsMs }]
   }
 
   /** The condition of an alarm without a value of its own is over. */

@@ -3,7 +3,7 @@ import type { BankEvent } from '../bank/bank-state.ts'
 import type { Layout } from '../derive/layout.ts'
 import type { ChartReading } from '../fouling/charts.ts'
 import { findingOf } from '../fouling/evidence.ts'
-import type { WatchEvent } from '../fouling/watch.ts'
+import type { WatchEvent } from '../fouling/watch-state.ts'
 import type { Interval } from '../growth/points.ts'
 import { barFromPa } from '../units.ts'
 import { onsetReport } from './onset-report.ts'
@@ -13,10 +13,12 @@ export interface Said {
   readonly signal: Signal | null
   readonly note: string | null
   readonly standsMs: number | null
+  /** An alarm of the same key that still stands ends first: this is another occurrence. */
+  readonly anew: boolean
 }
 
-const alarm = (signal: Signal, stands: number | null = null): Said => ({ signal, note: null, standsMs: stands })
-const note = (text: string): Said => ({ signal: null, note: text, standsMs: null })
+const alarm = (signal: Signal, stands: number | null = null, anew = false): Said => ({ signal, note: null, standsMs: stands, anew })
+const note = (text: string): Said => ({ signal: null, note: text, standsMs: null, anew: false })
 
 /** A shift of a stream's viscosity or of a tap is taken into the model; its alarm stands so long, then returns to normal by itself. */
 const standsMs = 30 * 60_000
@@ -72,6 +74,8 @@ export function verdictSaid(
       })
     }
     case 'instrument': {
+      const mbar = (e.sizePa / 100).toFixed(0)
+      if (e.slight) return note(`${e.tag}: its zero moved by about ${mbar} mbar, within its accuracy; taken into the model`)
       return alarm(
         {
           ...base,
@@ -83,10 +87,11 @@ export function verdictSaid(
           value: barFromPa(e.sizePa),
           limit: 0,
           unit: 'bar',
-          message: `${e.tag}: its zero ${e.ramp ? 'drifts' : 'shifted'}, by about ${(e.sizePa / 100).toFixed(0)} mbar so far; verdicts allow for it`,
+          message: `${e.tag}: its zero ${e.ramp ? 'drifts' : 'shifted'}, by about ${mbar} mbar so far; verdicts allow for it`,
           detector: e.neighbours ? 'tap likelihood' : 'step likelihood',
         },
         4 * standsMs,
+        !e.ramp,
       )
     }
     case 'stream': {

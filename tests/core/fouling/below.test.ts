@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest'
-import { createWatch, type WatchEvent } from '../../../server/core/fouling/watch.ts'
+import { createWatch } from '../../../server/core/fouling/watch.ts'
+import type { WatchEvent } from '../../../server/core/fouling/watch-state.ts'
 import { duo, stepMs, stepper } from './steps.ts'
 
 /** Slow fall of the first segment's resistance by so much a day; everything the watch said of it. */

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest'
 import type { Layout } from '../../../server/core/derive/layout.ts'
-import { createWatch, type WatchEvent, type WatchState } from '../../../server/core/fouling/watch.ts'
+import { createWatch } from '../../../server/core/fouling/watch.ts'
+import type { WatchEvent, WatchState } from '../../../server/core/fouling/watch-state.ts'
 import { duo, type StepOver, startMs, stepMs, stepper, withFilter } from './steps.ts'
 
 const limits = [{ name: 'dpHighBar' as const, pa: 4e5 }, { name: 'dpHighBar' as const, pa: 4e5 }] // biome-ignore format: a table
