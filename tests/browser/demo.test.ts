@@ -140,7 +140,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
     await until(page, `document.querySelector('#trend').dataset.onset !== ''`)
     await shoot(page, 'replay-day-1920x1080')
     await page.click('.alarms li[data-kind="fouling"] button.help')
-    await page.click('.alarms li[data-kind="fouling"] >> text=Show its trend')
+    await page.click('.alarms li[data-kind="fouling"] .ways button:text-is("Trend")')
     await until(page, `${data}.jumped !== undefined && document.activeElement.id === 'trend'`)
     expect(await page.evaluate(`document.querySelector('#trend').dataset.segment`)).toBe('R1')
     const span = `Number(document.querySelector('#trend').dataset.to) - Number(document.querySelector('#trend').dataset.from)`
@@ -174,7 +174,7 @@ describe.runIf(chromium !== null)('the pages on the real server, in a real brows
         (l) => [column(l, 'alarm'), column(l, 'time_local').slice(11, 19), column(l, 'kind'), Number(column(l, 'value'))] as const,
       )
     const rows = (await page.evaluate(
-      `[...document.querySelectorAll('.alarms > li')].map((li) => ({ id: li.dataset.alarm, kind: li.dataset.kind, when: li.querySelector('.tx .w').textContent.trim() }))`,
+      `[...document.querySelectorAll('.alarms > li')].map((li) => ({ id: li.dataset.alarm, kind: li.dataset.kind, when: li.querySelector('.tx .w').innerText.trim() }))`,
     )) as {
       id: string
       kind: string
