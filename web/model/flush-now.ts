@@ -66,13 +66,14 @@ export const recordable = (s: CourseStep): Point[] => [
 /** As the course says it before the first scan of a step. */
 const noReadingYet = 'no reading yet'
 
-/** The refusal that stands: the last one, while the step it was about has not begun since. */
+/** The refusal that stands: the last one, while the step it was about is still shut. */
 export function standingRefusal(c: Course): Course['refusals'][number] | null {
   const last = c.refusals.at(-1)
   if (last === undefined || c.state !== 'running') return null
   const step = c.steps.find((s) => s.step === last.step)
   if (step === undefined) return last
-  if (last.asked === 'started') return step.state === 'open' ? last : null
+  const isShut = c.steps.slice(0, c.steps.indexOf(step)).some((x) => x.state !== 'accepted' && x.state !== 'skipped')
+  if (last.asked === 'started') return step.state === 'open' && isShut ? last : null
   const running = runningStep(c)
   return step.state === 'running' && running?.step === last.step && !isReady(step) ? last : null
 }
@@ -140,7 +141,7 @@ export function whatNow(c: Course): WhatNow {
   if (running?.step === 'F5' && call?.kind === 'ice') return { far: 'Ice: warm up', below: call.text }
   if (running?.step === 'F3' && call?.kind === 'not-water-soluble') return { far: 'Escalate', below: call.text }
   const refused = standingRefusal(c)
-  if (refused?.step === 'F3' && refused.asked === 'started')
+  if (refused?.step === 'F3' && refused.asked === 'started' && !(running !== null && isReady(running)))
     return { far: 'Wait, no water', below: 'F3 stays shut until F1 and F2 are both accepted' }
   if (running === null) {
     const next = nextStep(c)

@@ -13,7 +13,7 @@ export function flushStory(clock: ZoneClock) {
   let key = ''
   return {
     node,
-    show(c: Course, plan: FlushPlan | null): void {
+    show(c: Course, plan: FlushPlan | null, step: string): void {
       const k = JSON.stringify([
         c.flush,
         c.steps.map((s) => [s.state, s.endedMs]),
@@ -21,10 +21,12 @@ export function flushStory(clock: ZoneClock) {
         c.calls,
         c.exceptions,
         c.refusals.length,
+        step,
         plan !== null,
       ])
       if (k === key) return
       key = k
+      const advised = plan?.steps.find((x) => x.id === step)
       const done = c.steps.filter((s) => s.endedMs !== null)
       const table = el(
         'table',
@@ -85,6 +87,7 @@ export function flushStory(clock: ZoneClock) {
       ]
       fill(
         node,
+        advised === undefined || c.state !== 'running' ? null : section(`Advised for ${step} by the plan`, advisedList(advised)),
         section('On record so far', done.length === 0 ? el('p', { class: 'soft', text: 'No step is accepted yet.' }) : table),
         section('Ratio against clean, each liquid by its own reference [× clean]', recovery),
         odd.length === 0
@@ -122,6 +125,15 @@ export function flushStory(clock: ZoneClock) {
     },
   }
 }
+
+/** Hold points, what ends the step and what can hurt, as the plan words them. */
+const advisedList = (s: FlushPlan['steps'][number]): HTMLElement =>
+  el(
+    'ul',
+    { class: 'advised' },
+    ...s.holdPoints.map((text) => el('li', { text: text.replace(/^Before this step: /, 'Before it: ') })),
+    ...s.hazards.map((text) => el('li', { class: 'strong', text })),
+  )
 
 const section = (title: string, body: HTMLElement): HTMLElement =>
   el('section', {}, el('div', { class: 'head' }, el('h2', { text: title })), body)

@@ -265,7 +265,7 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
     channel.show(c, nowMs)
     points.show(s, s.startedMs !== null)
     showFigures(c, state, s)
-    story.show(c, plan)
+    story.show(c, plan, s.step)
     const what = whatNow(c)
     now.show({ far: what.far, unit: null, to: null, below: what.below })
     hands.show(c)
@@ -346,7 +346,7 @@ function threeAnswers(questions: readonly string[]) {
         const key = a.far.join(' ')
         if (key !== p.key) {
           p.key = key
-          fill(p.far, ...a.far.map((t) => el(t === 'of' ? 'small' : 'span', { text: t })))
+          fill(p.far, ...a.far.map((t) => el(t === 'of' ? 'small' : 'span', { class: t === 'of' ? '' : 'val', text: t })))
           p.far.classList.toggle('long', key.length > 12)
         }
         say(p.below, a.below)
