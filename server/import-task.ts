@@ -15,15 +15,25 @@ export interface ImportTask {
   readonly logs: readonly { readonly name: string; readonly path: string }[]
   readonly acts: readonly Act[]
   readonly startMs: number | null
+  /** Others write to the store meanwhile: commits are short, and between them there is a pause for theirs, ms. Null when nobody does. */
+  readonly pauseMs: number | null
+}
+
+/** What came of an import: rows taken in, and broken ones left out. */
+export interface Imported {
+  readonly rows: number
+  readonly broken: number
 }
 
 /** Does an import to its end. Errors: those of `importRun`. */
-export type ImportWork = (task: ImportTask, on: { progress: (bytes: number) => void; signal: AbortSignal }) => Promise<void>
+export type ImportWork = (task: ImportTask, on: { progress: (bytes: number) => void; signal: AbortSignal }) => Promise<Imported>
 
-/** Imports into an open store, beside others who write to it: commits are short, and between them there is a pause for theirs. */
-export function importInto(store: MonitorStore, pauseMs: number): ImportWork {
+/** Imports into an open store, in the thread of the caller. */
+export function importInto(store: MonitorStore): ImportWork {
   return async (task, { progress, signal }) => {
-    await importRun({
+    const { pauseMs } = task
+    const beside = pauseMs === null ? {} : { rowsPerCommit: segmentRows, breathe: () => later(pauseMs) }
+    const { rows, tallies } = await importRun({
       store,
       run: task.run,
       stepsRun: task.stepsRun,
@@ -33,8 +43,10 @@ export function importInto(store: MonitorStore, pauseMs: number): ImportWork {
       acts: task.acts,
       onProgress: progress,
       signal,
-      breathe: () => new Promise((done) => setTimeout(done, pauseMs)),
-      rowsPerCommit: segmentRows,
+      ...beside,
     })
+    return { rows, broken: tallies.reduce((n, t) => n + t.broken, 0) }
   }
 }
+
+const later = (ms: number): Promise<void> => new Promise((done) => setTimeout(done, ms))

@@ -1,6 +1,6 @@
 import { parentPort, Worker, workerData } from 'node:worker_threads'
 import { type ErrorCode, MonitorError, type Place } from './core/errors.ts'
-import { type ImportTask, type ImportWork, importInto } from './import-task.ts'
+import { type Imported, type ImportTask, type ImportWork, importInto } from './import-task.ts'
 import { openStore } from './store/open.ts'
 
 interface Order {
@@ -11,7 +11,7 @@ interface Order {
 
 type Told =
   | { readonly kind: 'progress'; readonly bytes: number }
-  | { readonly kind: 'done' }
+  | { readonly kind: 'done'; readonly imported: Imported }
   | {
       readonly kind: 'refused'
       readonly code: ErrorCode
@@ -21,6 +21,8 @@ type Told =
     }
   | { readonly kind: 'failed'; readonly message: string; readonly stack: string }
 
+/** A thread keeps little that is new: an import's memory stays flat, whatever its length. */
+export const threadLimits = { maxYoungGenerationSizeMb: 4 }
 /** Bytes between two tellings of progress. */
 const tellBytes = 1 << 20
 
@@ -31,14 +33,18 @@ const tellBytes = 1 << 20
 export function importInThread({ entry, data, toolVersion }: { entry: URL; data: string; toolVersion: string }): ImportWork {
   return (task, { progress, signal }) =>
     new Promise((done, fail) => {
-      const worker = new Worker(entry, { workerData: { data, toolVersion, task } satisfies Order, argv: [] })
+      const worker = new Worker(entry, {
+        workerData: { data, toolVersion, task } satisfies Order,
+        argv: [],
+        resourceLimits: threadLimits,
+      })
       const stop = (): void => worker.postMessage('stop')
       signal.addEventListener('abort', stop)
       if (signal.aborted) stop()
-      let outcome: Error | null = new Error('the thread of the import ended before it was done')
+      let outcome: Error | Imported = new Error('the thread of the import ended before it was done')
       worker.on('message', (told: Told) => {
         if (told.kind === 'progress') progress(told.bytes)
-        else if (told.kind === 'done') outcome = null
+        else if (told.kind === 'done') outcome = told.imported
         else if (told.kind === 'refused') {
           const { code, message, hint, place } = told
           outcome = new MonitorError(code, message, { ...(hint === null ? {} : { hint }), ...(place === null ? {} : { place }) })
@@ -49,8 +55,8 @@ export function importInThread({ entry, data, toolVersion }: { entry: URL; data:
       })
       worker.on('exit', () => {
         signal.removeEventListener('abort', stop)
-        if (outcome === null) done()
-        else fail(outcome)
+        if (outcome instanceof Error) fail(outcome)
+        else done(outcome)
       })
     })
 }
@@ -65,8 +71,9 @@ export async function importThread(): Promise<void> {
   let told = 0
   try {
     const store = openStore(data, { joined: true, toolVersion })
+    let imported: Imported
     try {
-      await importInto(store, 2)(task, {
+      imported = await importInto(store)(task, {
         signal: abort.signal,
         progress: (bytes) => {
           if (bytes - told < tellBytes) return
@@ -77,7 +84,7 @@ export async function importThread(): Promise<void> {
     } finally {
       store.close()
     }
-    tell({ kind: 'done' })
+    tell({ kind: 'done', imported })
   } catch (error) {
     if (error instanceof MonitorError) {
       const { code, message, hint, place } = error

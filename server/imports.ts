@@ -33,7 +33,7 @@ export interface ImportsOptions {
 
 /** Imports asked for by pages, one after the other beside the live runs. */
 export function createImports(o: ImportsOptions) {
-  const importing = o.work ?? importInto(o.store, 5)
+  const importing = o.work ?? importInto(o.store)
   const work = new Map<number, { progress: number; fault: string | null }>()
   const abort = new AbortController()
   let queue: Promise<void> = Promise.resolve()
@@ -48,7 +48,7 @@ export function createImports(o: ImportsOptions) {
       const { skidFile, skidText } = job
       const logs = job.logs.map(({ name, path }) => ({ name, path }))
       await importing(
-        { run: id, stepsRun, skidFile, skidText, logs, acts, startMs },
+        { run: id, stepsRun, skidFile, skidText, logs, acts, startMs, pauseMs: 2 },
         {
           progress: (bytes) => {
             at.progress = Math.min(1, bytes / total)

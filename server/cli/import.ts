@@ -1,8 +1,8 @@
 import { readFile, stat } from 'node:fs/promises'
 import { basename } from 'node:path'
-import { fileSource } from '../analyse.ts'
 import { MonitorError } from '../core/errors.ts'
-import { importRun } from '../import-run.ts'
+import { importInto } from '../import-task.ts'
+import { importInThread } from '../import-thread.ts'
 import { readEvents } from '../ingest/events-file.ts'
 import { instantOf } from '../ingest/instant.ts'
 import { createPair } from '../monitor/catalogue.ts'
@@ -61,7 +61,8 @@ export const importCommand: Command = {
     let total = 0
     for (const log of logs) total += await sizeOf(log)
     const acts = v.events === undefined ? [] : readEvents(v.events, await readEventsFile(v.events), skid.timeZone)
-    const store = openStore(v.data ?? '.clearbore', storeOptions(io, v.keys))
+    const data = v.data ?? '.clearbore'
+    const store = openStore(data, storeOptions(io, v.keys))
     const line = progressLine(io, 'import', total / 1e6, 'MB')
     try {
       const pair = createPair(store, {
@@ -76,20 +77,17 @@ export const importCommand: Command = {
         state: 'importing',
       })
       try {
-        const { rows, tallies } = await importRun({
-          store,
-          ...pair,
-          skid,
-          sources: logs.map(fileSource),
-          startMs,
-          acts,
-          signal: io.signal,
-          onProgress: (bytes) => line.update(Math.round(bytes / 1e5) / 10),
-        })
+        const importing =
+          io.program === undefined ? importInto(store) : importInThread({ entry: io.program, data, toolVersion: toolVersion() })
+        const { rows, broken } = await importing(
+          {
+            ...pair, skidFile: v.skid, skidText, logs: logs.map((path) => ({ name: basename(path), path })), acts, startMs, pauseMs: null,
+          }, // biome-ignore format: a list
+          { signal: io.signal, progress: (bytes) => line.update(Math.round(bytes / 1e5) / 10) },
+        )
         line.end()
         store.upkeep()
         const report = createEngine({ store, ...pair, skid }).report()
-        const broken = tallies.reduce((n, t) => n + t.broken, 0)
         await io.out(
           `run ${pair.run}: ${rows} rows${broken > 0 ? ` (${broken} broken ones left out)` : ''}, ${report.alarms.length} ${report.alarms.length === 1 ? 'alarm' : 'alarms'}, ${report.run.from ?? 'no time'} to ${report.run.to ?? 'no time'}\n${cautions.join('\n')}\n`,
         )

@@ -9,9 +9,9 @@ import { openStore } from '../../server/store/open.ts'
 import { type Measured, pairIn } from './common.ts'
 import { channels, course, skid, skidText, startMs } from './input.ts'
 
-const importBeside = (data: string, pair: ReturnType<typeof pairIn>, log: string): Promise<void> =>
+const importBeside = (data: string, pair: ReturnType<typeof pairIn>, log: string): Promise<unknown> =>
   importInThread({ entry: new URL(import.meta.url), data, toolVersion: 'bench' })(
-    { ...pair, skidFile: 'bench.json', skidText, logs: [{ name: 'beside.csv', path: log }], acts: [], startMs: null },
+    { ...pair, skidFile: 'bench.json', skidText, logs: [{ name: 'beside.csv', path: log }], acts: [], startMs: null, pauseMs: 2 },
     { progress: () => undefined, signal: new AbortController().signal },
   )
 

@@ -1,13 +1,13 @@
-import { isMainThread } from 'node:worker_threads'
+import { isMainThread, Worker, workerData } from 'node:worker_threads'
 import { fileSource } from '../../server/analyse.ts'
 import { cell, phases } from '../../server/core/reading.ts'
 import { importRun } from '../../server/import-run.ts'
-import { importThread } from '../../server/import-thread.ts'
-import { type LogSource, readLogs } from '../../server/ingest/csv/read-log.ts'
+import { importInThread, importThread, threadLimits } from '../../server/import-thread.ts'
+import { readLogs } from '../../server/ingest/csv/read-log.ts'
 import { openStore } from '../../server/store/open.ts'
 import { cpuS, inFolder, type Measured, pairIn } from './common.ts'
 import { derive } from './derive.ts'
-import { channels, skid } from './input.ts'
+import { channels, skid, skidText } from './input.ts'
 import { live } from './live.ts'
 import { commits, hour, size, traces } from './store-measures.ts'
 import { boundParse, type Sums, splitParse } from './yardsticks.ts'
@@ -34,21 +34,64 @@ async function read(file: string): Promise<Sums> {
 }
 
 /** The command `import`, with everything it does up to the report; then, unmeasured, every reading back out of the store. */
-async function importing(source: LogSource, check: boolean): Promise<Measured> {
+async function importing(file: string, check: boolean): Promise<Measured> {
   return inFolder(async (dir) => {
     const store = openStore(dir)
-    const { run, stepsRun } = pairIn(store)
+    const pair = pairIn(store)
     const from = cpuS()
-    await importRun({ store, run, stepsRun, skid: skid(), sources: [source], startMs: null, acts: [] })
+    await importInThread({ entry: new URL(import.meta.url), data: dir, toolVersion: 'bench' })(
+      {
+        ...pair,
+        skidFile: 'bench.json',
+        skidText,
+        logs: [{ name: 'day.csv', path: file }],
+        acts: [],
+        startMs: null,
+        pauseMs: null,
+      },
+      { progress: () => undefined, signal: new AbortController().signal },
+    )
     store.upkeep()
     const spent = cpuS() - from
     const rssMb = process.resourceUsage().maxRSS / 1024
     const sums = noSums()
-    if (check) for (const { entry } of store.sequence.read(run, 0)) if (entry.kind === 'rows') add(sums, entry.block)
-    const alarms = store.events.list(run).filter((e) => e.kind === 'alarm').length
+    if (check) for (const { entry } of store.sequence.read(pair.run, 0)) if (entry.kind === 'rows') add(sums, entry.block)
+    const alarms = store.events.list(pair.run).filter((e) => e.kind === 'alarm').length
     store.close()
     return { cpuS: spent, rssMb, ...(check ? { sum: textOf(sums) } : {}), figures: { alarms } }
   })
+}
+
+/** An import of many days in a thread as the command has one, its log made as it is read. */
+async function importingDays(file: string, days: number): Promise<Measured> {
+  return inFolder(async (dir) => {
+    const store = openStore(dir)
+    const order: Days = { data: dir, pair: pairIn(store), file, days }
+    await new Promise<void>((done, fail) => {
+      const thread = new Worker(new URL(import.meta.url), { workerData: { order }, argv: [], resourceLimits: threadLimits })
+      thread.on('error', fail)
+      thread.on('exit', () => done())
+    })
+    store.upkeep()
+    const rssMb = process.resourceUsage().maxRSS / 1024
+    const { rows } = store.sequence.count(order.pair.run)
+    store.close()
+    return { cpuS: 0, rssMb, figures: { rows } }
+  })
+}
+
+interface Days {
+  readonly data: string
+  readonly pair: ReturnType<typeof pairIn>
+  readonly file: string
+  readonly days: number
+}
+
+async function daysInThread({ data, pair, file, days }: Days): Promise<void> {
+  const store = openStore(data, { joined: true })
+  const source = { name: 'long.csv', chunks: repeated(file, days) }
+  await importRun({ store, ...pair, skid: skid(), sources: [source], startMs: null, acts: [] })
+  store.close()
 }
 
 /** The log of one day again and again, a day later each time, nine days at most: a long log without the disk it would take. */
@@ -74,8 +117,8 @@ const measures: Readonly<Record<string, (...args: string[]) => Promise<Measured>
   bound: (file) => work(() => boundParse(file!)),
   split: (file) => work(() => splitParse(file!)),
   read: (file) => work(() => read(file!)),
-  import: (file, check) => importing(fileSource(file!), check === 'check'),
-  'import-days': (file, days) => importing({ name: 'long.csv', chunks: repeated(file!, Number(days)) }, false),
+  import: (file, check) => importing(file!, check === 'check'),
+  'import-days': (file, days) => importingDays(file!, Number(days)),
   size: (kind, rows) => size(kind as 'normal', Number(rows)),
   traces: (days, hz) => traces(Number(days), Number(hz)),
   hour: (days) => hour(Number(days)),
@@ -87,4 +130,5 @@ const measures: Readonly<Record<string, (...args: string[]) => Promise<Measured>
 
 const [name = '', ...args] = process.argv.slice(2)
 if (isMainThread) process.stdout.write(`${JSON.stringify(await measures[name]!(...args))}\n`)
+else if ((workerData as { order?: Days }).order !== undefined) await daysInThread((workerData as { order: Days }).order)
 else await importThread()
