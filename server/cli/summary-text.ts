@@ -3,6 +3,7 @@ import type { Skid } from '../core/skid.ts'
 import type { LogTally } from '../ingest/csv/read-log.ts'
 import { insightLines } from './insight-lines.ts'
 import { caution } from './run.ts'
+import { settingsLines } from './settings-lines.ts'
 import { tableText } from './table-text.ts'
 
 /** What `analyse` prints: the run, each segment, alarms, advice, what was not used. Times in the skid's own zone with its offset. */
@@ -18,6 +19,8 @@ export function summaryText(skid: Skid, report: Report, tallies: readonly LogTal
   out.push('')
   if (report.segments.length > 0) out.push(segmentTable(report, clock))
   if (report.segments.some((s) => s.baseline?.provisional)) out.push('* provisional: too little clean running for a final baseline')
+  const settings = settingsLines(report, clock.time)
+  if (settings.length > 0) out.push('', 'Settings changed:', ...settings.map((l) => `  ${l}`))
   out.push('', `Alarms: ${report.alarms.length}`)
   if (report.alarms.length > 0)
     out.push(

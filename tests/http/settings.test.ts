@@ -97,6 +97,14 @@ describe('settings of a skid over HTTP', () => {
     const again = await analyseRecord(file, loadSkid)
     expect(reportText(again.report)).toBe(reportText(live))
     expect(await cli(['analyse', file, '--json', '-'])).toEqual({ code: 0, out: reportText(live), err: '' })
+    // The change list stands on page one of what analyse prints.
+    const { out } = await cli(['analyse', file])
+    const lines = out.slice(out.indexOf('Settings changed:'), out.indexOf('Alarms:')).trimEnd().split('\n')
+    expect(lines.slice(1).map((l) => l.replace(/^ +\S+ +/, ''))).toEqual([
+      `version 2  ${limit} 6 bar → 5.5 bar (demo operator: ${reason})`,
+      'entered  streams.A.waterPpm 85 ppm → 210 ppm (demo operator: Karl Fischer)',
+      `version 3  ${limit} 5.5 bar → 1.5 bar; alarms.dp-limit:R1.priority not set → high (demo operator: ${reason})`,
+    ])
     const wrong = await cli(['analyse', file, '--skid', 'heron.yaml'])
     expect([wrong.code, wrong.err]).toEqual([2, expect.stringContaining('--skid does not go with a record')])
     const oos = ((await s.get(`/api/runs/${s.run}/transitions`)).json() as TransitionRow[]).filter((t) => t.input === 'oos+')

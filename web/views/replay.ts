@@ -85,6 +85,12 @@ export function replayView(data: RunData, shell: Shell, openAtMs: number | null 
         }),
       ),
     ),
+    el(
+      'p',
+      { class: 'row' },
+      el('a', { href: `#/entries/${detail.run}`, text: 'Entries on this run' }),
+      el('a', { href: `#/settings/${detail.run}`, text: 'Versions of its settings' }),
+    ),
     el('p', { class: 'soft', text: `Times in the files are UTC; this page shows ${facts.timeZone}.` }),
   )
   const says = el('p', { class: 'says', role: 'status' })

@@ -89,7 +89,8 @@ export function createConfiguration(base: Skid, saved?: ConfigurationState) {
       return []
     },
     /** Changes that take effect by a scan which begins at `tMs`. */
-    due(tMs: number): Took[] {
+    due(tMs: number): readonly Took[] {
+      if (state.planned.length === 0) return nothing
       const out: Took[] = []
       while (state.planned.length > 0 && state.planned[0]!.effectiveMs <= tMs) {
         const next = state.planned.shift()!
@@ -103,3 +104,6 @@ export function createConfiguration(base: Skid, saved?: ConfigurationState) {
   }
 }
 export type Configuration = ReturnType<typeof createConfiguration>
+
+/** Asked for at every scan. */
+const nothing: readonly Took[] = []
