@@ -1,7 +1,8 @@
 import { readFileSync } from 'node:fs'
 import { MonitorError } from '../core/errors.ts'
 import { openStore } from '../store/open.ts'
-import type { KnownHead, StoreProof } from '../store/verify.ts'
+import type { StoreProof } from '../store/verify.ts'
+import type { KnownHead } from '../store/verify-heads.ts'
 import { type Anchor, fingerprintOf, readPublicKey } from '../trail/keys.ts'
 import { type RecordProof, verifyRecord } from '../trail/verify-record.ts'
 import type { Fault } from '../trail/walk.ts'
@@ -32,6 +33,8 @@ Exit code 0 when untouched; 1 when not; 2 for a wrong command line; 3 when the m
 const text = { type: 'string' } as const
 const zones = (ms: number): string => (Number.isFinite(ms) && Math.abs(ms) < 8.64e15 ? new Date(ms).toISOString() : String(ms))
 const some = 20
+/** Heads are signed each minute; a process that was killed leaves no more than that. */
+const unsignedMs = 5 * 60_000
 
 const chainName = (chain: number): string => (chain === 0 ? 'the site' : `run ${chain}`)
 
@@ -68,6 +71,11 @@ function storeText(p: StoreProof, given: readonly string[]): string {
     lines.push(
       `${p.signed.heads} signed heads, the last at ${zones(p.signed.tMs)}; ${p.unsigned} records since`,
       ...keyLines(p.signed.keys, given),
+    )
+  const bare = p.signed === null ? 0 : Math.max(...p.chains.map((c) => c.lastMs ?? 0)) - p.signed.tMs
+  if (bare > unsignedMs)
+    lines.push(
+      `NOT SIGNED for the last ${Math.round(bare / 60_000)} min of records: of them this shows accidents, not what somebody did who could rewrite the file`,
     )
   lines.push('summary pages and snapshots are made from what was verified and were not themselves looked at', '')
   return lines.join('\n')

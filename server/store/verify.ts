@@ -1,19 +1,10 @@
 import type Database from 'better-sqlite3'
-import { type Anchor, fingerprintOf, headStatement, isSigned } from '../trail/keys.ts'
+import type { Anchor } from '../trail/keys.ts'
 import type { Chained, HeadOf, SiteRecord } from '../trail/records.ts'
 import { type Fault, type Walked, walk, whatIs } from '../trail/walk.ts'
 import { site } from './ledger.ts'
+import { anchorHead, type KnownHead, knownFaults, type NamedHead, namedFaults, sealFault, sealsOf } from './verify-heads.ts'
 import { runRows, siteRows } from './verify-rows.ts'
-
-/** A head that was kept elsewhere: printed, exported or remembered beside the key. */
-export interface KnownHead {
-  /** 0: the site. */
-  readonly chain: number
-  readonly count: number
-  readonly head: string
-  /** Where it comes from, in words. */
-  readonly from: string
-}
 
 export interface VerifyOptions {
   /** Public keys in hex that are known to be the store's; empty where none is at hand. */
@@ -82,8 +73,8 @@ export function verifyStore(db: Database.Database, o: VerifyOptions = {}): Store
 
   const begun = new Map<number, HeadOf>()
   const deleted = new Map<number, HeadOf>()
-  const named: { by: number; of: HeadOf }[] = []
-  const keys: { n: number; key: string }[] = []
+  const named: NamedHead[] = []
+  const keys = new Set<string>()
   const sealing: number[] = []
   const ofSite = siteRows(db)
   const top = follow(site, (r) => {
@@ -94,7 +85,7 @@ export function verifyStore(db: Database.Database, o: VerifyOptions = {}): Store
       sealing.push(r.n + 1)
       for (const of of r.chains) named.push({ by: r.n, of })
     }
-    if (r.kind === 'key') keys.push({ n: r.n, key: r.key })
+    if (r.kind === 'key') keys.add(r.key)
     if (r.kind === 'genesis' && r.chain === 'site' && r.store !== store) return `it is of store ${r.store}, this is ${store}`
     if (r.kind === 'break')
       return `record ${r.signed.count - 1}, signed before, was ${r.found === 'none' ? 'missing' : 'another'}: the store was cut, rewritten or restored from a backup`
@@ -143,51 +134,23 @@ export function verifyStore(db: Database.Database, o: VerifyOptions = {}): Store
   }
   const counts = new Map(chains.map((c) => [c.chain, c.records]))
 
-  const has = (chain: number, { count, head }: Omit<HeadOf, 'run'>): boolean =>
-    hashes.get(chain, count - 1)?.toString('hex') === head
+  const found = {
+    hashAt: (chain: number, n: number) => hashes.get(chain, n)?.toString('hex') ?? null,
+    records: (chain: number) => counts.get(chain) ?? 0,
+  }
   const seals = sealsOf(db)
-  const judged = new Set<number>()
-  for (const { by, of } of named) {
-    if (has(of.run, of) || judged.has(of.run)) continue
-    judged.add(of.run)
-    const isCut = (counts.get(of.run) ?? 0) < of.count
-    faults.push({
-      chain: of.run, n: of.count - 1, atMs: null, what: isCut ? 'the end of the chain' : 'a record up to here',
-      found: `${isCut ? 'it is gone' : 'it is another'} than record ${by} of the site's chain says`,
-    }) // biome-ignore format: a list
-  }
-
   const trusted = o.publicKeys ?? []
-  const known = new Set(keys.map(({ key }) => key))
-  const fingerprints = new Map([...known].map((key) => [fingerprintOf(key), key]))
-  let isTrusted = true
-  for (const s of seals) {
-    const n = s.count - 1
-    const key = fingerprints.get(s.key)
-    const head = hashes.get(site, n)?.toString('hex') ?? 'none'
-    const isRight = key !== undefined && isSigned(headStatement(store, s.count, head, s.tMs), s.signature, key)
-    if (isRight && (trusted.length === 0 || trusted.includes(key))) continue
-    isTrusted = false
-    const found = isRight
-      ? `it is signed by ${s.key}, not by a key given`
-      : 'its signature does not fit: it, or a record before it, is not what was signed'
-    faults.push({ chain: site, n, atMs: s.tMs, what: 'a signed head', found })
-    break
+  faults.push(...namedFaults(found, named))
+  const forged = sealFault(found, store, seals, keys, trusted)
+  if (forged !== null) faults.push(forged)
+  else if (top.fault === null) {
+    const signedAt = new Set(seals.map((s) => s.count))
+    const bare = sealing.find((count) => !signedAt.has(count))
+    if (bare !== undefined)
+      faults.push({ chain: site, n: bare - 1, atMs: null, what: 'a signed head', found: 'its signature is gone' })
   }
-  const signedAt = new Set(seals.map((s) => s.count))
-  const unsealed = isTrusted && top.fault === null ? sealing.find((count) => !signedAt.has(count)) : undefined
-  if (unsealed !== undefined)
-    faults.push({ chain: site, n: unsealed - 1, atMs: null, what: 'a signed head', found: 'its signature is gone' })
   if (trusted.length > 0 && seals.length === 0) whole(site, 'no head in it is signed, by the key given or any other')
-
-  for (const h of [...(o.heads ?? []), ...anchorHead(o.anchor, store)]) {
-    if (has(h.chain, h)) continue
-    const isCut = (counts.get(h.chain) ?? 0) < h.count
-    faults.push({
-      chain: h.chain, n: h.count - 1, atMs: null, what: `the head that ${h.from} gives`,
-      found: isCut ? `the chain has only ${counts.get(h.chain) ?? 0} of ${h.count} records: its end was cut off` : 'it, or a record before it, is another',
-    }) // biome-ignore format: a list
-  }
+  faults.push(...knownFaults(found, [...(o.heads ?? []), ...anchorHead(o.anchor, store)]))
 
   const last = seals.at(-1)
   const signedUpTo = new Map<number, number>([[site, last?.count ?? 0]])
@@ -196,7 +159,7 @@ export function verifyStore(db: Database.Database, o: VerifyOptions = {}): Store
   return {
     store,
     chains,
-    signed: last === undefined ? null : { heads: seals.length, count: last.count, tMs: last.tMs, keys: [...known] },
+    signed: last === undefined ? null : { heads: seals.length, count: last.count, tMs: last.tMs, keys: [...keys] },
     unsigned,
     faults,
   }
@@ -205,15 +168,3 @@ export function verifyStore(db: Database.Database, o: VerifyOptions = {}): Store
 const proofOf = (chain: number, title: string, isDeleted: boolean, w: Walked, sealedRows: number, stagedRows: number): ChainProof => ({
   chain, title, isDeleted, records: w.count, lastMs: w.lastMs, head: w.head, sealedRows, stagedRows,
 }) // biome-ignore format: a list
-
-const sealsOf = (db: Database.Database) =>
-  db
-    .prepare<[], { count: number; tMs: number; key: string; signature: Buffer }>(
-      'SELECT count, t_ms AS tMs, key, signature FROM seal ORDER BY count',
-    )
-    .all()
-
-const anchorHead = (anchor: Anchor | null | undefined, store: string): KnownHead[] =>
-  anchor == null || anchor.store !== store
-    ? []
-    : [{ chain: site, count: anchor.count, head: anchor.head, from: 'the folder of the key remembers' }]

@@ -7,7 +7,7 @@ import { entriesOf } from '../store/appender.ts'
 import { aRun, close, newFolder, newStore } from '../store/helpers.ts'
 
 /** A store with something of everything that is chained, signed twice: two runs that stand, one that was deleted. */
-export function sampleStore(): { data: string; keys: string; run: RunId } {
+function sampleStore(): { data: string; keys: string; run: RunId } {
   const data = newFolder()
   const keys = newFolder()
   let now = Date.UTC(2031, 4, 5)
@@ -69,4 +69,21 @@ export function tampered(data: string, act: (db: Database.Database) => void): st
   act(db)
   db.close()
   return copy
+}
+
+/** The sample in a folder that stays for the whole test file; the folders of helpers go after each test. */
+export function keptSample(name: string): { readonly data: string; readonly keys: string } {
+  const made = sampleStore()
+  const root = join(process.env['CLEARBORE_KEYS'] ?? '', name)
+  const kept = { data: join(root, 'data'), keys: join(root, 'keys') }
+  for (const part of ['data', 'keys'] as const) cpSync(made[part], kept[part], { recursive: true })
+  return kept
+}
+
+/** What `verify` finds of a store. */
+export function proofOf(data: string, more: Parameters<Store['trail']['verify']>[0] = {}, keys?: string) {
+  const store = newStore(data, { readonly: true, ...(keys === undefined ? {} : { keys }) })
+  const proof = store.trail.verify(more)
+  close(store)
+  return proof
 }
