@@ -256,7 +256,7 @@ export function flushHands(hms: (tMs: number) => string, send: (act: FlushSent) 
   function drawRefusal(refused: Course['refusals'][number] | null): void {
     refusal.hidden = refused === null
     if (refused === null) return
-    const most = 6
+    const most = 3
     const asked = refused.asked === 'started' ? nameOf(refused.step) : `${nameOf(refused.step)}, ${refused.asked}`
     fill(
       refusal,
