@@ -426,7 +426,7 @@ describe.runIf(chromium !== null)('alarms in the hands of an operator', () => {
       'low flow while the pump is stopped',
       'meter taken out',
       'S2: step F1 started',
-      'Flush advised',
+      'Flush advised: S2: deposit is growing',
       'TT-022, frozen',
       'agreed at hand-over',
       'looked at the pump, no leak',

@@ -133,7 +133,7 @@ export function handOverView(detail: RunDetail, shell: Pick<Shell, 'needPerson' 
         part('Out of service', 'None.', h.outOfService.map(alarm)),
         part('Flush in course', 'None.', h.flush.map((f) => `${f.segment}: step ${f.step} ${f.state} at ${at(f.atMs)} by ${f.person}`)),
       ),
-      part('Advice standing', 'None.', standing.map((a) => `${at(a.atMs)} ${actionWords[a.action]}${a.segments.length === 0 ? '' : `, ${a.segments.join(', ')}`}: ${words(a.reason)}`)),
+      part('Advice standing', 'None.', standing.map((a) => `${at(a.atMs)} ${actionWords[a.action]}${a.segments.length === 0 || a.reason.startsWith(a.segments[0]!) ? '' : `, ${a.segments.join(', ')}`}: ${words(a.reason)}`)),
       part('Resistance', 'No segment.', [h.segments.map((s) => `${s.segment} ${s.ratio === null ? 'not known' : `${fixed(s.ratio, 2)} × clean`}${s.limitFromMs === null || s.limitToMs === null ? '' : ` (limit ${at(s.limitFromMs)} to ${at(s.limitToMs)})`}`).join(' · ')]),
       el('div', { class: 'two' },
         part(`Data gaps, of ${fixed(h.gapStepMs / 1000, 0)} s and more`, 'None.', h.gaps.map((g) => `${at(g.fromMs)} to ${at(g.toMs)}, ${duration(g.toMs - g.fromMs)}`)),
