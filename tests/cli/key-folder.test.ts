@@ -6,16 +6,20 @@ import { keyFolderOf, storeOptions, tellSigning } from '../../server/cli/key-fol
 
 const io = (env?: Io['env']) => {
   const said = { out: '', err: '' }
-  const it: Io = {
-    out: async (text) => void (said.out += text),
-    err: (text) => void (said.err += text),
+  const its: Io = {
+    out: async (text) => {
+      said.out += text
+    },
+    err: (text) => {
+      said.err += text
+    },
     errIsTerminal: false,
     outIsTerminal: false,
     nowMs: () => 0,
     signal: new AbortController().signal,
     ...(env === undefined ? {} : { env }),
   }
-  return { it, said }
+  return { it: its, said }
 }
 
 describe('the folder of keys', () => {
