@@ -13,6 +13,7 @@ import type { Source } from '../ingest/source.ts'
 import { createCatalogue, createPair, kindOf } from '../monitor/catalogue.ts'
 import { createMonitor } from '../monitor.ts'
 import { createPeople, type PeopleOptions } from '../people/people.ts'
+import { carriedEntries } from '../settings/carried.ts'
 import { createVersions } from '../settings/versions.ts'
 import { loadSkid } from '../skid/check.ts'
 import type { RunId } from '../store/keys.ts'
@@ -138,13 +139,22 @@ export async function startServing(o: ServingOptions) {
   }
 
   const versions = createVersions(store, loadSkid)
+  /** Water results of the run before that still hold. */
+  function carriedTo(run: RunId, w: Watched, tMs: number) {
+    const isWatched = (source: string) => ['simulated', 'followed'].includes(kindOf(source))
+    const before = store.runs.list().findLast((r) => r.id < run && r.skidId === w.skid.skid && isWatched(r.source))
+    return before === undefined ? [] : carriedEntries(w.skid, before.id, store.sequence.acts(before.id), tMs)
+  }
+
   const watchedOf = new Map<RunId, Watched>()
   function watch(w: Watched, run: RunId): void {
     const { stepsRun } = catalogue.parts(run)
     watchedOf.set(run, w)
     const source = sourceOf(w, run)
     // A new run begins with the settings in force: the version of its file and what was changed since.
-    const opening = store.sequence.count(run).entries > 0 ? [] : versions.opening(w.skid.skid, source.clock().nowMs)
+    const { nowMs } = source.clock()
+    const isNew = store.sequence.count(run).entries === 0
+    const opening = isNew ? [...versions.opening(w.skid.skid, nowMs), ...carriedTo(run, w, nowMs)] : []
     if (opening.length > 0) store.sequence.append([{ run, entries: opening.map((act) => ({ kind: 'act', act })) }])
     monitor.add({ run, stepsRun, skid: w.skid, source })
   }

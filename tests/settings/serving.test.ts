@@ -51,6 +51,12 @@ it('begins each run with the versions in force: after a restart the run goes on,
   const versionsOf = async (url: string, run: number) =>
     (await get<Report>(url, `/api/runs/${run}/report`)).run.configuration.map((c) => [c.version, c.from === null])
 
+  const acts = (run: number) => `/api/runs/${run}/acts`
+  const post = async (url: string, what: string, body: object) => {
+    const headers = { 'content-type': 'application/json' }
+    expect((await fetch(new URL(what, url), { method: 'POST', headers, body: JSON.stringify(body) })).status).toBe(200)
+  }
+
   let first = 0
   await serve(dir, text, async (url) => {
     first = await live(url)
@@ -59,6 +65,10 @@ it('begins each run with the versions in force: after a restart the run goes on,
     const reply = await fetch(new URL('/api/skids/heron/settings', url), { method: 'POST', headers: { 'content-type': 'application/json' }, body: JSON.stringify(sent) }) // biome-ignore format: a list
     expect(reply.status).toBe(200)
     expect(await versionsOf(url, first)).toContainEqual([1, true])
+    const entry = { kind: 'event', unit: null, note: '', value: null }
+    for (const of of ['A', 'C'])
+      await post(url, acts(first), { ...entry, event: 'Karl Fischer', value: 140, unit: 'ppm', note: 'drum 7', of })
+    await post(url, acts(first), { ...entry, event: 'drum change', of: 'C' })
   })
   await serve(dir, text, async (url) => {
     expect(await live(url)).toBe(first)
@@ -66,7 +76,7 @@ it('begins each run with the versions in force: after a restart the run goes on,
       [1, 'file', 'skid file as first loaded'],
       [2, 'change', 'weaker gasket'],
     ])
-    expect((await versionsOf(url, first)).map(([v]) => v)).toEqual([1, 2])
+    expect((await versionsOf(url, first)).map(([v]) => v)).toEqual([1, 2, null, null])
   })
   const edited = text.replace('title: reactor 1', 'title: reactor one')
   expect(edited).not.toBe(text)
@@ -82,5 +92,11 @@ it('begins each run with the versions in force: after a restart the run goes on,
       ['segments.R1.title', expect.stringContaining('reactor 1'), expect.stringContaining('reactor one')],
     ])
     expect(open.find((s) => s.path === path)!.value).toBe(6)
+    // The water of feed A holds on; that of C went with its drum.
+    const entries = (await get<ActRow[]>(url, acts(run))).flatMap(({ act: a }) =>
+      a.kind === 'event' ? [[a.of, a.value, a.note]] : [],
+    )
+    expect(entries).toEqual([['A', 140, `drum 7 (carried over from run ${first})`]])
+    expect(open.find((s) => s.path === 'streams.A.waterPpm')!.value).toBe(140)
   })
 })

@@ -103,7 +103,6 @@ export function createConfiguration(base: Skid, saved?: ConfigurationState) {
       apply({ version: null, person, reason, changes: [change] }, fromMs),
   }
 }
-export type Configuration = ReturnType<typeof createConfiguration>
 
 /** Asked for at every scan. */
 const nothing: readonly Took[] = []
