@@ -1,3 +1,4 @@
+import type { StartingKnowledge } from './core/baseline/starting-knowledge.ts'
 import { MonitorError } from './core/errors.ts'
 import { phases, type RowBlock, rowBlock } from './core/reading.ts'
 import type { Act, Entry } from './core/sequence.ts'
@@ -8,6 +9,13 @@ import type { MonitorStore } from './monitor/needs.ts'
 import type { RunId } from './store/keys.ts'
 import { segmentRows } from './store/segment.ts'
 
+/** An accepted step test that a run begins with, recorded as its first act. */
+export interface Begins {
+  readonly known: readonly StartingKnowledge[]
+  readonly reason: string
+  readonly person: string
+}
+
 export interface ImportOptions {
   readonly store: MonitorStore
   readonly run: RunId
@@ -17,6 +25,7 @@ export interface ImportOptions {
   readonly startMs: number | null
   /** By time; each enters the sequence before the first row of its time or later. */
   readonly acts: readonly Act[]
+  readonly commissioned?: Begins
   readonly onProgress?: (bytes: number) => void
   readonly signal?: AbortSignal
   /** Lets other work of the process in; called between commits. */
@@ -87,6 +96,8 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
     ...(o.onProgress ? { onProgress: o.onProgress } : {}),
   })
   for await (const block of blocks) {
+    if (rows === 0 && o.commissioned !== undefined)
+      acts.unshift({ kind: 'commissioned', tMs: block.tMs[0] ?? 0, ...o.commissioned })
     for (let from = 0; from < block.rows; ) {
       while (nextAct < acts.length && acts[nextAct]!.tMs <= block.tMs[from]!) waiting.push({ kind: 'act', act: acts[nextAct++]! })
       let to = Math.min(block.rows, from + room)

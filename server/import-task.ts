@@ -1,6 +1,6 @@
 import { fileSource } from './analyse.ts'
 import type { Act } from './core/sequence.ts'
-import { importRun } from './import-run.ts'
+import { type Begins, importRun } from './import-run.ts'
 import type { MonitorStore } from './monitor/needs.ts'
 import { loadSkid } from './skid/check.ts'
 import type { RunId } from './store/keys.ts'
@@ -14,6 +14,7 @@ export interface ImportTask {
   readonly skidText: string
   readonly logs: readonly { readonly name: string; readonly path: string }[]
   readonly acts: readonly Act[]
+  readonly commissioned?: Begins
   readonly startMs: number | null
   /** Others write to the store meanwhile: commits are short, and between them there is a pause for theirs, ms. Null when nobody does. */
   readonly pauseMs: number | null
@@ -41,6 +42,7 @@ export function importInto(store: MonitorStore): ImportWork {
       sources: task.logs.map(({ name, path }) => ({ name, chunks: fileSource(path).chunks })),
       startMs: task.startMs,
       acts: task.acts,
+      ...(task.commissioned === undefined ? {} : { commissioned: task.commissioned }),
       onProgress: progress,
       signal,
       ...beside,

@@ -1,5 +1,6 @@
 import { readFile, stat } from 'node:fs/promises'
 import { basename } from 'node:path'
+import { loadCommissioning } from '../commissioning-file.ts'
 import { MonitorError } from '../core/errors.ts'
 import { importInto } from '../import-task.ts'
 import { importInThread } from '../import-thread.ts'
@@ -17,7 +18,7 @@ import { storeOptions, tellSigning } from './key-folder.ts'
 import { readOptions, usage } from './options.ts'
 import { progressLine } from './progress-line.ts'
 
-const help = `Usage: clearbore import LOG.csv… --skid FILE --data DIR [--title TEXT] [--start T] [--events FILE]
+const help = `Usage: clearbore import LOG.csv… --skid FILE --data DIR [--title TEXT] [--start T] [--events FILE] [--baseline FILE]
 
 Puts one logged run, in one file or several, into the store; the pages show it from then on.
 
@@ -28,6 +29,7 @@ Puts one logged run, in one file or several, into the store; the pages show it f
   --keys DIR     where the key that signs the store's chains lies (default CLEARBORE_KEYS, else this user's state folder)
   --start T      when a log with elapsed seconds or bare times of day began
   --events FILE  CSV with time,kind,value,unit,person,note
+  --baseline FILE  the record of a step test (commission --json) that the run begins with
 
 Exit code 0; 1 when an input is wrong; 2 for a wrong command line; 3 when the machine fails. Nothing is kept of a failed import.
 `
@@ -50,7 +52,7 @@ export const importCommand: Command = {
     const { values: v, positionals: logs } = readOptions(
       'import',
       args,
-      { skid: text, data: text, title: text, start: text, events: text, keys: text },
+      { skid: text, data: text, title: text, start: text, events: text, keys: text, baseline: text },
       true,
     )
     if (logs.length === 0) throw usage('import', 'import needs at least one LOG.csv')
@@ -61,6 +63,16 @@ export const importCommand: Command = {
     let total = 0
     for (const log of logs) total += await sizeOf(log)
     const acts = v.events === undefined ? [] : readEvents(v.events, await readEventsFile(v.events), skid.timeZone)
+    const begins =
+      v.baseline === undefined
+        ? {}
+        : {
+            commissioned: {
+              known: await loadCommissioning(v.baseline, skid),
+              reason: `step test ${basename(v.baseline)}`,
+              person: 'clearbore import',
+            },
+          }
     const data = v.data ?? '.clearbore'
     const store = openStore(data, storeOptions(io, v.keys))
     const line = progressLine(io, 'import', total / 1e6, 'MB')
@@ -81,7 +93,7 @@ export const importCommand: Command = {
           io.program === undefined ? importInto(store) : importInThread({ entry: io.program, data, toolVersion: toolVersion() })
         const { rows, broken } = await importing(
           {
-            ...pair, skidFile: v.skid, skidText, logs: logs.map((path) => ({ name: basename(path), path })), acts, startMs, pauseMs: null,
+            ...pair, skidFile: v.skid, skidText, logs: logs.map((path) => ({ name: basename(path), path })), acts, startMs, pauseMs: null, ...begins,
           }, // biome-ignore format: a list
           { signal: io.signal, progress: (bytes) => line.update(Math.round(bytes / 1e5) / 10) },
         )

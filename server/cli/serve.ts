@@ -1,4 +1,5 @@
 import { resolve } from 'node:path'
+import { loadCommissioning } from '../commissioning-file.ts'
 import { importInThread } from '../import-thread.ts'
 import { instantOf } from '../ingest/instant.ts'
 import { cautions } from '../record/facts.ts'
@@ -14,13 +15,15 @@ import { startServing, type Watched } from './serving.ts'
 
 const defaultPort = 8460
 
-const help = `Usage: clearbore serve [--skid FILE]… [--follow LOG.csv]… [--data DIR] [--keys DIR] [--port N] [--host H] [--speed N] [--start T]
+const help = `Usage: clearbore serve [--skid FILE]… [--follow LOG.csv]… [--baseline FILE]… [--data DIR] [--keys DIR] [--port N] [--host H] [--speed N] [--start T]
 
 Watches skids and serves the pages. Without --skid: the demo, the skid "heron" from the simulator, faster than time.
 
   --skid FILE       a skid file (YAML or JSON); repeatable
   --follow LOG.csv  a log that a data logger is still appending to: the first for the first --skid, and so on;
                     a skid without one runs from the simulator, and the pages say so
+  --baseline FILE   the record of a step test (commission --json) that new runs begin with: the first for the first --skid,
+                    and so on; it is kept in each run, so that a replay begins alike
   --data DIR        where everything is kept (default .clearbore); runs go on there after a restart
   --keys DIR        where the key lies that signs the record, never in the data folder (default CLEARBORE_KEYS, else
                     this user's state folder)
@@ -50,6 +53,7 @@ const many = { type: 'string', multiple: true } as const
 async function watchedOf(
   skids: readonly string[],
   follows: readonly string[],
+  baselines: readonly string[],
   speed: number,
   start: string | null,
 ): Promise<Watched[]> {
@@ -58,11 +62,13 @@ async function watchedOf(
     const content = await readSkidText(file)
     const skid = loadSkid(content, file)
     const path = follows[i]
+    const baseline = baselines[i]
     const startMs = start === null ? null : instantOf(start, skid.timeZone, '--start')
     out.push({
       skid,
       file,
       text: content,
+      commissioned: baseline === undefined ? null : { file: baseline, known: await loadCommissioning(baseline, skid) },
       source: path === undefined ? { kind: 'simulated', speed } : { kind: 'followed', path: resolve(path), startMs },
     })
   }
@@ -77,7 +83,18 @@ export const serveCommand: Command = {
     const { values: v } = readOptions(
       'serve',
       args,
-      { skid: many, follow: many, data: text, port: text, host: text, speed: text, start: text, keys: text, ...accessOptions },
+      {
+        skid: many,
+        follow: many,
+        baseline: many,
+        data: text,
+        port: text,
+        host: text,
+        speed: text,
+        start: text,
+        keys: text,
+        ...accessOptions,
+      },
       false,
     )
     const follows = v.follow ?? []
@@ -86,11 +103,17 @@ export const serveCommand: Command = {
         'serve',
         `${follows.length} --follow for ${(v.skid ?? []).length} --skid: each followed log needs the skid it belongs to`,
       )
+    const baselines = v.baseline ?? []
+    if (baselines.length > (v.skid ?? []).length)
+      throw usage(
+        'serve',
+        `${baselines.length} --baseline for ${(v.skid ?? []).length} --skid: each record needs the skid it is of`,
+      )
     const isDemo = v.skid === undefined
     const speed = wholeIn('serve', '--speed', v.speed ?? '60', 1, 3600)
     const port = v.port === undefined ? defaultPort : wholeIn('serve', '--port', v.port, 0, 65_535)
     const access = await readAccess(v)
-    const watched = await watchedOf(v.skid ?? [demoSkidFile()], follows, speed, v.start ?? null)
+    const watched = await watchedOf(v.skid ?? [demoSkidFile()], follows, baselines, speed, v.start ?? null)
     const ids = watched.map((w) => w.skid.skid)
     const twice = ids.find((id, i) => ids.indexOf(id) !== i)
     if (twice !== undefined) throw usage('serve', `skid '${twice}' is given twice`)

@@ -1,6 +1,9 @@
 import { networkInterfaces } from 'node:os'
+import { basename } from 'node:path'
 import { buildApp } from '../app.ts'
+import type { StartingKnowledge } from '../core/baseline/starting-knowledge.ts'
 import { MonitorError } from '../core/errors.ts'
+import type { Act } from '../core/sequence.ts'
 import { demoScenario } from '../core/sim/demo.ts'
 import type { Skid } from '../core/skid.ts'
 import { exportRun } from '../export-run.ts'
@@ -24,6 +27,8 @@ export interface Watched {
   readonly skid: Skid
   readonly file: string
   readonly text: string
+  /** An accepted step test that new runs begin with. */
+  readonly commissioned?: { readonly file: string; readonly known: readonly StartingKnowledge[] } | null
   readonly source:
     | { readonly kind: 'simulated'; readonly speed: number }
     | { readonly kind: 'followed'; readonly path: string; readonly startMs: number | null }
@@ -138,6 +143,19 @@ export async function startServing(o: ServingOptions) {
     return same.findLast((r) => store.runs.get(r.id).skidText === w.text)?.id ?? null
   }
 
+  const beginsWith = (w: Watched, tMs: number): Act[] =>
+    w.commissioned == null
+      ? []
+      : [
+          {
+            kind: 'commissioned',
+            tMs,
+            person: 'clearbore serve',
+            known: w.commissioned.known,
+            reason: `step test ${basename(w.commissioned.file)}`,
+          },
+        ]
+
   const versions = createVersions(store, loadSkid)
   /** Water results of the run before that still hold. */
   function carriedTo(run: RunId, w: Watched, tMs: number) {
@@ -152,9 +170,11 @@ export async function startServing(o: ServingOptions) {
     watchedOf.set(run, w)
     const source = sourceOf(w, run)
     // A new run begins with the settings in force: the version of its file and what was changed since.
-    const { nowMs } = source.clock()
     const isNew = store.sequence.count(run).entries === 0
-    const opening = isNew ? [...versions.opening(w.skid.skid, nowMs), ...carriedTo(run, w, nowMs)] : []
+    const { nowMs } = source.clock()
+    const opening: Act[] = isNew
+      ? [...versions.opening(w.skid.skid, nowMs), ...beginsWith(w, nowMs), ...carriedTo(run, w, nowMs)]
+      : []
     if (opening.length > 0) store.sequence.append([{ run, entries: opening.map((act) => ({ kind: 'act', act })) }])
     monitor.add({ run, stepsRun, skid: w.skid, source })
   }

@@ -1,3 +1,4 @@
+import type { StartingKnowledge } from './baseline/starting-knowledge.ts'
 import type { RowBlock } from './reading.ts'
 import type { SettingChange } from './settings/flat.ts'
 
@@ -28,6 +29,8 @@ export type Act = { readonly tMs: number; readonly person: string } & (
       readonly changes: readonly SettingChange[]
       readonly reason: string
     }
+  /** What an accepted step test measured, before the first reading of a run; later it comes too late. */
+  | { readonly kind: 'commissioned'; readonly known: readonly StartingKnowledge[]; readonly reason: string }
   | {
       readonly kind: 'flush-step'
       readonly segment: string

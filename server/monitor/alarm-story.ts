@@ -56,9 +56,9 @@ function recordLine(r: AlarmRecord, name: (alarm: number | null, key: string) =>
   return { tMs: r.tMs, what: 'alarm', alarm: r.alarm, text, person: r.person }
 }
 
-/** Settings that a run begins with: in its acts, but nobody changed them in it. */
+/** What a run begins with, settings or a step test: in its acts, but nobody changed it in it. */
 export const isOpening = (act: Act, beginMs: number): boolean =>
-  act.kind === 'settings' && (act.changes.length === 0 || act.tMs <= beginMs)
+  act.kind === 'commissioned' || (act.kind === 'settings' && (act.changes.length === 0 || act.tMs <= beginMs))
 
 /** What happened in (fromMs, toMs], in order: the alarm journal, acts of people that are not in it, and notes of the tool. */
 export function storyLines(p: RunParts, rows: readonly AlarmRow[], fromMs: number, toMs: number): StoryLine[] {

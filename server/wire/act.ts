@@ -5,7 +5,7 @@ type Untimed<A> = A extends Act ? Omit<A, 'tMs'> : never
 
 /** An act without its time, which the server gives by the run's clock. Every act names a person. */
 export type ActBody =
-  | Exclude<Untimed<Act>, { readonly kind: 'settings' | 'reset' | 'limit' }>
+  | Exclude<Untimed<Act>, { readonly kind: 'settings' | 'commissioned' | 'reset' | 'limit' }>
   | Omit<Required<Extract<Act, { readonly kind: 'reset' }>>, 'tMs'>
   | Omit<Extract<Act, { readonly kind: 'limit' }>, 'tMs' | 'version'>
 

@@ -3,7 +3,11 @@ import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterAll, describe, expect, it } from 'vitest'
 import type { Commissioning } from '../../server/core/baseline/record.ts'
+import { reportText } from '../../server/core/pipeline/collect.ts'
 import type { Report } from '../../server/core/report.ts'
+import { createEngine } from '../../server/monitor/engine.ts'
+import { loadSkid } from '../../server/skid/check.ts'
+import { openStore } from '../../server/store/open.ts'
 import { benchHeader, benchSkid, benchStartMs, cli } from '../helpers/cli.ts'
 
 const dir = mkdtempSync(join(tmpdir(), 'commission-'))
@@ -78,6 +82,31 @@ describe('clearbore commission', () => {
     expect(withIt.learned!.flowExponent.sd).toBeLessThan(without.learned!.flowExponent.sd / 2)
     // Flow and viscosity come from the same fittings and curvature: what lifts one exponent lowers the other.
     expect(withIt.learned!.viscosityExponent.value).toBeLessThan(without.learned!.viscosityExponent.value)
+  })
+
+  it('is recorded as the first act of an imported run, which reports what analyse --baseline does, again and again', async () => {
+    await cli(['commission', good, '--skid', skid, '--json', record])
+    const run = file('run.csv', log([[40, 2]]))
+    const data = join(dir, 'data')
+    const keys = join(dir, 'keys')
+    const imported = await cli(['import', run, '--skid', skid, '--data', data, '--keys', keys, '--baseline', record])
+    expect(imported).toMatchObject({ code: 0, err: '' })
+    const analysed = JSON.parse((await cli(['analyse', run, '--skid', skid, '--json', '-', '--baseline', record])).out) as Report
+    const store = openStore(data)
+    try {
+      const [found] = store.runs.list().filter((r) => r.title === 'run.csv')
+      const acts = store.sequence.acts(found!.id)
+      expect(acts.map(({ seq, act }) => [seq, act.kind, 'reason' in act ? act.reason : null])).toEqual([
+        [0, 'commissioned', 'step test record.json'],
+      ])
+      const stepsRun = store.runs.list().find((r) => r.id !== found!.id)!.id
+      const report = createEngine({ store, run: found!.id, stepsRun, skid: loadSkid(benchSkid, skid) }).report()
+      const { segments } = JSON.parse(reportText(report)) as Report
+      expect(segments).toEqual(analysed.segments)
+      expect(segments[0]!.baseline!.commissioned).toBe(true)
+    } finally {
+      store.close()
+    }
   })
 
   it('refuses a record that is none, or of another skid, with its file', async () => {

@@ -91,6 +91,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   const scanMs = skid.scanSeconds * 1000
   const stepMs = stepScans(skid.scanSeconds) * scanMs
   let events: PipelineEvent[] = []
+  let known = options.known
 
   const configuration = createConfiguration(
     skid,
@@ -123,7 +124,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
       site,
       book,
       limits,
-      watch: createWatch(laid, stepMs, of.watch, { ...options, bank }),
+      watch: createWatch(laid, stepMs, of.watch, { ...options, ...(known === undefined ? {} : { known }), bank }),
       excursions: createExcursions(laid, limits, book.hears, of.excursions),
       limitChecks: createLimits(laid, limits, book.hears, site),
       suppression: createSuppression(inForce, of.suppression),
@@ -361,6 +362,16 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     on.book.design(on.suppression.by, tMs)
   }
 
+  /** A step test's figures are where the watch starts from; once it has read, it knows better. */
+  function commissioned(act: Extract<Act, { kind: 'commissioned' }>): void {
+    if (grid.state.firstMs >= 0) {
+      events.push({ kind: 'note', tMs: act.tMs, text: 'step test kept, not used: the run had begun' })
+      return
+    }
+    known = act.known
+    on = stages({ book: on.book.state(), excursions: on.excursions.state(), suppression: on.suppression.state })
+  }
+
   function anew(segment: number, tMs: number): void {
     for (const e of on.watch.anew(segment)) onWatch(e, tMs)
   }
@@ -368,7 +379,8 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   function onAct(act: Act): void {
     events.push({ kind: 'act', act })
     const atMs = grid.state.firstMs < 0 ? -1 : act.tMs
-    if (act.kind === 'settings' || act.kind === 'limit') tookEffect(configuration.take(act, atMs), act.tMs)
+    if (act.kind === 'commissioned') commissioned(act)
+    else if (act.kind === 'settings' || act.kind === 'limit') tookEffect(configuration.take(act, atMs), act.tMs)
     else if (act.kind === 'flush-step' || act.kind === 'flush-check') {
       // Once water is in, the last ratio of production says nothing of the deposit any more.
       if (guide.act(act)) s.lastRatio.fill(null)
