@@ -4,14 +4,9 @@ import type { Bin, Interval } from './points.ts'
 import type { GrowthSettings } from './settings.ts'
 import type { WanderStep } from './wander.ts'
 
-/** One weighed explanation of the growth: the time it leaves from now to the limit, with its sd. */
-export interface Explained {
-  readonly weight: number
-  /** time from now to the limit and its sd [ms] */
-  readonly leftMs: number
-  readonly sdMs: number
-  readonly growthPerMs: number
-}
+/** Explanations of the growth, packed: of each its weight, time left from now to the limit with its sd [ms], growth of the ratio now [1/ms]. */
+export type Explained = Float64Array
+export const explainedWidth = 4
 
 /** The growth so far, and what is asked. */
 export interface Task {
@@ -39,7 +34,7 @@ interface Hypothesis {
 }
 
 /** Every explanation the settings allow, weighed by how well it tells the growth so far; the weights sum to 1. */
-export function explanations(task: Task): Explained[] {
+export function explanations(task: Task): Explained {
   const { onset, nowMs, settings, base, lnLimit } = task
   // Nodes at the median and the 5 % and 95 % ends; 0.185 gives the variance of a normal distribution.
   const onsets = [
@@ -47,7 +42,7 @@ export function explanations(task: Task): Explained[] {
     { ms: onset.atMs, weight: 0.63 },
     { ms: onset.highMs, weight: 0.185 },
   ]
-  const raw: { log: number; left: number; sd: number; growth: number }[] = []
+  const raw: number[] = []
   const seen = seenOf(task)
   const node = new Float64Array(4)
   let top = -Infinity
@@ -74,7 +69,7 @@ export function explanations(task: Task): Explained[] {
               const log = prior + Math.log(spacing) + age + settings.forecastPower * node[atLog]!
               if (!(log > top - 30)) continue
               top = Math.max(top, log)
-              raw.push({ log, left, sd: node[atSd]!, growth: node[atGrowth]! })
+              raw.push(log, left, node[atSd]!, node[atGrowth]!)
             }
           }
         }
@@ -82,10 +77,19 @@ export function explanations(task: Task): Explained[] {
     }
   }
   let total = 0
-  for (const r of raw) total += Math.exp(r.log - top)
-  return raw
-    .map((r) => ({ weight: Math.exp(r.log - top) / total, leftMs: r.left, sdMs: r.sd, growthPerMs: r.growth }))
-    .filter((node) => node.weight > 1e-6)
+  for (let at = 0; at < raw.length; at += explainedWidth) total += Math.exp(raw[at]! - top)
+  const out = new Float64Array(raw.length)
+  let filled = 0
+  for (let at = 0; at < raw.length; at += explainedWidth) {
+    const weight = Math.exp(raw[at]! - top) / total
+    if (!(weight > 1e-6)) continue
+    out[filled] = weight
+    out[filled + 1] = raw[at + 1]!
+    out[filled + 2] = raw[at + 2]!
+    out[filled + 3] = raw[at + 3]!
+    filled += explainedWidth
+  }
+  return out.subarray(0, filled)
 }
 
 /**

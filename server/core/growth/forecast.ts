@@ -1,4 +1,4 @@
-import { explanations } from './explanations.ts'
+import { explainedWidth, explanations } from './explanations.ts'
 import { cleanBelief } from './growth-filter.ts'
 import { mixtureQuantiles } from './mixture-quantiles.ts'
 import {
@@ -94,7 +94,7 @@ export function forecastLimit(
   const [low, at, high] = mixtureQuantiles(nodes, [tail, 0.5, 1 - tail]) as [number, number, number]
   if (at > settings.farthest * (nowMs - onset.atMs)) return null
   let growth = 0
-  for (const node of nodes) growth += node.weight * node.growthPerMs
+  for (let at = 0; at < nodes.length; at += explainedWidth) growth += nodes[at]! * nodes[at + 3]!
   return {
     atMs: Math.round(nowMs + at),
     lowMs: Math.floor(nowMs + low),
