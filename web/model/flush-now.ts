@@ -61,7 +61,10 @@ export const keyOf = (p: Point): string => (p.part === null ? p.criterion : `${p
 /** Points that a person may record now: those of people first, then readings that are not known although scans have come. */
 export const recordable = (s: CourseStep): Point[] => [
   ...s.points.filter((p) => p.by === 'person' && p.state !== 'met' && p.state !== 'skipped'),
-  ...s.points.filter((p) => p.by === 'readings' && p.state === 'unknown' && p.why !== noReadingYet),
+  ...s.points.filter(
+    (p) =>
+      p.by === 'readings' && ((p.state === 'unknown' && p.why !== noReadingYet) || (p.state === 'failed' && p.person !== null)),
+  ),
 ]
 /** As the course says it before the first scan of a step. */
 const noReadingYet = 'no reading yet'

@@ -68,7 +68,9 @@ function againstCheck(s: GuideState, act: Extract<FlushAct, { kind: 'flush-check
   if (act.value === null || act.value === '') return ['a value or what was seen is missing']
   if (point.by === 'readings') {
     if (point.why === noReadingYet) return ['no scan of this step has come yet']
-    if (point.state !== 'unknown') return ['good readings decide this point; a hand reading counts only while they are missing']
+    // What a person called failed, a person takes back; readings decide from then on.
+    if (point.state !== 'unknown' && !(point.state === 'failed' && point.person !== null))
+      return ['good readings decide this point; a hand reading counts only while they are missing']
     return isUseful(act.reason) ? [] : [`a hand reading needs a reason of at least ${reasonLength} characters`]
   }
   const rule = s.rules[c.steps.indexOf(step)]?.[i] ?? null
@@ -126,9 +128,11 @@ export function record(c: Course, rules: readonly (readonly Rule[])[], act: Extr
             : 'recorded'
           : (p.reason ?? verdict)
   }
+  const lifted = step.points[at]!.by === 'readings' && step.points[at]!.state === 'failed' && verdict === 'met'
   put(step.points[at]!)
+  if (lifted) Object.assign(step.points[at]!, { state: 'unknown', value: null, person: null, tMs: null, why: 'to be read again' })
   if (verdict !== 'met' || step.points[at]!.by === 'readings') {
-    const what = verdict === 'met' ? 'hand reading' : verdict
+    const what = lifted ? 'no longer failed' : verdict === 'met' ? 'hand reading' : verdict
     c.exceptions.push({
       tMs: act.tMs,
       person: act.person,

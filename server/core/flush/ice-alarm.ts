@@ -7,7 +7,9 @@ const icy = (c: Course | null): string[] =>
     ? []
     : c.steps
         .filter((s) => s.state === 'running')
-        .flatMap((s) => s.points.filter((p) => p.criterion === 'no-ice' && p.by === 'readings' && p.state === 'failed'))
+        .flatMap((s) =>
+          s.points.filter((p) => p.criterion === 'no-ice' && p.by === 'readings' && p.state === 'failed' && p.person === null),
+        )
         .map((p) => p.part ?? '')
 
 /** What the alarm of ice says since it was asked last: up where a leg has become icy, over where it is no more, or the flush has ended. */

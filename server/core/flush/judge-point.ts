@@ -164,6 +164,8 @@ function ask(rule: Exclude<Rule, null>, m: Memory, step: CourseStep, r: Readings
  */
 export function judgePoint(point: Point, rule: Rule, m: Memory, step: CourseStep, r: Readings): boolean {
   if (rule === null || rule.kind === 'at-most' || point.state === 'skipped') return false
+  // What a person called failed a person takes back.
+  if (point.state === 'failed' && point.person !== null) return false
   const s = ask(rule, m, step, r)
   const recorded = point.person !== null
   if (recorded && (s.ok !== false || rule.kind === 'volume')) return false

@@ -177,3 +177,34 @@ it('counts volume as the sum of flow over time: 500 s of the usual flow, less 60
   expect(s.withoutFlowS).toBe(60)
   expect(Math.abs(s.passedMl / (440 * perSecond) - 1)).toBeLessThan(1e-6)
 })
+
+it('what a person called failed against good readings stays failed until a person takes it back with a reason; then readings decide again', () => {
+  const guide = createGuide(layout, needs, freshGuide())
+  let tMs = 1_000_000_000_000
+  const wait = (weather: Weather, seconds: number): void => {
+    for (let k = 0; k < seconds; k += scanMs / 1000, tMs += scanMs) guide.scan(weatherScan(tMs, weather), tMs + scanMs)
+  }
+  const flowB = () => guide.state.course!.steps[0]!.points.find((p) => p.part === 'flow B')!
+  const check = (verdict: 'met' | 'failed', reason: string): void => {
+    const base = { tMs, person: 'operator 1', segment: 'R1', step: 'F0', criterion: 'reagent-stopped:flow B' } as const
+    guide.act({ ...base, kind: 'flush-check', verdict, value: 'drips', source: 'sight glass', reason })
+  }
+  guide.act({ kind: 'flush-step', tMs, person: 'operator 1', segment: 'R1', step: 'F0', state: 'started', reason: '' })
+  wait('still-cold', 60)
+  expect(flowB().state).toBe('met')
+  check('met', 'looked at it')
+  expect(guide.state.course!.refusals.at(-1)!.reasons[0]).toContain('good readings decide')
+  check('failed', 'the glass drips')
+  wait('flow-cold', 60)
+  wait('still-cold', 60)
+  expect(flowB()).toMatchObject({ state: 'failed', person: 'operator 1' })
+  check('met', '')
+  expect(flowB().state).toBe('failed')
+  check('met', 'valve closed by hand')
+  wait('still-cold', 60)
+  expect(flowB()).toMatchObject({ state: 'met', person: null })
+  expect(guide.state.course!.exceptions.map((x) => x.text.split(', ')[0])).toEqual([
+    'reagent-stopped:flow B: failed',
+    'reagent-stopped:flow B: no longer failed',
+  ])
+})
