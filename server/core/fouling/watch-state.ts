@@ -62,6 +62,8 @@ export interface SegmentWatch {
   charts: ChartState | null
   /** ln of the clean ΔP over the last ten minutes, newest last. */
   cleanLn: number[]
+  /** Steps of production in a row without what a ratio needs; missing in a state of an older build. */
+  blind?: number
 }
 
 export interface WatchState {
@@ -85,6 +87,8 @@ export type WatchEvent =
     }
   /** The lower side of the chart: a slow fall below clean by this share, told once. */
   | { readonly kind: 'below'; readonly segment: number; readonly ratio: number; readonly share: number }
+  /** Produced for a quarter of an hour without the readings that a ratio needs: nothing is judged, which must not pass for clean. */
+  | { readonly kind: 'unjudged'; readonly segment: number; readonly lacks: 'dp' | 'flow' | 'temperature' | 'signal' }
   | { readonly kind: 'onset'; readonly segment: number; readonly onset: Interval }
   | { readonly kind: 'forecast'; readonly segment: number; readonly forecast: ForecastRecord | null }
   | { readonly kind: 'cleared'; readonly segment: number; readonly why: 'stopped' | 'fell back' }
@@ -105,7 +109,7 @@ export interface WatchStep {
 }
 
 /** Steps: of history kept for an onset; in a baseline before it is final; averaged for the ratio shown; between forecasts. */
-export const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 2, clean: 20, pointsKept: 480 }
+export const steps = { history: 420, baseline: 60, provisional: 30, shown: 3, forecast: 2, clean: 20, pointsKept: 480, blind: 30 }
 
 const freshWindow = (): SegmentWatch['window'] => ({ dpPa: [], flow: [], tempK: [], fromMs: 0 })
 

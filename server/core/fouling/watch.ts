@@ -3,7 +3,7 @@ import { type BankEvent, type BankSettings, bankSettings } from '../bank/bank-st
 import { touches } from '../bank/verdicts.ts'
 import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
 import type { Layout } from '../derive/layout.ts'
-import { createObserver } from '../derive/observe.ts'
+import { createObserver, type SegmentStep } from '../derive/observe.ts'
 import type { Step } from '../derive/step.ts'
 import type { GrowthPoint, Noise } from '../growth/points.ts'
 import { baselineOf, fillWindow } from './baselines.ts'
@@ -32,6 +32,9 @@ export interface WatchOptions {
   /** From an accepted step test; a saved state has it already. */
   readonly known?: readonly StartingKnowledge[]
 }
+
+const lackOf = (x: SegmentStep): 'dp' | 'flow' | 'temperature' | 'signal' =>
+  x.dpPa === null ? 'dp' : x.tempK === null ? 'temperature' : x.massFlowKgS === null ? 'flow' : 'signal'
 
 /**
  * Fouling of every segment: production or not, resistance over clean, deposits with their onset and forecast, baselines. One call a
@@ -203,6 +206,8 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState, 
       const now = out.segments.map((b, i): SegmentNow => {
         const w = watch[i]!
         const o = observations[i] ?? null
+        w.blind = o === null ? (w.blind ?? 0) + 1 : 0
+        if (w.blind === steps.blind) events.push({ kind: 'unjudged', segment: i, lacks: lackOf(segs[i]!) })
         if (o === null || b.lnRatio === null) return { ratio: null, step: segs[i]!, ...b }
         const started = out.events.some((e) => (e.kind === 'deposit' || e.kind === 'blockage') && e.segment === i)
         const ln = started ? bank.reread(i, o) : b.lnRatio

@@ -27,7 +27,7 @@ import { siteRules } from '../signals/site-rules.ts'
 import type { Skid } from '../skid.ts'
 import { barFromPa, cFromK, mlMinFromM3s, paFromBar } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
-import { creepSaid, type Said, verdictSaid } from './verdict-said.ts'
+import { creepSaid, type Said, unjudgedText, verdictSaid } from './verdict-said.ts'
 
 /** Everything the pipeline knows, as plain JSON: stop anywhere, resume, and what follows is the same to the byte. */
 export interface PipelineState {
@@ -268,6 +268,9 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
         events.push({ kind: 'note', tMs, text })
         return
       }
+      case 'unjudged':
+        events.push({ kind: 'note', tMs, text: unjudgedText(layout, e.segment, e.lacks) })
+        return
       case 'cleared':
         end(`fouling:${layout.segments[e.segment]!.spec.id}`, tMs)
         return

@@ -162,6 +162,19 @@ export function creepSaid(layout: Layout, e: Extract<WatchEvent, { kind: 'creep'
   })
 }
 
+/** Why the resistance of a segment is not judged. */
+export function unjudgedText(layout: Layout, segment: number, lacks: 'dp' | 'flow' | 'temperature' | 'signal'): string {
+  const g = layout.segments[segment]!
+  const tags = (of: readonly number[]): string => of.map((t) => layout.skid.tags[t]?.tag ?? '?').join(', ')
+  const why = {
+    dp: 'no reading of its pressure drop',
+    temperature: `no reading of ${tags([...g.temperatures, ...(g.coolant === null ? [] : [g.coolant])])}, and so no viscosity`,
+    flow: `no reading of ${tags(g.streams.map((i) => layout.streams[i]!.tag))}; pressure drop alone does not tell a deposit from more flow`,
+    signal: 'its pressure drop or flow is within the noise of the reading',
+  }[lacks]
+  return `${g.spec.id}: resistance not judged for a quarter of an hour: ${why}`
+}
+
 /** What the charts of a segment say beside the verdict. */
 function chartsSay(c: ChartReading | null): string {
   if (c === null) return 'charts by the promise: not yet, they need a final baseline'
