@@ -1,6 +1,6 @@
 import { createHash, createPrivateKey, createPublicKey, generateKeyPairSync, type KeyObject, sign, verify } from 'node:crypto'
 import { chmodSync, existsSync, mkdirSync, readFileSync, realpathSync, renameSync, writeFileSync } from 'node:fs'
-import { join, relative, resolve, sep } from 'node:path'
+import { basename, dirname, join, relative, resolve, sep } from 'node:path'
 import { MonitorError } from '../core/errors.ts'
 import { canonical } from './canonical.ts'
 
@@ -57,9 +57,10 @@ export function readPublicKey(file: string): string {
 
 /** Errors: USAGE when the folder for keys lies in the folder of the data: who holds the data would hold the key. */
 export function checkApart(keys: string, data: string): void {
+  // What is not there yet is judged by the nearest folder that is: a link may lead into the data.
   const real = (path: string): string => {
     const full = resolve(path)
-    return existsSync(full) ? realpathSync(full) : full
+    return existsSync(full) || dirname(full) === full ? realpathSync(full) : join(real(dirname(full)), basename(full))
   }
   const way = relative(real(data), real(keys))
   if (way === '' || (!way.startsWith(`..${sep}`) && way !== '..' && resolve(way) !== way))

@@ -1,4 +1,4 @@
-import { copyFileSync, readdirSync, readFileSync, rmSync, statSync } from 'node:fs'
+import { copyFileSync, readdirSync, readFileSync, rmSync, statSync, symlinkSync } from 'node:fs'
 import { join } from 'node:path'
 import Database from 'better-sqlite3'
 import { beforeAll, describe, expect, it } from 'vitest'
@@ -79,7 +79,9 @@ describe('two connections of one process', () => {
 describe('keys', () => {
   it('lie outside the data, readable by this user alone; a folder inside the data is refused', () => {
     const data = newFolder()
-    for (const inside of [data, join(data, 'keys'), join(data, 'a', '..', 'b')])
+    const link = join(newFolder(), 'link')
+    symlinkSync(data, link, 'dir')
+    for (const inside of [data, join(data, 'keys'), join(data, 'a', '..', 'b'), link, join(link, 'keys', 'mine')])
       expect(() => newStore(data, { keys: inside })).toThrow('lies in the data folder')
     const keys = newFolder()
     const store = newStore(data, { keys })
