@@ -128,4 +128,27 @@ describe.runIf(chromium !== null)('people in a real browser, on a server that wa
     expect(faults).toEqual([])
     await page.context().close()
   }, 60_000)
+
+  it('behind a proxy nothing is shown before signing in, and the person lands where the address led', async () => {
+    await server.stop('SIGTERM')
+    const base = `http://127.0.0.1:${server.port}`
+    server = await startServer([
+      ...['--skid', 'fixtures/skids/heron.yaml', '--data', join(dir, 'store'), '--keys', join(dir, 'keys')],
+      ...['--port', String(server.port), '--speed', '600', '--public-url', base, '--trust-proxy', '127.0.0.1'],
+    ])
+    const { page, faults } = await open(browser, `${base}/#/replay`, options)
+    await until(page, `document.querySelector('#sign-in') !== null`)
+    expect(await page.evaluate(`location.hash`)).toBe('#/sign-in')
+    expect(await page.textContent('main')).not.toContain('without signing in')
+    await page.fill('#name', 'Odo Fenn')
+    await enter(page, words.admin)
+    await until(page, `document.querySelector('main')?.dataset.page === 'runs' && location.hash === '#/replay'`)
+    await page.click('.strip nav >> text=Watch')
+    await until(page, `${data}.ready === 'true'`)
+    await page.click('#person')
+    await page.click('#sign-out button')
+    await until(page, `location.hash === '#/sign-in' && document.querySelector('#sign-in') !== null`)
+    expect(faults).toEqual([])
+    await page.context().close()
+  }, 60_000)
 })

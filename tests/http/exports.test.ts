@@ -35,6 +35,8 @@ describe('downloads of a live run', () => {
     expect(record.transitions.map((t: { input: string }) => t.input)).toEqual(['act', 'ack', 'shv'])
     expect((await s.get(`${base}/samples.json`)).status).toBe(404)
     expect((await s.get(`${base}/alarms.csv?colour=red`)).status).toBe(400)
+    for (const time of ['Infinity', '1e300', '-8640000000000001'])
+      expect((await s.get(`${base}/alarms.json?toMs=${time}`)).status).toBe(400)
     expect((await s.get('/api/runs/77/export/alarms.csv')).status).toBe(404)
   })
 })

@@ -1,3 +1,4 @@
+import { connect } from 'node:net'
 import { describe, expect, it } from 'vitest'
 import { WebSocket } from 'ws'
 import { type Served, served } from '../http/served.ts'
@@ -23,6 +24,19 @@ const refused = (port: number, headers: Record<string, string>) =>
 const cookieOf = async (s: Served, role: Parameters<Served['as']>[0]) => (await s.as(role)).cookie
 
 describe('who may listen on the websocket', () => {
+  it('an upgrade to an address that is none is answered with 404, and the server lives', async () => {
+    const s = await listening()
+    for (const path of ['//[', '/ws/../ws', 'http://[', '*', '/wsx']) {
+      const head = `GET ${path} HTTP/1.1\r\nHost: 127.0.0.1:${s.port}\r\nUpgrade: websocket\r\nConnection: Upgrade\r\n\r\n`
+      const got = await new Promise<string>((done) => {
+        const socket = connect(s.port, '127.0.0.1', () => socket.write(head))
+        socket.once('data', (d) => done(String(d)))
+        socket.once('error', () => done('cut'))
+      })
+      expect(got).toMatch(/^HTTP\/1\.1 40[04]/)
+    }
+    expect(await refused(s.port, {})).toBe('open')
+  })
   it('nobody without a session where reading is not open; with one only a page of ours', async () => {
     const s = await listening({ openReading: false })
     const cookie = await cookieOf(s, 'viewer')

@@ -41,8 +41,13 @@ export function signInView(session: SessionKeeper, done: () => void): HTMLElemen
   return pageOf('sign-in', 'Sign in', form, el('p', { class: 'soft', text: hint }), ...(open === null ? [] : [open]))
 }
 
+/** The token of the link that the page was opened with, for as long as the page lives. */
+let held = ''
+
 /** What a one-time link leads to: a password for a person, or the first administrator. The token is taken out of the address at once. */
-export function linkView(token: string, session: SessionKeeper, done: () => void): HTMLElement {
+export function linkView(given: string, session: SessionKeeper, done: () => void): HTMLElement {
+  if (given !== '') held = given
+  const token = held
   history.replaceState(null, '', '#/link')
   const status = el('p', { role: 'status', text: 'Looking at the link.' })
   const node = pageOf('link', 'Welcome', status)
