@@ -186,7 +186,14 @@ export function createMonitor({ store, steadyMs, log, onFatal, snapshotMs = 60_0
     } catch (error) {
       if (error instanceof MonitorError && (error.code === 'ACT_REFUSED' || error.code === 'TAG_UNKNOWN')) {
         const asked = JSON.parse(JSON.stringify(body)) as Json
-        store.audit.append({ tMs: nowMs, person: body.person, act: `${body.kind}.refused`, reason: error.message, body: asked, run: live.run })
+        store.audit.append({
+          tMs: nowMs,
+          person: body.person,
+          act: isChange(body) ? 'settings.refused' : 'run.refused',
+          reason: error.message,
+          body: asked,
+          run: live.run,
+        })
       }
       throw error
     }

@@ -143,7 +143,7 @@ describe('settings of a skid over HTTP', () => {
     expect(s.store.sequence.acts(s.run)).toEqual([])
     expect(s.store.audit.list().map((a) => [a.act, a.person, a.run])).toEqual([
       ...wrong.map(() => ['settings.refused', 'demo operator', s.run]),
-      ['event.refused', 'demo operator', s.run],
+      ['run.refused', 'demo operator', s.run],
     ])
     expect((await s.get('/api/skids/wren/settings')).status).toBe(404)
     expect((await s.get('/api/skids/heron/settings/compare?from=1&to=9')).json().code).toBe('SETTINGS_UNKNOWN')
