@@ -94,7 +94,7 @@ function all(dir: string): void {
   const script = scripted(clean)
   if (script === null)
     rowsTable.push({
-      what: 'import against the analysis script', value: 0, unit: '', target: 'at least 2.5 times faster', verdict: 'not measured', detail: 'no script or no pandas here',
+      what: 'import against the analysis script', value: 0, unit: '', target: 'at least 2.5 times faster', verdict: 'not measured', detail: 'no script here, or no Python with pandas and scipy',
     }) // biome-ignore format: a row
   else {
     const faster = script / middle(whole.second.map((m) => m.cpuS))
