@@ -130,6 +130,7 @@ describe('listening beyond this machine', () => {
     const child = start(main, ['serve', '--data', tempDir(), '--port', '0', ...args])
     return { code: await child.ended, err: child.err.join('\n') }
   }
+  // REC-07
   it.each([
     ['the demo', ['--host', '0.0.0.0']],
     ['a skid', ['--host', '0.0.0.0', '--skid', heronFile]],

@@ -72,6 +72,7 @@ describe('the role matrix, from the OpenAPI text', () => {
     60_000,
   )
 
+  // ALM-07
   it('holds for every kind of act of the OpenAPI text, by role; the act is that of who is signed in', async () => {
     const s = await served({ demo: false })
     await s.live(30)

@@ -149,6 +149,7 @@ describe('signing in', () => {
 })
 
 describe('a session', () => {
+  // REC-07
   it('reads on but rests after 30 min without use, goes on with use, and is over after 12 h', async () => {
     const b = bench()
     const token = await b.first()
@@ -255,6 +256,7 @@ describe('people', () => {
       ['Ruth Alder', 'operator', false],
     ])
   })
+  // REC-07
   it('of any sequence of acts are told by the audit trail as the store has them', { timeout: 60_000 }, async () => {
     const what = fc.record({
       kind: fc.constantFrom('add', 'role', 'disable', 'enable', 'reset', 'link', 'signIn', 'wrong', 'change', 'out'),
