@@ -47,6 +47,12 @@ export function createSignIn(desk: Desk, sessions: Sessions) {
     else store.people.dropFailures(places.address)
   }
 
+  /** An administrator may have reset or disabled a person while a password was computed. */
+  function isAsBefore(person: PersonRow): boolean {
+    const now = store.people.byId(person.id)
+    return now !== null && !now.disabled && now.password === person.password
+  }
+
   /** Whether a password is a person's. Counted as failed before it is known, so that tries at the same moment see each other. */
   async function proves(person: PersonRow | null, key: string, password: string, address: string): Promise<boolean> {
     const places = { name: placeOf(key, person), address: `address ${networkOf(address)}` }
@@ -55,17 +61,15 @@ export function createSignIn(desk: Desk, sessions: Sessions) {
       countOne(places)
     })
     const same = await hasher.verify(password, person?.password ?? null)
-    // The person may have been changed meanwhile.
-    const now = person === null ? null : store.people.byId(person.id)
-    const good = same && now !== null && !now.disabled && now.password === person?.password
-    store.together(() => {
+    return store.together(() => {
+      const good = same && person !== null && isAsBefore(person)
       if (good) takeBack(places)
       else {
         const count = store.people.failures(places.name)?.count ?? 0
         note(desk, person?.name ?? unknownPerson, 'sign-in.refused', { address, failures: count })
       }
+      return good
     })
-    return good
   }
 
   return {
@@ -76,6 +80,7 @@ export function createSignIn(desk: Desk, sessions: Sessions) {
       if (!(await proves(person, key, password, address)) || person === null) throw refusal()
       const fresh = hasher.isStale(person.password ?? '') ? await hasher.hash(password) : null
       return store.together(() => {
+        if (!isAsBefore(person)) throw refusal()
         if (fresh !== null) store.people.setPassword(person.id, fresh)
         note(desk, person.name, 'sign-in', { ...aboutOf(person), address })
         return sessions.begin(person)
@@ -90,6 +95,7 @@ export function createSignIn(desk: Desk, sessions: Sessions) {
         throw new MonitorError('SIGN_IN_REFUSED', 'the old password is another', { hint: 'type it again' })
       const hash = await hasher.hash(password)
       const token = store.together(() => {
+        if (!isAsBefore(person)) throw refusal()
         store.people.setPassword(id, hash)
         store.people.dropLinks(id, wallMs())
         store.people.endSessions(id)

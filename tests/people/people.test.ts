@@ -148,6 +148,29 @@ describe('signing in', () => {
   })
 })
 
+describe('a reset while a password is computed', () => {
+  it.each(['signIn', 'changePassword'] as const)('wins over %s: no session, and the void password stays void', async (how) => {
+    const dir = tempDir()
+    const old = bench(dir)
+    await old.first()
+    const { id } = await member(old, 'Ruth Alder')
+    old.close()
+    const b = bench(dir, { logN: 5, r: 8, p: 1 })
+    const meanwhile = async (password: string) => {
+      b.people.accounts.reset(id, b.by)
+      return b.hasher.hash(password)
+    }
+    const slow = createPeople({ store: b.store, wallMs: b.clock.now, hasher: { ...b.hasher, hash: meanwhile } })
+    const asked =
+      how === 'signIn'
+        ? slow.signIn('Ruth Alder', secret, '192.0.2.1')
+        : slow.changePassword(id, secret, 'four otters in a yellow boat', '192.0.2.1')
+    expect(await code(asked)).toBe('SIGN_IN_REFUSED')
+    expect(b.store.people.byId(id)!.password).toBeNull()
+    expect(b.people.strangers()).toEqual([])
+  })
+})
+
 describe('a session', () => {
   // REC-07
   it('reads on but rests after 30 min without use, goes on with use, and is over after 12 h', async () => {
