@@ -64,8 +64,28 @@ describe.runIf(chromium !== null)('settings and entries in a real browser, on th
     await page.fill('#logic-reason', 'flush liquid is thicker')
     await page.keyboard.press('Enter')
     await until(page, `${data}.version === '3'`)
+    // One planned for the next day is taken back: another version at the same moment undoes it.
+    await page.selectOption('#group', 'Promise')
+    await page.fill('#new-value', '60')
+    await page.fill('#effective', '2031-05-06 10:00')
+    await page.fill('#change-reason', 'after the audit')
+    await page.keyboard.press('Enter')
+    await until(page, `document.querySelector('tr[data-version="4"] button') !== null`)
+    await page.click('tr[data-version="4"] button')
+    await page.fill('#back-reason', 'audit is put off')
+    expect(await violations(page)).toEqual([])
+    await page.keyboard.press('Enter')
+    await until(page, `document.querySelector('tr[data-version="5"]') !== null && document.querySelector('dialog') === null`)
     const now = await get<SettingsPage>('/api/skids/heron/settings')
-    expect(now.versions.map((v) => [v.version, v.changes.map((c) => c.new)])).toEqual([
+    expect(
+      now.versions
+        .slice(3)
+        .map((v) => [v.planned, v.effectiveMs === now.versions[3]!.effectiveMs, v.changes.map((c) => [c.old, c.new])]),
+    ).toEqual([
+      [true, true, [[30, 60]]],
+      [true, true, [[60, 30]]],
+    ])
+    expect(now.versions.slice(0, 3).map((v) => [v.version, v.changes.map((c) => c.new)])).toEqual([
       [1, []],
       [2, [5.5]],
       [3, [['dp-limit:R1'], ['flush']]],

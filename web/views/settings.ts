@@ -1,7 +1,8 @@
-import type { RunDetail, SettingRow, SettingsComparison, SettingsPage, VersionRow } from '../../server/wire/index.ts'
-import { getJson, said } from '../api.ts'
+import type { RunDetail, SettingRow, SettingsComparison, SettingsPage, SettingsSent, VersionRow } from '../../server/wire/index.ts'
+import { getJson, postJson, said } from '../api.ts'
 import { zoneClock } from '../model/clock.ts'
 import { changeText, pathText, settingText } from '../model/settings.ts'
+import { openForm } from './dialog.ts'
 import { el, fill, say } from './dom.ts'
 import { settingsChange } from './settings-change.ts'
 import { suppressionForm } from './settings-suppression.ts'
@@ -122,7 +123,13 @@ export function settingsView(detail: RunDetail, shell: Shell) {
     return el(
       'tr',
       { 'data-version': v.version },
-      el('th', { scope: 'row' }, String(v.version), v.planned ? el('p', {}, el('span', { class: 'tag', text: 'PLANNED' })) : null),
+      el(
+        'th',
+        { scope: 'row' },
+        String(v.version),
+        v.planned ? el('p', {}, el('span', { class: 'tag', text: 'PLANNED' })) : null,
+        v.planned && !change.node.hidden ? backButton(v) : null,
+      ),
       el(
         'td',
         {},
@@ -133,6 +140,34 @@ export function settingsView(detail: RunDetail, shell: Shell) {
       el('td', { text: v.reason }),
       el('td', { text: v.kind === 'file' ? 'the file' : v.person }),
     )
+  }
+
+  /** A planned change is undone by another at the same moment: both stand in the record, nothing comes of them. */
+  function backButton(v: VersionRow): HTMLElement {
+    const why = el('input', { type: 'text', id: 'back-reason', maxlength: 500, autocomplete: 'off' })
+    const undo = (): SettingsSent => ({
+      reason: why.value,
+      effectiveMs: v.effectiveMs,
+      changes: v.changes.map((c) => ({ path: c.path, new: c.old })),
+    })
+    const ask = () =>
+      openForm(
+        `Take back version ${v.version}`,
+        'Take back',
+        [el('p', { text: v.changes.map(changeText).join('; ') }), el('label', { for: 'back-reason', text: 'Why' }), why],
+        async () => {
+          await postJson(base, undo())
+          await load()
+          return ''
+        },
+      )
+    return el('button', {
+      type: 'button',
+      class: 'small',
+      text: 'Take back',
+      'aria-label': `Take back version ${v.version}`,
+      on: { click: ask },
+    })
   }
 
   async function show(a: number, b: number): Promise<void> {
