@@ -63,6 +63,8 @@ const feedRatioDefaults = {
   holdS: 10,
   holdMovedS: 45,
   movedBy: 0.025,
+  /** A limit in mol/mol is left again only by so much, share of it: a ratio that rides on its limit is one alarm. */
+  deadband: 0.02,
   /** A ratio kept for so long is the new usual one. */
   acceptS: 900,
 } as const
@@ -120,6 +122,10 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
     const molMol = pair.molPerKg === null ? null : Math.exp(now) * (pair.molPerKg[0] / pair.molPerKg[1])
     const known = s.armed && state.n >= scans(60)
     const beyond = molMol === null || pair.limits === null ? 0 : molMol > pair.limits.high ? 1 : molMol < pair.limits.low ? -1 : 0
+    const inside =
+      molMol === null ||
+      pair.limits === null ||
+      (molMol < pair.limits.high * (1 - d.deadband) && molMol > pair.limits.low * (1 + d.deadband))
     const off = beyond !== 0 && s.armed ? beyond : known && Math.abs(dev) > allowed ? Math.sign(dev) : 0
     if (off !== state.side) {
       state.side = off
@@ -145,7 +151,7 @@ export function createFeedRatio(pair: FeedPair, state: FeedRatioState = freshFee
     }
     return {
       over: s.armed ? state.over : null,
-      under: Math.abs(dev) < allowed / 2 && beyond === 0,
+      under: Math.abs(dev) < allowed / 2 && inside,
       highNow: known && off === 1,
       relative: Math.exp(dev),
       allowed,

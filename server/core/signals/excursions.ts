@@ -198,7 +198,12 @@ export function createExcursions(layout: Layout, limits: LimitTable, hears: Alar
   function feedSignal(p: Pair, v: FeedRatioVerdict, tMs: number, emit: (s: Signal) => void): void {
     const { key } = p
     if (!hears(key, v.over)) return
-    const off = v.relative === null ? '' : `${(100 * (v.relative - 1)).toFixed(1)} % off its usual value`
+    const off =
+      v.detector === 'limit' && v.molMol !== null
+        ? `${v.molMol.toFixed(3)} mol/mol, beyond its limit of ${v.side === 'high' ? p.limits!.high : p.limits!.low}`
+        : v.relative === null
+          ? ''
+          : `${(100 * (v.relative - 1)).toFixed(1)} % off its usual value`
     emit({
       key,
       tMs,

@@ -104,3 +104,19 @@ describe('feed ratio in mol/mol', () => {
     expect(out.at(-1)!.v.over).toBe(true)
   })
 })
+
+describe('a ratio that rides on its limit of 0.95 mol/mol', () => {
+  it('for two hours is one alarm, not one at every crossing; 4 % inside the limit it clears', () => {
+    // b0/b1 so that the usual ratio of flows, 0.4, is 1.05 mol/mol.
+    const pair = { molPerKg: [2.625, 1] as const, limits: { low: 0.95, high: 1.15 } }
+    const slip = (tS: number) => (tS < 2000 ? 1 : tS < 9000 ? Math.max(0.905, 1 - (tS - 2000) / 12_000) : 0.94)
+    let standing = false
+    let alarms = 0
+    for (const { v } of course({ hours: 3, a: slip, pair }).out) {
+      if (v.over === true && !standing) alarms++
+      standing = v.over === true || (standing && !v.under)
+    }
+    expect(alarms).toBe(1)
+    expect(standing).toBe(false)
+  })
+})
