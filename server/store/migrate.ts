@@ -2,7 +2,6 @@ import type Database from 'better-sqlite3'
 import { MonitorError } from '../core/errors.ts'
 import { adopt } from './adopt.ts'
 import { sql as people } from './steps/people.ts'
-import { sql as settings } from './steps/settings.ts'
 import { sql as trail } from './steps/trail.ts'
 
 /**
@@ -56,7 +55,6 @@ export const steps: readonly string[] = [
   `,
   trail,
   people,
-  settings,
 ]
 
 /** Steps a store has seen. Errors: STORE_SCHEMA_NEWER when a newer build wrote it. */
