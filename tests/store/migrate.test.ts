@@ -8,6 +8,7 @@ import { steps } from '../../server/store/migrate.ts'
 import { close, newFolder, newStore } from './helpers.ts'
 
 /** A step that some store has been through stays as it is; a change of the schema is a further step, and its sum is added here. */
+const sums = ['cd12d2db41cb2e92', '18ff7357d702d49b', '4e55f6e174a7f6d9', '172c362f934f1200']
 
 it('has not changed a step of the schema that stores out there have been through', () => {
   expect(steps.map((step) => createHash('sha256').update(step).digest('hex').slice(0, 16))).toEqual(sums)
