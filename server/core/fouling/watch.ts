@@ -184,7 +184,11 @@ export function createWatch(layout: Layout, stepMs: number, saved?: WatchState, 
     step(step: Step, limits: readonly (DpLimit | null)[]): WatchStep {
       const m = mode.step(step)
       const events: WatchEvent[] = []
-      if (m.rests) observer.rest(step)
+      if (m.rests) {
+        const before = [...observer.state.zeroPa]
+        observer.rest(step)
+        bank.rested(observer.state.zeroPa.map((pa, i) => pa - before[i]!))
+      }
       if (m.stops) {
         watch.forEach((w, i) => {
           clear(i, 'stopped', events)
