@@ -67,6 +67,7 @@ const session = openSession((now) => {
   if (who !== now.person?.name) feed.want(false)
   who = now.person?.name ?? ''
   feed.want(now.mayRead)
+  root.dataset['reading'] = now.mayRead ? 'yes' : 'no'
   if (!now.mayRead && !publicPages.has(route().page)) void go()
 })
 const sound = soundView((text) => say(says, text))

@@ -140,6 +140,8 @@ describe.runIf(chromium !== null)('people in a real browser, on a server that wa
     await until(page, `document.querySelector('#sign-in') !== null`)
     expect(await page.evaluate(`location.hash`)).toBe('#/sign-in')
     expect(await page.textContent('main')).not.toContain('without signing in')
+    // Nor does the foot say that no alarm stands.
+    expect(await page.evaluate(`getComputedStyle(document.querySelector('.counts')).display`)).toBe('none')
     await page.fill('#name', 'Odo Fenn')
     await enter(page, words.admin)
     await until(page, `document.querySelector('main')?.dataset.page === 'runs' && location.hash === '#/replay'`)
