@@ -10,6 +10,21 @@ const worlds = [['noise-free', quiet], ...[1, 2, 3, 4].map((s) => [`seed ${s}`, 
 const since = (k: number, from: number) => Math.max(0, k - from)
 
 describe.each(worlds)('what the bank makes of a change: %s', (_, world) => {
+  // FOU-08
+  it('an end tap that drifts 10 mbar a minute: upwards nothing tells it from a deposit (within 2 nats), which is raised with the tap not excluded; downwards the tap is named', () => {
+    const drift = (sign: number) =>
+      run(duo, { ...world, tapPa: (t, k) => (t === 0 ? sign * 500 * Math.min(40, since(k, 150)) : 0) }, 240).happened
+    const up = drift(1)[0]!.event
+    expect(up).toMatchObject({ kind: 'deposit', segment: 0 })
+    const tap = up.rivals.find((r) => r.kind === 'tap-ramp' && r.of === 0)!
+    // A tap that no neighbour mirrors stands there less the six nats of its handicap.
+    expect(Math.abs(up.likelihood - (tap.likelihood + 6))).toBeLessThan(2)
+    expect(findingOf(duo, up).notExcluded.some((n) => n.includes('slow drift of PT-1'))).toBe(true)
+    const down = drift(-1).map((x) => x.event)
+    expect(down.some((e) => e.kind === 'instrument' && e.tag === 'PT-1')).toBe(true)
+    expect(down.filter((e) => e.kind === 'deposit')).toEqual([])
+  })
+
   it('a rise of 2 % in 10 min in S1 is a deposit in S1, found within 15 min of its begin and below 1.05', () => {
     const { happened } = run(duo, { ...world, lnR: (s, k) => (s === 0 ? 0.001 * since(k, 150) : 0) }, 200)
     const first = happened[0]!
