@@ -44,7 +44,7 @@ export async function importRun(o: ImportOptions): Promise<{ rows: number; talli
   const rowsPerCommit = o.rowsPerCommit ?? 2 * segmentRows
   const words: string[] = [...phases]
   let wordsKnown = 0
-  const engine = createEngine({ skid, store, run, stepsRun: o.stepsRun })
+  const engine = createEngine({ skid, store, run, stepsRun: o.stepsRun, journalOnly: true })
   const acts = [...o.acts].sort((a, b) => a.tMs - b.tMs)
   let nextAct = 0
   let rows = 0

@@ -21,8 +21,8 @@ type Told =
     }
   | { readonly kind: 'failed'; readonly message: string; readonly stack: string }
 
-/** A thread keeps little that is new: an import's memory stays flat, whatever its length. */
-export const threadLimits = { maxYoungGenerationSizeMb: 4 }
+/** Little room for what is new, and a bound (an import lives on some 20 MB) that makes garbage go early: memory stays flat, whatever the length. */
+export const threadLimits = { maxYoungGenerationSizeMb: 4, maxOldGenerationSizeMb: 512 }
 /** Bytes between two tellings of progress. */
 const tellBytes = 1 << 20
 

@@ -46,6 +46,8 @@ export interface EngineOptions {
   readonly run: RunId
   /** The run beside it that keeps its detector steps. */
   readonly stepsRun: RunId
+  /** Nobody will ask this engine for its report or advice: what they alone need is not kept. */
+  readonly journalOnly?: boolean
 }
 
 /** The report looks back over steps for at most a week; two hours more for what lies beyond the snapshot. */
@@ -59,7 +61,7 @@ const toInterval = (i: { atMs: number; lowMs: number; highMs: number; level: num
  * and only then told. Rows go in one at a time, so that every event's number is the same however the source cut them.
  * Resumes from its latest snapshot by replaying what the store holds beyond it; what was written before is compared, not doubled.
  */
-export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
+export function createEngine({ skid, store, run, stepsRun, journalOnly = false }: EngineOptions) {
   const saved = (store.snapshots.latest(run)?.state ?? null) as EngineState | null
   const scans = createScanView(skid, saved?.scans)
   const pipeline = createPipeline(skid, saved?.pipeline, { onScan: scans.scan })
@@ -80,10 +82,10 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
   let pending = empty()
 
   function fold(e: PipelineEvent, tMs: number): void {
-    collector.take([e])
+    if (!journalOnly) collector.take([e])
     alarms.take(e)
     if (e.kind === 'baseline') baselines.set(e.segment, baselineOf(e.baseline))
-    if (e.kind === 'advice') advice.push({ atMs: tMs, advice: e.advice })
+    if (e.kind === 'advice' && !journalOnly) advice.push({ atMs: tMs, advice: e.advice })
   }
 
   function growthNow(): GrowthNow[] {
@@ -108,7 +110,7 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
     let growth: GrowthNow[] | null = null
     for (const e of events) {
       if (e.kind === 'step') {
-        collector.take([e])
+        if (!journalOnly) collector.take([e])
         growth ??= growthNow()
         lastStep = { tMs: e.tMs, production: e.production, segments: e.segments, growth }
         if (counts.steps++ >= stepsOnDisk) pending.steps.push(lastStep)
@@ -214,7 +216,10 @@ export function createEngine({ skid, store, run, stepsRun }: EngineOptions) {
       } // biome-ignore format: a list
       store.snapshots.put(run, counts.seq, state as unknown as Json)
     },
-    report: (notes: readonly string[] = []): Report => collector.report(pipeline, notes),
+    report(notes: readonly string[] = []): Report {
+      if (journalOnly) throw new Error('this engine keeps no report')
+      return collector.report(pipeline, notes)
+    },
   }
 }
 export type Engine = ReturnType<typeof createEngine>
