@@ -32,7 +32,7 @@ Watches skids and serves the pages. Without --skid: the demo, the skid "heron" f
   --tls-cert FILE, --tls-key FILE
                     a certificate and its key (PEM): the pages come over https
   --trust-proxy A,… proxies in front whose word on the caller's address is taken; with --public-url
-  --public-url URL  the address that a proxy in front is known by
+  --public-url URL  the address that people open where that is no address of this machine: of its name, or of a proxy in front
   --idle MINUTES    a session nobody uses for so long only reads until the next sign-in (default 30)
   --session HOURS   a session ends after so long (default 12)
   --new-administrator-link

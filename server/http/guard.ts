@@ -53,7 +53,7 @@ export function guardRequests(app: FastifyInstance, guard: Guard): void {
         ? {
             code: 'HTTP_421',
             message: 'this server does not go by that name',
-            hint: 'use 127.0.0.1 or localhost, or start it with --host NAME; behind a proxy with --public-url URL',
+            hint: 'use 127.0.0.1 or localhost, or start it with --host NAME or --public-url URL',
           }
         : {
             code: 'HTTP_403',

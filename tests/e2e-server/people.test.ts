@@ -2,6 +2,7 @@ import { readdirSync, readFileSync, writeFileSync } from 'node:fs'
 import { request } from 'node:https'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
+import { WebSocket } from 'ws'
 import { openStore } from '../../server/store/open.ts'
 import { selfSigned } from '../helpers/self-signed.ts'
 import { heronFile, tempDir } from '../monitor/bench.ts'
@@ -185,6 +186,16 @@ describe('listening beyond this machine', () => {
     const reply = await ask('POST', '/api/session', { name: 'Odo Fenn', password: first })
     expect(reply.status).toBe(200)
     expect(reply.cookie).toMatch(/^__Host-clearbore=[\w-]{43}; Path=\/; HttpOnly; Secure; SameSite=Strict$/)
+    const page = new WebSocket(`wss://127.0.0.1:${port}/ws`, {
+      ca: cert,
+      headers: { host: `localhost:${port}`, origin: `https://localhost:${port}`, cookie: reply.cookie.split(';')[0]! },
+    })
+    const hello = await new Promise<string>((done, fail) => {
+      page.once('message', (data) => done(String(data)))
+      page.once('error', fail)
+    })
+    expect(JSON.parse(hello)).toMatchObject({ type: 'hello', runs: [{ skid: 'heron' }] })
+    page.terminate()
     // Nothing is shown to whom nobody knows, no demo person acts, and an old protocol is not spoken.
     expect((await ask('GET', '/api/runs', undefined)).status).toBe(401)
     await expect(ask('GET', '/api/service', undefined, { maxVersion: 'TLSv1.1', minVersion: 'TLSv1' })).rejects.toThrow()
