@@ -1,81 +1,37 @@
-import { type AdviserState, createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
-import { type BookState, createBook } from '../alarms/book.ts'
+import { createAdviser, type SegmentForAdvice } from '../advice/adviser.ts'
+import { createBook } from '../alarms/book.ts'
 import type { Signal } from '../alarms/occurrence.ts'
-import { createSuppression, type SuppressionState } from '../alarms/suppression.ts'
-import { type BankSettings, bankSettings } from '../bank/bank-state.ts'
-import type { StartingKnowledge } from '../baseline/starting-knowledge.ts'
+import { createSuppression } from '../alarms/suppression.ts'
+import { bankSettings } from '../bank/bank-state.ts'
 import { layoutOf } from '../derive/layout.ts'
-import { createStepper, type Step, type StepperState, stepScans } from '../derive/step.ts'
+import { createStepper, type Step, stepScans } from '../derive/step.ts'
 import { MonitorError } from '../errors.ts'
-import type { GuideState } from '../flush/course-state.ts'
 import { createGuide } from '../flush/guide.ts'
 import type { FlushInput } from '../flush/input.ts'
 import { planFlush } from '../flush/plan.ts'
 import type { BaselinePoint } from '../flush/reference.ts'
 import { createWatch } from '../fouling/watch.ts'
-import type { ForecastRecord, WatchEvent, WatchState } from '../fouling/watch-state.ts'
-import { createPresent, type PresentState } from '../insight/present.ts'
+import type { WatchEvent } from '../fouling/watch-state.ts'
+import { createPresent } from '../insight/present.ts'
 import type { RowBlock } from '../reading.ts'
-import { createGrid, type GridState, type Scan } from '../scan/grid.ts'
-import { type Act, type Entry, type LimitName, limitNames } from '../sequence.ts'
-import { type ConfigurationState, createConfiguration, type Took } from '../settings/configuration.ts'
+import { createGrid, type Scan } from '../scan/grid.ts'
+import type { Act, Entry, LimitName } from '../sequence.ts'
+import { createConfiguration, type Took } from '../settings/configuration.ts'
 import { filterChanged, unusedWhy, waterResult } from '../settings/hand-events.ts'
-import { createExcursions, type ExcursionState } from '../signals/excursions.ts'
-import { createInstruments, type InstrumentState } from '../signals/instruments.ts'
+import { createExcursions } from '../signals/excursions.ts'
+import { createInstruments } from '../signals/instruments.ts'
 import { createLimits, type LimitTable, limitsOf } from '../signals/limits.ts'
 import { siteRules } from '../signals/site-rules.ts'
 import type { Skid } from '../skid.ts'
-import { barFromPa, cFromK, mlMinFromM3s, paFromBar } from '../units.ts'
+import { paFromBar } from '../units.ts'
 import type { PipelineEvent } from './events.ts'
+import { type PipelineOptions, type PipelineState, withLimits } from './pipeline-state.ts'
+import { overSignal, stepSaid } from './step-said.ts'
 import { creepSaid, type Said, unjudgedText, verdictSaid } from './verdict-said.ts'
-
-/** Everything the pipeline knows, as plain JSON: stop anywhere, resume, and what follows is the same to the byte. */
-export interface PipelineState {
-  readonly version: 1
-  grid: GridState
-  stepper: StepperState
-  watch: WatchState
-  book: BookState
-  instruments: InstrumentState
-  excursions: ExcursionState
-  adviser: AdviserState
-  /** Missing in a state of an older build: learnt anew. */
-  present?: PresentState
-  /** Missing in a state of an older build: no flush under way. */
-  flush?: GuideState
-  /** Missing in a state of an older build, which had the limits alone. */
-  configuration?: ConfigurationState
-  suppression?: SuppressionState
-  /** Of an older build: the limits as people had changed them. */
-  limits?: LimitTable
-  /** Alarms that clear by themselves at a time. */
-  timed: { key: string; untilMs: number }[]
-  timelineN: number
-  production: boolean
-  armed: boolean
-  inferred: boolean
-  /** By segment: ratio at the last step and when. */
-  ratio: (number | null)[]
-  ratioMs: number
-  /** By segment: the last ratio known, and the clean baseline in force, final or not. Missing in a state of an older build. */
-  lastRatio?: (number | null)[]
-  baseline?: (BaselinePoint | null)[]
-}
-
-export interface PipelineOptions {
-  /** Each closed scan, for live screens; the object is reused. */
-  readonly onScan?: (scan: Scan, tMs: number) => void
-  /** From an accepted step test; a saved state has it already. */
-  readonly known?: readonly StartingKnowledge[]
-  /** Other sizes and explanations than the defaults, to see what each is worth. */
-  readonly bank?: BankSettings
-  readonly charts?: boolean
-}
 
 const timelineMs = 600_000
 const nothing: readonly PipelineEvent[] = []
 const belowClean = 'slough-off of what the baseline held, a leak or bypass, or an instrument'
-const noEvidence = { for: [], against: [], notExcluded: [] }
 
 /**
  * source → quality → scan → derive → detect → alarm → advise on one recorded sequence. Pure: what comes out depends on the skid and on
@@ -227,18 +183,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
     if (out.mode.stops) endAll(endMs)
     drainBook()
     for (const advice of adviser.step(endMs, forAdvice())) events.push({ kind: 'advice', tMs: endMs, advice })
-    events.push({
-      kind: 'step',
-      tMs: endMs,
-      production: s.production,
-      inferred: s.inferred,
-      segments: out.now.map((n) => ({
-        ratio: n.ratio,
-        dpBar: n.step.dpPa === null ? null : barFromPa(n.step.dpPa),
-        flowMlMin: n.step.volFlowM3S === null ? null : mlMinFromM3s(n.step.volFlowM3S),
-        tempC: n.step.tempK === null ? null : cFromK(n.step.tempK),
-      })),
-    })
+    events.push(stepSaid(out.now, endMs, s.production, s.inferred))
   }
 
   function onWatch(e: WatchEvent, tMs: number): void {
@@ -293,25 +238,7 @@ export function createPipeline(skid: Skid, saved?: PipelineState, options: Pipel
   /** The condition of an alarm without a value of its own is over. */
   function end(key: string, tMs: number): void {
     if (!on.book.isActive(key)) return
-    signal({
-      key,
-      tMs,
-      over: false,
-      kind: 'fouling',
-      segment: null,
-      tag: null,
-      priority: 'low',
-      value: null,
-      limit: null,
-      unit: null,
-      message: '',
-      cause: null,
-      onset: null,
-      detector: '',
-      evidence: noEvidence,
-      onDelayS: 0,
-      offDelayS: 0,
-    })
+    signal(overSignal(key, tMs))
   }
 
   /** Production stopped: what was found of it no longer stands. */
@@ -477,24 +404,4 @@ function highestDp(limits: LimitTable, i: number): { name: LimitName; pa: number
   return highHigh === null ? null : { name: 'dpHighHighBar', pa: paFromBar(highHigh) }
 }
 
-/** What people had changed in a state that kept the limits alone. */
-function withLimits(skid: Skid, limits: LimitTable | undefined): ConfigurationState | undefined {
-  if (limits === undefined) return undefined
-  const changes = skid.segments.flatMap((g, i) =>
-    limitNames.flatMap((name) => {
-      const [old, now] = [g.limits[name], limits[i]?.[name] ?? null]
-      return old === now ? [] : [{ path: `segments.${g.id}.limits.${name}`, old, new: now }]
-    }),
-  )
-  const file = { version: 0, fromMs: -1, person: 'file', reason: 'the skid file as given', changes: [] }
-  const changed = {
-    version: 1,
-    fromMs: 0,
-    person: 'not known',
-    reason: 'limits changed with an earlier version of the tool',
-    changes,
-  }
-  return { applied: changes.length === 0 ? [file] : [file, changed], planned: [] }
-}
-
-export type { ForecastRecord }
+export type { PipelineOptions, PipelineState }
