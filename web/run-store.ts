@@ -11,9 +11,11 @@ import type {
 } from '../server/wire/index.ts'
 import { getJson } from './api.ts'
 import type { Feed } from './feed.ts'
-import { emptyRun, grow, putTrends, type RunData } from './model/run-data.ts'
+import { emptyRun, grow, putTrends, type RunData, rhythmMs } from './model/run-data.ts'
 
 const buckets = 1000
+/** After a failed try, ms. */
+const againMs = 2000
 
 export async function loadRun(run: number, signal?: AbortSignal): Promise<RunData> {
   const [detail, marks] = await Promise.all([
@@ -56,6 +58,8 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
   let sinceMs: number | null = null
   let marks = data.marks
   let marksKey = ''
+  let refilling = false
+  let isOver = false
 
   const subscribe = (): void =>
     feed.send({ type: 'subscribe', run, topics: ['state', 'steps', 'readings', 'alarms', 'acts'], sinceMs })
@@ -84,6 +88,23 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
     )
   }
 
+  /** Puts the stored trends in place of what was missed or came too coarse; asks again until they come. */
+  function refill(): void {
+    if (refilling || isOver || state === null || data.window.toMs === 0) return
+    refilling = true
+    fetchWindow(data, data.window.fromMs, (state.data.lastRowMs ?? state.clock.nowMs) + 1).then(
+      () => {
+        refilling = false
+        changed({ state: false, points: true, marks: false })
+      },
+      () =>
+        setTimeout(() => {
+          refilling = false
+          refill()
+        }, againMs),
+    )
+  }
+
   function snapshot(m: Snapshot): void {
     const again = state !== null
     seq = m.seq
@@ -92,11 +113,7 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
     checkMarks()
     changed({ state: true, points: true, marks: false })
     // After a break, and where the snapshot could not hold all of it, the stored trends fill in what was missed.
-    if (again || m.moreFromMs !== null)
-      fetchWindow(data, data.window.fromMs, (m.state.data.lastRowMs ?? m.state.clock.nowMs) + 1).then(
-        () => changed({ state: false, points: true, marks: false }),
-        () => undefined,
-      )
+    if (again || m.moreFromMs !== null) refill()
   }
 
   function delta(m: Delta): void {
@@ -113,6 +130,8 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
     }
     const frames = m.readings === undefined ? [] : [m.readings]
     points(m.steps ?? [], frames)
+    // A frame that was long in coming is one point where there should be many.
+    if (frames.some((f) => f.toMs - f.fromMs > rhythmMs(state?.clock.speed ?? 1))) refill()
     checkMarks()
     changed({
       state: m.state !== undefined || m.alarms !== undefined,
@@ -129,7 +148,10 @@ export function follow(data: RunData, feed: Feed, changed: (what: { state: boole
       if (m.type === 'snapshot' && m.run === run) snapshot(m)
       else if (m.type === 'delta' && m.run === run) delta(m)
     },
-    stop: (): void => feed.send({ type: 'unsubscribe', run }),
+    stop(): void {
+      isOver = true
+      feed.send({ type: 'unsubscribe', run })
+    },
   }
 }
 export type Followed = ReturnType<typeof follow>
