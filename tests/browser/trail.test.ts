@@ -83,7 +83,8 @@ describe.runIf(chromium !== null)('the audit trail in a real browser, on a serve
     await page.check('#trail-new')
     await until(page, `${data}.rows === '1'`)
     expect(await page.textContent('tr.fresh')).toContain('and now it is quiet')
-    expect(await page.textContent('main')).toContain('1 new since Ada Quill reviewed it')
+    // The skid goes on: an alarm may have come meanwhile, which is new and not listed here.
+    expect(await page.textContent('main')).toMatch(/[1-9]\d* new since Ada Quill reviewed it/)
 
     await page.uncheck('#trail-new')
     await page.selectOption('#trail-of', 'site')
