@@ -71,8 +71,12 @@ export function alarmMetrics(
     label: hours < 720 ? 'short record – not a conformance statement' : null,
     annunciated: calls.length,
     ratePerHour: hours === 0 ? 0 : calls.length / hours,
-    tenMinutes: { windows: ten.length, over10: ten.filter((n) => n > 10).length, most: Math.max(0, ...ten) },
-    hoursOver30: { windows: hour.length, over30: hour.filter((n) => n > 30).length },
+    tenMinutes: {
+      windows: ten.n,
+      over10: ten.counts.filter((n) => n > 10).length,
+      most: ten.counts.reduce((most, n) => Math.max(most, n), 0),
+    },
+    hoursOver30: { windows: hour.n, over30: hour.counts.filter((n) => n > 30).length },
     floodShare: toMs > fromMs ? flooded / (toMs - fromMs) : 0,
     floods,
     mostFrequent,
@@ -94,15 +98,16 @@ function countBy(keys: readonly string[]): [string, number][] {
   return [...counts].sort((a, b) => b[1] - a[1] || (a[0] < b[0] ? -1 : 1))
 }
 
-/** Counts in the whole clock windows that lie in the period. */
-function windows(calls: readonly AlarmRecord[], fromMs: number, toMs: number, lengthMs: number): number[] {
+/** The whole clock windows that lie in the period: how many there are, and how many calls those hold that hold any. A period may be asked for that is ages long. */
+function windows(calls: readonly AlarmRecord[], fromMs: number, toMs: number, lengthMs: number): { n: number; counts: number[] } {
   const first = Math.ceil(fromMs / lengthMs)
-  const counts = new Array<number>(Math.max(0, Math.floor(toMs / lengthMs) - first)).fill(0)
+  const end = Math.max(first, Math.floor(toMs / lengthMs))
+  const counts = new Map<number, number>()
   for (const r of calls) {
-    const n = Math.floor(r.tMs / lengthMs) - first
-    if (n >= 0 && n < counts.length) counts[n] = (counts[n] as number) + 1
+    const at = Math.floor(r.tMs / lengthMs)
+    if (at >= first && at < end) counts.set(at, (counts.get(at) ?? 0) + 1)
   }
-  return counts
+  return { n: end - first, counts: [...counts.values()] }
 }
 
 function isOutside(r: AlarmRecord): boolean {

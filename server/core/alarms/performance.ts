@@ -31,7 +31,11 @@ const n = (count: number, one: string, many = `${one}s`): string => `${count} ${
  */
 function staleOnADay(m: AlarmMetrics, staleHours: number): number {
   let most = 0
-  for (let day = Math.floor(m.fromMs / dayMs); day * dayMs < m.toMs; day++) {
+  // Only where an alarm was active: a period may be asked for that is ages long.
+  const begun = m.stale.reduce((least, s) => Math.min(least, s.fromMs), Infinity)
+  const over = m.stale.reduce((latest, s) => Math.max(latest, s.fromMs + s.hours * 3.6e6), -Infinity)
+  const endMs = Math.min(m.toMs, over)
+  for (let day = Math.floor(Math.max(m.fromMs, begun) / dayMs); day * dayMs < endMs; day++) {
     const [from, to] = [Math.max(m.fromMs, day * dayMs), Math.min(m.toMs, (day + 1) * dayMs)]
     const on = m.stale.filter((s) => s.fromMs + staleHours * 3.6e6 < to && s.fromMs + s.hours * 3.6e6 > from)
     most = Math.max(most, on.length)

@@ -3,6 +3,7 @@ import { describe, expect, it } from 'vitest'
 import type { AlarmRecord } from '../../../server/core/alarms/alarm-state.ts'
 import { flood } from '../../../server/core/alarms/flood.ts'
 import { alarmMetrics } from '../../../server/core/alarms/metrics.ts'
+import { performanceTable } from '../../../server/core/alarms/performance.ts'
 
 const base: AlarmRecord = {
   alarm: 1,
@@ -32,6 +33,15 @@ const hour = 3.6e6
 
 describe('metrics of the alarm system', () => {
   // ALM-13
+  it('a period of half a million years is counted as fast as an hour, and no longer a list than its alarms', () => {
+    const m = alarmMetrics([act(30), act(40), clr(2 * 86_400)], -8.64e15, 8.64e15)
+    expect(m.tenMinutes).toEqual({ windows: 28_800_000_000, over10: 0, most: 2 })
+    expect(m.hoursOver30.windows).toBe(4_800_000_000)
+    expect(
+      performanceTable(m, { all: 0, outside: 0 }).find((r) => r.metric.startsWith('stale') || /stale/i.test(r.metric))?.value,
+    ).toBeGreaterThanOrEqual(1)
+  })
+
   it('counts 12 annunciations in 2 h as 6 an hour, in fixed windows of the clock, and calls it a short record', () => {
     const records = Array.from({ length: 12 }, (_, i) => act(i * 600 + 30, { key: `flow:${i % 3}` }))
     const m = alarmMetrics(records, 0, 2 * hour)
