@@ -3,8 +3,9 @@ import { describe, expect, it } from 'vitest'
 import { depositShare, drawnShare, exaggerationFor, openPct } from '../../web/model/bore.ts'
 import { fanEdge } from '../../web/model/fan.ts'
 import { layoutLine } from '../../web/model/line-layout.ts'
+import { valuesAt } from '../../web/model/overlay.ts'
 import { emptyRun, putTrends } from '../../web/model/run-data.ts'
-import { trendKinds, trendSpec, valuesAt } from '../../web/model/trend-spec.ts'
+import { trendKinds, trendSpec } from '../../web/model/trend-spec.ts'
 import { alarmOf, factsOf, sceneOf, t0 } from '../helpers/scene.ts'
 
 const hour = 3_600_000

@@ -70,3 +70,13 @@ export interface TrendSpec {
   readonly clock: ZoneClock
   readonly zone: string
 }
+
+/** What a chart shows at a moment, a line each: the value of the nearest point, null where none is near. */
+export function valuesAt(spec: TrendSpec, tMs: number): { readonly name: string; readonly value: number | null }[] {
+  const near = (spec.toMs - spec.fromMs) / 100
+  return spec.lines.map((l) => {
+    let best: Point | null = null
+    for (const p of l.points) if (Math.abs(p.x - tMs) <= (best === null ? near : Math.abs(best.x - tMs))) best = p
+    return { name: l.name, value: best?.y ?? null }
+  })
+}

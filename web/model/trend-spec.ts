@@ -3,8 +3,10 @@ import type { AlarmRow, LiveState, Marks, SegmentFacts, SegmentState } from '../
 import { fanEdge } from './fan.ts'
 import { axisUnit, figure, fixed, unitText } from './format.ts'
 import type { Line, Overlay, TrendSpec } from './overlay.ts'
+import { feedPair, quotient } from './quotient.ts'
 import { type RunData, rhythmMs } from './run-data.ts'
 import type { Point } from './series.ts'
+import { extent } from './trend-extent.ts'
 import { gaps } from './trend-gaps.ts'
 import { limitWords } from './words.ts'
 
@@ -200,32 +202,6 @@ function pictureOf(data: RunData, marks: Marks, view: TrendView, spec: SegmentFa
 const otherLine = ({ other }: TrendView, of: 'ratio' | 'dpBar'): Line[] =>
   other == null ? [] : [{ name: other.name, look: 'other', points: other[of] }]
 
-/** One series over another, point by point where both are known; a bucket's extremes are the widest that its readings allow. */
-function quotient(over: readonly Point[], under: readonly Point[], factor = 1): Point[] {
-  const at = new Map(under.map((p) => [p.x, p]))
-  return over.map(({ x, y, low, high }) => {
-    const q = at.get(x)
-    if (y === null || q?.y == null || !(q.y > 0)) return { x, y: null }
-    const bounds =
-      low == null || high == null || !((q.low ?? q.y) > 0)
-        ? {}
-        : { low: (factor * low) / (q.high ?? q.y), high: (factor * high) / (q.low ?? q.y) }
-    return { x, y: (factor * y) / q.y, ...bounds }
-  })
-}
-
-/** The two feeds whose ratio a segment shows: those of its limit, else its second over its first; `molMol` turns the quotient of their readings into mol/mol. */
-export function feedPair(
-  facts: RunData['detail']['skidFacts'],
-  spec: SegmentFacts,
-): { readonly of: readonly [string, string]; readonly tags: readonly [string, string]; readonly molMol: number | null } | null {
-  const [a, b] = spec.feedRatio?.of ?? [spec.streams[1], spec.streams[0]]
-  const [x, y] = [a, b].map((id) => facts.streams.find((s) => s.id === id))
-  if (x === undefined || y === undefined) return null
-  const molMol = x.molHPerFlowUnit === null || y.molHPerFlowUnit === null ? null : x.molHPerFlowUnit / y.molHPerFlowUnit
-  return { of: [x.id, y.id], tags: [x.flowTag, y.flowTag], molMol }
-}
-
 const hottest = (spec: SegmentFacts, now: SegmentState | undefined): number => {
   let top = 0
   spec.temperatures.forEach((tag, i) => {
@@ -302,45 +278,3 @@ const noticed = (data: RunData, view: TrendView, segment: string): Overlay['note
     .filter((a) => a.kind === 'fouling' && a.segment === segment && a.raisedMs <= view.atMs)
     .slice(-1)
     .map((a) => ({ tMs: a.raisedMs, label: `noticed ${data.clock.hm(a.raisedMs)}` }))
-
-/** Range of the value axis: the data with room, and the limits as far as they do not squeeze the data flat. */
-function extent(kind: TrendKind, points: readonly Point[], limits: readonly number[], fan: boolean): [number, number] {
-  let low = Infinity
-  let high = -Infinity
-  for (const p of points) {
-    if (p.y === null) continue
-    low = Math.min(low, p.low ?? p.y)
-    high = Math.max(high, p.high ?? p.y)
-  }
-  if (kind === 'ratio') {
-    low = Math.min(low, 0.9)
-    high = Math.max(high, 1.2)
-  }
-  if (kind === 'charts') {
-    low = Math.min(low, 0)
-    high = Math.max(high, 1.1)
-  }
-  if (low === Infinity) [low, high] = limits.length > 0 ? [Math.min(...limits), Math.max(...limits)] : [0, 1]
-  const span = Math.max(high - low, kind === 'temperature' ? 4 : 0.05 * Math.abs(high), 1e-6)
-  for (const l of limits) {
-    const far = Math.max(l - high, low - l)
-    if (kind === 'ratio' ? l - 1 < (fan ? 8 : 5) * Math.max(high - 1, 0.1) : far < 2.5 * span) {
-      low = Math.min(low, l)
-      high = Math.max(high, l)
-    }
-  }
-  // A forecast towards a limit outside the range gets room to be seen in.
-  if (kind === 'ratio' && fan && !limits.some((l) => l <= high)) high += 0.8 * (high - 1)
-  const room = Math.max(high - low, span) * 0.1
-  return [kind === 'dp' || kind === 'flow' || kind === 'charts' ? Math.max(0, low - room) : low - room, high + room]
-}
-
-/** What a chart shows at a moment, a line each: the value of the nearest point, null where none is near. */
-export function valuesAt(spec: TrendSpec, tMs: number): { readonly name: string; readonly value: number | null }[] {
-  const near = (spec.toMs - spec.fromMs) / 100
-  return spec.lines.map((l) => {
-    let best: Point | null = null
-    for (const p of l.points) if (Math.abs(p.x - tMs) <= (best === null ? near : Math.abs(best.x - tMs))) best = p
-    return { name: l.name, value: best?.y ?? null }
-  })
-}
