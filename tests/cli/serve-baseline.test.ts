@@ -1,10 +1,10 @@
 import { readFileSync } from 'node:fs'
 import { expect, it } from 'vitest'
-import { startServing } from '../../server/cli/serving.ts'
 import { createPipeline } from '../../server/core/pipeline/pipeline.ts'
 import { loadSkid } from '../../server/skid/check.ts'
 import { openStore } from '../../server/store/open.ts'
 import type { ActRow, RunRow } from '../../server/wire/index.ts'
+import { serveQuietly } from '../helpers/serve-quietly.ts'
 import { fixture } from '../helpers/skids.ts'
 import { tempDir } from '../monitor/bench.ts'
 
@@ -16,29 +16,15 @@ it('serve --baseline: a new run begins with the step test as an act, before its 
   const dir = tempDir()
   const begin = async (visit: (acts: ActRow[]) => void) => {
     const store = openStore(dir, { synchronous: 'NORMAL' })
-    const serving = await startServing({
-      store,
-      watched: [
-        {
-          skid,
-          file: 'heron.yaml',
-          text,
-          commissioned: { file: 'records/heron.json', known },
-          source: { kind: 'simulated', speed: 60 },
-        },
-      ],
-      isDemo: true,
-      host: '127.0.0.1',
-      port: 0,
-      tryPorts: 0,
-      webRoot: null,
-      toolVersion: 'test',
-      log: () => undefined,
-      onFatal: (error) => {
-        throw error
+    const serving = await serveQuietly(store, [
+      {
+        skid,
+        file: 'heron.yaml',
+        text,
+        commissioned: { file: 'records/heron.json', known },
+        source: { kind: 'simulated', speed: 60 },
       },
-      beatMs: 50,
-    })
+    ])
     try {
       const get = async <T>(what: string): Promise<T> => (await (await fetch(new URL(what, serving.url))).json()) as T
       const { run } = (await get<RunRow[]>('/api/runs')).find((r) => r.state === 'live')!

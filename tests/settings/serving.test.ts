@@ -1,11 +1,11 @@
 import { readFileSync } from 'node:fs'
 import { join } from 'node:path'
 import { expect, it } from 'vitest'
-import { startServing } from '../../server/cli/serving.ts'
 import type { Report } from '../../server/core/report.ts'
 import { loadSkid } from '../../server/skid/check.ts'
 import { openStore } from '../../server/store/open.ts'
 import type { ActRow, RunRow, SettingsPage } from '../../server/wire/index.ts'
+import { serveQuietly } from '../helpers/serve-quietly.ts'
 import { fixture } from '../helpers/skids.ts'
 import { tempDir } from '../monitor/bench.ts'
 
@@ -14,23 +14,9 @@ const text = readFileSync(fixture('skids/heron.yaml'), 'utf8')
 /** A server on the simulated heron with this skid file, as `serve` starts it; `visit` while it runs. */
 async function serve(dir: string, skidText: string, visit: (url: string) => Promise<void>) {
   const store = openStore(dir, { synchronous: 'NORMAL' })
-  const serving = await startServing({
-    store,
-    watched: [
-      { skid: loadSkid(skidText, 'heron.yaml'), file: 'heron.yaml', text: skidText, source: { kind: 'simulated', speed: 60 } },
-    ],
-    isDemo: true,
-    host: '127.0.0.1',
-    port: 0,
-    tryPorts: 0,
-    webRoot: null,
-    toolVersion: 'test',
-    log: () => undefined,
-    onFatal: (error) => {
-      throw error
-    },
-    beatMs: 50,
-  })
+  const serving = await serveQuietly(store, [
+    { skid: loadSkid(skidText, 'heron.yaml'), file: 'heron.yaml', text: skidText, source: { kind: 'simulated', speed: 60 } },
+  ])
   try {
     await visit(serving.url)
   } finally {
