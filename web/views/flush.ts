@@ -1,7 +1,7 @@
 import type { FlushPlan } from '../../server/core/report.ts'
 import type { ActReply, ActSent, Course, FlushDetail, LiveState, ServerMessage } from '../../server/wire/index.ts'
 import { getJson, postJson, said } from '../api.ts'
-import { type Feed, type Link, silentMs } from '../feed.ts'
+import type { Feed, Link } from '../feed.ts'
 import { counts, nameOf, nextStep, runningStep, whatNow } from '../model/flush-now.ts'
 import { duration, figure, fixed } from '../model/format.ts'
 import { adviceInForce } from '../model/in-force.ts'
@@ -16,6 +16,7 @@ import { pointsView } from './flush-points.ts'
 import { flushStory } from './flush-story.ts'
 import { liveStrip } from './live-strip.ts'
 import { planBody } from './plan.ts'
+import { runClock } from './run-clock.ts'
 import type { Shell, WatchView } from './watch.ts'
 
 type FlushAct = Extract<ActSent, { readonly kind: 'flush-step' | 'flush-check' }>
@@ -24,8 +25,7 @@ type FlushAct = Extract<ActSent, { readonly kind: 'flush-step' | 'flush-check' }
 export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
   const facts = data.detail.skidFacts
   const run = data.detail.run
-  let received = 0
-  let link: Link = { up: false, heardAt: null, retryInMs: null }
+  const clock = runClock()
   let plan: FlushPlan | null = null
   let planOf = ''
   let spoken = ''
@@ -60,7 +60,7 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
   for (const part of [course, beforehand, person]) part.hidden = true
 
   const followed = follow(data, feed, (what) => {
-    if (what.state) received = performance.now()
+    if (what.state) clock.received()
     ask()
   })
 
@@ -178,12 +178,6 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
     )
   }
 
-  /** The run's now: the server's, carried on by this machine's clock while the link is up. */
-  const runNow = (state: LiveState): number => {
-    const since = (Math.min(performance.now(), (link.heardAt ?? received) + silentMs) - received) * state.clock.speed
-    return state.clock.nowMs + Math.max(0, since)
-  }
-
   let frame = 0
   const ask = (): void => {
     frame ||= requestAnimationFrame(() => {
@@ -226,11 +220,11 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
     node.dataset['step'] = (c === null ? null : (runningStep(c) ?? nextStep(c)))?.step ?? ''
     node.dataset['stepState'] = c === null ? '' : (runningStep(c)?.state ?? 'open')
     node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
-    strip.show(state, runNow(state), link)
+    strip.show(state, clock.now(state), clock.link())
   }
 
   function showCourse(c: Course, state: LiveState): void {
-    const nowMs = runNow(state)
+    const nowMs = clock.now(state)
     const at = runningStep(c) ?? nextStep(c)
     const s = at ?? c.steps.findLast((x) => x.startedMs !== null) ?? c.steps[0]!
     const n = counts(s)
@@ -307,7 +301,7 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
   const tick = setInterval(() => {
     const state = followed.state()
     if (state === null) return
-    strip.show(state, runNow(state), link)
+    strip.show(state, clock.now(state), clock.link())
     ask()
   }, 500)
 
@@ -316,10 +310,10 @@ export function flushView(data: RunData, feed: Feed, shell: Shell): WatchView {
     take: (m: ServerMessage) => followed.take(m),
     open: () => followed.subscribe(),
     link(l: Link): void {
-      link = l
+      clock.linked(l)
       node.dataset['link'] = l.up ? 'up' : 'down'
       const state = followed.state()
-      if (state !== null) strip.show(state, runNow(state), link)
+      if (state !== null) strip.show(state, clock.now(state), clock.link())
       else say(waiting, l.up ? 'Waiting for the first state of the run.' : 'The server does not answer; trying again.')
     },
     stop(): void {

@@ -1,6 +1,6 @@
 import type { ActReply, LiveState, RoleName, ServerMessage } from '../../server/wire/index.ts'
 import { postJson } from '../api.ts'
-import { type Feed, type Link, silentMs } from '../feed.ts'
+import type { Feed, Link } from '../feed.ts'
 import { refusalText } from '../model/alarm-refusal.ts'
 import { answersOf } from '../model/answers.ts'
 import { adviceInForce } from '../model/in-force.ts'
@@ -16,6 +16,7 @@ import { el, fill, say } from './dom.ts'
 import { lineView } from './line.ts'
 import { liveStrip } from './live-strip.ts'
 import { planView } from './plan.ts'
+import { runClock } from './run-clock.ts'
 import type { cutView, StripState } from './strip.ts'
 import { trendHands } from './trend-hands.ts'
 import { trendsView } from './trends.ts'
@@ -50,8 +51,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   /** A part of the run that was chosen by hand; null while the page goes along with now. */
   let chosen: Look | null = null
   let chosenTimer: ReturnType<typeof setTimeout> | undefined
-  let received = 0
-  let link: Link = { up: false, heardAt: null, retryInMs: null }
+  const clock = runClock()
   let planOpen = false
   let chartAt = 0
   let chartDue = 0
@@ -154,7 +154,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   function look(next: Look): void {
     const state = followed.state()
     if (state === null) return
-    const nowMs = runNow(state)
+    const nowMs = clock.now(state)
     chosen = within(next, { fromMs: Math.min(firstMs ?? nowMs, nowMs - leastMs), toMs: nowMs + 0.4 * leastMs }, leastMs)
     pressed()
     charts(state, node.dataset['lead'] || null)
@@ -174,18 +174,13 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
   })
 
   const followed = follow(data, feed, (what) => {
-    if (what.state) received = performance.now()
+    if (what.state) clock.received()
     chartDue = performance.now()
     if (data.window.toMs === 0 && !fetching) void refetch()
     if (longest(data) > mostPoints && !fetching) void refetch()
     ask()
   })
 
-  /** The run's now: the server's, carried on by this machine's clock while the link is up. */
-  function runNow(state: LiveState): number {
-    const since = (Math.min(performance.now(), (link.heardAt ?? received) + silentMs) - received) * state.clock.speed
-    return state.clock.nowMs + Math.max(0, since)
-  }
   const windowOf = (nowMs: number): [number, number] => {
     if (chosen !== null) return [chosen.fromMs, chosen.toMs]
     // A run opened before its first reading begins where the page first heard of one.
@@ -200,7 +195,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     if (state === null) return
     fetching = true
     try {
-      const nowMs = runNow(state)
+      const nowMs = clock.now(state)
       const [from, to] = windowOf(nowMs)
       const last = state.data.lastRowMs === null ? nowMs : state.data.lastRowMs + 1
       await fetchWindow(data, from, Math.max(Math.min(to, last), from + 1000), undefined, to >= last)
@@ -252,7 +247,7 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     node.dataset['ready'] = 'true'
     node.dataset['nowMs'] = String(Math.round(state.clock.nowMs))
     node.dataset['lead'] = a.segment ?? ''
-    strip.show(state, runNow(state), link)
+    strip.show(state, clock.now(state), clock.link())
   }
 
   function charts(state: LiveState, lead: string | null): void {
@@ -274,9 +269,9 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
 
   const tick = setInterval(() => {
     const state = followed.state()
-    if (state !== null) strip.show(state, runNow(state), link)
+    if (state !== null) strip.show(state, clock.now(state), clock.link())
     if (state !== null && chartDue > chartAt) ask()
-    if (data.window.toMs === 0 && state !== null && link.up && !fetching) void refetch()
+    if (data.window.toMs === 0 && state !== null && clock.link().up && !fetching) void refetch()
   }, 250)
 
   return {
@@ -284,10 +279,10 @@ export function watchView(data: RunData, feed: Feed, shell: Shell) {
     take: (m: ServerMessage) => followed.take(m),
     open: () => followed.subscribe(),
     link(l: Link): void {
-      link = l
+      clock.linked(l)
       node.dataset['link'] = l.up ? 'up' : 'down'
       const state = followed.state()
-      if (state !== null) strip.show(state, runNow(state), link)
+      if (state !== null) strip.show(state, clock.now(state), clock.link())
       else say(waiting, l.up ? 'Waiting for the first state of the run.' : 'The server does not answer; trying again.')
     },
     stop(): void {
